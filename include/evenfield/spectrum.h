@@ -87,10 +87,14 @@ typedef struct ef_table {
   const char *title;
   const char *source; /**< the published source */
   const char *quantity;
+  const char *note;   /**< what to mind, one remark a line, "" if nothing */
+  const char *rights; /**< licence and attribution, "" if none is known */
   size_t n_rows;
   size_t n_columns;
-  const char *const *column; /**< names; column 0 is "wavelength_nm" */
-  const double *value; /**< by column: value[c * n_rows + r] */
+  const char *const *column; /**< names; column 0 is "wavelength_nm", those of
+                                  illuminants are "D65", "FL3.1", "LED-B1" */
+  const double *value; /**< by column: value[c * n_rows + r]; 0 where the
+                            source has no figure, as `note` then says */
 } ef_table;
 
 EF_API size_t ef_table_count(void);
@@ -98,7 +102,7 @@ EF_API size_t ef_table_count(void);
 EF_API const ef_table *ef_table_at(size_t i);
 /** EF_UNKNOWN_NAME gives the nearest names. Case is ignored. */
 EF_API const ef_table *ef_table_find(const char *name, ef_error *error);
-/** Column number of `column`, or SIZE_MAX. */
+/** Column number of `column`, or SIZE_MAX. Case is ignored. */
 EF_API size_t ef_table_column(const ef_table *table, const char *column);
 /** Grid of a table's rows; borrowed from the table. */
 EF_API ef_grid ef_table_grid(const ef_table *table);
