@@ -1,0 +1,143 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** \file
+ * Colour values and the published transformations between them. Plain values
+ * in, plain values out; no files, no tables except where stated.
+ *
+ * Black has no chromaticity: functions that divide by a sum return NaN fields
+ * there, as each says. */
+#ifndef EVENFIELD_COLOUR_H
+#define EVENFIELD_COLOUR_H
+
+#include <evenfield/base.h>
+#include <evenfield/observer.h>
+#include <evenfield/spectrum.h>
+
+#ifdef __cplusplus
+extern "C" {
+#endif
+
+typedef struct ef_xyz { double X, Y, Z; } ef_xyz;
+typedef struct ef_xyy { double x, y, Y; } ef_xyy;
+typedef struct ef_xy { double x, y; } ef_xy;
+typedef struct ef_uv { double u_prime, v_prime; } ef_uv;
+typedef struct ef_lab { double L_star, a_star, b_star; } ef_lab;
+typedef struct ef_luv { double L_star, u_star, v_star; } ef_luv;
+/** Cylindrical form of Lab or Luv; h_deg in [0, 360), 0 on the neutral axis. */
+typedef struct ef_lch { double L_star, C_star, h_deg; } ef_lch;
+typedef struct ef_lms { double cone_l, cone_m, cone_s; } ef_lms;
+/** MacLeod-Boynton chromaticity with the luminance it was divided by. */
+typedef struct ef_mb { double mb_l, mb_s, luminance; } ef_mb;
+
+/* ---- XYZ and its chromaticities (CIE 015:2018) ------------------------- */
+
+/** NaN x, y where X + Y + Z is not positive. */
+EF_API ef_xyy ef_xyz_to_xyy(ef_xyz xyz);
+/** (0, 0, 0) for Y = 0; NaN X, Z for y = 0 with Y not 0. */
+EF_API ef_xyz ef_xyy_to_xyz(ef_xyy xyy);
+/** u' = 4X / (X + 15Y + 3Z), v' = 9Y / (...); NaN where the sum is not
+ * positive. */
+EF_API ef_uv ef_xyz_to_uv(ef_xyz xyz);
+EF_API ef_uv ef_xy_to_uv(ef_xy xy);
+EF_API ef_xy ef_uv_to_xy(ef_uv uv);
+
+/* ---- CIELAB, CIELUV (ISO/CIE 11664-4, -5) ------------------------------ */
+
+/** White components must be positive; X, Y, Z may have any sign (the linear
+ * branch goes on below zero). Exact constants 24/116, 841/108. */
+EF_API ef_lab ef_xyz_to_lab(ef_xyz xyz, ef_xyz white);
+EF_API ef_xyz ef_lab_to_xyz(ef_lab lab, ef_xyz white);
+/** u*, v* are 0 for black. */
+EF_API ef_luv ef_xyz_to_luv(ef_xyz xyz, ef_xyz white);
+EF_API ef_xyz ef_luv_to_xyz(ef_luv luv, ef_xyz white);
+EF_API ef_lch ef_lab_to_lch(ef_lab lab);
+EF_API ef_lab ef_lch_to_lab(ef_lch lch);
+EF_API ef_lch ef_luv_to_lch(ef_luv luv);
+/** d(L*, a*, b*) / d(X, Y, Z), row-major 3 x 3. */
+EF_API void ef_lab_jacobian(ef_xyz xyz, ef_xyz white, double jacobian[9]);
+/** Batch forms over n x 3 plain arrays; `out` may be `in`. */
+EF_API void ef_xyz_to_lab_batch(size_t n, const double *xyz, ef_xyz white,
+                                double *lab);
+
+/* ---- Chromatic adaptation ---------------------------------------------- */
+
+typedef enum ef_adaptation {
+  EF_ADAPT_NONE,
+  EF_ADAPT_BRADFORD, /**< linear Bradford, as in ICC.1 annex E */
+  EF_ADAPT_CAT16     /**< Li et al. 2017, complete adaptation */
+} ef_adaptation;
+
+/** "none", "bradford", "cat16". Static. */
+EF_API const char *ef_adaptation_name(ef_adaptation adaptation);
+EF_API ef_status ef_adaptation_find(const char *name, ef_adaptation *out,
+                                    ef_error *error);
+/** Row-major 3 x 3 that takes XYZ seen under white `from` to the corresponding
+ * XYZ under white `to`; both whites on one scale of Y, else the ratio of their
+ * Y is applied too. EF_INVALID when a white has a cone response that is not
+ * positive. Complete adaptation (D = 1). */
+EF_API ef_status ef_adaptation_matrix(ef_adaptation adaptation, ef_xyz from,
+                                      ef_xyz to, double matrix[9],
+                                      ef_error *error);
+EF_API ef_xyz ef_xyz_transform(const double matrix[9], ef_xyz xyz);
+
+/* ---- Cone spaces ------------------------------------------------------- */
+
+/** l_MB = k_l L / V, s_MB = k_s S / V, V = k_l L + k_m M (CIE 170-2:2015);
+ * NaN where V is not positive. */
+EF_API ef_mb ef_lms_to_mb(ef_lms lms, ef_mb_scale scale);
+EF_API ef_lms ef_mb_to_lms(ef_mb mb, ef_mb_scale scale);
+
+/* ---- Correlated colour temperature ------------------------------------- */
+
+typedef struct ef_cct {
+  double cct_k; /**< NaN when not defined */
+  double duv;   /**< distance in CIE 1960 u, v, positive above the locus */
+  bool defined; /**< 1000 K to 100000 K and |duv| <= 0.05 (CIE 015:2018) */
+} ef_cct;
+
+/** Nearest Planckian radiator in CIE 1960 u, v (CIE 1931 observer,
+ * c2 = 1.4388e-2 m K), found on the computed locus, no isotherm table. */
+EF_API ef_cct ef_xy_to_cct(ef_xy xy);
+/** Chromaticity of the Planckian radiator at `temperature_k` (500 to 1e6). */
+EF_API ef_xy ef_planck_xy(double temperature_k);
+
+/* ---- Dominant wavelength and purity ------------------------------------ */
+
+typedef struct ef_dominant {
+  double dominant_nm;  /**< wavelength on the locus; of the complementary
+                            colour when `complementary`; NaN at the white */
+  bool complementary;  /**< the colour lies towards the purple line */
+  double purity;       /**< excitation purity, 0 at white, 1 on the boundary */
+} ef_dominant;
+
+/** Of `xy` seen against `white` (the equal-energy stimulus for lights by
+ * default, the illuminant for surfaces), on the observer's spectrum locus
+ * interpolated between 1 nm points, 380 to 780 nm. */
+EF_API ef_status ef_xy_to_dominant(ef_xy xy, ef_xy white,
+                                   const ef_observer *observer,
+                                   ef_dominant *out, ef_error *error);
+/** Spectrum locus of the observer: chromaticities at `n` wavelengths. */
+EF_API ef_status ef_locus_xy(const ef_observer *observer, size_t n,
+                             const double *wavelength_nm, ef_xy *out,
+                             ef_error *error);
+
+/* ---- Colour rendering (CIE 13.3-1995) ---------------------------------- */
+
+typedef struct ef_rendering {
+  double Ra;
+  double R[14];         /**< special indices R1 .. R14 */
+  double cct_k;         /**< of the light, and of its reference */
+  bool reference_is_daylight; /**< from 5000 K up */
+  double delta_c;       /**< CIE 1960 u, v distance light to reference */
+  bool tolerable;       /**< delta_c below 5.4e-3, else Ra is not meaningful */
+} ef_rendering;
+
+/** Of one light sampled on `grid` (any unit). 5 nm sums over 360-830 nm with
+ * the CIE 1931 observer. EF_NO_ANSWER for a dark light or one without a CCT. */
+EF_API ef_status ef_rendering_index(const ef_grid *grid, const double *power,
+                                    ef_rendering *out, ef_error *error);
+
+#ifdef __cplusplus
+}
+#endif
+
+#endif

@@ -1,0 +1,232 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** \file
+ * Devices: n drive values in [0, 1] to a stimulus. And setups: a device seen
+ * by an observer, which is what matching, gamut geometry and quantisation
+ * work on, whatever the device is.
+ *
+ * Two steps lead from a drive to a colour. A monotone curve for each channel
+ * turns a drive into an amount in [0, 1] (for a display the share of the
+ * primary's light); the amounts together make the stimulus. */
+#ifndef EVENFIELD_DEVICE_H
+#define EVENFIELD_DEVICE_H
+
+#include <evenfield/base.h>
+#include <evenfield/colour.h>
+#include <evenfield/observer.h>
+#include <evenfield/spectrum.h>
+
+#ifdef __cplusplus
+extern "C" {
+#endif
+
+/** Most drives a device may have. */
+#define EF_MAX_DRIVES 8
+
+/* ---- Tone curves ------------------------------------------------------- */
+
+/** A strictly increasing map of [0, 1] onto [0, 1]; immutable, owns its
+ * memory. */
+typedef struct ef_tone_curve ef_tone_curve;
+
+/** `linear`; `power:G` with 0.1 <= G <= 10; `iec61966-2-1`. */
+EF_API ef_tone_curve *ef_tone_curve_new(const char *name, ef_error *error);
+/** Monotone (Steffen 1990) interpolation of a measured ramp: n >= 2 points,
+ * drive strictly increasing from 0 to 1, level increasing; levels are scaled so
+ * that the ends are 0 and 1. EF_INVALID names the point at fault. */
+EF_API ef_tone_curve *ef_tone_curve_from_ramp(size_t n, const double *drive,
+                                              const double *level,
+                                              ef_error *error);
+EF_API ef_tone_curve *ef_tone_curve_copy(const ef_tone_curve *curve,
+                                         ef_error *error);
+EF_API void ef_tone_curve_free(ef_tone_curve *curve);
+EF_API const char *ef_tone_curve_about(const ef_tone_curve *curve);
+/** Amount at `drive` (clamped to [0, 1]); its slope too unless NULL. */
+EF_API double ef_tone_curve_amount(const ef_tone_curve *curve, double drive,
+                                   double *slope);
+/** Drive that gives `amount` (clamped to [0, 1]), to 1e-14. */
+EF_API double ef_tone_curve_drive(const ef_tone_curve *curve, double amount);
+
+/* ---- Devices ----------------------------------------------------------- */
+
+typedef struct ef_device ef_device;
+
+EF_API void ef_device_free(ef_device *device);
+/** "display" ... Static. */
+EF_API const char *ef_device_kind(const ef_device *device);
+EF_API const char *ef_device_name(const ef_device *device);
+EF_API size_t ef_device_n_drives(const ef_device *device);
+/** "red" ...; borrowed until the device is freed. */
+EF_API const char *ef_device_drive_name(const ef_device *device, size_t i);
+/** The limit of channel `i` in words, `high` or low: "red at full drive",
+ * "red at zero". Borrowed. */
+EF_API const char *ef_device_limit_name(const ef_device *device, size_t i,
+                                        bool high);
+/** False for devices known by chromaticities or tristimulus values only. */
+EF_API bool ef_device_has_spectra(const ef_device *device);
+/** True when tristimulus values are in cd/m^2. */
+EF_API bool ef_device_absolute(const ef_device *device);
+/** What happens to each drive before the amounts mix; borrowed text. */
+EF_API const char *ef_device_curve_about(const ef_device *device, size_t i);
+/** Curve of channel `i`, and its inverse; see ef_tone_curve_amount. */
+EF_API double ef_device_amount(const ef_device *device, size_t i, double drive,
+                               double *slope);
+EF_API double ef_device_drive(const ef_device *device, size_t i,
+                              double amount);
+/** Grid of the spectra; count 0 when there are none. */
+EF_API const ef_grid *ef_device_grid(const ef_device *device);
+/** Stimulus spectrum at `drive[n_drives]` into `spectrum[grid count]`, and
+ * unless NULL its Jacobian d spectrum / d drive (count x n_drives).
+ * EF_NO_ANSWER when the device has no spectra. */
+EF_API ef_status ef_device_spectrum(const ef_device *device,
+                                    const double *drive, double *spectrum,
+                                    double *jacobian, ef_error *error);
+
+/* ---- Displays ---------------------------------------------------------- */
+
+typedef struct ef_display_settings {
+  /** One curve per primary in order, or one for all (n_curves 1), or none
+   * (n_curves 0: the encoding's own, else linear with a note). Copied. */
+  size_t n_curves;
+  const ef_tone_curve *const *curve;
+  /** Light falling on the screen: illuminance, the screen's diffuse reflectance
+   * (0 to 1) and the light's distribution. 0 lux: dark room. Needs spectra or
+   * tristimulus values in cd/m^2. */
+  double ambient_lux;
+  double screen_reflectance;
+  const ef_illuminant *ambient_illuminant;
+  const ef_notes *notes;
+} ef_display_settings;
+
+/** No curves, dark room, no notes. */
+EF_API ef_display_settings ef_display_settings_default(void);
+
+/** From measured spectra at full drive, each including the display's black:
+ * a spectrum named `black`, `white` or `ambient` plays that part, all others
+ * (3 to EF_MAX_DRIVES) are primaries in file order. Without `black` the black
+ * is zero and a note says so. `white`, if there, serves the additivity check
+ * of ef_display_additivity. EF_INVALID for surfaces, a primary without light,
+ * or white darker than black; EF_NO_ANSWER for primaries that are linearly
+ * dependent to the CIE 1931 observer (with the condition number). */
+EF_API ef_device *ef_display_from_spectra(const char *name,
+                                          const ef_spectra *spectra,
+                                          const ef_display_settings *settings,
+                                          ef_error *error);
+
+/** A published encoding by name: `srgb`, `bt709`, `bt2020`, `p3-d65`,
+ * `p3-dci`, `oprgb`, `romm`, `ebu`, `smpte-c`, `ntsc-1953`, `ap0`, `ap1`, ...
+ * No spectra; relative (Y of white 1). */
+EF_API ef_device *ef_display_from_encoding(const char *name,
+                                           const ef_display_settings *settings,
+                                           ef_error *error);
+/** A published encoding: chromaticities and its sources. */
+typedef struct ef_encoding {
+  const char *name;
+  const char *standard;
+  int h273; /**< ColourPrimaries code point of ITU-T H.273, 0 if none */
+  ef_xy red, green, blue, white;
+  const char *tone; /**< name of its tone curve */
+} ef_encoding;
+EF_API size_t ef_encoding_count(void);
+EF_API const ef_encoding *ef_encoding_at(size_t i);
+EF_API const ef_encoding *ef_encoding_find(const char *name, ef_error *error);
+/** Linear RGB to XYZ with Y of white = 1 (SMPTE RP 177), row-major. */
+EF_API ef_status ef_encoding_matrix(const ef_encoding *encoding,
+                                    double matrix[9], ef_error *error);
+
+/** Measured rows of a display: device values and what was measured for them. */
+typedef struct ef_measurements {
+  size_t n_rows;
+  size_t n_drives;
+  const double *drive; /**< n_rows x n_drives, 0 to 1 */
+  /** Either tristimulus values (n_rows x 3, CIE 1931, cd/m^2 when `absolute`)
+   * or spectra (n_rows x grid.count); the other is NULL. */
+  const double *xyz;
+  const double *spectrum;
+  ef_grid grid;
+  bool absolute;
+  const size_t *line;              /**< of each row in its file, or NULL */
+  const char *const *drive_name;   /**< or NULL: red, green, blue */
+} ef_measurements;
+
+/** How well the additive model describes one measured row. */
+typedef struct ef_residual {
+  size_t row;
+  double delta_e;      /**< CIEDE2000 model against measurement */
+  ef_xyz measured, predicted; /**< Y of the measured white = 100 */
+} ef_residual;
+
+/** Derives black (the rows with all drives 0, averaged), primaries (single
+ * channel at full drive), monotone tone curves (single-channel ramps, else the
+ * grey ramp, a repeated drive averaged, a falling step pooled with its
+ * neighbour and noted) and compares the model with every row that is a mixture
+ * of at least two channels. `residual` may be NULL, else it has room for n_rows
+ * and *n_residuals receives how many were filled, in row order.
+ * EF_NO_ANSWER says which row is missing (black may be: a note). */
+EF_API ef_device *ef_display_from_measurements(
+    const char *name, const ef_measurements *measurements,
+    const ef_display_settings *settings, ef_residual *residual,
+    size_t *n_residuals, ef_error *error);
+
+/** Sum of the primaries against the measured white. */
+typedef struct ef_additivity {
+  bool known;          /**< a white was measured */
+  double delta_e;      /**< CIEDE2000 for the CIE 1931 observer */
+  double luminance_ratio; /**< measured white over the sum of primaries */
+  ef_xyz measured, summed; /**< Y of the measured white = 100 */
+} ef_additivity;
+EF_API ef_status ef_display_additivity(const ef_device *device,
+                                       ef_additivity *out, ef_error *error);
+
+/* ---- Setups: a device seen by an observer ------------------------------ */
+
+typedef struct ef_setup ef_setup;
+
+/** Folds the device for the observer. Tristimulus values of the setup are
+ * scaled so that all drives at full give Y = 100. `illuminant` serves devices
+ * that reflect (NULL for lights). The device and the observer must outlive the
+ * setup. EF_NO_ANSWER when the device has no spectra and the observer is not
+ * the one its values were measured for (cie-1931). */
+EF_API ef_setup *ef_setup_new(const ef_device *device,
+                              const ef_observer *observer,
+                              const ef_illuminant *illuminant,
+                              const ef_notes *notes, ef_error *error);
+EF_API void ef_setup_free(ef_setup *setup);
+EF_API const ef_device *ef_setup_device(const ef_setup *setup);
+EF_API const ef_observer *ef_setup_observer(const ef_setup *setup);
+/** All amounts 1 (Y = 100) and all amounts 0. */
+EF_API ef_xyz ef_setup_white(const ef_setup *setup);
+EF_API ef_xyz ef_setup_black(const ef_setup *setup);
+/** Luminance of the white in cd/m^2; NaN when the device is not absolute. */
+EF_API double ef_setup_luminance_cd_m2(const ef_setup *setup);
+/** Factor from the device's own tristimulus unit to the setup's scale. */
+EF_API double ef_setup_scale(const ef_setup *setup);
+/** True when XYZ = black + sum of amounts times vectors: every additive
+ * device. */
+EF_API bool ef_setup_affine(const ef_setup *setup);
+/** Colour at `amount[n_drives]` (any reals for affine setups, [0, 1] else),
+ * and unless NULL its Jacobian d XYZ / d amount, 3 x n_drives row-major. */
+EF_API ef_xyz ef_setup_xyz(const ef_setup *setup, const double *amount,
+                           double *jacobian);
+/** XYZ of a light spectrum given in the unit of the device's own spectra, on
+ * the setup's scale: n spectra on `grid` to n x 3. EF_NO_ANSWER when the device
+ * has no spectra. */
+EF_API ef_status ef_setup_light_xyz(const ef_setup *setup, const ef_grid *grid,
+                                    size_t n, const double *spectrum,
+                                    const ef_notes *notes, double *xyz,
+                                    ef_error *error);
+
+/* ---- Profiles ---------------------------------------------------------- */
+
+/** Bytes of an ICC.1 version 4 matrix profile with one tone curve: display
+ * class, XYZ connection space, adapted to D50 by linear Bradford with the
+ * `chad` tag. Free with free(). */
+EF_API ef_status ef_profile_make_matrix(const char *description,
+                                        const ef_encoding *encoding,
+                                        unsigned char **bytes, size_t *length,
+                                        ef_error *error);
+
+#ifdef __cplusplus
+}
+#endif
+
+#endif

@@ -1,0 +1,97 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** \file
+ * Colour differences. A metric is coordinates, a difference between two
+ * points in them, and a local tensor; new ones are registered in one place
+ * and serve every command. */
+#ifndef EVENFIELD_DIFFERENCE_H
+#define EVENFIELD_DIFFERENCE_H
+
+#include <evenfield/base.h>
+#include <evenfield/colour.h>
+
+#ifdef __cplusplus
+extern "C" {
+#endif
+
+/** A difference formula. Static, never freed. */
+typedef struct ef_metric ef_metric;
+
+/** What the eye is adapted to while it compares. */
+typedef struct ef_conditions {
+  ef_xyz white; /**< reference white, on the scale of the colours compared */
+} ef_conditions;
+
+/** Lightness, chroma and hue part of a difference, signed (sample minus
+ * reference; hue positive anticlockwise), weighted as the formula weights
+ * them: their squares sum to the squared difference for formulas without an
+ * interaction term. */
+typedef struct ef_components {
+  double lightness, chroma, hue;
+} ef_components;
+
+/** A just-noticeable difference with its provenance. */
+typedef struct ef_jnd {
+  double value;          /**< in units of the metric; NaN when none published */
+  const char *criterion; /**< e.g. "50 % of observers see it" */
+  const char *source;    /**< published source */
+} ef_jnd;
+
+EF_API size_t ef_metric_count(void);
+EF_API const ef_metric *ef_metric_at(size_t i);
+/** "cielab", "ciede2000"; EF_UNKNOWN_NAME gives the nearest names. */
+EF_API const ef_metric *ef_metric_find(const char *name, ef_error *error);
+EF_API const char *ef_metric_name(const ef_metric *metric);
+/** "CIEDE2000", with its symbol "Delta E*00" and its source. Static. */
+EF_API const char *ef_metric_title(const ef_metric *metric);
+EF_API const char *ef_metric_symbol(const ef_metric *metric);
+EF_API const char *ef_metric_source(const ef_metric *metric);
+/** Published default; depends on viewing conditions and observers, and outputs
+ * say so. */
+EF_API ef_jnd ef_metric_jnd(const ef_metric *metric);
+
+/** XYZ to the metric's own coordinates (CIELAB for the CIE formulas) and back.
+ * `conditions->white` must be positive. */
+EF_API void ef_metric_coordinates(const ef_metric *metric, ef_xyz xyz,
+                                  const ef_conditions *conditions,
+                                  double coordinate[3]);
+EF_API ef_xyz ef_metric_xyz(const ef_metric *metric,
+                            const double coordinate[3],
+                            const ef_conditions *conditions);
+/** d coordinate / d XYZ at `xyz`, row-major. */
+EF_API void ef_metric_jacobian(const ef_metric *metric, ef_xyz xyz,
+                               const ef_conditions *conditions,
+                               double jacobian[9]);
+
+/** Difference of two points in the metric's coordinates, >= 0. */
+EF_API double ef_metric_difference(const ef_metric *metric,
+                                   const double reference[3],
+                                   const double sample[3]);
+/** The same with its parts. */
+EF_API double ef_metric_components(const ef_metric *metric,
+                                   const double reference[3],
+                                   const double sample[3],
+                                   ef_components *components);
+/** n pairs, n x 3 each, over up to `jobs` threads (0: all cores); results do
+ * not depend on `jobs` or `n`. */
+EF_API void ef_metric_difference_batch(const ef_metric *metric, size_t n,
+                                       const double *reference,
+                                       const double *sample, int jobs,
+                                       double *difference);
+/** Local metric tensor at `coordinate`, row-major symmetric positive definite:
+ * a small step d has the difference sqrt(d' G d). */
+EF_API void ef_metric_tensor(const ef_metric *metric,
+                             const double coordinate[3], double tensor[9]);
+
+/* The formulas as plain functions. */
+
+/** CIE 1976 (ISO/CIE 11664-4). */
+EF_API double ef_delta_e_cielab(ef_lab reference, ef_lab sample);
+/** CIEDE2000 (ISO/CIE 11664-6), parametric factors k_L, k_C, k_H. */
+EF_API double ef_delta_e_ciede2000(ef_lab reference, ef_lab sample, double k_l,
+                                   double k_c, double k_h);
+
+#ifdef __cplusplus
+}
+#endif
+
+#endif

@@ -1,0 +1,192 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** \file
+ * Files in and out. Readers check and name what is wrong by file, line and
+ * field; they never compute colour. Outputs appear whole or not at all. */
+#ifndef EVENFIELD_EXCHANGE_H
+#define EVENFIELD_EXCHANGE_H
+
+#include <evenfield/base.h>
+#include <evenfield/spectrum.h>
+
+#ifdef __cplusplus
+extern "C" {
+#endif
+
+/* ---- Reading tables ---------------------------------------------------- */
+
+/** What the rows of a table are. */
+typedef enum ef_content {
+  EF_CONTENT_SPECTRA, /**< one spectrum a row (long files are turned) */
+  EF_CONTENT_LAB,     /**< L, a, b */
+  EF_CONTENT_XYZ,     /**< X, Y, Z */
+  EF_CONTENT_XYY,     /**< x, y, Y */
+  EF_CONTENT_DEVICE   /**< device values only */
+} ef_content;
+
+/** "spectra", "L,a,b" ... Static. */
+EF_API const char *ef_content_text(ef_content content);
+
+/** Answers to what a file may leave open; AUTO takes the file's word, else a
+ * documented rule with a note. */
+typedef enum ef_kind_choice {
+  EF_KIND_AUTO,
+  EF_KIND_SURFACE,
+  EF_KIND_LIGHT
+} ef_kind_choice;
+
+typedef struct ef_reader_settings {
+  ef_kind_choice kind;
+  bool skip_bad;      /**< leave out rows at fault, note and count them */
+  double device_max;  /**< device value of full drive; 0: the file's
+                           `# device_max:` line, else 255 when a value exceeds
+                           1 (100 for C, M, Y), else 1, with a note */
+  size_t max_bytes;   /**< of a file held in memory whole (long spectra) */
+  const ef_notes *notes;
+} ef_reader_settings;
+/** AUTO, no skipping, 1 GiB, no notes. */
+EF_API ef_reader_settings ef_reader_settings_default(void);
+
+/** An open table. Streams: memory does not grow with the number of rows,
+ * except for long-form spectra, which are held whole. */
+typedef struct ef_reader ef_reader;
+
+/** `path`: a file, "-" for standard input, or "demo:NAME" for a file of the
+ * built-in scenario. Reads the comment lines and the header row and decides
+ * the content. Free with ef_reader_free.
+ *
+ * CSV per RFC 4180 with `#` comment lines before the header and between rows;
+ * comma, semicolon (then a decimal comma is understood) or tab; byte-order
+ * mark; CRLF. Header: `wavelength_nm` first: long spectra; columns named by
+ * wavelength (400, 400nm, nm400): wide spectra; L,a,b / X,Y,Z / x,y,Y;
+ * R,G,B / C,M,Y device values beside any of these or alone; `name` anywhere.
+ * Comment lines `# quantity:`, `# unit:`, `# device_max:` are understood.
+ * Kind rule: the settings; else a quantity line that says reflectance,
+ * radiance factor, transmittance (surface) or radiance, power, light
+ * (light); else surface when every value of the first rows lies in 0 to 2,
+ * light otherwise, with a note. Refused: values below zero of lights, values
+ * of surfaces below -0.02 or above 2 (percent: the message says so), text in a
+ * number, nan, inf, duplicate or unsorted wavelengths, repeated column names,
+ * ragged rows. */
+EF_API ef_reader *ef_reader_open(const char *path,
+                                 const ef_reader_settings *settings,
+                                 ef_error *error);
+/** The same from `length` bytes of text that must outlive the reader. */
+EF_API ef_reader *ef_reader_from_text(const char *name, const char *text,
+                                      size_t length,
+                                      const ef_reader_settings *settings,
+                                      ef_error *error);
+EF_API void ef_reader_free(ef_reader *reader);
+
+/** What is known once the header (and the first rows) are read. Borrowed. */
+typedef struct ef_reader_head {
+  const char *file;
+  const char *title;       /**< of the `# title:` line, "" if none */
+  ef_content content;
+  size_t width;            /**< values per row: samples, or 3 */
+  ef_grid grid;            /**< of spectra; count 0 else */
+  ef_kind kind;            /**< of spectra */
+  bool absolute;           /**< unit line says W sr-1 m-2 nm-1, or X,Y,Z in
+                                cd/m2 */
+  bool has_names;          /**< rows have names of their own */
+  size_t n_device;         /**< device values per row, 0 if none */
+  const char *const *device_name; /**< "red", "green", "blue", or "cyan" ... */
+} ef_reader_head;
+EF_API const ef_reader_head *ef_reader_get_head(const ef_reader *reader);
+
+/** Some rows. All pointers are borrowed until the next call. */
+typedef struct ef_block {
+  size_t n;
+  const char *const *name;  /**< "row 7" style names where the file has none */
+  const size_t *line;       /**< line in the file (column number for long) */
+  const double *value;      /**< n x width */
+  const double *device;     /**< n x n_device in [0, 1], NULL if none */
+} ef_block;
+
+/** Next rows, at most `max_rows`; n = 0 at the end. */
+EF_API ef_status ef_reader_next(ef_reader *reader, size_t max_rows,
+                                ef_block *block, ef_error *error);
+/** Rows left out so far because they were at fault (skip_bad). */
+EF_API size_t ef_reader_skipped(const ef_reader *reader);
+
+/** All spectra of a file. EF_MALFORMED when it holds something else. */
+EF_API ef_spectra *ef_spectra_read(const char *path,
+                                   const ef_reader_settings *settings,
+                                   ef_error *error);
+
+/** Names and texts of the built-in scenario's files ("livery" ...). */
+EF_API size_t ef_demo_count(void);
+EF_API const char *ef_demo_name(size_t i);
+EF_API const char *ef_demo_text(size_t i, size_t *length);
+
+/* ---- Writing ----------------------------------------------------------- */
+
+/** An output that appears whole or not at all: written beside its place,
+ * synced, renamed by ef_output_commit. */
+typedef struct ef_output ef_output;
+
+/** NULL or "-": standard output (written through, nothing to undo).
+ * EF_EXISTS when the file is there and `overwrite` is false. */
+EF_API ef_output *ef_output_open(const char *path, bool overwrite,
+                                 ef_error *error);
+EF_API ef_status ef_output_write(ef_output *output, const void *bytes,
+                                 size_t length, ef_error *error);
+EF_API ef_status ef_output_text(ef_output *output, const char *text,
+                                ef_error *error);
+/** Finishes and frees; on failure nothing is left behind. */
+EF_API ef_status ef_output_commit(ef_output *output, ef_error *error);
+/** Drops what was written and frees; NULL is fine. */
+EF_API void ef_output_discard(ef_output *output);
+/** Creates a directory unless it is there. */
+EF_API ef_status ef_directory_make(const char *path, ef_error *error);
+
+/** Rows of CSV, written as they come; quotes what needs it; numbers with all
+ * digits; NaN as an empty field. Errors are kept and reported by
+ * ef_csv_finish. Free with ef_csv_finish; the output stays the caller's. */
+typedef struct ef_csv ef_csv;
+EF_API ef_csv *ef_csv_new(ef_output *output, ef_error *error);
+EF_API void ef_csv_comment(ef_csv *csv, const char *text);
+EF_API void ef_csv_text(ef_csv *csv, const char *text);
+EF_API void ef_csv_number(ef_csv *csv, double value);
+EF_API void ef_csv_end_row(ef_csv *csv);
+EF_API ef_status ef_csv_finish(ef_csv *csv, ef_error *error);
+
+/** One JSON document, written as it comes (RFC 8259, UTF-8): NaN and
+ * infinities as null, invalid UTF-8 as U+FFFD. `key` is NULL inside arrays and
+ * for the top value. Errors are kept and reported by ef_json_finish; nesting
+ * that does not close is EF_INVALID there. */
+typedef struct ef_json ef_json;
+EF_API ef_json *ef_json_new(ef_output *output, ef_error *error);
+EF_API void ef_json_begin_object(ef_json *json, const char *key);
+EF_API void ef_json_end_object(ef_json *json);
+EF_API void ef_json_begin_array(ef_json *json, const char *key);
+EF_API void ef_json_end_array(ef_json *json);
+EF_API void ef_json_text(ef_json *json, const char *key, const char *text);
+EF_API void ef_json_number(ef_json *json, const char *key, double value);
+EF_API void ef_json_integer(ef_json *json, const char *key, int64_t value);
+EF_API void ef_json_boolean(ef_json *json, const char *key, bool value);
+EF_API void ef_json_null(ef_json *json, const char *key);
+EF_API ef_status ef_json_finish(ef_json *json, ef_error *error);
+
+/* ---- PNG --------------------------------------------------------------- */
+
+/** Colour tags of a picture (PNG third edition): code points of ITU-T H.273 in
+ * cICP and an ICC profile in iCCP that says the same for readers without
+ * cICP. */
+typedef struct ef_png_tags {
+  int primaries, transfer;      /**< cICP; 0: no cICP chunk */
+  const char *profile_name;     /**< 1 to 79 Latin-1 characters */
+  const unsigned char *profile; /**< iCCP; NULL: no chunk */
+  size_t profile_length;
+} ef_png_tags;
+
+/** RGB picture, `bits` 8 or 16; `sample` is height x width x 3 in 16-bit range
+ * (8-bit pictures take the high part, rounded). `tags` may be NULL: untagged. */
+EF_API ef_status ef_png_write(const char *path, bool overwrite, size_t width,
+                              size_t height, int bits, const uint16_t *sample,
+                              const ef_png_tags *tags, ef_error *error);
+
+#ifdef __cplusplus
+}
+#endif
+
+#endif
