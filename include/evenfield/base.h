@@ -17,10 +17,10 @@
 
 #if defined(__GNUC__)
 #define EF_API __attribute__((visibility("default")))
-#define EF_PRINTF(format, first) __attribute__((format(printf, format, first)))
+#define EF_PRINTF(text, first) __attribute__((format(printf, text, first)))
 #else
 #define EF_API
-#define EF_PRINTF(format, first)
+#define EF_PRINTF(text, first)
 #endif
 
 #ifdef __cplusplus
@@ -91,9 +91,10 @@ EF_API size_t ef_number_format_fixed(double value, int decimals,
 EF_API bool ef_number_parse(const char *text, size_t length, char decimal_mark,
                             double *value);
 
-/** Number of names of `known[0 .. n)` close to `name` (edit distance at most a
- * third of its length, case ignored), the nearest first; their indices go to
- * `index[0 .. max)`. Names that `name` is a prefix of count as close. */
+/** Finds the names of `known[0 .. n)` close to `name` (edit distance at most a
+ * third of its length, case ignored), the nearest first, and writes their
+ * indices to `index[0 .. max)`. Names that `name` is a prefix of count as
+ * close. Returns how many were written. */
 EF_API size_t ef_nearest_names(const char *name, const char *const *known,
                                size_t n, size_t max, size_t *index);
 

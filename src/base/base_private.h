@@ -1,0 +1,116 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** \file
+ * What the folders above base share and the public does not see. */
+#ifndef EVENFIELD_BASE_PRIVATE_H
+#define EVENFIELD_BASE_PRIVATE_H
+
+#include <evenfield/base.h>
+
+/* ---- Errors and notes (error.c) ---------------------------------------- */
+
+/** Fills `error` (may be NULL) with the status and a message, without a place,
+ * and returns `status`, so that `return ef__error_set(...)` is one line.
+ * Control characters of quoted input become '?'; a message that is too long is
+ * cut at a whole UTF-8 character. */
+ef_status ef__error_set(ef_error *error, ef_status status, const char *format,
+                        ...) EF_PRINTF(3, 4);
+
+/** Adds the place to an error already set: file or field NULL, line or column
+ * 0 leave what is there. Returns the status of the error, EF_OK for NULL. */
+ef_status ef__error_place(ef_error *error, const char *file, size_t line,
+                          size_t column, const char *field);
+
+/** "out of memory" for what `purpose` names. Returns EF_NO_MEMORY. */
+ef_status ef__error_memory(ef_error *error, const char *purpose);
+
+/** One line to the notes sink; nothing when `notes` or its function is NULL. */
+void ef__note(const ef_notes *notes, const char *format, ...) EF_PRINTF(2, 3);
+
+/* ---- Memory (memory.c) ------------------------------------------------- */
+
+/** *product = a * b; false on overflow. */
+bool ef__size_multiply(size_t a, size_t b, size_t *product);
+/** *sum = a + b; false on overflow. */
+bool ef__size_add(size_t a, size_t b, size_t *sum);
+
+/** count * size bytes, uninitialised; NULL on overflow or without memory. Not
+ * NULL for zero bytes. Released with free(). */
+void *ef__allocate(size_t count, size_t size);
+/** The same, zeroed. */
+void *ef__allocate_zeroed(size_t count, size_t size);
+/** Resizes; the old block stays valid when NULL comes back. */
+void *ef__reallocate(void *block, size_t count, size_t size);
+/** A copy of `length` bytes with a terminator after them. */
+char *ef__copy_text(const char *text, size_t length);
+
+/** One array of a block: the pointer to set, and its size. */
+typedef struct ef__part {
+  void *pointer; /**< address of the array's pointer, any pointer type */
+  size_t count;
+  size_t size;
+} ef__part;
+
+/** Allocates all arrays in one zeroed block, each aligned for any type, and
+ * sets their pointers. The block is the return value and is released with
+ * free(); NULL (pointers untouched) on overflow or without memory. */
+void *ef__allocate_block(size_t n, const ef__part *part);
+
+/* ---- Small linear algebra (matrix.c) ----------------------------------- */
+/* 3x3 matrices are nine doubles, row-major. Outputs may alias inputs. */
+
+void ef__mat3_multiply(const double a[9], const double b[9], double out[9]);
+void ef__mat3_apply(const double m[9], const double v[3], double out[3]);
+void ef__mat3_transpose(const double m[9], double out[9]);
+double ef__mat3_determinant(const double m[9]);
+/** False, and `out` untouched, when the matrix is singular to rounding: its
+ * determinant is below 9 DBL_EPSILON times the product of its row norms. */
+bool ef__mat3_inverse(const double m[9], double out[9]);
+
+/** Solves A X = B by elimination with row scaling and partial pivoting; `a`
+ * (n x n) is destroyed, `b` (n x n_right) becomes X. False when A is singular
+ * to rounding; both arrays are then undefined. */
+bool ef__solve(size_t n, double *a, size_t n_right, double *b);
+
+/** Doubles of scratch that ef__condition needs. */
+size_t ef__condition_scratch(size_t n_rows, size_t n_columns);
+/** Ratio of the largest to the smallest singular value (2-norm condition
+ * number) of a full matrix of any shape; INFINITY when columns (or rows, if
+ * there are fewer) are dependent to rounding. Optional `singular` receives
+ * the min(n_rows, n_columns) singular values, largest first. */
+ef_status ef__condition(size_t n_rows, size_t n_columns, const double *a,
+                        double *scratch, double *singular, double *condition,
+                        ef_error *error);
+
+/* ---- Loops (parallel.c) ------------------------------------------------ */
+
+/** Calls body(ctx, begin, end) for the chunks [0, chunk), [chunk, 2 chunk) ...
+ * of [0, n) on up to `jobs` threads (0: as many as there are cores online), in
+ * any order, and returns when all are done. Chunks depend on n and `chunk`
+ * alone, so a body that writes only to its own range gives the same result
+ * with any number of threads. A single chunk runs on the calling thread.
+ * Threads that cannot be started are done without. `chunk` 0 counts as 1. */
+void ef__parallel_for(size_t n, size_t chunk, int jobs,
+                      void (*body)(void *ctx, size_t begin, size_t end),
+                      void *ctx);
+
+/* ---- GSL (gsl.c) ------------------------------------------------------- */
+
+/** Switches GSL's process-ending error handler off, once. To be called before
+ * any gsl_ function; from any thread. */
+void ef__gsl_ready(void);
+
+/** Translates a GSL return code: EF_OK for success, else the error with
+ * `purpose` ("fitting the tone curve") and GSL's text. */
+ef_status ef__gsl_status(int code, const char *purpose, ef_error *error);
+
+/* ---- Names (names.c) --------------------------------------------------- */
+
+/** Equal but for the case of ASCII letters. */
+bool ef__name_equal(const char *a, const char *b);
+
+/** EF_UNKNOWN_NAME: "no WHAT is called 'NAME'; near names: a, b, c" or
+ * "...; known: a, b, ..." (the first few) when none is near. */
+ef_status ef__error_unknown(ef_error *error, const char *what, const char *name,
+                            const char *const *known, size_t n);
+
+#endif

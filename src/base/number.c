@@ -1,0 +1,265 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/* The decimal mark of strtod and snprintf follows the process-wide locale.
+ * Neither is given the chance: text for strtod holds whole digits and an
+ * exponent, and from snprintf's text only the digits are taken. */
+#include "base/base_private.h"
+
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+enum {
+  /* A decimal can differ from the midpoint of two doubles in its 767th digit
+   * at the latest; what follows matters only as zero or not. */
+  MAX_DIGITS = 770,
+  FAST_DIGITS = 19, /* always fit in 64 bits */
+  /* Exponents beyond this overflow or vanish whatever the digits are, as
+   * texts are shorter than 2^31 bytes in any sane input. */
+  MAX_EXPONENT = 1000000000,
+  SHORTEST_FIXED = -5, /* first and last decimal exponent written */
+  LONGEST_FIXED = 16   /* without an exponent */
+};
+
+/* ---- Reading ----------------------------------------------------------- */
+
+/* A decimal number, taken apart: digit[0 .. n) x 10^exponent. */
+typedef struct decimal {
+  bool is_negative;
+  size_t n;         /* leading zeros are not kept */
+  uint64_t leading; /* the first FAST_DIGITS of them as an integer */
+  long long exponent;
+  char digit[MAX_DIGITS + 1];
+} decimal;
+
+static bool is_digit(char c) {
+  return c >= '0' && c <= '9';
+}
+
+static void add_digit(decimal *d, char c) {
+  if (d->n == 0 && c == '0') return;
+  if (d->n < FAST_DIGITS) d->leading = d->leading * 10 + (uint64_t)(c - '0');
+  if (d->n < MAX_DIGITS) {
+    d->digit[d->n++] = c;
+    return;
+  }
+  if (c != '0') d->digit[MAX_DIGITS - 1] = '1'; /* not a tie any more */
+  ++d->exponent;
+}
+
+static const char *scan_digits(const char *at, const char *end, decimal *d,
+                               bool in_fraction, bool *any) {
+  for (; at < end && is_digit(*at); ++at) {
+    add_digit(d, *at);
+    if (in_fraction) --d->exponent;
+    *any = true;
+  }
+  return at;
+}
+
+/* After the 'e': optional sign and at least one digit. NULL if not so. */
+static const char *scan_exponent(const char *at, const char *end,
+                                 long long *exponent) {
+  const bool is_negative = at < end && *at == '-';
+  if (at < end && (*at == '-' || *at == '+')) ++at;
+  if (at == end || !is_digit(*at)) return NULL;
+  long long value = 0;
+  for (; at < end && is_digit(*at); ++at) {
+    if (value < MAX_EXPONENT) value = value * 10 + (*at - '0');
+  }
+  *exponent += is_negative ? -value : value;
+  return at;
+}
+
+static bool scan(const char *text, size_t length, char mark, decimal *d) {
+  const char *const end = text + length;
+  const char *at = text;
+  bool any = false;
+  d->is_negative = at < end && *at == '-';
+  d->n = 0;
+  d->leading = 0;
+  d->exponent = 0;
+  if (at < end && (*at == '-' || *at == '+')) ++at;
+  at = scan_digits(at, end, d, false, &any);
+  if (at < end && *at == mark) at = scan_digits(at + 1, end, d, true, &any);
+  if (!any) return false;
+  if (at < end && (*at == 'e' || *at == 'E')) {
+    at = scan_exponent(at + 1, end, &d->exponent);
+  }
+  return at == end;
+}
+
+/* Both factors are exact doubles, so the one rounding is the right one
+ * (Clinger 1990). False when they are not. */
+static bool convert_exactly(const decimal *d, double *value) {
+  static const double power[] = {1e0,  1e1,  1e2,  1e3,  1e4,  1e5,
+                                 1e6,  1e7,  1e8,  1e9,  1e10, 1e11,
+                                 1e12, 1e13, 1e14, 1e15, 1e16, 1e17,
+                                 1e18, 1e19, 1e20, 1e21, 1e22};
+  if (d->n > FAST_DIGITS || d->leading > UINT64_C(1) << 53) return false;
+  if (d->exponent < -22 || d->exponent > 22) return false;
+  const double whole = (double)d->leading;
+  *value = d->exponent < 0 ? whole / power[-d->exponent]
+                           : whole * power[d->exponent];
+  return true;
+}
+
+static double convert(decimal *d) {
+  double value;
+  if (d->n == 0) return 0;
+  if (convert_exactly(d, &value)) return value;
+  char text[MAX_DIGITS + 32];
+  d->digit[d->n] = '\0';
+  snprintf(text, sizeof text, "%se%lld", d->digit, d->exponent);
+  return strtod(text, NULL);
+}
+
+bool ef_number_parse(const char *text, size_t length, char decimal_mark,
+                     double *value) {
+  decimal d;
+  if (!scan(text, length, decimal_mark, &d)) return false;
+  const double magnitude = convert(&d);
+  if (!isfinite(magnitude)) return false;
+  *value = d.is_negative ? -magnitude : magnitude;
+  return true;
+}
+
+/* ---- Writing ----------------------------------------------------------- */
+
+static size_t put(char text[EF_NUMBER_TEXT], const char *word) {
+  const size_t length = strlen(word);
+  memcpy(text, word, length + 1);
+  return length;
+}
+
+/* |value| rounded to n digits, without the mark; returns the exponent of the
+ * first digit. */
+static int round_to_digits(double value, int n, char digit[20]) {
+  char text[40];
+  snprintf(text, sizeof text, "%.*e", n - 1, fabs(value));
+  const char *const e = strchr(text, 'e');
+  int kept = 0;
+  for (const char *at = text; at < e; ++at) {
+    if (is_digit(*at)) digit[kept++] = *at;
+  }
+  digit[kept] = '\0';
+  return atoi(e + 1);
+}
+
+static double digits_value(const char *digit, int exponent) {
+  char text[40];
+  const int n = (int)strlen(digit);
+  const int length =
+      snprintf(text, sizeof text, "%se%d", digit, exponent - (n - 1));
+  double value = 0;
+  ef_number_parse(text, (size_t)length, '.', &value);
+  return value;
+}
+
+static void drop_trailing_zeros(char *digit) {
+  size_t n = strlen(digit);
+  while (n > 1 && digit[n - 1] == '0') digit[--n] = '\0';
+}
+
+/* Adds one unit to the last digit; returns the exponent of the first digit. */
+static int add_unit(char *digit, int exponent) {
+  size_t i = strlen(digit);
+  while (i > 0 && digit[i - 1] == '9') digit[--i] = '0';
+  if (i > 0) {
+    ++digit[i - 1];
+    return exponent;
+  }
+  digit[0] = '1'; /* 999 became 000: 100, one place up */
+  return exponent + 1;
+}
+
+/* The fewest digits that read back to |value|, the nearest such to it. Any
+ * decimal of up to 15 digits survives the way through a normal double, so
+ * where one exists the 15-digit rounding is it with zeros behind; subnormals
+ * carry fewer and are searched from one digit up. Above a power of two the
+ * doubles lie twice as far apart as below: the decimal next above it may read
+ * back where the nearest, just below it, does not. */
+static int shortest_digits(double value, char digit[20]) {
+  const double magnitude = fabs(value);
+  int n = fpclassify(value) == FP_SUBNORMAL ? 1 : 15;
+  for (; n < 17; ++n) {
+    int exponent = round_to_digits(magnitude, n, digit);
+    double back = digits_value(digit, exponent);
+    if (back < magnitude) {
+      exponent = add_unit(digit, exponent);
+      back = digits_value(digit, exponent);
+    }
+    if (back == magnitude) {
+      drop_trailing_zeros(digit);
+      return exponent;
+    }
+  }
+  const int exponent = round_to_digits(magnitude, 17, digit);
+  drop_trailing_zeros(digit);
+  return exponent;
+}
+
+/* Digits, mark and zeros for an exponent in the plain range. */
+static char *put_plain(char *to, const char *digit, int n, int exponent) {
+  if (exponent < 0) {
+    *to++ = '0';
+    *to++ = '.';
+    for (int i = -1; i > exponent; --i) *to++ = '0';
+  }
+  for (int i = 0; i < n || i <= exponent; ++i) {
+    *to++ = i < n ? digit[i] : '0';
+    if (i == exponent && i + 1 < n) *to++ = '.';
+  }
+  return to;
+}
+
+size_t ef_number_format(double value, char text[EF_NUMBER_TEXT]) {
+  if (isnan(value)) return put(text, "nan");
+  if (isinf(value)) return put(text, value < 0 ? "-inf" : "inf");
+  if (value == 0) return put(text, signbit(value) ? "-0" : "0");
+  char digit[20];
+  const int exponent = shortest_digits(value, digit);
+  const int n = (int)strlen(digit);
+  char *to = text;
+  if (value < 0) *to++ = '-';
+  if (exponent >= SHORTEST_FIXED && exponent <= LONGEST_FIXED) {
+    to = put_plain(to, digit, n, exponent);
+    *to = '\0';
+  } else {
+    *to++ = digit[0];
+    if (n > 1) *to++ = '.';
+    for (int i = 1; i < n; ++i) *to++ = digit[i];
+    to += snprintf(to, 8, "e%d", exponent);
+  }
+  return (size_t)(to - text);
+}
+
+/* Replaces whatever stands between two groups of digits by one '.'. */
+static size_t set_decimal_point(char *text, size_t length) {
+  size_t from = text[0] == '-';
+  while (from < length && is_digit(text[from])) ++from;
+  size_t to = from;
+  while (to < length && !is_digit(text[to])) ++to;
+  if (to == length) return length;
+  text[from++] = '.';
+  memmove(text + from, text + to, length - to + 1);
+  return length - (to - from);
+}
+
+static bool is_all_zeros(const char *text) {
+  return strspn(text, "-0.") == strlen(text);
+}
+
+size_t ef_number_format_fixed(double value, int decimals,
+                              char text[EF_NUMBER_TEXT]) {
+  if (!isfinite(value)) return ef_number_format(value, text);
+  const int shown = decimals < 0 ? 0 : decimals > 12 ? 12 : decimals;
+  const int wanted = snprintf(text, EF_NUMBER_TEXT, "%.*f", shown, value);
+  if (wanted < 0 || wanted >= EF_NUMBER_TEXT) return ef_number_format(value, text);
+  size_t length = set_decimal_point(text, (size_t)wanted);
+  if (text[0] == '-' && is_all_zeros(text)) {
+    memmove(text, text + 1, length);
+    --length;
+  }
+  return length;
+}
