@@ -148,11 +148,14 @@ typedef struct ef_measurements {
   const char *const *drive_name;   /**< or NULL: red, green, blue */
 } ef_measurements;
 
-/** How well the additive model describes one measured row. */
+/** How well the additive model describes one measured row: what was measured,
+ * what the model predicts, and the white both are relative to. Any metric then
+ * gives the size, e.g. ef_delta_e_ciede2000 of the two in CIELAB with
+ * `white`. CIE 1931 observer. */
 typedef struct ef_residual {
   size_t row;
-  double delta_e;      /**< CIEDE2000 model against measurement */
-  ef_xyz measured, predicted; /**< Y of the measured white = 100 */
+  ef_xyz measured, predicted; /**< Y of the white = 100 */
+  ef_xyz white; /**< measured with all drives at full, else the model's */
 } ef_residual;
 
 /** Derives black (the rows with all drives 0, averaged), primaries (single
@@ -167,10 +170,11 @@ EF_API ef_device *ef_display_from_measurements(
     const ef_display_settings *settings, ef_residual *residual,
     size_t *n_residuals, ef_error *error);
 
-/** Sum of the primaries against the measured white. */
+/** Sum of the primaries against the measured white, both with the black in
+ * them and without ambient light, for the CIE 1931 observer. `measured` is the
+ * white that a difference between the two is to be taken against. */
 typedef struct ef_additivity {
-  bool known;          /**< a white was measured */
-  double delta_e;      /**< CIEDE2000 for the CIE 1931 observer */
+  bool known;          /**< a white was measured; else the rest is NaN */
   double luminance_ratio; /**< measured white over the sum of primaries */
   ef_xyz measured, summed; /**< Y of the measured white = 100 */
 } ef_additivity;
