@@ -28,11 +28,12 @@ extern "C" {
  * memory. */
 typedef struct ef_tone_curve ef_tone_curve;
 
-/** `linear`; `power:G` with 0.1 <= G <= 10; `iec61966-2-1`. */
+/** `linear`; `power:G` with 0.1 <= G <= 10; `iec61966-2-1`; `romm` (ISO
+ * 22028-2: power 1.8 with a linear toe). EF_UNKNOWN_NAME gives near names. */
 EF_API ef_tone_curve *ef_tone_curve_new(const char *name, ef_error *error);
 /** Monotone (Steffen 1990) interpolation of a measured ramp: n >= 2 points,
- * drive strictly increasing from 0 to 1, level increasing; levels are scaled so
- * that the ends are 0 and 1. EF_INVALID names the point at fault. */
+ * drive strictly increasing from 0 to 1, level strictly increasing; levels are scaled
+ * so that the ends are 0 and 1. EF_INVALID names the point at fault. */
 EF_API ef_tone_curve *ef_tone_curve_from_ramp(size_t n, const double *drive,
                                               const double *level,
                                               ef_error *error);
@@ -40,10 +41,14 @@ EF_API ef_tone_curve *ef_tone_curve_copy(const ef_tone_curve *curve,
                                          ef_error *error);
 EF_API void ef_tone_curve_free(ef_tone_curve *curve);
 EF_API const char *ef_tone_curve_about(const ef_tone_curve *curve);
-/** Amount at `drive` (clamped to [0, 1]); its slope too unless NULL. */
+/** Amount at `drive` (clamped to [0, 1]); its slope too unless NULL (infinite
+ * at 0 for a power below 1). NaN gives NaN. */
 EF_API double ef_tone_curve_amount(const ef_tone_curve *curve, double drive,
                                    double *slope);
-/** Drive that gives `amount` (clamped to [0, 1]), to 1e-14. */
+/** Drive that gives `amount` (clamped to [0, 1]): the drive it came from to
+ * 1e-14, as far as the slope of the curve lets an amount tell drives apart. The
+ * published constants of `iec61966-2-1` leave a gap of 2.3e-9 between its two
+ * parts: an amount inside it gives the drive of the joint. */
 EF_API double ef_tone_curve_drive(const ef_tone_curve *curve, double amount);
 
 /* ---- Devices ----------------------------------------------------------- */
