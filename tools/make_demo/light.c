@@ -57,7 +57,7 @@ enum { N_LEDS = 3 };
 
 void write_lab_display(FILE *out) {
   /* Peak radiance in W sr^-1 m^-2 nm^-1; 20 nm wide at half height, with a
-   * longer foot towards short wavelengths. */
+   * foot: of the red towards short wavelengths, of the others towards long. */
   static const struct curve led[N_LEDS] = {
     {0.0, {{BELL, 9.6e-3, 630.0, 8.3}, {BELL, 9.0e-4, 616.0, 13.0}}},
     {0.0, {{BELL, 8.1e-3, 525.0, 8.4}, {BELL, 6.0e-4, 540.0, 16.0}}},
