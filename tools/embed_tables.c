@@ -331,11 +331,24 @@ static void check_range(const table *t) {
              t->cell.word[(i - 1) * t->column.count], step);
 }
 
+/* A zero byte would hide the rest of its line. */
+static void check_bytes(const table *t, size_t length) {
+  if (length == 0)
+    refuse(t->path, 0, "the file is empty");
+  size_t line_number = 1;
+  for (size_t i = 0; i < length; i++) {
+    if (t->text[i] == '\0')
+      refuse(t->path, line_number, "a zero byte");
+    line_number += t->text[i] == '\n';
+  }
+}
+
 static void read_table(table *t, const char *path) {
   *t = (table){.path = path};
   read_name(t);
   size_t length, line_number = 0;
   t->text = read_file(path, &length);
+  check_bytes(t, length);
   char *rest = t->text;
   for (char *line; (line = next_line(&rest));) {
     line_number++;
@@ -348,8 +361,6 @@ static void read_table(table *t, const char *path) {
     else
       read_row(t, line_number, line);
   }
-  if (rest != t->text + length)
-    refuse(path, line_number, "a zero byte");
   if (!t->header_row_line)
     refuse(path, line_number, "the file ends before a header row");
   if (t->cell.count == 0)
