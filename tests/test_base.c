@@ -547,7 +547,9 @@ static void near_names_come_nearest_first(void **state) {
   assert_int_equal(index[0], 5);
   assert_int_equal(ef_nearest_names("cie", flags, 6, 2, index), 2);
   assert_int_equal(index[1], 1);
-  assert_int_equal(ef_nearest_names("bt790", flags, 6, 6, index), 0);
+  assert_int_equal(ef_nearest_names("bt790", flags, 6, 6, index), 1);
+  assert_int_equal(index[0], 4); /* two letters swapped */
+  assert_int_equal(ef_nearest_names("bt7x0", flags, 6, 6, index), 0);
   assert_int_equal(ef_nearest_names("bt70", flags, 6, 6, index), 1);
   assert_int_equal(ef_nearest_names("", flags, 6, 6, index), 0);
   assert_int_equal(ef_nearest_names("cie-1934", flags, 6, 0, NULL), 0);

@@ -125,7 +125,8 @@ typedef enum ef_extension {
 
 /** Interpolates n spectra on `from` (n x from->count) to `to` (n x to->count).
  * The rule is resolved per `interpolation`; EF_INVALID when it needs more
- * samples or even steps than there are. */
+ * samples or even steps than there are. Automatic ends hold: there is no kind
+ * to choose by. A value at a sample is that sample, to the bit. */
 EF_API ef_status ef_resample(const ef_grid *from, size_t n, const double *value,
                              const ef_grid *to, ef_interpolation interpolation,
                              ef_extension extension, double *out,

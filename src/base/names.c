@@ -31,23 +31,30 @@ static size_t least(size_t a, size_t b, size_t c) {
   return ab < c ? ab : c;
 }
 
-/* Insertions, deletions and replacements from `a` to `b` (Levenshtein 1966),
- * case ignored. Both at most LONGEST_NAME long. */
+/* Insertions, deletions, replacements and swaps of neighbours from `a` to `b`
+ * (optimal string alignment: Damerau 1964, Levenshtein 1966), case ignored.
+ * Both at most LONGEST_NAME long. Rows of the table are kept for three
+ * letters of `a`. */
 static size_t edit_distance(const char *a, const char *b) {
   const size_t length = strlen(b);
-  size_t row[LONGEST_NAME + 1];
-  for (size_t j = 0; j <= length; ++j) row[j] = j;
-  for (size_t i = 0; a[i] != '\0'; ++i) {
-    size_t diagonal = row[0];
-    row[0] = i + 1;
+  size_t row[3][LONGEST_NAME + 1];
+  size_t i = 0;
+  for (size_t j = 0; j <= length; ++j) row[0][j] = j;
+  for (; a[i] != '\0'; ++i) {
+    const size_t *const above = row[i % 3];
+    size_t *const here = row[(i + 1) % 3];
+    here[0] = i + 1;
     for (size_t j = 0; j < length; ++j) {
-      const size_t above = row[j + 1];
-      const size_t replaced = diagonal + (lower(a[i]) != lower(b[j]));
-      row[j + 1] = least(replaced, above + 1, row[j] + 1);
-      diagonal = above;
+      const bool differ = lower(a[i]) != lower(b[j]);
+      here[j + 1] = least(above[j] + differ, above[j + 1] + 1, here[j] + 1);
+      const bool swapped = i > 0 && j > 0 && lower(a[i]) == lower(b[j - 1]) &&
+                           lower(a[i - 1]) == lower(b[j]);
+      if (!swapped) continue;
+      const size_t before = row[(i + 2) % 3][j - 1] + 1;
+      if (before < here[j + 1]) here[j + 1] = before;
     }
   }
-  return row[length];
+  return row[i % 3][length];
 }
 
 /* Distance for ranking, SIZE_MAX when not close. A name that goes on after
