@@ -22,7 +22,8 @@ static char output[64];
  * there is no such file. */
 static bool read_file(const char *path, char text[MAX_TEXT]) {
   FILE *file = fopen(path, "rb");
-  if (file == NULL) return false;
+  if (file == NULL)
+    return false;
   text[fread(text, 1, MAX_TEXT - 1, file)] = '\0';
   fclose(file);
   return true;
@@ -37,7 +38,8 @@ static int run(char *const *arguments, char text[MAX_TEXT]) {
   assert_true(child >= 0);
   if (child == 0) {
     const int fd = open(error_path, O_WRONLY | O_CREAT | O_TRUNC, 0600);
-    if (fd < 0 || dup2(fd, STDERR_FILENO) < 0) _exit(126);
+    if (fd < 0 || dup2(fd, STDERR_FILENO) < 0)
+      _exit(126);
     execv(program, arguments);
     _exit(127);
   }
@@ -52,7 +54,8 @@ static int run(char *const *arguments, char text[MAX_TEXT]) {
 static size_t case_files(const char *name, char text[MAX_TEXT], char **file) {
   char path[256];
   snprintf(path, sizeof path, "%s/args", name);
-  if (!read_file(path, text)) snprintf(text, MAX_TEXT, "%s/input.csv", name);
+  if (!read_file(path, text))
+    snprintf(text, MAX_TEXT, "%s/input.csv", name);
   size_t n = 0;
   for (char *line = strtok(text, "\n"); line; line = strtok(NULL, "\n")) {
     assert_true(n < MAX_ARGUMENTS);
@@ -65,12 +68,14 @@ static size_t case_files(const char *name, char text[MAX_TEXT], char **file) {
 static bool case_passes(const char *name) {
   char path[256], expected[MAX_TEXT], files[MAX_TEXT], text[MAX_TEXT];
   snprintf(path, sizeof path, "%s/expected", name);
-  if (!read_file(path, expected)) fail_msg("%s is missing", path);
+  if (!read_file(path, expected))
+    fail_msg("%s is missing", path);
   char *arguments[MAX_ARGUMENTS + 3] = {program, output};
   case_files(name, files, arguments + 2);
   const int status = run(arguments, text);
   const bool left = access(output, F_OK) == 0;
-  if (status == 1 && strcmp(text, expected) == 0 && !left) return true;
+  if (status == 1 && strcmp(text, expected) == 0 && !left)
+    return true;
   printf("# %s: status %d%s, said: %s", name, status,
          left ? ", left a file" : "", text);
   return false;
@@ -82,7 +87,8 @@ static void test_broken_tables(void **state) {
   assert_non_null(broken);
   size_t n_cases = 0, n_bad = 0;
   for (struct dirent *entry; (entry = readdir(broken)) != NULL;) {
-    if (strncmp(entry->d_name, "table-", 6) != 0) continue;
+    if (strncmp(entry->d_name, "table-", 6) != 0)
+      continue;
     ++n_cases;
     n_bad += !case_passes(entry->d_name);
   }
@@ -132,9 +138,12 @@ static void test_output(void **state) {
 
 static void test_same_text_twice(void **state) {
   (void)state;
-  char *arguments[] = {program, (char[]){"--text"}, output,
+  char *arguments[] = {program,
+                       (char[]){"--text"},
+                       output,
                        (char[]){"table-same-name/b/input.csv"},
-                       (char[]){"table-same-name/a/input.csv"}, NULL};
+                       (char[]){"table-same-name/a/input.csv"},
+                       NULL};
   char text[MAX_TEXT];
   assert_int_equal(run(arguments, text), 1);
   assert_non_null(strstr(text, ": the name 'input.csv' is taken by "));
@@ -145,8 +154,8 @@ static void test_unwritable(void **state) {
   (void)state;
   char path[80], text[MAX_TEXT];
   make_path(path, "no-such-folder/out.c");
-  char *arguments[] = {program, path,
-                       (char[]){"table-same-name/a/input.csv"}, NULL};
+  char *arguments[] = {program, path, (char[]){"table-same-name/a/input.csv"},
+                       NULL};
   assert_int_equal(run(arguments, text), 1);
   assert_non_null(strstr(text, "out.c: cannot be written: No such file"));
 }
@@ -163,7 +172,8 @@ static void test_usage(void **state) {
 
 static int set_up(void **state) {
   (void)state;
-  if (mkdtemp(folder) == NULL) return -1;
+  if (mkdtemp(folder) == NULL)
+    return -1;
   snprintf(output, sizeof output, "%s/out.c", folder);
   return 0;
 }
@@ -182,7 +192,8 @@ static int tear_down(void **state) {
 /* The tests run in another folder than they were called from. */
 static bool set_program(const char *path) {
   char here[900] = "";
-  if (path[0] != '/' && getcwd(here, sizeof here) == NULL) return false;
+  if (path[0] != '/' && getcwd(here, sizeof here) == NULL)
+    return false;
   const int length = snprintf(program, sizeof program, "%s%s%s", here,
                               here[0] != '\0' ? "/" : "", path);
   return length > 0 && (size_t)length < sizeof program;
@@ -190,11 +201,9 @@ static bool set_program(const char *path) {
 
 int main(int argc, char **argv) {
   const struct CMUnitTest tests[] = {
-    cmocka_unit_test(test_broken_tables),
-    cmocka_unit_test(test_output),
-    cmocka_unit_test(test_same_text_twice),
-    cmocka_unit_test(test_unwritable),
-    cmocka_unit_test(test_usage),
+      cmocka_unit_test(test_broken_tables),   cmocka_unit_test(test_output),
+      cmocka_unit_test(test_same_text_twice), cmocka_unit_test(test_unwritable),
+      cmocka_unit_test(test_usage),
   };
   const char *tests_folder = getenv("EVENFIELD_TESTS");
   if (argc != 2 || !set_program(argv[1]) || tests_folder == NULL ||

@@ -34,7 +34,8 @@ static void test_texts(void **state) {
     /* Data sets of the CIE ask for attribution. */
     const bool of_cie = strncmp(t->name, "cie-", 4) == 0 &&
                         strcmp(t->name, "cie-170-templates") != 0;
-    if (of_cie) assert_non_null(strstr(t->rights, "CC BY-SA 4.0"));
+    if (of_cie)
+      assert_non_null(strstr(t->rights, "CC BY-SA 4.0"));
   }
   assert_string_equal(ef_table_find("lens-age-1987", NULL)->rights, "");
 }
@@ -45,7 +46,8 @@ static size_t count_files(const char *folder) {
   snprintf(path, sizeof path, "%s/../spectra/%s", getenv("EVENFIELD_TESTS"),
            folder);
   DIR *directory = opendir(path);
-  if (directory == NULL) fail_msg("cannot open %s", path);
+  if (directory == NULL)
+    fail_msg("cannot open %s", path);
   size_t n = 0;
   for (struct dirent *entry; (entry = readdir(directory)) != NULL;) {
     const size_t length = strlen(entry->d_name);
@@ -141,12 +143,14 @@ static void test_demo_files(void **state) {
   (void)state;
   for (size_t i = 0; i < ef__demo_file_count; ++i) {
     const ef__embedded_text *e = &ef__demo_files[i];
-    if (i > 0) assert_true(strcmp(ef__demo_files[i - 1].name, e->name) < 0);
+    if (i > 0)
+      assert_true(strcmp(ef__demo_files[i - 1].name, e->name) < 0);
     char path[1024];
     snprintf(path, sizeof path, "%s/../spectra/demo/%s",
              getenv("EVENFIELD_TESTS"), e->name);
     FILE *file = fopen(path, "rb");
-    if (file == NULL) fail_msg("cannot open %s", path);
+    if (file == NULL)
+      fail_msg("cannot open %s", path);
     char *text = malloc(e->length + 1);
     assert_non_null(text);
     /* One byte more than there should be. */
@@ -160,15 +164,15 @@ static void test_demo_files(void **state) {
 
 int main(void) {
   const struct CMUnitTest tests[] = {
-    cmocka_unit_test(test_order),
-    cmocka_unit_test(test_texts),
-    cmocka_unit_test(test_every_file_is_in),
-    cmocka_unit_test(test_values),
-    cmocka_unit_test(test_empty_cell_is_zero),
-    cmocka_unit_test(test_find),
-    cmocka_unit_test(test_unknown_name),
-    cmocka_unit_test(test_column),
-    cmocka_unit_test(test_demo_files),
+      cmocka_unit_test(test_order),
+      cmocka_unit_test(test_texts),
+      cmocka_unit_test(test_every_file_is_in),
+      cmocka_unit_test(test_values),
+      cmocka_unit_test(test_empty_cell_is_zero),
+      cmocka_unit_test(test_find),
+      cmocka_unit_test(test_unknown_name),
+      cmocka_unit_test(test_column),
+      cmocka_unit_test(test_demo_files),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
   return cmocka_run_group_tests_name("table", tests, NULL, NULL);

@@ -25,9 +25,9 @@ typedef struct header_key {
 } header_key;
 
 static const header_key header_keys[N_KEYS] = {
-  [TITLE] = {"title", true},       [SOURCE] = {"source", true},
-  [QUANTITY] = {"quantity", true}, [RANGE] = {"range", true},
-  [NOTE] = {"note", false},        [RIGHTS] = {"rights", false},
+    [TITLE] = {"title", true},       [SOURCE] = {"source", true},
+    [QUANTITY] = {"quantity", true}, [RANGE] = {"range", true},
+    [NOTE] = {"note", false},        [RIGHTS] = {"rights", false},
 };
 
 /* The longest string literal that every C17 compiler must take. */
@@ -54,8 +54,8 @@ typedef struct table {
 
 /* ---- Refusing ---------------------------------------------------------- */
 
-static _Noreturn void refuse(const char *path, size_t line,
-                             const char *format, ...) {
+static _Noreturn void refuse(const char *path, size_t line, const char *format,
+                             ...) {
   va_list arguments;
   va_start(arguments, format);
   if (line > 0)
@@ -421,13 +421,13 @@ static void write_entry(FILE *out, size_t index, const table *t) {
   const struct {
     const char *member, *text;
   } texts[] = {
-    {"name", t->name},
-    {"group", t->group},
-    {"title", t->header[TITLE]},
-    {"source", t->header[SOURCE]},
-    {"quantity", t->header[QUANTITY]},
-    {"note", t->header[NOTE]},
-    {"rights", t->header[RIGHTS]},
+      {"name", t->name},
+      {"group", t->group},
+      {"title", t->header[TITLE]},
+      {"source", t->header[SOURCE]},
+      {"quantity", t->header[QUANTITY]},
+      {"note", t->header[NOTE]},
+      {"rights", t->header[RIGHTS]},
   };
   fputs("  {\n", out);
   for (size_t i = 0; i < sizeof texts / sizeof *texts; i++) {

@@ -6,7 +6,9 @@
 
 #include <assert.h>
 
-size_t ef_table_count(void) { return ef__table_count; }
+size_t ef_table_count(void) {
+  return ef__table_count;
+}
 
 const ef_table *ef_table_at(size_t i) {
   assert(i < ef__table_count);
@@ -15,7 +17,8 @@ const ef_table *ef_table_at(size_t i) {
 
 const ef_table *ef_table_find(const char *name, ef_error *error) {
   for (size_t i = 0; i < ef__table_count; ++i) {
-    if (ef__name_equal(name, ef__tables[i].name)) return &ef__tables[i];
+    if (ef__name_equal(name, ef__tables[i].name))
+      return &ef__tables[i];
   }
   ef__error_unknown(error, "built-in table", name, ef__table_names,
                     ef__table_count);
@@ -24,7 +27,8 @@ const ef_table *ef_table_find(const char *name, ef_error *error) {
 
 size_t ef_table_column(const ef_table *table, const char *column) {
   for (size_t c = 0; c < table->n_columns; ++c) {
-    if (ef__name_equal(column, table->column[c])) return c;
+    if (ef__name_equal(column, table->column[c]))
+      return c;
   }
   return SIZE_MAX;
 }

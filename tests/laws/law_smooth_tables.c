@@ -32,13 +32,13 @@ typedef struct smooth_figure {
 
 /* The other columns of cie-s026 are in cie-2006-10 and scotopic-1951. */
 static const smooth_figure smooth_figures[] = {
-  {"cie-1931", NULL, 12, 0.01, 0.99},
-  {"cie-1964", NULL, 12, 0.01, 0.99},
-  {"scotopic-1951", NULL, 3, 0.01, 0.99},
-  {"cie-2006-2", NULL, 9, 0.002, 0.99},
-  {"cie-2006-10", NULL, 9, 0.002, 0.99},
-  {"cie-s026", "melanopic", 3, 0.03, 0.90},
-  {"cie-170-templates", NULL, 5, 0.1, 0.85},
+    {"cie-1931", NULL, 12, 0.01, 0.99},
+    {"cie-1964", NULL, 12, 0.01, 0.99},
+    {"scotopic-1951", NULL, 3, 0.01, 0.99},
+    {"cie-2006-2", NULL, 9, 0.002, 0.99},
+    {"cie-2006-10", NULL, 9, 0.002, 0.99},
+    {"cie-s026", "melanopic", 3, 0.03, 0.90},
+    {"cie-170-templates", NULL, 5, 0.1, 0.85},
 };
 enum { N_FIGURES = sizeof smooth_figures / sizeof *smooth_figures };
 
@@ -54,9 +54,9 @@ static double last_unit(double value) {
   const char *point = strchr(text, '.');
   const int power = exponent != NULL ? atoi(exponent + 1) : 0;
   const size_t length =
-    exponent != NULL ? (size_t)(exponent - text) : strlen(text);
+      exponent != NULL ? (size_t)(exponent - text) : strlen(text);
   const int decimals =
-    point != NULL ? (int)(length - (size_t)(point - text)) - 1 : 0;
+      point != NULL ? (int)(length - (size_t)(point - text)) - 1 : 0;
   return pow(10, power - decimals);
 }
 
@@ -73,8 +73,10 @@ static double usual_kink(const double *v, size_t n, size_t i) {
   double unit = (double)INFINITY;
   for (size_t k = i < REACH ? 0 : i - REACH; k <= i + REACH && k < n; ++k) {
     const size_t away = k < i ? i - k : k - i;
-    if (away > 0 && away <= 4 && v[k] != 0) unit = fmin(unit, last_unit(v[k]));
-    if (away <= CLOSE || k < 2 || k + 2 >= n) continue;
+    if (away > 0 && away <= 4 && v[k] != 0)
+      unit = fmin(unit, last_unit(v[k]));
+    if (away <= CLOSE || k < 2 || k + 2 >= n)
+      continue;
     near[n_near++] = kink(v, k);
   }
   qsort(near, n_near, sizeof *near, by_value);
@@ -96,8 +98,10 @@ typedef struct curve {
 static curve curve_of(const ef_table *table, size_t column) {
   const double *v = table->value + column * table->n_rows;
   size_t first = 0, end = table->n_rows;
-  while (first < end && v[first] == 0) ++first;
-  while (end > first && v[end - 1] == 0) --end;
+  while (first < end && v[first] == 0)
+    ++first;
+  while (end > first && v[end - 1] == 0)
+    --end;
   return (curve){table->column[column], table->value + first, v + first,
                  end - first};
 }
@@ -126,7 +130,8 @@ static void test_no_kink(void **state) {
     for (size_t c = 0; c < n_curves; ++c) {
       for (size_t i = 2; i + 2 < curves[c].n; ++i) {
         const double r = ratio(curves[c].value, curves[c].n, i);
-        if (r <= largest) continue;
+        if (r <= largest)
+          continue;
         largest = r;
         where_nm = curves[c].nm[i];
       }
@@ -145,10 +150,12 @@ static void alter_rows(const smooth_figure *f, const curve *line,
   assert_true(line->n <= MAX_ROWS);
   memcpy(altered, line->value, line->n * sizeof *altered);
   double peak = 0;
-  for (size_t i = 0; i < line->n; ++i) peak = fmax(peak, fabs(altered[i]));
+  for (size_t i = 0; i < line->n; ++i)
+    peak = fmax(peak, fabs(altered[i]));
   for (size_t i = 2; i + 2 < line->n; ++i) {
     const double value = altered[i];
-    if (fabs(value) < 0.01 * peak) continue;
+    if (fabs(value) < 0.01 * peak)
+      continue;
     altered[i] = value * (1 + f->misprint);
     ++*n_altered;
     *n_found += ratio(altered, line->n, i) > f->limit;
@@ -180,16 +187,17 @@ static void test_lens_falls(void **state) {
   assert_non_null(table);
   for (size_t c = 1; c < table->n_columns; ++c) {
     const double *v = table->value + c * table->n_rows;
-    for (size_t r = 1; r < table->n_rows; ++r) assert_true(v[r] <= v[r - 1]);
+    for (size_t r = 1; r < table->n_rows; ++r)
+      assert_true(v[r] <= v[r - 1]);
     assert_near(v[table->n_rows - 1], 0, 0);
   }
 }
 
 int main(void) {
   const struct CMUnitTest tests[] = {
-    cmocka_unit_test(test_no_kink),
-    cmocka_unit_test(test_misprint_is_found),
-    cmocka_unit_test(test_lens_falls),
+      cmocka_unit_test(test_no_kink),
+      cmocka_unit_test(test_misprint_is_found),
+      cmocka_unit_test(test_lens_falls),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
   return cmocka_run_group_tests_name("law_smooth_tables", tests, NULL, NULL);

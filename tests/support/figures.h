@@ -22,7 +22,8 @@ void figures_free(figures *f);
 /** Number of that column; the test fails when there is none. */
 size_t figures_column(const figures *f, const char *column);
 const char *figures_text(const figures *f, size_t row, size_t column);
-/** The cell as a number, NaN when it is empty; the test fails for other text. */
+/** The cell as a number, NaN when it is empty; the test fails for other text.
+ */
 double figures_number(const figures *f, size_t row, size_t column);
 /** Row whose first cell is `name`; the test fails when there is none. */
 size_t figures_row(const figures *f, const char *name);
