@@ -139,6 +139,24 @@ static void test_column(void **state) {
   assert_true(ef_table_column(t, "FL3") == SIZE_MAX);
 }
 
+static void test_grid(void **state) {
+  (void)state;
+  for (size_t i = 0; i < ef_table_count(); ++i) {
+    const ef_table *t = ef_table_at(i);
+    const ef_grid grid = ef_table_grid(t);
+    ef_error error;
+    assert_int_equal(ef_grid_check(&grid, &error), EF_OK);
+    assert_int_equal(grid.count, t->n_rows);
+    assert_null(grid.wavelength_nm); /* all of them have even steps */
+    for (size_t r = 0; r < t->n_rows; ++r) {
+      assert_near(ef_grid_wavelength(&grid, r), t->value[r], 1e-9);
+    }
+  }
+  const ef_grid tcs = ef_table_grid(ef_table_find("cie-tcs", NULL));
+  assert_near(tcs.start_nm, 360, 0);
+  assert_near(tcs.step_nm, 5, 1e-12);
+}
+
 static void test_demo_files(void **state) {
   (void)state;
   for (size_t i = 0; i < ef__demo_file_count; ++i) {
@@ -172,6 +190,7 @@ int main(void) {
       cmocka_unit_test(test_find),
       cmocka_unit_test(test_unknown_name),
       cmocka_unit_test(test_column),
+      cmocka_unit_test(test_grid),
       cmocka_unit_test(test_demo_files),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);

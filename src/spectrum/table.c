@@ -34,5 +34,6 @@ size_t ef_table_column(const ef_table *table, const char *column) {
 }
 
 ef_grid ef_table_grid(const ef_table *table) {
-  return (ef_grid){.count = table->n_rows, .wavelength_nm = table->value};
+  const ef_grid rows = {.count = table->n_rows, .wavelength_nm = table->value};
+  return ef_grid_simplify(&rows);
 }
