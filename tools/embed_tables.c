@@ -77,7 +77,7 @@ static void *grow(void *memory, size_t size) {
   return grown;
 }
 
-/* ---- Small helpers ----------------------------------------------------- */
+/* ---- Text and numbers -------------------------------------------------- */
 
 static char *copy_text(const char *text, size_t length) {
   char *copy = grow(NULL, length + 1);
