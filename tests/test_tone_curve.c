@@ -88,9 +88,9 @@ static void curve_ends_and_beyond(void **state) {
     assert_true(isnan(ef_tone_curve_amount(curve, NOT_A_NUMBER, &slope)));
     assert_true(isnan(slope));
     assert_true(ef_tone_curve_drive(curve, 0.0) == 0.0);
-    assert_near(ef_tone_curve_drive(curve, 1.0), 1.0, 3e-16);
+    assert_true(ef_tone_curve_drive(curve, 1.0) == 1.0);
     assert_true(ef_tone_curve_drive(curve, -0.2) == 0.0);
-    assert_near(ef_tone_curve_drive(curve, 1.3), 1.0, 3e-16);
+    assert_true(ef_tone_curve_drive(curve, 1.3) == 1.0);
     assert_true(isnan(ef_tone_curve_drive(curve, NOT_A_NUMBER)));
     ef_tone_curve_free(curve);
   }

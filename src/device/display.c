@@ -309,6 +309,7 @@ ef_device *ef__display_new(const ef__display_parts *parts,
     ef__error_memory(error, "a display");
     return NULL;
   }
+  d->device.kind = &display_class; /* frees what the rest leaves */
   d->device.absolute = parts->absolute;
   d->width = parts->grid != NULL ? parts->grid->count : 3;
   ef_status status = set_up(d, parts, settings, error);

@@ -249,11 +249,11 @@ static ef_status build_ramp(fit *f, size_t i, size_t n, bool grey,
     level[k] = f->point[k].level;
   }
   if (n_pooled > 0)
-    ef__note(f->notes,
-             "%s: the %s ramp of %s does not rise everywhere; %zu of its "
-             "points were pooled with their neighbours",
-             f->name, grey ? "grey" : "single-channel", f->drive_name[i],
-             n_pooled);
+    ef__note(
+        f->notes,
+        "%s: the %s ramp of %s does not rise everywhere; points pooled with "
+        "a neighbour: %zu",
+        f->name, grey ? "grey" : "single-channel", f->drive_name[i], n_pooled);
   return put_curve(f, i, ef_tone_curve_from_ramp(n, drive, level, error));
 }
 

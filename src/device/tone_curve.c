@@ -266,8 +266,11 @@ static double ramp_amount(const ef_tone_curve *curve, double drive,
   if (slope != NULL)
     *slope = gsl_interp_eval_deriv(curve->interpolation, curve->drive,
                                    curve->level, drive, NULL);
-  return gsl_interp_eval(curve->interpolation, curve->drive, curve->level,
-                         drive, NULL);
+  if (drive == 1.0)
+    return 1.0; /* the last cubic gets there but for rounding */
+  return fmin(gsl_interp_eval(curve->interpolation, curve->drive, curve->level,
+                              drive, NULL),
+              1.0);
 }
 
 /* Newton's steps on the interval of the ramp that holds the amount, halved
@@ -319,6 +322,8 @@ double ef_tone_curve_drive(const ef_tone_curve *curve, double amount) {
   if (isnan(amount))
     return amount;
   const double clamped = clamp_unit(amount);
+  if (clamped == 1.0)
+    return 1.0;
   return curve->n_points > 0 ? ramp_drive(curve, clamped)
                              : form_drive(&curve->form, clamped);
 }
