@@ -540,7 +540,19 @@ static void embed_texts(const char *out_path, size_t n, char **paths) {
     write_string(out, base_name(paths[i]));
     fprintf(out, ", (const char *)text_%zu, %zu},\n", i, length[i]);
   }
-  fprintf(out, "};\n\nconst size_t ef__demo_file_count = %zu;\n", n);
+  fprintf(out, "};\n\nconst size_t ef__demo_file_count = %zu;\n\n", n);
+  fputs("const char *const ef__demo_names[] = {\n", out);
+  for (size_t i = 0; i < n; i++) {
+    char *name = copy_text(base_name(paths[i]), strlen(base_name(paths[i])));
+    char *ending = strrchr(name, '.');
+    if (ending && ending > name)
+      *ending = '\0';
+    fputs("  ", out);
+    write_string(out, name);
+    fputs(",\n", out);
+    free(name);
+  }
+  fputs("};\n", out);
   close_output(out, out_path);
   free(length);
 }

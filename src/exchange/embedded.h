@@ -15,5 +15,7 @@ typedef struct ef__embedded_text {
 /* Sorted by name. */
 extern const ef__embedded_text ef__demo_files[];
 extern const size_t ef__demo_file_count;
+/* Their names without the ending, in the same order. */
+extern const char *const ef__demo_names[];
 
 #endif
