@@ -1,0 +1,193 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/* RGB pictures through libpng. It leaves its calls by longjmp on failure: that
+ * stays in this file. */
+#include "exchange/exchange_private.h"
+
+#include <setjmp.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include <png.h>
+
+#include "base/base_private.h"
+
+enum {
+  CHANNELS = 3,
+  MOST_PIXELS_A_SIDE = 1000000 /* what readers on libpng accept */
+};
+
+/* All that lives across the jump. */
+typedef struct picture {
+  ef_output *output;
+  png_structp png;
+  png_infop info;
+  png_byte *row;
+  ef_error error; /* of the output, if it failed */
+  char reason[160]; /* of libpng */
+} picture;
+
+/* ---- What libpng calls ------------------------------------------------- */
+
+static void write_bytes(png_structp png, png_bytep bytes, size_t length) {
+  picture *const p = png_get_io_ptr(png);
+  if (ef_output_write(p->output, bytes, length, &p->error) != EF_OK) {
+    png_error(png, "the output failed");
+  }
+}
+
+static void flush_nothing(png_structp png) {
+  (void)png; /* ef_output_commit does it */
+}
+
+static void keep_reason(png_structp png, png_const_charp message) {
+  picture *const p = png_get_error_ptr(png);
+  const size_t length = strlen(message);
+  const size_t most = sizeof p->reason - 1;
+  memcpy(p->reason, message, length < most ? length : most);
+  p->reason[length < most ? length : most] = '\0';
+  png_longjmp(png, 1);
+}
+
+/* A warning of the writer is about what it leaves out, such as a profile that
+ * it does not believe: not what was asked for. */
+static void refuse_warning(png_structp png, png_const_charp message) {
+  png_error(png, message);
+}
+
+/* ---- The picture ------------------------------------------------------- */
+
+/* Code points of ITU-T H.273: primaries, transfer, matrix 0 (RGB), full range
+ * (PNG third edition, 11.3.2.6). libpng 1.6.39 does not know the chunk. */
+static void write_cicp(png_structp png, const ef_png_tags *tags) {
+  const png_byte name[5] = {'c', 'I', 'C', 'P', 0};
+  const png_byte bytes[4] = {(png_byte)tags->primaries,
+                             (png_byte)tags->transfer, 0, 1};
+  png_write_chunk(png, name, bytes, sizeof bytes);
+}
+
+static void write_head(picture *p, size_t width, size_t height, int bits,
+                       const ef_png_tags *tags) {
+  png_set_IHDR(p->png, p->info, (png_uint_32)width, (png_uint_32)height, bits,
+               PNG_COLOR_TYPE_RGB, PNG_INTERLACE_NONE,
+               PNG_COMPRESSION_TYPE_BASE, PNG_FILTER_TYPE_BASE);
+  if (tags != NULL && tags->profile != NULL) {
+    png_set_iCCP(p->png, p->info, tags->profile_name,
+                 PNG_COMPRESSION_TYPE_BASE, tags->profile,
+                 (png_uint_32)tags->profile_length);
+  }
+  png_write_info_before_PLTE(p->png, p->info);
+  if (tags != NULL && tags->primaries != 0) write_cicp(p->png, tags);
+  png_write_info(p->png, p->info);
+}
+
+/* 16 bits to 8, rounded: 65535 = 255 x 257. */
+static png_byte to_8_bits(uint16_t sample) {
+  return (png_byte)(((uint32_t)sample * 255u + 32767u) / 65535u);
+}
+
+static void fill_row(png_byte *row, size_t n, int bits,
+                     const uint16_t *sample) {
+  if (bits == 8) {
+    for (size_t i = 0; i < n; ++i) row[i] = to_8_bits(sample[i]);
+    return;
+  }
+  for (size_t i = 0; i < n; ++i) {
+    row[2 * i] = (png_byte)(sample[i] >> 8);
+    row[2 * i + 1] = (png_byte)(sample[i] & 0xFFu);
+  }
+}
+
+/* Everything that may jump; false when it did. */
+static bool write_picture(picture *p, size_t width, size_t height, int bits,
+                          const uint16_t *sample, const ef_png_tags *tags) {
+  const size_t n = width * CHANNELS;
+  if (setjmp(png_jmpbuf(p->png)) != 0) return false;
+  png_set_write_fn(p->png, p, write_bytes, flush_nothing);
+  write_head(p, width, height, bits, tags);
+  for (size_t y = 0; y < height; ++y) {
+    fill_row(p->row, n, bits, sample + y * n);
+    png_write_row(p->png, p->row);
+  }
+  png_write_end(p->png, p->info);
+  return true;
+}
+
+/* ---- Around it --------------------------------------------------------- */
+
+static bool has_good_tags(const ef_png_tags *tags) {
+  if (tags == NULL) return true;
+  if (tags->primaries < 0 || tags->primaries > 255 || tags->transfer < 0 ||
+      tags->transfer > 255) {
+    return false;
+  }
+  if (tags->profile == NULL) return true;
+  const size_t length =
+      tags->profile_name != NULL ? strlen(tags->profile_name) : 0;
+  return length >= 1 && length <= 79 && tags->profile_length > 0 &&
+         tags->profile_length <= UINT32_MAX;
+}
+
+static ef_status check(size_t width, size_t height, int bits,
+                       const ef_png_tags *tags, ef_error *error) {
+  if (width == 0 || height == 0 || width > MOST_PIXELS_A_SIDE ||
+      height > MOST_PIXELS_A_SIDE) {
+    return ef__error_set(error, EF_INVALID,
+                         "a picture of %zu x %zu pixels cannot be written; "
+                         "expected 1 to %d on each side",
+                         width, height, (int)MOST_PIXELS_A_SIDE);
+  }
+  if (bits != 8 && bits != 16) {
+    return ef__error_set(error, EF_INVALID,
+                         "pictures have 8 or 16 bits, not %d", bits);
+  }
+  if (!has_good_tags(tags)) {
+    return ef__error_set(error, EF_INVALID,
+                         "colour tags need code points of 0 to 255 and, with a "
+                         "profile, a name of 1 to 79 characters");
+  }
+  return EF_OK;
+}
+
+static ef_status refuse(const picture *p, const char *path, ef_error *error) {
+  if (p->error.status != EF_OK) {
+    if (error != NULL) *error = p->error;
+    return p->error.status;
+  }
+  ef__error_set(error, EF_UNWRITABLE, "the picture cannot be written: %s",
+                p->reason);
+  ef__error_place(error, path, 0, 0, NULL);
+  return EF_UNWRITABLE;
+}
+
+static ef_status write_to(picture *p, const char *path, size_t width,
+                          size_t height, int bits, const uint16_t *sample,
+                          const ef_png_tags *tags, ef_error *error) {
+  p->png = png_create_write_struct(PNG_LIBPNG_VER_STRING, p, keep_reason,
+                                   refuse_warning);
+  if (p->png != NULL) p->info = png_create_info_struct(p->png);
+  p->row = ef__allocate(width * CHANNELS, (size_t)bits / 8);
+  if (p->png == NULL || p->info == NULL || p->row == NULL) {
+    return ef__error_memory(error, "a picture");
+  }
+  if (write_picture(p, width, height, bits, sample, tags)) return EF_OK;
+  return refuse(p, path, error);
+}
+
+ef_status ef_png_write(const char *path, bool overwrite, size_t width,
+                       size_t height, int bits, const uint16_t *sample,
+                       const ef_png_tags *tags, ef_error *error) {
+  ef_status status = check(width, height, bits, tags, error);
+  if (status != EF_OK) return status;
+  ef_error opening = {0};
+  picture p = {.output = ef_output_open(path, overwrite, &opening)};
+  if (p.output == NULL) {
+    if (error != NULL) *error = opening;
+    return opening.status;
+  }
+  status = write_to(&p, path, width, height, bits, sample, tags, error);
+  png_destroy_write_struct(&p.png, &p.info);
+  free(p.row);
+  if (status == EF_OK) return ef_output_commit(p.output, error);
+  ef_output_discard(p.output);
+  return status;
+}
