@@ -81,6 +81,16 @@ ef_status ef__condition(size_t n_rows, size_t n_columns, const double *a,
                         double *scratch, double *singular, double *condition,
                         ef_error *error);
 
+/* ---- Shortest digits (shortest.c) -------------------------------------- */
+
+/** Room for 17 digits, the terminator, and a digit while rounding. */
+#define EF__SHORTEST_DIGITS 20
+
+/** The fewest decimal digits that read back to `value` (finite, above zero),
+ * and of those the nearest to it, without trailing zeros. Returns the decimal
+ * exponent of the first digit. */
+int ef__shortest_digits(double value, char digit[EF__SHORTEST_DIGITS]);
+
 /* ---- Loops (parallel.c) ------------------------------------------------ */
 
 /** Calls body(ctx, begin, end) for the chunks [0, chunk), [chunk, 2 chunk) ...

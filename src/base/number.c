@@ -17,8 +17,8 @@ enum {
   /* Exponents beyond this overflow or vanish whatever the digits are, as
    * texts are shorter than 2^31 bytes in any sane input. */
   MAX_EXPONENT = 1000000000,
-  SHORTEST_FIXED = -5, /* first and last decimal exponent written */
-  LONGEST_FIXED = 16   /* without an exponent */
+  FIRST_PLAIN = -5, /* decimal exponents written without an exponent */
+  LAST_PLAIN = 16
 };
 
 /* ---- Reading ----------------------------------------------------------- */
@@ -132,73 +132,6 @@ static size_t put(char text[EF_NUMBER_TEXT], const char *word) {
   return length;
 }
 
-/* |value| rounded to n digits, without the mark; returns the exponent of the
- * first digit. */
-static int round_to_digits(double value, int n, char digit[20]) {
-  char text[40];
-  snprintf(text, sizeof text, "%.*e", n - 1, fabs(value));
-  const char *const e = strchr(text, 'e');
-  int kept = 0;
-  for (const char *at = text; at < e; ++at) {
-    if (is_digit(*at)) digit[kept++] = *at;
-  }
-  digit[kept] = '\0';
-  return atoi(e + 1);
-}
-
-static double digits_value(const char *digit, int exponent) {
-  char text[40];
-  const int n = (int)strlen(digit);
-  const int length =
-      snprintf(text, sizeof text, "%se%d", digit, exponent - (n - 1));
-  double value = 0;
-  ef_number_parse(text, (size_t)length, '.', &value);
-  return value;
-}
-
-static void drop_trailing_zeros(char *digit) {
-  size_t n = strlen(digit);
-  while (n > 1 && digit[n - 1] == '0') digit[--n] = '\0';
-}
-
-/* Adds one unit to the last digit; returns the exponent of the first digit. */
-static int add_unit(char *digit, int exponent) {
-  size_t i = strlen(digit);
-  while (i > 0 && digit[i - 1] == '9') digit[--i] = '0';
-  if (i > 0) {
-    ++digit[i - 1];
-    return exponent;
-  }
-  digit[0] = '1'; /* 999 became 000: 100, one place up */
-  return exponent + 1;
-}
-
-/* The fewest digits that read back to |value|, the nearest such to it. Any
- * decimal of up to 15 digits survives the way through a normal double, so
- * where one exists the 15-digit rounding is it with zeros behind; subnormals
- * carry fewer and are searched from one digit up. Above a power of two the
- * doubles lie twice as far apart as below: the decimal next above it may read
- * back where the nearest, just below it, does not. */
-static int shortest_digits(double value, char digit[20]) {
-  const double magnitude = fabs(value);
-  int n = fpclassify(value) == FP_SUBNORMAL ? 1 : 15;
-  for (; n < 17; ++n) {
-    int exponent = round_to_digits(magnitude, n, digit);
-    double back = digits_value(digit, exponent);
-    if (back < magnitude) {
-      exponent = add_unit(digit, exponent);
-      back = digits_value(digit, exponent);
-    }
-    if (back == magnitude) {
-      drop_trailing_zeros(digit);
-      return exponent;
-    }
-  }
-  const int exponent = round_to_digits(magnitude, 17, digit);
-  drop_trailing_zeros(digit);
-  return exponent;
-}
-
 /* Digits, mark and zeros for an exponent in the plain range. */
 static char *put_plain(char *to, const char *digit, int n, int exponent) {
   if (exponent < 0) {
@@ -217,12 +150,12 @@ size_t ef_number_format(double value, char text[EF_NUMBER_TEXT]) {
   if (isnan(value)) return put(text, "nan");
   if (isinf(value)) return put(text, value < 0 ? "-inf" : "inf");
   if (value == 0) return put(text, signbit(value) ? "-0" : "0");
-  char digit[20];
-  const int exponent = shortest_digits(value, digit);
+  char digit[EF__SHORTEST_DIGITS];
+  const int exponent = ef__shortest_digits(fabs(value), digit);
   const int n = (int)strlen(digit);
   char *to = text;
   if (value < 0) *to++ = '-';
-  if (exponent >= SHORTEST_FIXED && exponent <= LONGEST_FIXED) {
+  if (exponent >= FIRST_PLAIN && exponent <= LAST_PLAIN) {
     to = put_plain(to, digit, n, exponent);
     *to = '\0';
   } else {

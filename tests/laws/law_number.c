@@ -51,7 +51,7 @@ static void check_shortest(double value) {
   snprintf(digits, sizeof digits, "%.*e", n - 2, value);
   char *end;
   const double nearest = strtod(digits, NULL);
-  assert_true(nearest != value);
+  if (nearest == value) fail_msg("%s reads back to %s", digits, text);
   const long exponent = strtol(strchr(digits, 'e') + 1, &end, 10);
   char other[80];
   for (int step = -1; step <= 1; step += 2) {
@@ -67,9 +67,55 @@ static void check_shortest(double value) {
   }
 }
 
+/* Of all decimals of that length that read back, the nearest was taken: the
+ * C library's rounding, wherever that reads back. */
+static void check_nearest(double value) {
+  char text[EF_NUMBER_TEXT], rounded[40], normal[40];
+  ef_number_format(value, text);
+  const int n = significant_digits(text);
+  snprintf(rounded, sizeof rounded, "%.*e", n - 1, value);
+  if (strtod(rounded, NULL) != value) return;
+  /* Ours in the same form: its digits are exact there. */
+  snprintf(normal, sizeof normal, "%.*e", n - 1, strtod(text, NULL));
+  assert_string_equal(normal, rounded);
+  int kept = 0;
+  for (const char *at = text; *at != '\0' && *at != 'e' && kept < n; ++at) {
+    if (*at < '0' || *at > '9' || (kept == 0 && *at == '0')) continue;
+    const char digit = rounded[kept == 0 ? 0 : kept + 1];
+    if (*at != digit) fail_msg("%s is not the nearest, %s is", text, rounded);
+    ++kept;
+  }
+}
+
+static void check_both(double value) {
+  check_round_trip(value);
+  check_shortest(value);
+  check_nearest(value);
+}
+
+/* Where digits are computed exactly (1e-6 to 1e18) and just beyond. */
+static void everyday_text_is_shortest_and_nearest(void **state) {
+  (void)state;
+  gen g = gen_new(5);
+  for (int i = 0; i < 40000; ++i) {
+    const double size = pow(10, gen_between(&g, -8, 20));
+    check_both(size * gen_unit(&g));
+    check_both((double)gen_below(&g, 1000000) / 1000);
+    check_both(nextafter((double)gen_below(&g, 1000000), 0) + 1e-9);
+    check_both(ldexp((double)(1 + gen_below(&g, 999)),
+                     (int)gen_below(&g, 80) - 30));
+  }
+  for (int e = -30; e < 25; ++e) {
+    const double power = pow(10, e);
+    check_both(power);
+    check_both(nextafter(power, 0));
+    check_both(nextafter(power, DBL_MAX));
+  }
+}
+
 static void text_is_the_shortest(void **state) {
   (void)state;
-  for (int e = -1074; e < 1024; ++e) check_shortest(ldexp(1, e));
+  for (int e = -1074; e < 1024; ++e) check_both(ldexp(1, e));
   gen g = gen_new(2);
   for (int i = 0; i < 50000; ++i) check_shortest(fabs(gen_any_double(&g)));
   for (int i = 0; i < 5000; ++i) check_shortest(gen_unit(&g) * DBL_MIN);
@@ -114,6 +160,7 @@ static void fixed_decimals_are_within_half_a_unit(void **state) {
 int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(any_double_survives_as_text),
+      cmocka_unit_test(everyday_text_is_shortest_and_nearest),
       cmocka_unit_test(text_is_the_shortest),
       cmocka_unit_test(reading_is_correctly_rounded),
       cmocka_unit_test(fixed_decimals_are_within_half_a_unit),
