@@ -42,11 +42,12 @@ EF_API ef_xy ef_uv_to_xy(ef_uv uv);
 
 /* ---- CIELAB, CIELUV (ISO/CIE 11664-4, -5) ------------------------------ */
 
-/** White components must be positive; X, Y, Z may have any sign (the linear
- * branch goes on below zero). Exact constants 24/116, 841/108. */
+/** White components must be positive (else the result is NaN, here and in all
+ * that follows); X, Y, Z may have any sign (the linear branch goes on below
+ * zero). Exact constants 24/116, 841/108. */
 EF_API ef_lab ef_xyz_to_lab(ef_xyz xyz, ef_xyz white);
 EF_API ef_xyz ef_lab_to_xyz(ef_lab lab, ef_xyz white);
-/** u*, v* are 0 for black. */
+/** u*, v* are 0 for Y = 0, NaN where u', v' are. */
 EF_API ef_luv ef_xyz_to_luv(ef_xyz xyz, ef_xyz white);
 EF_API ef_xyz ef_luv_to_xyz(ef_luv luv, ef_xyz white);
 EF_API ef_lch ef_lab_to_lch(ef_lab lab);
@@ -90,14 +91,17 @@ EF_API ef_lms ef_mb_to_lms(ef_mb mb, ef_mb_scale scale);
 
 typedef struct ef_cct {
   double cct_k; /**< NaN when not defined */
-  double duv;   /**< distance in CIE 1960 u, v, positive above the locus */
+  double duv;   /**< distance in CIE 1960 u, v, positive above the locus; also
+                     told beyond 0.05; NaN when the nearest point of the locus
+                     is not between the two temperatures */
   bool defined; /**< 1000 K to 100000 K and |duv| <= 0.05 (CIE 015:2018) */
 } ef_cct;
 
 /** Nearest Planckian radiator in CIE 1960 u, v (CIE 1931 observer,
  * c2 = 1.4388e-2 m K), found on the computed locus, no isotherm table. */
 EF_API ef_cct ef_xy_to_cct(ef_xy xy);
-/** Chromaticity of the Planckian radiator at `temperature_k` (500 to 1e6). */
+/** Chromaticity of the Planckian radiator at `temperature_k` (500 to 1e6); NaN
+ * outside. */
 EF_API ef_xy ef_planck_xy(double temperature_k);
 
 /* ---- Dominant wavelength and purity ------------------------------------ */
@@ -106,16 +110,23 @@ typedef struct ef_dominant {
   double dominant_nm;  /**< wavelength on the locus; of the complementary
                             colour when `complementary`; NaN at the white */
   bool complementary;  /**< the colour lies towards the purple line */
-  double purity;       /**< excitation purity, 0 at white, 1 on the boundary */
+  double purity;       /**< excitation purity, 0 at white, 1 on the boundary,
+                            above 1 for what no light can be */
 } ef_dominant;
 
 /** Of `xy` seen against `white` (the equal-energy stimulus for lights by
  * default, the illuminant for surfaces), on the observer's spectrum locus
- * interpolated between 1 nm points, 380 to 780 nm. */
+ * interpolated between 1 nm points, 380 to 780 nm, closed by the line under
+ * its two ends. Near the ends, where the last digits of the tables make the
+ * locus jitter or turn back, one direction may belong to several wavelengths:
+ * the one nearest 560 nm is given. EF_INVALID for a chromaticity that is not
+ * finite or a white outside the locus. */
 EF_API ef_status ef_xy_to_dominant(ef_xy xy, ef_xy white,
                                    const ef_observer *observer,
                                    ef_dominant *out, ef_error *error);
-/** Spectrum locus of the observer: chromaticities at `n` wavelengths. */
+/** Spectrum locus of the observer: chromaticities at `n` wavelengths from 360
+ * to 830 nm (EF_INVALID outside), linear between 1 nm points; NaN where the
+ * observer sees nothing (cie-2015 below 390 nm). */
 EF_API ef_status ef_locus_xy(const ef_observer *observer, size_t n,
                              const double *wavelength_nm, ef_xy *out,
                              ef_error *error);
@@ -132,7 +143,11 @@ typedef struct ef_rendering {
 } ef_rendering;
 
 /** Of one light sampled on `grid` (any unit). 5 nm sums over 360-830 nm with
- * the CIE 1931 observer. EF_NO_ANSWER for a dark light or one without a CCT. */
+ * the CIE 1931 observer; a light with steps below 5 nm is gathered into 5 nm
+ * bands first, each sample divided between the two points beside it, so that no
+ * line is lost; wider steps are interpolated. Zero outside the samples.
+ * EF_NO_ANSWER for a dark light or one without a CCT, or with one above
+ * 25000 K, where daylight ends. EF_INVALID for values that are not finite. */
 EF_API ef_status ef_rendering_index(const ef_grid *grid, const double *power,
                                     ef_rendering *out, ef_error *error);
 

@@ -61,7 +61,8 @@ EF_API double ef_observer_k_m(const ef_observer *observer);
  * functions but are the CIE 2006 ones of the nearest field (1931, 1964,
  * files): outputs say so. */
 EF_API bool ef_observer_cones_borrowed(const ef_observer *observer);
-/** Channels on the standard grid. */
+/** Channels on the standard grid; zero where the source has no figures (cones
+ * below 390 nm, S above 615 nm, and the cie-2015 tristimulus with them). */
 EF_API ef_channels ef_observer_channels(const ef_observer *observer,
                                         ef_channel_role role);
 
@@ -106,7 +107,8 @@ EF_API ef_weights *ef_observer_weights(const ef_observer *observer,
                                        const ef_notes *notes, ef_error *error);
 
 /** Channel values of an illuminant itself, scaled so that the observer's y_bar
- * gives 100 (the white point). out: as many values as channels of `role`. */
+ * gives 100 (the white point), summed on `working` (NULL: the standard grid).
+ * out: as many values as channels of `role`. */
 EF_API ef_status ef_observer_white(const ef_observer *observer,
                                    ef_channel_role role,
                                    const ef_illuminant *illuminant,
