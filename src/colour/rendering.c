@@ -71,6 +71,11 @@ static ef_status to_five_nm(const ef_grid *grid, const double *power,
                             double *banded, ef_error *error) {
   const ef_status status = ef_grid_check(grid, error);
   if (status != EF_OK) return status;
+  for (size_t i = 0; i < grid->count; ++i) {
+    if (isfinite(power[i])) continue;
+    return ef__error_set(error, EF_INVALID,
+                         "the light's value %zu is not a finite number", i + 1);
+  }
   const ef_grid simple = ef_grid_simplify(grid);
   if (is_fine(&simple)) {
     gather(&simple, power, banded);
