@@ -52,6 +52,9 @@ static void names_and_limits(void **state) {
   assert_null(ef_device_drive_name(device, 3));
   assert_null(ef_device_limit_name(device, 3, true));
   assert_null(ef_device_curve_about(device, 3));
+  double slope = 0;
+  assert_true(isnan(ef_device_amount(device, 3, 0.5, &slope)) && isnan(slope));
+  assert_true(isnan(ef_device_drive(device, 3, 0.5)));
   assert_string_equal(ef_device_curve_about(device, 2), "power 2.3");
   assert_true(ef_device_has_spectra(device));
   assert_true(ef_device_absolute(device));
@@ -475,9 +478,8 @@ static double luminance_at_full_drive(const ef_device *device,
   const double full[3] = {1, 1, 1};
   ef_viewing viewing = ef_viewing_default(NULL);
   viewing.absolute = true;
-  ef_weights *weights =
-      ef_observer_weights(observer, EF_TRISTIMULUS, ef_device_grid(device),
-                          &viewing, NULL, NULL);
+  ef_weights *weights = ef_observer_weights(
+      observer, EF_TRISTIMULUS, ef_device_grid(device), &viewing, NULL, NULL);
   assert_int_equal(ef_device_spectrum(device, full, spectrum, NULL, NULL),
                    EF_OK);
   assert_int_equal(ef_weights_apply(weights, 1, spectrum, 1, xyz, NULL), EF_OK);

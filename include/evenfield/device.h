@@ -72,7 +72,8 @@ EF_API bool ef_device_has_spectra(const ef_device *device);
 EF_API bool ef_device_absolute(const ef_device *device);
 /** What happens to each drive before the amounts mix; borrowed text. */
 EF_API const char *ef_device_curve_about(const ef_device *device, size_t i);
-/** Curve of channel `i`, and its inverse; see ef_tone_curve_amount. */
+/** Curve of channel `i`, and its inverse; see ef_tone_curve_amount. NaN when
+ * there is no such channel. */
 EF_API double ef_device_amount(const ef_device *device, size_t i, double drive,
                                double *slope);
 EF_API double ef_device_drive(const ef_device *device, size_t i,
@@ -80,8 +81,9 @@ EF_API double ef_device_drive(const ef_device *device, size_t i,
 /** Grid of the spectra; count 0 when there are none. */
 EF_API const ef_grid *ef_device_grid(const ef_device *device);
 /** Stimulus spectrum at `drive[n_drives]` into `spectrum[grid count]`, and
- * unless NULL its Jacobian d spectrum / d drive (count x n_drives).
- * EF_NO_ANSWER when the device has no spectra. */
+ * unless NULL its Jacobian d spectrum / d drive (count x n_drives). Drives are
+ * clamped to [0, 1]; one that is not finite is EF_INVALID. EF_NO_ANSWER when
+ * the device has no spectra. */
 EF_API ef_status ef_device_spectrum(const ef_device *device,
                                     const double *drive, double *spectrum,
                                     double *jacobian, ef_error *error);
@@ -94,8 +96,9 @@ typedef struct ef_display_settings {
   size_t n_curves;
   const ef_tone_curve *const *curve;
   /** Light falling on the screen: illuminance, the screen's diffuse reflectance
-   * (0 to 1) and the light's distribution. 0 lux: dark room. Needs spectra or
-   * tristimulus values in cd/m^2. */
+   * (0 to 1) and the light's distribution. 0 lux: dark room. Adds the luminance
+   * lux * reflectance / pi to every colour. Needs spectra in W sr^-1 m^-2 nm^-1
+   * or tristimulus values in cd/m^2, else EF_INVALID. */
   double ambient_lux;
   double screen_reflectance;
   const ef_illuminant *ambient_illuminant;
@@ -105,13 +108,19 @@ typedef struct ef_display_settings {
 /** No curves, dark room, no notes. */
 EF_API ef_display_settings ef_display_settings_default(void);
 
-/** From measured spectra at full drive, each including the display's black:
- * a spectrum named `black`, `white` or `ambient` plays that part, all others
- * (3 to EF_MAX_DRIVES) are primaries in file order. Without `black` the black
- * is zero and a note says so. `white`, if there, serves the additivity check
- * of ef_display_additivity. EF_INVALID for surfaces, a primary without light,
- * or white darker than black; EF_NO_ANSWER for primaries that are linearly
- * dependent to the CIE 1931 observer (with the condition number). */
+/** From measured spectra at full drive. A spectrum named `black`, `white` or
+ * `ambient` (case ignored) plays that part, all others (3 to EF_MAX_DRIVES)
+ * are primaries in file order. Primaries and white are measured in the dark,
+ * each with the display's black in it; `ambient`, measured with the display
+ * off, is what the screen reflects and is added to every colour (EF_INVALID
+ * together with room light in the settings). Without `black` the black is zero
+ * and a note says so. `white`, if there, serves the additivity check of
+ * ef_display_additivity.
+ * EF_INVALID for surfaces, too few or too many primaries, a primary that adds
+ * no light to the black, or a white (measured, else the sum of the primaries)
+ * that is not lighter than the black. EF_NO_ANSWER for primaries that are
+ * linearly dependent to the CIE 1931 observer: a condition number, of unit
+ * columns, above 6.7e7 (half of the digits lost), which the message gives. */
 EF_API ef_device *ef_display_from_spectra(const char *name,
                                           const ef_spectra *spectra,
                                           const ef_display_settings *settings,
@@ -119,7 +128,7 @@ EF_API ef_device *ef_display_from_spectra(const char *name,
 
 /** A published encoding by name: `srgb`, `bt709`, `bt2020`, `p3-d65`,
  * `p3-dci`, `oprgb`, `romm`, `ebu`, `smpte-c`, `ntsc-1953`, `ap0`, `ap1`, ...
- * No spectra; relative (Y of white 1). */
+ * No spectra; relative (Y of white 1), black zero. */
 EF_API ef_device *ef_display_from_encoding(const char *name,
                                            const ef_display_settings *settings,
                                            ef_error *error);
@@ -163,13 +172,18 @@ typedef struct ef_residual {
   ef_xyz white; /**< measured with all drives at full, else the model's */
 } ef_residual;
 
-/** Derives black (the rows with all drives 0, averaged), primaries (single
- * channel at full drive), monotone tone curves (single-channel ramps, else the
- * grey ramp, a repeated drive averaged, a falling step pooled with its
- * neighbour and noted) and compares the model with every row that is a mixture
- * of at least two channels. `residual` may be NULL, else it has room for n_rows
- * and *n_residuals receives how many were filled, in row order.
- * EF_NO_ANSWER says which row is missing (black may be: a note). */
+/** Derives a display from its measurements in the dark:
+ * - black: the rows with all drives 0, averaged (none: zero, with a note);
+ * - primaries: single channel at full drive, averaged (none: EF_NO_ANSWER);
+ * - tone curves, unless the settings have some: least-squares amounts of the
+ *   channel's own ramp, else of the grey ramp, relative to its end (with a
+ *   note), else linear (with a note); a repeated drive is averaged, a falling
+ *   or flat step pooled with its neighbour (with a note);
+ * - the model's prediction for every row that is a mixture of at least two
+ *   channels. `residual` may be NULL, else it has room for n_rows, and
+ *   *n_residuals receives how many were filled, in row order.
+ * Refuses what ef_display_from_spectra refuses, drives outside [0, 1] and
+ * values that are not finite, with the line of the row. */
 EF_API ef_device *ef_display_from_measurements(
     const char *name, const ef_measurements *measurements,
     const ef_display_settings *settings, ef_residual *residual,
@@ -191,10 +205,12 @@ EF_API ef_status ef_display_additivity(const ef_device *device,
 typedef struct ef_setup ef_setup;
 
 /** Folds the device for the observer. Tristimulus values of the setup are
- * scaled so that all drives at full give Y = 100. `illuminant` serves devices
- * that reflect (NULL for lights). The device and the observer must outlive the
- * setup. EF_NO_ANSWER when the device has no spectra and the observer is not
- * the one its values were measured for (cie-1931). */
+ * scaled so that its white has Y = 100: for lights all drives at full, for
+ * devices that reflect the perfect reflecting diffuser. `illuminant` serves
+ * devices that reflect and must be NULL for lights (EF_INVALID). The device and
+ * the observer must outlive the setup. EF_NO_ANSWER when the device has no
+ * spectra and the observer is not the one its values were measured for
+ * (cie-1931), or when the white has no luminance. */
 EF_API ef_setup *ef_setup_new(const ef_device *device,
                               const ef_observer *observer,
                               const ef_illuminant *illuminant,
@@ -202,7 +218,8 @@ EF_API ef_setup *ef_setup_new(const ef_device *device,
 EF_API void ef_setup_free(ef_setup *setup);
 EF_API const ef_device *ef_setup_device(const ef_setup *setup);
 EF_API const ef_observer *ef_setup_observer(const ef_setup *setup);
-/** All amounts 1 (Y = 100) and all amounts 0. */
+/** White (Y = 100; for lights all amounts 1), and the colour of all amounts 0:
+ * for displays black with the room light. */
 EF_API ef_xyz ef_setup_white(const ef_setup *setup);
 EF_API ef_xyz ef_setup_black(const ef_setup *setup);
 /** Luminance of the white in cd/m^2; NaN when the device is not absolute. */
@@ -228,7 +245,8 @@ EF_API ef_status ef_setup_light_xyz(const ef_setup *setup, const ef_grid *grid,
 
 /** Bytes of an ICC.1 version 4 matrix profile with one tone curve: display
  * class, XYZ connection space, adapted to D50 by linear Bradford with the
- * `chad` tag. Free with free(). */
+ * `chad` tag; `description` in ASCII. Equal input gives equal bytes: the date
+ * is a fixed one. Free with free(). */
 EF_API ef_status ef_profile_make_matrix(const char *description,
                                         const ef_encoding *encoding,
                                         unsigned char **bytes, size_t *length,

@@ -129,11 +129,16 @@ const char *ef_device_curve_about(const ef_device *device, size_t i) {
 
 double ef_device_amount(const ef_device *device, size_t i, double drive,
                         double *slope) {
-  return ef_tone_curve_amount(device->curve[i], drive, slope);
+  if (i < device->n_drives)
+    return ef_tone_curve_amount(device->curve[i], drive, slope);
+  if (slope != NULL)
+    *slope = nan("");
+  return nan("");
 }
 
 double ef_device_drive(const ef_device *device, size_t i, double amount) {
-  return ef_tone_curve_drive(device->curve[i], amount);
+  return i < device->n_drives ? ef_tone_curve_drive(device->curve[i], amount)
+                              : nan("");
 }
 
 /* ---- From drives to a spectrum ----------------------------------------- */
