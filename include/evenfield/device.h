@@ -32,8 +32,8 @@ typedef struct ef_tone_curve ef_tone_curve;
  * 22028-2: power 1.8 with a linear toe). EF_UNKNOWN_NAME gives near names. */
 EF_API ef_tone_curve *ef_tone_curve_new(const char *name, ef_error *error);
 /** Monotone (Steffen 1990) interpolation of a measured ramp: n >= 2 points,
- * drive strictly increasing from 0 to 1, level strictly increasing; levels are scaled
- * so that the ends are 0 and 1. EF_INVALID names the point at fault. */
+ * drive strictly increasing from 0 to 1, level strictly increasing; levels are
+ * scaled so that the ends are 0 and 1. EF_INVALID names the point at fault. */
 EF_API ef_tone_curve *ef_tone_curve_from_ramp(size_t n, const double *drive,
                                               const double *level,
                                               ef_error *error);
