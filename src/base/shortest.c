@@ -18,7 +18,7 @@ enum {
   MANTISSA_BITS = 52,
   MIN_SCALE = 0,  /* decimal places that keep 5^scale ... */
   MAX_SCALE = 23, /* ... below 2^54 */
-  MAX_SHIFT = 127
+  MAX_SHIFT = 63
 };
 
 /* ---- Exact, for everyday numbers --------------------------------------- */
@@ -37,14 +37,9 @@ static wide multiply(uint64_t a, uint64_t b) {
                 (other << 32) | (low & mask)};
 }
 
-/* floor(x / 2^shift), shift 1 to 127, and whether nothing was lost. The
- * quotient is known to fit. */
+/* floor(x / 2^shift), shift 1 to 63, and whether nothing was lost. The quotient
+ * is known to fit. */
 static uint64_t shift_right(wide x, unsigned shift, bool *is_exact) {
-  if (shift >= 64) {
-    const uint64_t lost = (x.high & ((UINT64_C(1) << (shift - 64)) - 1)) | x.low;
-    *is_exact = lost == 0;
-    return x.high >> (shift - 64);
-  }
   *is_exact = (x.low & ((UINT64_C(1) << shift) - 1)) == 0;
   return x.high << (64 - shift) | x.low >> shift;
 }

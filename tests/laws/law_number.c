@@ -17,7 +17,7 @@ static void check_round_trip(double value) {
 static void any_double_survives_as_text(void **state) {
   (void)state;
   gen g = gen_new(1);
-  for (int i = 0; i < 200000; ++i) check_round_trip(gen_any_double(&g));
+  for (int i = 0; i < 60000; ++i) check_round_trip(gen_any_double(&g));
   for (int i = 0; i < 20000; ++i) {
     check_round_trip(gen_between(&g, -100, 100));
     check_round_trip((double)(int64_t)gen_bits(&g));
@@ -125,7 +125,7 @@ static void text_is_the_shortest(void **state) {
 static void reading_is_correctly_rounded(void **state) {
   (void)state;
   gen g = gen_new(3);
-  for (int i = 0; i < 100000; ++i) {
+  for (int i = 0; i < 40000; ++i) {
     char text[64];
     const int n_digits = 1 + (int)gen_below(&g, 25);
     int length = 0;
