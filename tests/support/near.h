@@ -85,7 +85,7 @@ static inline void deviation_add(deviation *d, double actual, double expected,
   const double off = fabs(actual - expected);
   if (off <= d->largest) return; /* NaN goes on and is kept */
   d->largest = off;
-  snprintf(d->where, sizeof d->where, "%s", where);
+  snprintf(d->where, sizeof d->where, "%.95s", where);
 }
 
 /** As a TAP comment line. */
