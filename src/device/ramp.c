@@ -17,11 +17,8 @@ static int by_drive(const void *a, const void *b) {
 static ef__ramp_point merge(ef__ramp_point a, ef__ramp_point b) {
   const double weight = a.weight + b.weight;
   const double share = b.weight / weight;
-  ef__ramp_point mean = {a.drive + share * (b.drive - a.drive),
-                         a.level + share * (b.level - a.level), weight};
-  if (a.drive == b.drive)
-    mean.drive = a.drive;
-  return mean;
+  return (ef__ramp_point){a.drive + share * (b.drive - a.drive),
+                          a.level + share * (b.level - a.level), weight};
 }
 
 static size_t average_repeated(size_t n, ef__ramp_point *point) {
