@@ -36,7 +36,8 @@ static void bad_grids_are_refused(void **state) {
   check_bad_grid((ef_grid){3, 400, 1e-20, NULL}, "does not reach sample 3");
   check_bad_grid((ef_grid){3, 400, 1e308, NULL}, "does not reach sample 3");
   const double falling[] = {400, 420, 410};
-  check_bad_grid((ef_grid){3, 0, 0, falling}, "sample 3 is at 410 nm after 420");
+  check_bad_grid((ef_grid){3, 0, 0, falling},
+                 "sample 3 is at 410 nm after 420");
   const double twice[] = {400, 400, 410};
   check_bad_grid((ef_grid){3, 0, 0, twice}, "sample 2 is at 400 nm after 400");
   const double negative[] = {-400, 400};
@@ -50,7 +51,8 @@ static void bad_grids_are_refused(void **state) {
 static void grids_are_compared_and_simplified(void **state) {
   (void)state;
   double list[31];
-  for (size_t i = 0; i < 31; ++i) list[i] = 400 + 10 * (double)i;
+  for (size_t i = 0; i < 31; ++i)
+    list[i] = 400 + 10 * (double)i;
   const ef_grid even = {31, 400, 10, NULL};
   const ef_grid listed = {31, 0, 0, list};
   assert_true(ef_grid_equal(&even, &listed));
@@ -121,7 +123,8 @@ static void spectra_are_copied(void **state) {
   assert_int_equal(ef_spectra_find(s, "mast", &index, NULL), EF_OK);
   assert_int_equal(index, 1);
   ef_error error;
-  assert_int_equal(ef_spectra_find(s, "masts", &index, &error), EF_UNKNOWN_NAME);
+  assert_int_equal(ef_spectra_find(s, "masts", &index, &error),
+                   EF_UNKNOWN_NAME);
   assert_error(&error, EF_UNKNOWN_NAME,
                "no spectrum is called 'masts'; near names: mast");
   ef_spectra_free(s);
@@ -168,8 +171,8 @@ static double resample_one(const ef_grid *from, const double *value, double at,
                            ef_interpolation rule, ef_extension extension) {
   const ef_grid to = {1, at, 0, NULL};
   double out = NOT_A_NUMBER;
-  assert_int_equal(ef_resample(from, 1, value, &to, rule, extension, &out, NULL),
-                   EF_OK);
+  assert_int_equal(
+      ef_resample(from, 1, value, &to, rule, extension, &out, NULL), EF_OK);
   return out;
 }
 
@@ -177,18 +180,24 @@ static void ends_are_held_or_zero(void **state) {
   (void)state;
   const double value[] = {0.3, 0.5, 0.2, 0.6, 0.7, 0.4, 0.9};
   const ef_grid grid = {7, 400, 20, NULL};
-  const ef_interpolation rules[] = {EF_INTERPOLATE_SPRAGUE,
-                                    EF_INTERPOLATE_SPLINE,
-                                    EF_INTERPOLATE_LINEAR};
+  const ef_interpolation rules[] = {
+      EF_INTERPOLATE_SPRAGUE, EF_INTERPOLATE_SPLINE, EF_INTERPOLATE_LINEAR};
   for (size_t r = 0; r < 3; ++r) {
-    assert_near(resample_one(&grid, value, 380, rules[r], EF_EXTEND_HOLD), 0.3, 0);
-    assert_near(resample_one(&grid, value, 600, rules[r], EF_EXTEND_HOLD), 0.9, 0);
-    assert_near(resample_one(&grid, value, 600, rules[r], EF_EXTEND_AUTO), 0.9, 0);
-    assert_near(resample_one(&grid, value, 399.9, rules[r], EF_EXTEND_ZERO), 0, 0);
-    assert_near(resample_one(&grid, value, 520.1, rules[r], EF_EXTEND_ZERO), 0, 0);
+    assert_near(resample_one(&grid, value, 380, rules[r], EF_EXTEND_HOLD), 0.3,
+                0);
+    assert_near(resample_one(&grid, value, 600, rules[r], EF_EXTEND_HOLD), 0.9,
+                0);
+    assert_near(resample_one(&grid, value, 600, rules[r], EF_EXTEND_AUTO), 0.9,
+                0);
+    assert_near(resample_one(&grid, value, 399.9, rules[r], EF_EXTEND_ZERO), 0,
+                0);
+    assert_near(resample_one(&grid, value, 520.1, rules[r], EF_EXTEND_ZERO), 0,
+                0);
     /* The end samples themselves are inside. */
-    assert_near(resample_one(&grid, value, 400, rules[r], EF_EXTEND_ZERO), 0.3, 0);
-    assert_near(resample_one(&grid, value, 520, rules[r], EF_EXTEND_ZERO), 0.9, 0);
+    assert_near(resample_one(&grid, value, 400, rules[r], EF_EXTEND_ZERO), 0.3,
+                0);
+    assert_near(resample_one(&grid, value, 520, rules[r], EF_EXTEND_ZERO), 0.9,
+                0);
   }
 }
 
@@ -200,7 +209,8 @@ static void every_rule_keeps_the_samples(void **state) {
   gen_fill(&g, 9, -1, 1, value);
   for (int rule = EF_INTERPOLATE_AUTO; rule <= EF_INTERPOLATE_LINEAR; ++rule) {
     assert_int_equal(ef_resample(&grid, 1, value, &grid, (ef_interpolation)rule,
-                                 EF_EXTEND_ZERO, out, NULL), EF_OK);
+                                 EF_EXTEND_ZERO, out, NULL),
+                     EF_OK);
     assert_same_bits(out, value, 9);
   }
 }
@@ -221,7 +231,8 @@ static void automatic_rule_follows_the_samples(void **state) {
   assert_near(resample_one(&five, value, 447, automatic, hold),
               resample_one(&five, value, 447, EF_INTERPOLATE_SPLINE, hold), 0);
   assert_near(resample_one(&uneven, value, 447, automatic, hold),
-              resample_one(&uneven, value, 447, EF_INTERPOLATE_SPLINE, hold), 0);
+              resample_one(&uneven, value, 447, EF_INTERPOLATE_SPLINE, hold),
+              0);
   assert_near(resample_one(&two, value, 405, automatic, hold), 0.35, 1e-16);
   assert_near(resample_one(&one, value, 400, automatic, hold), 0.3, 0);
   assert_near(resample_one(&one, value, 700, automatic, hold), 0.3, 0);
@@ -234,11 +245,13 @@ static void check_refused(const ef_grid *from, ef_interpolation rule,
   const ef_grid to = {1, 410, 0, NULL};
   double out;
   ef_error error;
-  assert_int_equal(ef_resample(from, 1, value, &to, rule, EF_EXTEND_HOLD, &out,
-                               &error), EF_INVALID);
+  assert_int_equal(
+      ef_resample(from, 1, value, &to, rule, EF_EXTEND_HOLD, &out, &error),
+      EF_INVALID);
   assert_error(&error, EF_INVALID, part);
-  assert_int_equal(ef_resample(from, 1, value, &to, rule, EF_EXTEND_HOLD, &out,
-                               NULL), EF_INVALID);
+  assert_int_equal(
+      ef_resample(from, 1, value, &to, rule, EF_EXTEND_HOLD, &out, NULL),
+      EF_INVALID);
 }
 
 static void rules_say_what_they_need(void **state) {
@@ -255,15 +268,18 @@ static void rules_say_what_they_need(void **state) {
 }
 
 /* The spline through three points, by hand: samples 0, 1, 0 at 0, 1, 2 have
- * the second derivative -3 in the middle; at 0.5: 0.5 + (0.125 - 0.5) (-3)/6. */
+ * the second derivative -3 in the middle; at 0.5: 0.5 + (0.125 - 0.5) (-3)/6.
+ */
 static void spline_of_three_points(void **state) {
   (void)state;
   const double value[] = {0, 1, 0};
   const ef_grid grid = {3, 500, 1, NULL};
-  assert_near(resample_one(&grid, value, 500.5, EF_INTERPOLATE_SPLINE,
-                           EF_EXTEND_HOLD), 0.6875, 1e-15);
-  assert_near(resample_one(&grid, value, 501.5, EF_INTERPOLATE_SPLINE,
-                           EF_EXTEND_HOLD), 0.6875, 1e-15);
+  assert_near(
+      resample_one(&grid, value, 500.5, EF_INTERPOLATE_SPLINE, EF_EXTEND_HOLD),
+      0.6875, 1e-15);
+  assert_near(
+      resample_one(&grid, value, 501.5, EF_INTERPOLATE_SPLINE, EF_EXTEND_HOLD),
+      0.6875, 1e-15);
 }
 
 /* ---- Bandpass ---------------------------------------------------------- */
@@ -295,143 +311,6 @@ static void bandpass_transposed_is_the_transposed(void **state) {
   assert_near(left, right, 1e-14);
 }
 
-/* ---- Illuminants ------------------------------------------------------- */
-
-static double power_at(const char *name, double wavelength_nm) {
-  ef_error error;
-  ef_illuminant *const light = ef_illuminant_new(name, &error);
-  if (light == NULL) fail_msg("%s: %s", name, error.message);
-  const ef_grid grid = {1, wavelength_nm, 0, NULL};
-  double power = NOT_A_NUMBER;
-  assert_int_equal(ef_illuminant_sample(light, &grid, &power, NULL), EF_OK);
-  ef_illuminant_free(light);
-  return power;
-}
-
-static void every_named_illuminant_can_be_made(void **state) {
-  (void)state;
-  const char *const *names;
-  const size_t n = ef_illuminant_names(&names);
-  assert_int_equal(n, 44);
-  const ef_grid grid = ef_grid_standard();
-  double *const power = malloc(grid.count * sizeof *power);
-  assert_non_null(power);
-  for (size_t i = 0; i < n; ++i) {
-    ef_illuminant *const light = ef_illuminant_new(names[i], NULL);
-    assert_non_null(light);
-    assert_string_equal(ef_illuminant_name(light), names[i]);
-    assert_int_equal(ef_illuminant_sample(light, &grid, power, NULL), EF_OK);
-    double sum = 0;
-    for (size_t k = 0; k < grid.count; ++k) {
-      assert_true(power[k] >= 0);
-      sum += power[k];
-    }
-    assert_true(sum > 0);
-    ef_illuminant_free(light);
-  }
-  free(power);
-  ef_illuminant_free(NULL);
-}
-
-static void illuminants_follow_formula_or_table(void **state) {
-  (void)state;
-  assert_near(power_at("E", 123.4), 100, 0);
-  assert_near(power_at("A", 560), 100, 0);
-  assert_near(power_at("planck:2856", 560), 100, 0);
-  assert_near(power_at("daylight:5003", 560), 100, 0);
-  assert_near(power_at("d65", 560), 100, 0);
-  /* Linear between 5 nm rows: the value at 527 lies two fifths of the way. */
-  const double left = power_at("C", 525);
-  const double right = power_at("C", 530);
-  assert_near(power_at("C", 527), left + 0.4 * (right - left), 1e-12);
-  assert_near(power_at("FL2", 379), 0, 0);
-  assert_near(power_at("FL2", 781), 0, 0);
-  assert_true(power_at("FL2", 380) > 0);
-  assert_near(power_at("D65", 831), 0, 0);
-  /* Wien's law: the peak of 5000 K lies at 2897.77 um K / 5000 K. */
-  assert_true(power_at("planck:5000", 579.554) > power_at("planck:5000", 578));
-  assert_true(power_at("planck:5000", 579.554) > power_at("planck:5000", 581));
-}
-
-static void check_unknown(const char *name, ef_status status, const char *part) {
-  ef_error error;
-  assert_null(ef_illuminant_new(name, &error));
-  assert_error(&error, status, part);
-  assert_null(ef_illuminant_new(name, NULL));
-}
-
-static void bad_illuminant_names_are_answered(void **state) {
-  (void)state;
-  check_unknown("FL13", EF_UNKNOWN_NAME, "near names: FL1, FL3, FL10, FL11, FL12");
-  check_unknown("D56", EF_UNKNOWN_NAME, "near names: D50, D55, D65");
-  check_unknown("daylight6504", EF_UNKNOWN_NAME, "near names: daylight:6504");
-  check_unknown("", EF_UNKNOWN_NAME, "no illuminant is called ''");
-  check_unknown("daylight:3999", EF_INVALID, "from 4000 to 25000 K");
-  check_unknown("daylight:25001", EF_INVALID, "from 4000 to 25000 K");
-  check_unknown("daylight:", EF_INVALID, "'daylight:'");
-  check_unknown("daylight:65oo", EF_INVALID, "'daylight:65oo'");
-  check_unknown("planck:499", EF_INVALID, "from 500 to 100000 K");
-  check_unknown("planck:nan", EF_INVALID, "from 500 to 100000 K");
-}
-
-static void names_with_temperatures_are_kept(void **state) {
-  (void)state;
-  ef_illuminant *const light = ef_illuminant_new("DayLight:6504.0", NULL);
-  assert_non_null(light);
-  assert_string_equal(ef_illuminant_name(light), "daylight:6504");
-  ef_illuminant_free(light);
-}
-
-static void illuminant_from_a_measured_light(void **state) {
-  (void)state;
-  const double value[] = {1, 2, 4, 8, 16, 32, 5, 5, 5, 5, 5, 5};
-  const char *const names[] = {"lamp", "other"};
-  const ef_grid grid = {6, 400, 10, NULL};
-  ef_spectra *const lights =
-      ef_spectra_new(2, names, &grid, EF_LIGHT, value, NULL);
-  ef_spectra *const surfaces =
-      ef_spectra_new(2, names, &grid, EF_SURFACE, value, NULL);
-  assert_non_null(lights);
-  assert_non_null(surfaces);
-  ef_illuminant *const lamp = ef_illuminant_from_spectra(lights, 0, NULL);
-  assert_non_null(lamp);
-  assert_string_equal(ef_illuminant_name(lamp), "lamp");
-  const double at[] = {395, 400, 433, 450, 451};
-  const ef_grid to = {5, 0, 0, at};
-  double power[5];
-  assert_int_equal(ef_illuminant_sample(lamp, &to, power, NULL), EF_OK);
-  assert_near(power[0], 0, 0);
-  assert_near(power[1], 1, 0);
-  assert_near(power[2], resample_one(&grid, value, 433, EF_INTERPOLATE_SPRAGUE,
-                                     EF_EXTEND_ZERO), 0);
-  assert_near(power[3], 32, 0);
-  assert_near(power[4], 0, 0);
-  ef_error error;
-  assert_null(ef_illuminant_from_spectra(lights, 2, &error));
-  assert_error(&error, EF_INVALID, "no spectrum 3 in a set of 2");
-  assert_null(ef_illuminant_from_spectra(surfaces, 0, &error));
-  assert_error(&error, EF_INVALID, "'lamp' is a surface");
-  ef_illuminant_free(lamp);
-  ef_spectra_free(lights);
-  ef_spectra_free(surfaces);
-}
-
-static void bad_grid_for_an_illuminant_is_refused(void **state) {
-  (void)state;
-  const ef_grid bad = {2, 400, -5, NULL};
-  const char *const names[] = {"E", "D65", "planck:3000"};
-  for (size_t i = 0; i < 3; ++i) {
-    ef_illuminant *const light = ef_illuminant_new(names[i], NULL);
-    assert_non_null(light);
-    double power[2];
-    ef_error error;
-    assert_int_equal(ef_illuminant_sample(light, &bad, power, &error),
-                     EF_INVALID);
-    assert_error(&error, EF_INVALID, "step is -5 nm");
-    ef_illuminant_free(light);
-  }
-}
-
 /* ---- Folding and applying ---------------------------------------------- */
 
 /* Two channels over 400, 401 ... 410 nm. */
@@ -452,8 +331,8 @@ static void folded_weights_by_hand(void **state) {
     channel[11 + i] = i == 3 ? 8 : 0; /* at 403: 3/4 and 1/4 of neighbours */
   }
   const double scale[] = {0.5, 2};
-  ef_weights *w = ef_weights_fold(&samples, 2, channel, NULL, scale, &settings,
-                                  NULL);
+  ef_weights *w =
+      ef_weights_fold(&samples, 2, channel, NULL, scale, &settings, NULL);
   assert_non_null(w);
   assert_int_equal(ef_weights_channels(w), 2);
   assert_int_equal(ef_weights_samples(w), 3);
@@ -466,7 +345,8 @@ static void folded_weights_by_hand(void **state) {
   ef_weights_free(w);
   settings.kind = EF_LIGHT; /* zero outside; and an illuminant */
   double light[11];
-  for (size_t i = 0; i < 11; ++i) light[i] = i < 2 ? 100 : 2;
+  for (size_t i = 0; i < 11; ++i)
+    light[i] = i < 2 ? 100 : 2;
   w = ef_weights_fold(&samples, 2, channel, light, scale, &settings, NULL);
   assert_non_null(w);
   const double cut[] = {2.5, 4, 2.5, 24, 8, 0};
@@ -509,8 +389,8 @@ static void check_fold_refused(const ef_grid *samples, const double *channel,
                                const ef_fold_settings *settings,
                                const char *part) {
   ef_error error;
-  assert_null(ef_weights_fold(samples, 1, channel, light, scale, settings,
-                              &error));
+  assert_null(
+      ef_weights_fold(samples, 1, channel, light, scale, settings, &error));
   assert_error(&error, EF_INVALID, part);
 }
 
@@ -562,7 +442,8 @@ static void applying_by_hand(void **state) {
   const ef_fold_settings settings = small_settings();
   const ef_grid samples = {3, 402, 4, NULL};
   double channel[11];
-  for (size_t i = 0; i < 11; ++i) channel[i] = 1;
+  for (size_t i = 0; i < 11; ++i)
+    channel[i] = 1;
   const double scale = 0.5;
   ef_weights *const w =
       ef_weights_fold(&samples, 1, channel, NULL, &scale, &settings, NULL);
@@ -603,7 +484,8 @@ static bool make_everything(void *context) {
   }
   if (light != NULL && lamp != NULL &&
       ef_illuminant_sample(light, &settings.working, out, &error) == EF_OK) {
-    weights = ef_weights_fold(&grid, 1, channel, out, &scale, &settings, &error);
+    weights =
+        ef_weights_fold(&grid, 1, channel, out, &scale, &settings, &error);
   }
   if (weights != NULL) {
     done = ef_weights_apply(weights, 1, value, 1, out, &error) == EF_OK;
@@ -639,12 +521,6 @@ int main(void) {
       cmocka_unit_test(spline_of_three_points),
       cmocka_unit_test(bandpass_uses_the_published_weights),
       cmocka_unit_test(bandpass_transposed_is_the_transposed),
-      cmocka_unit_test(every_named_illuminant_can_be_made),
-      cmocka_unit_test(illuminants_follow_formula_or_table),
-      cmocka_unit_test(bad_illuminant_names_are_answered),
-      cmocka_unit_test(names_with_temperatures_are_kept),
-      cmocka_unit_test(illuminant_from_a_measured_light),
-      cmocka_unit_test(bad_grid_for_an_illuminant_is_refused),
       cmocka_unit_test(folded_weights_by_hand),
       cmocka_unit_test(weights_of_nothing_have_no_outside),
       cmocka_unit_test(weights_keep_their_own_grid),

@@ -11,8 +11,8 @@ void ef__mat3_multiply(const double a[9], const double b[9], double out[9]) {
   double product[9];
   for (size_t i = 0; i < 3; ++i) {
     for (size_t j = 0; j < 3; ++j) {
-      product[3 * i + j] = a[3 * i] * b[j] + a[3 * i + 1] * b[3 + j] +
-                           a[3 * i + 2] * b[6 + j];
+      product[3 * i + j] =
+          a[3 * i] * b[j] + a[3 * i + 1] * b[3 + j] + a[3 * i + 2] * b[6 + j];
     }
   }
   memcpy(out, product, sizeof product);
@@ -43,15 +43,18 @@ bool ef__mat3_inverse(const double m[9], double out[9]) {
   }
   const double determinant = ef__mat3_determinant(m);
   /* Written so that NaN counts as singular. */
-  if (!(fabs(determinant) > 9 * DBL_EPSILON * volume)) return false;
-  if (!isfinite(determinant)) return false;
+  if (!(fabs(determinant) > 9 * DBL_EPSILON * volume))
+    return false;
+  if (!isfinite(determinant))
+    return false;
   const double adjugate[9] = {
       m[4] * m[8] - m[5] * m[7], m[2] * m[7] - m[1] * m[8],
       m[1] * m[5] - m[2] * m[4], m[5] * m[6] - m[3] * m[8],
       m[0] * m[8] - m[2] * m[6], m[2] * m[3] - m[0] * m[5],
       m[3] * m[7] - m[4] * m[6], m[1] * m[6] - m[0] * m[7],
       m[0] * m[4] - m[1] * m[3]};
-  for (size_t i = 0; i < 9; ++i) out[i] = adjugate[i] / determinant;
+  for (size_t i = 0; i < 9; ++i)
+    out[i] = adjugate[i] / determinant;
   return true;
 }
 
@@ -68,10 +71,14 @@ static void swap_rows(double *a, size_t n, size_t i, size_t j) {
 static bool scale_rows(size_t n, double *a, size_t n_right, double *b) {
   for (size_t i = 0; i < n; ++i) {
     double largest = 0;
-    for (size_t j = 0; j < n; ++j) largest = fmax(largest, fabs(a[i * n + j]));
-    if (!(largest > 0) || !isfinite(largest)) return false;
-    for (size_t j = 0; j < n; ++j) a[i * n + j] /= largest;
-    for (size_t j = 0; j < n_right; ++j) b[i * n_right + j] /= largest;
+    for (size_t j = 0; j < n; ++j)
+      largest = fmax(largest, fabs(a[i * n + j]));
+    if (!(largest > 0) || !isfinite(largest))
+      return false;
+    for (size_t j = 0; j < n; ++j)
+      a[i * n + j] /= largest;
+    for (size_t j = 0; j < n_right; ++j)
+      b[i * n_right + j] /= largest;
   }
   return true;
 }
@@ -90,23 +97,27 @@ static void substitute_back(size_t n, const double *a, size_t n_right,
 }
 
 bool ef__solve(size_t n, double *a, size_t n_right, double *b) {
-  if (!scale_rows(n, a, n_right, b)) return false;
+  if (!scale_rows(n, a, n_right, b))
+    return false;
   for (size_t step = 0; step < n; ++step) {
     size_t pivot = step;
     for (size_t i = step + 1; i < n; ++i) {
-      if (fabs(a[i * n + step]) > fabs(a[pivot * n + step])) pivot = i;
+      if (fabs(a[i * n + step]) > fabs(a[pivot * n + step]))
+        pivot = i;
     }
     /* Rows have a largest element of 1: elimination leaves about n epsilon of
      * rounding in place of an exact zero. */
     const double size = fabs(a[pivot * n + step]);
-    if (!(size > (double)n * DBL_EPSILON)) return false;
+    if (!(size > (double)n * DBL_EPSILON))
+      return false;
     if (pivot != step) {
       swap_rows(a, n, pivot, step);
       swap_rows(b, n_right, pivot, step);
     }
     for (size_t i = step + 1; i < n; ++i) {
       const double factor = a[i * n + step] / a[step * n + step];
-      for (size_t k = step; k < n; ++k) a[i * n + k] -= factor * a[step * n + k];
+      for (size_t k = step; k < n; ++k)
+        a[i * n + k] -= factor * a[step * n + k];
       for (size_t k = 0; k < n_right; ++k) {
         b[i * n_right + k] -= factor * b[step * n_right + k];
       }
@@ -145,8 +156,10 @@ ef_status ef__condition(size_t n_rows, size_t n_columns, const double *a,
   const int code = gsl_linalg_SV_decomp_jacobi(&left.matrix, &right.matrix,
                                                &diagonal.vector);
   const ef_status status = ef__gsl_status(code, "singular values", error);
-  if (status != EF_OK) return status;
-  if (singular != NULL) memcpy(singular, values, small * sizeof *values);
+  if (status != EF_OK)
+    return status;
+  if (singular != NULL)
+    memcpy(singular, values, small * sizeof *values);
   const double smallest = values[small - 1];
   const double floor = (double)tall * DBL_EPSILON * values[0];
   *condition = smallest > floor ? values[0] / smallest : HUGE_VAL;

@@ -39,7 +39,8 @@ static size_t edit_distance(const char *a, const char *b) {
   const size_t length = strlen(b);
   size_t row[3][LONGEST_NAME + 1];
   size_t i = 0;
-  for (size_t j = 0; j <= length; ++j) row[0][j] = j;
+  for (size_t j = 0; j <= length; ++j)
+    row[0][j] = j;
   for (; a[i] != '\0'; ++i) {
     const size_t *const above = row[i % 3];
     size_t *const here = row[(i + 1) % 3];
@@ -49,9 +50,11 @@ static size_t edit_distance(const char *a, const char *b) {
       here[j + 1] = least(above[j] + differ, above[j + 1] + 1, here[j] + 1);
       const bool swapped = i > 0 && j > 0 && lower(a[i]) == lower(b[j - 1]) &&
                            lower(a[i - 1]) == lower(b[j]);
-      if (!swapped) continue;
+      if (!swapped)
+        continue;
       const size_t before = row[(i + 2) % 3][j - 1] + 1;
-      if (before < here[j + 1]) here[j + 1] = before;
+      if (before < here[j + 1])
+        here[j + 1] = before;
     }
   }
   return row[i % 3][length];
@@ -65,7 +68,8 @@ static size_t rank(const char *name, const char *known) {
     return SIZE_MAX;
   }
   const size_t distance = edit_distance(name, known);
-  if (distance > 1 && is_prefix(name, known)) return 1;
+  if (distance > 1 && is_prefix(name, known))
+    return 1;
   return distance <= length / 3 ? distance : SIZE_MAX;
 }
 
@@ -74,12 +78,17 @@ size_t ef_nearest_names(const char *name, const char *const *known, size_t n,
   size_t n_found = 0;
   for (size_t i = 0; i < n; ++i) {
     const size_t distance = rank(name, known[i]);
-    if (distance == SIZE_MAX) continue;
+    if (distance == SIZE_MAX)
+      continue;
     size_t place = n_found;
-    while (place > 0 && rank(name, known[index[place - 1]]) > distance) --place;
-    if (place >= max) continue;
-    if (n_found < max) ++n_found;
-    for (size_t j = n_found - 1; j > place; --j) index[j] = index[j - 1];
+    while (place > 0 && rank(name, known[index[place - 1]]) > distance)
+      --place;
+    if (place >= max)
+      continue;
+    if (n_found < max)
+      ++n_found;
+    for (size_t j = n_found - 1; j > place; --j)
+      index[j] = index[j - 1];
     index[place] = i;
   }
   return n_found;
@@ -88,13 +97,15 @@ size_t ef_nearest_names(const char *name, const char *const *known, size_t n,
 /* ", " joined names after what `text` holds already, as far as they fit. */
 static void append_name(char *text, size_t size, const char *name, bool first) {
   const size_t used = strlen(text);
-  if (used + strlen(name) + 3 > size) return;
+  if (used + strlen(name) + 3 > size)
+    return;
   snprintf(text + used, size - used, "%s%s", first ? "" : ", ", name);
 }
 
 ef_status ef__error_unknown(ef_error *error, const char *what, const char *name,
                             const char *const *known, size_t n) {
-  if (error == NULL) return EF_UNKNOWN_NAME;
+  if (error == NULL)
+    return EF_UNKNOWN_NAME;
   size_t index[MAX_LISTED];
   const size_t n_near = ef_nearest_names(name, known, n, MAX_LISTED, index);
   char list[300] = "";
@@ -105,7 +116,7 @@ ef_status ef__error_unknown(ef_error *error, const char *what, const char *name,
     append_name(list, sizeof list, known[i], i == 0);
   }
   const bool has_more = n_near == 0 && n > MAX_LISTED;
-  return ef__error_set(error, EF_UNKNOWN_NAME, "no %s is called '%.64s'; %s: %s%s",
-                       what, name, n_near > 0 ? "near names" : "known", list,
-                       has_more ? ", ..." : "");
+  return ef__error_set(
+      error, EF_UNKNOWN_NAME, "no %s is called '%.64s'; %s: %s%s", what, name,
+      n_near > 0 ? "near names" : "known", list, has_more ? ", ..." : "");
 }

@@ -37,13 +37,16 @@ static bool is_digit(char c) {
 }
 
 static void add_digit(decimal *d, char c) {
-  if (d->n == 0 && c == '0') return;
-  if (d->n < FAST_DIGITS) d->leading = d->leading * 10 + (uint64_t)(c - '0');
+  if (d->n == 0 && c == '0')
+    return;
+  if (d->n < FAST_DIGITS)
+    d->leading = d->leading * 10 + (uint64_t)(c - '0');
   if (d->n < MAX_DIGITS) {
     d->digit[d->n++] = c;
     return;
   }
-  if (c != '0') d->digit[MAX_DIGITS - 1] = '1'; /* not a tie any more */
+  if (c != '0')
+    d->digit[MAX_DIGITS - 1] = '1'; /* not a tie any more */
   ++d->exponent;
 }
 
@@ -51,7 +54,8 @@ static const char *scan_digits(const char *at, const char *end, decimal *d,
                                bool in_fraction, bool *any) {
   for (; at < end && is_digit(*at); ++at) {
     add_digit(d, *at);
-    if (in_fraction) --d->exponent;
+    if (in_fraction)
+      --d->exponent;
     *any = true;
   }
   return at;
@@ -61,11 +65,14 @@ static const char *scan_digits(const char *at, const char *end, decimal *d,
 static const char *scan_exponent(const char *at, const char *end,
                                  long long *exponent) {
   const bool is_negative = at < end && *at == '-';
-  if (at < end && (*at == '-' || *at == '+')) ++at;
-  if (at == end || !is_digit(*at)) return NULL;
+  if (at < end && (*at == '-' || *at == '+'))
+    ++at;
+  if (at == end || !is_digit(*at))
+    return NULL;
   long long value = 0;
   for (; at < end && is_digit(*at); ++at) {
-    if (value < MAX_EXPONENT) value = value * 10 + (*at - '0');
+    if (value < MAX_EXPONENT)
+      value = value * 10 + (*at - '0');
   }
   *exponent += is_negative ? -value : value;
   return at;
@@ -79,10 +86,13 @@ static bool scan(const char *text, size_t length, char mark, decimal *d) {
   d->n = 0;
   d->leading = 0;
   d->exponent = 0;
-  if (at < end && (*at == '-' || *at == '+')) ++at;
+  if (at < end && (*at == '-' || *at == '+'))
+    ++at;
   at = scan_digits(at, end, d, false, &any);
-  if (at < end && *at == mark) at = scan_digits(at + 1, end, d, true, &any);
-  if (!any) return false;
+  if (at < end && *at == mark)
+    at = scan_digits(at + 1, end, d, true, &any);
+  if (!any)
+    return false;
   if (at < end && (*at == 'e' || *at == 'E')) {
     at = scan_exponent(at + 1, end, &d->exponent);
   }
@@ -92,12 +102,13 @@ static bool scan(const char *text, size_t length, char mark, decimal *d) {
 /* Both factors are exact doubles, so the one rounding is the right one
  * (Clinger 1990). False when they are not. */
 static bool convert_exactly(const decimal *d, double *value) {
-  static const double power[] = {1e0,  1e1,  1e2,  1e3,  1e4,  1e5,
-                                 1e6,  1e7,  1e8,  1e9,  1e10, 1e11,
-                                 1e12, 1e13, 1e14, 1e15, 1e16, 1e17,
-                                 1e18, 1e19, 1e20, 1e21, 1e22};
-  if (d->n > FAST_DIGITS || d->leading > UINT64_C(1) << 53) return false;
-  if (d->exponent < -22 || d->exponent > 22) return false;
+  static const double power[] = {1e0,  1e1,  1e2,  1e3,  1e4,  1e5,  1e6,  1e7,
+                                 1e8,  1e9,  1e10, 1e11, 1e12, 1e13, 1e14, 1e15,
+                                 1e16, 1e17, 1e18, 1e19, 1e20, 1e21, 1e22};
+  if (d->n > FAST_DIGITS || d->leading > UINT64_C(1) << 53)
+    return false;
+  if (d->exponent < -22 || d->exponent > 22)
+    return false;
   const double whole = (double)d->leading;
   *value = d->exponent < 0 ? whole / power[-d->exponent]
                            : whole * power[d->exponent];
@@ -106,8 +117,10 @@ static bool convert_exactly(const decimal *d, double *value) {
 
 static double convert(decimal *d) {
   double value;
-  if (d->n == 0) return 0;
-  if (convert_exactly(d, &value)) return value;
+  if (d->n == 0)
+    return 0;
+  if (convert_exactly(d, &value))
+    return value;
   char text[MAX_DIGITS + 32];
   d->digit[d->n] = '\0';
   snprintf(text, sizeof text, "%se%lld", d->digit, d->exponent);
@@ -117,9 +130,11 @@ static double convert(decimal *d) {
 bool ef_number_parse(const char *text, size_t length, char decimal_mark,
                      double *value) {
   decimal d;
-  if (!scan(text, length, decimal_mark, &d)) return false;
+  if (!scan(text, length, decimal_mark, &d))
+    return false;
   const double magnitude = convert(&d);
-  if (!isfinite(magnitude)) return false;
+  if (!isfinite(magnitude))
+    return false;
   *value = d.is_negative ? -magnitude : magnitude;
   return true;
 }
@@ -137,31 +152,39 @@ static char *put_plain(char *to, const char *digit, int n, int exponent) {
   if (exponent < 0) {
     *to++ = '0';
     *to++ = '.';
-    for (int i = -1; i > exponent; --i) *to++ = '0';
+    for (int i = -1; i > exponent; --i)
+      *to++ = '0';
   }
   for (int i = 0; i < n || i <= exponent; ++i) {
     *to++ = i < n ? digit[i] : '0';
-    if (i == exponent && i + 1 < n) *to++ = '.';
+    if (i == exponent && i + 1 < n)
+      *to++ = '.';
   }
   return to;
 }
 
 size_t ef_number_format(double value, char text[EF_NUMBER_TEXT]) {
-  if (isnan(value)) return put(text, "nan");
-  if (isinf(value)) return put(text, value < 0 ? "-inf" : "inf");
-  if (value == 0) return put(text, signbit(value) ? "-0" : "0");
+  if (isnan(value))
+    return put(text, "nan");
+  if (isinf(value))
+    return put(text, value < 0 ? "-inf" : "inf");
+  if (value == 0)
+    return put(text, signbit(value) ? "-0" : "0");
   char digit[EF__SHORTEST_DIGITS];
   const int exponent = ef__shortest_digits(fabs(value), digit);
   const int n = (int)strlen(digit);
   char *to = text;
-  if (value < 0) *to++ = '-';
+  if (value < 0)
+    *to++ = '-';
   if (exponent >= FIRST_PLAIN && exponent <= LAST_PLAIN) {
     to = put_plain(to, digit, n, exponent);
     *to = '\0';
   } else {
     *to++ = digit[0];
-    if (n > 1) *to++ = '.';
-    for (int i = 1; i < n; ++i) *to++ = digit[i];
+    if (n > 1)
+      *to++ = '.';
+    for (int i = 1; i < n; ++i)
+      *to++ = digit[i];
     to += snprintf(to, 8, "e%d", exponent);
   }
   return (size_t)(to - text);
@@ -170,10 +193,13 @@ size_t ef_number_format(double value, char text[EF_NUMBER_TEXT]) {
 /* Replaces whatever stands between two groups of digits by one '.'. */
 static size_t set_decimal_point(char *text, size_t length) {
   size_t from = text[0] == '-';
-  while (from < length && is_digit(text[from])) ++from;
+  while (from < length && is_digit(text[from]))
+    ++from;
   size_t to = from;
-  while (to < length && !is_digit(text[to])) ++to;
-  if (to == length) return length;
+  while (to < length && !is_digit(text[to]))
+    ++to;
+  if (to == length)
+    return length;
   text[from++] = '.';
   memmove(text + from, text + to, length - to + 1);
   return length - (to - from);
@@ -185,10 +211,12 @@ static bool is_all_zeros(const char *text) {
 
 size_t ef_number_format_fixed(double value, int decimals,
                               char text[EF_NUMBER_TEXT]) {
-  if (!isfinite(value)) return ef_number_format(value, text);
+  if (!isfinite(value))
+    return ef_number_format(value, text);
   const int shown = decimals < 0 ? 0 : decimals > 12 ? 12 : decimals;
   const int wanted = snprintf(text, EF_NUMBER_TEXT, "%.*f", shown, value);
-  if (wanted < 0 || wanted >= EF_NUMBER_TEXT) return ef_number_format(value, text);
+  if (wanted < 0 || wanted >= EF_NUMBER_TEXT)
+    return ef_number_format(value, text);
   size_t length = set_decimal_point(text, (size_t)wanted);
   if (text[0] == '-' && is_all_zeros(text)) {
     memmove(text, text + 1, length);

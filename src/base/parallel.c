@@ -27,7 +27,8 @@ static void *take_chunks(void *cookie) {
   for (;;) {
     const size_t index =
         atomic_fetch_add_explicit(&w->next, 1, memory_order_relaxed);
-    if (index >= w->n_chunks) return NULL;
+    if (index >= w->n_chunks)
+      return NULL;
     run_chunk(w, index);
   }
 }
@@ -36,17 +37,21 @@ static size_t thread_count(int jobs, size_t n_chunks) {
   size_t count = jobs > 0 ? (size_t)jobs : 1;
   if (jobs == 0) {
     const long online = sysconf(_SC_NPROCESSORS_ONLN);
-    if (online > 0) count = (size_t)online;
+    if (online > 0)
+      count = (size_t)online;
   }
-  if (count > n_chunks) count = n_chunks;
+  if (count > n_chunks)
+    count = n_chunks;
   return count < MAX_THREADS ? count : MAX_THREADS;
 }
 
 void ef__parallel_for(size_t n, size_t chunk, int jobs,
                       void (*body)(void *ctx, size_t begin, size_t end),
                       void *ctx) {
-  if (n == 0) return;
-  if (chunk == 0) chunk = 1;
+  if (n == 0)
+    return;
+  if (chunk == 0)
+    chunk = 1;
   work w = {.n = n,
             .chunk = chunk,
             .n_chunks = n / chunk + (n % chunk != 0),
@@ -58,9 +63,11 @@ void ef__parallel_for(size_t n, size_t chunk, int jobs,
   const size_t n_threads = thread_count(jobs, w.n_chunks);
   /* The calling thread is one of them. */
   while (n_started + 1 < n_threads) {
-    if (pthread_create(&thread[n_started], NULL, take_chunks, &w) != 0) break;
+    if (pthread_create(&thread[n_started], NULL, take_chunks, &w) != 0)
+      break;
     ++n_started;
   }
   take_chunks(&w);
-  for (size_t i = 0; i < n_started; ++i) pthread_join(thread[i], NULL);
+  for (size_t i = 0; i < n_started; ++i)
+    pthread_join(thread[i], NULL);
 }

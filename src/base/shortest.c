@@ -5,7 +5,8 @@
  * scaled to 18 or 19 digits, are integers of 107 bits divided by a power of
  * two: they are computed exactly, and digits are dropped while a shorter
  * decimal is left between the bounds (Steele & White 1990; the loop is that of
- * Adams 2018). Outside that range roundings to more and more digits are tried. */
+ * Adams 2018). Outside that range roundings to more and more digits are tried.
+ */
 #include "base/base_private.h"
 
 #include <float.h>
@@ -62,10 +63,13 @@ static bool find_bounds(double value, int *scale, bounds *b) {
   const int digits = (int)floor((exponent + MANTISSA_BITS) * 78913.0 / 262144);
   *scale = 17 - digits;
   const int shift = -(exponent - 2 + *scale);
-  if (*scale < MIN_SCALE || *scale > MAX_SCALE) return false;
-  if (shift < 1 || shift > MAX_SHIFT) return false;
+  if (*scale < MIN_SCALE || *scale > MAX_SCALE)
+    return false;
+  if (shift < 1 || shift > MAX_SHIFT)
+    return false;
   uint64_t power = 1; /* of 5: that of 2 is in the shift */
-  for (int i = 0; i < *scale; ++i) power *= 5;
+  for (int i = 0; i < *scale; ++i)
+    power *= 5;
   /* In quarters of the last bit. Below a power of two the doubles lie twice as
    * dense (none in this range is subnormal). */
   const bool is_power = mantissa == UINT64_C(1) << MANTISSA_BITS;
@@ -74,8 +78,8 @@ static bool find_bounds(double value, int *scale, bounds *b) {
   b->low = shift_right(multiply(quarters - (is_power ? 1 : 2), power), places,
                        &b->low_is_exact);
   b->value = shift_right(multiply(quarters, power), places, &b->value_is_exact);
-  b->high = shift_right(multiply(quarters + 2, power), places,
-                        &b->high_is_exact);
+  b->high =
+      shift_right(multiply(quarters + 2, power), places, &b->high_is_exact);
   b->include_ends = mantissa % 2 == 0;
   return true;
 }
@@ -86,7 +90,8 @@ static uint64_t shorten(bounds b, int *dropped) {
   bool low_is_whole = b.include_ends && b.low_is_exact;
   bool value_is_whole = b.value_is_exact;
   unsigned last = 0; /* digit dropped last */
-  if (!b.include_ends && b.high_is_exact) --b.high;
+  if (!b.include_ends && b.high_is_exact)
+    --b.high;
   *dropped = 0;
   while (b.high / 10 > b.low / 10 || (low_is_whole && b.low % 10 == 0)) {
     low_is_whole = low_is_whole && b.low % 10 == 0;
@@ -106,12 +111,15 @@ static uint64_t shorten(bounds b, int *dropped) {
 static bool exact_digits(double value, char *digit, int *exponent) {
   int scale, dropped;
   bounds b;
-  if (!find_bounds(value, &scale, &b)) return false;
+  if (!find_bounds(value, &scale, &b))
+    return false;
   uint64_t whole = shorten(b, &dropped);
   char text[EF__SHORTEST_DIGITS];
   size_t n = 0;
-  for (; whole > 0; whole /= 10) text[n++] = (char)('0' + whole % 10);
-  for (size_t i = 0; i < n; ++i) digit[i] = text[n - 1 - i];
+  for (; whole > 0; whole /= 10)
+    text[n++] = (char)('0' + whole % 10);
+  for (size_t i = 0; i < n; ++i)
+    digit[i] = text[n - 1 - i];
   digit[n] = '\0';
   *exponent = (int)n - 1 + dropped - scale;
   return true;
@@ -127,7 +135,8 @@ static int round_to_digits(double value, int n, char *digit) {
   const char *const e = strchr(text, 'e');
   int kept = 0;
   for (const char *at = text; at < e; ++at) {
-    if (*at >= '0' && *at <= '9') digit[kept++] = *at;
+    if (*at >= '0' && *at <= '9')
+      digit[kept++] = *at;
   }
   digit[kept] = '\0';
   return atoi(e + 1);
@@ -144,7 +153,8 @@ static double digits_value(const char *digit, int exponent) {
 /* Adds one unit to the last digit; returns the exponent of the first digit. */
 static int add_unit(char *digit, int exponent) {
   size_t i = strlen(digit);
-  while (i > 0 && digit[i - 1] == '9') digit[--i] = '0';
+  while (i > 0 && digit[i - 1] == '9')
+    digit[--i] = '0';
   if (i > 0) {
     ++digit[i - 1];
     return exponent;
@@ -166,7 +176,8 @@ static int tried_digits(double value, char *digit) {
       exponent = add_unit(digit, exponent);
       back = digits_value(digit, exponent);
     }
-    if (back == value) return exponent;
+    if (back == value)
+      return exponent;
   }
   return round_to_digits(value, 17, digit);
 }
@@ -177,6 +188,7 @@ int ef__shortest_digits(double value, char digit[EF__SHORTEST_DIGITS]) {
     exponent = tried_digits(value, digit);
   }
   size_t n = strlen(digit);
-  while (n > 1 && digit[n - 1] == '0') digit[--n] = '\0';
+  while (n > 1 && digit[n - 1] == '0')
+    digit[--n] = '\0';
   return exponent;
 }

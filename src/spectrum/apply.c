@@ -42,8 +42,10 @@ static double dot_1(size_t n, const double *restrict w,
                     const double *restrict x) {
   double a[LANES] = {0};
   size_t i = 0;
-  for (; i + LANES <= n; i += LANES) add_four(w + i, x + i, a);
-  for (size_t k = 0; i + k < n; ++k) a[k] += w[i + k] * x[i + k];
+  for (; i + LANES <= n; i += LANES)
+    add_four(w + i, x + i, a);
+  for (size_t k = 0; i + k < n; ++k)
+    a[k] += w[i + k] * x[i + k];
   return total(a);
 }
 
@@ -77,7 +79,8 @@ static void apply_row(const ef_weights *weights, size_t begin, size_t end,
   for (; c + 3 <= end; c += 3) {
     dot_3(n, weights->matrix + c * n, sample, out + c);
   }
-  for (; c < end; ++c) out[c] = dot_1(n, weights->matrix + c * n, sample);
+  for (; c < end; ++c)
+    out[c] = dot_1(n, weights->matrix + c * n, sample);
 }
 
 static size_t tile_channels(const ef_weights *weights) {
@@ -92,7 +95,8 @@ static void apply_range(void *ctx, size_t begin, size_t end) {
   const size_t n_channels = weights->n_channels;
   const size_t tile = tile_channels(weights);
   for (size_t block = begin; block < end; block += BLOCK_SPECTRA) {
-    const size_t stop = end - block > BLOCK_SPECTRA ? block + BLOCK_SPECTRA : end;
+    const size_t stop =
+        end - block > BLOCK_SPECTRA ? block + BLOCK_SPECTRA : end;
     for (size_t first = 0; first < n_channels; first += tile) {
       const size_t last = n_channels - first > tile ? first + tile : n_channels;
       for (size_t i = block; i < stop; ++i) {
@@ -111,9 +115,11 @@ ef_status ef_weights_apply(const ef_weights *weights, size_t n,
                          jobs);
   }
   const size_t products = weights->n_channels * weights->n_samples;
-  if (products == 0) return EF_OK;
+  if (products == 0)
+    return EF_OK;
   batch b = {weights, sample, out};
-  const size_t chunk = products < CHUNK_PRODUCTS ? CHUNK_PRODUCTS / products : 1;
+  const size_t chunk =
+      products < CHUNK_PRODUCTS ? CHUNK_PRODUCTS / products : 1;
   ef__parallel_for(n, chunk, jobs, apply_range, &b);
   return EF_OK;
 }

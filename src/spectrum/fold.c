@@ -19,14 +19,16 @@ ef_fold_settings ef_fold_settings_default(void) {
 }
 
 static ef_extension resolve_extension(const ef_fold_settings *settings) {
-  if (settings->extension != EF_EXTEND_AUTO) return settings->extension;
+  if (settings->extension != EF_EXTEND_AUTO)
+    return settings->extension;
   return settings->kind == EF_SURFACE ? EF_EXTEND_HOLD : EF_EXTEND_ZERO;
 }
 
 static ef_status check_finite(size_t n, const double *value, const char *what,
                               ef_error *error) {
   for (size_t i = 0; i < n; ++i) {
-    if (isfinite(value[i])) continue;
+    if (isfinite(value[i]))
+      continue;
     return ef__error_set(error, EF_INVALID,
                          "value %zu of the %s is not a finite number", i + 1,
                          what);
@@ -39,7 +41,8 @@ static ef_weights *allocate(size_t n_channels, const ef_grid *samples) {
   ef_weights part = {.n_channels = n_channels, .n_samples = samples->count};
   double *wavelength = NULL;
   size_t n_weights;
-  if (!ef__size_multiply(n_channels, samples->count, &n_weights)) return NULL;
+  if (!ef__size_multiply(n_channels, samples->count, &n_weights))
+    return NULL;
   const ef__part parts[] = {
       {&weights, 1, sizeof *weights},
       {&part.matrix, n_weights, sizeof *part.matrix},
@@ -59,7 +62,8 @@ static double outside_share(const ef__operator *op, const double *weight) {
   double outside = 0;
   for (size_t i = 0; i < op->n_out; ++i) {
     whole += fabs(weight[i]);
-    if (op->outside[i]) outside += fabs(weight[i]);
+    if (op->outside[i])
+      outside += fabs(weight[i]);
   }
   return whole > 0 ? outside / whole : 0;
 }
@@ -76,28 +80,31 @@ static void fold_channels(const ef__operator *op, const double *channel,
     }
     weights->outside[c] = outside_share(op, working);
     ef__operator_apply_transposed(op, working, scratch, row);
-    for (size_t i = 0; i < op->n_in; ++i) row[i] *= scale[c];
+    for (size_t i = 0; i < op->n_in; ++i)
+      row[i] *= scale[c];
   }
 }
 
 ef_weights *ef_weights_fold(const ef_grid *samples, size_t n_channels,
                             const double *channel, const double *illuminant,
                             const double *scale,
-                            const ef_fold_settings *settings,
-                            ef_error *error) {
+                            const ef_fold_settings *settings, ef_error *error) {
   ef_weights *weights = NULL;
   double *work = NULL;
   ef__operator *const op = ef__operator_new(
       samples, &settings->working, settings->interpolation,
       resolve_extension(settings), settings->correct_bandpass, error);
-  if (op == NULL) return NULL;
+  if (op == NULL)
+    return NULL;
   size_t n_values;
   if (!ef__size_multiply(n_channels, op->n_out, &n_values)) {
     ef__error_set(error, EF_INVALID, "%zu channels are too many", n_channels);
     goto done;
   }
-  if (check_finite(n_values, channel, "channels", error) != EF_OK) goto done;
-  if (check_finite(n_channels, scale, "scales", error) != EF_OK) goto done;
+  if (check_finite(n_values, channel, "channels", error) != EF_OK)
+    goto done;
+  if (check_finite(n_channels, scale, "scales", error) != EF_OK)
+    goto done;
   if (illuminant != NULL &&
       check_finite(op->n_out, illuminant, "illuminant", error) != EF_OK) {
     goto done;

@@ -18,7 +18,8 @@ ef_grid ef_grid_standard(void) {
 }
 
 double ef_grid_wavelength(const ef_grid *grid, size_t i) {
-  if (grid->wavelength_nm != NULL) return grid->wavelength_nm[i];
+  if (grid->wavelength_nm != NULL)
+    return grid->wavelength_nm[i];
   return grid->start_nm + (double)i * grid->step_nm;
 }
 
@@ -28,7 +29,8 @@ static ef_status check_even(const ef_grid *grid, ef_error *error) {
                          "sample 1 is at %g nm; wavelengths must be above zero",
                          grid->start_nm);
   }
-  if (grid->count == 1) return EF_OK;
+  if (grid->count == 1)
+    return EF_OK;
   if (!isfinite(grid->step_nm) || !(grid->step_nm > 0)) {
     return ef__error_set(error, EF_INVALID,
                          "the step is %g nm; it must be above zero",
@@ -48,7 +50,8 @@ ef_status ef_grid_check(const ef_grid *grid, ef_error *error) {
   if (grid->count == 0) {
     return ef__error_set(error, EF_INVALID, "a grid needs at least one sample");
   }
-  if (grid->wavelength_nm == NULL) return check_even(grid, error);
+  if (grid->wavelength_nm == NULL)
+    return check_even(grid, error);
   double before = 0;
   for (size_t i = 0; i < grid->count; ++i) {
     const double at = grid->wavelength_nm[i];
@@ -73,7 +76,8 @@ static bool is_same(double a, double b) {
 }
 
 bool ef_grid_equal(const ef_grid *a, const ef_grid *b) {
-  if (a->count != b->count) return false;
+  if (a->count != b->count)
+    return false;
   for (size_t i = 0; i < a->count; ++i) {
     if (!is_same(ef_grid_wavelength(a, i), ef_grid_wavelength(b, i))) {
       return false;
@@ -83,7 +87,8 @@ bool ef_grid_equal(const ef_grid *a, const ef_grid *b) {
 }
 
 ef_grid ef_grid_simplify(const ef_grid *grid) {
-  if (grid->wavelength_nm == NULL || grid->count < 2) return *grid;
+  if (grid->wavelength_nm == NULL || grid->count < 2)
+    return *grid;
   const double start = grid->wavelength_nm[0];
   const double length = grid->wavelength_nm[grid->count - 1] - start;
   const ef_grid even = {.count = grid->count,
@@ -91,7 +96,8 @@ ef_grid ef_grid_simplify(const ef_grid *grid) {
                         .step_nm = length / (double)(grid->count - 1)};
   for (size_t i = 1; i < grid->count; ++i) {
     const double off = grid->wavelength_nm[i] - ef_grid_wavelength(&even, i);
-    if (fabs(off) > even_share * even.step_nm) return *grid;
+    if (fabs(off) > even_share * even.step_nm)
+      return *grid;
   }
   return even;
 }
@@ -102,7 +108,8 @@ size_t ef__grid_storage(const ef_grid *grid) {
 
 ef_grid ef__grid_copy(const ef_grid *grid, double *storage) {
   ef_grid copy = *grid;
-  if (grid->wavelength_nm == NULL) return copy;
+  if (grid->wavelength_nm == NULL)
+    return copy;
   memcpy(storage, grid->wavelength_nm, grid->count * sizeof *storage);
   copy.wavelength_nm = storage;
   return copy;
@@ -127,11 +134,15 @@ ef__place ef__grid_locate(const ef_grid *grid, double wavelength_nm,
                           size_t *i) {
   const size_t last = grid->count - 1;
   *i = 0;
-  if (is_same(wavelength_nm, ef_grid_wavelength(grid, 0))) return EF__AT;
-  if (wavelength_nm < ef_grid_wavelength(grid, 0)) return EF__BELOW;
+  if (is_same(wavelength_nm, ef_grid_wavelength(grid, 0)))
+    return EF__AT;
+  if (wavelength_nm < ef_grid_wavelength(grid, 0))
+    return EF__BELOW;
   *i = last_not_above(grid, wavelength_nm);
-  if (is_same(wavelength_nm, ef_grid_wavelength(grid, *i))) return EF__AT;
-  if (*i == last) return EF__ABOVE;
+  if (is_same(wavelength_nm, ef_grid_wavelength(grid, *i)))
+    return EF__AT;
+  if (*i == last)
+    return EF__ABOVE;
   if (is_same(wavelength_nm, ef_grid_wavelength(grid, *i + 1))) {
     ++*i;
     return EF__AT;

@@ -16,7 +16,7 @@ typedef enum law {
 
 struct ef_illuminant {
   law law;
-  double exponent_nm; /* LAW_PLANCK: c2 / T */
+  double exponent_nm;             /* LAW_PLANCK: c2 / T */
   ef_interpolation interpolation; /* LAW_SAMPLES, with the next two */
   ef_grid grid;
   double *power;
@@ -34,13 +34,11 @@ static const double reference_nm = 560;
 /* ---- Names ------------------------------------------------------------- */
 
 static const char *const known[] = {
-    "A",       "C",        "D50",    "D55",    "D65",    "D75",    "E",
-    "FL1",     "FL2",      "FL3",    "FL4",    "FL5",    "FL6",    "FL7",
-    "FL8",     "FL9",      "FL10",   "FL11",   "FL12",   "FL3.1",  "FL3.2",
-    "FL3.3",   "FL3.4",    "FL3.5",  "FL3.6",  "FL3.7",  "FL3.8",  "FL3.9",
-    "FL3.10",  "FL3.11",   "FL3.12", "FL3.13", "FL3.14", "FL3.15", "HP1",
-    "LED-B1",  "LED-B2",   "LED-B3", "LED-B4", "LED-B5", "LED-BH1",
-    "LED-RGB1", "LED-V1",  "LED-V2",
+    "A", "C", "D50", "D55", "D65", "D75", "E", "FL1", "FL2", "FL3", "FL4",
+    "FL5", "FL6", "FL7", "FL8", "FL9", "FL10", "FL11", "FL12", "FL3.1", "FL3.2",
+    "FL3.3", "FL3.4", "FL3.5", "FL3.6", "FL3.7", "FL3.8", "FL3.9", "FL3.10",
+    "FL3.11", "FL3.12", "FL3.13", "FL3.14", "FL3.15", "HP1", "LED-B1", "LED-B2",
+    "LED-B3", "LED-B4", "LED-B5", "LED-BH1", "LED-RGB1", "LED-V1", "LED-V2",
     /* The forms with a temperature, for the near names of an error. */
     "daylight:6504", "planck:2856"};
 
@@ -66,7 +64,8 @@ size_t ef_illuminant_names(const char *const **names) {
 static const char *table_of(const char *name) {
   for (size_t i = 0; i < sizeof home / sizeof *home; ++i) {
     const char *const beginning = home[i].beginning;
-    if (strncmp(name, beginning, strlen(beginning)) == 0) return home[i].table;
+    if (strncmp(name, beginning, strlen(beginning)) == 0)
+      return home[i].table;
   }
   return NULL;
 }
@@ -102,7 +101,8 @@ static ef_illuminant *allocate(const char *name, const ef_grid *grid,
 static ef_illuminant *from_table(const char *name, const char *table_name,
                                  ef_error *error) {
   const ef_table *const table = ef_table_find(table_name, error);
-  if (table == NULL) return NULL;
+  if (table == NULL)
+    return NULL;
   const size_t column = ef_table_column(table, name);
   if (column == SIZE_MAX) {
     ef__error_set(error, EF_UNKNOWN_NAME, "table '%s' has no column '%s'",
@@ -111,7 +111,8 @@ static ef_illuminant *from_table(const char *name, const char *table_name,
   }
   const ef_grid grid = ef_table_grid(table);
   ef_illuminant *const illuminant = allocate(name, &grid, error);
-  if (illuminant == NULL) return NULL;
+  if (illuminant == NULL)
+    return NULL;
   illuminant->interpolation = EF_INTERPOLATE_LINEAR;
   memcpy(illuminant->power, table->value + column * table->n_rows,
          table->n_rows * sizeof *illuminant->power);
@@ -121,14 +122,16 @@ static ef_illuminant *from_table(const char *name, const char *table_name,
 static ef_illuminant *planckian(const char *name, double exponent_nm,
                                 ef_error *error) {
   ef_illuminant *const illuminant = allocate(name, NULL, error);
-  if (illuminant == NULL) return NULL;
+  if (illuminant == NULL)
+    return NULL;
   illuminant->law = LAW_PLANCK;
   illuminant->exponent_nm = exponent_nm;
   return illuminant;
 }
 
 static ef_illuminant *from_name(const char *name, ef_error *error) {
-  if (strcmp(name, "E") == 0) return allocate(name, NULL, error);
+  if (strcmp(name, "E") == 0)
+    return allocate(name, NULL, error);
   if (strcmp(name, "A") == 0) {
     return planckian(name, c2_of_a_nm_k / temperature_of_a_k, error);
   }
@@ -153,10 +156,12 @@ static void daylight_shares(double temperature_k, double *m1, double *m2) {
 static ef_illuminant *daylight(const char *name, double temperature_k,
                                ef_error *error) {
   const ef_table *const table = ef_table_find("daylight-components", error);
-  if (table == NULL) return NULL;
+  if (table == NULL)
+    return NULL;
   const ef_grid grid = ef_table_grid(table);
   ef_illuminant *const illuminant = allocate(name, &grid, error);
-  if (illuminant == NULL) return NULL;
+  if (illuminant == NULL)
+    return NULL;
   illuminant->interpolation = EF_INTERPOLATE_LINEAR;
   double m1, m2;
   daylight_shares(temperature_k, &m1, &m2);
@@ -173,7 +178,8 @@ static ef_illuminant *daylight(const char *name, double temperature_k,
 static const char *after_form(const char *name, const char *form) {
   char beginning[16];
   const size_t length = strlen(form);
-  if (strlen(name) <= length || name[length] != ':') return NULL;
+  if (strlen(name) <= length || name[length] != ':')
+    return NULL;
   memcpy(beginning, name, length);
   beginning[length] = '\0';
   return ef__name_equal(beginning, form) ? name + length + 1 : NULL;
@@ -188,7 +194,8 @@ static bool read_temperature(const char *form, const char *text, double low_k,
   if (!is_number || *temperature_k < low_k || *temperature_k > high_k) {
     ef__error_set(error, EF_INVALID,
                   "'%s:%.32s': the temperature must be a number from %.0f to "
-                  "%.0f K", form, text, low_k, high_k);
+                  "%.0f K",
+                  form, text, low_k, high_k);
     return false;
   }
   char number[EF_NUMBER_TEXT];
@@ -199,7 +206,8 @@ static bool read_temperature(const char *form, const char *text, double low_k,
 
 ef_illuminant *ef_illuminant_new(const char *name, ef_error *error) {
   for (size_t i = 0; i < N_NAMES; ++i) {
-    if (ef__name_equal(name, known[i])) return from_name(known[i], error);
+    if (ef__name_equal(name, known[i]))
+      return from_name(known[i], error);
   }
   char kept[64];
   double temperature_k;
@@ -238,7 +246,8 @@ ef_illuminant *ef_illuminant_from_spectra(const ef_spectra *spectra, size_t i,
   }
   const ef_grid *const grid = ef_spectra_grid(spectra);
   ef_illuminant *const illuminant = allocate(name, grid, error);
-  if (illuminant == NULL) return NULL;
+  if (illuminant == NULL)
+    return NULL;
   illuminant->interpolation = EF_INTERPOLATE_AUTO;
   memcpy(illuminant->power, ef_spectra_values(spectra) + i * grid->count,
          grid->count * sizeof *illuminant->power);
@@ -257,8 +266,8 @@ const char *ef_illuminant_name(const ef_illuminant *illuminant) {
 
 /* ISO/CIE 11664-2:2022 equation 1, with any c2 / T. */
 static double planck(double exponent_nm, double wavelength_nm) {
-  const double share = expm1(exponent_nm / reference_nm) /
-                       expm1(exponent_nm / wavelength_nm);
+  const double share =
+      expm1(exponent_nm / reference_nm) / expm1(exponent_nm / wavelength_nm);
   return 100 * pow(reference_nm / wavelength_nm, 5) * share;
 }
 
@@ -270,11 +279,13 @@ ef_status ef_illuminant_sample(const ef_illuminant *illuminant,
                        illuminant->interpolation, EF_EXTEND_ZERO, power, error);
   }
   const ef_status status = ef_grid_check(grid, error);
-  if (status != EF_OK) return status;
+  if (status != EF_OK)
+    return status;
   for (size_t i = 0; i < grid->count; ++i) {
-    power[i] = illuminant->law == LAW_EQUAL
-                   ? 100
-                   : planck(illuminant->exponent_nm, ef_grid_wavelength(grid, i));
+    power[i] =
+        illuminant->law == LAW_EQUAL
+            ? 100
+            : planck(illuminant->exponent_nm, ef_grid_wavelength(grid, i));
   }
   return EF_OK;
 }

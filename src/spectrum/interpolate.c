@@ -11,7 +11,8 @@ enum { SPLINE_SAMPLES = 3, BANDPASS_SAMPLES = 2 };
 /* ---- Choosing the rule ------------------------------------------------- */
 
 static ef_interpolation resolve(ef_interpolation wanted, const ef_grid *from) {
-  if (wanted != EF_INTERPOLATE_AUTO) return wanted;
+  if (wanted != EF_INTERPOLATE_AUTO)
+    return wanted;
   const bool is_even = from->wavelength_nm == NULL;
   if (is_even && from->count >= EF__SPRAGUE_WIDTH) {
     return EF_INTERPOLATE_SPRAGUE;
@@ -53,12 +54,13 @@ static ef_status check_rule(ef_interpolation rule, const ef_grid *from,
  * properties in the tests. */
 static void sprague_coefficients(double t, double c[EF__SPRAGUE_WIDTH]) {
   static const double a[6][EF__SPRAGUE_WIDTH] = {
-      {0, 0, 24, 0, 0, 0},       {2, -16, 0, 16, -2, 0},
-      {-1, 16, -30, 16, -1, 0},  {-9, 39, -70, 66, -33, 7},
+      {0, 0, 24, 0, 0, 0},           {2, -16, 0, 16, -2, 0},
+      {-1, 16, -30, 16, -1, 0},      {-9, 39, -70, 66, -33, 7},
       {13, -64, 126, -124, 61, -12}, {-5, 25, -50, 50, -25, 5}};
   for (size_t j = 0; j < EF__SPRAGUE_WIDTH; ++j) {
     double sum = a[5][j];
-    for (size_t k = 5; k-- > 0;) sum = sum * t + a[k][j];
+    for (size_t k = 5; k-- > 0;)
+      sum = sum * t + a[k][j];
     c[j] = sum / 24;
   }
 }
@@ -69,8 +71,8 @@ static void sprague_coefficients(double t, double c[EF__SPRAGUE_WIDTH]) {
 static void sprague_row(ef__operator *op, size_t row, size_t i, double t) {
   const size_t n = op->n_in;
   const size_t start = i < 2 ? 0 : i - 2;
-  const size_t first = start + EF__SPRAGUE_WIDTH > n ? n - EF__SPRAGUE_WIDTH
-                                                     : start;
+  const size_t first =
+      start + EF__SPRAGUE_WIDTH > n ? n - EF__SPRAGUE_WIDTH : start;
   double *const out = op->coefficient + row * EF__SPRAGUE_WIDTH;
   double c[EF__SPRAGUE_WIDTH];
   sprague_coefficients(t, c);
@@ -98,7 +100,8 @@ static void local_row(ef__operator *op, size_t row, size_t i, double t,
   op->first[row] = i;
   op->coefficient[2 * row] = s;
   op->coefficient[2 * row + 1] = t;
-  if (!op->has_curvature) return;
+  if (!op->has_curvature)
+    return;
   const double scale = interval_nm * interval_nm / 6;
   op->curvature[2 * row] = (s * s * s - s) * scale;
   op->curvature[2 * row + 1] = (t * t * t - t) * scale;
@@ -138,16 +141,20 @@ static void fill_rows(ef__operator *op, const ef_grid *from, const ef_grid *to,
 
 /* ---- The operator ------------------------------------------------------ */
 
-static ef__operator *allocate(size_t n_in, size_t n_out, ef_interpolation rule) {
+static ef__operator *allocate(size_t n_in, size_t n_out,
+                              ef_interpolation rule) {
   const bool spline = rule == EF_INTERPOLATE_SPLINE;
   size_t width = EF__LOCAL_WIDTH;
-  if (rule == EF_INTERPOLATE_SPRAGUE) width = EF__SPRAGUE_WIDTH;
-  if (width > n_in) width = n_in;
+  if (rule == EF_INTERPOLATE_SPRAGUE)
+    width = EF__SPRAGUE_WIDTH;
+  if (width > n_in)
+    width = n_in;
   ef__operator *op = NULL;
-  ef__operator part = {.n_in = n_in, .n_out = n_out, .width = width,
-                       .has_curvature = spline};
+  ef__operator part = {
+      .n_in = n_in, .n_out = n_out, .width = width, .has_curvature = spline};
   size_t n_coefficients;
-  if (!ef__size_multiply(n_out, width, &n_coefficients)) return NULL;
+  if (!ef__size_multiply(n_out, width, &n_coefficients))
+    return NULL;
   const ef__part parts[] = {
       {&op, 1, sizeof *op},
       {&part.first, n_out, sizeof *part.first},
@@ -167,18 +174,22 @@ ef__operator *ef__operator_new(const ef_grid *from, const ef_grid *to,
                                ef_interpolation interpolation,
                                ef_extension extension, bool correct_bandpass,
                                ef_error *error) {
-  if (ef_grid_check(from, error) != EF_OK) return NULL;
-  if (ef_grid_check(to, error) != EF_OK) return NULL;
+  if (ef_grid_check(from, error) != EF_OK)
+    return NULL;
+  if (ef_grid_check(to, error) != EF_OK)
+    return NULL;
   const ef_grid grid = ef_grid_simplify(from);
   const ef_interpolation rule = resolve(interpolation, &grid);
-  if (check_rule(rule, &grid, correct_bandpass, error) != EF_OK) return NULL;
+  if (check_rule(rule, &grid, correct_bandpass, error) != EF_OK)
+    return NULL;
   ef__operator *const op = allocate(grid.count, to->count, rule);
   if (op == NULL) {
     ef__error_memory(error, "interpolating spectra");
     return NULL;
   }
   op->corrects_bandpass = correct_bandpass;
-  if (op->has_curvature) ef__spline_factor(op, &grid);
+  if (op->has_curvature)
+    ef__spline_factor(op, &grid);
   fill_rows(op, &grid, to, rule, extension);
   return op;
 }
@@ -195,12 +206,14 @@ void ef__operator_apply(const ef__operator *op, const double *in,
     sample = scratch;
   }
   double *const curvature = scratch + op->n_in;
-  if (op->has_curvature) ef__spline_curvature(op, sample, curvature);
+  if (op->has_curvature)
+    ef__spline_curvature(op, sample, curvature);
   for (size_t row = 0; row < op->n_out; ++row) {
     const double *const c = op->coefficient + row * op->width;
     const size_t first = op->first[row];
     double sum = 0;
-    for (size_t j = 0; j < op->width; ++j) sum += c[j] * sample[first + j];
+    for (size_t j = 0; j < op->width; ++j)
+      sum += c[j] * sample[first + j];
     if (op->has_curvature) {
       sum += op->curvature[2 * row] * curvature[first] +
              op->curvature[2 * row + 1] * curvature[first + 1];
@@ -220,7 +233,8 @@ void ef__operator_apply_transposed(const ef__operator *op, const double *in,
   for (size_t row = 0; row < op->n_out; ++row) {
     const double *const c = op->coefficient + row * op->width;
     const size_t first = op->first[row];
-    for (size_t j = 0; j < op->width; ++j) sample[first + j] += c[j] * in[row];
+    for (size_t j = 0; j < op->width; ++j)
+      sample[first + j] += c[j] * in[row];
     if (op->has_curvature) {
       curvature[first] += op->curvature[2 * row] * in[row];
       curvature[first + 1] += op->curvature[2 * row + 1] * in[row];
@@ -240,10 +254,12 @@ ef_status ef_resample(const ef_grid *from, size_t n, const double *value,
   const ef_extension ends =
       extension == EF_EXTEND_AUTO ? EF_EXTEND_HOLD : extension;
   ef_error local;
-  if (error == NULL) error = &local; /* its status is needed below */
+  if (error == NULL)
+    error = &local; /* its status is needed below */
   ef__operator *const op =
       ef__operator_new(from, to, interpolation, ends, false, error);
-  if (op == NULL) return error->status;
+  if (op == NULL)
+    return error->status;
   double *const scratch =
       ef__allocate(ef__operator_scratch(op), sizeof *scratch);
   if (scratch == NULL) {

@@ -23,7 +23,8 @@ static ef_status check_values(size_t n, const char *const *names,
                               const ef_grid *grid, const double *value,
                               ef_error *error) {
   for (size_t i = 0; i < n * grid->count; ++i) {
-    if (isfinite(value[i])) continue;
+    if (isfinite(value[i]))
+      continue;
     const size_t spectrum = i / grid->count;
     const double at = ef_grid_wavelength(grid, i % grid->count);
     const char *const text = isnan(value[i]) ? "not a number" : "infinite";
@@ -39,10 +40,12 @@ static ef_status check_values(size_t n, const char *const *names,
 
 /* Bytes of all names with their terminators. */
 static bool name_bytes(size_t n, const char *const *names, size_t *bytes) {
-  if (names == NULL) return ef__size_multiply(n, NUMBER_LENGTH, bytes);
+  if (names == NULL)
+    return ef__size_multiply(n, NUMBER_LENGTH, bytes);
   *bytes = 0;
   for (size_t i = 0; i < n; ++i) {
-    if (!ef__size_add(*bytes, strlen(names[i]) + 1, bytes)) return false;
+    if (!ef__size_add(*bytes, strlen(names[i]) + 1, bytes))
+      return false;
   }
   return true;
 }
@@ -68,8 +71,10 @@ static ef_spectra *allocate(size_t n, const char *const *names,
   double *wavelength = NULL;
   char *text = NULL;
   size_t n_values, n_bytes;
-  if (!ef__size_multiply(n, grid->count, &n_values)) return NULL;
-  if (!name_bytes(n, names, &n_bytes)) return NULL;
+  if (!ef__size_multiply(n, grid->count, &n_values))
+    return NULL;
+  if (!name_bytes(n, names, &n_bytes))
+    return NULL;
   const ef__part parts[] = {
       {&spectra, 1, sizeof *spectra},
       {&part.value, n_values, sizeof *part.value},
@@ -88,7 +93,8 @@ static ef_spectra *allocate(size_t n, const char *const *names,
 ef_spectra *ef_spectra_new(size_t n, const char *const *names,
                            const ef_grid *grid, ef_kind kind,
                            const double *value, ef_error *error) {
-  if (ef_grid_check(grid, error) != EF_OK) return NULL;
+  if (ef_grid_check(grid, error) != EF_OK)
+    return NULL;
   ef_spectra *const spectra = allocate(n, names, grid);
   if (spectra == NULL) {
     ef__error_memory(error, "a set of spectra");
@@ -99,7 +105,8 @@ ef_spectra *ef_spectra_new(size_t n, const char *const *names,
     return NULL;
   }
   spectra->kind = kind;
-  if (n > 0) memcpy(spectra->value, value, n * grid->count * sizeof *value);
+  if (n > 0)
+    memcpy(spectra->value, value, n * grid->count * sizeof *value);
   return spectra;
 }
 
@@ -138,7 +145,8 @@ const double *ef_spectra_values(const ef_spectra *spectra) {
 ef_status ef_spectra_find(const ef_spectra *spectra, const char *name,
                           size_t *index, ef_error *error) {
   for (size_t i = 0; i < spectra->n; ++i) {
-    if (strcmp(spectra->name[i], name) != 0) continue;
+    if (strcmp(spectra->name[i], name) != 0)
+      continue;
     *index = i;
     return EF_OK;
   }

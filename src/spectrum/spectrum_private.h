@@ -44,9 +44,9 @@ typedef struct ef__operator {
   double *coefficient; /* n_out x width */
   bool *outside;       /* n_out: rests on the end rule */
   bool has_curvature;
-  double *curvature;   /* n_out x 2 */
-  double *interval;    /* n_in - 1: distances of the samples, nm */
-  double *pivot;       /* n_in - 2: of the factored tridiagonal matrix */
+  double *curvature; /* n_out x 2 */
+  double *interval;  /* n_in - 1: distances of the samples, nm */
+  double *pivot;     /* n_in - 2: of the factored tridiagonal matrix */
   bool corrects_bandpass;
 } ef__operator;
 

@@ -15,7 +15,8 @@ void ef__spline_factor(ef__operator *op, const ef_grid *from) {
   for (size_t i = 0; i + 2 < op->n_in; ++i) {
     const double before = op->interval[i];
     op->pivot[i] = (before + op->interval[i + 1]) / 3;
-    if (i > 0) op->pivot[i] -= before * before / 36 / op->pivot[i - 1];
+    if (i > 0)
+      op->pivot[i] -= before * before / 36 / op->pivot[i - 1];
   }
 }
 

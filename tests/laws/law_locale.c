@@ -9,7 +9,8 @@
 
 static int set_comma(void **state) {
   (void)state;
-  if (setlocale(LC_NUMERIC, "comma") == NULL) return 0; /* tests skip */
+  if (setlocale(LC_NUMERIC, "comma") == NULL)
+    return 0; /* tests skip */
   char text[8];
   snprintf(text, sizeof text, "%.1f", 1.5);
   return strcmp(text, "1,5") == 0 ? 0 : -1;

@@ -17,7 +17,8 @@ static void check_round_trip(double value) {
 static void any_double_survives_as_text(void **state) {
   (void)state;
   gen g = gen_new(1);
-  for (int i = 0; i < 60000; ++i) check_round_trip(gen_any_double(&g));
+  for (int i = 0; i < 60000; ++i)
+    check_round_trip(gen_any_double(&g));
   for (int i = 0; i < 20000; ++i) {
     check_round_trip(gen_between(&g, -100, 100));
     check_round_trip((double)(int64_t)gen_bits(&g));
@@ -29,7 +30,8 @@ static void any_double_survives_as_text(void **state) {
 static int significant_digits(const char *text) {
   int n = 0, zeros = 0;
   for (; *text != '\0' && *text != 'e'; ++text) {
-    if (*text < '0' || *text > '9') continue;
+    if (*text < '0' || *text > '9')
+      continue;
     if (*text == '0') {
       zeros += n > 0; /* counted if a digit follows */
       continue;
@@ -46,21 +48,23 @@ static void check_shortest(double value) {
   char text[EF_NUMBER_TEXT];
   ef_number_format(value, text);
   const int n = significant_digits(text);
-  if (n < 2) return;
+  if (n < 2)
+    return;
   char digits[40];
   snprintf(digits, sizeof digits, "%.*e", n - 2, value);
   char *end;
   const double nearest = strtod(digits, NULL);
-  if (nearest == value) fail_msg("%s reads back to %s", digits, text);
+  if (nearest == value)
+    fail_msg("%s reads back to %s", digits, text);
   const long exponent = strtol(strchr(digits, 'e') + 1, &end, 10);
   char other[80];
   for (int step = -1; step <= 1; step += 2) {
     long long whole = 0;
     for (const char *at = digits; *at != 'e'; ++at) {
-      if (*at != '.') whole = whole * 10 + (*at - '0');
+      if (*at != '.')
+        whole = whole * 10 + (*at - '0');
     }
-    snprintf(other, sizeof other, "%llde%ld", whole + step,
-             exponent - (n - 2));
+    snprintf(other, sizeof other, "%llde%ld", whole + step, exponent - (n - 2));
     if (strtod(other, NULL) == value) {
       fail_msg("%s reads back to %s", other, text);
     }
@@ -74,15 +78,18 @@ static void check_nearest(double value) {
   ef_number_format(value, text);
   const int n = significant_digits(text);
   snprintf(rounded, sizeof rounded, "%.*e", n - 1, value);
-  if (strtod(rounded, NULL) != value) return;
+  if (strtod(rounded, NULL) != value)
+    return;
   /* Ours in the same form: its digits are exact there. */
   snprintf(normal, sizeof normal, "%.*e", n - 1, strtod(text, NULL));
   assert_string_equal(normal, rounded);
   int kept = 0;
   for (const char *at = text; *at != '\0' && *at != 'e' && kept < n; ++at) {
-    if (*at < '0' || *at > '9' || (kept == 0 && *at == '0')) continue;
+    if (*at < '0' || *at > '9' || (kept == 0 && *at == '0'))
+      continue;
     const char digit = rounded[kept == 0 ? 0 : kept + 1];
-    if (*at != digit) fail_msg("%s is not the nearest, %s is", text, rounded);
+    if (*at != digit)
+      fail_msg("%s is not the nearest, %s is", text, rounded);
     ++kept;
   }
 }
@@ -102,8 +109,8 @@ static void everyday_text_is_shortest_and_nearest(void **state) {
     check_both(size * gen_unit(&g));
     check_both((double)gen_below(&g, 1000000) / 1000);
     check_both(nextafter((double)gen_below(&g, 1000000), 0) + 1e-9);
-    check_both(ldexp((double)(1 + gen_below(&g, 999)),
-                     (int)gen_below(&g, 80) - 30));
+    check_both(
+        ldexp((double)(1 + gen_below(&g, 999)), (int)gen_below(&g, 80) - 30));
   }
   for (int e = -30; e < 25; ++e) {
     const double power = pow(10, e);
@@ -115,10 +122,13 @@ static void everyday_text_is_shortest_and_nearest(void **state) {
 
 static void text_is_the_shortest(void **state) {
   (void)state;
-  for (int e = -1074; e < 1024; ++e) check_both(ldexp(1, e));
+  for (int e = -1074; e < 1024; ++e)
+    check_both(ldexp(1, e));
   gen g = gen_new(2);
-  for (int i = 0; i < 50000; ++i) check_shortest(fabs(gen_any_double(&g)));
-  for (int i = 0; i < 5000; ++i) check_shortest(gen_unit(&g) * DBL_MIN);
+  for (int i = 0; i < 50000; ++i)
+    check_shortest(fabs(gen_any_double(&g)));
+  for (int i = 0; i < 5000; ++i)
+    check_shortest(gen_unit(&g) * DBL_MIN);
 }
 
 /* The C library's own reading, in the C locale, is the reference. */
@@ -131,7 +141,8 @@ static void reading_is_correctly_rounded(void **state) {
     int length = 0;
     for (int k = 0; k < n_digits; ++k) {
       text[length++] = (char)('0' + gen_below(&g, 10));
-      if (k == n_digits / 2) text[length++] = '.';
+      if (k == n_digits / 2)
+        text[length++] = '.';
     }
     snprintf(text + length, sizeof text - (size_t)length, "e%d",
              (int)gen_below(&g, 60) - 30);

@@ -8,9 +8,8 @@
 
 enum { MOST_SAMPLES = 80, MOST_VALUES = 120 };
 
-static const ef_interpolation rules[] = {EF_INTERPOLATE_SPRAGUE,
-                                         EF_INTERPOLATE_SPLINE,
-                                         EF_INTERPOLATE_LINEAR};
+static const ef_interpolation rules[] = {
+    EF_INTERPOLATE_SPRAGUE, EF_INTERPOLATE_SPLINE, EF_INTERPOLATE_LINEAR};
 
 /* Samples a rule can take, somewhere in the visible range: even for Sprague,
  * half of the time uneven for the others. */
@@ -18,7 +17,8 @@ static ef_grid random_samples(gen *g, ef_interpolation rule, double *list) {
   ef_grid grid = {.count = 6 + gen_below(g, MOST_SAMPLES - 6),
                   .start_nm = gen_between(g, 350, 450),
                   .step_nm = gen_between(g, 1, 12)};
-  if (rule == EF_INTERPOLATE_SPRAGUE || gen_below(g, 2) == 0) return grid;
+  if (rule == EF_INTERPOLATE_SPRAGUE || gen_below(g, 2) == 0)
+    return grid;
   double at = grid.start_nm;
   for (size_t i = 0; i < grid.count; ++i) {
     list[i] = at;
@@ -51,8 +51,9 @@ static void resampling_is_linear(void **state) {
     for (size_t i = 0; i < n; ++i) {
       value[2 * n + i] = p * value[i] + q * value[n + i];
     }
-    assert_int_equal(ef_resample(&from, 3, value, &to, rule, EF_EXTEND_HOLD,
-                                 out, NULL), EF_OK);
+    assert_int_equal(
+        ef_resample(&from, 3, value, &to, rule, EF_EXTEND_HOLD, out, NULL),
+        EF_OK);
     for (size_t i = 0; i < m; ++i) {
       /* Splines over steps of 0.5 beside 20 nm swing far beyond 1. */
       const double size = 4 + fabs(out[i]) + fabs(out[m + i]);
@@ -63,7 +64,8 @@ static void resampling_is_linear(void **state) {
 
 static double polynomial(const double *c, size_t degree, double x) {
   double sum = c[degree];
-  for (size_t k = degree; k-- > 0;) sum = sum * x + c[k];
+  for (size_t k = degree; k-- > 0;)
+    sum = sum * x + c[k];
   return sum;
 }
 
@@ -83,10 +85,12 @@ static double polynomial_error(ef_interpolation rule, size_t degree,
     }
     const double low = ef_grid_wavelength(&from, margin);
     const double high = ef_grid_wavelength(&from, from.count - 1 - margin);
-    if (high <= low) continue;
+    if (high <= low)
+      continue;
     const ef_grid to = {MOST_VALUES, low, (high - low) / MOST_VALUES, NULL};
-    assert_int_equal(ef_resample(&from, 1, value, &to, rule, EF_EXTEND_HOLD,
-                                 out, NULL), EF_OK);
+    assert_int_equal(
+        ef_resample(&from, 1, value, &to, rule, EF_EXTEND_HOLD, out, NULL),
+        EF_OK);
     for (size_t i = 0; i < to.count; ++i) {
       const double x = (ef_grid_wavelength(&to, i) - 550) / 100;
       double size = 0;
@@ -131,7 +135,8 @@ static void smooth_rules_have_no_kinks(void **state) {
       const ef_grid to = {3, at - d, d, NULL};
       double out[3];
       assert_int_equal(ef_resample(&from, 1, value, &to, rules[r],
-                                   EF_EXTEND_HOLD, out, NULL), EF_OK);
+                                   EF_EXTEND_HOLD, out, NULL),
+                       EF_OK);
       const double jump = (out[2] - out[1]) / d - (out[1] - out[0]) / d;
       assert_near(jump, 0, 2 * d); /* second derivatives stay below 1 / nm^2 */
     }
@@ -157,8 +162,8 @@ static void folding_equals_resampling_and_summing(void **state) {
     gen_fill(&g, 2 * m, -0.5, 2, channel);
     gen_fill(&g, m, 0, 100, light);
     const double scale[] = {0.37, 1.9};
-    ef_weights *const w = ef_weights_fold(&from, 2, channel, light, scale,
-                                          &settings, NULL);
+    ef_weights *const w =
+        ef_weights_fold(&from, 2, channel, light, scale, &settings, NULL);
     assert_non_null(w);
     double folded[2];
     assert_int_equal(ef_weights_apply(w, 1, value, 1, folded, NULL), EF_OK);
@@ -166,10 +171,10 @@ static void folding_equals_resampling_and_summing(void **state) {
     if (settings.correct_bandpass) {
       ef__bandpass_apply(from.count, value, corrected);
     }
-    assert_int_equal(
-        ef_resample(&from, 1, corrected, &settings.working, rule,
-                    trial % 2 ? EF_EXTEND_HOLD : EF_EXTEND_ZERO, fine, NULL),
-        EF_OK);
+    assert_int_equal(ef_resample(&from, 1, corrected, &settings.working, rule,
+                                 trial % 2 ? EF_EXTEND_HOLD : EF_EXTEND_ZERO,
+                                 fine, NULL),
+                     EF_OK);
     for (size_t c = 0; c < 2; ++c) {
       double sum = 0, size = 0;
       for (size_t i = 0; i < m; ++i) {
@@ -203,10 +208,14 @@ static void transposed_operator_is_the_transposed(void **state) {
     ef__operator_apply(op, x, scratch, px);
     ef__operator_apply_transposed(op, y, scratch, ty);
     double left = 0, right = 0, size = 0;
-    for (size_t i = 0; i < to.count; ++i) left += px[i] * y[i];
-    for (size_t i = 0; i < from.count; ++i) right += x[i] * ty[i];
-    for (size_t i = 0; i < to.count; ++i) size += fabs(px[i]);
-    for (size_t i = 0; i < from.count; ++i) size += fabs(ty[i]);
+    for (size_t i = 0; i < to.count; ++i)
+      left += px[i] * y[i];
+    for (size_t i = 0; i < from.count; ++i)
+      right += x[i] * ty[i];
+    for (size_t i = 0; i < to.count; ++i)
+      size += fabs(px[i]);
+    for (size_t i = 0; i < from.count; ++i)
+      size += fabs(ty[i]);
     assert_near(left, right, 1e-14 * size);
     free(op);
   }
@@ -227,11 +236,13 @@ static void held_weights_sum_to_the_channel(void **state) {
     const double scale = 1;
     double sum = 0, folded = 0;
     gen_fill(&g, settings.working.count, 0, 2, channel);
-    for (size_t i = 0; i < settings.working.count; ++i) sum += channel[i];
+    for (size_t i = 0; i < settings.working.count; ++i)
+      sum += channel[i];
     ef_weights *const w =
         ef_weights_fold(&from, 1, channel, NULL, &scale, &settings, NULL);
     assert_non_null(w);
-    for (size_t i = 0; i < from.count; ++i) folded += ef_weights_matrix(w)[i];
+    for (size_t i = 0; i < from.count; ++i)
+      folded += ef_weights_matrix(w)[i];
     assert_near(folded, sum, 1e-12 * sum);
     ef_weights_free(w);
   }
@@ -268,12 +279,14 @@ static void check_apply(gen *g, size_t n_channels, size_t n_samples, size_t n) {
   const int jobs[] = {0, 2, 3, 16};
   for (size_t k = 0; k < 4; ++k) {
     memset(other, 0, n * n_channels * sizeof *other);
-    assert_int_equal(ef_weights_apply(w, n, sample, jobs[k], other, NULL), EF_OK);
+    assert_int_equal(ef_weights_apply(w, n, sample, jobs[k], other, NULL),
+                     EF_OK);
     assert_same_bits(other, out, n * n_channels);
   }
   for (size_t i = 0; i < n; ++i) { /* in batches of one */
     assert_int_equal(ef_weights_apply(w, 1, sample + i * n_samples, 0,
-                                      other + i * n_channels, NULL), EF_OK);
+                                      other + i * n_channels, NULL),
+                     EF_OK);
   }
   assert_same_bits(other, out, n * n_channels);
   /* Against the plain sum, for one spectrum. */

@@ -14,7 +14,8 @@ static const ef_grid whole_5nm = {95, 360, 5, NULL}; /* to 830 nm */
 static void sample_light(const char *name, const ef_grid *grid, double *power) {
   ef_error error;
   ef_illuminant *const light = ef_illuminant_new(name, &error);
-  if (light == NULL) fail_msg("%s", error.message);
+  if (light == NULL)
+    fail_msg("%s", error.message);
   assert_int_equal(ef_illuminant_sample(light, grid, power, NULL), EF_OK);
   ef_illuminant_free(light);
 }
@@ -71,7 +72,8 @@ static void daylight_formula_comes_to_the_d_series(void **state) {
     sample_light(series[k].name, &grid, printed);
     for (size_t i = 0; i < grid.count; ++i) {
       const double at = ef_grid_wavelength(&grid, i);
-      if (at > table->value[table->n_rows - 1]) break; /* D55, D75: 780 nm */
+      if (at > table->value[table->n_rows - 1])
+        break; /* D55, D75: 780 nm */
       char where[96];
       snprintf(where, sizeof where, "%s %g nm", series[k].name, at);
       deviation_add(&d, by_formula[i], printed[i], where);
@@ -98,10 +100,12 @@ static void white_point(const char *light_name, bool is_10_degrees,
     assert_true(column != SIZE_MAX);
     assert_int_equal(ef_resample(&rows, 1, table->value + column * rows.count,
                                  grid, EF_INTERPOLATE_LINEAR, EF_EXTEND_ZERO,
-                                 channel + c * grid->count, NULL), EF_OK);
+                                 channel + c * grid->count, NULL),
+                     EF_OK);
   }
   sample_light(light_name, grid, light);
-  for (size_t i = 0; i < grid->count; ++i) white[i] = 1;
+  for (size_t i = 0; i < grid->count; ++i)
+    white[i] = 1;
   ef_fold_settings settings = ef_fold_settings_default();
   settings.working = *grid;
   const double scale[3] = {1, 1, 1};
@@ -111,7 +115,8 @@ static void white_point(const char *light_name, bool is_10_degrees,
   assert_int_equal(ef_weights_apply(weights, 1, white, 1, xyz, NULL), EF_OK);
   ef_weights_free(weights);
   const double to_100 = 100 / xyz[1];
-  for (size_t c = 0; c < 3; ++c) xyz[c] *= to_100;
+  for (size_t c = 0; c < 3; ++c)
+    xyz[c] *= to_100;
 }
 
 static void check_white_points(const char *source, double tolerance) {
@@ -119,7 +124,8 @@ static void check_white_points(const char *source, double tolerance) {
   deviation d = {0};
   size_t n_checked = 0;
   for (size_t i = 0; i < f.n_rows; ++i) {
-    if (strcmp(figures_text(&f, i, 0), source) != 0) continue;
+    if (strcmp(figures_text(&f, i, 0), source) != 0)
+      continue;
     const char *const light = figures_text(&f, i, 1);
     const bool is_10 = figures_number(&f, i, 2) > 5;
     const ef_grid standard = ef_grid_standard();

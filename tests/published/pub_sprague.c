@@ -45,13 +45,15 @@ static double our_value(const double *sample, size_t i, double t) {
   const ef_grid to = {1, 400 + 10 * ((double)i + t), 0, NULL};
   double out = NOT_A_NUMBER;
   assert_int_equal(ef_resample(&from, 1, sample, &to, EF_INTERPOLATE_SPRAGUE,
-                               EF_EXTEND_ZERO, &out, NULL), EF_OK);
+                               EF_EXTEND_ZERO, &out, NULL),
+                   EF_OK);
   return out;
 }
 
 /* Sample i, or what the published rows put in its place beyond the ends. */
 static double published_sample(const double *sample, int i) {
-  if (i >= 0 && i < N_SAMPLES) return sample[i];
+  if (i >= 0 && i < N_SAMPLES)
+    return sample[i];
   double sum = 0;
   for (int j = 0; j < N; ++j) {
     sum += i < 0 ? before[-1 - i][j] * sample[j]
@@ -103,8 +105,10 @@ static void coefficients_follow_from_their_definition(void **state) {
       for (size_t k = 0; k < N; ++k) {
         const double p = (double)k, c = coefficient[k][j];
         y[0] += c * pow(t, p);
-        if (k >= 1) y[1] += c * p * pow(t, p - 1);
-        if (k >= 2) y[2] += c * p * (p - 1) * pow(t, p - 2);
+        if (k >= 1)
+          y[1] += c * p * pow(t, p - 1);
+        if (k >= 2)
+          y[2] += c * p * (p - 1) * pow(t, p - 2);
       }
       const bool counts = j >= end && j - end < 5;
       assert_near(y[0], counts ? value[j - end] : 0, 1e-14);

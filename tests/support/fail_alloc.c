@@ -18,8 +18,10 @@ static atomic_bool has_failed;
 static bool fails_now(void) {
   size_t left = atomic_load(&countdown);
   while (left != 0) {
-    if (!atomic_compare_exchange_weak(&countdown, &left, left - 1)) continue;
-    if (left != 1) return false;
+    if (!atomic_compare_exchange_weak(&countdown, &left, left - 1))
+      continue;
+    if (left != 1)
+      return false;
     atomic_store(&has_failed, true);
     return true;
   }
@@ -60,7 +62,8 @@ size_t fail_alloc_each(bool (*attempt)(void *context), void *context) {
                   succeeded ? "succeeded" : "failed");
       fail();
     }
-    if (!failed) return n - 1;
+    if (!failed)
+      return n - 1;
   }
   fail_msg("no end after %d allocations", FAR_TOO_MANY);
   return 0;

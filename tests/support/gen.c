@@ -38,17 +38,20 @@ double gen_any_double(gen *g) {
     const uint64_t bits = gen_bits(g);
     double value;
     memcpy(&value, &bits, sizeof value);
-    if (isfinite(value)) return value;
+    if (isfinite(value))
+      return value;
   }
 }
 
 void gen_fill(gen *g, size_t n, double low, double high, double *value) {
-  for (size_t i = 0; i < n; ++i) value[i] = gen_between(g, low, high);
+  for (size_t i = 0; i < n; ++i)
+    value[i] = gen_between(g, low, high);
 }
 
 void gen_smooth(gen *g, size_t n, double *value) {
   const double level = gen_between(g, 0.02, 0.3);
-  for (size_t i = 0; i < n; ++i) value[i] = level;
+  for (size_t i = 0; i < n; ++i)
+    value[i] = level;
   for (int bump = 0; bump < 3; ++bump) {
     const double height = gen_between(g, 0, 0.22);
     const double centre = gen_between(g, -0.1, 1.1);

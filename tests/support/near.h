@@ -33,24 +33,26 @@ static inline void near_check(double actual, double expected, double tolerance,
                               const char *expression, const char *file,
                               int line) {
   /* Written so that NaN fails. */
-  if (fabs(actual - expected) <= tolerance) return;
+  if (fabs(actual - expected) <= tolerance)
+    return;
   near_fail(actual, expected, tolerance, expression, file, line);
 }
 
 /** |actual - expected| <= absolute. */
-#define assert_near(actual, expected, absolute)                     \
+#define assert_near(actual, expected, absolute)                                \
   near_check((actual), (expected), (absolute), #actual, __FILE__, __LINE__)
 
 /** |actual - expected| <= relative * |expected|. */
-#define assert_near_relative(actual, expected, relative)            \
-  near_check((actual), (expected), (relative) * fabs(expected), #actual, \
+#define assert_near_relative(actual, expected, relative)                       \
+  near_check((actual), (expected), (relative)*fabs(expected), #actual,         \
              __FILE__, __LINE__)
 
 static inline void same_bits_check(const double *actual, const double *expected,
                                    size_t n, const char *expression,
                                    const char *file, int line) {
   for (size_t i = 0; i < n; ++i) {
-    if (memcmp(&actual[i], &expected[i], sizeof *actual) == 0) continue;
+    if (memcmp(&actual[i], &expected[i], sizeof *actual) == 0)
+      continue;
     print_error("%s[%zu] is %.17g (%a), expected %.17g (%a) to the bit\n",
                 expression, i, actual[i], actual[i], expected[i], expected[i]);
     _fail(file, line);
@@ -58,12 +60,13 @@ static inline void same_bits_check(const double *actual, const double *expected,
 }
 
 /** Both arrays of n doubles are equal bit for bit. */
-#define assert_same_bits(actual, expected, n)                       \
+#define assert_same_bits(actual, expected, n)                                  \
   same_bits_check((actual), (expected), (n), #actual, __FILE__, __LINE__)
 
 static inline void error_check(const ef_error *error, ef_status status,
                                const char *part, const char *file, int line) {
-  if (error->status == status && strstr(error->message, part) != NULL) return;
+  if (error->status == status && strstr(error->message, part) != NULL)
+    return;
   print_error("error is \"%s\" (%s), expected \"...%s...\" (%s)\n",
               error->message, ef_status_text(error->status), part,
               ef_status_text(status));
@@ -71,7 +74,7 @@ static inline void error_check(const ef_error *error, ef_status status,
 }
 
 /** The error has this status and `part` stands in its message. */
-#define assert_error(error, status, part) \
+#define assert_error(error, status, part)                                      \
   error_check((error), (status), (part), __FILE__, __LINE__)
 
 /** The largest deviation seen in a check, and where. */
@@ -83,7 +86,8 @@ typedef struct deviation {
 static inline void deviation_add(deviation *d, double actual, double expected,
                                  const char *where) {
   const double off = fabs(actual - expected);
-  if (off <= d->largest) return; /* NaN goes on and is kept */
+  if (off <= d->largest)
+    return; /* NaN goes on and is kept */
   d->largest = off;
   snprintf(d->where, sizeof d->where, "%.95s", where);
 }
