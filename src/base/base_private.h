@@ -103,6 +103,27 @@ void ef__parallel_for(size_t n, size_t chunk, int jobs,
                       void (*body)(void *ctx, size_t begin, size_t end),
                       void *ctx);
 
+/* ---- Random streams (random.c) ----------------------------------------- */
+
+/** State of one stream (xoshiro256**: Blackman & Vigna, ACM Trans. Math. Softw.
+ * 47 (2021) 36). Streams of one seed differ by their index, so that what is
+ * drawn for item i depends on (seed, i) alone: not on how many items there
+ * are, nor on the thread that draws. The generators of GSL take 32 bits of
+ * seed, of which two of a million streams would all but surely share one. */
+typedef struct ef__random {
+  uint64_t state[4];
+} ef__random;
+
+/** Stream `index` of `seed`. */
+ef__random ef__random_stream(uint64_t seed, uint64_t index);
+uint64_t ef__random_bits(ef__random *random);
+/** Uniform in the open interval (0, 1): 2^52 values, each half a step above a
+ * multiple of 2^-52. */
+double ef__random_unit(ef__random *random);
+/** Standard normal, one uniform value each, by the inverse distribution
+ * function of GSL. */
+double ef__random_normal(ef__random *random);
+
 /* ---- GSL (gsl.c) ------------------------------------------------------- */
 
 /** Switches GSL's process-ending error handler off, once. To be called before
