@@ -18,7 +18,11 @@ typedef struct ef_observer ef_observer;
 /** Which of an observer's channel sets is meant. */
 typedef enum ef_channel_role {
   EF_TRISTIMULUS, /**< x_bar, y_bar, z_bar of the observer */
-  EF_CONES        /**< l_bar, m_bar, s_bar, energy units, unit peak */
+  EF_CONES,       /**< l_bar, m_bar, s_bar, energy units, unit peak */
+  EF_RECEPTORS    /**< the same cones, then rods (CIE 1951) and melanopsin
+                       (CIE S 026), energy units, unit peak: in the order of
+                       ef_receptor. For observers from a model these two are
+                       carried from the lens of age 32 to the model's own */
 } ef_channel_role;
 
 /** A view of one channel set: `value` is count x grid.count, row-major. All
@@ -31,11 +35,24 @@ typedef struct ef_channels {
   const double *value;
 } ef_channels;
 
-/** Names that ef_observer_new takes: `cie-1931`, `cie-1964`, `cie-2015-2`,
- * `cie-2015-10`; static texts. Returns how many. */
+/** The tables that ef_observer_new takes by name: `cie-1931`, `cie-1964`,
+ * `cie-2015-2`, `cie-2015-10`; static texts. Returns how many. */
 EF_API size_t ef_observer_names(const char *const **names);
 
-/** By name. EF_UNKNOWN_NAME gives the nearest names. Free with
+/** What it takes beside them, made by the cone model: `model`, `protanope`,
+ * `deuteranope`, `tritanope`, `protanomalous`, `deuteranomalous`; static texts.
+ * Returns how many. */
+EF_API size_t ef_observer_model_names(const char *const **names);
+
+/** By name. Those of ef_observer_model_names take settings of the cone model
+ * (see ef_cone_model) after a colon, separated by commas:
+ * `model:age=45,field=4`, `deuteranope:field=10`, and
+ * `protanomalous:shift=12` or `deuteranomalous:shift=12`, which need one
+ * (see ef_cone_model_make_anomalous). Settings: `age`, `field` (degrees),
+ * `lens`, `macular`, `density-l`, `density-m`, `density-s` (percent more or
+ * less), `shift-l`, `shift-m`, `shift-s` (nm), each at most once; what is not
+ * set is that of ef_cone_model_default. Case is ignored. EF_UNKNOWN_NAME gives
+ * the nearest names, EF_INVALID the setting at fault. Free with
  * ef_observer_free. */
 EF_API ef_observer *ef_observer_new(const char *name, ef_error *error);
 
@@ -114,6 +131,204 @@ EF_API ef_status ef_observer_white(const ef_observer *observer,
                                    const ef_illuminant *illuminant,
                                    const ef_grid *working, double *out,
                                    ef_error *error);
+
+/* ---- Observers by age, field and person (CIE 170-1:2006) --------------- */
+
+/** What is missing from three kinds of cones. */
+typedef enum ef_deficiency {
+  EF_TRICHROMAT,
+  EF_PROTANOPE,   /**< L cones hold the M pigment */
+  EF_DEUTERANOPE, /**< M cones hold the L pigment */
+  EF_TRITANOPE    /**< no S cones */
+} ef_deficiency;
+
+/** "trichromat", "protanope", "deuteranope", "tritanope". Static. */
+EF_API const char *ef_deficiency_name(ef_deficiency deficiency);
+
+/** An observer as CIE 170-1:2006 describes one, and how this person departs
+ * from the mean. The four kinds of departure are those of Asano, Fairchild &
+ * Blonde, PLoS ONE 11 (2016) e0145671: percent of the mean optical density,
+ * and a shift along wavelength of a pigment's low-density absorbance. */
+typedef struct ef_cone_model {
+  double age_years;         /**< 20 to 80 */
+  double field_deg;         /**< diameter of the field, 1 to 10 degrees */
+  double lens_percent;      /**< of the density of all ocular media, >= -100 */
+  double macular_percent;   /**< of the macular pigment's, >= -100 */
+  double density_percent[3]; /**< of the peak densities of L, M, S, >= -100 */
+  double shift_nm[3];       /**< of L, M, S; positive to longer wavelengths,
+                                 at most 40 nm either way */
+  ef_deficiency deficiency;
+} ef_cone_model;
+
+/** The mean observer of CIE 170-1: 32 years, 2 degrees, nothing added. */
+EF_API ef_cone_model ef_cone_model_default(void);
+
+/** EF_INVALID names the quantity that lies outside the ranges above. */
+EF_API ef_status ef_cone_model_check(const ef_cone_model *model,
+                                     ef_error *error);
+
+/** What a unit of stimulus is when a fundamental is tabulated. */
+typedef enum ef_cone_units {
+  EF_ENERGY, /**< equal radiant power at each wavelength */
+  EF_QUANTAL /**< equal numbers of quanta */
+} ef_cone_units;
+
+/** Cone fundamentals at the cornea on `grid`: `out` is 3 x grid->count, l_bar,
+ * m_bar, s_bar, each with a peak of 1 to the nearest 0.1 nm, zero outside 390
+ * to 830 nm (S: above 615 nm plus its shift), where no template is published.
+ * CIE 170-1:2006 with the templates of Stockman, Sharpe & Fach (1999) and
+ * Stockman & Sharpe (2000), 5 nm, between them a cubic spline:
+ *   e_i = w (1 - 10^(-D_i a_i(w))) 10^(-D_lens(w) - D_mac(w)), without the
+ *   first w in quantal units;
+ *   D_mac peaks at 0.485 exp(-f / 6.132); D_L = D_M = 0.38 + 0.54
+ *   exp(-f / 1.333), D_S = 0.30 + 0.45 exp(-f / 1.333);
+ *   D_lens = D1 (1 + 0.02 (A - 32)) + D2 up to 60 years, and D1 (1.56 + 0.0667
+ *   (A - 60)) + D2 above, with D2 of Pokorny, Smith & Lutze (1987) at 10 nm
+ *   and interpolated between (CIE's own list of D2 was not at hand).
+ * At 32 years this is within 0.1 % of the tables of CIE 170-1 at every
+ * wavelength from 390 to 700 nm, for 2 and 10 degrees. For a dichromat
+ * l_bar equals m_bar, or s_bar is zero. */
+EF_API ef_status ef_cone_model_fundamentals(const ef_cone_model *model,
+                                            ef_cone_units units,
+                                            const ef_grid *grid, double *out,
+                                            ef_error *error);
+
+/** Peak optical densities of the L, M and S pigments of this model. */
+EF_API ef_status ef_cone_model_peak_densities(const ef_cone_model *model,
+                                              double density[3],
+                                              ef_error *error);
+
+/** Optical density (log10) of the ocular media and of the macular pigment of
+ * this model at each wavelength of `grid`, which must lie within 390 to 830
+ * nm. Either output may be NULL. */
+EF_API ef_status ef_cone_model_media(const ef_cone_model *model,
+                                     const ef_grid *grid, double *lens_density,
+                                     double *macular_density, ef_error *error);
+
+/** The matrix that makes x_F, y_F, z_F of the fundamentals of a field, 3 x 3
+ * row-major, and K_m in lm/W (`k_m` may be NULL). 2 and 10 degrees: CIE
+ * 170-2:2015 as published, in every digit. The CIE gives none for fields
+ * between; ours is the linear interpolation of the two in exp(-f / 6.132), the
+ * model's own law of the macular pigment, with the rows of x and z then scaled
+ * so that the equal-energy spectrum has x = y = 1/3 for the mean observer of
+ * the field, which is the condition CIE 170-2 sets for its own two. Fields
+ * below 2 degrees: the 2 degree matrix with the same scaling. */
+EF_API ef_status ef_cone_xyz_matrix(double field_deg, double matrix[9],
+                                    double *k_m, ef_error *error);
+
+/** Cone-fundamental-based colour-matching functions of one person on `grid`:
+ * `out` is 3 x grid->count. The matrix of the field (ef_cone_xyz_matrix) times
+ * the person's own fundamentals: CIE 170-2 defines it for the mean observer of
+ * the field, and keeping it for each individual is the choice of Asano,
+ * Fairchild & Blonde (2016). For a dichromat the functions span two dimensions
+ * only: the cones that hold another pigment (or, for a tritanope, y_bar in
+ * place of the missing S cones) enter scaled so that the equal-energy spectrum
+ * gives what the normal cones would give. */
+EF_API ef_status ef_cone_model_tristimulus(const ef_cone_model *model,
+                                           const ef_grid *grid, double *out,
+                                           ef_error *error);
+
+/** An observer made of a model; its name is the text that ef_observer_new
+ * reads back to the same observer. Free with ef_observer_free. */
+EF_API ef_observer *ef_observer_from_model(const ef_cone_model *model,
+                                           ef_error *error);
+
+/** Trichromats one of whose pigments lies nearer to the other's. */
+typedef enum ef_anomaly {
+  EF_PROTANOMALOUS,  /**< the L pigment, towards M: to shorter wavelengths */
+  EF_DEUTERANOMALOUS /**< the M pigment, towards L: to longer wavelengths */
+} ef_anomaly;
+
+/** Shifts that pigment of `model` by `shift_nm`, above 0 and at most 32 nm:
+ * there the two templates meet at half height of their long-wave side, and
+ * what is left of a third dimension is the difference of their shapes. The
+ * shift is what the caller states; nothing is inferred about a person. */
+EF_API ef_status ef_cone_model_make_anomalous(ef_cone_model *model,
+                                              ef_anomaly anomaly,
+                                              double shift_nm, ef_error *error);
+
+/** Colours as they look to a dichromat, for one whose sight is not: Brettel,
+ * Vienot & Mollon, J. Opt. Soc. Am. A 14 (1997) 2647-2655. Excitations are
+ * moved along the axis of the missing cones onto one of two half planes
+ * through the neutral colour: one holds 475 nm, the other 575 nm (tritanopes:
+ * 485 and 660 nm), which such observers are taken to see as others do. */
+typedef struct ef_dichromat_view {
+  ef_deficiency deficiency;
+  double neutral[3];       /**< L, M, S */
+  double half_plane[2][3]; /**< normals: short-wave side, long-wave side */
+} ef_dichromat_view;
+
+/** For excitations of the cones of `observer`, of which the neutral colour
+ * (the white of a display, the equal-energy spectrum) has `neutral` (L, M, S,
+ * all above zero). EF_INVALID for EF_TRICHROMAT or a dichromat observer. */
+EF_API ef_status ef_dichromat_view_make(ef_deficiency deficiency,
+                                        const ef_observer *observer,
+                                        const double neutral[3],
+                                        ef_dichromat_view *out,
+                                        ef_error *error);
+/** The excitations to show in place of `lms`; `out` may be `lms`. */
+EF_API void ef_dichromat_view_apply(const ef_dichromat_view *view,
+                                    const double lms[3], double out[3]);
+
+/** How many dimensions the observer's colours have: 3, or 2 for dichromats,
+ * whose differences are those of the two dimensions that are left. */
+EF_API size_t ef_observer_dimensions(const ef_observer *observer);
+
+/* ---- Rods, melanopsin and alpha-opic quantities ------------------------ */
+
+/** Receptors of the human eye, in the order of EF_RECEPTORS. */
+typedef enum ef_receptor {
+  EF_L_CONE,
+  EF_M_CONE,
+  EF_S_CONE,
+  EF_ROD,
+  EF_MELANOPSIN /**< in the ganglion cells that are sensitive by themselves */
+} ef_receptor;
+enum { EF_N_RECEPTORS = 5 };
+
+/** "l_cone", "m_cone", "s_cone", "rhodopic", "melanopic". Static. */
+EF_API const char *ef_receptor_name(ef_receptor receptor);
+
+/** K'_m = 1700 lm/W: rod-weighted radiant power times this is in scotopic
+ * units (CIE 018:2019; V'(lambda) of 1951). */
+#define EF_K_M_SCOTOPIC_LM_W 1700.0
+
+/** Alpha-opic quantities of one light (CIE S 026/E:2018), for the standard
+ * action spectra whatever the observer. The unit follows the spectrum: for W
+ * sr^-1 m^-2 nm^-1 radiances in W m^-2 sr^-1, luminances in cd/m^2 and
+ * equivalent daylight luminances in cd/m^2; for W m^-2 nm^-1 irradiances in
+ * W m^-2, illuminance in lx and equivalent daylight illuminances in lx. For
+ * relative spectra only the last two arrays of ratios mean anything. Arrays
+ * are indexed by ef_receptor. */
+typedef struct ef_alpha_opic {
+  double photopic;                    /**< 683 lm/W times the V-weighted sum */
+  double scotopic;                    /**< 1700 lm/W times the rods' sum */
+  double quantity[EF_N_RECEPTORS];    /**< alpha-opic radiance or irradiance */
+  double equivalent_d65[EF_N_RECEPTORS]; /**< luminance or illuminance of D65
+                          with the same quantity (EDL or EDI, eq. 9 there) */
+  double efficacy_mw_lm[EF_N_RECEPTORS]; /**< quantity over photopic, mW/lm
+                          (alpha-opic ELR); NaN for a dark light */
+  double daylight_ratio[EF_N_RECEPTORS]; /**< efficacy over that of D65
+                          (alpha-opic DER); NaN for a dark light */
+} ef_alpha_opic;
+
+/** Alpha-opic efficacy of luminous radiation of D65 in mW/lm, by ef_receptor:
+ * 1.6289, 1.4558, 0.8173, 1.4497, 1.3262 (CIE S 026/E:2018). */
+EF_API double ef_alpha_opic_d65_mw_lm(ef_receptor receptor);
+
+/** Channels of ef_alpha_opic_weights: the five receptors and V(lambda). */
+enum { EF_ALPHA_OPIC_CHANNELS = EF_N_RECEPTORS + 1 };
+
+/** Weights from samples to what ef_alpha_opic_from takes. Lights: plain sums
+ * times the step in nm. Surfaces: as seen in the viewing's illuminant of
+ * luminance (or illuminance) 100 for the perfect diffuser. Notes and ownership
+ * as for ef_observer_weights. */
+EF_API ef_weights *ef_alpha_opic_weights(const ef_grid *samples,
+                                         const ef_viewing *viewing,
+                                         const ef_notes *notes,
+                                         ef_error *error);
+/** From one spectrum's EF_ALPHA_OPIC_CHANNELS sums. */
+EF_API ef_alpha_opic ef_alpha_opic_from(const double *channel);
 
 #ifdef __cplusplus
 }

@@ -9,24 +9,18 @@
 #include "base/base_private.h"
 #include "observer/observer_private.h"
 
-/* The cones of one field: CIE 170-1:2006, CIE 170-2:2015. */
-typedef struct cone_field {
-  const char *table;
-  double field_deg;
-  ef_mb_scale mb_scale;
-  double to_xyz[9]; /* l, m, s to x_F, y_F, z_F */
-} cone_field;
-
-static const cone_field field_2 = {
+const ef__cone_field ef__cone_field_2 = {
     .table = "cie-2006-2",
     .field_deg = 2,
+    .k_m = 683.358,                                    /* CIE 170-2:2015 */
     .mb_scale = {0.68990272, 0.34832189, 0.0371597},   /* CIE 170-2:2015 */
     .to_xyz = {1.94735469, -1.41445123, 0.36476327,    /* CIE 170-2:2015 */
                0.68990272, 0.34832189,  0,
                0,          0,           1.93485343}};
-static const cone_field field_10 = {
+const ef__cone_field ef__cone_field_10 = {
     .table = "cie-2006-10",
     .field_deg = 10,
+    .k_m = 683.599,                                    /* CIE 170-2:2015 */
     .mb_scale = {0.69283932, 0.34967567, 0.0554786},   /* CIE 170-2:2015 */
     .to_xyz = {1.93986443, -1.34664359, 0.43044935,    /* CIE 170-2:2015 */
                0.69283932, 0.34967567,  0,
@@ -37,9 +31,8 @@ enum { K_M = 683 }; /* lm/W for V(lambda) of 1924, CIE 018:2019 */
 /* A built-in observer. */
 typedef struct tabulated {
   const char *about;
-  const char *table; /* NULL: cones times `to_xyz` */
-  const cone_field *cones;
-  double k_m;
+  const char *table; /* NULL: cones times their `to_xyz` and `k_m` */
+  const ef__cone_field *cones;
 } tabulated;
 
 static const char *const names[] = {"cie-1931", "cie-1964", "cie-2015-2",
@@ -49,16 +42,16 @@ enum { N_TABULATED = sizeof names / sizeof *names };
 static const tabulated known[N_TABULATED] = {
     {"CIE 1931 standard colorimetric observer, 2 degree field "
      "(ISO/CIE 11664-1:2019)",
-     "cie-1931", &field_2, K_M},
+     "cie-1931", &ef__cone_field_2},
     {"CIE 1964 standard colorimetric observer, 10 degree field "
      "(ISO/CIE 11664-1:2019)",
-     "cie-1964", &field_10, K_M},
+     "cie-1964", &ef__cone_field_10},
     {"CIE 2015 cone-fundamental-based observer, 2 degree field "
      "(CIE 170-2:2015)",
-     NULL, &field_2, 683.358}, /* lm/W, CIE 170-2:2015 */
+     NULL, &ef__cone_field_2},
     {"CIE 2015 cone-fundamental-based observer, 10 degree field "
      "(CIE 170-2:2015)",
-     NULL, &field_10, 683.599}, /* lm/W, CIE 170-2:2015 */
+     NULL, &ef__cone_field_10},
 };
 
 size_t ef__tabulated_names(const char *const **list) {
@@ -96,12 +89,15 @@ static void multiply_cones(const double matrix[9], size_t n,
   }
 }
 
-static ef_status set_cones(ef_observer *observer, const cone_field *cones,
+static ef_status set_cones(ef_observer *observer, const ef__cone_field *cones,
                            bool borrowed, ef_error *error) {
   observer->field_deg = cones->field_deg;
   observer->mb_scale = cones->mb_scale;
   observer->cones_borrowed = borrowed;
-  return read_table(cones->table, observer->set[EF_CONES].value, error);
+  const ef_status status =
+      read_table(cones->table, observer->set[EF_CONES].value, error);
+  if (status != EF_OK) return status;
+  return ef__observer_set_receptors(observer, NULL, error);
 }
 
 ef_observer *ef__tabulated_new(size_t i, ef_error *error) {
@@ -109,8 +105,8 @@ ef_observer *ef__tabulated_new(size_t i, ef_error *error) {
   ef_observer *const observer =
       ef__observer_allocate(names[i], source->about, error);
   if (observer == NULL) return NULL;
-  observer->k_m = source->k_m;
   const bool borrowed = source->table != NULL;
+  observer->k_m = borrowed ? K_M : source->cones->k_m;
   double *const xyz_bar = observer->set[EF_TRISTIMULUS].value;
   if (set_cones(observer, source->cones, borrowed, error) != EF_OK) goto fail;
   if (source->table == NULL) {
@@ -164,7 +160,7 @@ ef_observer *ef_observer_from_spectra(const char *name,
   double *const xyz_bar = observer->set[EF_TRISTIMULUS].value;
   const ef_grid grid = ef_grid_standard();
   const ef_grid from = ef_grid_simplify(ef_spectra_grid(spectra));
-  if (set_cones(observer, &field_2, true, error) != EF_OK ||
+  if (set_cones(observer, &ef__cone_field_2, true, error) != EF_OK ||
       ef_resample(&from, 3, ef_spectra_values(spectra), &grid,
                   EF_INTERPOLATE_AUTO, EF_EXTEND_ZERO, xyz_bar,
                   error) != EF_OK ||

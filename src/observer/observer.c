@@ -8,19 +8,23 @@
 #include "base/base_private.h"
 
 const char *const ef__tristimulus_names[3] = {"x_bar", "y_bar", "z_bar"};
-const char *const ef__cone_names[3] = {"l_bar", "m_bar", "s_bar"};
+const char *const ef__receptor_names[EF_N_RECEPTORS] = {
+    "l_bar", "m_bar", "s_bar", "rhodopic", "melanopic"};
 
 ef_observer *ef__observer_allocate(const char *name, const char *about,
                                    ef_error *error) {
   const size_t n = ef_grid_standard().count;
   ef_observer *observer = NULL;
   ef_observer part = {
+      .dimensions = 3,
       .set = {[EF_TRISTIMULUS] = {.count = 3, .name = ef__tristimulus_names},
-              [EF_CONES] = {.count = 3, .name = ef__cone_names}}};
+              [EF_CONES] = {.count = 3, .name = ef__receptor_names},
+              [EF_RECEPTORS] = {.count = EF_N_RECEPTORS,
+                                .name = ef__receptor_names}}};
   const ef__part parts[] = {
       {&observer, 1, sizeof *observer},
       {&part.set[EF_TRISTIMULUS].value, 3 * n, sizeof(double)},
-      {&part.set[EF_CONES].value, 3 * n, sizeof(double)},
+      {&part.set[EF_RECEPTORS].value, EF_N_RECEPTORS * n, sizeof(double)},
       {&part.name, strlen(name) + 1, 1},
       {&part.about, strlen(about) + 1, 1}};
   if (ef__allocate_block(sizeof parts / sizeof *parts, parts) == NULL) {
@@ -29,6 +33,7 @@ ef_observer *ef__observer_allocate(const char *name, const char *about,
   }
   strcpy(part.name, name);
   strcpy(part.about, about);
+  part.set[EF_CONES].value = part.set[EF_RECEPTORS].value;
   *observer = part;
   return observer;
 }
@@ -55,6 +60,10 @@ double ef_observer_k_m(const ef_observer *observer) {
 
 bool ef_observer_cones_borrowed(const ef_observer *observer) {
   return observer->cones_borrowed;
+}
+
+size_t ef_observer_dimensions(const ef_observer *observer) {
+  return observer->dimensions;
 }
 
 ef_mb_scale ef_observer_mb_scale(const ef_observer *observer) {

@@ -21,17 +21,42 @@ struct ef_observer {
   double k_m;
   bool cones_borrowed;
   ef_mb_scale mb_scale;
-  ef__channel_set set[2]; /**< by ef_channel_role */
+  size_t dimensions;      /**< 3, or 2 for dichromats */
+  ef__channel_set set[3]; /**< by ef_channel_role; the cones are the first
+                               three channels of the receptors */
 };
+
+/** The cones of one of the two fields that the CIE tabulates (cmf.c). */
+typedef struct ef__cone_field {
+  const char *table; /**< CIE 170-1:2006 */
+  double field_deg;
+  double k_m;        /**< lm/W for y_F */
+  ef_mb_scale mb_scale;
+  double to_xyz[9];  /**< l, m, s to x_F, y_F, z_F */
+} ef__cone_field;
+
+extern const ef__cone_field ef__cone_field_2;
+extern const ef__cone_field ef__cone_field_10;
 
 /** x_bar, y_bar, z_bar and l_bar, m_bar, s_bar. */
 extern const char *const ef__tristimulus_names[3];
-extern const char *const ef__cone_names[3];
+extern const char *const ef__receptor_names[EF_N_RECEPTORS];
 
-/** An observer with room for its texts (copied) and three channels of each
- * role, all zero; the rest is to be filled. NULL without memory. */
+/** An observer with room for its texts (copied) and the channels of each role,
+ * all zero; the rest is to be filled. NULL without memory. */
 ef_observer *ef__observer_allocate(const char *name, const char *about,
                                    ef_error *error);
+
+/** Fills rods and melanopsin (receptor.c): for the mean observer of 32 years,
+ * or for the ocular media of `model` unless that is NULL. */
+ef_status ef__observer_set_receptors(ef_observer *observer,
+                                     const ef_cone_model *model,
+                                     ef_error *error);
+
+/** An observer of a checked model under the name that was asked for. */
+ef_observer *ef__observer_from_model(const char *name,
+                                     const ef_cone_model *model,
+                                     ef_error *error);
 
 /** Number and names of the tabulated observers (cmf.c). */
 size_t ef__tabulated_names(const char *const **names);
