@@ -1,0 +1,125 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** \file
+ * What a difference formula is made of. A new formula is one file that fills
+ * one of these tables, and one line in formula.c. */
+#ifndef EVENFIELD_DIFFERENCE_PRIVATE_H
+#define EVENFIELD_DIFFERENCE_PRIVATE_H
+
+#include <evenfield/difference.h>
+
+/** The squared difference around a sample, to second order:
+ * square + gradient . d + d' hessian d / 2 for a step d. */
+typedef struct ef__expansion {
+  double square;
+  double gradient[3];
+  double hessian[9]; /**< row-major, symmetric, may be indefinite */
+} ef__expansion;
+
+/** A formula. Coordinate 0 is lightness, 1 and 2 span the chromatic plane with
+ * the neutral axis at 0. Functions marked optional may be NULL; the wrappers
+ * below then do without. */
+struct ef_metric {
+  const char *name;
+  const char *title;
+  const char *symbol;
+  const char *source;
+  ef_jnd jnd;
+  void (*coordinates)(ef_xyz xyz, const ef_conditions *conditions,
+                      double coordinate[3]);
+  ef_xyz (*inverse)(const double coordinate[3],
+                    const ef_conditions *conditions);
+  void (*jacobian)(ef_xyz xyz, const ef_conditions *conditions,
+                   double jacobian[9]);
+  double (*difference)(const double reference[3], const double sample[3]);
+  double (*components)(const double reference[3], const double sample[3],
+                       ef_components *components);
+  void (*tensor)(const double coordinate[3], double tensor[9]);
+  /** Optional: the squared difference around `sample`, with respect to the
+   * sample. Without it: central differences of `difference`. */
+  void (*expand)(const double reference[3], const double sample[3],
+                 ef__expansion *out);
+  /** Optional: carries an expansion in coordinates to one in XYZ at the colour
+   * with these coordinates, the bending of the coordinates included. Without
+   * it: the Jacobian alone, which leaves the bending out. */
+  void (*carry)(const double coordinate[3], const ef_conditions *conditions,
+                const ef__expansion *in, ef__expansion *out);
+};
+
+/* ---- The formulas ------------------------------------------------------ */
+
+extern const ef_metric ef__metric_cielab;    /* lab_based.c */
+extern const ef_metric ef__metric_ciede2000; /* ciede2000.c */
+
+/* ---- Shared by formulas on CIELAB (lab_based.c) ------------------------ */
+
+void ef__lab_coordinates(ef_xyz xyz, const ef_conditions *conditions,
+                         double coordinate[3]);
+ef_xyz ef__lab_inverse(const double coordinate[3],
+                       const ef_conditions *conditions);
+void ef__lab_jacobian(ef_xyz xyz, const ef_conditions *conditions,
+                      double jacobian[9]);
+void ef__lab_carry(const double coordinate[3], const ef_conditions *conditions,
+                   const ef__expansion *in, ef__expansion *out);
+
+/** Delta H of two points of a chromatic plane with chromas of product
+ * `chroma_product`: the side of the hue triangle, positive anticlockwise, and
+ * without the cancellation of its usual form where the hues are alike. For
+ * exactly opposite hues the sign is that of the hue angles in [0, 360). */
+double ef__delta_hue(double a1, double b1, double a2, double b2,
+                     double chroma_product);
+
+/* ---- Expansion of CIEDE2000 (ciede2000_expand.c) ----------------------- */
+
+/** Terms of the formula that the expansion needs too. Equation numbers are
+ * those of Sharma, Wu & Dalal (2005). */
+typedef struct ef__ciede2000 {
+  double one_plus_g;                     /* eq. 4 */
+  double chroma1, chroma2;               /* C'1, C'2, eq. 6 */
+  double delta_l, delta_c, delta_h;      /* eq. 8, 9, 11 */
+  double mean_l, mean_c;                 /* eq. 12, 13 */
+  double mean_h_deg;                     /* eq. 14; 0 where it has no effect */
+  double cos_h, sin_h;                   /* of the mean hue */
+  double hue_weight;                     /* T, eq. 15 */
+  double s_l, s_c, s_h, r_t;             /* eq. 18 to 21 */
+} ef__ciede2000;
+
+void ef__ciede2000_terms(const double reference[3], const double sample[3],
+                         ef__ciede2000 *out);
+/** sqrt(C^7 / (C^7 + 25^7)) of eq. 4 and 17. */
+double ef__ciede2000_saturation(double chroma);
+/** T of eq. 15 at the hue with this cosine and sine, and unless NULL its first
+ * and second derivative by the hue in radians. */
+double ef__ciede2000_hue_weight(double cos_h, double sin_h,
+                                double derivative[2]);
+void ef__ciede2000_expand(const double reference[3], const double sample[3],
+                          ef__expansion *out);
+
+/* ---- Tools for formulas (tensor.c) ------------------------------------- */
+
+/** For formulas that are the Euclidean distance of their coordinates. */
+double ef__euclidean_difference(const double reference[3],
+                                const double sample[3]);
+double ef__euclidean_components(const double reference[3],
+                                const double sample[3],
+                                ef_components *components);
+void ef__euclidean_tensor(const double coordinate[3], double tensor[9]);
+void ef__euclidean_expand(const double reference[3], const double sample[3],
+                          ef__expansion *out);
+
+/** Local tensor from second differences of the formula: for formulas without a
+ * closed form, and to check those that have one. Relative error about 1e-6
+ * away from kinks of the formula. */
+void ef__numeric_tensor(const ef_metric *metric, const double coordinate[3],
+                        double tensor[9]);
+
+/* ---- For solvers (formula.c) ------------------------------------------- */
+
+/** Squared difference around `sample` in the metric's coordinates. */
+void ef__metric_expand(const ef_metric *metric, const double reference[3],
+                       const double sample[3], ef__expansion *out);
+/** The same carried to XYZ, `xyz` being the colour of `sample`. */
+void ef__metric_carry(const ef_metric *metric, ef_xyz xyz,
+                      const double sample[3], const ef_conditions *conditions,
+                      const ef__expansion *in, ef__expansion *out);
+
+#endif

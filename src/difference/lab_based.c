@@ -1,0 +1,116 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/* CIE 1976 L*a*b* difference (ISO/CIE 11664-4), and what the other formulas on
+ * CIELAB share with it. */
+#include "difference/difference_private.h"
+
+#include <math.h>
+
+/* True when the hue angle of (a, b) in [0, 360) is 180 degrees or more. */
+static bool in_lower_half(double a, double b) {
+  return b < 0 || (b == 0 && a < 0);
+}
+
+double ef__delta_hue(double a1, double b1, double a2, double b2,
+                     double chroma_product) {
+  const double dot = a1 * a2 + b1 * b2;
+  const double cross = a1 * b2 - b1 * a2;
+  if (chroma_product == 0) return 0;
+  /* 2 sqrt(C1 C2) sin(h/2), with sin(h/2) = sin h / (2 cos(h/2)) and
+   * cos(h/2)^2 = (1 + cos h) / 2. */
+  if (dot >= 0) return cross * sqrt(2 / (chroma_product + dot));
+  const double size = sqrt(2 * (chroma_product - dot));
+  if (cross == 0) return in_lower_half(a1, b1) ? -size : size;
+  return copysign(size, cross);
+}
+
+void ef__lab_coordinates(ef_xyz xyz, const ef_conditions *conditions,
+                         double coordinate[3]) {
+  const ef_lab lab = ef_xyz_to_lab(xyz, conditions->white);
+  coordinate[0] = lab.L_star;
+  coordinate[1] = lab.a_star;
+  coordinate[2] = lab.b_star;
+}
+
+ef_xyz ef__lab_inverse(const double coordinate[3],
+                       const ef_conditions *conditions) {
+  const ef_lab lab = {coordinate[0], coordinate[1], coordinate[2]};
+  return ef_lab_to_xyz(lab, conditions->white);
+}
+
+void ef__lab_jacobian(ef_xyz xyz, const ef_conditions *conditions,
+                      double jacobian[9]) {
+  ef_lab_jacobian(xyz, conditions->white, jacobian);
+}
+
+/* First and second derivative of f(t / white), f the cube root above 24/116
+ * and its tangent below, from the value f. */
+static void slopes(double f, double white, double *first, double *second) {
+  if (f > 24.0 / 116) {
+    *first = 1 / (3 * f * f * white);
+    *second = -2 * *first / (3 * f * f * f * white);
+  } else {
+    *first = 841.0 / 108 / white;
+    *second = 0;
+  }
+}
+
+/* With L* = 116 fY - 16, a* = 500 (fX - fY), b* = 200 (fY - fZ): each f
+ * depends on one tristimulus value, so that the second derivatives of the
+ * coordinates only fill the diagonal. */
+void ef__lab_carry(const double coordinate[3], const ef_conditions *conditions,
+                   const ef__expansion *in, ef__expansion *out) {
+  const ef_xyz white = conditions->white;
+  const double f_y = (coordinate[0] + 16) / 116;
+  const double f_x = f_y + coordinate[1] / 500;
+  const double f_z = f_y - coordinate[2] / 200;
+  double d[3], dd[3];
+  slopes(f_x, white.X, &d[0], &dd[0]);
+  slopes(f_y, white.Y, &d[1], &dd[1]);
+  slopes(f_z, white.Z, &d[2], &dd[2]);
+  const double *const g = in->gradient, *const h = in->hessian;
+  const double g_f[3] = {500 * g[1], 116 * g[0] - 500 * g[1] + 200 * g[2],
+                         -200 * g[2]};
+  /* Rows of d(L*, a*, b*) / d(fX, fY, fZ). */
+  const double j[9] = {0, 116, 0, 500, -500, 0, 0, 200, -200};
+  double hj[9];
+  for (int i = 0; i < 3; ++i) {
+    for (int k = 0; k < 3; ++k) {
+      hj[3 * i + k] =
+          h[3 * i] * j[k] + h[3 * i + 1] * j[3 + k] + h[3 * i + 2] * j[6 + k];
+    }
+  }
+  for (int i = 0; i < 3; ++i) {
+    for (int k = 0; k < 3; ++k) {
+      const double h_f =
+          j[i] * hj[k] + j[3 + i] * hj[3 + k] + j[6 + i] * hj[6 + k];
+      out->hessian[3 * i + k] = h_f * d[i] * d[k];
+    }
+    out->gradient[i] = g_f[i] * d[i];
+    out->hessian[4 * i] += g_f[i] * dd[i];
+  }
+  out->square = in->square;
+}
+
+double ef_delta_e_cielab(ef_lab reference, ef_lab sample) {
+  const double r[3] = {reference.L_star, reference.a_star, reference.b_star};
+  const double s[3] = {sample.L_star, sample.a_star, sample.b_star};
+  return ef__euclidean_difference(r, s);
+}
+
+const ef_metric ef__metric_cielab = {
+    .name = "cielab",
+    .title = "CIE 1976 L*a*b*",
+    .symbol = "Delta E*ab",
+    .source = "ISO/CIE 11664-4:2019",
+    .jnd = {2.3, "just noticeable, mean over the colour space",
+            "Mahy, Van Eycken, Oosterlinck, Color Res. Appl. 19 (1994) "
+            "105-121"},
+    .coordinates = ef__lab_coordinates,
+    .inverse = ef__lab_inverse,
+    .jacobian = ef__lab_jacobian,
+    .difference = ef__euclidean_difference,
+    .components = ef__euclidean_components,
+    .tensor = ef__euclidean_tensor,
+    .expand = ef__euclidean_expand,
+    .carry = ef__lab_carry,
+};

@@ -1,0 +1,81 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/* Tensors: the Euclidean one, and a numeric one for formulas without a closed
+ * form. */
+#include "difference/difference_private.h"
+
+#include <math.h>
+
+double ef__euclidean_difference(const double reference[3],
+                                const double sample[3]) {
+  const double d0 = sample[0] - reference[0];
+  const double d1 = sample[1] - reference[1];
+  const double d2 = sample[2] - reference[2];
+  return sqrt(d0 * d0 + d1 * d1 + d2 * d2);
+}
+
+double ef__euclidean_components(const double reference[3],
+                                const double sample[3],
+                                ef_components *components) {
+  const double c1 =
+      sqrt(reference[1] * reference[1] + reference[2] * reference[2]);
+  const double c2 = sqrt(sample[1] * sample[1] + sample[2] * sample[2]);
+  components->lightness = sample[0] - reference[0];
+  components->chroma = c2 - c1;
+  components->hue = ef__delta_hue(reference[1], reference[2], sample[1],
+                                  sample[2], c1 * c2);
+  return ef__euclidean_difference(reference, sample);
+}
+
+void ef__euclidean_tensor(const double coordinate[3], double tensor[9]) {
+  (void)coordinate;
+  for (int i = 0; i < 9; ++i) tensor[i] = i % 4 == 0;
+}
+
+void ef__euclidean_expand(const double reference[3], const double sample[3],
+                          ef__expansion *out) {
+  out->square = 0;
+  for (int i = 0; i < 3; ++i) {
+    const double d = sample[i] - reference[i];
+    out->square += d * d;
+    out->gradient[i] = 2 * d;
+  }
+  for (int i = 0; i < 9; ++i) out->hessian[i] = i % 4 == 0 ? 2 : 0;
+}
+
+/* Squared difference of two points placed symmetrically, so that what depends
+ * on their mean stays put and the error is of fourth order in the step. */
+static double square_across(const ef_metric *metric,
+                            const double coordinate[3], const double step[3]) {
+  double before[3], after[3];
+  for (int i = 0; i < 3; ++i) {
+    before[i] = coordinate[i] - step[i] / 2;
+    after[i] = coordinate[i] + step[i] / 2;
+  }
+  const double d = metric->difference(before, after);
+  return d * d;
+}
+
+/* The polarisation identity turns squared lengths into the form itself. The
+ * step makes truncation (step^2) and rounding (epsilon / step) alike. */
+void ef__numeric_tensor(const ef_metric *metric, const double coordinate[3],
+                        double tensor[9]) {
+  const double step = 1e-4;
+  double square[3];
+  for (int i = 0; i < 3; ++i) {
+    double d[3] = {0, 0, 0};
+    d[i] = step;
+    square[i] = square_across(metric, coordinate, d);
+    tensor[4 * i] = square[i] / (step * step);
+  }
+  for (int i = 0; i < 3; ++i) {
+    for (int k = i + 1; k < 3; ++k) {
+      double d[3] = {0, 0, 0};
+      d[i] = d[k] = step;
+      const double sum = square_across(metric, coordinate, d);
+      d[k] = -step;
+      const double difference = square_across(metric, coordinate, d);
+      tensor[3 * i + k] = tensor[3 * k + i] =
+          (sum - difference) / (4 * step * step);
+    }
+  }
+}
