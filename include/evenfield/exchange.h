@@ -36,11 +36,15 @@ typedef enum ef_kind_choice {
 
 typedef struct ef_reader_settings {
   ef_kind_choice kind;
-  bool skip_bad;      /**< leave out rows at fault, note and count them */
+  bool skip_bad;      /**< leave out rows at fault: the first ten are noted, all
+                           are counted; of long spectra a row is a wavelength.
+                           Faults of the header row, quotes that do not close
+                           and lines that are too long stay errors */
   double device_max;  /**< device value of full drive; 0: the file's
                            `# device_max:` line, else 255 when a value exceeds
                            1 (100 for C, M, Y), else 1, with a note */
-  size_t max_bytes;   /**< of a file held in memory whole (long spectra) */
+  size_t max_bytes;   /**< of a file held in memory whole (long spectra,
+                           ef_spectra_read) */
   const ef_notes *notes;
 } ef_reader_settings;
 /** AUTO, no skipping, 1 GiB, no notes. */
@@ -51,22 +55,31 @@ EF_API ef_reader_settings ef_reader_settings_default(void);
 typedef struct ef_reader ef_reader;
 
 /** `path`: a file, "-" for standard input, or "demo:NAME" for a file of the
- * built-in scenario. Reads the comment lines and the header row and decides
- * the content. Free with ef_reader_free.
+ * built-in scenario. Reads the comment lines, the header row and the first 100
+ * rows, and decides the content. `settings` NULL: the defaults. Free with
+ * ef_reader_free.
  *
  * CSV per RFC 4180 with `#` comment lines before the header and between rows;
- * comma, semicolon (then a decimal comma is understood) or tab; byte-order
- * mark; CRLF. Header: `wavelength_nm` first: long spectra; columns named by
- * wavelength (400, 400nm, nm400): wide spectra; L,a,b / X,Y,Z / x,y,Y;
- * R,G,B / C,M,Y device values beside any of these or alone; `name` anywhere.
- * Comment lines `# quantity:`, `# unit:`, `# device_max:` are understood.
+ * comma, semicolon or tab (between semicolons or tabs a decimal comma is
+ * understood; the first number that has a mark decides for the file);
+ * byte-order mark; CRLF. A line of separators alone is as good as a blank one.
+ * Header: `wavelength_nm` first: long spectra; columns named by wavelength
+ * (400, 400nm, nm400): wide spectra; L,a,b / X,Y,Z / x,y,Y; R,G,B / C,M,Y
+ * (or red,green,blue / cyan,magenta,yellow) device values beside any of these
+ * or alone; `name` anywhere. Case counts: x is not X. Where several sets are
+ * there, spectra come first, then X,Y,Z, x,y,Y, L,a,b; columns that are not
+ * used are noted. Comment lines above the header `# title:`, `# quantity:`,
+ * `# unit:`, `# device_max:` are understood.
+ *
  * Kind rule: the settings; else a quantity line that says reflectance,
  * radiance factor, transmittance (surface) or radiance, power, light
- * (light); else surface when every value of the first rows lies in 0 to 2,
+ * (light); else surface when every value of the first rows lies in -0.02 to 2,
  * light otherwise, with a note. Refused: values below zero of lights, values
- * of surfaces below -0.02 or above 2 (percent: the message says so), text in a
- * number, nan, inf, duplicate or unsorted wavelengths, repeated column names,
- * ragged rows. */
+ * of surfaces below -0.02 or above 2 (percent: the message says so), Y or L
+ * below zero, chromaticities without y, device values below zero or above full
+ * drive, text in a number, nan, inf, wavelengths that are duplicate, unsorted
+ * or outside 100 to 10000 nm, repeated column names, ragged rows, lines above
+ * 4 MiB, quoted fields above 64 KiB, more than 16384 columns. */
 EF_API ef_reader *ef_reader_open(const char *path,
                                  const ef_reader_settings *settings,
                                  ef_error *error);
@@ -82,11 +95,12 @@ typedef struct ef_reader_head {
   const char *file;
   const char *title;       /**< of the `# title:` line, "" if none */
   ef_content content;
-  size_t width;            /**< values per row: samples, or 3 */
+  size_t width;            /**< values per row: samples, or 3; 0 where there
+                                are device values only */
   ef_grid grid;            /**< of spectra; count 0 else */
   ef_kind kind;            /**< of spectra */
   bool absolute;           /**< unit line says W sr-1 m-2 nm-1, or X,Y,Z in
-                                cd/m2 */
+                                cd/m2 (x,y,Y too) */
   bool has_names;          /**< rows have names of their own */
   size_t n_device;         /**< device values per row, 0 if none */
   const char *const *device_name; /**< "red", "green", "blue", or "cyan" ... */
@@ -102,7 +116,8 @@ typedef struct ef_block {
   const double *device;     /**< n x n_device in [0, 1], NULL if none */
 } ef_block;
 
-/** Next rows, at most `max_rows`; n = 0 at the end. */
+/** Next rows, at most `max_rows` (1 or more); n = 0 at the end. After an error
+ * nothing more comes. */
 EF_API ef_status ef_reader_next(ef_reader *reader, size_t max_rows,
                                 ef_block *block, ef_error *error);
 /** Rows left out so far because they were at fault (skip_bad). */
@@ -124,8 +139,10 @@ EF_API const char *ef_demo_text(size_t i, size_t *length);
  * synced, renamed by ef_output_commit. */
 typedef struct ef_output ef_output;
 
-/** NULL or "-": standard output (written through, nothing to undo).
- * EF_EXISTS when the file is there and `overwrite` is false. */
+/** NULL or "-": standard output. It, devices and pipes are written through:
+ * there is nothing to undo. A symbolic link stays one; the file it leads to is
+ * replaced. EF_EXISTS when the file is there and `overwrite` is false, also
+ * when it has come to be there by the time of ef_output_commit. */
 EF_API ef_output *ef_output_open(const char *path, bool overwrite,
                                  ef_error *error);
 EF_API ef_status ef_output_write(ef_output *output, const void *bytes,
@@ -140,7 +157,8 @@ EF_API void ef_output_discard(ef_output *output);
 EF_API ef_status ef_directory_make(const char *path, ef_error *error);
 
 /** Rows of CSV, written as they come; quotes what needs it; numbers with all
- * digits; NaN as an empty field. Errors are kept and reported by
+ * digits; NaN as an empty field, infinities as inf and -inf; lines end with
+ * LF. Errors are kept and reported by
  * ef_csv_finish. Free with ef_csv_finish; the output stays the caller's. */
 typedef struct ef_csv ef_csv;
 EF_API ef_csv *ef_csv_new(ef_output *output, ef_error *error);
@@ -151,7 +169,8 @@ EF_API void ef_csv_end_row(ef_csv *csv);
 EF_API ef_status ef_csv_finish(ef_csv *csv, ef_error *error);
 
 /** One JSON document, written as it comes (RFC 8259, UTF-8): NaN and
- * infinities as null, invalid UTF-8 as U+FFFD. `key` is NULL inside arrays and
+ * infinities and a NULL text as null, invalid UTF-8 as U+FFFD, nesting up to
+ * 64 levels. `key` is NULL inside arrays and
  * for the top value. Errors are kept and reported by ef_json_finish; nesting
  * that does not close is EF_INVALID there. */
 typedef struct ef_json ef_json;
@@ -179,8 +198,10 @@ typedef struct ef_png_tags {
   size_t profile_length;
 } ef_png_tags;
 
-/** RGB picture, `bits` 8 or 16; `sample` is height x width x 3 in 16-bit range
- * (8-bit pictures take the high part, rounded). `tags` may be NULL: untagged. */
+/** RGB picture, `bits` 8 or 16, at most 1 000 000 pixels a side; `sample` is
+ * height x width x 3 in 16-bit range, for 8-bit pictures rounded to the nearest
+ * of sample * 255 / 65535. `tags` may be NULL: untagged. A profile that libpng
+ * refuses is EF_UNWRITABLE. */
 EF_API ef_status ef_png_write(const char *path, bool overwrite, size_t width,
                               size_t height, int bits, const uint16_t *sample,
                               const ef_png_tags *tags, ef_error *error);
