@@ -75,7 +75,7 @@ ef_status ef__decide_from_remarks(ef_reader *reader, ef_error *error) {
 /* ---- From values ------------------------------------------------------- */
 
 static const char *rows_text(const ef_reader *reader) {
-  return reader->at_end ? "all rows" : "the first rows";
+  return reader->at_end ? "its rows" : "the first rows";
 }
 
 /* Like the check of surfaces, a little noise below zero allowed. */
@@ -108,11 +108,10 @@ static void assume_device_max(ef_reader *reader, ef__range device) {
   const char *const most = is_fraction ? "1" : is_ink ? "100" : "255";
   reader->limits.device_max = is_fraction ? 1 : is_ink ? 100 : 255;
   ef__note(reader->settings.notes,
-           "%s: %s,%s,%s run from 0 to %s: no '# device_max:' line says so, "
-           "but %s of %s",
+           "%s: %s,%s,%s read as 0 to %s: %s value of %s is above 1, and no "
+           "'# device_max:' line says otherwise",
            file_name(reader), letter[0], letter[1], letter[2], most,
-           is_fraction ? "no value is above 1" : "a value is above 1",
-           rows_text(reader));
+           is_fraction ? "no" : "a", rows_text(reader));
 }
 
 static void note_relative(const ef_reader *reader) {

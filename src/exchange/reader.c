@@ -71,6 +71,7 @@ static ef__span number_name(size_t number, char text[32]) {
 
 /* Full drive becomes 1. */
 static void scale_device(ef_reader *reader, size_t row) {
+  if (reader->rows.device == NULL) return;
   double *const device = reader->rows.device + row * reader->layout.n_device;
   for (size_t i = 0; i < reader->layout.n_device; ++i) {
     device[i] /= reader->limits.device_max;

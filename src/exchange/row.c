@@ -60,7 +60,7 @@ static ef_status read_carefully(ef__table *table, const ef__layout *layout,
     status = ef__table_number(table, i, to, error);
   }
   if (status == EF_OK && layout->name_column != SIZE_MAX) {
-    *name = ef__span_trim(table->records.field[layout->name_column]);
+    *name = table->records.field[layout->name_column];
   }
   return status;
 }
