@@ -1,0 +1,852 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/* Reading tables: what a file may look like and what is made of it. Broken
+ * files are in test_broken.c. */
+#include <stdlib.h>
+#include <sys/stat.h>
+#include <sys/wait.h>
+#include <unistd.h>
+
+#include <evenfield/exchange.h>
+
+#include "exchange/exchange_private.h"
+#include "fail_alloc.h"
+#include "gen.h"
+#include "heard.h"
+#include "near.h"
+
+/* ---- Helpers ----------------------------------------------------------- */
+
+static ef_reader *open_with(const char *text, const ef_reader_settings *set) {
+  ef_error error = {0};
+  ef_reader *const reader =
+      ef_reader_from_text("t.csv", text, strlen(text), set, &error);
+  if (reader == NULL) fail_msg("%s", error.message);
+  return reader;
+}
+
+/* Opens a text and hears its notes. */
+static ef_reader *open_heard(const char *text, heard *h) {
+  const ef_notes notes = heard_notes(h);
+  ef_reader_settings settings = ef_reader_settings_default();
+  settings.notes = &notes;
+  *h = (heard){0};
+  ef_reader *const reader = open_with(text, &settings);
+  reader->settings.notes = NULL; /* `notes` ends here */
+  reader->table.notes = NULL;
+  return reader;
+}
+
+static ef_block next(ef_reader *reader, size_t max_rows) {
+  ef_block block;
+  ef_error error = {0};
+  if (ef_reader_next(reader, max_rows, &block, &error) != EF_OK) {
+    fail_msg("%s", error.message);
+  }
+  return block;
+}
+
+static void refuse(const char *text, const char *part) {
+  ef_error error = {0};
+  assert_null(ef_reader_from_text("t.csv", text, strlen(text), NULL, &error));
+  assert_error(&error, EF_MALFORMED, part);
+  assert_string_equal(error.file, "t.csv");
+}
+
+/* ---- Spectra ----------------------------------------------------------- */
+
+static void wide_spectra(void **state) {
+  (void)state;
+  heard h;
+  ef_reader *const reader = open_heard("# title: deck paints\n"
+                                       "# quantity: reflectance\n"
+                                       "name,400,410nm,nm420,nm_430,440 NM\n"
+                                       "grey,0.1875,0.25,0.3125,0.375,0.4375\n"
+                                       "# a remark\n"
+                                       "buff,0.5,0.53,0.59,0.61,0.67\n",
+                                       &h);
+  const ef_reader_head *const head = ef_reader_get_head(reader);
+  assert_string_equal(head->file, "t.csv");
+  assert_string_equal(head->title, "deck paints");
+  assert_int_equal(head->content, EF_CONTENT_SPECTRA);
+  assert_int_equal(head->width, 5);
+  assert_int_equal(head->kind, EF_SURFACE);
+  assert_true(head->has_names);
+  assert_false(head->absolute);
+  assert_int_equal(head->n_device, 0);
+  assert_null(head->grid.wavelength_nm);
+  assert_int_equal(head->grid.count, 5);
+  assert_near(head->grid.start_nm, 400, 0);
+  assert_near(head->grid.step_nm, 10, 0);
+  const ef_block block = next(reader, 10);
+  const double expected[] = {0.1875, 0.25, 0.3125, 0.375, 0.4375,
+                             0.5,    0.53, 0.59,   0.61,  0.67};
+  assert_int_equal(block.n, 2);
+  assert_same_bits(block.value, expected, 10);
+  assert_string_equal(block.name[0], "grey");
+  assert_string_equal(block.name[1], "buff");
+  assert_int_equal(block.line[0], 4);
+  assert_int_equal(block.line[1], 6);
+  assert_null(block.device);
+  assert_int_equal(next(reader, 10).n, 0);
+  assert_int_equal(next(reader, 10).n, 0);
+  assert_int_equal(h.n, 0);
+  ef_reader_free(reader);
+}
+
+static void long_spectra(void **state) {
+  (void)state;
+  heard h;
+  ef_reader *const reader =
+      open_heard("# quantity: spectral radiance of light, W sr^-1 m^-2 nm^-1\n"
+                 "Wavelength_nm,red,green\n"
+                 "400,0.001,0.5\n401.5,0.002,0.375\n405,0.0035,0.1\n",
+                 &h);
+  const ef_reader_head *const head = ef_reader_get_head(reader);
+  assert_int_equal(head->content, EF_CONTENT_SPECTRA);
+  assert_int_equal(head->kind, EF_LIGHT);
+  assert_true(head->absolute);
+  assert_true(head->has_names);
+  const double wavelengths_nm[] = {400, 401.5, 405};
+  assert_int_equal(head->grid.count, 3);
+  assert_same_bits(head->grid.wavelength_nm, wavelengths_nm, 3);
+  const ef_block first = next(reader, 1);
+  const double red[] = {0.001, 0.002, 0.0035};
+  assert_int_equal(first.n, 1);
+  assert_same_bits(first.value, red, 3);
+  assert_string_equal(first.name[0], "red");
+  assert_int_equal(first.line[0], 2); /* column */
+  const ef_block second = next(reader, 9);
+  const double green[] = {0.5, 0.375, 0.1};
+  assert_int_equal(second.n, 1);
+  assert_same_bits(second.value, green, 3);
+  assert_string_equal(second.name[0], "green");
+  assert_int_equal(second.line[0], 3);
+  assert_int_equal(next(reader, 9).n, 0);
+  assert_int_equal(h.n, 0);
+  ef_reader_free(reader);
+}
+
+static void a_single_wavelength_is_a_spectrum(void **state) {
+  (void)state;
+  ef_reader *const reader =
+      open_with("# quantity: light\nwavelength_nm,laser\n546.1,37.23\n", NULL);
+  assert_int_equal(ef_reader_get_head(reader)->width, 1);
+  assert_near(ef_grid_wavelength(&ef_reader_get_head(reader)->grid, 0), 546.1,
+              0);
+  assert_near(next(reader, 1).value[0], 37.23, 0);
+  ef_reader_free(reader);
+}
+
+/* ---- Colours and device values ----------------------------------------- */
+
+static void colour_sets(void **state) {
+  (void)state;
+  static const struct {
+    const char *text;
+    ef_content content;
+    double value[3];
+  } cases[] = {
+      {"name,L,a,b\ndeck,52.5,-3.25,17.75\n",
+       EF_CONTENT_LAB,
+       {52.5, -3.25, 17.75}},
+      {"b,name,L,a\n17.75,deck,52.5,-3.25\n",
+       EF_CONTENT_LAB,
+       {52.5, -3.25, 17.75}},
+      {"X,Y,Z,name\n20.25,21.5,8.125,deck\n",
+       EF_CONTENT_XYZ,
+       {20.25, 21.5, 8.125}},
+      {"name,x,y,Y\ndeck,0.3127,0.329,37.25\n",
+       EF_CONTENT_XYY,
+       {0.3127, 0.329, 37.25}},
+      {"name,X,Y,Z\nimaginary,-1.5,21.5,-0.25\n",
+       EF_CONTENT_XYZ,
+       {-1.5, 21.5, -0.25}},
+  };
+  for (size_t i = 0; i < sizeof cases / sizeof *cases; ++i) {
+    heard h;
+    ef_reader *const reader = open_heard(cases[i].text, &h);
+    const ef_reader_head *const head = ef_reader_get_head(reader);
+    assert_int_equal(head->content, cases[i].content);
+    assert_int_equal(head->width, 3);
+    assert_int_equal(head->grid.count, 0);
+    assert_same_bits(next(reader, 5).value, cases[i].value, 3);
+    assert_int_equal(h.n, 0);
+    ef_reader_free(reader);
+  }
+}
+
+static void content_has_a_text(void **state) {
+  (void)state;
+  assert_string_equal(ef_content_text(EF_CONTENT_SPECTRA), "spectra");
+  assert_string_equal(ef_content_text(EF_CONTENT_LAB), "L,a,b");
+  assert_string_equal(ef_content_text(EF_CONTENT_XYZ), "X,Y,Z");
+  assert_string_equal(ef_content_text(EF_CONTENT_XYY), "x,y,Y");
+  assert_string_equal(ef_content_text(EF_CONTENT_DEVICE), "device values");
+}
+
+/* Device values of the one row of a text, and the note about their maximum. */
+static void check_device(const char *text, double asked, const char *note,
+                         const char *first_name, const double expected[3]) {
+  heard h = {0};
+  const ef_notes notes = heard_notes(&h);
+  ef_reader_settings settings = ef_reader_settings_default();
+  settings.notes = &notes;
+  settings.device_max = asked;
+  ef_reader *const reader = open_with(text, &settings);
+  const ef_reader_head *const head = ef_reader_get_head(reader);
+  assert_int_equal(head->n_device, 3);
+  assert_string_equal(head->device_name[0], first_name);
+  const ef_block block = next(reader, 5);
+  for (int i = 0; i < 3; ++i) assert_near(block.device[i], expected[i], 0);
+  assert_string_equal(h.text, note);
+  ef_reader_free(reader);
+}
+
+static void device_values_run_from_0_to_1(void **state) {
+  (void)state;
+  const double by_255[] = {0, 51.0 / 255.0, 1};
+  const double by_1023[] = {0, 51.0 / 1023.0, 255.0 / 1023.0};
+  const double percent[] = {0.1, 0.25, 0.5};
+  const double fraction[] = {0, 0.25, 1};
+  check_device("# device_max: 255\nR,G,B\n0,51,255\n", 0, "", "red", by_255);
+  check_device("# device_max: 255\nR,G,B\n0,51,255\n", 1023, "", "red",
+               by_1023);
+  check_device("R,G,B,X,Y,Z\n0,51,255,7.5,8.25,9.75\n", 0,
+               "t.csv: R,G,B read as 0 to 255: a value of its rows is above "
+               "1, and no '# device_max:' line says otherwise\n",
+               "red", by_255);
+  check_device("C,M,Y,L,a,b\n10,25,50,72.5,8.25,9.75\n", 0,
+               "t.csv: C,M,Y read as 0 to 100: a value of its rows is above "
+               "1, and no '# device_max:' line says otherwise\n",
+               "cyan", percent);
+  check_device("red,green,blue,400,410\n0,0.25,1,0.5,0.25\n", 0,
+               "t.csv: read as surfaces (ratios): no '# quantity:' line says "
+               "what the values are, and those of its rows lie in 0.25 to 0.5; "
+               "for lights add '# quantity: light'\n"
+               "t.csv: R,G,B read as 0 to 1: no value of its rows is above 1, "
+               "and no '# device_max:' line says otherwise\n",
+               "red", fraction);
+  check_device("# device_max: 100,0,,,,\n"
+               "cyan,magenta,yellow,X,Y,Z\n10,25,50,20.5,21.5,8.5\n",
+               100, "", "cyan", percent);
+}
+
+static void device_values_alone(void **state) {
+  (void)state;
+  ef_reader *const reader =
+      open_with("# device_max: 255\nname,R,G,B\nmast,51,0,255\n", NULL);
+  assert_int_equal(ef_reader_get_head(reader)->content, EF_CONTENT_DEVICE);
+  assert_int_equal(ef_reader_get_head(reader)->width, 0);
+  const ef_block block = next(reader, 5);
+  assert_int_equal(block.n, 1);
+  assert_string_equal(block.name[0], "mast");
+  assert_near(block.device[0], 0.2, 0);
+  ef_reader_free(reader);
+}
+
+static void unused_columns_are_noted(void **state) {
+  (void)state;
+  heard h;
+  ef_reader *const reader =
+      open_heard("id,L,a,b,X,Y,Z,x,y,checked by\n"
+                 "7,52.5,-3.25,17.75,20.25,21.5,8.125,0.4,0.4,nobody\n",
+                 &h);
+  assert_int_equal(ef_reader_get_head(reader)->content, EF_CONTENT_XYZ);
+  assert_false(ef_reader_get_head(reader)->has_names);
+  const ef_block block = next(reader, 5);
+  assert_near(block.value[0], 20.25, 0);
+  assert_string_equal(block.name[0], "row 1");
+  assert_string_equal(h.text,
+                      "t.csv:1: X,Y,Z taken; 7 columns are not used: 'id', "
+                      "'L', 'a', 'b', 'x', 'y', 'checked by'\n");
+  ef_reader_free(reader);
+}
+
+static void spectra_come_before_colours(void **state) {
+  (void)state;
+  heard h;
+  ef_reader *const reader =
+      open_heard("# quantity: reflectance\nname,L,400,410,a,b\n"
+                 "deck,52.5,0.25,0.375,-3.25,17.75\n",
+                 &h);
+  assert_int_equal(ef_reader_get_head(reader)->content, EF_CONTENT_SPECTRA);
+  assert_near(next(reader, 5).value[1], 0.375, 0);
+  assert_string_equal(h.text, "t.csv:2: spectra taken; 3 columns are not used: "
+                              "'L', 'a', 'b'\n");
+  ef_reader_free(reader);
+}
+
+/* ---- Dialects ---------------------------------------------------------- */
+
+static void dialects_mean_the_same(void **state) {
+  (void)state;
+  static const char *const texts[] = {
+      "name,L,a,b\ndeck grey,52.5,-3.25,17.75\nrail,49,0.5,1e1\n",
+      "name,L,a,b\r\ndeck grey,52.5,-3.25,17.75\r\nrail,49,0.5,1E+1",
+      "\xEF\xBB\xBFname,L,a,b\ndeck grey,52.5,-3.25,17.75\nrail,49,0.5,10\n",
+      "\xEF\xBB\xBF# title: x\r\nname;L;a;b\r\ndeck grey;52,5;-3,25;17,75\r\n"
+      "rail;49;0,5;10\r\n",
+      "name;L;a;b\ndeck grey;52.5;-3.25;17.75\nrail;49;.5;10.\n",
+      "name\tL\ta\tb\ndeck grey\t52,5\t-3,25\t17,75\nrail\t49\t,5\t10\n",
+      "name\tL\ta\tb\ndeck grey\t52.5\t-3.25\t17.75\nrail\t49\t0.5\t10\n",
+      "\n \n# one\n\"name\",\"L\",\"a\",\"b\"\n\n"
+      "\"deck grey\",\"52.5\",\"-3.25\",\"17.75\"\n  # two, \"three\n"
+      "rail,49,0.5,10\n,,,\n, ,,\n",
+      " name , L , a , b \n  deck grey ,\t52.5 , -3.25, 17.75\t\n"
+      " \"rail\" , \"49\" ,0.5,+10\n",
+      "name;L;a;b;\"c;d\"\ndeck grey;52.5;-3.25;17.75;\";\"\nrail;49;0.5;10;\n",
+  };
+  const double expected[] = {52.5, -3.25, 17.75, 49, 0.5, 10};
+  for (size_t i = 0; i < sizeof texts / sizeof *texts; ++i) {
+    ef_reader *const reader = open_with(texts[i], NULL);
+    const ef_block block = next(reader, 5);
+    assert_int_equal(block.n, 2);
+    assert_same_bits(block.value, expected, 6);
+    assert_string_equal(block.name[0], "deck grey");
+    assert_string_equal(block.name[1], "rail");
+    ef_reader_free(reader);
+  }
+}
+
+static void decimal_commas_are_noted(void **state) {
+  (void)state;
+  heard h;
+  ef_reader *const reader =
+      open_heard("# quantity: reflectance\nname;380,5;381\ndeck;0;0,25\n", &h);
+  assert_near(ef_reader_get_head(reader)->grid.start_nm, 380.5, 0);
+  assert_near(next(reader, 5).value[1], 0.25, 0);
+  assert_string_equal(h.text,
+                      "t.csv: numbers are read with a decimal comma\n");
+  ef_reader_free(reader);
+}
+
+static void quoted_fields_hold_anything(void **state) {
+  (void)state;
+  ef_reader *const reader = open_with("\"name\",L,a,b\n"
+                                      "\"mast, \"\"old\"\"\n lamp\",1,2,3\n"
+                                      "5\" pipe,4,5,6\n"
+                                      "\"#7\",7,8,9\n"
+                                      "\"\"\"\",10,11,12\n"
+                                      "\"\",13,14,15\n",
+                                      NULL);
+  const ef_block block = next(reader, 9);
+  assert_int_equal(block.n, 5);
+  assert_string_equal(block.name[0], "mast, \"old\"\n lamp");
+  assert_int_equal(block.line[0], 2);
+  assert_string_equal(block.name[1], "5\" pipe");
+  assert_int_equal(block.line[1], 4);
+  assert_string_equal(block.name[2], "#7");
+  assert_string_equal(block.name[3], "\"");
+  assert_string_equal(block.name[4], "row 5");
+  assert_near(block.value[9], 10, 0);
+  ef_reader_free(reader);
+}
+
+/* ---- Remarks and rules ------------------------------------------------- */
+
+static void quantities_say_the_kind(void **state) {
+  (void)state;
+  static const struct {
+    const char *text;
+    int kind;
+  } cases[] = {
+      {"reflectance", 1},
+      {"Radiance Factor, D65 light", 1},
+      {"spectral transmittance", 1},
+      {"spectral radiance", -1},
+      {"relative spectral power of light", -1},
+      {"Irradiance at the deck", -1},
+      {"lightness of samples", 0},
+      {"absorption and scattering", 0},
+      {"powers of ten", 0},
+      {"", 0},
+  };
+  for (size_t i = 0; i < sizeof cases / sizeof *cases; ++i) {
+    assert_int_equal(ef__quantity_kind(cases[i].text), cases[i].kind);
+  }
+}
+
+static void units_in_their_spellings(void **state) {
+  (void)state;
+  static const char *const radiance[] = {
+      "W sr^-1 m^-2 nm^-1",
+      "W sr-1 m-2 nm-1",
+      "W\xC2\xB7m\xE2\x81\xBB\xC2\xB2 sr\xE2\x88\x92\xC2\xB9 nm-\xC2\xB9",
+      "W/(m2 sr nm)",
+      "W/(sr m^2 nm)",
+      "W/sr/m\xC2\xB2/nm",
+      "radiance in W m-2 sr-1 nm-1, dark room"};
+  static const char *const other[] = {
+      "",          "mW sr^-1 m^-2 nm^-1", "\xC2\xB5W sr^-1 m^-2 nm^-1",
+      "W m-2 nm-1", "cd/m2",               "counts"};
+  for (size_t i = 0; i < sizeof radiance / sizeof *radiance; ++i) {
+    assert_true(ef__unit_is_radiance(radiance[i]));
+    assert_false(ef__unit_is_luminance(radiance[i]));
+  }
+  for (size_t i = 0; i < sizeof other / sizeof *other; ++i) {
+    assert_false(ef__unit_is_radiance(other[i]));
+  }
+  assert_true(ef__unit_is_luminance("X, Y, Z of light, cd/m2"));
+  assert_true(ef__unit_is_luminance("cd m^-2"));
+  assert_true(ef__unit_is_luminance("cd/m\xC2\xB2"));
+  assert_false(ef__unit_is_luminance("kcd/m2"));
+  assert_false(ef__unit_is_luminance("cd"));
+}
+
+static void absolute_colours(void **state) {
+  (void)state;
+  ef_reader *reader = open_with("# unit: cd/m2\nX,Y,Z\n20.5,21.5,8.5\n", NULL);
+  assert_true(ef_reader_get_head(reader)->absolute);
+  ef_reader_free(reader);
+  reader = open_with("X,Y,Z\n20.5,21.5,8.5\n", NULL);
+  assert_false(ef_reader_get_head(reader)->absolute);
+  ef_reader_free(reader);
+}
+
+/* Kind and notes of two samples of a text. */
+static void check_kind(const char *text, ef_kind_choice asked, ef_kind kind,
+                       const char *said) {
+  heard h = {0};
+  const ef_notes notes = heard_notes(&h);
+  ef_reader_settings settings = ef_reader_settings_default();
+  settings.notes = &notes;
+  settings.kind = asked;
+  ef_reader *const reader = open_with(text, &settings);
+  assert_int_equal(ef_reader_get_head(reader)->kind, kind);
+  assert_string_equal(h.text, said);
+  ef_reader_free(reader);
+}
+
+static void kind_rule(void **state) {
+  (void)state;
+  check_kind("name,400,410\nd,0.5,2\nr,-0.02,0\n", EF_KIND_AUTO, EF_SURFACE,
+             "t.csv: read as surfaces (ratios): no '# quantity:' line says what "
+             "the values are, and those of its rows lie in -0.02 to 2; for "
+             "lights add '# quantity: light'\n");
+  check_kind("wavelength_nm,d\n400,37.25\n410,1.5\n", EF_KIND_AUTO, EF_LIGHT,
+             "t.csv: read as lights: no '# quantity:' line says what the values "
+             "are, and those of its rows lie in 1.5 to 37.25; reflectances in "
+             "percent must be divided by 100\n");
+  check_kind("name,400,410\nd,0.5,0.25\n", EF_KIND_LIGHT, EF_LIGHT, "");
+  check_kind("# quantity: light\nname,400,410\nd,0.5,0.25\n", EF_KIND_SURFACE,
+             EF_SURFACE,
+             "t.csv: read as surfaces as asked, though the file says light\n");
+  check_kind("# quantity: reflectance\n# Quantity: light\nname,400,410\n"
+             "d,0.5,0.25\n",
+             EF_KIND_AUTO, EF_SURFACE,
+             "t.csv:2: a second '# quantity:' line is not used\n");
+  check_kind("# unit: W/(m2 sr nm)\nname,400,410\nd,0.5,0.25\n", EF_KIND_AUTO,
+             EF_LIGHT, "");
+  check_kind("# quantity: power\n# unit: counts\nname,400,410\nd,0.5,0.25\n",
+             EF_KIND_AUTO, EF_LIGHT,
+             "t.csv: values are relative: the unit 'counts' is not W sr^-1 "
+             "m^-2 nm^-1\n");
+}
+
+/* ---- Skipping ---------------------------------------------------------- */
+
+/* 300 rows of which every 20th is at fault: above 2, or text, in turn. */
+static char *faulty_text(void) {
+  char *const text = malloc(300 * 32);
+  assert_non_null(text);
+  size_t used = (size_t)sprintf(text, "# quantity: reflectance\n400,410\n");
+  for (int i = 1; i <= 300; ++i) {
+    const char *const value = i % 20 != 0   ? "0.625"
+                              : i % 40 != 0 ? "62.5"
+                                            : "high";
+    used += (size_t)sprintf(text + used, "0.25,%s\n", value);
+  }
+  return text;
+}
+
+static void faulty_rows_are_left_out(void **state) {
+  (void)state;
+  heard h = {0};
+  const ef_notes notes = heard_notes(&h);
+  ef_reader_settings settings = ef_reader_settings_default();
+  settings.notes = &notes;
+  settings.skip_bad = true;
+  char *const text = faulty_text();
+  ef_reader *const reader = open_with(text, &settings);
+  size_t n = 0;
+  for (;;) {
+    const ef_block block = next(reader, 37);
+    if (block.n == 0) break;
+    for (size_t i = 0; i < block.n; ++i) {
+      char name[32];
+      /* A name counts the rows of the file: two lines stand above them. */
+      snprintf(name, sizeof name, "row %zu", block.line[i] - 2);
+      assert_string_equal(block.name[i], name);
+      assert_true((block.line[i] - 2) % 20 != 0);
+      assert_near(block.value[2 * i + 1], 0.625, 0);
+      ++n;
+    }
+  }
+  assert_int_equal(n, 285);
+  assert_int_equal(ef_reader_skipped(reader), 15);
+  assert_int_equal(h.n, 11); /* the first ten, and the count */
+  assert_non_null(strstr(h.text, "t.csv:42: field 410: found 'high', expected "
+                                 "a number; correct it or leave the row out: "
+                                 "row left out\n"));
+  assert_non_null(strstr(h.text, "t.csv:22: field 410: found 62.5 for a"));
+  assert_non_null(strstr(h.text, "\nt.csv: 15 rows left out as faulty\n"));
+  ef_reader_free(reader);
+  free(text);
+}
+
+static void faulty_wavelengths_are_left_out(void **state) {
+  (void)state;
+  heard h = {0};
+  const ef_notes notes = heard_notes(&h);
+  ef_reader_settings settings = ef_reader_settings_default();
+  settings.notes = &notes;
+  settings.skip_bad = true;
+  ef_reader *const reader =
+      open_with("# quantity: light\nwavelength_nm,lamp\n400,1.5\n410,x\n"
+                "400,9\n420,2.5\n430,-1\n440,3.5\n",
+                &settings);
+  const double wavelengths_nm[] = {400, 420, 440};
+  const double values[] = {1.5, 2.5, 3.5};
+  const ef_grid *const grid = &ef_reader_get_head(reader)->grid;
+  assert_int_equal(grid->count, 3);
+  for (size_t i = 0; i < 3; ++i) {
+    assert_near(ef_grid_wavelength(grid, i), wavelengths_nm[i], 0);
+  }
+  assert_same_bits(next(reader, 5).value, values, 3);
+  assert_int_equal(next(reader, 5).n, 0);
+  assert_int_equal(ef_reader_skipped(reader), 3);
+  assert_int_equal(h.n, 4);
+  ef_reader_free(reader);
+}
+
+static void good_rows_may_come_late(void **state) {
+  (void)state;
+  ef_reader_settings settings = ef_reader_settings_default();
+  settings.skip_bad = true;
+  char text[4096] = "# quantity: reflectance\n400,410\n";
+  for (int i = 0; i < 150; ++i) strcat(text, "0.25,37\n");
+  strcat(text, "0.25,0.625\n");
+  ef_reader *const reader = open_with(text, &settings);
+  const ef_block block = next(reader, 5);
+  assert_int_equal(block.n, 1);
+  assert_int_equal(block.line[0], 153);
+  assert_int_equal(ef_reader_skipped(reader), 150);
+  ef_reader_free(reader);
+}
+
+/* ---- Size -------------------------------------------------------------- */
+
+/* `n` rows of L,a,b with the row's number in each. */
+static char *many_rows(size_t n) {
+  char *const text = malloc(n * 48 + 32);
+  assert_non_null(text);
+  size_t used = (size_t)sprintf(text, "name,L,a,b\n");
+  for (size_t i = 0; i < n; ++i) {
+    used += (size_t)sprintf(text + used, "sample %zu,37.5,%zu.25,-%zu\n", i, i,
+                            i);
+  }
+  return text;
+}
+
+/* Blocks of any size cut the same rows, and once the first is there no memory
+ * is taken any more. */
+static void rows_stream_in_bounded_memory(void **state) {
+  (void)state;
+  enum { N_ROWS = 30000 };
+  char *const text = many_rows(N_ROWS);
+  ef_reader *const reader = open_with(text, NULL);
+  gen g = gen_new(5);
+  size_t n = next(reader, 512).n;
+  n += next(reader, 512).n;
+  n += next(reader, 512).n;
+  fail_alloc_at(1);
+  for (;;) {
+    const ef_block block = next(reader, 1 + gen_below(&g, 512));
+    if (block.n == 0) break;
+    for (size_t i = 0; i < block.n; ++i, ++n) {
+      assert_near(block.value[3 * i + 1], (double)n + 0.25, 0);
+      assert_near(block.value[3 * i + 2], -(double)n, 0);
+      assert_int_equal(block.line[i], n + 2);
+    }
+  }
+  assert_false(fail_alloc_stop()); /* nothing was asked for */
+  assert_int_equal(n, N_ROWS);
+  ef_reader_free(reader);
+  free(text);
+}
+
+static void limits(void **state) {
+  (void)state;
+  char *const text = malloc(EF__LONGEST_RECORD + 64);
+  assert_non_null(text);
+  /* One line of a record too long, in the header and in a row. */
+  memset(text, 'n', EF__LONGEST_RECORD + 32);
+  strcpy(text + EF__LONGEST_RECORD - 5, ",L,a,b\n");
+  refuse(text, "the line is longer than 4194304 bytes");
+  const char header[] = "name,L,a,b\n";
+  memcpy(text, header, sizeof header - 1);
+  memset(text + EF__LONGEST_RECORD - 5, 'n', 8);
+  char *const row = text + sizeof header - 1;
+  strcpy(row + EF__LONGEST_RECORD - 5, ",1,2,3\n");
+  refuse(text, "the line is longer than 4194304 bytes");
+  /* Just as long as allowed. */
+  strcpy(row + EF__LONGEST_RECORD - 6, ",1,2,3\n");
+  ef_reader *const reader = open_with(text, NULL);
+  assert_int_equal(strlen(next(reader, 1).name[0]), EF__LONGEST_RECORD - 6);
+  ef_reader_free(reader);
+  /* A quote that swallows too much, with line ends in it. */
+  memset(text, '\n', EF__LONGEST_RECORD);
+  memcpy(text, header, sizeof header - 1);
+  text[sizeof header - 1] = '"';
+  strcpy(text + EF__LONGEST_RECORD, "\",1,2,3\n");
+  refuse(text, "a quote is opened and not closed within 65536 bytes");
+  /* Columns. */
+  size_t used = (size_t)sprintf(text, "L,a,b");
+  for (size_t i = 3; i < EF__MOST_COLUMNS + 1; ++i) {
+    used += (size_t)sprintf(text + used, ",%zu", i);
+  }
+  strcpy(text + used, "\n1,2,3\n");
+  refuse(text, "the header row has 16385 columns; at most 16384 are read");
+  free(text);
+}
+
+static void long_spectra_have_a_limit(void **state) {
+  (void)state;
+  ef_error error = {0};
+  ef_reader_settings settings = ef_reader_settings_default();
+  const char text[] = "# quantity: light\nwavelength_nm,lamp\n"
+                      "400,1.5\n410,2.5\n420,3.5\n";
+  settings.max_bytes = sizeof text - 1;
+  ef_reader_free(open_with(text, &settings));
+  settings.max_bytes = sizeof text - 9;
+  assert_null(ef_reader_from_text("t.csv", text, sizeof text - 1, &settings,
+                                  &error));
+  assert_error(&error, EF_MALFORMED, "the file goes on after 53 bytes");
+  assert_int_equal(error.line, 5);
+}
+
+/* ---- Sources ----------------------------------------------------------- */
+
+static void places_that_are_no_table(void **state) {
+  (void)state;
+  ef_error error = {0};
+  assert_null(ef_reader_open("/", NULL, &error));
+  assert_error(&error, EF_UNREADABLE, "is a directory; name a file in it");
+  assert_string_equal(error.file, "/");
+  assert_null(ef_reader_open("/no/such.csv", NULL, &error));
+  assert_error(&error, EF_UNREADABLE, "there is no such file; check the path");
+  assert_null(ef_reader_open("demo:livry", NULL, &error));
+  assert_error(&error, EF_UNKNOWN_NAME, "near names: livery");
+  assert_null(ef_reader_open("/no/such.csv", NULL, NULL));
+}
+
+/* Standard input is a pipe that `text` goes into byte by byte. */
+static void through_standard_input(const char *text, size_t length) {
+  int ends[2];
+  assert_int_equal(pipe(ends), 0);
+  const pid_t writer = fork();
+  assert_true(writer >= 0);
+  if (writer == 0) {
+    close(ends[0]);
+    for (size_t i = 0; i < length; ++i) {
+      if (write(ends[1], text + i, 1) != 1) _exit(1);
+    }
+    _exit(0);
+  }
+  close(ends[1]);
+  const int saved = dup(STDIN_FILENO);
+  assert_true(dup2(ends[0], STDIN_FILENO) >= 0);
+  close(ends[0]);
+  ef_error error = {0};
+  ef_reader *const reader = ef_reader_open("-", NULL, &error);
+  if (reader == NULL) fail_msg("%s", error.message);
+  assert_string_equal(ef_reader_get_head(reader)->file, "standard input");
+  const ef_block block = next(reader, 5);
+  assert_int_equal(block.n, 1);
+  assert_string_equal(block.name[0], "deck");
+  assert_near(block.value[2], 17.75, 0);
+  assert_int_equal(next(reader, 5).n, 0);
+  ef_reader_free(reader);
+  assert_true(dup2(saved, STDIN_FILENO) >= 0);
+  close(saved);
+  int status = -1;
+  assert_int_equal(waitpid(writer, &status, 0), writer);
+  assert_int_equal(status, 0);
+}
+
+static void standard_input(void **state) {
+  (void)state;
+  const char text[] = "\xEF\xBB\xBFname,L,a,b\ndeck,52.5,-3.25,17.75";
+  through_standard_input(text, sizeof text - 1);
+}
+
+static void demo_files_open(void **state) {
+  (void)state;
+  assert_int_equal(ef_demo_count(), 11);
+  for (size_t i = 0; i < ef_demo_count(); ++i) {
+    size_t length;
+    const char *const text = ef_demo_text(i, &length);
+    assert_int_equal(strlen(text), length);
+    assert_null(strchr(ef_demo_name(i), '.'));
+    char path[64];
+    snprintf(path, sizeof path, "demo:%s", ef_demo_name(i));
+    ef_error error = {0};
+    ef_reader *const reader = ef_reader_open(path, NULL, &error);
+    /* Answers of a panel are no colours; all other files are read. */
+    if (strcmp(ef_demo_name(i), "panel-responses") == 0) {
+      assert_null(reader);
+      assert_error(&error, EF_MALFORMED, "no known set of columns");
+      continue;
+    }
+    assert_non_null(reader);
+    assert_string_equal(ef_reader_get_head(reader)->file, path);
+    assert_true(next(reader, 500).n > 0);
+    ef_reader_free(reader);
+  }
+  assert_null(ef_demo_name(ef_demo_count()));
+  assert_null(ef_demo_text(ef_demo_count(), NULL));
+}
+
+static void all_spectra_of_a_file(void **state) {
+  (void)state;
+  ef_error error = {0};
+  ef_spectra *spectra = ef_spectra_read("demo:kiosk-primaries", NULL, &error);
+  assert_non_null(spectra);
+  assert_int_equal(ef_spectra_count(spectra), 5);
+  assert_int_equal(ef_spectra_kind(spectra), EF_LIGHT);
+  assert_true(ef_spectra_absolute(spectra));
+  assert_string_equal(ef_spectra_name(spectra, 2), "blue");
+  assert_int_equal(ef_spectra_grid(spectra)->count, 201);
+  ef_spectra_free(spectra);
+  /* Wide, repeated names, from a file name with its ending. */
+  spectra = ef_spectra_read("demo:seats-deliveries.csv", NULL, &error);
+  assert_non_null(spectra);
+  assert_int_equal(ef_spectra_count(spectra), 24);
+  assert_int_equal(ef_spectra_kind(spectra), EF_SURFACE);
+  assert_false(ef_spectra_absolute(spectra));
+  ef_spectra_free(spectra);
+  assert_null(ef_spectra_read("demo:signal-colours", NULL, &error));
+  assert_error(&error, EF_MALFORMED, "holds x,y,Y, expected spectra");
+  ef_reader_settings settings = ef_reader_settings_default();
+  settings.max_bytes = 31 * 8 * 23;
+  assert_null(ef_spectra_read("demo:seats-deliveries", &settings, &error));
+  assert_error(&error, EF_MALFORMED, "the spectra fill more than 5704 bytes");
+}
+
+/* ---- Arguments and memory ---------------------------------------------- */
+
+static void bad_arguments(void **state) {
+  (void)state;
+  ef_error error = {0};
+  ef_reader_settings settings = ef_reader_settings_default();
+  settings.device_max = -1;
+  assert_null(ef_reader_open("demo:livery", &settings, &error));
+  assert_error(&error, EF_INVALID, "device value of full drive");
+  settings.device_max = NOT_A_NUMBER;
+  assert_null(ef_reader_from_text("t", "", 0, &settings, &error));
+  assert_error(&error, EF_INVALID, "device value of full drive");
+  ef_reader *const reader = ef_reader_open("demo:livery", NULL, &error);
+  ef_block block;
+  assert_int_equal(ef_reader_next(reader, 0, &block, &error), EF_INVALID);
+  ef_reader_free(reader);
+  ef_reader_free(NULL);
+}
+
+static void an_error_ends_the_rows(void **state) {
+  (void)state;
+  char *const text = many_rows(400);
+  *strstr(text, "sample 300,37") = '\t';
+  strstr(text, "300,37.5")[4] = 'x';
+  ef_reader *const reader = open_with(text, NULL);
+  ef_block block;
+  ef_error error = {0};
+  assert_int_equal(next(reader, 150).n, 100);
+  assert_int_equal(next(reader, 150).n, 150);
+  assert_int_equal(ef_reader_next(reader, 150, &block, &error), EF_MALFORMED);
+  assert_error(&error, EF_MALFORMED, "found 'x7.5', expected a number");
+  assert_int_equal(error.line, 302);
+  assert_int_equal(error.column, 2);
+  assert_string_equal(error.field, "L");
+  assert_int_equal(block.n, 0);
+  assert_int_equal(next(reader, 150).n, 0);
+  ef_reader_free(reader);
+  free(text);
+}
+
+static bool read_in_short_memory(void *context) {
+  const char *const text = context;
+  ef_error error = {0};
+  ef_reader *const reader =
+      ef_reader_from_text("t.csv", text, strlen(text), NULL, &error);
+  if (reader == NULL) {
+    assert_int_equal(error.status, EF_NO_MEMORY);
+    return false;
+  }
+  ef_block block;
+  ef_status status;
+  do {
+    status = ef_reader_next(reader, 300, &block, &error);
+  } while (status == EF_OK && block.n > 0);
+  ef_reader_free(reader);
+  return status == EF_OK;
+}
+
+static bool collect_in_short_memory(void *context) {
+  ef_error error = {0};
+  ef_spectra *const spectra = ef_spectra_read(context, NULL, &error);
+  if (spectra == NULL) assert_int_equal(error.status, EF_NO_MEMORY);
+  ef_spectra_free(spectra);
+  return spectra != NULL;
+}
+
+static void memory_may_run_out(void **state) {
+  (void)state;
+  char *const rows = many_rows(1000);
+  char quotes[] = "# title: t\n# quantity: light\n\"name\",400,410\n"
+                  "\"a\nb\",1,2\n";
+  char columns[] = "# quantity: light\nwavelength_nm,a,b\n400,1,2\n410,3,4\n";
+  assert_true(fail_alloc_each(read_in_short_memory, rows) > 10);
+  assert_true(fail_alloc_each(read_in_short_memory, quotes) > 10);
+  assert_true(fail_alloc_each(read_in_short_memory, columns) > 10);
+  char wide[] = "demo:seats-deliveries";
+  char turned[] = "demo:livery";
+  assert_true(fail_alloc_each(collect_in_short_memory, wide) > 10);
+  assert_true(fail_alloc_each(collect_in_short_memory, turned) > 10);
+  free(rows);
+}
+
+int main(void) {
+  const struct CMUnitTest tests[] = {
+      cmocka_unit_test(wide_spectra),
+      cmocka_unit_test(long_spectra),
+      cmocka_unit_test(a_single_wavelength_is_a_spectrum),
+      cmocka_unit_test(colour_sets),
+      cmocka_unit_test(content_has_a_text),
+      cmocka_unit_test(device_values_run_from_0_to_1),
+      cmocka_unit_test(device_values_alone),
+      cmocka_unit_test(unused_columns_are_noted),
+      cmocka_unit_test(spectra_come_before_colours),
+      cmocka_unit_test(dialects_mean_the_same),
+      cmocka_unit_test(decimal_commas_are_noted),
+      cmocka_unit_test(quoted_fields_hold_anything),
+      cmocka_unit_test(quantities_say_the_kind),
+      cmocka_unit_test(units_in_their_spellings),
+      cmocka_unit_test(absolute_colours),
+      cmocka_unit_test(kind_rule),
+      cmocka_unit_test(faulty_rows_are_left_out),
+      cmocka_unit_test(faulty_wavelengths_are_left_out),
+      cmocka_unit_test(good_rows_may_come_late),
+      cmocka_unit_test(rows_stream_in_bounded_memory),
+      cmocka_unit_test(limits),
+      cmocka_unit_test(long_spectra_have_a_limit),
+      cmocka_unit_test(places_that_are_no_table),
+      cmocka_unit_test(standard_input),
+      cmocka_unit_test(demo_files_open),
+      cmocka_unit_test(all_spectra_of_a_file),
+      cmocka_unit_test(bad_arguments),
+      cmocka_unit_test(an_error_ends_the_rows),
+      cmocka_unit_test(memory_may_run_out),
+  };
+  cmocka_set_message_output(CM_OUTPUT_TAP);
+  return cmocka_run_group_tests(tests, NULL, NULL);
+}
