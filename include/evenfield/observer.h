@@ -330,6 +330,95 @@ EF_API ef_weights *ef_alpha_opic_weights(const ef_grid *samples,
 /** From one spectrum's EF_ALPHA_OPIC_CHANNELS sums. */
 EF_API ef_alpha_opic ef_alpha_opic_from(const double *channel);
 
+/* ---- Populations of individual observers ------------------------------- */
+
+/** Many observers, drawn from a seed; immutable once made. */
+typedef struct ef_population ef_population;
+
+enum { EF_POPULATION_MOST = 1000000 };
+
+typedef struct ef_population_settings {
+  size_t count;  /**< 1 to EF_POPULATION_MOST */
+  uint64_t seed;
+  /** Ages are drawn uniformly between these two, 20 to 80 years; equal ones
+   * give everybody that age. Not used with an age table. */
+  double age_min_years, age_max_years;
+  /** Rows of an age table, 0 for none: ages of 20 to 80 years and the share of
+   * the population of each, not negative, with a sum of 1 to 0.001. Each
+   * person has one of these ages exactly. Borrowed during the call. */
+  size_t n_ages;
+  const double *age_years;
+  const double *share;
+  /** What individuals depart from: its field and deficiency are everybody's,
+   * its percentages and shifts are added to everybody's; its age is not
+   * used. */
+  ef_cone_model mean;
+  /** Factor of the published standard deviations, 0 to 3. */
+  double deviation_scale;
+} ef_population_settings;
+
+/** 1000 observers, seed 1, 20 to 70 years, ef_cone_model_default(), the
+ * published deviations. */
+EF_API ef_population_settings ef_population_settings_default(void);
+
+/** The published standard deviations in the fields of a model: lens 18.7,
+ * macular pigment 36.5, densities 9.0, 9.0, 7.4 percent, shifts 2.0, 1.5, 1.3
+ * nm; age, field and deficiency are 0. Asano, Fairchild & Blonde, PLoS ONE 11
+ * (2016) e0145671 (the eight figures from memory and one second source). */
+EF_API ef_cone_model ef_population_deviations(void);
+
+/** EF_INVALID names the setting at fault. Free with ef_population_free. */
+EF_API ef_population *ef_population_new(const ef_population_settings *settings,
+                                        ef_error *error);
+EF_API void ef_population_free(ef_population *population);
+EF_API size_t ef_population_count(const ef_population *population);
+/** Field that all of them look at, degrees. */
+EF_API double ef_population_field_deg(const ef_population *population);
+
+/** Observer `i`, below the count. Depends on the seed and on `i` alone: not on
+ * the count, the order of asking or threads. Deviations are independent and
+ * normal; one that would take a density below nothing (of the macular pigment
+ * for 3 in 1000 people) stops there. */
+EF_API ef_cone_model ef_population_member(const ef_population *population,
+                                          size_t i);
+
+/** Weights of the observers first .. first + count - 1 in one matrix of 3 x
+ * count channels: x_bar, y_bar, z_bar of the first, of the second ... (see
+ * ef_cone_model_tristimulus), so that one ef_weights_apply gives what all of
+ * them see. Scaled for each person: surfaces have Y = 100 for the perfect
+ * reflecting diffuser in that person's eyes; lights K_m of the field times the
+ * step when absolute, else the step. Functions are evaluated on the viewing's
+ * summation grid with up to `jobs` threads (0: all cores; no effect on the
+ * result). Memory: count x 3 x (samples + working grid) doubles; take a large
+ * population in parts. Notes and ownership as for ef_observer_weights. */
+EF_API ef_weights *ef_population_weights(const ef_population *population,
+                                         size_t first, size_t count,
+                                         const ef_grid *samples,
+                                         const ef_viewing *viewing, int jobs,
+                                         const ef_notes *notes,
+                                         ef_error *error);
+
+/** Observers that stand for a population: k medoids (1 to 100, at most the
+ * count, of a population of at most 100 000) of the fundamentals, stacked as
+ * one vector of 3 x 40 values, energy units, unit peak, 390 to 780 nm at 10
+ * nm, under the squared Euclidean distance. Voronoi iteration from k-means++
+ * seeding (Arthur & Vassilvitskii 2007), the best of five starts; the medoid of
+ * a group under this distance is the member nearest to its mean. The same
+ * result for a population and seed whatever `jobs`. `index` (k) receives the
+ * members, the largest group first; `share` (k, may be NULL) the share of the
+ * population in each group. Representing observers by medoids of cone
+ * fundamentals is the way of Asano, Fairchild & Blonde (2016). */
+EF_API ef_status ef_population_medoids(const ef_population *population,
+                                       size_t k, uint64_t seed, int jobs,
+                                       size_t *index, double *share,
+                                       ef_error *error);
+
+/** A population of the members `index[0 .. n)` alone, in this order; n from 1
+ * to EF_POPULATION_MOST. */
+EF_API ef_population *ef_population_choose(const ef_population *population,
+                                           size_t n, const size_t *index,
+                                           ef_error *error);
+
 #ifdef __cplusplus
 }
 #endif

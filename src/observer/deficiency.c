@@ -1,6 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /* Missing and shifted pigments, and a picture of what they leave. Which pigment
  * stands in for which is in cones.c. */
+#include <assert.h>
 #include <math.h>
 #include <string.h>
 
@@ -18,12 +19,13 @@ static double sum(size_t n, const double *value) {
 }
 
 double ef__dichromat_scale(const ef__cones *cones, const ef_cone_model *model,
-                           const ef__field *field, double *scratch) {
-  const size_t n = cones->n;
-  double *const own = scratch, *const normal = scratch + 3 * n;
+                           const ef__field *field) {
+  enum { n = EF__TEMPLATE_SAMPLES };
+  double own[3 * n], normal[3 * n];
+  if (model->deficiency == EF_TRICHROMAT) return 1;
+  assert(cones->n == n);
   ef_cone_model complete = *model;
   complete.deficiency = EF_TRICHROMAT;
-  if (model->deficiency == EF_TRICHROMAT) return 1;
   ef__cones_fundamentals(cones, model, EF_ENERGY, own);
   ef__cones_fundamentals(cones, &complete, EF_ENERGY, normal);
   if (model->deficiency == EF_PROTANOPE) return sum(n, normal) / sum(n, own);

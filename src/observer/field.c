@@ -12,8 +12,10 @@ enum { Y_ROW = 3 }; /* where the row of y starts in a matrix */
 
 ef_grid ef__template_grid(void) {
   const double first = EF__TEMPLATE_FIRST_NM, last = EF__TEMPLATE_LAST_NM;
-  return (ef_grid){
-      .count = (size_t)(last - first) + 1, .start_nm = first, .step_nm = 1};
+  const size_t count = EF__TEMPLATE_SAMPLES;
+  return (ef_grid){.count = count,
+                   .start_nm = first,
+                   .step_nm = (last - first) / (double)(count - 1)};
 }
 
 /* Sums of x_F, y_F, z_F of the mean observer of a field. */
@@ -126,40 +128,18 @@ void ef__field_tristimulus(const ef__field *field, size_t n,
   }
 }
 
-/* Fundamentals on `cones`, then colour-matching functions. */
-static ef_status tristimulus_on(const ef__cones *cones,
-                                const ef_cone_model *model,
-                                const ef__field *field, double scale,
-                                double *out, ef_error *error) {
-  double *const fundamental = ef__allocate(3 * cones->n, sizeof *fundamental);
-  if (fundamental == NULL) {
-    return ef__error_memory(error, "colour-matching functions");
-  }
-  ef__cones_fundamentals(cones, model, EF_ENERGY, fundamental);
-  ef__field_tristimulus(field, cones->n, model->deficiency, scale, fundamental,
-                        out);
-  free(fundamental);
-  return EF_OK;
-}
-
-/* ef__dichromat_scale with everything it needs. */
+/* ef__dichromat_scale with the cones it needs. */
 static ef_status find_scale(const ef_cone_model *model, const ef__field *field,
                             double *scale, ef_error *error) {
   const ef_grid grid = ef__template_grid();
   ef__cones *cones = NULL;
   *scale = 1;
   if (model->deficiency == EF_TRICHROMAT) return EF_OK;
-  ef_status status = ef__cones_new(&grid, &cones, error);
+  const ef_status status = ef__cones_new(&grid, &cones, error);
   if (status != EF_OK) return status;
-  double *const scratch = ef__allocate(6 * grid.count, sizeof *scratch);
-  if (scratch == NULL) {
-    status = ef__error_memory(error, "dichromat");
-  } else {
-    *scale = ef__dichromat_scale(cones, model, field, scratch);
-  }
-  free(scratch);
+  *scale = ef__dichromat_scale(cones, model, field);
   free(cones);
-  return status;
+  return EF_OK;
 }
 
 ef_status ef_cone_model_tristimulus(const ef_cone_model *model,
@@ -167,15 +147,16 @@ ef_status ef_cone_model_tristimulus(const ef_cone_model *model,
                                     ef_error *error) {
   ef__field field;
   double scale;
-  ef__cones *cones = NULL;
   ef_status status = ef_cone_model_check(model, error);
   if (status == EF_OK) {
     status = ef__field_find(model->field_deg, &field, error);
   }
   if (status == EF_OK) status = find_scale(model, &field, &scale, error);
-  if (status == EF_OK) status = ef__cones_new(grid, &cones, error);
+  if (status == EF_OK) {
+    status = ef_cone_model_fundamentals(model, EF_ENERGY, grid, out, error);
+  }
   if (status != EF_OK) return status;
-  status = tristimulus_on(cones, model, &field, scale, out, error);
-  free(cones);
-  return status;
+  ef__field_tristimulus(&field, grid->count, model->deficiency, scale, out,
+                        out);
+  return EF_OK;
 }

@@ -63,13 +63,13 @@ static ef_mb_scale find_mb_scale(const ef__field *field, size_t n,
   return scale;
 }
 
-/* `work` has room for 9 x grid->count. */
+/* `work` has room for 6 x grid->count. */
 static void fill(const ef__cones *cones, const ef_grid *grid,
                  const ef_cone_model *model, const ef__field *field,
                  double *work, ef_observer *observer) {
   const size_t n = grid->count;
   double *const cone = work, *const xyz_bar = work + 3 * n;
-  double scale = ef__dichromat_scale(cones, model, field, work + 3 * n);
+  const double scale = ef__dichromat_scale(cones, model, field);
   ef__cones_fundamentals(cones, model, EF_ENERGY, cone);
   ef__field_tristimulus(field, n, model->deficiency, scale, cone, xyz_bar);
   place(grid, 3, cone, observer->set[EF_CONES].value);
@@ -90,7 +90,7 @@ ef_observer *ef__observer_from_model(const char *name,
   ef_observer *observer = NULL;
   if (ef__field_find(model->field_deg, &field, error) != EF_OK) return NULL;
   if (ef__cones_new(&grid, &cones, error) != EF_OK) return NULL;
-  double *const work = ef__allocate(9 * grid.count, sizeof *work);
+  double *const work = ef__allocate(6 * grid.count, sizeof *work);
   describe(model, sizeof about, about);
   if (work == NULL) {
     ef__error_memory(error, "observer");

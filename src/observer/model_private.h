@@ -83,21 +83,22 @@ typedef struct ef__field {
 ef_status ef__field_find(double field_deg, ef__field *field, ef_error *error);
 
 /** Colour-matching functions, 3 x n, of the fundamentals (3 x n, energy units)
- * of a model with this deficiency; `out` may not be `fundamental`. `scale` is
- * that of ef__dichromat_scale. */
+ * of a model with this deficiency; `out` may be `fundamental`. `scale` is that
+ * of ef__dichromat_scale. */
 void ef__field_tristimulus(const ef__field *field, size_t n,
                            ef_deficiency deficiency, double scale,
                            const double *fundamental, double *out);
 
-/** The factor that gives the cones of a dichromat that hold another pigment
- * (tritanope: the y_bar that stands for S) the same sum over the equal-energy
- * spectrum as the normal cones of the same person. `cones` is on a grid of 1
- * nm; `scratch` has room for 6 x cones->n. 1 for trichromats. */
-double ef__dichromat_scale(const ef__cones *cones, const ef_cone_model *model,
-                           const ef__field *field, double *scratch);
-
 /** The grid that sums run over: 390 to 830 nm at 1 nm. */
 ef_grid ef__template_grid(void);
+enum { EF__TEMPLATE_SAMPLES = 441 };
+
+/** The factor that gives the cones of a dichromat that hold another pigment
+ * (tritanope: the y_bar that stands for S) the same sum over the equal-energy
+ * spectrum as the normal cones of the same person. `cones` is on
+ * ef__template_grid. 1 for trichromats. */
+double ef__dichromat_scale(const ef__cones *cones, const ef_cone_model *model,
+                           const ef__field *field);
 
 /* ---- Names (model_name.c) ---------------------------------------------- */
 

@@ -58,7 +58,24 @@ ef_observer *ef__observer_from_model(const char *name,
                                      const ef_cone_model *model,
                                      ef_error *error);
 
-/** Number and names of the tabulated observers (cmf.c). */
+/* ---- Viewing (viewing.c) ----------------------------------------------- */
+
+/** An illuminant for surfaces and none for lights. */
+ef_status ef__viewing_check(const ef_viewing *viewing, ef_error *error);
+/** Even steps. */
+ef_status ef__working_check(const ef_grid *grid, ef_error *error);
+/** Refuses an illuminant that makes no finite scale for surfaces. */
+ef_status ef__light_check(const ef_illuminant *illuminant, double scale,
+                          ef_error *error);
+/** When more than 0.1 % of the weight of a channel lies outside the samples.
+ * Names repeat after `n_names` channels. */
+void ef__note_outside(const ef_weights *weights, size_t n_names,
+                      const char *const *names, const ef_viewing *viewing,
+                      const ef_notes *notes);
+
+/* ---- Tables (cmf.c) ---------------------------------------------------- */
+
+/** Number and names of the tabulated observers. */
 size_t ef__tabulated_names(const char *const **names);
 /** The i-th of them. */
 ef_observer *ef__tabulated_new(size_t i, ef_error *error);

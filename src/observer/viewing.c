@@ -44,7 +44,7 @@ static ef_status resample_set(const ef_channels *from, size_t first,
                      EF_INTERPOLATE_AUTO, EF_EXTEND_ZERO, out, error);
 }
 
-static ef_status check_working(const ef_grid *grid, ef_error *error) {
+ef_status ef__working_check(const ef_grid *grid, ef_error *error) {
   const ef_status status = ef_grid_check(grid, error);
   if (status != EF_OK || grid->wavelength_nm == NULL) return status;
   return ef__error_set(error, EF_INVALID,
@@ -71,7 +71,7 @@ static ef_status prepare(const ef_observer *observer, ef_channel_role role,
   const ef_channels channels = ef_observer_channels(observer, role);
   const ef_channels own = ef_observer_channels(observer, EF_TRISTIMULUS);
   *w = (working){.grid = *grid, .n_channels = channels.count};
-  ef_status status = check_working(grid, error);
+  ef_status status = ef__working_check(grid, error);
   if (status == EF_OK) status = allocate(w, error);
   if (status == EF_OK) {
     status = resample_set(&channels, 0, channels.count, grid, w->channel,
@@ -85,8 +85,8 @@ static ef_status prepare(const ef_observer *observer, ef_channel_role role,
   return status;
 }
 
-static ef_status check_light(const ef_illuminant *illuminant, double scale,
-                             ef_error *error) {
+ef_status ef__light_check(const ef_illuminant *illuminant, double scale,
+                          ef_error *error) {
   if (isfinite(scale) && scale > 0) return EF_OK;
   return ef__error_set(error, EF_INVALID,
                        "illuminant '%s' is dark for this observer, so nothing "
@@ -99,14 +99,14 @@ static ef_status find_scale(const ef_observer *observer,
                             double *scale, ef_error *error) {
   if (viewing->kind == EF_SURFACE) {
     *scale = unit_hundred(w);
-    return check_light(viewing->illuminant, *scale, error);
+    return ef__light_check(viewing->illuminant, *scale, error);
   }
   *scale = viewing->absolute ? observer->k_m * w->grid.step_nm
                              : w->grid.step_nm;
   return EF_OK;
 }
 
-static ef_status check_viewing(const ef_viewing *viewing, ef_error *error) {
+ef_status ef__viewing_check(const ef_viewing *viewing, ef_error *error) {
   const bool has_light = viewing->illuminant != NULL;
   if (viewing->kind == EF_SURFACE && !has_light) {
     return ef__error_set(error, EF_INVALID,
@@ -122,10 +122,11 @@ static ef_status check_viewing(const ef_viewing *viewing, ef_error *error) {
   return EF_OK;
 }
 
-static void note_outside(const ef_weights *weights, const ef_channels *channels,
-                         const ef_viewing *viewing, const ef_notes *notes) {
+void ef__note_outside(const ef_weights *weights, size_t n_names,
+                      const char *const *names, const ef_viewing *viewing,
+                      const ef_notes *notes) {
   size_t worst = 0;
-  for (size_t c = 1; c < channels->count; ++c) {
+  for (size_t c = 1; c < ef_weights_channels(weights); ++c) {
     if (ef_weights_outside(weights, c) > ef_weights_outside(weights, worst)) {
       worst = c;
     }
@@ -139,7 +140,7 @@ static void note_outside(const ef_weights *weights, const ef_channels *channels,
   ef__note(notes,
            "%.2f %% of the weight of %s lies outside the measured %g to %g nm, "
            "where %s",
-           100 * share, channels->name[worst], ef_grid_wavelength(grid, 0),
+           100 * share, names[worst % n_names], ef_grid_wavelength(grid, 0),
            ef_grid_wavelength(grid, grid->count - 1),
            held ? "the end values were held" : "zero was taken");
 }
@@ -148,7 +149,7 @@ ef_weights *ef_observer_weights(const ef_observer *observer,
                                 ef_channel_role role, const ef_grid *samples,
                                 const ef_viewing *viewing,
                                 const ef_notes *notes, ef_error *error) {
-  if (check_viewing(viewing, error) != EF_OK) return NULL;
+  if (ef__viewing_check(viewing, error) != EF_OK) return NULL;
   const ef_channels channels = ef_observer_channels(observer, role);
   ef_weights *weights = NULL;
   working w;
@@ -174,7 +175,9 @@ ef_weights *ef_observer_weights(const ef_observer *observer,
   weights = ef_weights_fold(samples, w.n_channels, w.channel,
                             viewing->illuminant != NULL ? w.power : NULL,
                             scale, &settings, error);
-  if (weights != NULL) note_outside(weights, &channels, viewing, notes);
+  if (weights != NULL) {
+    ef__note_outside(weights, channels.count, channels.name, viewing, notes);
+  }
 done:
   free(scale);
   free(w.block);
@@ -191,7 +194,7 @@ ef_status ef_observer_white(const ef_observer *observer, ef_channel_role role,
   ef_status status = prepare(observer, role, illuminant, grid, &w, error);
   if (status != EF_OK) return status;
   const double scale = unit_hundred(&w);
-  status = check_light(illuminant, scale, error);
+  status = ef__light_check(illuminant, scale, error);
   for (size_t c = 0; c < w.n_channels && status == EF_OK; ++c) {
     double sum = 0;
     for (size_t i = 0; i < w.grid.count; ++i) {
