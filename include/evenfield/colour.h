@@ -87,6 +87,100 @@ EF_API ef_xyz ef_xyz_transform(const double matrix[9], ef_xyz xyz);
 EF_API ef_mb ef_lms_to_mb(ef_lms lms, ef_mb_scale scale);
 EF_API ef_lms ef_mb_to_lms(ef_mb mb, ef_mb_scale scale);
 
+/* ---- Colour appearance (CIE 159:2004, CIE 248:2022) -------------------- */
+
+typedef enum ef_cam_version {
+  EF_CAM_02, /**< CIECAM02, CIE 159:2004 */
+  EF_CAM_16  /**< CIECAM16 (CAM16), CIE 248:2022; Li et al. 2017 */
+} ef_cam_version;
+
+/** Luminance of what surrounds the scene against the scene's white: more than
+ * a fifth of it, less, next to none. */
+typedef enum ef_surround {
+  EF_SURROUND_AVERAGE,
+  EF_SURROUND_DIM,
+  EF_SURROUND_DARK
+} ef_surround;
+
+/** "average", "dim", "dark". Static. */
+EF_API const char *ef_surround_name(ef_surround surround);
+EF_API ef_status ef_surround_find(const char *name, ef_surround *out,
+                                  ef_error *error);
+
+/** Where a colour is seen. */
+typedef struct ef_cam_viewing {
+  ef_xyz white;     /**< adopted white, on the scale of the colours: Y = 100
+                         for the perfect diffuser or a display's white */
+  double adapting_luminance_cd_m2; /**< L_A, of the adapting field */
+  double background_Y;             /**< Y_b of the background, same scale */
+  ef_surround surround;
+  bool discount_illuminant; /**< full adaptation, D = 1 */
+} ef_cam_viewing;
+
+/** Average surround, Y_b = white.Y / 5, and the adapting luminance of that
+ * background under 1000 lx, 200 / pi cd/m2 (the illuminance of the reference
+ * conditions of CIE 101-1993). */
+EF_API ef_cam_viewing ef_cam_viewing_default(ef_xyz white);
+
+/** A model in one viewing: what does not depend on the colour. A plain value,
+ * filled by ef_cam_model_set, not by hand. Symbols as in CIE 159. */
+typedef struct ef_cam_model {
+  double response[9]; /**< XYZ to adapted responses before compression */
+  double stimulus[9]; /**< back */
+  double F_L, N_c, N_bb, c, z, A_w, D;
+  double chroma_factor; /**< (1.64 - 0.29^n)^0.73 */
+} ef_cam_model;
+
+/** Correlates: lightness J, brightness Q, chroma C, colourfulness M,
+ * saturation s, hue angle, hue quadrature H in [0, 400). A colour without hue
+ * has h_deg = 0. Where the achromatic response is negative (lights far outside
+ * the surface colours) J and Q are negative too and s is NaN; outside the cone
+ * in which the model defines a chroma, all but J and Q are NaN. */
+typedef struct ef_cam {
+  double J, Q, C, M, s, h_deg, H;
+} ef_cam;
+
+/** EF_INVALID for a white, luminance or background that is not positive. */
+EF_API ef_status ef_cam_model_set(ef_cam_version version,
+                                  const ef_cam_viewing *viewing,
+                                  ef_cam_model *out, ef_error *error);
+EF_API ef_cam ef_xyz_to_cam(ef_xyz xyz, const ef_cam_model *model);
+/** Back, from J, C and h_deg; the other fields are not looked at. NaN for
+ * correlates that no stimulus has. */
+EF_API ef_xyz ef_cam_to_xyz(ef_cam cam, const ef_cam_model *model);
+/** All correlates from lightness, chroma and hue angle, or from brightness,
+ * colourfulness and hue angle. */
+EF_API ef_cam ef_cam_from_jch(double J, double C, double h_deg,
+                              const ef_cam_model *model);
+EF_API ef_cam ef_cam_from_qmh(double Q, double M, double h_deg,
+                              const ef_cam_model *model);
+/** Hue angle that has this quadrature, any H modulo 400. */
+EF_API double ef_cam_hue_deg(double H);
+
+/** Uniform colour space on an appearance model (Luo, Cui & Li 2006):
+ * J' = (1 + 100 c1) J / (1 + c1 |J|), M' = ln(1 + c2 M) / c2. */
+typedef struct ef_ucs {
+  double J_prime, a_prime, b_prime;
+} ef_ucs;
+typedef struct ef_ucs_shape {
+  double c1, c2;
+} ef_ucs_shape;
+
+/** CAM02-UCS, and with CAM16 CAM16-UCS: c1 0.007, c2 0.0228. */
+EF_API ef_ucs_shape ef_ucs_shape_default(void);
+EF_API ef_ucs ef_cam_to_ucs(ef_cam cam, ef_ucs_shape shape);
+EF_API ef_cam ef_ucs_to_cam(ef_ucs ucs, ef_ucs_shape shape,
+                            const ef_cam_model *model);
+/** d(J', a', b') / d(X, Y, Z), row-major, in closed form. M grows as the 0.9th
+ * power of the distance from the neutral axis, so that its slope has no limit
+ * there: below the colourfulness `secant_M` the slope of a', b' is that of the
+ * chord from the axis to `secant_M`, averaged over the hues (0: from 1e-6 on
+ * the true slope). Slopes at zero responses are those of 1e-9 of the white's.
+ */
+EF_API void ef_ucs_jacobian(ef_xyz xyz, const ef_cam_model *model,
+                            ef_ucs_shape shape, double secant_M,
+                            double jacobian[9]);
+
 /* ---- Correlated colour temperature ------------------------------------- */
 
 typedef struct ef_cct {
