@@ -443,6 +443,18 @@ static void kind_rule(void **state) {
              "m^-2 nm^-1\n");
 }
 
+/* Nothing is assumed about colours: of lights where somebody says so. */
+static void kind_of_colours(void **state) {
+  (void)state;
+  const char *const said = "# quantity: x, y and Y of light\n"
+                           "# unit: percent\nx,y,Y\n0.25,0.5,20.5\n";
+  const char *const unsaid = "X,Y,Z\n20.5,21.5,8.5\n";
+  check_kind(said, EF_KIND_AUTO, EF_LIGHT, "");
+  check_kind(said, EF_KIND_SURFACE, EF_SURFACE, "");
+  check_kind(unsaid, EF_KIND_AUTO, EF_SURFACE, "");
+  check_kind(unsaid, EF_KIND_LIGHT, EF_LIGHT, "");
+}
+
 /* ---- Skipping ---------------------------------------------------------- */
 
 /* 300 rows of which every 20th is at fault: above 2, or text, in turn. */
@@ -833,6 +845,7 @@ int main(void) {
       cmocka_unit_test(units_in_their_spellings),
       cmocka_unit_test(absolute_colours),
       cmocka_unit_test(kind_rule),
+      cmocka_unit_test(kind_of_colours),
       cmocka_unit_test(faulty_rows_are_left_out),
       cmocka_unit_test(faulty_wavelengths_are_left_out),
       cmocka_unit_test(good_rows_may_come_late),

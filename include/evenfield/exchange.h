@@ -98,7 +98,8 @@ typedef struct ef_reader_head {
   size_t width;            /**< values per row: samples, or 3; 0 where there
                                 are device values only */
   ef_grid grid;            /**< of spectra; count 0 else */
-  ef_kind kind;            /**< of spectra */
+  ef_kind kind;            /**< of spectra; of X,Y,Z and x,y,Y a light where
+                                the settings or the quantity line say so */
   bool absolute;           /**< unit line says W sr-1 m-2 nm-1, or X,Y,Z in
                                 cd/m2 (x,y,Y too) */
   bool has_names;          /**< rows have names of their own */

@@ -56,9 +56,25 @@ static void decide_kind(ef_reader *reader) {
            said < 0 ? "light" : "surface");
 }
 
+/* Colours are of lights only where somebody says so: nothing in their numbers
+ * tells. */
+static void decide_colour_kind(ef_reader *reader) {
+  const ef_kind_choice asked = reader->settings.kind;
+  const bool says_light =
+      ef__quantity_kind(reader->table.remarks.quantity) < 0;
+  reader->limits.kind =
+      asked == EF_KIND_LIGHT || (asked == EF_KIND_AUTO && says_light)
+          ? EF_LIGHT
+          : EF_SURFACE;
+}
+
 ef_status ef__decide_from_remarks(ef_reader *reader, ef_error *error) {
   const double asked = reader->settings.device_max;
-  if (reader->layout.content == EF_CONTENT_SPECTRA) decide_kind(reader);
+  const ef_content content = reader->layout.content;
+  if (content == EF_CONTENT_SPECTRA) decide_kind(reader);
+  if (content == EF_CONTENT_XYZ || content == EF_CONTENT_XYY) {
+    decide_colour_kind(reader);
+  }
   reader->limits.device_max = 1;
   if (reader->layout.n_device == 0) return EF_OK;
   if (asked > 0) {
