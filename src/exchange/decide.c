@@ -68,10 +68,26 @@ static void decide_colour_kind(ef_reader *reader) {
           : EF_SURFACE;
 }
 
+/* Dark samples in percent would pass for ratios. */
+static ef_status check_unit(const ef_reader *reader, ef_error *error) {
+  if (reader->limits.kind != EF_SURFACE) return EF_OK;
+  if (!ef__unit_is_percent(reader->table.remarks.unit)) return EF_OK;
+  ef__error_set(error, EF_MALFORMED,
+                "the '# unit:' line says percent, expected ratios where 1 is "
+                "the perfect reflecting diffuser; divide the values by 100 and "
+                "remove the line");
+  ef__error_place(error, file_name(reader), 0, 0, NULL);
+  return EF_MALFORMED;
+}
+
 ef_status ef__decide_from_remarks(ef_reader *reader, ef_error *error) {
   const double asked = reader->settings.device_max;
   const ef_content content = reader->layout.content;
-  if (content == EF_CONTENT_SPECTRA) decide_kind(reader);
+  if (content == EF_CONTENT_SPECTRA) {
+    decide_kind(reader);
+    const ef_status status = check_unit(reader, error);
+    if (status != EF_OK) return status;
+  }
   if (content == EF_CONTENT_XYZ || content == EF_CONTENT_XYY) {
     decide_colour_kind(reader);
   }

@@ -29,7 +29,6 @@ typedef struct ef__span {
 ef__span ef__span_of(const char *text);
 /** Without blanks and tabs at both ends. */
 ef__span ef__span_trim(ef__span span);
-bool ef__span_equal(ef__span span, const char *text);
 
 /** Room for ef__quote. */
 #define EF__QUOTED 64
@@ -201,6 +200,8 @@ void ef__layout_clear(ef__layout *layout);
 
 /** What a quantity or unit line says: 1 surface, -1 light, 0 neither. */
 int ef__quantity_kind(const char *text);
+/** True for percent, by word or sign. */
+bool ef__unit_is_percent(const char *text);
 /** True for W sr^-1 m^-2 nm^-1 in any of its usual spellings. */
 bool ef__unit_is_radiance(const char *text);
 /** True for cd/m2 in any of its usual spellings. */

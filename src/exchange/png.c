@@ -48,10 +48,10 @@ static void keep_reason(png_structp png, png_const_charp message) {
   png_longjmp(png, 1);
 }
 
-/* A warning of the writer is about what it leaves out, such as a profile that
- * it does not believe: not what was asked for. */
-static void refuse_warning(png_structp png, png_const_charp message) {
-  png_error(png, message);
+/* Warnings are about details of a profile that is written all the same. */
+static void ignore_warning(png_structp png, png_const_charp message) {
+  (void)png;
+  (void)message;
 }
 
 /* ---- The picture ------------------------------------------------------- */
@@ -74,6 +74,9 @@ static void write_head(picture *p, size_t width, size_t height, int bits,
     png_set_iCCP(p->png, p->info, tags->profile_name,
                  PNG_COMPRESSION_TYPE_BASE, tags->profile,
                  (png_uint_32)tags->profile_length);
+    if (png_get_valid(p->png, p->info, PNG_INFO_iCCP) == 0) {
+      png_error(p->png, "the ICC profile is not accepted");
+    }
   }
   png_write_info_before_PLTE(p->png, p->info);
   if (tags != NULL && tags->primaries != 0) write_cicp(p->png, tags);
@@ -163,7 +166,7 @@ static ef_status write_to(picture *p, const char *path, size_t width,
                           size_t height, int bits, const uint16_t *sample,
                           const ef_png_tags *tags, ef_error *error) {
   p->png = png_create_write_struct(PNG_LIBPNG_VER_STRING, p, keep_reason,
-                                   refuse_warning);
+                                   ignore_warning);
   if (p->png != NULL) p->info = png_create_info_struct(p->png);
   p->row = ef__allocate(width * CHANNELS, (size_t)bits / 8);
   if (p->png == NULL || p->info == NULL || p->row == NULL) {

@@ -22,6 +22,21 @@ ef_reader_settings ef_reader_settings_default(void) {
 
 /* ---- Rows -------------------------------------------------------------- */
 
+/* What is wrong with a row, without the advice behind the semicolon: it is
+ * left out already. */
+static void note_fault(const ef_reader *reader, const ef_error *fault) {
+  ef_error said = *fault;
+  char text[900];
+  bool in_quotes = false;
+  char *at = said.message;
+  for (; *at != '\0' && (*at != ';' || in_quotes); ++at) {
+    if (*at == '\'') in_quotes = !in_quotes;
+  }
+  *at = '\0';
+  ef_error_describe(&said, text, sizeof text);
+  ef__note(reader->settings.notes, "%s; row left out", text);
+}
+
 ef_status ef__reader_fault(ef_reader *reader, const ef_error *fault,
                            ef_error *error) {
   if (!reader->settings.skip_bad || fault->status != EF_MALFORMED) {
@@ -29,11 +44,7 @@ ef_status ef__reader_fault(ef_reader *reader, const ef_error *fault,
     return fault->status;
   }
   ++reader->n_skipped;
-  if (reader->n_skipped <= MOST_NOTED) {
-    char text[900];
-    ef_error_describe(fault, text, sizeof text);
-    ef__note(reader->settings.notes, "%s: row left out", text);
-  }
+  if (reader->n_skipped <= MOST_NOTED) note_fault(reader, fault);
   return EF_OK;
 }
 

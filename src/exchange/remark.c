@@ -45,6 +45,10 @@ int ef__quantity_kind(const char *text) {
   return has_any(text, light) ? -1 : 0;
 }
 
+bool ef__unit_is_percent(const char *text) {
+  return strchr(text, '%') != NULL || has_word(text, "percent");
+}
+
 /* ---- Units ------------------------------------------------------------- */
 
 /* Signs of one byte for those that people write with several: superscripts and

@@ -21,11 +21,6 @@ ef__span ef__span_trim(ef__span span) {
   return span;
 }
 
-bool ef__span_equal(ef__span span, const char *text) {
-  return strlen(text) == span.length &&
-         memcmp(span.text, text, span.length) == 0;
-}
-
 const char *ef__quote(ef__span span, char out[EF__QUOTED]) {
   const size_t most = EF__QUOTED - 6; /* quotes, dots, terminator */
   size_t kept = span.length < most ? span.length : most;
