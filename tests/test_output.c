@@ -193,6 +193,15 @@ static void links_stay_links(void **state) {
   clear("a.csv");
   write_whole("link", false, "first");
   scratch_expect("a.csv", "first");
+  /* A link by the whole path. */
+  char whole[SCRATCH_PATH];
+  char other[SCRATCH_PATH];
+  scratch_path("a.csv", whole);
+  scratch_path("other", other);
+  assert_int_equal(symlink(whole, other), 0);
+  write_whole("other", true, "second");
+  scratch_expect("a.csv", "second");
+  clear("other");
   assert_int_equal(symlink("loop", loop), 0);
   assert_null(ef_output_open(loop, true, &error));
   assert_error(&error, EF_UNWRITABLE, "cannot be written");
