@@ -98,6 +98,80 @@ EF_API ef_status ef_object_solid_volume(const ef_observer *observer,
                                         const ef_illuminant *illuminant,
                                         double *volume, ef_error *error);
 
+/* ---- What other observers see ------------------------------------------ */
+
+/** One side of n pairs of stimuli. */
+typedef struct ef_side {
+  ef_grid grid;
+  const double *sample; /**< n x grid.count, finite */
+  ef_viewing viewing;
+  /** The white this side is judged against, grid.count samples: a display's
+   * white, a lamp. NULL for surfaces: the perfect reflecting diffuser in the
+   * viewing's illuminant. */
+  const double *white;
+} ef_side;
+
+typedef struct ef_spread_settings {
+  const ef_metric *metric;
+  /** From the target's white to the match's, complete; as for the match
+   * itself. */
+  ef_adaptation adaptation;
+  /** Difference from which on the two are told apart, in the metric's unit;
+   * NaN: the metric's default JND. */
+  double threshold;
+} ef_spread_settings;
+
+/** CIEDE2000, CAT16, default JND. */
+EF_API ef_spread_settings ef_spread_settings_default(void);
+
+/** The difference of one pair as a population sees it, in the metric's unit. */
+typedef struct ef_spread {
+  double mean; /**< over the observers: observer metamerism index of the pair */
+  double p95;  /**< 95th percentile, linear between neighbouring observers (for
+                    N observers, place 0.95 (N - 1) of the sorted values,
+                    counted from 0) */
+  double share_of_observers; /**< above the threshold, 0 to 1; NaN without
+                                  one */
+} ef_spread;
+
+/** What each observer of `population` sees of n pairs. For every observer, of
+ * their own functions and on their own: tristimulus values of both sides and
+ * both whites; each side scaled so that its white has Y = 100; the target
+ * carried from its white to the match's by `adaptation`; the difference of the
+ * two with the match's white as reference white. Where both whites are one to
+ * the last bit nothing is carried. The tristimulus functions of individuals
+ * are treated like the standard ones, as is usual with individual
+ * colour-matching functions (Asano, Fairchild & Blonde 2016).
+ *
+ * `out` receives n results, `difference` (may be NULL) n x count differences.
+ * Tristimulus values come from one product per block of observers
+ * (ef_weights_apply); results do not depend on `jobs` (0: all cores). Works in
+ * some 50 MB beside its arguments. EF_INVALID for a sample that is not finite,
+ * for lights without a white, and for a white that is dark. */
+EF_API ef_status ef_population_spread(const ef_population *population,
+                                      size_t n, const ef_side *target,
+                                      const ef_side *match,
+                                      const ef_spread_settings *settings,
+                                      int jobs, ef_spread *out,
+                                      double *difference,
+                                      const ef_notes *notes, ef_error *error);
+
+/** A whole setup by its pairs. */
+typedef struct ef_spread_index {
+  double mean;  /**< mean of the pairs' means: the setup's observer metamerism
+                     index, after Fairchild & Wyble, Proc. 15th Color Imaging
+                     Conf. (2007) 151-156 (definition from memory), who compare
+                     display primaries by the mean difference over observers
+                     and colours */
+  double p95;   /**< mean of the pairs' 95th percentiles */
+  double share_of_observers; /**< mean of the pairs' shares */
+  size_t worst; /**< pair with the largest 95th percentile, the first of equal
+                     ones */
+} ef_spread_index;
+
+/** NaN and 0 for n = 0. */
+EF_API ef_spread_index ef_spread_index_of(size_t n, const ef_spread *spread);
+
 #ifdef __cplusplus
 }
 #endif

@@ -1,0 +1,396 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/* What a population sees of pairs. Observers go in blocks: one product gives
+ * the tristimulus values of a block of pairs for a block of observers, then the
+ * differences are taken pair by pair. Those of some pairs and all observers
+ * are kept until their percentile is known. */
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/base_private.h"
+
+#include <evenfield/match.h>
+
+enum {
+  OBSERVERS = 128,    /* in a block: their weights fit into a cache of 2 MB */
+  PAIRS = 512,        /* in a block: tristimulus values in 3 MB a side */
+  KEPT = 4 * 1000000, /* differences kept at a time: 32 MB */
+  CHUNK = 4           /* pairs a thread takes: half a thousand differences */
+};
+
+enum { TARGET, MATCH };
+
+ef_spread_settings ef_spread_settings_default(void) {
+  return (ef_spread_settings){.metric = ef_metric_find("ciede2000", NULL),
+                              .adaptation = EF_ADAPT_CAT16,
+                              .threshold = (double)NAN};
+}
+
+/* A block of observers and how each normalises what it sees. */
+typedef struct eyes {
+  size_t first, count;
+  ef_weights *weights[2]; /* of both sides; one and the same when they agree */
+  struct {
+    double target[9];  /* XYZ of the target's side -> on the match's white */
+    bool is_scale;     /* target[0] alone does it: both whites are one */
+    double match;      /* factor of the match's side */
+    ef_conditions conditions;
+  } own[OBSERVERS];
+} eyes;
+
+/* Everything a call needs. */
+typedef struct work {
+  const ef_population *population;
+  const ef_spread_settings *settings;
+  const ef_side *side[2];
+  bool sides_agree;  /* in grid and viewing: weights are shared */
+  double *white[2];  /* samples of both whites */
+  double *xyz[2];    /* PAIRS x 3 OBSERVERS */
+  eyes *block;
+  size_t n_observers;
+  double threshold;
+  size_t first_pair; /* of the pairs kept, first in xyz */
+  double *kept;      /* n_kept x n_observers */
+  ef_spread *out;    /* of the first pair kept */
+} work;
+
+/* ---- Checks ------------------------------------------------------------ */
+
+static const char *const side_names[2] = {"target", "match"};
+
+static ef_status check_finite(size_t n, const double *value, size_t row,
+                              const char *what, ef_error *error) {
+  for (size_t i = 0; i < n; ++i) {
+    if (isfinite(value[i])) continue;
+    return ef__error_set(error, EF_INVALID,
+                         "sample %zu of %s %zu is not a finite number",
+                         i % row + 1, what, i / row + 1);
+  }
+  return EF_OK;
+}
+
+static ef_status check_side(const ef_side *side, size_t n, const char *name,
+                            ef_error *error) {
+  ef_status status = ef_grid_check(&side->grid, error);
+  if (status != EF_OK) return status;
+  if (side->white == NULL && side->viewing.kind == EF_LIGHT) {
+    return ef__error_set(error, EF_INVALID,
+                         "the %s's side shows lights: the white they are "
+                         "judged against is needed",
+                         name);
+  }
+  const size_t count = side->grid.count;
+  status = check_finite(n * count, side->sample, count, name, error);
+  if (status != EF_OK || side->white == NULL) return status;
+  return check_finite(count, side->white, count, "white", error);
+}
+
+static bool agree(const ef_side *a, const ef_side *b) {
+  const ef_viewing *const v = &a->viewing, *const u = &b->viewing;
+  return ef_grid_equal(&a->grid, &b->grid) && v->kind == u->kind &&
+         v->illuminant == u->illuminant && v->absolute == u->absolute &&
+         v->interpolation == u->interpolation &&
+         v->extension == u->extension &&
+         v->correct_bandpass == u->correct_bandpass &&
+         ef_grid_equal(&v->working, &u->working);
+}
+
+/* ---- A block of observers ---------------------------------------------- */
+
+static void forget_eyes(eyes *block) {
+  if (block->weights[MATCH] != block->weights[TARGET]) {
+    ef_weights_free(block->weights[MATCH]);
+  }
+  ef_weights_free(block->weights[TARGET]);
+  block->weights[TARGET] = block->weights[MATCH] = NULL;
+}
+
+static ef_status make_weights(work *w, int jobs, const ef_notes *notes,
+                              ef_error *error) {
+  eyes *const block = w->block;
+  for (size_t s = 0; s < 2; ++s) {
+    if (s == MATCH && w->sides_agree) {
+      block->weights[MATCH] = block->weights[TARGET];
+      continue;
+    }
+    ef_error why;
+    block->weights[s] = ef_population_weights(
+        w->population, block->first, block->count, &w->side[s]->grid,
+        &w->side[s]->viewing, jobs, notes, &why);
+    if (block->weights[s] != NULL) continue;
+    if (error != NULL) *error = why;
+    return why.status;
+  }
+  return EF_OK;
+}
+
+/* Factors of both sides and the way from white to white of one observer. */
+static ef_status normalise(work *w, size_t i, double white[2][3],
+                           ef_error *error) {
+  for (size_t s = 0; s < 2; ++s) {
+    if (white[s][1] > 0 && isfinite(100 / white[s][1])) continue;
+    return ef__error_set(error, EF_INVALID,
+                         "the white of the %s's side is dark for observer %zu",
+                         side_names[s], w->block->first + i + 1);
+  }
+  const double factor[2] = {100 / white[TARGET][1], 100 / white[MATCH][1]};
+  const bool is_same = memcmp(white[TARGET], white[MATCH],
+                              sizeof white[TARGET]) == 0;
+  const ef_xyz from = {factor[TARGET] * white[TARGET][0], 100,
+                       factor[TARGET] * white[TARGET][2]};
+  const ef_xyz to = {factor[MATCH] * white[MATCH][0], 100,
+                     factor[MATCH] * white[MATCH][2]};
+  double *const matrix = w->block->own[i].target;
+  w->block->own[i].match = factor[MATCH];
+  w->block->own[i].conditions.white = to;
+  w->block->own[i].is_scale =
+      is_same || w->settings->adaptation == EF_ADAPT_NONE;
+  if (w->block->own[i].is_scale) {
+    matrix[0] = factor[TARGET];
+    return EF_OK;
+  }
+  const ef_status status = ef_adaptation_matrix(w->settings->adaptation, from,
+                                                to, matrix, error);
+  for (size_t k = 0; k < 9; ++k) matrix[k] *= factor[TARGET];
+  return status;
+}
+
+static ef_status open_eyes(work *w, size_t first, int jobs,
+                           const ef_notes *notes, ef_error *error) {
+  eyes *const block = w->block;
+  double xyz[2][3 * OBSERVERS];
+  const size_t left = w->n_observers - first;
+  block->first = first;
+  block->count = left < OBSERVERS ? left : OBSERVERS;
+  ef_status status = make_weights(w, jobs, notes, error);
+  for (size_t s = 0; s < 2 && status == EF_OK; ++s) {
+    status = ef_weights_apply(block->weights[s], 1, w->white[s], 1, xyz[s],
+                              error);
+  }
+  for (size_t i = 0; i < block->count && status == EF_OK; ++i) {
+    double white[2][3];
+    for (size_t s = 0; s < 2; ++s) {
+      memcpy(white[s], xyz[s] + 3 * i, sizeof white[s]);
+    }
+    status = normalise(w, i, white, error);
+  }
+  return status;
+}
+
+/* ---- Differences ------------------------------------------------------- */
+
+/* Pairs [begin, end) of the block in xyz, for the block of observers. */
+static void compare(void *context, size_t begin, size_t end) {
+  const work *const w = context;
+  const eyes *const block = w->block;
+  const ef_metric *const metric = w->settings->metric;
+  double reference[3 * OBSERVERS], sample[3 * OBSERVERS];
+  for (size_t p = begin; p < end; ++p) {
+    const double *const target = w->xyz[TARGET] + p * 3 * block->count;
+    const double *const match = w->xyz[MATCH] + p * 3 * block->count;
+    for (size_t i = 0; i < block->count; ++i) {
+      const double *const t = target + 3 * i, *const m = match + 3 * i;
+      const double *const to = block->own[i].target;
+      const double factor = block->own[i].match;
+      const ef_xyz seen = {t[0], t[1], t[2]};
+      const ef_xyz carried =
+          block->own[i].is_scale
+              ? (ef_xyz){to[0] * t[0], to[0] * t[1], to[0] * t[2]}
+              : ef_xyz_transform(to, seen);
+      const ef_xyz shown = {factor * m[0], factor * m[1], factor * m[2]};
+      ef_metric_coordinates(metric, carried, &block->own[i].conditions,
+                            reference + 3 * i);
+      ef_metric_coordinates(metric, shown, &block->own[i].conditions,
+                            sample + 3 * i);
+    }
+    ef_metric_difference_batch(
+        metric, block->count, reference, sample, 1,
+        w->kept + (w->first_pair + p) * w->n_observers + block->first);
+  }
+}
+
+/* `pair` is the number of the first pair kept among all. */
+static ef_status see_pairs(work *w, size_t pair, size_t n_kept, int jobs,
+                           ef_error *error) {
+  for (size_t first = 0; first < n_kept; first += PAIRS) {
+    const size_t left = n_kept - first;
+    const size_t n = left < PAIRS ? left : PAIRS;
+    for (size_t s = 0; s < 2; ++s) {
+      const size_t row = w->side[s]->grid.count;
+      const ef_status status = ef_weights_apply(
+          w->block->weights[s], n, w->side[s]->sample + (pair + first) * row,
+          jobs, w->xyz[s], error);
+      if (status != EF_OK) return status;
+    }
+    w->first_pair = first;
+    ef__parallel_for(n, CHUNK, jobs, compare, w);
+  }
+  return EF_OK;
+}
+
+/* ---- Statistics -------------------------------------------------------- */
+
+static void swap(double *a, double *b) {
+  const double kept = *a;
+  *a = *b;
+  *b = kept;
+}
+
+/* Puts the value of place k (from 0) into its place, nothing larger before it
+ * and nothing smaller behind (Hoare 1961, the middle of three as pivot). */
+static void select_place(size_t n, double *value, size_t k) {
+  size_t low = 0, high = n - 1;
+  while (low < high) {
+    const size_t middle = low + (high - low) / 2;
+    if (value[middle] < value[low]) swap(&value[middle], &value[low]);
+    if (value[high] < value[low]) swap(&value[high], &value[low]);
+    if (value[high] < value[middle]) swap(&value[high], &value[middle]);
+    const double pivot = value[middle];
+    size_t i = low, j = high;
+    while (i <= j) {
+      while (value[i] < pivot) ++i;
+      while (value[j] > pivot) --j;
+      if (i > j) break;
+      swap(&value[i++], &value[j]);
+      if (j-- == 0) break;
+    }
+    if (k <= j && j < high) {
+      high = j;
+    } else if (k >= i) {
+      low = i;
+    } else {
+      return;
+    }
+  }
+}
+
+/* Changes the order of `value`. */
+static double percentile_95(size_t n, double *value) {
+  const double place = 0.95 * (double)(n - 1);
+  const size_t k = (size_t)place;
+  const double rest = place - (double)k;
+  select_place(n, value, k);
+  double next = value[k];
+  if (k + 1 < n) {
+    next = value[k + 1];
+    for (size_t i = k + 2; i < n; ++i) {
+      if (value[i] < next) next = value[i];
+    }
+  }
+  return value[k] + rest * (next - value[k]);
+}
+
+static void summarise(void *context, size_t begin, size_t end) {
+  const work *const w = context;
+  const size_t n = w->n_observers;
+  for (size_t p = begin; p < end; ++p) {
+    double *const value = w->kept + p * n;
+    double sum = 0;
+    size_t n_above = 0;
+    bool is_finite = true;
+    for (size_t i = 0; i < n; ++i) {
+      sum += value[i];
+      n_above += value[i] > w->threshold;
+      is_finite = is_finite && isfinite(value[i]);
+    }
+    const bool has_share = is_finite && !isnan(w->threshold);
+    w->out[p] = (ef_spread){
+        .mean = sum / (double)n,
+        .p95 = is_finite ? percentile_95(n, value) : (double)NAN,
+        .share_of_observers =
+            has_share ? (double)n_above / (double)n : (double)NAN};
+  }
+}
+
+/* ---- The call ---------------------------------------------------------- */
+
+static size_t least(size_t a, size_t b) {
+  return a < b ? a : b;
+}
+
+/* All observers, pairs [pair, pair + n_kept). */
+static ef_status spread_of(work *w, size_t pair, size_t n_kept, int jobs,
+                           const ef_notes *notes, ef_error *error) {
+  ef_status status = EF_OK;
+  for (size_t o = 0; o < w->n_observers && status == EF_OK; o += OBSERVERS) {
+    /* What lies outside the samples is the same for all: said once. */
+    const bool is_first = pair == 0 && o == 0;
+    status = open_eyes(w, o, jobs, is_first ? notes : NULL, error);
+    if (status == EF_OK) status = see_pairs(w, pair, n_kept, jobs, error);
+    forget_eyes(w->block);
+  }
+  return status;
+}
+
+static ef_status allocate(work *w, size_t n, size_t *n_kept, void **block,
+                          ef_error *error) {
+  const size_t fitting = KEPT / w->n_observers;
+  *n_kept = least(n, fitting > 0 ? fitting : 1);
+  const size_t n_xyz = least(*n_kept, PAIRS) * 3 * OBSERVERS;
+  const ef__part parts[] = {
+      {&w->white[TARGET], w->side[TARGET]->grid.count, sizeof(double)},
+      {&w->white[MATCH], w->side[MATCH]->grid.count, sizeof(double)},
+      {&w->xyz[TARGET], n_xyz, sizeof(double)},
+      {&w->xyz[MATCH], n_xyz, sizeof(double)},
+      {&w->block, 1, sizeof *w->block},
+      {&w->kept, *n_kept * w->n_observers, sizeof(double)}};
+  *block = ef__allocate_block(sizeof parts / sizeof *parts, parts);
+  if (*block == NULL) return ef__error_memory(error, "what a population sees");
+  return EF_OK;
+}
+
+static void set_white(const ef_side *side, double *white) {
+  for (size_t i = 0; i < side->grid.count; ++i) {
+    white[i] = side->white != NULL ? side->white[i] : 1;
+  }
+}
+
+ef_status ef_population_spread(const ef_population *population, size_t n,
+                               const ef_side *target, const ef_side *match,
+                               const ef_spread_settings *settings, int jobs,
+                               ef_spread *out, double *difference,
+                               const ef_notes *notes, ef_error *error) {
+  work w = {.population = population,
+            .settings = settings,
+            .side = {target, match},
+            .sides_agree = agree(target, match),
+            .n_observers = ef_population_count(population),
+            .threshold = isnan(settings->threshold)
+                             ? ef_metric_jnd(settings->metric).value
+                             : settings->threshold};
+  size_t n_kept;
+  void *block = NULL;
+  ef_status status = check_side(target, n, side_names[TARGET], error);
+  if (status == EF_OK) status = check_side(match, n, side_names[MATCH], error);
+  if (status == EF_OK) status = allocate(&w, n, &n_kept, &block, error);
+  if (status != EF_OK) return status;
+  set_white(target, w.white[TARGET]);
+  set_white(match, w.white[MATCH]);
+  for (size_t pair = 0; pair < n && status == EF_OK; pair += n_kept) {
+    const size_t n_here = least(n - pair, n_kept);
+    status = spread_of(&w, pair, n_here, jobs, notes, error);
+    if (status != EF_OK) break;
+    if (difference != NULL) {
+      memcpy(difference + pair * w.n_observers, w.kept,
+             n_here * w.n_observers * sizeof *difference);
+    }
+    w.out = out + pair;
+    ef__parallel_for(n_here, CHUNK, jobs, summarise, &w);
+  }
+  free(block);
+  return status;
+}
+
+ef_spread_index ef_spread_index_of(size_t n, const ef_spread *spread) {
+  ef_spread_index index = {0};
+  for (size_t i = 0; i < n; ++i) {
+    index.mean += spread[i].mean;
+    index.p95 += spread[i].p95;
+    index.share_of_observers += spread[i].share_of_observers;
+    if (spread[i].p95 > spread[index.worst].p95) index.worst = i;
+  }
+  index.mean /= (double)n; /* 0 / 0 is NaN */
+  index.p95 /= (double)n;
+  index.share_of_observers /= (double)n;
+  return index;
+}

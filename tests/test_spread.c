@@ -1,0 +1,376 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include <stdlib.h>
+
+#include <evenfield/match.h>
+
+#include "fail_alloc.h"
+#include "gen.h"
+#include "near.h"
+
+static ef_population *make_many(size_t count, uint64_t seed) {
+  ef_population_settings settings = ef_population_settings_default();
+  ef_error error;
+  settings.count = count;
+  settings.seed = seed;
+  ef_population *const population = ef_population_new(&settings, &error);
+  if (population == NULL) fail_msg("%s", error.message);
+  return population;
+}
+
+static ef_illuminant *light(const char *name) {
+  ef_error error;
+  ef_illuminant *const illuminant = ef_illuminant_new(name, &error);
+  if (illuminant == NULL) fail_msg("%s", error.message);
+  return illuminant;
+}
+
+static const ef_metric *metric_of(const char *name) {
+  const ef_metric *const metric = ef_metric_find(name, NULL);
+  assert_non_null(metric);
+  return metric;
+}
+
+/* Invented surfaces at 10 nm and invented lights at 5 nm, in pairs. */
+enum { N_PAIRS = 7, SURFACE_SAMPLES = 36, LIGHT_SAMPLES = 81 };
+
+typedef struct pairs {
+  double surface[N_PAIRS * SURFACE_SAMPLES];
+  double light[N_PAIRS * LIGHT_SAMPLES];
+  double white[LIGHT_SAMPLES];
+  ef_illuminant *illuminant;
+  ef_side target, match;
+} pairs;
+
+static void make_pairs(pairs *p, gen *g) {
+  for (size_t i = 0; i < N_PAIRS; ++i) {
+    gen_smooth(g, SURFACE_SAMPLES, p->surface + i * SURFACE_SAMPLES);
+  }
+  for (size_t j = 0; j < LIGHT_SAMPLES; ++j) p->white[j] = 0;
+  for (size_t k = 0; k < 3; ++k) {
+    const double centre_nm[3] = {610, 540, 455};
+    for (size_t j = 0; j < LIGHT_SAMPLES; ++j) {
+      const double z = (380 + 5 * (double)j - centre_nm[k]) / 15;
+      const double primary = exp(-z * z / 2);
+      p->white[j] += 0.02 * primary;
+      for (size_t i = 0; i < N_PAIRS; ++i) {
+        p->light[i * LIGHT_SAMPLES + j] += 0.02 * gen_unit(g) * primary;
+      }
+    }
+  }
+  p->illuminant = light("D50");
+  p->target = (ef_side){
+      .grid = {.count = SURFACE_SAMPLES, .start_nm = 380, .step_nm = 10},
+      .sample = p->surface,
+      .viewing = ef_viewing_default(p->illuminant)};
+  p->match = (ef_side){
+      .grid = {.count = LIGHT_SAMPLES, .start_nm = 380, .step_nm = 5},
+      .sample = p->light,
+      .viewing = ef_viewing_default(NULL),
+      .white = p->white};
+}
+
+static pairs *pairs_new(uint64_t seed) {
+  gen g = gen_new(seed);
+  pairs *const p = calloc(1, sizeof *p);
+  assert_non_null(p);
+  make_pairs(p, &g);
+  return p;
+}
+
+static void pairs_free(pairs *p) {
+  ef_illuminant_free(p->illuminant);
+  free(p);
+}
+
+/* ---- Beside a plain loop over observers -------------------------------- */
+
+static ef_xyz see(const ef_observer *observer, const ef_side *side,
+                  const double *sample) {
+  double xyz[3];
+  ef_weights *const weights = ef_observer_weights(
+      observer, EF_TRISTIMULUS, &side->grid, &side->viewing, NULL, NULL);
+  assert_non_null(weights);
+  ef_weights_apply(weights, 1, sample, 1, xyz, NULL);
+  ef_weights_free(weights);
+  return (ef_xyz){xyz[0], xyz[1], xyz[2]};
+}
+
+static ef_xyz scaled(ef_xyz xyz, double factor) {
+  return (ef_xyz){factor * xyz.X, factor * xyz.Y, factor * xyz.Z};
+}
+
+/* What the header says, for one observer and one pair, step by step. */
+static double difference_of_one(const ef_observer *observer,
+                                const ef_side *target, const double *sample,
+                                const ef_side *match, const double *shown,
+                                const ef_spread_settings *settings) {
+  double perfect[SURFACE_SAMPLES], matrix[9], reference[3], seen[3];
+  for (size_t i = 0; i < SURFACE_SAMPLES; ++i) perfect[i] = 1;
+  ef_xyz target_white = see(observer, target, perfect);
+  ef_xyz match_white = see(observer, match, match->white);
+  const double target_factor = 100 / target_white.Y;
+  const double match_factor = 100 / match_white.Y;
+  target_white = scaled(target_white, target_factor);
+  match_white = scaled(match_white, match_factor);
+  ef_adaptation_matrix(settings->adaptation, target_white, match_white, matrix,
+                       NULL);
+  const ef_xyz carried = ef_xyz_transform(
+      matrix, scaled(see(observer, target, sample), target_factor));
+  const ef_xyz xyz = scaled(see(observer, match, shown), match_factor);
+  const ef_conditions conditions = {match_white};
+  ef_metric_coordinates(settings->metric, carried, &conditions, reference);
+  ef_metric_coordinates(settings->metric, xyz, &conditions, seen);
+  return ef_metric_difference(settings->metric, reference, seen);
+}
+
+static void check_against_loop(const ef_spread_settings *settings) {
+  enum { N = 150 };
+  pairs *const p = pairs_new(31);
+  ef_population *const population = make_many(N, 8);
+  static double difference[N_PAIRS * N];
+  ef_spread spread[N_PAIRS];
+  ef_error error;
+  if (ef_population_spread(population, N_PAIRS, &p->target, &p->match, settings,
+                           0, spread, difference, NULL, &error) != EF_OK) {
+    fail_msg("%s", error.message);
+  }
+  for (size_t i = 0; i < N; i += 7) {
+    const ef_cone_model model = ef_population_member(population, i);
+    ef_observer *const observer = ef_observer_from_model(&model, NULL);
+    for (size_t k = 0; k < N_PAIRS; ++k) {
+      const double expected = difference_of_one(
+          observer, &p->target, p->surface + k * SURFACE_SAMPLES, &p->match,
+          p->light + k * LIGHT_SAMPLES, settings);
+      assert_true(expected > 1); /* colours by chance are far apart */
+      assert_near_relative(difference[k * N + i], expected, 1e-11);
+    }
+    ef_observer_free(observer);
+  }
+  ef_population_free(population);
+  pairs_free(p);
+}
+
+static void equals_a_loop_over_observers(void **state) {
+  (void)state;
+  ef_spread_settings settings = ef_spread_settings_default();
+  check_against_loop(&settings);
+  settings.metric = metric_of("cielab");
+  settings.adaptation = EF_ADAPT_BRADFORD;
+  check_against_loop(&settings);
+  settings.adaptation = EF_ADAPT_NONE;
+  check_against_loop(&settings);
+}
+
+/* ---- Statistics -------------------------------------------------------- */
+
+static int ascending(const void *a, const void *b) {
+  const double x = *(const double *)a, y = *(const double *)b;
+  return x < y ? -1 : x > y;
+}
+
+/* Percentile by sorting, for populations of any size. */
+static void statistics_are_those_of_the_differences(void **state) {
+  (void)state;
+  const size_t sizes[] = {1, 2, 3, 20, 21, 40, 41, 127, 128, 129, 300};
+  pairs *const p = pairs_new(4);
+  ef_spread_settings settings = ef_spread_settings_default();
+  settings.threshold = 20;
+  for (size_t s = 0; s < sizeof sizes / sizeof *sizes; ++s) {
+    const size_t n = sizes[s];
+    ef_population *const population = make_many(n, 5);
+    double *const difference = malloc(N_PAIRS * n * sizeof *difference);
+    ef_spread spread[N_PAIRS];
+    assert_int_equal(ef_population_spread(population, N_PAIRS, &p->target,
+                                          &p->match, &settings, 1, spread,
+                                          difference, NULL, NULL),
+                     EF_OK);
+    for (size_t k = 0; k < N_PAIRS; ++k) {
+      double *const value = difference + k * n;
+      double sum = 0;
+      size_t above = 0;
+      for (size_t i = 0; i < n; ++i) {
+        sum += value[i];
+        above += value[i] > 20;
+      }
+      qsort(value, n, sizeof *value, ascending);
+      const double place = 0.95 * (double)(n - 1);
+      const size_t low = (size_t)place;
+      const size_t high = low + 1 < n ? low + 1 : low;
+      assert_near_relative(spread[k].mean, sum / (double)n, 1e-14);
+      assert_near_relative(
+          spread[k].p95,
+          value[low] + (place - (double)low) * (value[high] - value[low]),
+          1e-14);
+      assert_near(spread[k].share_of_observers, (double)above / (double)n, 0);
+    }
+    free(difference);
+    ef_population_free(population);
+  }
+  pairs_free(p);
+}
+
+/* Threads, blocks of pairs, blocks of observers and what else is asked in the
+ * same call change no bit. 5000 observers x 900 pairs are more differences than
+ * are kept at a time. */
+static void blocks_and_threads_change_nothing(void **state) {
+  (void)state;
+  enum { N = 5000, PAIRS = 900, SAMPLES = 6 };
+  gen g = gen_new(77);
+  const ef_grid grid = {.count = SAMPLES, .start_nm = 420, .step_nm = 50};
+  double *const sample = malloc(2 * PAIRS * SAMPLES * sizeof *sample);
+  ef_spread *const spread = malloc(2 * PAIRS * sizeof *spread);
+  ef_illuminant *const illuminant = light("A");
+  ef_population *const population = make_many(N, 12);
+  ef_side target = {.grid = grid, .viewing = ef_viewing_default(illuminant)};
+  ef_side match = target;
+  const ef_spread_settings settings = ef_spread_settings_default();
+  gen_fill(&g, 2 * PAIRS * SAMPLES, 0.01, 0.99, sample);
+  target.sample = sample;
+  match.sample = sample + PAIRS * SAMPLES;
+  ef_population_spread(population, PAIRS, &target, &match, &settings, 2, spread,
+                       NULL, NULL, NULL);
+  /* The last hundred pairs alone, on one thread. */
+  target.sample += (PAIRS - 100) * SAMPLES;
+  match.sample += (PAIRS - 100) * SAMPLES;
+  ef_population_spread(population, 100, &target, &match, &settings, 1,
+                       spread + PAIRS, NULL, NULL, NULL);
+  assert_memory_equal(spread + PAIRS, spread + PAIRS - 100,
+                      100 * sizeof *spread);
+  ef_population_free(population);
+  ef_illuminant_free(illuminant);
+  free(spread);
+  free(sample);
+}
+
+static void index_is_the_mean_of_pairs(void **state) {
+  (void)state;
+  const ef_spread spread[4] = {
+      {1, 2.5, 0.25}, {3, 7, 0.75}, {2, 7, 0.5}, {0, 0.5, 0}};
+  const ef_spread_index index = ef_spread_index_of(4, spread);
+  assert_near(index.mean, 1.5, 0);
+  assert_near(index.p95, 4.25, 0);
+  assert_near(index.share_of_observers, 0.375, 0);
+  assert_int_equal(index.worst, 1);
+  const ef_spread_index none = ef_spread_index_of(0, NULL);
+  assert_true(isnan(none.mean) && isnan(none.p95) && none.worst == 0);
+}
+
+/* The default threshold is the metric's JND. */
+static void threshold_is_the_jnd(void **state) {
+  (void)state;
+  pairs *const p = pairs_new(4);
+  ef_population *const population = make_many(50, 5);
+  ef_spread_settings settings = ef_spread_settings_default();
+  ef_spread by_default[N_PAIRS], by_number[N_PAIRS];
+  assert_string_equal(ef_metric_name(settings.metric), "ciede2000");
+  assert_true(settings.adaptation == EF_ADAPT_CAT16);
+  ef_population_spread(population, N_PAIRS, &p->target, &p->match, &settings, 1,
+                       by_default, NULL, NULL, NULL);
+  settings.threshold = ef_metric_jnd(settings.metric).value;
+  assert_false(isnan(settings.threshold));
+  ef_population_spread(population, N_PAIRS, &p->target, &p->match, &settings, 1,
+                       by_number, NULL, NULL, NULL);
+  assert_memory_equal(by_default, by_number, sizeof by_default);
+  ef_population_free(population);
+  pairs_free(p);
+}
+
+/* ---- Errors ------------------------------------------------------------ */
+
+static void check_refused(const pairs *p, const char *message) {
+  ef_population *const population = make_many(3, 5);
+  const ef_spread_settings settings = ef_spread_settings_default();
+  ef_spread spread[N_PAIRS];
+  ef_error error = {.status = EF_OK};
+  assert_int_equal(ef_population_spread(population, N_PAIRS, &p->target,
+                                        &p->match, &settings, 1, spread, NULL,
+                                        NULL, &error),
+                   EF_INVALID);
+  assert_string_equal(error.message, message);
+  ef_population_free(population);
+}
+
+static void inputs_are_checked(void **state) {
+  (void)state;
+  pairs *const p = pairs_new(4);
+  p->match.white = NULL;
+  check_refused(p, "the match's side shows lights: the white they are judged "
+                   "against is needed");
+  p->match.white = p->white;
+  p->surface[2 * SURFACE_SAMPLES + 4] = NOT_A_NUMBER;
+  check_refused(p, "sample 5 of target 3 is not a finite number");
+  p->surface[2 * SURFACE_SAMPLES + 4] = 0.4;
+  p->light[7] = INFINITE;
+  check_refused(p, "sample 8 of match 1 is not a finite number");
+  p->light[7] = 0;
+  p->white[LIGHT_SAMPLES - 1] = INFINITE;
+  check_refused(p, "sample 81 of white 1 is not a finite number");
+  for (size_t j = 0; j < LIGHT_SAMPLES; ++j) p->white[j] = 0;
+  check_refused(p, "the white of the match's side is dark for observer 1");
+  p->target.viewing.illuminant = NULL;
+  check_refused(p, "surfaces are seen in some light: an illuminant is needed");
+  p->target.grid.count = 0;
+  check_refused(p, "a grid needs at least one sample");
+  pairs_free(p);
+}
+
+static void count_line(void *cookie, const char *line) {
+  (void)line;
+  ++*(int *)cookie;
+}
+
+/* Said once a side, not for each block of observers. */
+static void notes_come_once(void **state) {
+  (void)state;
+  pairs *const p = pairs_new(4);
+  ef_population *const population = make_many(400, 5);
+  const ef_spread_settings settings = ef_spread_settings_default();
+  ef_spread spread[N_PAIRS];
+  int n_lines = 0;
+  const ef_notes notes = {count_line, &n_lines};
+  p->target.grid.start_nm = 430;
+  ef_population_spread(population, N_PAIRS, &p->target, &p->match, &settings, 1,
+                       spread, NULL, &notes, NULL);
+  assert_int_equal(n_lines, 1);
+  ef_population_free(population);
+  pairs_free(p);
+}
+
+static void spread_survives_a_lack_of_memory(void **state) {
+  (void)state;
+  pairs *const p = pairs_new(4);
+  ef_population *const population = make_many(3, 5);
+  const ef_spread_settings settings = ef_spread_settings_default();
+  ef_spread spread[N_PAIRS];
+  for (size_t n = 1;; ++n) {
+    ef_error error;
+    fail_alloc_at(n);
+    const ef_status status =
+        ef_population_spread(population, N_PAIRS, &p->target, &p->match,
+                             &settings, 1, spread, NULL, NULL, &error);
+    if (!fail_alloc_stop()) {
+      assert_int_equal(status, EF_OK);
+      assert_true(n > 5);
+      break;
+    }
+    assert_int_equal(status, EF_NO_MEMORY);
+    assert_int_equal(error.status, EF_NO_MEMORY);
+  }
+  ef_population_free(population);
+  pairs_free(p);
+}
+
+int main(void) {
+  const struct CMUnitTest tests[] = {
+      cmocka_unit_test(equals_a_loop_over_observers),
+      cmocka_unit_test(statistics_are_those_of_the_differences),
+      cmocka_unit_test(blocks_and_threads_change_nothing),
+      cmocka_unit_test(index_is_the_mean_of_pairs),
+      cmocka_unit_test(threshold_is_the_jnd),
+      cmocka_unit_test(inputs_are_checked),
+      cmocka_unit_test(notes_come_once),
+      cmocka_unit_test(spread_survives_a_lack_of_memory),
+  };
+  cmocka_set_message_output(CM_OUTPUT_TAP);
+  return cmocka_run_group_tests(tests, NULL, NULL);
+}
