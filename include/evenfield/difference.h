@@ -13,8 +13,16 @@
 extern "C" {
 #endif
 
-/** A difference formula. Static, never freed. */
+/** A difference formula, immutable: one of the registered ones, static and
+ * never freed, or one with parameters of its own from ef_metric_new. */
 typedef struct ef_metric ef_metric;
+
+/** A parametric factor or constant of a formula. */
+typedef struct ef_parameter {
+  const char *name; /**< "kl"; static */
+  double value;
+  const char *about; /**< what it does; static */
+} ef_parameter;
 
 /** What the eye is adapted to while it compares. */
 typedef struct ef_conditions {
@@ -32,22 +40,40 @@ typedef struct ef_components {
 /** A just-noticeable difference with its provenance. */
 typedef struct ef_jnd {
   double value;          /**< in units of the metric; NaN when none published */
-  const char *criterion; /**< e.g. "50 % of observers see it" */
-  const char *source;    /**< published source */
+  const char *criterion; /**< e.g. "50 % of observers see it"; "" with NaN */
+  const char *source;    /**< published source; "" with NaN */
 } ef_jnd;
 
+/** The registered formulas. */
 EF_API size_t ef_metric_count(void);
 EF_API const ef_metric *ef_metric_at(size_t i);
 /** "cielab", "ciede2000"; EF_UNKNOWN_NAME gives the nearest names. */
 EF_API const ef_metric *ef_metric_find(const char *name, ef_error *error);
+/** A registered formula with parameters: its name, and after a colon what is
+ * to differ from the defaults, separated by commas, the later one counting:
+ * `ciede2000:kl=2,kc=1.5`, a published set by its name, or, as the trade
+ * writes them, the first parameters in order: `ciede2000:2:1:1`. A bare name
+ * is fine. Parameters are finite and above zero. A default JND holds for the
+ * default parameters only and is NaN with others. Free with ef_metric_free
+ * after the last use. */
+EF_API ef_metric *ef_metric_new(const char *text, ef_error *error);
+EF_API void ef_metric_free(ef_metric *metric);
+/** With the parameters that are not the default: "ciede2000:kl=2"; reads back
+ * with ef_metric_new. Like the titles it lives as long as the metric. */
 EF_API const char *ef_metric_name(const ef_metric *metric);
-/** "CIEDE2000", with its symbol "Delta E*00" and its source. Static. */
+/** "CIEDE2000", with its symbol "Delta E*00" and its source. */
 EF_API const char *ef_metric_title(const ef_metric *metric);
 EF_API const char *ef_metric_symbol(const ef_metric *metric);
 EF_API const char *ef_metric_source(const ef_metric *metric);
 /** Published default; depends on viewing conditions and observers, and outputs
  * say so. */
 EF_API ef_jnd ef_metric_jnd(const ef_metric *metric);
+/** How many parameters it has, and the i-th (all NULL and NaN beyond). */
+EF_API size_t ef_metric_parameter_count(const ef_metric *metric);
+EF_API ef_parameter ef_metric_parameter_at(const ef_metric *metric, size_t i);
+/** True when reference and sample may change places. Otherwise the reference
+ * is the standard and its weights count. */
+EF_API bool ef_metric_symmetric(const ef_metric *metric);
 
 /** XYZ to the metric's own coordinates (CIELAB for the CIE formulas) and back.
  * `conditions->white` must be positive. */

@@ -102,11 +102,12 @@ void ef__ciede2000_terms(const double reference[3], const double sample[3],
   t->r_t = rotation(t);
 }
 
-static double weighted(const ef__ciede2000 *t, double k_l, double k_c,
-                       double k_h, ef_components *part) {
-  part->lightness = t->delta_l / (k_l * t->s_l);
-  part->chroma = t->delta_c / (k_c * t->s_c);
-  part->hue = t->delta_h / (k_h * t->s_h);
+/* `factor`: k_L, k_C, k_H. */
+static double weighted(const ef__ciede2000 *t, const ef_parameter factor[3],
+                       ef_components *part) {
+  part->lightness = t->delta_l / (factor[0].value * t->s_l);
+  part->chroma = t->delta_c / (factor[1].value * t->s_c);
+  part->hue = t->delta_h / (factor[2].value * t->s_h);
   const double square = part->lightness * part->lightness +
                         part->chroma * part->chroma + part->hue * part->hue +
                         t->r_t * part->chroma * part->hue;
@@ -114,16 +115,17 @@ static double weighted(const ef__ciede2000 *t, double k_l, double k_c,
   return square > 0 ? sqrt(square) : square < 0 ? 0 : square;
 }
 
-static double components(const double reference[3], const double sample[3],
-                         ef_components *part) {
+static double components(const ef_metric *self, const double reference[3],
+                         const double sample[3], ef_components *part) {
   ef__ciede2000 t;
   ef__ciede2000_terms(reference, sample, &t);
-  return weighted(&t, 1, 1, 1, part);
+  return weighted(&t, self->parameter, part);
 }
 
-static double difference(const double reference[3], const double sample[3]) {
+static double difference(const ef_metric *self, const double reference[3],
+                         const double sample[3]) {
   ef_components part;
-  return components(reference, sample, &part);
+  return components(self, reference, sample, &part);
 }
 
 double ef_delta_e_ciede2000(ef_lab reference, ef_lab sample, double k_l,
@@ -131,9 +133,11 @@ double ef_delta_e_ciede2000(ef_lab reference, ef_lab sample, double k_l,
   const double r[3] = {reference.L_star, reference.a_star, reference.b_star};
   const double s[3] = {sample.L_star, sample.a_star, sample.b_star};
   ef__ciede2000 t;
+  const ef_parameter factor[3] = {
+      {.value = k_l}, {.value = k_c}, {.value = k_h}};
   ef_components part;
   ef__ciede2000_terms(r, s, &t);
-  return weighted(&t, k_l, k_c, k_h, &part);
+  return weighted(&t, factor, &part);
 }
 
 /* The formula for two colours that meet. G belongs to the pair, not to each
@@ -141,10 +145,16 @@ double ef_delta_e_ciede2000(ef_lab reference, ef_lab sample, double k_l,
  * first order: the change of G moves both colours alike and drops out. With
  * dC' and dH' along and across the hue the form is
  * (dL/S_L)^2 + (dC'/S_C)^2 + (dH'/S_H)^2 + R_T dC' dH' / (S_C S_H).
- * On the neutral axis S_C = S_H = 1 and R_T = 0: any hue gives the same. */
-static void tensor(const double coordinate[3], double g[9]) {
+ * On the neutral axis S_C = S_H = 1 and R_T = 0, and a step away from it is all
+ * chroma, so that k_C holds for every direction. */
+static void tensor(const ef_metric *self, const double coordinate[3],
+                   double g[9]) {
   ef__ciede2000 t;
   ef__ciede2000_terms(coordinate, coordinate, &t);
+  t.s_l *= self->parameter[0].value;
+  t.s_c *= self->parameter[1].value;
+  t.s_h *= self->parameter[2].value;
+  if (t.chroma1 == 0) t.s_h = t.s_c;
   const double cc = 1 / (t.s_c * t.s_c), hh = 1 / (t.s_h * t.s_h);
   const double ch = t.r_t / (2 * t.s_c * t.s_h);
   const double c = t.cos_h, s = t.sin_h, scale = t.one_plus_g;
@@ -159,6 +169,9 @@ static void tensor(const double coordinate[3], double g[9]) {
 const ef_metric ef__metric_ciede2000 = {
     .name = "ciede2000",
     .title = "CIEDE2000",
+    .parameter = {{"kl", 1, "divides the lightness difference"},
+                  {"kc", 1, "divides the chroma difference"},
+                  {"kh", 1, "divides the hue difference"}},
     .symbol = "Delta E*00",
     .source = "ISO/CIE 11664-6:2014",
     .jnd = {0.8, "50 % of observers see it (50:50 perceptibility)",

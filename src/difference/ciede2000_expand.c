@@ -158,7 +158,8 @@ static jet delta_hue(const ef__ciede2000 *t, const polar *p) {
   return out;
 }
 
-static void expand_lightness(const ef__ciede2000 *t, ef__expansion *out) {
+static void expand_lightness(const ef__ciede2000 *t, double k_l,
+                             ef__expansion *out) {
   const double x = t->mean_l - 50;
   const double q = 20 + x * x, root = sqrt(q);
   /* Derivatives of S_L (eq. 18) by the sample's L*, which moves the mean by
@@ -169,10 +170,10 @@ static void expand_lightness(const ef__ciede2000 *t, ef__expansion *out) {
   const double slope = w - d * first * w * w;
   const double bend =
       w * w * (2 * d * first * first * w - 2 * first - d * second);
-  const double part = d * w;
-  out->square = part * part;
-  out->gradient[0] = 2 * part * slope;
-  out->hessian[0] = 2 * (slope * slope + part * bend);
+  const double part = d * w, scale = 1 / (k_l * k_l);
+  out->square = part * part * scale;
+  out->gradient[0] = 2 * part * slope * scale;
+  out->hessian[0] = 2 * (slope * slope + part * bend) * scale;
 }
 
 /* On the neutral axis the formula has a kink; the expansion is then that of a
@@ -191,21 +192,25 @@ static void beside_kink(const double reference[3], const double sample[3],
   moved[2] = chroma > 0 ? 2 * KINK * reference[2] / chroma : 0;
 }
 
-void ef__ciede2000_expand(const double reference[3], const double sample[3],
-                          ef__expansion *out) {
+void ef__ciede2000_expand(const ef_metric *self, const double reference[3],
+                          const double sample[3], ef__expansion *out) {
   double moved[3];
   beside_kink(reference, sample, moved);
   ef__ciede2000 t;
+  const double chroma_scale = 1 / self->parameter[1].value;
+  const double hue_scale = 1 / self->parameter[2].value;
   ef__ciede2000_terms(reference, moved, &t);
-  expand_lightness(&t, out);
+  expand_lightness(&t, self->parameter[0].value, out);
 
   const polar p = polar_of(&t, reference, moved);
   const jet mean_c = combine(0.5, p.chroma1, 0.5, p.chroma2);
   const jet mean_h = combine(0.5, p.hue1, 0.5, p.hue2);
-  const jet chroma = multiply(combine(1, p.chroma2, -1, p.chroma1),
-                              weight(0.045, mean_c));
+  const jet delta_c =
+      combine(chroma_scale, p.chroma2, -chroma_scale, p.chroma1);
+  const jet chroma = multiply(delta_c, weight(0.045, mean_c));
+  const jet delta_h = delta_hue(&t, &p);
   const jet hue =
-      multiply(delta_hue(&t, &p),
+      multiply(combine(hue_scale, delta_h, 0, delta_h),
                weight(0.015, multiply(mean_c, hue_weight(&t, mean_h))));
   const jet mixed = multiply(rotation(&t, mean_c, mean_h),
                              multiply(chroma, hue));

@@ -1,7 +1,9 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /** \file
  * What a difference formula is made of. A new formula is one file that fills
- * one of these tables, and one line in formula.c. */
+ * one of these tables, and one line in formula.c. Outside this folder formulas
+ * are used through the functions of evenfield/difference.h and the two at the
+ * end. */
 #ifndef EVENFIELD_DIFFERENCE_PRIVATE_H
 #define EVENFIELD_DIFFERENCE_PRIVATE_H
 
@@ -15,34 +17,54 @@ typedef struct ef__expansion {
   double hessian[9]; /**< row-major, symmetric, may be indefinite */
 } ef__expansion;
 
+/** The most parameters that a formula has. */
+#define EF__MAX_PARAMETERS 5
+
+/** A set of parameters that is published under a name: parameters in the order
+ * of the formula's own, NaN where the set leaves one alone. */
+typedef struct ef__parameter_set {
+  const char *name;
+  double value[EF__MAX_PARAMETERS];
+} ef__parameter_set;
+
 /** A formula. Coordinate 0 is lightness, 1 and 2 span the chromatic plane with
  * the neutral axis at 0. Functions marked optional may be NULL; the wrappers
- * below then do without. */
+ * below then do without. Every function gets the formula itself, for its
+ * parameters. */
 struct ef_metric {
   const char *name;
   const char *title;
+  const char *family; /**< title without the values of the parameters; NULL
+                           when the title has none */
   const char *symbol;
   const char *source;
   ef_jnd jnd;
-  void (*coordinates)(ef_xyz xyz, const ef_conditions *conditions,
-                      double coordinate[3]);
-  ef_xyz (*inverse)(const double coordinate[3],
+  bool asymmetric; /**< the reference's weights count, not the sample's */
+  /** All above zero; names NULL after the last. */
+  ef_parameter parameter[EF__MAX_PARAMETERS];
+  const ef__parameter_set *parameter_set; /**< NULL, or ends with name NULL */
+  void (*coordinates)(const ef_metric *self, ef_xyz xyz,
+                      const ef_conditions *conditions, double coordinate[3]);
+  ef_xyz (*inverse)(const ef_metric *self, const double coordinate[3],
                     const ef_conditions *conditions);
-  void (*jacobian)(ef_xyz xyz, const ef_conditions *conditions,
-                   double jacobian[9]);
-  double (*difference)(const double reference[3], const double sample[3]);
-  double (*components)(const double reference[3], const double sample[3],
-                       ef_components *components);
-  void (*tensor)(const double coordinate[3], double tensor[9]);
+  void (*jacobian)(const ef_metric *self, ef_xyz xyz,
+                   const ef_conditions *conditions, double jacobian[9]);
+  double (*difference)(const ef_metric *self, const double reference[3],
+                       const double sample[3]);
+  double (*components)(const ef_metric *self, const double reference[3],
+                       const double sample[3], ef_components *components);
+  void (*tensor)(const ef_metric *self, const double coordinate[3],
+                 double tensor[9]);
   /** Optional: the squared difference around `sample`, with respect to the
    * sample. Without it: central differences of `difference`. */
-  void (*expand)(const double reference[3], const double sample[3],
-                 ef__expansion *out);
+  void (*expand)(const ef_metric *self, const double reference[3],
+                 const double sample[3], ef__expansion *out);
   /** Optional: carries an expansion in coordinates to one in XYZ at the colour
    * with these coordinates, the bending of the coordinates included. Without
    * it: the Jacobian alone, which leaves the bending out. */
-  void (*carry)(const double coordinate[3], const ef_conditions *conditions,
-                const ef__expansion *in, ef__expansion *out);
+  void (*carry)(const ef_metric *self, const double coordinate[3],
+                const ef_conditions *conditions, const ef__expansion *in,
+                ef__expansion *out);
 };
 
 /* ---- The formulas ------------------------------------------------------ */
@@ -52,14 +74,16 @@ extern const ef_metric ef__metric_ciede2000; /* ciede2000.c */
 
 /* ---- Shared by formulas on CIELAB (lab_based.c) ------------------------ */
 
-void ef__lab_coordinates(ef_xyz xyz, const ef_conditions *conditions,
+void ef__lab_coordinates(const ef_metric *self, ef_xyz xyz,
+                         const ef_conditions *conditions,
                          double coordinate[3]);
-ef_xyz ef__lab_inverse(const double coordinate[3],
+ef_xyz ef__lab_inverse(const ef_metric *self, const double coordinate[3],
                        const ef_conditions *conditions);
-void ef__lab_jacobian(ef_xyz xyz, const ef_conditions *conditions,
-                      double jacobian[9]);
-void ef__lab_carry(const double coordinate[3], const ef_conditions *conditions,
-                   const ef__expansion *in, ef__expansion *out);
+void ef__lab_jacobian(const ef_metric *self, ef_xyz xyz,
+                      const ef_conditions *conditions, double jacobian[9]);
+void ef__lab_carry(const ef_metric *self, const double coordinate[3],
+                   const ef_conditions *conditions, const ef__expansion *in,
+                   ef__expansion *out);
 
 /** Delta H of two points of a chromatic plane with chromas of product
  * `chroma_product`: the side of the hue triangle, positive anticlockwise, and
@@ -91,26 +115,35 @@ double ef__ciede2000_saturation(double chroma);
  * and second derivative by the hue in radians. */
 double ef__ciede2000_hue_weight(double cos_h, double sin_h,
                                 double derivative[2]);
-void ef__ciede2000_expand(const double reference[3], const double sample[3],
-                          ef__expansion *out);
+void ef__ciede2000_expand(const ef_metric *self, const double reference[3],
+                          const double sample[3], ef__expansion *out);
 
 /* ---- Tools for formulas (tensor.c) ------------------------------------- */
 
 /** For formulas that are the Euclidean distance of their coordinates. */
-double ef__euclidean_difference(const double reference[3],
+double ef__euclidean_difference(const ef_metric *self,
+                                const double reference[3],
                                 const double sample[3]);
-double ef__euclidean_components(const double reference[3],
+double ef__euclidean_components(const ef_metric *self,
+                                const double reference[3],
                                 const double sample[3],
                                 ef_components *components);
-void ef__euclidean_tensor(const double coordinate[3], double tensor[9]);
-void ef__euclidean_expand(const double reference[3], const double sample[3],
-                          ef__expansion *out);
+void ef__euclidean_tensor(const ef_metric *self, const double coordinate[3],
+                          double tensor[9]);
+void ef__euclidean_expand(const ef_metric *self, const double reference[3],
+                          const double sample[3], ef__expansion *out);
 
 /** Local tensor from second differences of the formula: for formulas without a
  * closed form, and to check those that have one. Relative error about 1e-6
  * away from kinks of the formula. */
 void ef__numeric_tensor(const ef_metric *metric, const double coordinate[3],
                         double tensor[9]);
+
+/* ---- By name (formula.c) ----------------------------------------------- */
+
+/** The registered formula whose name is `name[0 .. length)`. */
+const ef_metric *ef__metric_find(const char *name, size_t length,
+                                 ef_error *error);
 
 /* ---- For solvers (formula.c) ------------------------------------------- */
 

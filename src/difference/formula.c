@@ -5,6 +5,7 @@
 #include "base/base_private.h"
 
 #include <math.h>
+#include <string.h>
 
 /* Every formula, in the order outputs list them. */
 static const ef_metric *const formulas[] = {
@@ -19,15 +20,25 @@ const ef_metric *ef_metric_at(size_t i) {
   return i < N_FORMULAS ? formulas[i] : NULL;
 }
 
-const ef_metric *ef_metric_find(const char *name, ef_error *error) {
+const ef_metric *ef__metric_find(const char *name, size_t length,
+                                 ef_error *error) {
+  enum { LONGEST = 63 }; /* what an error quotes */
+  char whole[LONGEST + 1];
+  const size_t kept = length < LONGEST ? length : LONGEST;
+  memcpy(whole, name, kept);
+  whole[kept] = '\0';
   const char *known[N_FORMULAS];
   for (size_t i = 0; i < N_FORMULAS; ++i) {
     known[i] = formulas[i]->name;
-    if (name != NULL && ef__name_equal(name, known[i])) return formulas[i];
+    if (ef__name_equal(whole, known[i])) return formulas[i];
   }
-  ef__error_unknown(error, "difference formula", name != NULL ? name : "",
-                    known, N_FORMULAS);
+  ef__error_unknown(error, "difference formula", whole, known, N_FORMULAS);
   return NULL;
+}
+
+const ef_metric *ef_metric_find(const char *name, ef_error *error) {
+  if (name == NULL) name = "";
+  return ef__metric_find(name, strlen(name), error);
 }
 
 const char *ef_metric_name(const ef_metric *metric) { return metric->name; }
@@ -39,37 +50,40 @@ const char *ef_metric_source(const ef_metric *metric) {
   return metric->source;
 }
 ef_jnd ef_metric_jnd(const ef_metric *metric) { return metric->jnd; }
+bool ef_metric_symmetric(const ef_metric *metric) {
+  return !metric->asymmetric;
+}
 
 void ef_metric_coordinates(const ef_metric *metric, ef_xyz xyz,
                            const ef_conditions *conditions,
                            double coordinate[3]) {
-  metric->coordinates(xyz, conditions, coordinate);
+  metric->coordinates(metric, xyz, conditions, coordinate);
 }
 
 ef_xyz ef_metric_xyz(const ef_metric *metric, const double coordinate[3],
                      const ef_conditions *conditions) {
-  return metric->inverse(coordinate, conditions);
+  return metric->inverse(metric, coordinate, conditions);
 }
 
 void ef_metric_jacobian(const ef_metric *metric, ef_xyz xyz,
                         const ef_conditions *conditions, double jacobian[9]) {
-  metric->jacobian(xyz, conditions, jacobian);
+  metric->jacobian(metric, xyz, conditions, jacobian);
 }
 
 double ef_metric_difference(const ef_metric *metric, const double reference[3],
                             const double sample[3]) {
-  return metric->difference(reference, sample);
+  return metric->difference(metric, reference, sample);
 }
 
 double ef_metric_components(const ef_metric *metric, const double reference[3],
                             const double sample[3],
                             ef_components *components) {
-  return metric->components(reference, sample, components);
+  return metric->components(metric, reference, sample, components);
 }
 
 void ef_metric_tensor(const ef_metric *metric, const double coordinate[3],
                       double tensor[9]) {
-  metric->tensor(coordinate, tensor);
+  metric->tensor(metric, coordinate, tensor);
 }
 
 typedef struct batch {
@@ -81,9 +95,10 @@ typedef struct batch {
 
 static void batch_range(void *context, size_t begin, size_t end) {
   const batch *const b = context;
+  const ef_metric *const metric = b->metric;
   for (size_t i = begin; i < end; ++i) {
     b->difference[i] =
-        b->metric->difference(b->reference + 3 * i, b->sample + 3 * i);
+        metric->difference(metric, b->reference + 3 * i, b->sample + 3 * i);
   }
 }
 
@@ -99,7 +114,7 @@ static double square_at(const ef_metric *metric, const double reference[3],
                         const double sample[3], const double step[3]) {
   const double moved[3] = {sample[0] + step[0], sample[1] + step[1],
                            sample[2] + step[2]};
-  const double d = metric->difference(reference, moved);
+  const double d = metric->difference(metric, reference, moved);
   return d * d;
 }
 
@@ -136,7 +151,7 @@ static void expand_numerically(const ef_metric *metric,
 void ef__metric_expand(const ef_metric *metric, const double reference[3],
                        const double sample[3], ef__expansion *out) {
   if (metric->expand != NULL) {
-    metric->expand(reference, sample, out);
+    metric->expand(metric, reference, sample, out);
   } else {
     expand_numerically(metric, reference, sample, out);
   }
@@ -146,11 +161,11 @@ void ef__metric_carry(const ef_metric *metric, ef_xyz xyz,
                       const double sample[3], const ef_conditions *conditions,
                       const ef__expansion *in, ef__expansion *out) {
   if (metric->carry != NULL) {
-    metric->carry(sample, conditions, in, out);
+    metric->carry(metric, sample, conditions, in, out);
     return;
   }
   double j[9], transposed[9], hj[9];
-  metric->jacobian(xyz, conditions, j);
+  metric->jacobian(metric, xyz, conditions, j);
   ef__mat3_transpose(j, transposed);
   ef__mat3_apply(transposed, in->gradient, out->gradient);
   ef__mat3_multiply(in->hessian, j, hj);

@@ -23,22 +23,26 @@ double ef__delta_hue(double a1, double b1, double a2, double b2,
   return copysign(size, cross);
 }
 
-void ef__lab_coordinates(ef_xyz xyz, const ef_conditions *conditions,
+void ef__lab_coordinates(const ef_metric *self, ef_xyz xyz,
+                         const ef_conditions *conditions,
                          double coordinate[3]) {
+  (void)self;
   const ef_lab lab = ef_xyz_to_lab(xyz, conditions->white);
   coordinate[0] = lab.L_star;
   coordinate[1] = lab.a_star;
   coordinate[2] = lab.b_star;
 }
 
-ef_xyz ef__lab_inverse(const double coordinate[3],
+ef_xyz ef__lab_inverse(const ef_metric *self, const double coordinate[3],
                        const ef_conditions *conditions) {
+  (void)self;
   const ef_lab lab = {coordinate[0], coordinate[1], coordinate[2]};
   return ef_lab_to_xyz(lab, conditions->white);
 }
 
-void ef__lab_jacobian(ef_xyz xyz, const ef_conditions *conditions,
-                      double jacobian[9]) {
+void ef__lab_jacobian(const ef_metric *self, ef_xyz xyz,
+                      const ef_conditions *conditions, double jacobian[9]) {
+  (void)self;
   ef_lab_jacobian(xyz, conditions->white, jacobian);
 }
 
@@ -57,8 +61,10 @@ static void slopes(double f, double white, double *first, double *second) {
 /* With L* = 116 fY - 16, a* = 500 (fX - fY), b* = 200 (fY - fZ): each f
  * depends on one tristimulus value, so that the second derivatives of the
  * coordinates only fill the diagonal. */
-void ef__lab_carry(const double coordinate[3], const ef_conditions *conditions,
-                   const ef__expansion *in, ef__expansion *out) {
+void ef__lab_carry(const ef_metric *self, const double coordinate[3],
+                   const ef_conditions *conditions, const ef__expansion *in,
+                   ef__expansion *out) {
+  (void)self;
   const ef_xyz white = conditions->white;
   const double f_y = (coordinate[0] + 16) / 116;
   const double f_x = f_y + coordinate[1] / 500;
@@ -94,7 +100,7 @@ void ef__lab_carry(const double coordinate[3], const ef_conditions *conditions,
 double ef_delta_e_cielab(ef_lab reference, ef_lab sample) {
   const double r[3] = {reference.L_star, reference.a_star, reference.b_star};
   const double s[3] = {sample.L_star, sample.a_star, sample.b_star};
-  return ef__euclidean_difference(r, s);
+  return ef__euclidean_difference(&ef__metric_cielab, r, s);
 }
 
 const ef_metric ef__metric_cielab = {

@@ -5,15 +5,18 @@
 
 #include <math.h>
 
-double ef__euclidean_difference(const double reference[3],
+double ef__euclidean_difference(const ef_metric *self,
+                                const double reference[3],
                                 const double sample[3]) {
+  (void)self;
   const double d0 = sample[0] - reference[0];
   const double d1 = sample[1] - reference[1];
   const double d2 = sample[2] - reference[2];
   return sqrt(d0 * d0 + d1 * d1 + d2 * d2);
 }
 
-double ef__euclidean_components(const double reference[3],
+double ef__euclidean_components(const ef_metric *self,
+                                const double reference[3],
                                 const double sample[3],
                                 ef_components *components) {
   const double c1 =
@@ -23,16 +26,19 @@ double ef__euclidean_components(const double reference[3],
   components->chroma = c2 - c1;
   components->hue = ef__delta_hue(reference[1], reference[2], sample[1],
                                   sample[2], c1 * c2);
-  return ef__euclidean_difference(reference, sample);
+  return ef__euclidean_difference(self, reference, sample);
 }
 
-void ef__euclidean_tensor(const double coordinate[3], double tensor[9]) {
+void ef__euclidean_tensor(const ef_metric *self, const double coordinate[3],
+                          double tensor[9]) {
+  (void)self;
   (void)coordinate;
   for (int i = 0; i < 9; ++i) tensor[i] = i % 4 == 0;
 }
 
-void ef__euclidean_expand(const double reference[3], const double sample[3],
-                          ef__expansion *out) {
+void ef__euclidean_expand(const ef_metric *self, const double reference[3],
+                          const double sample[3], ef__expansion *out) {
+  (void)self;
   out->square = 0;
   for (int i = 0; i < 3; ++i) {
     const double d = sample[i] - reference[i];
@@ -43,7 +49,8 @@ void ef__euclidean_expand(const double reference[3], const double sample[3],
 }
 
 /* Squared difference of two points placed symmetrically, so that what depends
- * on their mean stays put and the error is of fourth order in the step. */
+ * on their mean stays put and the error is of fourth order in the step; of a
+ * formula that takes its weights from the reference the mean of both orders. */
 static double square_across(const ef_metric *metric,
                             const double coordinate[3], const double step[3]) {
   double before[3], after[3];
@@ -51,8 +58,10 @@ static double square_across(const ef_metric *metric,
     before[i] = coordinate[i] - step[i] / 2;
     after[i] = coordinate[i] + step[i] / 2;
   }
-  const double d = metric->difference(before, after);
-  return d * d;
+  const double d = metric->difference(metric, before, after);
+  if (!metric->asymmetric) return d * d;
+  const double back = metric->difference(metric, after, before);
+  return (d * d + back * back) / 2;
 }
 
 /* The polarisation identity turns squared lengths into the form itself. The
