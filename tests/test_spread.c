@@ -267,7 +267,7 @@ static void threshold_is_the_jnd(void **state) {
   ef_population_spread(population, N_PAIRS, &p->target, &p->match, &settings, 1,
                        by_default, NULL, NULL, NULL);
   settings.threshold = ef_metric_jnd(settings.metric).value;
-  assert_false(isnan(settings.threshold));
+  assert_true(settings.threshold > 0);
   ef_population_spread(population, N_PAIRS, &p->target, &p->match, &settings, 1,
                        by_number, NULL, NULL, NULL);
   assert_memory_equal(by_default, by_number, sizeof by_default);
