@@ -33,7 +33,9 @@ static size_t read_demo(const char *file, ef_extension extension,
   const size_t n = f.n_columns - 1;
   assert_true(n <= MOST_TARGETS);
   for (size_t c = 0; c < n; ++c) {
-    for (size_t r = 0; r < f.n_rows; ++r) column[r] = figures_number(&f, r, c + 1);
+    for (size_t r = 0; r < f.n_rows; ++r) {
+      column[r] = figures_number(&f, r, c + 1);
+    }
     assert_int_equal(ef_resample(&from, 1, column, &grid, EF_INTERPOLATE_AUTO,
                                  extension, value + c * SAMPLES, NULL),
                      EF_OK);
@@ -74,7 +76,9 @@ static void solve(const double primary_xyz[9], const double xyz[3],
 static void mix(const double *primary, const double amount[3], double *out) {
   for (size_t i = 0; i < SAMPLES; ++i) {
     out[i] = 0;
-    for (size_t k = 0; k < 3; ++k) out[i] += amount[k] * primary[k * SAMPLES + i];
+    for (size_t k = 0; k < 3; ++k) {
+      out[i] += amount[k] * primary[k * SAMPLES + i];
+    }
   }
 }
 

@@ -150,7 +150,7 @@ static void shift_is_along_wavelength(void **state) {
 /* Directions that follow from the equations alone. */
 static void departures_act_where_they_should(void **state) {
   (void)state;
-  const ef_grid at = {.count = 2, .start_nm = 430, .step_nm = 30}; /* 430, 460 */
+  const ef_grid at = {.count = 2, .start_nm = 430, .step_nm = 30};
   const ef_cone_model mean = ef_cone_model_default();
   double lens[2], more[2], macular[2], less[2], density[3], own[3];
   ef_cone_model_media(&mean, &at, lens, macular, NULL);
@@ -558,7 +558,9 @@ static void dichromat_view_keeps_what_is_seen(void **state) {
         ef_dichromat_view_make(kinds[k], observer, neutral, &view, NULL),
         EF_OK);
     ef_dichromat_view_apply(&view, neutral, out);
-    for (size_t c = 0; c < 3; ++c) assert_near_relative(out[c], neutral[c], 1e-13);
+    for (size_t c = 0; c < 3; ++c) {
+      assert_near_relative(out[c], neutral[c], 1e-13);
+    }
     for (size_t side = 0; side < 2; ++side) {
       spectral_lms(observer, anchors[k][side], lms);
       ef_dichromat_view_apply(&view, lms, out);

@@ -434,8 +434,8 @@ static void settings_are_checked(void **state) {
   s.count = 0;
   check_refused(&s, "a population of 0 observers; 1 to 1000000 are possible");
   s.count = 10000000;
-  check_refused(&s,
-                "a population of 10000000 observers; 1 to 1000000 are possible");
+  check_refused(&s, "a population of 10000000 observers; 1 to 1000000 are "
+                    "possible");
   s = ef_population_settings_default();
   s.age_min_years = 10;
   check_refused(&s, "the ages go from 10 to 70 years; the observer model takes "

@@ -210,8 +210,9 @@ EF_API ef_status ef_cone_model_media(const ef_cone_model *model,
  * 170-2:2015 as published, in every digit. The CIE gives none for fields
  * between; ours is the linear interpolation of the two in exp(-f / 6.132), the
  * model's own law of the macular pigment, with the rows of x and z then scaled
- * so that the equal-energy spectrum has x = y = 1/3 for the mean observer of
- * the field, which is the condition CIE 170-2 sets for its own two. Fields
+ * so that the equal-energy spectrum has x = y = 1/3 (to 6e-5, what the
+ * templates leave) for the mean observer of the field, which is the condition
+ * CIE 170-2 sets for its own two. Fields
  * below 2 degrees: the 2 degree matrix with the same scaling. */
 EF_API ef_status ef_cone_xyz_matrix(double field_deg, double matrix[9],
                                     double *k_m, ef_error *error);

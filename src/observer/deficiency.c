@@ -46,7 +46,8 @@ ef_status ef_cone_model_make_anomalous(ef_cone_model *model, ef_anomaly anomaly,
   if (!(shift_nm > 0 && shift_nm <= MEETING_NM)) {
     return ef__error_set(error, EF_INVALID,
                          "a shift of %g nm of the %s pigment towards %s; it "
-                         "must be above 0 and at most %d nm, where the two meet",
+                         "must be above 0 and at most %d nm, where the two "
+                         "meet",
                          shift_nm, is_protan ? "L" : "M", is_protan ? "M" : "L",
                          MEETING_NM);
   }
@@ -74,8 +75,9 @@ static void cross(const double a[3], const double b[3], double out[3]) {
 static void excite(const ef_observer *observer, double wavelength_nm,
                    double lms[3]) {
   const ef_channels cones = ef_observer_channels(observer, EF_CONES);
-  const size_t i =
-      (size_t)lround((wavelength_nm - cones.grid.start_nm) / cones.grid.step_nm);
+  const double place =
+      (wavelength_nm - cones.grid.start_nm) / cones.grid.step_nm;
+  const size_t i = (size_t)lround(place);
   for (size_t c = 0; c < 3; ++c) lms[c] = cones.value[c * cones.grid.count + i];
 }
 

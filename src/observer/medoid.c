@@ -1,9 +1,9 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /* A few observers that stand for many: k medoids of the fundamentals. Under the
  * squared Euclidean distance the sum of distances from a member m to a group is
- * n |m - mean|^2 plus the same for all m, so the medoid of a group is the member
- * nearest to its mean, and a round of Voronoi iteration costs no more than one
- * of k-means. */
+ * n |m - mean|^2 plus the same for all m, so the medoid of a group is the
+ * member nearest to its mean, and a round of Voronoi iteration costs no more
+ * than one of k-means. */
 #include <float.h>
 #include <stdlib.h>
 #include <string.h>

@@ -171,10 +171,10 @@ ef_status ef__model_parse(const char *name, bool *is_model,
 
 void ef__model_name(const ef_cone_model *model, char name[EF__MODEL_NAME]) {
   ef_cone_model copy = *model;
+  const bool is_whole = model->deficiency == EF_TRICHROMAT;
   size_t used = (size_t)snprintf(
       name, EF__MODEL_NAME, "%s",
-      model->deficiency == EF_TRICHROMAT ? "model"
-                                         : ef_deficiency_name(model->deficiency));
+      is_whole ? "model" : ef_deficiency_name(model->deficiency));
   for (size_t i = 0; i < SHIFT; ++i) {
     const double value = *setting_place(&copy, i);
     const bool is_always_told = i < 2;

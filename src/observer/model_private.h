@@ -102,8 +102,8 @@ double ef__dichromat_scale(const ef__cones *cones, const ef_cone_model *model,
 
 /* ---- Names (model_name.c) ---------------------------------------------- */
 
-/** A name of ef_observer_model_names with or without settings -> model. *is_model
- * false, and EF_OK, when `name` does not begin with one of these. */
+/** A name of ef_observer_model_names with or without settings -> model.
+ * *is_model false, and EF_OK, when `name` does not begin with one of these. */
 ef_status ef__model_parse(const char *name, bool *is_model,
                           ef_cone_model *model, ef_error *error);
 

@@ -15,7 +15,9 @@
  * other end alike. The rest is a tridiagonal system of m_2 ... m_{n-3}. */
 static void find_second(size_t n, const double *y, double *m) {
   double upper[EF__CURVE_ROOM];
-  for (size_t i = 1; i + 1 < n; ++i) m[i] = 6 * (y[i - 1] - 2 * y[i] + y[i + 1]);
+  for (size_t i = 1; i + 1 < n; ++i) {
+    m[i] = 6 * (y[i - 1] - 2 * y[i] + y[i + 1]);
+  }
   m[1] /= 6;
   m[n - 2] /= 6;
   for (size_t i = 2; i + 2 < n; ++i) {

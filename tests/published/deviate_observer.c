@@ -1,7 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-/* The CIE standard deviate observer (CIE 80-1989; CIE 15:2004 Table T.10) beside
- * a population of individuals: how alike what the deviate sees of a metameric
- * pair is to what people see. The table is not part of this repository: the
+/* The CIE standard deviate observer (CIE 80-1989; CIE 15:2004 Table T.10)
+ * beside a population of individuals: how alike what the deviate sees of a
+ * metameric pair is to what people see. The table is not part of this repository: the
  * environment variable EVENFIELD_REFERENCE names a folder with
  * surfaces/observer_deviate_cie80.csv; without it the tests are skipped.
  *
@@ -30,7 +30,8 @@ static void read_deviate(double delta[3 * SAMPLES]) {
   size_t row = 0;
   while (fgets(line, sizeof line, file) != NULL) {
     double nm, d[3];
-    if (sscanf(line, "%lf,%lf,%lf,%lf", &nm, &d[0], &d[1], &d[2]) != 4) continue;
+    const int n = sscanf(line, "%lf,%lf,%lf,%lf", &nm, &d[0], &d[1], &d[2]);
+    if (n != 4) continue;
     assert_true(row < SAMPLES && nm == 380 + 5 * (double)row);
     for (size_t c = 0; c < 3; ++c) delta[c * SAMPLES + row] = d[c];
     ++row;
@@ -213,8 +214,8 @@ static void deviate_beside_people(void **state) {
 int main(void) {
   const char *const folder = getenv("EVENFIELD_REFERENCE");
   if (folder == NULL || folder[0] == '\0') {
-    printf("1..0 # SKIP EVENFIELD_REFERENCE is not set, the deviate observer is "
-           "left out\n");
+    printf("1..0 # SKIP EVENFIELD_REFERENCE is not set, the deviate observer "
+           "is left out\n");
     return 0;
   }
   const struct CMUnitTest tests[] = {
