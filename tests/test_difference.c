@@ -88,36 +88,50 @@ static void not_a_number_goes_through(void **state) {
   }
 }
 
+/* CIELAB takes any XYZ. The other spaces end with the real colours, or have
+ * slopes without a limit where a response is zero: colours in the gamut of
+ * BT.2020, by its matrix to XYZ. */
+static ef_xyz random_xyz(gen *g, const ef_metric *metric, double least) {
+  if (metric->carry != NULL || strncmp(metric->name, "din99o", 6) == 0) {
+    const double X = gen_between(g, least, 110), Y = gen_between(g, least, 110);
+    return (ef_xyz){X, Y, gen_between(g, least, 110)};
+  }
+  const double R = gen_between(g, 0.5, 100), G = gen_between(g, 0.5, 100);
+  const double B = gen_between(g, 0.5, 100);
+  return (ef_xyz){0.636958 * R + 0.144617 * G + 0.168881 * B,
+                  0.262700 * R + 0.677998 * G + 0.059302 * B,
+                  0.028073 * G + 1.060985 * B};
+}
+
 static void coordinates_come_back(void **state) {
   (void)state;
-  const ef_conditions conditions = {{95.047, 100, 108.883}};
+  const ef_conditions conditions = {.white = {95.047, 100, 108.883}};
   gen g = gen_new(1);
   for (size_t m = 0; m < every_metric_count(); ++m) {
     for (int i = 0; i < 2000; ++i) {
-      const ef_xyz xyz = {gen_between(&g, -5, 110), gen_between(&g, -5, 110),
-                          gen_between(&g, -5, 110)};
+      const ef_xyz xyz = random_xyz(&g, every_metric(m), -5);
       double c[3];
       ef_metric_coordinates(every_metric(m), xyz, &conditions, c);
       const ef_xyz back = ef_metric_xyz(every_metric(m), c, &conditions);
-      assert_near(back.X, xyz.X, 1e-11);
-      assert_near(back.Y, xyz.Y, 1e-11);
-      assert_near(back.Z, xyz.Z, 1e-11);
+      /* The flat end of a compression magnifies 1e-14 by some hundreds. */
+      assert_near(back.X, xyz.X, 5e-11);
+      assert_near(back.Y, xyz.Y, 5e-11);
+      assert_near(back.Z, xyz.Z, 5e-11);
     }
   }
 }
 
 static void jacobian_is_the_slope_of_the_coordinates(void **state) {
   (void)state;
-  const ef_conditions conditions = {{95.047, 100, 108.883}};
+  const ef_conditions conditions = {.white = {95.047, 100, 108.883}};
   const double h = 1e-5;
   gen g = gen_new(2);
   for (size_t m = 0; m < every_metric_count(); ++m) {
     for (int i = 0; i < 2000; ++i) {
-      const double v[3] = {gen_between(&g, 0.1, 110), gen_between(&g, 0.1, 110),
-                           gen_between(&g, 0.1, 110)};
+      const ef_xyz xyz = random_xyz(&g, every_metric(m), 0.1);
+      const double v[3] = {xyz.X, xyz.Y, xyz.Z};
       double j[9];
-      ef_metric_jacobian(every_metric(m), (ef_xyz){v[0], v[1], v[2]},
-                         &conditions, j);
+      ef_metric_jacobian(every_metric(m), xyz, &conditions, j);
       for (int k = 0; k < 3; ++k) {
         double u[3] = {v[0], v[1], v[2]}, w[3] = {v[0], v[1], v[2]};
         double cu[3], cw[3];
@@ -219,13 +233,15 @@ static void numeric_expansions_agree(void **state) {
   }
 }
 
-/* Carried to XYZ, gradient and Hessian are those of the composition. */
+/* Carried to XYZ, gradient and Hessian are those of the composition, for
+ * formulas that carry the bending of their coordinates too. */
 static void carried_expansions_are_the_derivatives(void **state) {
   (void)state;
-  const ef_conditions conditions = {{95.047, 100, 108.883}};
+  const ef_conditions conditions = {.white = {95.047, 100, 108.883}};
   const double h = 1e-5;
   for (size_t m = 0; m < every_metric_count(); ++m) {
     const ef_metric *const metric = every_metric(m);
+    if (metric->carry == NULL) continue;
     gen g = gen_new(5);
     for (int i = 0; i < 1000; ++i) {
       const double r[3] = {gen_between(&g, 0, 100), gen_between(&g, -90, 90),
@@ -262,7 +278,7 @@ static void carried_expansions_are_the_derivatives(void **state) {
  * the target itself, where the gradient is zero, nothing is missing. */
 static void plain_carry_is_exact_without_a_gradient(void **state) {
   (void)state;
-  const ef_conditions conditions = {{95.047, 100, 108.883}};
+  const ef_conditions conditions = {.white = {95.047, 100, 108.883}};
   for (size_t m = 0; m < every_metric_count(); ++m) {
     const ef_metric *const metric = every_metric(m);
     ef_metric plain = *metric;

@@ -68,6 +68,28 @@ static void names_tell_what_differs_and_read_back(void **state) {
   ef_metric_free(metric);
 }
 
+static void published_sets_have_names(void **state) {
+  (void)state;
+  ef_metric *const textiles = ef_metric_new("cie94:textiles", NULL);
+  ef_metric *const cmc = ef_metric_new("CMC:1:1", NULL);
+  ef_metric *const same = ef_metric_new("cmc:perceptibility", NULL);
+  ef_metric *const mixed = ef_metric_new("cie94:textiles,kl=1", NULL);
+  assert_string_equal(ef_metric_name(textiles), "cie94:kl=2,k1=0.048,k2=0.014");
+  assert_string_equal(ef_metric_title(textiles),
+                      "CIE94 with kl=2, k1=0.048, k2=0.014");
+  assert_string_equal(ef_metric_name(cmc), "cmc:l=1");
+  assert_string_equal(ef_metric_title(cmc), "CMC(l:c) with l=1, c=1");
+  assert_string_equal(ef_metric_title(same), ef_metric_title(cmc));
+  assert_string_equal(ef_metric_name(mixed), "cie94:k1=0.048,k2=0.014");
+  ef_metric_free(textiles);
+  ef_metric_free(cmc);
+  ef_metric_free(same);
+  ef_metric_free(mixed);
+  ef_error error = {0};
+  assert_null(ef_metric_new("cie94:textile", &error));
+  assert_error(&error, EF_UNKNOWN_NAME, "textiles");
+}
+
 static void bad_texts_are_explained(void **state) {
   (void)state;
   const struct {
@@ -121,6 +143,7 @@ int main(void) {
       cmocka_unit_test(a_bare_name_is_the_registered_formula),
       cmocka_unit_test(factors_are_those_of_the_formula),
       cmocka_unit_test(names_tell_what_differs_and_read_back),
+      cmocka_unit_test(published_sets_have_names),
       cmocka_unit_test(bad_texts_are_explained),
       cmocka_unit_test(memory_may_run_out),
   };

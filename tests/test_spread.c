@@ -117,7 +117,7 @@ static double difference_of_one(const ef_observer *observer,
   const ef_xyz carried = ef_xyz_transform(
       matrix, scaled(see(observer, target, sample), target_factor));
   const ef_xyz xyz = scaled(see(observer, match, shown), match_factor);
-  const ef_conditions conditions = {match_white};
+  const ef_conditions conditions = ef_conditions_default(match_white);
   ef_metric_coordinates(settings->metric, carried, &conditions, reference);
   ef_metric_coordinates(settings->metric, xyz, &conditions, seen);
   return ef_metric_difference(settings->metric, reference, seen);

@@ -24,10 +24,24 @@ typedef struct ef_parameter {
   const char *about; /**< what it does; static */
 } ef_parameter;
 
-/** What the eye is adapted to while it compares. */
+/** What the eye is adapted to while it compares. Members that are zero stand
+ * for the value named, so that the white alone is enough; the members after it
+ * matter to cam02-ucs, cam16-ucs and itp only. */
 typedef struct ef_conditions {
   ef_xyz white; /**< reference white, on the scale of the colours compared */
+  /** Of the white. 0: 1000 / pi, the perfect diffuser under 1000 lx, the
+   * illuminance of the reference conditions of CIE 101-1993. */
+  double white_luminance_cd_m2;
+  /** Luminance factor Y_b of the background, the white's being 100. 0: 20. */
+  double background_Y;
+  /** L_A of the adapting field. 0: that of the background. */
+  double adapting_luminance_cd_m2;
+  ef_surround surround; /**< zero is an average surround */
+  bool discount_illuminant; /**< complete adaptation to the white */
 } ef_conditions;
+
+/** The white and the defaults. */
+EF_API ef_conditions ef_conditions_default(ef_xyz white);
 
 /** Lightness, chroma and hue part of a difference, signed (sample minus
  * reference; hue positive anticlockwise), weighted as the formula weights
@@ -47,7 +61,9 @@ typedef struct ef_jnd {
 /** The registered formulas. */
 EF_API size_t ef_metric_count(void);
 EF_API const ef_metric *ef_metric_at(size_t i);
-/** "cielab", "ciede2000"; EF_UNKNOWN_NAME gives the nearest names. */
+/** "cielab", "cieluv", "cie94" (graphic arts), "cmc" (2:1), "ciede2000",
+ * "din99o", "cam02-ucs", "cam16-ucs", "itp"; EF_UNKNOWN_NAME gives the nearest
+ * names. */
 EF_API const ef_metric *ef_metric_find(const char *name, ef_error *error);
 /** A registered formula with parameters: its name, and after a colon what is
  * to differ from the defaults, separated by commas, the later one counting:
@@ -55,7 +71,14 @@ EF_API const ef_metric *ef_metric_find(const char *name, ef_error *error);
  * writes them, the first parameters in order: `ciede2000:2:1:1`. A bare name
  * is fine. Parameters are finite and above zero. A default JND holds for the
  * default parameters only and is NaN with others. Free with ef_metric_free
- * after the last use. */
+ * after the last use.
+ *
+ *     cie94       kl, kc, kh, k1, k2; sets graphic-arts (default), textiles
+ *     cmc         l, c; sets acceptability (2:1, default), perceptibility (1:1)
+ *     ciede2000   kl, kc, kh
+ *     din99o      ke, kch
+ *     cam02-ucs, cam16-ucs   kl, c1, c2; sets ucs (default), lcd, scd (for
+ *                 large and small differences, published for CIECAM02) */
 EF_API ef_metric *ef_metric_new(const char *text, ef_error *error);
 EF_API void ef_metric_free(ef_metric *metric);
 /** With the parameters that are not the default: "ciede2000:kl=2"; reads back
@@ -75,15 +98,20 @@ EF_API ef_parameter ef_metric_parameter_at(const ef_metric *metric, size_t i);
  * is the standard and its weights count. */
 EF_API bool ef_metric_symmetric(const ef_metric *metric);
 
-/** XYZ to the metric's own coordinates (CIELAB for the CIE formulas) and back.
- * `conditions->white` must be positive. */
+/** XYZ to the metric's own coordinates and back: CIELAB for cielab, cie94, cmc
+ * and ciede2000, CIELUV, L99o a99o b99o, J' a' b', 720 I, 720 T, 720 P for the
+ * others. `conditions->white` must be positive; itp does not adapt to it, so
+ * that its neutral axis is that of D65. NaN where an appearance model is not
+ * defined (colours far outside the real ones). */
 EF_API void ef_metric_coordinates(const ef_metric *metric, ef_xyz xyz,
                                   const ef_conditions *conditions,
                                   double coordinate[3]);
 EF_API ef_xyz ef_metric_xyz(const ef_metric *metric,
                             const double coordinate[3],
                             const ef_conditions *conditions);
-/** d coordinate / d XYZ at `xyz`, row-major. */
+/** d coordinate / d XYZ at `xyz`, row-major. Where there is none: for cieluv at
+ * black that along the grey scale; for cam02-ucs and cam16-ucs on the neutral
+ * axis see ef_ucs_jacobian; for itp at zero responses that of 1e-8 cd/m2. */
 EF_API void ef_metric_jacobian(const ef_metric *metric, ef_xyz xyz,
                                const ef_conditions *conditions,
                                double jacobian[9]);

@@ -27,6 +27,13 @@ typedef struct ef__parameter_set {
   double value[EF__MAX_PARAMETERS];
 } ef__parameter_set;
 
+/** The appearance model that a formula's coordinates stand on. */
+typedef enum ef__base_model {
+  EF__ON_XYZ,
+  EF__ON_CAM02,
+  EF__ON_CAM16
+} ef__base_model;
+
 /** A formula. Coordinate 0 is lightness, 1 and 2 span the chromatic plane with
  * the neutral axis at 0. Functions marked optional may be NULL; the wrappers
  * below then do without. Every function gets the formula itself, for its
@@ -34,11 +41,12 @@ typedef struct ef__parameter_set {
 struct ef_metric {
   const char *name;
   const char *title;
-  const char *family; /**< title without the values of the parameters; NULL
-                           when the title has none */
+  const char *family; /**< title without the values of the parameters, which
+                           are then all added; NULL when it has none */
   const char *symbol;
   const char *source;
   ef_jnd jnd;
+  ef__base_model base;
   bool asymmetric; /**< the reference's weights count, not the sample's */
   /** All above zero; names NULL after the last. */
   ef_parameter parameter[EF__MAX_PARAMETERS];
@@ -49,6 +57,12 @@ struct ef_metric {
                     const ef_conditions *conditions);
   void (*jacobian)(const ef_metric *self, ef_xyz xyz,
                    const ef_conditions *conditions, double jacobian[9]);
+  /** Optional, for coordinates whose slope has no limit on the neutral axis:
+   * the Jacobian, but nearer to the axis than `size` units that of the chord
+   * from the axis to there. Without it: `jacobian`. */
+  void (*chord)(const ef_metric *self, ef_xyz xyz,
+                const ef_conditions *conditions, double size,
+                double jacobian[9]);
   double (*difference)(const ef_metric *self, const double reference[3],
                        const double sample[3]);
   double (*components)(const ef_metric *self, const double reference[3],
@@ -70,7 +84,20 @@ struct ef_metric {
 /* ---- The formulas ------------------------------------------------------ */
 
 extern const ef_metric ef__metric_cielab;    /* lab_based.c */
+extern const ef_metric ef__metric_cieluv;    /* luv.c */
+extern const ef_metric ef__metric_cie94;     /* cie94.c */
+extern const ef_metric ef__metric_cmc;       /* cmc.c */
 extern const ef_metric ef__metric_ciede2000; /* ciede2000.c */
+extern const ef_metric ef__metric_din99o;    /* din99.c */
+extern const ef_metric ef__metric_cam02_ucs; /* ucs.c */
+extern const ef_metric ef__metric_cam16_ucs; /* ucs.c */
+extern const ef_metric ef__metric_itp;       /* itp.c */
+
+/* ---- Conditions with their defaults (conditions.c) --------------------- */
+
+double ef__white_luminance_cd_m2(const ef_conditions *conditions);
+double ef__background_Y(const ef_conditions *conditions);
+double ef__adapting_luminance_cd_m2(const ef_conditions *conditions);
 
 /* ---- Shared by formulas on CIELAB (lab_based.c) ------------------------ */
 
@@ -132,6 +159,33 @@ void ef__euclidean_tensor(const ef_metric *self, const double coordinate[3],
                           double tensor[9]);
 void ef__euclidean_expand(const ef_metric *self, const double reference[3],
                           const double sample[3], ef__expansion *out);
+
+/** For formulas that are so up to divisors of the lightness and of the
+ * chromatic plane. */
+typedef struct ef__scale {
+  double lightness, chromatic;
+} ef__scale;
+double ef__scaled_difference(ef__scale scale, const double reference[3],
+                             const double sample[3]);
+double ef__scaled_components(ef__scale scale, const double reference[3],
+                             const double sample[3],
+                             ef_components *components);
+void ef__scaled_tensor(ef__scale scale, double tensor[9]);
+void ef__scaled_expand(ef__scale scale, const double reference[3],
+                       const double sample[3], ef__expansion *out);
+
+/** For formulas on CIELAB that divide lightness, chroma and hue by weights of
+ * the reference (polar.c). */
+typedef struct ef__polar_weights {
+  double lightness, chroma, hue;
+} ef__polar_weights;
+double ef__polar_components(const ef__polar_weights *w,
+                            const double reference[3], const double sample[3],
+                            ef_components *components);
+void ef__polar_tensor(const ef__polar_weights *w, const double coordinate[3],
+                      double tensor[9]);
+void ef__polar_expand(const ef__polar_weights *w, const double reference[3],
+                      const double sample[3], ef__expansion *out);
 
 /** Local tensor from second differences of the formula: for formulas without a
  * closed form, and to check those that have one. Relative error about 1e-6

@@ -9,8 +9,9 @@
 
 /* Every formula, in the order outputs list them. */
 static const ef_metric *const formulas[] = {
-    &ef__metric_cielab,
-    &ef__metric_ciede2000,
+    &ef__metric_cielab,    &ef__metric_cieluv,    &ef__metric_cie94,
+    &ef__metric_cmc,       &ef__metric_ciede2000, &ef__metric_din99o,
+    &ef__metric_cam02_ucs, &ef__metric_cam16_ucs, &ef__metric_itp,
 };
 enum { N_FORMULAS = sizeof formulas / sizeof formulas[0] };
 

@@ -166,7 +166,8 @@ typedef struct owned_metric {
   char title[TEXT];
 } owned_metric;
 
-/* Writes the parameters that differ from `plain`; false when none does. */
+/* Writes the parameters that differ from `plain` (all of them if that is NULL);
+ * false when none does. */
 static bool write_settings(const ef_metric *metric, const ef_metric *plain,
                            const char *start, const char *between, char *text) {
   size_t used = strlen(text);
@@ -174,7 +175,7 @@ static bool write_settings(const ef_metric *metric, const ef_metric *plain,
   for (size_t i = 0; i < ef_metric_parameter_count(metric); ++i) {
     char number[EF_NUMBER_TEXT];
     const double value = metric->parameter[i].value;
-    if (value == plain->parameter[i].value)
+    if (plain != NULL && value == plain->parameter[i].value)
       continue;
     ef_number_format(value, number);
     const int more =
@@ -193,7 +194,8 @@ static void set_texts(owned_metric *own, const ef_metric *plain) {
            plain->family != NULL ? plain->family : plain->title);
   if (!write_settings(m, plain, ":", ",", own->name))
     return; /* all as registered */
-  write_settings(m, plain, " with ", ", ", own->title);
+  write_settings(m, plain->family != NULL ? NULL : plain, " with ", ", ",
+                 own->title);
   m->name = own->name;
   m->title = own->title;
   m->jnd = (ef_jnd){(double)NAN, "", ""};

@@ -5,47 +5,75 @@
 
 #include <math.h>
 
+double ef__scaled_difference(ef__scale scale, const double reference[3],
+                             const double sample[3]) {
+  const double d0 = (sample[0] - reference[0]) / scale.lightness;
+  const double d1 = (sample[1] - reference[1]) / scale.chromatic;
+  const double d2 = (sample[2] - reference[2]) / scale.chromatic;
+  return sqrt(d0 * d0 + d1 * d1 + d2 * d2);
+}
+
+double ef__scaled_components(ef__scale scale, const double reference[3],
+                             const double sample[3],
+                             ef_components *components) {
+  const double c1 =
+      sqrt(reference[1] * reference[1] + reference[2] * reference[2]);
+  const double c2 = sqrt(sample[1] * sample[1] + sample[2] * sample[2]);
+  components->lightness = (sample[0] - reference[0]) / scale.lightness;
+  components->chroma = (c2 - c1) / scale.chromatic;
+  components->hue = ef__delta_hue(reference[1], reference[2], sample[1],
+                                  sample[2], c1 * c2) /
+                    scale.chromatic;
+  return ef__scaled_difference(scale, reference, sample);
+}
+
+void ef__scaled_tensor(ef__scale scale, double tensor[9]) {
+  for (int i = 1; i < 8; ++i) tensor[i] = 0;
+  tensor[0] = 1 / (scale.lightness * scale.lightness);
+  tensor[4] = tensor[8] = 1 / (scale.chromatic * scale.chromatic);
+}
+
+void ef__scaled_expand(ef__scale scale, const double reference[3],
+                       const double sample[3], ef__expansion *out) {
+  double tensor[9];
+  ef__scaled_tensor(scale, tensor);
+  out->square = 0;
+  for (int i = 0; i < 3; ++i) {
+    const double d = sample[i] - reference[i], weight = tensor[4 * i];
+    out->square += weight * d * d;
+    out->gradient[i] = 2 * weight * d;
+  }
+  for (int i = 0; i < 9; ++i) out->hessian[i] = 2 * tensor[i];
+}
+
+static const ef__scale plain = {1, 1};
+
 double ef__euclidean_difference(const ef_metric *self,
                                 const double reference[3],
                                 const double sample[3]) {
   (void)self;
-  const double d0 = sample[0] - reference[0];
-  const double d1 = sample[1] - reference[1];
-  const double d2 = sample[2] - reference[2];
-  return sqrt(d0 * d0 + d1 * d1 + d2 * d2);
+  return ef__scaled_difference(plain, reference, sample);
 }
 
 double ef__euclidean_components(const ef_metric *self,
                                 const double reference[3],
                                 const double sample[3],
                                 ef_components *components) {
-  const double c1 =
-      sqrt(reference[1] * reference[1] + reference[2] * reference[2]);
-  const double c2 = sqrt(sample[1] * sample[1] + sample[2] * sample[2]);
-  components->lightness = sample[0] - reference[0];
-  components->chroma = c2 - c1;
-  components->hue = ef__delta_hue(reference[1], reference[2], sample[1],
-                                  sample[2], c1 * c2);
-  return ef__euclidean_difference(self, reference, sample);
+  (void)self;
+  return ef__scaled_components(plain, reference, sample, components);
 }
 
 void ef__euclidean_tensor(const ef_metric *self, const double coordinate[3],
                           double tensor[9]) {
   (void)self;
   (void)coordinate;
-  for (int i = 0; i < 9; ++i) tensor[i] = i % 4 == 0;
+  ef__scaled_tensor(plain, tensor);
 }
 
 void ef__euclidean_expand(const ef_metric *self, const double reference[3],
                           const double sample[3], ef__expansion *out) {
   (void)self;
-  out->square = 0;
-  for (int i = 0; i < 3; ++i) {
-    const double d = sample[i] - reference[i];
-    out->square += d * d;
-    out->gradient[i] = 2 * d;
-  }
-  for (int i = 0; i < 9; ++i) out->hessian[i] = i % 4 == 0 ? 2 : 0;
+  ef__scaled_expand(plain, reference, sample, out);
 }
 
 /* Squared difference of two points placed symmetrically, so that what depends

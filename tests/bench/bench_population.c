@@ -69,8 +69,8 @@ static double one_observer(const ef_population *population, size_t i,
   const double *const matrix = ef_weights_matrix(weights);
   const ef_xyz white = dot_3(matrix, match->white, 1);
   const double factor = 100 / white.Y;
-  const ef_conditions conditions = {
-      {factor * white.X, 100, factor * white.Z}};
+  const ef_conditions conditions = ef_conditions_default(
+      (ef_xyz){factor * white.X, 100, factor * white.Z});
   double sum = 0;
   for (size_t p = 0; p < N_PAIRS; ++p) {
     double reference[3], sample[3];

@@ -147,6 +147,30 @@ static void tensors_are_positive_definite(void **state) {
 /* The difference of a small step is the tensor's length of it. The step lies
  * symmetric about the colour, so the error is of second order in the step; on
  * the neutral axis, which has chroma on every side, it begins there. */
+/* Of formulas with weights of the reference the mean of both orders. */
+static double small_difference(const ef_metric *metric, const double from[3],
+                               const double to[3]) {
+  const double there = ef_metric_difference(metric, from, to);
+  if (ef_metric_symmetric(metric)) return there;
+  const double back = ef_metric_difference(metric, to, from);
+  return sqrt((there * there + back * back) / 2);
+}
+
+/* The hue term of CMC has a step at 164 and 345 degrees and a kink at 55 and
+ * 282, its lightness weight a step at L* = 16 (ISO 105-J03). */
+static bool at_a_step(const ef_metric *metric, const double c[3]) {
+  static const double hue_deg[] = {55, 164, 282, 345};
+  if (strncmp(ef_metric_name(metric), "cmc", 3) != 0) return false;
+  const double chroma = sqrt(c[1] * c[1] + c[2] * c[2]);
+  const double h_deg = atan2(c[2], c[1]) * 57.295779513082321;
+  bool at = fabs(c[0] - 16) < 0.01;
+  for (int i = 0; i < 4; ++i) {
+    const double turn = remainder(h_deg - hue_deg[i], 360);
+    at = at || fabs(turn) * chroma < 1;
+  }
+  return at;
+}
+
 static void tensors_measure_small_steps(void **state) {
   (void)state;
   const double size = 1e-3;
@@ -163,9 +187,10 @@ static void tensors_measure_small_steps(void **state) {
         from[k] = i % 4 == 0 ? c[k] : c[k] - step[k] / 2;
         to[k] = from[k] + step[k];
       }
+      if (at_a_step(metric, c)) continue;
       ef_metric_tensor(metric, c, tensor);
       const double expected = sqrt(form(tensor, step));
-      const double ratio = ef_metric_difference(metric, from, to) / expected;
+      const double ratio = small_difference(metric, from, to) / expected;
       char where[96];
       snprintf(where, sizeof where, "L*a*b* %.3f %.3f %.3f", c[0], c[1], c[2]);
       const double chroma = sqrt(c[1] * c[1] + c[2] * c[2]);
@@ -190,6 +215,7 @@ static void closed_tensors_equal_numeric_ones(void **state) {
       double c[3], closed[9], numeric[9];
       random_colour(&g, c);
       if (c[1] * c[1] + c[2] * c[2] < 1) continue; /* near the kink */
+      if (at_a_step(every_metric(m), c)) continue;
       ef_metric_tensor(every_metric(m), c, closed);
       ef__numeric_tensor(every_metric(m), c, numeric);
       /* Rounding 1e-13 in squares of 1e-8 at worst: see tensor.c. */

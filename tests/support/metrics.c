@@ -4,7 +4,8 @@
 #include "near.h"
 
 static const char *const with_parameters[] = {
-    "ciede2000:kl=2,kc=1.5,kh=0.8",
+    "ciede2000:kl=2,kc=1.5,kh=0.8", "cie94:textiles", "cmc:1:1",
+    "din99o:ke=0.7,kch=1.3", "cam16-ucs:scd", "cam02-ucs:lcd",
 };
 enum { N_MORE = sizeof with_parameters / sizeof *with_parameters };
 

@@ -1,0 +1,70 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/* CIE94 (CIE 116-1995). The weights are those of the reference, the standard
+ * of the pair. */
+#include <math.h>
+
+#include "difference/difference_private.h"
+
+enum { K_L, K_C, K_H, K_1, K_2 };
+
+static ef__polar_weights weights(const ef_metric *self,
+                                 const double standard[3]) {
+  const ef_parameter *const p = self->parameter;
+  const double chroma =
+      sqrt(standard[1] * standard[1] + standard[2] * standard[2]);
+  return (ef__polar_weights){p[K_L].value,
+                             p[K_C].value * (1 + p[K_1].value * chroma),
+                             p[K_H].value * (1 + p[K_2].value * chroma)};
+}
+
+static double components(const ef_metric *self, const double reference[3],
+                         const double sample[3], ef_components *part) {
+  const ef__polar_weights w = weights(self, reference);
+  return ef__polar_components(&w, reference, sample, part);
+}
+
+static double difference(const ef_metric *self, const double reference[3],
+                         const double sample[3]) {
+  ef_components part;
+  return components(self, reference, sample, &part);
+}
+
+static void tensor(const ef_metric *self, const double coordinate[3],
+                   double g[9]) {
+  const ef__polar_weights w = weights(self, coordinate);
+  ef__polar_tensor(&w, coordinate, g);
+}
+
+static void expand(const ef_metric *self, const double reference[3],
+                   const double sample[3], ef__expansion *out) {
+  const ef__polar_weights w = weights(self, reference);
+  ef__polar_expand(&w, reference, sample, out);
+}
+
+static const ef__parameter_set sets[] = {
+    {"graphic-arts", {1, (double)NAN, (double)NAN, 0.045, 0.015}},
+    {"textiles", {2, (double)NAN, (double)NAN, 0.048, 0.014}},
+    {NULL, {0}}};
+
+const ef_metric ef__metric_cie94 = {
+    .name = "cie94",
+    .title = "CIE94",
+    .symbol = "Delta E*94",
+    .source = "CIE 116-1995",
+    .jnd = {(double)NAN, "", ""},
+    .asymmetric = true,
+    .parameter = {{"kl", 1, "divides the lightness difference"},
+                  {"kc", 1, "divides the chroma difference"},
+                  {"kh", 1, "divides the hue difference"},
+                  {"k1", 0.045, "growth of the chroma weight with chroma"},
+                  {"k2", 0.015, "growth of the hue weight with chroma"}},
+    .parameter_set = sets,
+    .coordinates = ef__lab_coordinates,
+    .inverse = ef__lab_inverse,
+    .jacobian = ef__lab_jacobian,
+    .difference = difference,
+    .components = components,
+    .tensor = tensor,
+    .expand = expand,
+    .carry = ef__lab_carry,
+};
