@@ -443,14 +443,16 @@ static void check_kind(const char *text, ef_kind_choice asked, ef_kind kind,
 
 static void kind_rule(void **state) {
   (void)state;
-  check_kind("name,400,410\nd,0.5,2\nr,-0.02,0\n", EF_KIND_AUTO, EF_SURFACE,
-             "t.csv: read as surfaces (ratios): no '# quantity:' line says what "
-             "the values are, and those of its rows lie in -0.02 to 2; for "
-             "lights add '# quantity: light'\n");
-  check_kind("wavelength_nm,d\n400,37.25\n410,1.5\n", EF_KIND_AUTO, EF_LIGHT,
-             "t.csv: read as lights: no '# quantity:' line says what the values "
-             "are, and those of its rows lie in 1.5 to 37.25; reflectances in "
-             "percent must be divided by 100\n");
+  check_kind(
+      "name,400,410\nd,0.5,2\nr,-0.02,0\n", EF_KIND_AUTO, EF_SURFACE,
+      "t.csv: read as surfaces (ratios): no '# quantity:' line says what "
+      "the values are, and those of its rows lie in -0.02 to 2; for "
+      "lights add '# quantity: light'\n");
+  check_kind(
+      "wavelength_nm,d\n400,37.25\n410,1.5\n", EF_KIND_AUTO, EF_LIGHT,
+      "t.csv: read as lights: no '# quantity:' line says what the values "
+      "are, and those of its rows lie in 1.5 to 37.25; reflectances in "
+      "percent must be divided by 100\n");
   check_kind("name,400,410\nd,0.5,0.25\n", EF_KIND_LIGHT, EF_LIGHT, "");
   check_kind("# quantity: light\nname,400,410\nd,0.5,0.25\n", EF_KIND_SURFACE,
              EF_SURFACE,

@@ -243,7 +243,8 @@ static ef_status lay_out_wide(const ef__table *table, ef__layout *layout,
         wavelength_nm - layout->wavelength_nm[n - 1] < shortest_step_nm) {
       return ef__header_error(
           table, i, error,
-          "the wavelength does not lie above that of column '%.40s'; wavelengths "
+          "the wavelength does not lie above that of column '%.40s'; "
+          "wavelengths "
           "must increase from column to column, each there once",
           table->column[layout->column[n - 1]]);
     }

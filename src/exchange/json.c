@@ -152,7 +152,8 @@ static void begin(ef_json *json, const char *key, bool is_object) {
 
 static void end(ef_json *json, bool is_object) {
   if (json->status != EF_OK) return;
-  if (json->depth == 0 || json->levels[json->depth - 1].is_object != is_object) {
+  if (json->depth == 0 ||
+      json->levels[json->depth - 1].is_object != is_object) {
     refuse(json, "an end without its beginning");
     return;
   }

@@ -51,7 +51,8 @@ static ef_status check_wavelength(const ef_reader *reader,
                            "write wavelengths in nm",
                            number);
   }
-  if (rows->n == 0 || row[0] - row[-(ptrdiff_t)rows->width] >= shortest_step_nm) {
+  if (rows->n == 0 ||
+      row[0] - row[-(ptrdiff_t)rows->width] >= shortest_step_nm) {
     return EF_OK;
   }
   const double previous = row[-(ptrdiff_t)rows->width];

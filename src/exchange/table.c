@@ -145,7 +145,8 @@ static ef_status check_repeats(const ef__table *table, ef_error *error) {
   const size_t n = table->n_columns;
   named_column *const sorted = ef__allocate(n, sizeof *sorted);
   if (sorted == NULL) return ef__error_memory(error, "the header row");
-  for (size_t i = 0; i < n; ++i) sorted[i] = (named_column){table->column[i], i};
+  for (size_t i = 0; i < n; ++i)
+    sorted[i] = (named_column){table->column[i], i};
   qsort(sorted, n, sizeof *sorted, by_name);
   size_t first = SIZE_MAX, second = SIZE_MAX;
   for (size_t i = 1; i < n; ++i) {
@@ -279,13 +280,12 @@ ef_status ef__table_split(ef__table *table, ef_error *error) {
           ? "quote a field that holds a comma; decimal commas need semicolons "
             "or tabs between the fields"
           : "quote a field that holds a separator";
-  return ef__records_error(records, SIZE_MAX, NULL, error,
-                           "the row has %zu field%s between %s, expected %zu as "
-                           "in the header row; %s",
-                           records->n_fields,
-                           records->n_fields == 1 ? "" : "s",
-                           separator_name(records->separator),
-                           table->n_columns, hint);
+  return ef__records_error(
+      records, SIZE_MAX, NULL, error,
+      "the row has %zu field%s between %s, expected %zu as "
+      "in the header row; %s",
+      records->n_fields, records->n_fields == 1 ? "" : "s",
+      separator_name(records->separator), table->n_columns, hint);
 }
 
 /* ---- Numbers ----------------------------------------------------------- */

@@ -113,7 +113,8 @@ static void insert_token(gen *g, uint8_t *bytes, size_t *length, size_t at) {
       "R,G,B", "x,y,Y",  "nm",   "-1",   "\n\n",   "# unit: cd/m2\n",
       "\xEF\xBB\xBF",    "99999999999999999999", "# quantity: light\n",
       "# device_max: 255\n"};
-  const char *const token = tokens[gen_below(g, sizeof tokens / sizeof *tokens)];
+  const char *const token =
+      tokens[gen_below(g, sizeof tokens / sizeof *tokens)];
   insert(bytes, length, at, token, strlen(token));
 }
 
