@@ -81,6 +81,31 @@ ef_status ef__condition(size_t n_rows, size_t n_columns, const double *a,
                         double *scratch, double *singular, double *condition,
                         ef_error *error);
 
+/* ---- Least squares with inequalities (nnls.c) -------------------------- */
+
+/** Most columns of ef__nnls. */
+#define EF__NNLS_COLUMNS 32
+
+/** Doubles of scratch that ef__nnls needs. */
+size_t ef__nnls_scratch(size_t n_rows, size_t n_columns);
+/** The x[n_columns] >= 0 that makes |A x - b| least; A is n_rows x n_columns,
+ * at most EF__NNLS_COLUMNS columns. Columns that depend on others to rounding
+ * stay at zero. `residual_norm` (|A x - b|) may be NULL. False when 3 n_columns
+ * steps did not end it (never seen); x is then what was reached. */
+bool ef__nnls(size_t n_rows, size_t n_columns, const double *a,
+              const double *b, double *scratch, double *x,
+              double *residual_norm);
+
+/** Most unknowns of ef__least_quadratic. */
+#define EF__QUADRATIC_UNKNOWNS 8
+
+/** The x[n] that makes x' matrix x / 2 + linear' x least with limit x >= bound
+ * (n_limits rows, at most EF__NNLS_COLUMNS). False when the matrix is not
+ * positive definite to rounding or no x keeps the limits. */
+bool ef__least_quadratic(size_t n, const double *matrix, const double *linear,
+                         size_t n_limits, const double *limit,
+                         const double *bound, double *x);
+
 /* ---- Shortest digits (shortest.c) -------------------------------------- */
 
 /** Room for 17 digits, the terminator, and a digit while rounding. */
