@@ -56,16 +56,19 @@ EF_API double ef_tone_curve_drive(const ef_tone_curve *curve, double amount);
 typedef struct ef_device ef_device;
 
 EF_API void ef_device_free(ef_device *device);
-/** "display" ... Static. */
+/** "display", "halftone", "colourants", "profile". Static. */
 EF_API const char *ef_device_kind(const ef_device *device);
 EF_API const char *ef_device_name(const ef_device *device);
 EF_API size_t ef_device_n_drives(const ef_device *device);
 /** "red" ...; borrowed until the device is freed. */
 EF_API const char *ef_device_drive_name(const ef_device *device, size_t i);
 /** The limit of channel `i` in words, `high` or low: "red at full drive",
- * "red at zero". Borrowed. */
+ * "red at zero", "cyan at 100 %", "total loading". Borrowed. */
 EF_API const char *ef_device_limit_name(const ef_device *device, size_t i,
                                         bool high);
+/** True for what is seen by the light of an illuminant, which ef_setup_new then
+ * needs; false for lights. */
+EF_API bool ef_device_reflects(const ef_device *device);
 /** False for devices known by chromaticities or tristimulus values only. */
 EF_API bool ef_device_has_spectra(const ef_device *device);
 /** True when tristimulus values are in cd/m^2. */
@@ -147,7 +150,7 @@ EF_API const ef_encoding *ef_encoding_find(const char *name, ef_error *error);
 EF_API ef_status ef_encoding_matrix(const ef_encoding *encoding,
                                     double matrix[9], ef_error *error);
 
-/** Measured rows of a display: device values and what was measured for them. */
+/** Measured rows of a device: its values and what was measured for them. */
 typedef struct ef_measurements {
   size_t n_rows;
   size_t n_drives;
@@ -159,7 +162,8 @@ typedef struct ef_measurements {
   ef_grid grid;
   bool absolute;
   const size_t *line;              /**< of each row in its file, or NULL */
-  const char *const *drive_name;   /**< or NULL: red, green, blue */
+  const char *const *drive_name;   /**< or NULL: red, green, blue, for prints
+                                        cyan, magenta, yellow, black */
 } ef_measurements;
 
 /** How well the additive model describes one measured row: what was measured,
@@ -199,6 +203,97 @@ typedef struct ef_additivity {
 } ef_additivity;
 EF_API ef_status ef_display_additivity(const ef_device *device,
                                        ef_additivity *out, ef_error *error);
+
+/* ---- Halftone prints --------------------------------------------------- */
+
+/** Shares of the paper that each overprint of n inks (1 to 4) covers when the
+ * dots of one ink lie independently of those of the others (Demichel 1924).
+ * `share` receives 2^n_inks values, which sum to 1 for areas in [0, 1]; bit i
+ * of the index is set where ink i prints. */
+EF_API void ef_demichel(size_t n_inks, const double *area, double *share);
+
+/** Coverage of a tint between bare paper and solid from one value measured of
+ * each, a reflectance or a tristimulus value:
+ * (paper^(1/n) - tint^(1/n)) / (paper^(1/n) - solid^(1/n)), Yule & Nielsen
+ * (1951); with n = 1 Murray & Davies (1936). In [0, 1] for what lies between
+ * the two. NaN for n below 1, a solid equal to the paper, and values below
+ * zero unless n is 1. */
+EF_API double ef_tone_value(double paper, double solid, double tint, double n);
+
+typedef struct ef_halftone_settings {
+  /** Yule-Nielsen factor, 1 to 10; 1 is Neugebauer's model. 0: fitted to the
+   * ramps, 1 where there are no measurements. */
+  double n;
+  /** Coverage that a drive prints (tone value increase): one curve per ink, one
+   * for all (n_curves 1), or none (n_curves 0: fitted to the ramps, linear
+   * where there are no measurements). Copied. */
+  size_t n_curves;
+  const ef_tone_curve *const *curve;
+  /** Drive of the fourth ink, 0 to 1, which stays fixed; for measurements with
+   * four inks. */
+  double black;
+  /** Light that tristimulus values were measured under, and residuals are told
+   * for; NULL: D50. */
+  const ef_illuminant *illuminant;
+  const ef_notes *notes;
+} ef_halftone_settings;
+
+/** n and curves left open, no black, D50, no notes. */
+EF_API ef_halftone_settings ef_halftone_settings_default(void);
+
+/** A three-ink halftone print of its eight Neugebauer primaries, `primary`
+ * 8 x width in the order of ef_demichel: spectra on `grid`, or where `grid` is
+ * NULL tristimulus values (CIE 1931, Y = 100 for the perfect reflecting
+ * diffuser, under the settings' illuminant). Each value R of the stimulus is
+ * R^(1/n) = sum over primaries of share * primary^(1/n), with Demichel's shares
+ * of the areas that the curves print. Amounts are areas, zero is bare paper.
+ * `ink_name` NULL: cyan, magenta, yellow. Values below zero (noise) count as
+ * zero, with a note. EF_INVALID for values that are not finite or an ink that
+ * does not darken the paper. */
+EF_API ef_device *ef_halftone_new(const char *name,
+                                  const char *const *ink_name,
+                                  const ef_grid *grid, const double *primary,
+                                  const ef_halftone_settings *settings,
+                                  ef_error *error);
+
+/** How the model describes one row of a characterisation. CIE 1931 observer
+ * under the settings' illuminant, Y of `white`, the perfect reflecting
+ * diffuser, = 100. */
+typedef struct ef_print_residual {
+  size_t row;
+  /** True when the row had no part in the fit: a mixture of at least two inks
+   * that is no primary. */
+  bool is_test;
+  ef_xyz measured, predicted, white;
+  double spectral_rms; /**< over the samples; NaN without spectra */
+} ef_print_residual;
+
+/** Derives a halftone print from a characterisation, `drive` 0 to 1 of three
+ * inks or of four with black last (`absolute` is not used; tristimulus values
+ * have Y = 100 for the perfect reflecting diffuser):
+ * - Neugebauer primaries: the rows with every ink at 0 or 1, repeated ones
+ *   averaged (a missing one: EF_NO_ANSWER);
+ * - Yule-Nielsen n, unless set: least squared error of the ramps (rows with one
+ *   ink), in the lightness function of CIELAB of each sample or tristimulus
+ *   value, to 1e-4; without ramps 1, with a note;
+ * - curves, unless set: the least-squares area of each row of an ink's ramp,
+ *   averaged for repeated drives, monotone between (no ramp: linear, with a
+ *   note). A ramp that falls by up to 2 % of area is pooled (with a note), one
+ *   that falls by more is refused with the row;
+ * - with four inks and the black at 0, rows with black are left out (with a
+ *   note); with more, the sixteen primaries and the ramp of black are used, and
+ *   rows with another black serve no test.
+ * `residual` may be NULL, else it has room for n_rows; *n_residuals receives
+ * how many were filled: in row order those of the fit and of the test.
+ * Refuses what ef_halftone_new refuses, drives outside [0, 1] and values that
+ * are not finite, with the line of the row. */
+EF_API ef_device *ef_halftone_from_measurements(
+    const char *name, const ef_measurements *measurements,
+    const ef_halftone_settings *settings, ef_print_residual *residual,
+    size_t *n_residuals, ef_error *error);
+
+/** The Yule-Nielsen factor of a halftone; NaN for other devices. */
+EF_API double ef_halftone_n(const ef_device *device);
 
 /* ---- Setups: a device seen by an observer ------------------------------ */
 

@@ -11,7 +11,13 @@
 
 /* ---- The common part --------------------------------------------------- */
 
-static const char *const limit_text[2] = {" at zero", " at full drive"};
+static const char *const limit_texts[2] = {" at zero", " at full drive"};
+
+/* What is said of a limit: the class's own words, else the usual ones. */
+static const char *limit_text(const ef__device_class *kind, int high) {
+  return kind->limit_text[high] != NULL ? kind->limit_text[high]
+                                        : limit_texts[high];
+}
 
 /* Appends a + b with a terminator at *at; returns its start. */
 static const char *put_text(char **at, const char *a, const char *b) {
@@ -23,13 +29,19 @@ static const char *put_text(char **at, const char *a, const char *b) {
   return start;
 }
 
-static size_t texts_size(const char *name, size_t n,
-                         const char *const *drive_name) {
+static size_t texts_size(const ef__device_class *kind, const char *name,
+                         size_t n, const char *const *drive_name) {
   size_t size = strlen(name) + 1;
   for (size_t i = 0; i < n; i++)
-    size += 3 * (strlen(drive_name[i]) + 1) + strlen(limit_text[0]) +
-            strlen(limit_text[1]);
+    size += 3 * (strlen(drive_name[i]) + 1) + strlen(limit_text(kind, 0)) +
+            strlen(limit_text(kind, 1));
   return size;
+}
+
+/* A text without a blank at its start says all, without the drive's name. */
+static const char *put_limit(char **at, const char *drive_name,
+                             const char *text) {
+  return put_text(at, text[0] == ' ' ? drive_name : "", text);
 }
 
 static ef_status copy_names(ef_device *device, const char *name,
@@ -41,7 +53,7 @@ static ef_status copy_names(ef_device *device, const char *name,
   double *wavelength_nm = NULL;
   const ef__part parts[] = {
       {&wavelength_nm, n_listed, sizeof(double)},
-      {&text, texts_size(name, device->n_drives, drive_name), 1}};
+      {&text, texts_size(device->kind, name, device->n_drives, drive_name), 1}};
   device->block = ef__allocate_block(2, parts);
   if (device->block == NULL)
     return ef__error_memory(error, "a device");
@@ -50,7 +62,7 @@ static ef_status copy_names(ef_device *device, const char *name,
     device->drive_name[i] = put_text(&text, drive_name[i], "");
     for (int high = 0; high < 2; high++)
       device->limit_name[i][high] =
-          put_text(&text, drive_name[i], limit_text[high]);
+          put_limit(&text, drive_name[i], limit_text(device->kind, high));
   }
   if (grid != NULL) {
     device->grid = *grid;
@@ -109,6 +121,10 @@ const char *ef_device_drive_name(const ef_device *device, size_t i) {
 
 const char *ef_device_limit_name(const ef_device *device, size_t i, bool high) {
   return i < device->n_drives ? device->limit_name[i][high ? 1 : 0] : NULL;
+}
+
+bool ef_device_reflects(const ef_device *device) {
+  return device->kind->reflects;
 }
 
 bool ef_device_has_spectra(const ef_device *device) {

@@ -60,6 +60,9 @@ typedef struct ef__colour_map {
 typedef struct ef__device_class {
   const char *kind;
   bool reflects; /**< needs an illuminant to be seen */
+  /** Limits in words, low and high, behind the drive's name (" at zero"), or
+   * without a blank at the start alone; NULL: at zero, at full drive. */
+  const char *limit_text[2];
   /** Frees what the kind added; the common part is freed by the caller. */
   void (*release)(ef_device *device);
   /** Spectrum at `amount` on the device's grid, and unless NULL
@@ -127,5 +130,39 @@ ef_status ef__ambient_add(const ef_display_settings *settings, bool absolute,
  * each as in ef__display_parts, to n x 3. */
 ef_status ef__light_xyz_1931(const ef_grid *grid, bool absolute, size_t n,
                              const double *light, double *xyz, ef_error *error);
+
+/* ---- Devices that reflect (reflecting.c) ------------------------------- */
+
+/** Folds `observer` and `illuminant` for samples on `grid`: 3 x count weights
+ * that give XYZ with Y = 100 for the perfect reflecting diffuser, and the XYZ
+ * of that diffuser. Free with ef_weights_free. */
+ef_weights *ef__reflecting_weights(const ef_observer *observer,
+                                   const ef_illuminant *illuminant,
+                                   const ef_grid *grid, const ef_notes *notes,
+                                   double white[3], ef_error *error);
+
+/* ---- Halftone prints (halftone.c, halftone_fit.c) ---------------------- */
+
+enum { EF__INKS = 3, EF__OVERPRINTS = 8, EF__MOST_INKS = 4 };
+
+/** What a print is made of. Borrowed. */
+typedef struct ef__halftone_parts {
+  const char *name;
+  const char *const *ink_name;
+  const ef_grid *grid; /**< NULL: X, Y, Z */
+  const char *illuminant; /**< name, of tristimulus values */
+  double n;
+  const double *root; /**< width x 8, primary^(1/n) */
+  const ef_tone_curve *const *curve;
+} ef__halftone_parts;
+
+ef_device *ef__halftone_build(const ef__halftone_parts *parts,
+                              ef_error *error);
+/** Checks n, curves and black. */
+ef_status ef__halftone_check(const ef_halftone_settings *settings,
+                             ef_error *error);
+/** One value of the print: (sum share * root)^n. */
+double ef__halftone_mix(double n, size_t n_primaries, const double *share,
+                        const double *root);
 
 #endif

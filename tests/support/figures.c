@@ -51,12 +51,7 @@ static size_t split(char *line, char **cell, size_t room) {
   return n;
 }
 
-figures figures_read(const char *folder, const char *file) {
-  const char *tests = getenv("EVENFIELD_TESTS");
-  if (tests == NULL)
-    fail_msg("EVENFIELD_TESTS names no folder");
-  char path[1024];
-  snprintf(path, sizeof path, "%s/%s/%s", tests, folder, file);
+static figures read_figures(const char *path) {
   figures f = {.text = read_text(path)};
   const size_t room = count_char(f.text, ',') + count_char(f.text, '\n') + 1;
   f.cell = malloc(room * sizeof *f.cell);
@@ -79,6 +74,30 @@ figures figures_read(const char *folder, const char *file) {
   f.cell += f.n_columns;
   f.n_rows = used / f.n_columns - 1;
   return f;
+}
+
+figures figures_read(const char *folder, const char *file) {
+  const char *tests = getenv("EVENFIELD_TESTS");
+  if (tests == NULL)
+    fail_msg("EVENFIELD_TESTS names no folder");
+  char path[1024];
+  snprintf(path, sizeof path, "%s/%s/%s", tests, folder, file);
+  return read_figures(path);
+}
+
+figures figures_reference(const char *file) {
+  char path[1024];
+  snprintf(path, sizeof path, "%s/surfaces/%s", getenv("EVENFIELD_REFERENCE"),
+           file);
+  return read_figures(path);
+}
+
+bool figures_no_reference(const char *what) {
+  const char *folder = getenv("EVENFIELD_REFERENCE");
+  if (folder != NULL && folder[0] != '\0')
+    return false;
+  printf("1..0 # SKIP EVENFIELD_REFERENCE is not set, %s are left out\n", what);
+  return true;
 }
 
 void figures_free(figures *f) {

@@ -5,6 +5,7 @@
 #ifndef EVENFIELD_TESTS_FIGURES_H
 #define EVENFIELD_TESTS_FIGURES_H
 
+#include <stdbool.h>
 #include <stddef.h>
 
 typedef struct figures {
@@ -18,6 +19,10 @@ typedef struct figures {
 /** Reads `folder`/`file`, with `folder` relative to the tests; the test fails
  * when there is no such file or a row is ragged. Free with figures_free. */
 figures figures_read(const char *folder, const char *file);
+/** Reads surfaces/`file` of the folder that EVENFIELD_REFERENCE names. */
+figures figures_reference(const char *file);
+/** True, and `what` are said to be skipped, when it names none. */
+bool figures_no_reference(const char *what);
 void figures_free(figures *f);
 /** Number of that column; the test fails when there is none. */
 size_t figures_column(const figures *f, const char *column);
