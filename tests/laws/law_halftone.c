@@ -65,7 +65,7 @@ static void corners_are_the_primaries(void **state) {
   for (int trial = 0; trial < TRIALS; trial++) {
     print p = random_print(&g, gen_between(&g, 1, 10));
     for (size_t k = 0; k < 8; k++) {
-      const double drive[3] = {k & 1, k >> 1 & 1, k >> 2};
+      const double drive[3] = {k & 1 ? 1 : 0, k & 2 ? 1 : 0, k & 4 ? 1 : 0};
       double spectrum[N];
       ef_device_spectrum(p.device, drive, spectrum, NULL, NULL);
       for (size_t s = 0; s < N; s++)
