@@ -286,7 +286,7 @@ static double best_n(fit *f) {
   enum { STEPS = 18 };
   const double low = 0.1, step = 0.05;
   int best = 0;
-  double least = INFINITY;
+  double least = HUGE_VAL;
   for (int k = 0; k <= STEPS; k++) {
     const double error = ramp_error(f, 1.0 / (low + k * step));
     if (error < least) {
