@@ -166,6 +166,37 @@ static void tensor(const ef_metric *self, const double coordinate[3],
   g[8] = s * s * cc + c * c * hh + 2 * c * s * ch;
 }
 
+/* Blue to red colours of some chroma have a second minimum: near the axis, at
+ * the hue that puts the mean hue at 275 degrees, where the rotation term is
+ * strongest and takes half of the difference away; the same holds the other way
+ * round for blues near the axis. The places are fitted by eye to a map of the
+ * formula. Where the hue would lie beyond the opposite one, the minimum is at
+ * the jump there. The difference is above 9 at all of them. */
+#define DECOY_DIFFERENCE 7.0
+
+static size_t decoys(const ef_metric *self, const double reference[3],
+                     double start[EF__MAX_DECOYS][3]) {
+  (void)self; /* the places hardly move with the parametric factors */
+  const double a = reference[1], b = reference[2];
+  const double chroma = sqrt(a * a + b * b);
+  double from_275 = atan2(b, a) * DEGREES_PER_RADIAN + 85;
+  if (from_275 > 180) from_275 -= 360;
+  double turn = -2 * from_275;
+  if (!(fabs(turn) < 300) || chroma < 3) return 0;
+  turn = turn > 179 ? 179 : turn < -179 ? -179 : turn;
+  double far = 65;
+  if (chroma > 17) {
+    const double half = sin(turn / 2 / DEGREES_PER_RADIAN);
+    far = 3.7 / (half * half + 0.15);
+  }
+  const double c = cos(turn / DEGREES_PER_RADIAN);
+  const double s = sin(turn / DEGREES_PER_RADIAN);
+  start[0][0] = reference[0];
+  start[0][1] = far * (c * a - s * b) / chroma;
+  start[0][2] = far * (s * a + c * b) / chroma;
+  return 1;
+}
+
 const ef_metric ef__metric_ciede2000 = {
     .name = "ciede2000",
     .title = "CIEDE2000",
@@ -185,4 +216,8 @@ const ef_metric ef__metric_ciede2000 = {
     .tensor = tensor,
     .expand = ef__ciede2000_expand,
     .carry = ef__lab_carry,
+    .decoys = decoys,
+    .decoy_difference = DECOY_DIFFERENCE,
+    .kinked_axis = true,
+    .jumps_at_opposite_hue = true,
 };

@@ -17,6 +17,9 @@ typedef struct ef__expansion {
   double hessian[9]; /**< row-major, symmetric, may be indefinite */
 } ef__expansion;
 
+/** The most places that `decoys` names. */
+enum { EF__MAX_DECOYS = 1 };
+
 /** The most parameters that a formula has. */
 #define EF__MAX_PARAMETERS 5
 
@@ -79,6 +82,16 @@ struct ef_metric {
   void (*carry)(const ef_metric *self, const double coordinate[3],
                 const ef_conditions *conditions, const ef__expansion *in,
                 ef__expansion *out);
+  /** Optional: points other than the reference around which the difference to
+   * it has local minima in the chromatic plane; returns how many. */
+  size_t (*decoys)(const ef_metric *self, const double reference[3],
+                   double start[EF__MAX_DECOYS][3]);
+  /** A minimum may be this close to the reference without decoys mattering. */
+  double decoy_difference;
+  /** The difference has a kink where the sample is neutral. */
+  bool kinked_axis;
+  /** The difference jumps where the sample's hue is opposite. */
+  bool jumps_at_opposite_hue;
 };
 
 /* ---- The formulas ------------------------------------------------------ */

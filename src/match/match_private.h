@@ -1,0 +1,116 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** \file
+ * What the solvers share: a setup as three amounts that mix to a colour, and
+ * the search for amounts in the unit box. */
+#ifndef EVENFIELD_MATCH_PRIVATE_H
+#define EVENFIELD_MATCH_PRIVATE_H
+
+#include <evenfield/match.h>
+
+#include "difference/difference_private.h"
+
+/* ---- Mixing (mixing.c) ------------------------------------------------- */
+
+/** Three amounts to a colour. For affine setups the numbers are copied, so
+ * that nothing leaves the folder inside a solver. */
+typedef struct ef__mixing {
+  bool affine;
+  ef_conditions conditions; /**< white: all amounts 1 */
+  double black[3];
+  double vector[9];  /**< affine: d XYZ / d amount, row-major */
+  double inverse[9]; /**< affine: of `vector` */
+  ef_xyz (*xyz)(const void *context, const double *amount, double *jacobian);
+  const void *context; /**< borrowed */
+} ef__mixing;
+
+/** From a setup, which it borrows. EF_INVALID unless there are three drives,
+ * EF_NO_ANSWER when an affine setup's primaries are linearly dependent: their
+ * condition number is above 1e8, where amounts have no 8 digits left. */
+ef_status ef__mixing_from_setup(const ef_setup *setup, ef__mixing *out,
+                                ef_error *error);
+/** Fills `inverse` from `vector` and checks it as above. */
+ef_status ef__mixing_finish(ef__mixing *mixing, ef_error *error);
+
+/** Colour at `amount`, and unless NULL d XYZ / d amount. */
+ef_xyz ef__mixing_xyz(const ef__mixing *mixing, const double amount[3],
+                      double jacobian[9]);
+/* ---- Exact amounts (exact.c) ------------------------------------------- */
+
+/** Amounts that mix to `xyz`. Affine: always, with any sign. Else: true when
+ * amounts in [0, 1] reach it to 1e-10 of the white, and the amounts of the
+ * closest colour that was found when not. */
+bool ef__exact(const ef__mixing *mixing, ef_xyz xyz, double amount[3]);
+
+/* ---- Descent in the unit box (descend.c, edge.c) ----------------------- */
+
+/** A function to make small: the squared difference to a target. */
+typedef struct ef__search {
+  const ef__mixing *mixing;
+  const ef_metric *metric;
+  double target[3];      /**< in the metric's coordinates */
+  unsigned n_expansions; /**< work done, for the bench */
+  unsigned n_values;
+} ef__search;
+
+/** A point of the box with the squared difference to second order. */
+typedef struct ef__place {
+  double amount[3];
+  double square;
+  double gradient[3];
+  double hessian[9];
+} ef__place;
+
+/** Squared difference at `amount`. */
+double ef__search_value(ef__search *search, const double amount[3]);
+/** Fills all of `place` from its amounts. */
+void ef__search_expand(ef__search *search, ef__place *place);
+/** Walks down from place->amount to a local minimum in the box by projected
+ * Newton steps on the active face. At a kink or jump of the formula it stops
+ * where no step of at least 1e-3 of Newton's goes down, and returns false. */
+bool ef__descend(ef__search *search, ef__place *place);
+
+/** From where a descent stopped at the jump of opposite hues: along the edge of
+ * the jump to its least value. True when that is lower. */
+bool ef__descend_edge(ef__search *search, ef__place *place);
+
+/* ---- Nearest colour (nearest.c) ---------------------------------------- */
+
+/** Local minima found on the way to the nearest colour, the least first. */
+enum { EF__MAX_MINIMA = 4 };
+typedef struct ef__minima {
+  size_t n;
+  struct {
+    double amount[3];
+    double square;
+  } at[EF__MAX_MINIMA];
+} ef__minima;
+
+/** The global minimum of the search in the box, and the others that were seen.
+ * `exact` are amounts outside the box that match, or any point to start from
+ * (clamped). */
+void ef__nearest(ef__search *search, const double exact[3], ef__minima *out);
+
+/* ---- Hue and lightness kept (hue_kept.c) ------------------------------- */
+
+/** See ef_match.hue_kept; false when there is no such colour. */
+bool ef__hue_kept(const ef__search *search, double amount[3]);
+
+/* ---- Code values (quantise.c) ------------------------------------------ */
+
+/** Amounts that the codes of one channel give, in increasing order. */
+typedef struct ef__lattice {
+  size_t n_codes;         /**< of each channel: 2^bits */
+  const double *amount[3]; /**< n_codes each; the channel's curve at the codes */
+} ef__lattice;
+
+/** Codes whose colour has the least difference to the search's target, found
+ * around the minima of the difference in the box, the least of them first.
+ * `square` receives the squared difference of these codes. */
+void ef__quantise(ef__search *search, const ef__lattice *lattice,
+                  const ef__minima *minima, uint32_t code[3], double *square);
+
+static inline double ef__clamp(double value, double low, double high) {
+  return value < low ? low : value > high ? high : value;
+}
+
+#endif
