@@ -175,7 +175,7 @@ static void tensor(const ef_metric *self, const double coordinate[3],
 #define DECOY_DIFFERENCE 7.0
 
 static size_t decoys(const ef_metric *self, const double reference[3],
-                     double start[EF__MAX_DECOYS][3]) {
+                     double place[EF__MAX_DECOYS][3]) {
   (void)self; /* the places hardly move with the parametric factors */
   const double a = reference[1], b = reference[2];
   const double chroma = sqrt(a * a + b * b);
@@ -191,9 +191,9 @@ static size_t decoys(const ef_metric *self, const double reference[3],
   }
   const double c = cos(turn / DEGREES_PER_RADIAN);
   const double s = sin(turn / DEGREES_PER_RADIAN);
-  start[0][0] = reference[0];
-  start[0][1] = far * (c * a - s * b) / chroma;
-  start[0][2] = far * (s * a + c * b) / chroma;
+  place[0][0] = reference[0];
+  place[0][1] = far * (c * a - s * b) / chroma;
+  place[0][2] = far * (s * a + c * b) / chroma;
   return 1;
 }
 
