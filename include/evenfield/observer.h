@@ -90,6 +90,15 @@ typedef struct ef_mb_scale {
 } ef_mb_scale;
 EF_API ef_mb_scale ef_observer_mb_scale(const ef_observer *observer);
 
+/** Row-major 3 x 3 that takes the observer's X, Y, Z to its cone excitations:
+ * exact where the functions belong together (cie-2015-2, cie-2015-10, models),
+ * a least-squares fit over the wavelengths where the cones are borrowed.
+ * `residual` (may be NULL) receives the largest deviation of a cone function,
+ * whose peak is 1. EF_NO_ANSWER for observers of two dimensions. */
+EF_API ef_status ef_observer_cone_matrix(const ef_observer *observer,
+                                         double lms_from_xyz[9],
+                                         double *residual, ef_error *error);
+
 /** How spectra are seen. */
 typedef struct ef_viewing {
   ef_kind kind;
