@@ -136,6 +136,149 @@ EF_API void ef_metric_difference_batch(const ef_metric *metric, size_t n,
 EF_API void ef_metric_tensor(const ef_metric *metric,
                              const double coordinate[3], double tensor[9]);
 
+/* ---- Discrimination ellipses ------------------------------------------- */
+
+/** A plane to draw an ellipse in, and the third coordinate that goes with it.
+ * Contrasts are (response - background) / background. */
+typedef enum ef_space {
+  EF_SPACE_XY,      /**< x, y; third Y */
+  EF_SPACE_UV,      /**< u', v'; third Y */
+  EF_SPACE_LAB,     /**< a*, b*; third L* */
+  EF_SPACE_MB,      /**< l_MB, s_MB; third the luminance V of the cones */
+  EF_SPACE_CONE,    /**< contrasts of the L and S cones; third luminance
+                         contrast */
+  EF_SPACE_CONE_LM  /**< contrasts of the L and M cones; third that of S */
+} ef_space;
+
+/** "xy", "uv", "lab", "mb", "cone", "cone-lm". Static. */
+EF_API const char *ef_space_name(ef_space space);
+EF_API ef_status ef_space_find(const char *name, ef_space *out,
+                               ef_error *error);
+/** Name of coordinate 0, 1 or 2: "x", "u_prime", "mb_l", "contrast_l"... */
+EF_API const char *ef_space_axis(ef_space space, int i);
+
+/** A space with what it takes to get there. */
+typedef struct ef_frame {
+  ef_space space;
+  /** The last three only: X, Y, Z to cones (ef_observer_cone_matrix), and the
+   * factors of luminance and of the MacLeod-Boynton chromaticity. */
+  double lms_from_xyz[9];
+  ef_mb_scale mb_scale;
+  ef_xyz background; /**< of contrasts; all zero: the white of the conditions */
+} ef_frame;
+
+/** Fills it. `observer` is needed for the spaces of cones only (else may be
+ * NULL); for observers with borrowed cones the matrix is a fit, and outputs
+ * say so. */
+EF_API ef_status ef_frame_set(ef_space space, const ef_observer *observer,
+                              ef_frame *out, ef_error *error);
+/** Coordinates of a colour, the third one last, and their derivatives by X, Y,
+ * Z (row-major; may be NULL). EF_NO_ANSWER for colours without chromaticity
+ * and backgrounds without cone excitation. */
+EF_API ef_status ef_frame_coordinates(const ef_frame *frame, ef_xyz xyz,
+                                      const ef_conditions *conditions,
+                                      double coordinate[3],
+                                      double jacobian[9], ef_error *error);
+
+/** g11 dx^2 + 2 g12 dx dy + g22 dy^2 = 1 about a centre. */
+typedef struct ef_ellipse {
+  double center[2];
+  double semi_major, semi_minor;
+  double angle_deg; /**< of the major axis from the first coordinate's,
+                         anticlockwise, in [0, 180); 0 for a circle */
+  double g11, g12, g22;
+} ef_ellipse;
+
+/** What a plane figure of a solid is. */
+typedef enum ef_ellipse_kind {
+  /** The colours of the same third coordinate (same luminance, or S contrast)
+   * that differ by the size from the centre. */
+  EF_ELLIPSE_SECTION,
+  /** The shadow of the whole ellipsoid: all colours it holds, of whatever
+   * third coordinate. It contains the section. */
+  EF_ELLIPSE_PROJECTION
+} ef_ellipse_kind;
+
+/** The colours that differ by `size` from a centre, to second order:
+ * d' tensor d = 1 for a step d in the frame's coordinates. */
+typedef struct ef_ellipsoid {
+  double center[3];
+  double tensor[9];    /**< row-major */
+  double semi_axis[3]; /**< the longest first */
+  double direction[9]; /**< row i: unit vector of axis i */
+} ef_ellipsoid;
+
+/** Of a colour under the conditions, which is also the standard of formulas
+ * that have one. `size` is a difference in units of the metric: n JND times the
+ * JND, or 1. Nearer to the neutral axis than `size`, cam02-ucs and cam16-ucs
+ * are taken along the chord (see ef_ucs_jacobian). EF_NO_ANSWER where the
+ * metric or the space has no slope (black, colours outside a model). */
+EF_API ef_status ef_metric_ellipsoid(const ef_metric *metric, ef_xyz xyz,
+                                     const ef_conditions *conditions,
+                                     const ef_frame *frame, double size,
+                                     ef_ellipsoid *out, ef_error *error);
+EF_API ef_status ef_metric_ellipse(const ef_metric *metric, ef_xyz xyz,
+                                   const ef_conditions *conditions,
+                                   const ef_frame *frame, ef_ellipse_kind kind,
+                                   double size, ef_ellipse *out,
+                                   ef_error *error);
+/** A plane figure of an ellipsoid. */
+EF_API ef_ellipse ef_ellipsoid_figure(const ef_ellipsoid *ellipsoid,
+                                      ef_ellipse_kind kind);
+
+/** From the form, which must be positive definite (else NaN axes), or from the
+ * axes. */
+EF_API ef_ellipse ef_ellipse_of_form(const double center[2], double g11,
+                                     double g12, double g22);
+EF_API ef_ellipse ef_ellipse_of_axes(const double center[2], double semi_major,
+                                     double semi_minor, double angle_deg);
+/** The same in other coordinates: `jacobian` is d new / d old, row-major 2 x 2.
+ */
+EF_API ef_ellipse ef_ellipse_carry(const ef_ellipse *ellipse,
+                                   const double center[2],
+                                   const double jacobian[4]);
+/** The boundary, `turn_deg` 0 on the major axis, 90 on the minor one. */
+EF_API void ef_ellipse_point(const ef_ellipse *ellipse, double turn_deg,
+                             double point[2]);
+/** How many ellipses lie between the centre and a point: 1 on the boundary. */
+EF_API double ef_ellipse_steps(const ef_ellipse *ellipse,
+                               const double point[2]);
+
+/* ---- Ellipses from experiments, and steps of the lighting trade -------- */
+
+/** MacAdam (1942): the 25 observed ellipses in CIE 1931 x, y, one standard
+ * deviation of colour matching of one observer, 2 degrees, about 48 cd/m2. */
+EF_API size_t ef_macadam_count(void);
+/** NaN beyond the last. */
+EF_API ef_ellipse ef_macadam_at(size_t i);
+/** The same at any chromaticity, at `size` standard deviations (MacAdam takes
+ * about three for a just noticeable difference; from memory). Between the centres
+ * the logarithms of the matrices in u', v' are averaged with the weights
+ * 1 / distance^4 and carried back: MacAdam's own at the centres, smooth, an
+ * ellipse everywhere. `between` (may be NULL): inside the polygon around the
+ * centres; outside, the ellipse leans on the nearest ones alone. */
+EF_API ef_status ef_macadam_ellipse(ef_xy at, double size, ef_ellipse *out,
+                                    bool *between, ef_error *error);
+
+/** n-step circle in u', v' about a centre: radius 0.0011 n (CIE TN 001:2014).
+ */
+EF_API ef_ellipse ef_step_circle(ef_uv center, double n_steps);
+/** How many such steps lie between two chromaticities. */
+EF_API double ef_step_count(ef_uv center, ef_uv at);
+
+/** A standard colour of lamps (IEC 60081, ANSI C78.376): g11 dx^2 + 2 g12 dx dy
+ * + g22 dy^2 = n^2 on the n-step ellipse in CIE 1931 x, y. The coefficients
+ * are from memory, not from a printed copy, and outputs say so. */
+typedef struct ef_lamp_colour {
+  const char *name; /**< "F4000"; static */
+  ef_xy center;
+  double g11, g12, g22;
+} ef_lamp_colour;
+EF_API size_t ef_lamp_count(void);
+EF_API const ef_lamp_colour *ef_lamp_at(size_t i);
+EF_API const ef_lamp_colour *ef_lamp_find(const char *name, ef_error *error);
+EF_API ef_ellipse ef_lamp_ellipse(const ef_lamp_colour *lamp, double n_steps);
+
 /* The formulas as plain functions. */
 
 /** CIE 1976 (ISO/CIE 11664-4). */
