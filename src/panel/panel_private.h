@@ -1,0 +1,189 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** \file
+ * What the files of this folder share. */
+#ifndef EVENFIELD_PANEL_PRIVATE_H
+#define EVENFIELD_PANEL_PRIVATE_H
+
+#include <evenfield/panel.h>
+
+#include "base/base_private.h"
+
+/* ---- Normal distribution (task.c) -------------------------------------- */
+
+double ef__phi(double x);            /**< density */
+double ef__normal(double x);         /**< distribution function */
+double ef__normal_inverse(double p); /**< infinite at 0 and 1 */
+
+/** Share of wrong answers in the triangle test over its chance share 2/3. */
+double ef__triangle_miss(double d_prime);
+
+/* ---- Curves with derivatives (psychometric.c) -------------------------- */
+
+/** Position of the four parameters in every array of them. eta = intercept +
+ * slope t; GUESS is the criterion k where the model has one. */
+enum { EF__INTERCEPT, EF__SLOPE, EF__GUESS, EF__LAPSE, EF__PARAMETERS };
+
+typedef struct ef__model {
+  ef_shape shape;
+  ef_task task;
+  bool lapses_both_ways; /**< p = lapse + (1 - 2 lapse) F: greater-less, where
+                              an answer without looking may be either */
+} ef__model;
+
+/** Third parameter is the criterion k of the observer, not a share. */
+bool ef__model_has_criterion(const ef__model *model);
+
+/** Share p of positive answers, q = 1 - p without cancellation, and how p
+ * changes with eta, guess (or k) and lapse. */
+typedef struct ef__point {
+  double p, q;
+  double p_eta, p_guess, p_lapse;
+  double p_eta_eta, p_eta_guess, p_guess_guess, p_eta_lapse, p_guess_lapse;
+} ef__point;
+
+/** At eta; a blank is eta = -infinity. */
+void ef__model_point(const ef__model *model, double eta, bool is_blank,
+                     double guess, double lapse, ef__point *out);
+/** p and q alone. */
+void ef__model_share(const ef__model *model, double eta, bool is_blank,
+                     double guess, double lapse, double *p, double *q);
+/** eta at a share of positive answers without lapses; NaN when none. */
+double ef__model_eta(const ef__model *model, double guess, double proportion);
+/** Guess rate <-> third parameter. */
+double ef__model_guess(const ef__model *model, double rate);
+double ef__model_guess_rate(const ef__model *model, double guess);
+/** Standard deviation of F over its width: 1, pi / sqrt 3, pi / sqrt 6. */
+double ef__shape_deviation(ef_shape shape);
+
+/* ---- Answers ready for a fit (responses.c) ----------------------------- */
+
+/** Distinct levels, lowest first, blanks (at most one row) before them. t is
+ * centred and scaled: t = (axis value - centre) / scale. */
+typedef struct ef__data {
+  size_t n;
+  bool has_blank; /**< row 0 is one; its t is 0 and means nothing */
+  double centre, scale;
+  double least_gap; /**< between neighbours of t; 0 below two levels */
+  double *t, *shown, *positive; /**< n each, of one block */
+} ef__data;
+
+/** Adds row (from 1) and array to an error already set; returns `status`. */
+ef_status ef__error_row(ef_error *error, ef_status status, size_t row,
+                        const char *field);
+
+/** Checks and sorts. `block` receives what to free. */
+ef_status ef__data_new(const ef_responses *responses, ef_axis axis,
+                       ef__data *out, void **block, ef_error *error);
+/** Sets centre, scale and least_gap from t in axis values, and scales t:
+ * weighted mean 0, weighted standard deviation 1. */
+void ef__data_scale(ef__data *data);
+double ef__axis_value(ef_axis axis, double level);
+double ef__axis_level(ef_axis axis, double t);
+
+/* ---- Minimiser (newton.c) ---------------------------------------------- */
+
+/** A function of up to four parameters inside limits. */
+typedef struct ef__objective {
+  size_t m;
+  /** The value; also, unless NULL, gradient (m), curvature and a positive
+   * semidefinite stand-in for it (the expected information), m x m. */
+  double (*evaluate)(const void *ctx, const double *x, double *gradient,
+                     double *curvature, double *expected);
+  const void *ctx;
+  double low[EF__PARAMETERS], high[EF__PARAMETERS]; /**< equal: fixed */
+} ef__objective;
+
+typedef struct ef__minimum {
+  double x[EF__PARAMETERS];
+  double value;
+  int iterations;
+  bool converged;
+} ef__minimum;
+
+/** From `origin` (moved inside the limits) downhill until the Newton step that
+ * is left would gain less than `tolerance`, and that step. `converged` is false
+ * when it could not. */
+void ef__minimise(const ef__objective *objective, const double *origin,
+                  double tolerance, ef__minimum *out);
+
+/** Inverse of the m x m positive definite matrix for the rows and columns that
+ * are free; zero elsewhere. False when it is singular to rounding. */
+bool ef__invert_free(size_t m, const double *matrix, const bool *is_free,
+                     double *inverse);
+
+/* ---- Likelihood (likelihood.c) ----------------------------------------- */
+
+/** Model, data and limits; parameters are those of ef__model in the scaled t.
+ */
+typedef struct ef__likelihood {
+  ef__model model;
+  const ef__data *data;
+  double low[EF__PARAMETERS], high[EF__PARAMETERS];
+} ef__likelihood;
+
+/** Minus the logarithm of the likelihood, without binomial coefficients, minus
+ * that of free shares: half the deviance. The context of an ef__objective. */
+double ef__likelihood_evaluate(const void *ctx, const double *theta,
+                               double *gradient, double *curvature,
+                               double *expected);
+/** The objective over all four parameters. */
+ef__objective ef__likelihood_objective(const ef__likelihood *likelihood);
+/** k ln(k / (n p)): a level's part of the above for one kind of answer; 0 for
+ * k = 0, infinite for p = 0. */
+double ef__likelihood_part(double k, double n, double p);
+
+/* ---- Fit (fit.c, start.c, support.c) ----------------------------------- */
+
+/** Model, limits and what is estimated, from the settings. */
+ef_status ef__likelihood_setup(const ef_fit_settings *settings,
+                               const ef__data *data, ef__likelihood *out,
+                               ef_error *error);
+bool ef__is_estimated(const ef__likelihood *likelihood, size_t parameter);
+size_t ef__parameter_count(const ef__likelihood *likelihood);
+/** Proportion at the threshold by settings or task. */
+double ef__criterion(const ef_fit_settings *settings);
+/** eta at the threshold, for third parameter `guess`. */
+double ef__criterion_eta(const ef__model *model,
+                         const ef_fit_settings *settings, double guess);
+
+/** Gain in log likelihood below which the next step is the last. A gain of g
+ * means sqrt(2 g) standard errors, which the last step squares: 1e-9 of one. */
+#define EF__TOLERANCE 1e-9
+
+/** The largest likelihood from the starts that the data suggest and, unless
+ * NULL, from `origin`. With an origin and `is_quick`, only the better of the
+ * two is followed, and the others when that fails. */
+void ef__maximise(const ef__likelihood *likelihood, const double *origin,
+                  bool is_quick, double tolerance, ef__minimum *out);
+
+/** What the answers can carry. For EF_SUPPORT_STEP the threshold lies between
+ * two rows of the data, or at one. */
+typedef struct ef__verdict {
+  ef_support support;
+  size_t row_low, row_high;
+} ef__verdict;
+/** Whether there are levels enough, and answers of both kinds. */
+ef__verdict ef__support_before(const ef__likelihood *likelihood);
+/** Whether the answers depend on the level, and how abruptly. */
+ef__verdict ef__support_after(const ef__likelihood *likelihood,
+                              const ef__minimum *fit);
+/** The refusal in words: EF_NO_ANSWER. EF_OK for EF_SUPPORT_FULL and _STEP. */
+ef_status ef__support_error(const ef__likelihood *likelihood,
+                            const ef_fit_settings *settings,
+                            const ef__verdict *verdict, ef_error *error);
+
+/** Level of a row. */
+double ef__row_level(const ef__data *data, ef_axis axis, size_t row);
+
+/** Curve in the user's axis from parameters in the scaled one. */
+ef_psychometric ef__curve(const ef__likelihood *likelihood, ef_axis axis,
+                          const double *theta);
+/** Curve and estimates with standard errors. */
+void ef__fit_describe(const ef__likelihood *likelihood,
+                      const ef_fit_settings *settings,
+                      const ef__minimum *minimum, ef_fit *out);
+/** Turns a description at the bound of the slope into that of a step. */
+void ef__fit_describe_step(const ef__likelihood *likelihood,
+                           const ef__verdict *verdict, ef_fit *out);
+
+#endif
