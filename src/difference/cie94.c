@@ -67,4 +67,5 @@ const ef_metric ef__metric_cie94 = {
     .tensor = tensor,
     .expand = expand,
     .carry = ef__lab_carry,
+    .kinked_axis = true,
 };

@@ -79,4 +79,5 @@ const ef_metric ef__metric_cmc = {
     .tensor = tensor,
     .expand = expand,
     .carry = ef__lab_carry,
+    .kinked_axis = true,
 };

@@ -115,8 +115,9 @@ static const ef__parameter_set sets[] = {{"lcd", {0.77, 0.007, 0.0053}},
                 {"c1", 0.007, "compression of lightness"},                     \
                 {"c2", 0.0228, "compression of colourfulness"}},               \
   .parameter_set = sets, .coordinates = coordinates, .inverse = inverse,       \
-  .jacobian = jacobian, .chord = chord, .difference = difference,              \
-  .components = components, .tensor = tensor, .expand = expand
+  .jacobian = jacobian, .chord = chord, .kinked_axis = true,                   \
+  .difference = difference, .components = components, .tensor = tensor,        \
+  .expand = expand
 
 const ef_metric ef__metric_cam02_ucs = {
     .name = "cam02-ucs",
