@@ -71,29 +71,48 @@ EF_API ef_status ef_match_batch(const ef_setup *setup, size_t n,
                                 const ef_match_settings *settings, int jobs,
                                 ef_match *out, ef_error *error);
 
-/** The gamut of a setup. */
+/** The gamut of a setup. Two-dimensional observers (dichromats) have areas and
+ * volumes of 0 and no shares. */
 typedef struct ef_gamut {
-  ef_xy primary[EF_MAX_DRIVES]; /**< each at full drive, black included */
+  ef_xy primary[EF_MAX_DRIVES]; /**< each at full drive, black included; NaN
+                                     beyond the drives there are */
   ef_xy white;
-  double area_xy;      /**< area of the primaries' polygon in x, y */
-  double area_uv;      /**< and in u', v' */
-  double locus_share_xy; /**< of the area inside the spectrum locus, 0 to 1 */
+  /** Area in x, y and in u', v' of the convex hull of the primaries; where
+   * colours do not add (prints) of all mixtures of full and no amounts. */
+  double area_xy;
+  double area_uv;
+  /** Of the area inside the spectrum locus, 380 to 780 nm at 1 nm, closed by
+   * the line between its ends: 0 to 1, NaN without such an area. */
+  double locus_share_xy;
   double locus_share_uv;
-  double volume_lab;   /**< volume in CIELAB relative to the setup's white */
-  double solid_share;  /**< share of the object-colour solid's CIELAB volume
-                            under `illuminant` that the setup can show */
-  double contrast;     /**< Y of white over Y of black; infinite for 0 */
+  /** Volume in CIELAB relative to the setup's white. NaN for setups whose
+   * colours do not add with other than three drives. */
+  double volume_lab;
+  /** Share of the object-colour solid's CIELAB volume under `illuminant` that
+   * the setup can show, 0 to 1. NaN where there is no volume_lab, and for an
+   * observer whose solid has no answer in ef_object_solid_volume. */
+  double solid_share;
+  /** Y of white over Y of black; where colours do not add, of the lightest over
+   * the darkest of the mixtures above. Infinite for a black of 0. */
+  double contrast;
 } ef_gamut;
 
 /** Measures it. `illuminant` lights the object-colour solid, whose white is
- * adapted to the setup's by `adaptation`. Volumes to 0.1 %. */
+ * adapted to the setup's by `adaptation`. Additive setups may have any number
+ * of drives: their solid is the zonohedron of the primaries. Volumes and shares
+ * to 0.1 % (reached for displays: 0.005 %). Results do not depend on `jobs` (0:
+ * all cores). EF_INVALID when the observer sees nothing of the illuminant, or
+ * for whites that cannot be adapted. */
 EF_API ef_status ef_gamut_measure(const ef_setup *setup,
                                   const ef_illuminant *illuminant,
                                   ef_adaptation adaptation, int jobs,
                                   ef_gamut *out, ef_error *error);
 
 /** CIELAB volume of the object-colour solid (optimal colours) of an illuminant
- * for an observer, 380 to 780 nm at 1 nm, relative to the illuminant. */
+ * for an observer, 380 to 780 nm at 1 nm, relative to the illuminant. The
+ * boundary are the rectangular spectra. EF_NO_ANSWER for an observer whose
+ * spectrum locus is not convex, where they are not all of it; EF_INVALID when
+ * the observer sees nothing of the illuminant. */
 EF_API ef_status ef_object_solid_volume(const ef_observer *observer,
                                         const ef_illuminant *illuminant,
                                         double *volume, ef_error *error);
