@@ -321,13 +321,24 @@ static double swept(ef_lab o, ef_lab p, ef_lab q) {
          (p.a_star - o.a_star) * (q.b_star - o.b_star);
 }
 
+/* In units of CIELAB squared; a section has some 1e4. */
+#define MOST_BEND 0.5
+
 /* A straight line in X, Z, which is bent here: between the line and a parabola
- * through its middle lie 4/3 of their triangle (Archimedes). */
+ * through its middle lie 4/3 of their triangle (Archimedes). Halved where it
+ * bends more than a parabola is good for. */
 static void path_draw(path *p, double x, double z) {
   const ef_lab middle = path_lab(p, (p->x + x) / 2, (p->z + z) / 2);
   const ef_lab next = path_lab(p, x, z);
+  const double bend = swept(p->last, middle, next);
+  if (fabs(bend) > MOST_BEND) {
+    const double half_x = (p->x + x) / 2, half_z = (p->z + z) / 2;
+    path_draw(p, half_x, half_z);
+    path_draw(p, x, z);
+    return;
+  }
   p->twice_area += swept(p->centre, p->last, next);
-  p->twice_area += 4.0 / 3 * swept(p->last, middle, next);
+  p->twice_area += 4.0 / 3 * bend;
   p->x = x;
   p->z = z;
   p->last = next;
