@@ -206,6 +206,13 @@ void ef__polar_expand(const ef__polar_weights *w, const double reference[3],
 void ef__numeric_tensor(const ef_metric *metric, const double coordinate[3],
                         double tensor[9]);
 
+/* ---- Experiments (macadam.c) ------------------------------------------- */
+
+/** ef_macadam_ellipse as if one of the centres were not there; none for their
+ * number. */
+ef_status ef__macadam_without(ef_xy at, double size, size_t left_out,
+                              ef_ellipse *out, ef_error *error);
+
 /* ---- By name (formula.c) ----------------------------------------------- */
 
 /** The registered formula whose name is `name[0 .. length)`. */

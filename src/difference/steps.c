@@ -20,7 +20,7 @@ double ef_step_count(ef_uv center, ef_uv at) {
 
 /* IEC 60081 and ANSI C78.376: centres, and coefficients in 1e4, g12 being half
  * the published 2 g12. The coefficients are from memory; semi-axes and angles
- * remembered separately agree to 1 % and 0.01 degrees but for F2700, whose
+ * remembered separately agree to 1.1 % and 0.01 degrees but for F2700, whose
  * coefficients nothing confirms. */
 static const ef_lamp_colour lamps[] = {
     {"F6500", {0.313, 0.337}, 86e4, -40e4, 45e4},
