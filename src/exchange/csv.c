@@ -67,7 +67,7 @@ static ef_status find_line_end(ef__records *records, size_t from,
   const char *feed = NULL;
   size_t at = from;
   for (;;) {
-    bool is_end;
+    bool is_end = false;
     const ef_status status = reach(records, at, &is_end, error);
     if (status != EF_OK) return status;
     const char *const base = input->buffer + input->begin;
@@ -157,7 +157,7 @@ static ef_status extend_to_close(ef__records *records, size_t open,
     if (*behind != SIZE_MAX) return EF_OK;
     /* A quote at the end of a line closes: none is half read here. */
     from = *length + 1;
-    bool is_end;
+    bool is_end = false;
     ef_status status = reach(records, from, &is_end, error);
     if (status != EF_OK) return status;
     if (is_end) return refuse_open_quote(records, open, true, error);
@@ -238,7 +238,7 @@ ef_status ef__records_next(ef__records *records, ef__record_kind *kind,
   for (;;) {
     records->line += records->n_lines;
     records->n_lines = 1;
-    bool is_end;
+    bool is_end = false;
     ef_status status = reach(records, 0, &is_end, error);
     if (status != EF_OK) return status;
     if (is_end) {

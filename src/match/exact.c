@@ -72,7 +72,7 @@ static bool exact_by_newton(const ef__mixing *mixing, ef_xyz target,
                                      {0.9, 0.9, 0.9},    {0.75, 0.25, 0.25},
                                      {0.25, 0.75, 0.25}, {0.25, 0.25, 0.75}};
   const double enough = 1e-20; /* squared: 1e-10 of the white */
-  double least = INFINITY;
+  double least = (double)INFINITY;
   for (size_t s = 0; s < sizeof starts / sizeof starts[0]; ++s) {
     double a[3];
     memcpy(a, starts[s], sizeof a);

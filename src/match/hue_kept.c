@@ -17,7 +17,7 @@ static double margin(const ef__search *search, double lightness, double s,
                        s * search->target[2]};
   const ef_xyz xyz =
       ef_metric_xyz(search->metric, c, &search->mixing->conditions);
-  double least = INFINITY;
+  double least = (double)INFINITY;
   if (!ef__exact(search->mixing, xyz, amount)) return -1;
   for (int i = 0; i < 3; ++i) {
     const double room = fmin(amount[i], 1 - amount[i]);
@@ -49,7 +49,8 @@ static double crossing(const ef__search *search, double lightness, double out,
  * for where the margin has a peak. */
 static double largest_share(const ef__search *search, double lightness) {
   enum { SAMPLES = 32 };
-  double amount[3], before = -INFINITY, before_that = -INFINITY;
+  double amount[3];
+  double before = -(double)INFINITY, before_that = before;
   for (int i = SAMPLES; i >= 0; --i) {
     const double s = (double)i / SAMPLES;
     const double here = margin(search, lightness, s, amount);

@@ -165,7 +165,7 @@ static void search_around(walk *w, const double best[3]) {
 
 void ef__quantise(ef__search *search, const ef__lattice *lattice,
                   const ef__minima *minima, uint32_t code[3], double *square) {
-  walk w = {.search = search, .lattice = lattice, .least = INFINITY};
+  walk w = {.search = search, .lattice = lattice, .least = (double)INFINITY};
   if (lattice->n_codes <= EXHAUSTIVE_CODES) {
     const size_t last = lattice->n_codes - 1;
     try_box(&w, (size_t[3]){0, 0, 0}, (size_t[3]){last, last, last});
