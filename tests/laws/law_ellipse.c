@@ -153,6 +153,37 @@ static void projections_hold_sections(void **state) {
   }
 }
 
+/* Positive definite on the neutral axis too, from near black to beyond white,
+ * and no leap beside it. */
+static void greys_have_ellipses(void **state) {
+  (void)state;
+  const ef_xyz w = conditions.white;
+  for (size_t m = 0; m < every_metric_count(); ++m) {
+    for (int space = 0; space <= EF_SPACE_CONE_LM; ++space) {
+      for (double share = 1e-4; share < 2; share *= 1.7) {
+        ef_ellipsoid on, beside;
+        assert_int_equal(
+            ef_metric_ellipsoid(every_metric(m),
+                                (ef_xyz){share * w.X, share * w.Y, share * w.Z},
+                                &conditions, &frames[space], 1, &on, NULL),
+            EF_OK);
+        assert_int_equal(ef_metric_ellipsoid(every_metric(m),
+                                             (ef_xyz){share * w.X * (1 + 1e-9),
+                                                      share * w.Y, share * w.Z},
+                                             &conditions, &frames[space], 1,
+                                             &beside, NULL),
+                         EF_OK);
+        for (int k = 0; k < 3; ++k) {
+          assert_true(on.semi_axis[k] > 0 && isfinite(on.semi_axis[k]));
+          /* k_C and k_H may differ: the weights beside the axis are theirs. */
+          if (strstr(ef_metric_name(every_metric(m)), "kh=") == NULL)
+            assert_near_relative(beside.semi_axis[k], on.semi_axis[k], 1e-6);
+        }
+      }
+    }
+  }
+}
+
 static void jacobians_of_the_spaces(void **state) {
   (void)state;
   const double h = 1e-5;
@@ -183,6 +214,7 @@ int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(boundaries_differ_by_the_size),
       cmocka_unit_test(projections_hold_sections),
+      cmocka_unit_test(greys_have_ellipses),
       cmocka_unit_test(jacobians_of_the_spaces),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
