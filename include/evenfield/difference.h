@@ -252,8 +252,8 @@ EF_API size_t ef_macadam_count(void);
 /** NaN beyond the last. */
 EF_API ef_ellipse ef_macadam_at(size_t i);
 /** The same at any chromaticity, at `size` standard deviations (MacAdam takes
- * about three for a just noticeable difference; from memory). Between the centres
- * the logarithms of the matrices in u', v' are averaged with the weights
+ * about three for a just noticeable difference; from memory). Between the
+ * centres the logarithms of the matrices in u', v' are averaged with the weights
  * 1 / distance^4 and carried back: MacAdam's own at the centres, smooth, an
  * ellipse everywhere. `between` (may be NULL): inside the polygon around the
  * centres; outside, the ellipse leans on the nearest ones alone. */
