@@ -1,0 +1,62 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "command.h"
+#include "describe.h"
+#include "message.h"
+#include "render_describe.h"
+#include "result.h"
+
+static ef_status run_text(describe_scene *s, const ef_notes *notes,
+                          ef_output *output, ef_error *error) {
+  describe_text *t = describe_text_new();
+  if (t == NULL) {
+    return message_fail(error, EF_NO_MEMORY, "out of memory for the result");
+  }
+  const describe_sink sink = describe_text_sink(t);
+  size_t n, n_skipped;
+  ef_status status = describe_stream(s, notes, &sink, &n, &n_skipped, error);
+  if (status == EF_OK) {
+    status = describe_text_finish(t, s, n_skipped, output, error);
+  }
+  describe_text_free(t);
+  return status;
+}
+
+static ef_status run_data(describe_scene *s, const ef_notes *notes,
+                          ef_output *output, ef_error *error) {
+  describe_data *d =
+      describe_data_new(s, output, s->options->format == FORMAT_CSV, error);
+  if (d == NULL)
+    return error->status;
+  const describe_sink sink = describe_data_sink(d);
+  size_t n, n_skipped;
+  ef_status status = describe_stream(s, notes, &sink, &n, &n_skipped, error);
+  if (status == EF_OK)
+    status = describe_data_finish(d, n_skipped, error);
+  describe_data_free(d);
+  return status;
+}
+
+exit_code command_describe(const command_options *options) {
+  if (options->n_files == 0) {
+    return message_usage("describe needs at least one FILE; "
+                         "`evenfield describe demo:livery` shows what it does");
+  }
+  message_sink sink = {.quiet = options->quiet};
+  const ef_notes notes = message_notes(&sink);
+  ef_error error = {0};
+  describe_scene scene;
+  ef_output *output = NULL;
+  ef_status status = describe_scene_load(&scene, options, &notes, &error);
+  if (status == EF_OK) {
+    output = result_open(options, &error);
+    if (output == NULL)
+      status = error.status;
+  }
+  if (status == EF_OK) {
+    status = options->format == FORMAT_TEXT
+                 ? run_text(&scene, &notes, output, &error)
+                 : run_data(&scene, &notes, output, &error);
+  }
+  describe_scene_free(&scene);
+  return result_close(output, status, &error);
+}

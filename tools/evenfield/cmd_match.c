@@ -1,0 +1,81 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "command.h"
+#include "match.h"
+#include "message.h"
+#include "pictures.h"
+#include "render_match.h"
+#include "result.h"
+
+/* Who receives the matches. The pictures come first, so that nothing is said
+ * about pictures that could not be written. */
+typedef struct receivers {
+  pictures pictures;
+  match_text *text;
+  match_data *data;
+} receivers;
+
+static ef_status open_receivers(receivers *r, const command_options *options,
+                                const ef_notes *notes, ef_output *output,
+                                ef_error *error) {
+  *r = (receivers){.pictures = pictures_new(options->pictures, notes)};
+  if (options->format == FORMAT_TEXT) {
+    r->text = match_text_new(output);
+  } else {
+    r->data = match_data_new(output, options->format == FORMAT_CSV);
+  }
+  if (r->text != NULL || r->data != NULL)
+    return EF_OK;
+  return message_fail(error, EF_NO_MEMORY, "out of memory for the result");
+}
+
+static void close_receivers(receivers *r) {
+  match_text_free(r->text);
+  match_data_free(r->data);
+  pictures_free(&r->pictures);
+}
+
+static ef_status run(match_scene *s, receivers *r, match_summary *sum,
+                     ef_error *error) {
+  if (s->options->format != FORMAT_CSV) {
+    const ef_status status = match_measure_gamut(s, error);
+    if (status != EF_OK)
+      return status;
+  }
+  const match_sink drawing = pictures_sink(&r->pictures);
+  const match_sink result =
+      r->text != NULL ? match_text_sink(r->text) : match_data_sink(r->data);
+  const match_sink *sinks[2] = {&drawing, &result};
+  const size_t first = s->options->pictures != NULL ? 0 : 1;
+  return match_stream(s, 2 - first, sinks + first, sum, error);
+}
+
+exit_code command_match(const command_options *options) {
+  exit_code code = result_check_usage(options, 1);
+  if (code != EXIT_DONE)
+    return code;
+  message_sink sink = {.quiet = options->quiet};
+  const ef_notes notes = message_notes(&sink);
+  ef_error error = {0};
+  match_scene scene;
+  match_summary sum = {0};
+  receivers to = {0};
+  ef_output *output = NULL;
+  ef_status status = match_scene_load(&scene, options, &notes, &error);
+  if (status == EF_OK) {
+    output = result_open(options, &error);
+    if (output == NULL)
+      status = error.status;
+  }
+  if (status == EF_OK) {
+    status = open_receivers(&to, options, &notes, output, &error);
+  }
+  if (status == EF_OK)
+    status = run(&scene, &to, &sum, &error);
+  code = result_close(output, status, &error);
+  close_receivers(&to);
+  match_scene_free(&scene);
+  if (code == EXIT_DONE && options->check && sum.n_beyond > 0) {
+    return EXIT_CHECK_FAILED;
+  }
+  return code;
+}

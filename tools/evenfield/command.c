@@ -1,0 +1,70 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "command.h"
+
+#include <string.h>
+
+static const command_entry table[] = {
+    {"describe",
+     COMMAND_DESCRIBE,
+     "FILE...",
+     "what a spectrum or a colour is, in the numbers of the trade",
+     {"Colorimetry of every spectrum or colour in the files: tristimulus "
+      "values, chromaticity, CIELAB, cone excitations; for lights colour "
+      "temperature, colour rendering and luminance.",
+      "A FILE is CSV: wavelength_nm and a column for each spectrum, or a row "
+      "for each spectrum with columns named by wavelength, or colours as L,a,b "
+      "or X,Y,Z or x,y,Y. The file - is standard input, demo:NAME is a file of "
+      "the built-in scenario."},
+     command_describe},
+    {"match",
+     COMMAND_MATCH,
+     "[TARGETS]",
+     "can this three-primary display show these colours, and how well?",
+     {"Matches every target with the display: amounts of the primaries, code "
+      "values, in or out of gamut and which limit is in the way, the nearest "
+      "colour the display can show and how visible the miss is.",
+      "TARGETS is CSV: colours as L,a,b or X,Y,Z or x,y,Y, reflectance spectra "
+      "of surfaces, or spectra of lights in the unit of the display's own "
+      "spectra. Without it the ferry's painted colours are the targets "
+      "(demo:livery), and without --display the ticket kiosk is the display "
+      "(demo:kiosk-measurements)."},
+     command_match},
+    {"swatch",
+     COMMAND_SWATCH,
+     "[TARGETS | LEFT RIGHT]",
+     "pictures of target and match side by side, and a sheet of all",
+     {"Draws a split field for every target: on the left the target, on the "
+      "right what the display shows for it. With two files of as many colours "
+      "the pairs are drawn as they stand, without a display. What does not "
+      "match has a striped corner.",
+      "The pictures are PNG with BT.2020 primaries and the curve of IEC "
+      "61966-2-1, and say so in their cICP and iCCP chunks. They go into the "
+      "folder `swatches` unless --pictures names another."},
+     command_swatch},
+    {"tables",
+     COMMAND_TABLES,
+     "[NAME]",
+     "the built-in spectra, observers, illuminants, encodings and metrics",
+     {"Without NAME lists the built-in tables of spectra. NAME is one of them, "
+      "or demo:NAME for a file of the built-in scenario: its figures are "
+      "printed with all digits.",
+      "NAME may also be observers, illuminants, metrics, encodings or demo: "
+      "the "
+      "lists of what --observer, --illuminant, --metric, --display and file "
+      "arguments take."},
+     command_tables},
+};
+enum { N_COMMANDS = sizeof table / sizeof table[0] };
+
+size_t command_all(const command_entry **commands) {
+  *commands = table;
+  return N_COMMANDS;
+}
+
+const command_entry *command_find(const char *name) {
+  for (size_t i = 0; i < N_COMMANDS; ++i) {
+    if (strcmp(table[i].name, name) == 0)
+      return &table[i];
+  }
+  return NULL;
+}

@@ -1,0 +1,305 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "describe.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "message.h"
+#include "source.h"
+
+enum { BLOCK_ROWS = 8192 };
+
+/* ---- Loading ----------------------------------------------------------- */
+
+static ef_status set_equal_energy(describe_scene *s, ef_error *error) {
+  ef_illuminant *e = ef_illuminant_new("E", error);
+  if (e == NULL)
+    return error->status;
+  colour_basis basis;
+  const ef_status status = colour_basis_init(&basis, s->observer, e, error);
+  if (status == EF_OK) {
+    const ef_xyy white = ef_xyz_to_xyy(basis.white);
+    s->equal_energy = (ef_xy){white.x, white.y};
+  }
+  ef_illuminant_free(e);
+  return status;
+}
+
+ef_status describe_scene_load(describe_scene *s, const command_options *options,
+                              const ef_notes *notes, ef_error *error) {
+  *s = (describe_scene){.options = options};
+  s->observer = source_observer(options, notes, error);
+  if (s->observer == NULL)
+    return error->status;
+  if (strcmp(ef_observer_name(s->observer), "cie-1931") != 0) {
+    s->observer_1931 = ef_observer_new("cie-1931", error);
+    if (s->observer_1931 == NULL)
+      return error->status;
+  }
+  const char *name = options->illuminant != NULL ? options->illuminant : "D65";
+  s->illuminant = source_illuminant(options, "illuminant", name, notes, error);
+  if (s->illuminant == NULL)
+    return error->status;
+  const ef_status status =
+      colour_basis_init(&s->basis, s->observer, s->illuminant, error);
+  return status == EF_OK ? set_equal_energy(s, error) : status;
+}
+
+void describe_scene_free(describe_scene *s) {
+  ef_illuminant_free(s->illuminant);
+  ef_observer_free(s->observer_1931);
+  ef_observer_free(s->observer);
+}
+
+/* ---- One file ---------------------------------------------------------- */
+
+/* What one file's rows go through. */
+typedef struct file_work {
+  const ef_reader_head *head;
+  bool is_light; /* no illuminant makes its white */
+  colours colours;
+  ef_weights *cones;    /* of spectra */
+  ef_weights *xyz_1931; /* of lights, when the observer is another */
+  bool has_white;
+  ef_xyz white;               /* Y = 100 */
+  double white_level;         /* Y of the white in the unit of the rows */
+  double *xyz, *lms, *xyz_31; /* BLOCK_ROWS x 3 each */
+  description *out;
+} file_work;
+
+static void work_free(file_work *w) {
+  colours_free(&w->colours);
+  ef_weights_free(w->cones);
+  ef_weights_free(w->xyz_1931);
+  free(w->xyz);
+  free(w->lms);
+  free(w->xyz_31);
+  free(w->out);
+}
+
+static ef_status fold_more(file_work *w, const describe_scene *s,
+                           ef_error *error) {
+  ef_viewing viewing = ef_viewing_default(w->is_light ? NULL : s->illuminant);
+  viewing.absolute = w->is_light && w->head->absolute;
+  w->cones = ef_observer_weights(s->observer, EF_CONES, &w->head->grid,
+                                 &viewing, NULL, error);
+  if (w->cones == NULL)
+    return error->status;
+  if (!w->is_light || s->observer_1931 == NULL)
+    return EF_OK;
+  w->xyz_1931 = ef_observer_weights(s->observer_1931, EF_TRISTIMULUS,
+                                    &w->head->grid, &viewing, NULL, error);
+  return w->xyz_1931 != NULL ? EF_OK : error->status;
+}
+
+static ef_status work_init(file_work *w, const describe_scene *s,
+                           const ef_reader_head *head, const ef_notes *notes,
+                           ef_error *error) {
+  const bool spectra = head->content == EF_CONTENT_SPECTRA;
+  *w = (file_work){.head = head};
+  w->is_light = head->kind == EF_LIGHT || (!spectra && head->absolute);
+  ef_status status = colours_init(&w->colours, &s->basis, head, notes, error);
+  if (status == EF_OK && spectra)
+    status = fold_more(w, s, error);
+  if (status != EF_OK)
+    return status;
+  w->has_white = !w->is_light;
+  w->white = s->basis.white;
+  w->white_level = 100.0;
+  w->xyz = malloc(3 * BLOCK_ROWS * sizeof *w->xyz);
+  w->lms = malloc(3 * BLOCK_ROWS * sizeof *w->lms);
+  w->xyz_31 = malloc(3 * BLOCK_ROWS * sizeof *w->xyz_31);
+  w->out = malloc(BLOCK_ROWS * sizeof *w->out);
+  if (w->xyz != NULL && w->lms != NULL && w->xyz_31 != NULL && w->out != NULL) {
+    return EF_OK;
+  }
+  return message_fail(error, EF_NO_MEMORY, "out of memory for the rows");
+}
+
+static ef_status integrate(file_work *w, const ef_block *block, int jobs,
+                           ef_error *error) {
+  ef_status status =
+      colours_xyz(&w->colours, block->n, block->value, jobs, w->xyz, error);
+  if (status == EF_OK && w->cones != NULL) {
+    status =
+        ef_weights_apply(w->cones, block->n, block->value, jobs, w->lms, error);
+  }
+  if (status == EF_OK && w->xyz_1931 != NULL) {
+    status = ef_weights_apply(w->xyz_1931, block->n, block->value, jobs,
+                              w->xyz_31, error);
+  }
+  return status;
+}
+
+/* A light named white is what the others of its file are seen against. */
+static void find_white(file_work *w, describe_scene *s, const ef_block *block,
+                       const ef_notes *notes) {
+  for (size_t i = 0; i < block->n && w->is_light && !w->has_white; ++i) {
+    if (strcmp(block->name[i], "white") != 0 || !(w->xyz[3 * i + 1] > 0.0)) {
+      continue;
+    }
+    w->white_level = w->xyz[3 * i + 1];
+    const double scale = 100.0 / w->white_level;
+    w->white =
+        (ef_xyz){scale * w->xyz[3 * i], 100.0, scale * w->xyz[3 * i + 2]};
+    w->has_white = s->has_light_white = true;
+    message_note(notes,
+                 "%s: L*a*b* of the lights is relative to the one named "
+                 "white",
+                 w->head->file);
+  }
+}
+
+/* ---- One row ----------------------------------------------------------- */
+
+static ef_lab lab_of(const file_work *w, size_t i) {
+  const double none = (double)NAN;
+  if (!w->has_white)
+    return (ef_lab){none, none, none};
+  const double scale = 100.0 / w->white_level;
+  const double *v = w->xyz + 3 * i;
+  return ef_xyz_to_lab((ef_xyz){scale * v[0], scale * v[1], scale * v[2]},
+                       w->white);
+}
+
+static void add_cones(description *d, const describe_scene *s,
+                      const file_work *w, size_t i) {
+  const double none = (double)NAN;
+  d->lms = (ef_lms){none, none, none};
+  d->mb = (ef_mb){none, none, none};
+  if (w->cones == NULL)
+    return;
+  d->lms = (ef_lms){w->lms[3 * i], w->lms[3 * i + 1], w->lms[3 * i + 2]};
+  d->mb = ef_lms_to_mb(d->lms, ef_observer_mb_scale(s->observer));
+}
+
+/* Colour temperature is defined with the CIE 1931 observer, whoever looks. */
+static void add_temperature(description *d, const file_work *w, size_t i) {
+  const double none = (double)NAN;
+  d->cct = (ef_cct){none, none, false};
+  if (!w->is_light)
+    return;
+  const double *v = w->xyz_1931 != NULL ? w->xyz_31 : w->xyz;
+  const ef_xyy c =
+      ef_xyz_to_xyy((ef_xyz){v[3 * i], v[3 * i + 1], v[3 * i + 2]});
+  if (!isnan(c.x))
+    d->cct = ef_xy_to_cct((ef_xy){c.x, c.y});
+  if (!d->cct.defined)
+    d->cct.cct_k = d->cct.duv = none;
+}
+
+/* What has no dominant wavelength (black, a colour outside the locus) or no
+ * rendering index is left empty: an answer, not a failure. */
+static void add_dominant(description *d, const describe_scene *s,
+                         const file_work *w) {
+  const double none = (double)NAN;
+  d->dominant = (ef_dominant){none, false, none};
+  if (isnan(d->xyy.x))
+    return;
+  const ef_xyy white = ef_xyz_to_xyy(s->basis.white);
+  const ef_xy against =
+      w->is_light ? s->equal_energy : (ef_xy){white.x, white.y};
+  ef_error ignored;
+  ef_dominant found;
+  if (ef_xy_to_dominant((ef_xy){d->xyy.x, d->xyy.y}, against, s->observer,
+                        &found, &ignored) == EF_OK) {
+    d->dominant = found;
+  }
+}
+
+static void add_rendering(description *d, const file_work *w,
+                          const double *value) {
+  d->Ra = (double)NAN;
+  d->Ra_tolerable = true;
+  if (!w->is_light || w->head->content != EF_CONTENT_SPECTRA)
+    return;
+  ef_error ignored;
+  ef_rendering r;
+  if (ef_rendering_index(&w->head->grid, value, &r, &ignored) == EF_OK) {
+    d->Ra = r.Ra;
+    d->Ra_tolerable = r.tolerable;
+  }
+}
+
+static description describe(const describe_scene *s, const file_work *w,
+                            const ef_block *block, size_t i) {
+  const bool spectra = w->head->content == EF_CONTENT_SPECTRA;
+  description d = {.name = block->name[i],
+                   .file = w->head->file,
+                   .kind = w->is_light ? "light"
+                           : spectra   ? "surface"
+                                       : "colour"};
+  d.xyz = (ef_xyz){w->xyz[3 * i], w->xyz[3 * i + 1], w->xyz[3 * i + 2]};
+  d.xyy = ef_xyz_to_xyy(d.xyz);
+  d.uv = ef_xyz_to_uv(d.xyz);
+  d.lab = lab_of(w, i);
+  d.luminance_cd_m2 = w->is_light && w->head->absolute ? d.xyz.Y : (double)NAN;
+  add_cones(&d, s, w, i);
+  add_temperature(&d, w, i);
+  add_dominant(&d, s, w);
+  add_rendering(&d, w, block->value + i * w->head->width);
+  return d;
+}
+
+/* ---- All rows ---------------------------------------------------------- */
+
+static ef_status describe_file(describe_scene *s, ef_reader *reader,
+                               file_work *w, const ef_notes *notes,
+                               const describe_sink *sink, size_t *n,
+                               ef_error *error) {
+  message_progress progress = message_progress_start(s->options->quiet);
+  ef_status status = EF_OK;
+  bool is_first = true;
+  size_t n_here = 0;
+  while (status == EF_OK) {
+    ef_block block;
+    status = ef_reader_next(reader, BLOCK_ROWS, &block, error);
+    if (status != EF_OK || block.n == 0)
+      break;
+    status = integrate(w, &block, s->options->jobs, error);
+    if (status != EF_OK)
+      break;
+    if (is_first)
+      find_white(w, s, &block, notes);
+    is_first = false;
+    for (size_t i = 0; i < block.n; ++i) {
+      w->out[i] = describe(s, w, &block, i);
+    }
+    status = sink->rows(sink->self, s, block.n, w->out, error);
+    n_here += block.n;
+    message_progress_show(&progress, *n + n_here);
+  }
+  message_progress_end(&progress);
+  *n += n_here;
+  if (status == EF_OK && n_here == 0) {
+    message_fail(error, EF_MALFORMED,
+                 ef_reader_skipped(reader) > 0
+                     ? "no row is left: every one was at fault"
+                     : "there is a header and no row to read");
+    return message_place(error, w->head->file);
+  }
+  return status;
+}
+
+ef_status describe_stream(describe_scene *s, const ef_notes *notes,
+                          const describe_sink *sink, size_t *n,
+                          size_t *n_skipped, ef_error *error) {
+  *n = *n_skipped = 0;
+  ef_status status = EF_OK;
+  for (size_t f = 0; f < s->options->n_files && status == EF_OK; ++f) {
+    ef_reader *reader = source_reader(s->options, s->options->files[f],
+                                      source_kind(s->options), notes, error);
+    if (reader == NULL)
+      return error->status;
+    file_work w;
+    status = work_init(&w, s, ef_reader_get_head(reader), notes, error);
+    if (status == EF_OK) {
+      status = describe_file(s, reader, &w, notes, sink, n, error);
+    }
+    *n_skipped += ef_reader_skipped(reader);
+    work_free(&w);
+    ef_reader_free(reader);
+  }
+  return status;
+}

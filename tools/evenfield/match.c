@@ -1,0 +1,233 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "match.h"
+
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+
+#include "message.h"
+#include "source.h"
+
+/* Rows matched at a time: enough to keep all cores busy, some 7 MB. */
+enum { BLOCK_ROWS = 8192 };
+
+static const char default_targets[] = "demo:livery";
+
+/* ---- Loading ----------------------------------------------------------- */
+
+static ef_status set_metric(match_scene *s, ef_error *error) {
+  const command_options *o = s->options;
+  const char *name = o->metric != NULL ? o->metric : "ciede2000";
+  s->metric = ef_metric_new(name, error);
+  if (s->metric == NULL)
+    return message_option(error, "metric", "");
+  s->jnd = ef_metric_jnd(s->metric);
+  s->own_jnd = !isnan(o->jnd);
+  if (s->own_jnd)
+    s->jnd.value = o->jnd;
+  s->tolerance = isnan(o->tolerance) ? s->jnd.value : o->tolerance;
+  if (o->check && isnan(s->tolerance)) {
+    return message_fail(error, EF_UNKNOWN_NAME,
+                        "--check needs --tolerance: no "
+                        "JND is published for %s",
+                        ef_metric_name(s->metric));
+  }
+  s->settings = ef_match_settings_default();
+  s->settings.metric = s->metric;
+  s->settings.bits = o->bits;
+  s->settings.jnd = s->jnd.value;
+  return EF_OK;
+}
+
+static ef_status set_light(match_scene *s, const ef_notes *notes,
+                           ef_error *error) {
+  const command_options *o = s->options;
+  s->observer = source_observer(o, notes, error);
+  if (s->observer == NULL)
+    return error->status;
+  const char *name = o->illuminant != NULL ? o->illuminant : "D65";
+  s->illuminant = source_illuminant(o, "illuminant", name, notes, error);
+  if (s->illuminant == NULL)
+    return error->status;
+  return colour_basis_init(&s->basis, s->observer, s->illuminant, error);
+}
+
+static ef_status set_display(match_scene *s, const ef_notes *notes,
+                             ef_error *error) {
+  const command_options *o = s->options;
+  const ef_status status =
+      display_load(o, s->metric, notes, &s->display, error);
+  if (status != EF_OK)
+    return status;
+  const size_t n_drives = ef_device_n_drives(s->display.device);
+  if (n_drives != 3) {
+    message_fail(error, EF_NO_ANSWER,
+                 "this display has %zu primaries; a match is found for three",
+                 n_drives);
+    return message_place(error, s->display.source);
+  }
+  s->demo_display = o->display == NULL;
+  s->setup = ef_setup_new(s->display.device, s->observer, NULL, notes, error);
+  if (s->setup == NULL)
+    return message_place(error, s->display.source);
+  s->luminance_cd_m2 = isnan(o->luminance_cd_m2)
+                           ? ef_setup_luminance_cd_m2(s->setup)
+                           : o->luminance_cd_m2;
+  return EF_OK;
+}
+
+static ef_status set_targets(match_scene *s, const ef_notes *notes,
+                             ef_error *error) {
+  const command_options *o = s->options;
+  s->demo_targets = o->n_files == 0;
+  s->target_source = s->demo_targets ? default_targets : o->files[0];
+  s->reader = source_reader(o, s->target_source, source_kind(o), notes, error);
+  if (s->reader == NULL)
+    return error->status;
+  return targets_init(&s->targets, o, s->setup, &s->basis,
+                      ef_reader_get_head(s->reader), notes, error);
+}
+
+ef_status match_scene_load(match_scene *s, const command_options *options,
+                           const ef_notes *notes, ef_error *error) {
+  *s = (match_scene){.options = options};
+  ef_status status = set_metric(s, error);
+  if (status == EF_OK)
+    status = set_light(s, notes, error);
+  if (status == EF_OK)
+    status = set_display(s, notes, error);
+  if (status == EF_OK)
+    status = set_targets(s, notes, error);
+  return status;
+}
+
+void match_scene_free(match_scene *s) {
+  targets_free(&s->targets);
+  ef_reader_free(s->reader);
+  ef_setup_free(s->setup);
+  display_free(&s->display);
+  ef_illuminant_free(s->illuminant);
+  ef_observer_free(s->observer);
+  ef_metric_free(s->metric);
+}
+
+ef_status match_measure_gamut(match_scene *s, ef_error *error) {
+  const ef_status status =
+      ef_gamut_measure(s->setup, s->illuminant, s->targets.adaptation,
+                       s->options->jobs, &s->gamut, error);
+  s->has_gamut = status == EF_OK;
+  return status;
+}
+
+/* ---- Answers ----------------------------------------------------------- */
+
+const ef_shown *match_achieved(const match_scene *s, const ef_match *m) {
+  return s->settings.bits > 0 ? &m->coded : &m->nearest;
+}
+
+void match_summary_add(match_summary *sum, const match_scene *s,
+                       const char *name, const ef_match *m) {
+  const double shown = match_achieved(s, m)->difference;
+  const double jnd = s->jnd.value;
+  ++sum->n;
+  sum->sum += shown;
+  sum->mean = sum->sum / (double)sum->n;
+  if (sum->n == 1 || shown > sum->worst) {
+    sum->worst = shown;
+    snprintf(sum->worst_name, sizeof sum->worst_name, "%s", name);
+  }
+  if (shown > jnd)
+    ++sum->n_visible;
+  if (shown > s->tolerance)
+    ++sum->n_beyond;
+  if (m->in_gamut) {
+    ++sum->n_in_gamut;
+    if (shown > sum->worst_in_gamut)
+      sum->worst_in_gamut = shown;
+    return;
+  }
+  const double miss = m->nearest.difference;
+  if (miss <= jnd)
+    ++sum->n_near;
+  if (sum->worst_miss_name[0] == '\0' || miss > sum->worst_miss) {
+    sum->worst_miss = miss;
+    sum->worst_miss_parts = m->nearest.components;
+    sum->worst_miss_target = m->target;
+    snprintf(sum->worst_miss_name, sizeof sum->worst_miss_name, "%s", name);
+  }
+}
+
+/* ---- Streaming --------------------------------------------------------- */
+
+typedef struct workspace {
+  double *xyz;
+  ef_match *match;
+} workspace;
+
+static ef_status one_block(match_scene *s, const ef_block *block,
+                           const workspace *w, size_t n_sinks,
+                           const match_sink *const *sinks, match_summary *sum,
+                           ef_error *error) {
+  const int jobs = s->options->jobs;
+  ef_status status =
+      targets_xyz(&s->targets, block->n, block->value, jobs, w->xyz, error);
+  if (status == EF_OK) {
+    status = ef_match_batch(s->setup, block->n, w->xyz, &s->settings, jobs,
+                            w->match, error);
+  }
+  for (size_t i = 0; i < block->n && status == EF_OK; ++i) {
+    match_summary_add(sum, s, block->name[i], &w->match[i]);
+  }
+  for (size_t k = 0; k < n_sinks && status == EF_OK; ++k) {
+    status = sinks[k]->rows(sinks[k]->self, s, block, w->match, error);
+  }
+  return status;
+}
+
+static ef_status all_blocks(match_scene *s, const workspace *w, size_t n_sinks,
+                            const match_sink *const *sinks, match_summary *sum,
+                            ef_error *error) {
+  message_progress progress = message_progress_start(s->options->quiet);
+  ef_status status = EF_OK;
+  while (status == EF_OK) {
+    ef_block block;
+    status = ef_reader_next(s->reader, BLOCK_ROWS, &block, error);
+    if (status != EF_OK || block.n == 0)
+      break;
+    status = one_block(s, &block, w, n_sinks, sinks, sum, error);
+    message_progress_show(&progress, sum->n);
+  }
+  message_progress_end(&progress);
+  sum->n_skipped = ef_reader_skipped(s->reader);
+  return status;
+}
+
+ef_status match_stream(match_scene *s, size_t n_sinks,
+                       const match_sink *const *sinks, match_summary *sum,
+                       ef_error *error) {
+  *sum = (match_summary){0};
+  const workspace w = {malloc(3 * BLOCK_ROWS * sizeof *w.xyz),
+                       malloc(BLOCK_ROWS * sizeof *w.match)};
+  ef_status status = EF_OK;
+  if (w.xyz == NULL || w.match == NULL) {
+    status = message_fail(error, EF_NO_MEMORY, "out of memory for the matches");
+  }
+  for (size_t k = 0; k < n_sinks && status == EF_OK; ++k) {
+    status = sinks[k]->begin(sinks[k]->self, s, error);
+  }
+  if (status == EF_OK) {
+    status = all_blocks(s, &w, n_sinks, sinks, sum, error);
+  }
+  if (status == EF_OK && sum->n == 0) {
+    message_fail(error, EF_MALFORMED,
+                 sum->n_skipped > 0 ? "no row is left: every one was at fault"
+                                    : "there is a header and no row to read");
+    status = message_place(error, s->target_source);
+  }
+  for (size_t k = 0; k < n_sinks && status == EF_OK; ++k) {
+    status = sinks[k]->end(sinks[k]->self, s, sum, error);
+  }
+  free(w.xyz);
+  free(w.match);
+  return status;
+}

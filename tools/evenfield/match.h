@@ -1,0 +1,82 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** \file
+ * What `match` and `swatch` compute, before anything is written. */
+#ifndef COMMAND_MATCH_H
+#define COMMAND_MATCH_H
+
+#include <evenfield/match.h>
+
+#include "display.h"
+#include "targets.h"
+
+/** Everything the answers rest on. */
+typedef struct match_scene {
+  const command_options *options;
+  ef_metric *metric; /**< owned */
+  ef_jnd jnd;        /**< value NaN: none */
+  bool own_jnd;      /**< from --jnd */
+  double tolerance;  /**< for --check */
+  ef_observer *observer;
+  ef_illuminant *illuminant;
+  display display;
+  ef_setup *setup;
+  colour_basis basis;
+  ef_match_settings settings;
+  double luminance_cd_m2; /**< of the display's white; NaN when not known */
+  bool has_gamut;
+  ef_gamut gamut; /**< measured by match_measure_gamut */
+  const char *target_source;
+  bool demo_display, demo_targets;
+  ef_reader *reader; /**< of the targets */
+  targets targets;
+} match_scene;
+
+/** Reads and checks everything but the rows of the targets. Free with
+ * match_scene_free in every case. */
+ef_status match_scene_load(match_scene *s, const command_options *options,
+                           const ef_notes *notes, ef_error *error);
+void match_scene_free(match_scene *s);
+ef_status match_measure_gamut(match_scene *s, ef_error *error);
+
+/** What is shown for a target in the end: by the code values, or exactly when
+ * none were asked for. */
+const ef_shown *match_achieved(const match_scene *s, const ef_match *m);
+
+/** Counts over all targets so far. */
+typedef struct match_summary {
+  size_t n, n_skipped;
+  size_t n_in_gamut;
+  size_t n_near;      /**< out of gamut, missed by no more than one JND */
+  size_t n_visible;   /**< what is shown differs by more than one JND */
+  size_t n_beyond;    /**< what is shown differs by more than the tolerance */
+  double mean, worst; /**< difference of what is shown */
+  char worst_name[128];
+  double worst_in_gamut; /**< the same among targets in gamut */
+  double worst_miss;     /**< largest gap of targets out of gamut */
+  char worst_miss_name[128];
+  ef_components worst_miss_parts;
+  ef_xyz worst_miss_target;
+  double sum;
+} match_summary;
+
+void match_summary_add(match_summary *sum, const match_scene *s,
+                       const char *name, const ef_match *m);
+
+/** Who receives the answers, block by block. A function that fails ends the
+ * run. */
+typedef struct match_sink {
+  void *self;
+  ef_status (*begin)(void *self, const match_scene *s, ef_error *error);
+  ef_status (*rows)(void *self, const match_scene *s, const ef_block *block,
+                    const ef_match *matches, ef_error *error);
+  ef_status (*end)(void *self, const match_scene *s, const match_summary *sum,
+                   ef_error *error);
+} match_sink;
+
+/** Reads, matches and hands on all targets in blocks, so that memory does not
+ * grow with their number; all of `sinks` receive them. */
+ef_status match_stream(match_scene *s, size_t n_sinks,
+                       const match_sink *const *sinks, match_summary *sum,
+                       ef_error *error);
+
+#endif

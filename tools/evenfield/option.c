@@ -1,0 +1,330 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "option.h"
+
+#include <limits.h>
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include <evenfield/base.h>
+
+#include "help.h"
+#include "message.h"
+
+typedef enum option_type {
+  TYPE_FLAG,
+  TYPE_TEXT,
+  TYPE_CHOICE, /* one of `choices`; its number is stored */
+  TYPE_INTEGER,
+  TYPE_NUMBER
+} option_type;
+
+typedef struct option_row {
+  const char *name;
+  const char *value; /* placeholder in help; NULL for a flag */
+  unsigned commands; /* which know it */
+  option_type type;
+  size_t offset;    /* of its field in struct command_options */
+  double low, high; /* of a number */
+  const char *const *choices;
+  const char *help;
+} option_row;
+
+static const char *const kinds[] = {"surface", "light", NULL};
+static const char *const formats[] = {"text", "csv", "json", NULL};
+
+#define FIELD(name) offsetof(command_options, name)
+#define SEEING (COMMAND_DESCRIBE | COMMAND_MATCH | COMMAND_SWATCH)
+#define MATCHING (COMMAND_MATCH | COMMAND_SWATCH)
+#define EVERY (SEEING | COMMAND_TABLES)
+
+static const option_row table[] = {
+    {"display", "DISPLAY", MATCHING, TYPE_TEXT, FIELD(display), 0, 0, NULL,
+     "a file with the spectra of the primaries at full drive or with measured "
+     "rows (R,G,B and X,Y,Z or a spectrum), a published encoding such as "
+     "bt709, or demo:NAME; default demo:kiosk-measurements"},
+    {"tone", "CURVE", MATCHING, TYPE_TEXT, FIELD(tone), 0, 0, NULL,
+     "from drive to light: linear, power:G, iec61966-2-1, or a file with "
+     "measured ramps; default: what the display's file or encoding says"},
+    {"bits", "N", MATCHING, TYPE_INTEGER, FIELD(bits), 1, 16, NULL,
+     "bits of a code value, 1 to 16; default 8"},
+    {"ambient", "LUX", MATCHING, TYPE_NUMBER, FIELD(ambient_lux), 0, 1e6, NULL,
+     "illuminance on the screen; default 0, a dark room"},
+    {"reflectance", "R", MATCHING, TYPE_NUMBER, FIELD(reflectance), 0, 1, NULL,
+     "diffuse reflectance of the screen, 0 to 1; goes with --ambient"},
+    {"ambient-illuminant", "LIGHT", MATCHING, TYPE_TEXT,
+     FIELD(ambient_illuminant), 0, 0, NULL,
+     "what falls on the screen, named like --illuminant; default D65"},
+    {"luminance", "CD", MATCHING, TYPE_NUMBER, FIELD(luminance_cd_m2), 1e-6,
+     1e9, NULL,
+     "luminance of the display's white in cd/m2; X,Y,Z and x,y,Y targets are "
+     "then in cd/m2 too"},
+    {"observer", "OBSERVER", SEEING, TYPE_TEXT, FIELD(observer), 0, 0, NULL,
+     "a name from `evenfield tables observers` or a file with three "
+     "colour-matching functions; default cie-1931"},
+    {"illuminant", "LIGHT", SEEING, TYPE_TEXT, FIELD(illuminant), 0, 0, NULL,
+     "the light on surfaces and the white of colours: a name from `evenfield "
+     "tables illuminants`, daylight:K, planck:K, FILE or FILE:COLUMN; default "
+     "D65"},
+    {"kind", "surface|light", SEEING, TYPE_CHOICE, FIELD(kind), 0, 0, kinds,
+     "what the spectra in the files are; default: what the file says"},
+    {"adaptation", "NAME", MATCHING, TYPE_TEXT, FIELD(adaptation), 0, 0, NULL,
+     "from the targets' white to the display's: cat16, bradford or none; "
+     "default cat16, none for lights and for targets in cd/m2"},
+    {"metric", "NAME", MATCHING, TYPE_TEXT, FIELD(metric), 0, 0, NULL,
+     "how differences are measured, a name from `evenfield tables metrics`, "
+     "with parameters as in ciede2000:kl=2; default ciede2000"},
+    {"jnd", "VALUE", MATCHING, TYPE_NUMBER, FIELD(jnd), 1e-6, 1e6, NULL,
+     "the difference that is just noticed, in units of the metric; default: "
+     "the published one of the metric"},
+    {"check", NULL, COMMAND_MATCH, TYPE_FLAG, FIELD(check), 0, 0, NULL,
+     "exit with status 1 when a target's difference exceeds the tolerance"},
+    {"tolerance", "VALUE", COMMAND_MATCH, TYPE_NUMBER, FIELD(tolerance), 0, 1e6,
+     NULL, "for --check, in units of the metric; default one JND"},
+    {"pictures", "DIR", MATCHING, TYPE_TEXT, FIELD(pictures), 0, 0, NULL,
+     "the folder for a split field of every target and a sheet of all (PNG)"},
+    {"swatch-bits", "8|16", MATCHING, TYPE_INTEGER, FIELD(swatch_bits), 8, 16,
+     NULL, "bits per channel of the pictures; default 8"},
+    {"device-max", "VALUE", MATCHING, TYPE_NUMBER, FIELD(device_max), 1e-6, 1e9,
+     NULL, "device value of full drive in the files; default: what they say"},
+    {"skip-bad", NULL, SEEING, TYPE_FLAG, FIELD(skip_bad), 0, 0, NULL,
+     "leave out rows that are at fault, and count them"},
+    {"jobs", "N", SEEING, TYPE_INTEGER, FIELD(jobs), 0, 4096, NULL,
+     "threads to use; default 0, one for each core; changes no result"},
+    {"format", "text|csv|json", EVERY, TYPE_CHOICE, FIELD(format), 0, 0,
+     formats, "text for people, csv and json for programs; default text"},
+    {"output", "PATH", EVERY, TYPE_TEXT, FIELD(output), 0, 0, NULL,
+     "the file for the result; default standard output"},
+    {"force", NULL, EVERY, TYPE_FLAG, FIELD(force), 0, 0, NULL,
+     "overwrite files that are there"},
+    {"quiet", NULL, EVERY, TYPE_FLAG, FIELD(quiet), 0, 0, NULL,
+     "no notes and no progress on standard error"},
+    {"help", NULL, EVERY, TYPE_FLAG, FIELD(help), 0, 0, NULL, "this text"},
+    {"version", NULL, EVERY, TYPE_FLAG, FIELD(version), 0, 0, NULL,
+     "the version of Evenfield"},
+};
+enum { N_OPTIONS = sizeof table / sizeof table[0] };
+
+static void set_defaults(command_options *o) {
+  const double not_given = (double)NAN;
+  *o = (command_options){.ambient_lux = not_given,
+                         .reflectance = not_given,
+                         .luminance_cd_m2 = not_given,
+                         .jnd = not_given,
+                         .tolerance = not_given,
+                         .device_max = not_given,
+                         .kind = -1,
+                         .format = FORMAT_TEXT,
+                         .bits = 8,
+                         .swatch_bits = 8,
+                         .jobs = 0};
+}
+
+/* ---- Messages ---------------------------------------------------------- */
+
+/* What every message about an option ends with. */
+static exit_code see_help(const char *command, const char *what) {
+  return message_usage("%s (evenfield %s --help lists the options)", what,
+                       command);
+}
+
+/* `asked` is what was typed, up to an equals sign, with its dashes. */
+static exit_code unknown_option(const char *command, command_bit bit,
+                                const char *asked) {
+  const char *known[N_OPTIONS];
+  size_t n = 0;
+  for (size_t i = 0; i < N_OPTIONS; ++i) {
+    if (table[i].commands & bit)
+      known[n++] = table[i].name;
+  }
+  size_t near[3];
+  size_t n_near =
+      ef_nearest_names(asked + strspn(asked, "-"), known, n, 3, near);
+  if (n_near > 3)
+    n_near = 3;
+  char text[400];
+  size_t length = (size_t)snprintf(text, sizeof text, "%s has no option %.100s",
+                                   command, asked);
+  for (size_t i = 0; i < n_near; ++i) {
+    length += (size_t)snprintf(text + length, sizeof text - length, "%s--%s",
+                               i == 0 ? "; nearest: " : ", ", known[near[i]]);
+  }
+  return see_help(command, text);
+}
+
+static exit_code bad_choice(const option_row *o, const char *value) {
+  char known[120] = "";
+  for (size_t i = 0; o->choices[i] != NULL; ++i) {
+    const size_t length = strlen(known);
+    snprintf(known + length, sizeof known - length, "%s%s", i == 0 ? "" : ", ",
+             o->choices[i]);
+  }
+  return message_usage("--%s is one of %s, not \"%.100s\"", o->name, known,
+                       value);
+}
+
+static exit_code bad_range(const option_row *o, const char *value) {
+  char low[EF_NUMBER_TEXT], high[EF_NUMBER_TEXT];
+  ef_number_format(o->low, low);
+  ef_number_format(o->high, high);
+  return message_usage("--%s is %s from %s to %s, not \"%.100s\"", o->name,
+                       o->type == TYPE_INTEGER ? "a whole number" : "a number",
+                       low, high, value);
+}
+
+/* ---- Parsing ----------------------------------------------------------- */
+
+static exit_code store(command_options *options, const option_row *o,
+                       const char *value) {
+  void *field = (char *)options + o->offset;
+  double number;
+  switch (o->type) {
+  case TYPE_FLAG:
+    *(bool *)field = true;
+    return EXIT_DONE;
+  case TYPE_TEXT:
+    if (value[0] == '\0')
+      return message_usage("--%s is empty", o->name);
+    *(const char **)field = value;
+    return EXIT_DONE;
+  case TYPE_CHOICE:
+    for (int i = 0; o->choices[i] != NULL; ++i) {
+      if (strcmp(o->choices[i], value) == 0) {
+        *(int *)field = i;
+        return EXIT_DONE;
+      }
+    }
+    return bad_choice(o, value);
+  case TYPE_INTEGER:
+  case TYPE_NUMBER:
+    if (!ef_number_parse(value, strlen(value), '.', &number) ||
+        !(number >= o->low && number <= o->high)) {
+      return bad_range(o, value);
+    }
+    if (o->type == TYPE_NUMBER) {
+      *(double *)field = number;
+      return EXIT_DONE;
+    }
+    if (number != floor(number))
+      return bad_range(o, value);
+    *(int *)field = (int)number;
+    return EXIT_DONE;
+  }
+  return EXIT_USAGE;
+}
+
+static const option_row *find(command_bit bit, const char *name,
+                              size_t length) {
+  for (size_t i = 0; i < N_OPTIONS; ++i) {
+    if ((table[i].commands & bit) && strlen(table[i].name) == length &&
+        strncmp(table[i].name, name, length) == 0) {
+      return &table[i];
+    }
+  }
+  return NULL;
+}
+
+/* Arguments while they are read. */
+typedef struct parser {
+  command_options *options;
+  const char *command;
+  command_bit bit;
+  bool given[N_OPTIONS];
+} parser;
+
+/* The option's value is `value`, or the next argument when that is NULL. */
+static exit_code parse_value(parser *p, const option_row *o, const char *value,
+                             int n_left, char *const *argv, int *used) {
+  char what[200];
+  if (o->value == NULL) {
+    if (value == NULL)
+      return store(p->options, o, NULL);
+    snprintf(what, sizeof what, "--%s takes no value", o->name);
+    return see_help(p->command, what);
+  }
+  if (value == NULL && n_left > 1 && strncmp(argv[1], "--", 2) != 0) {
+    value = argv[1];
+    *used = 2;
+  }
+  if (value != NULL)
+    return store(p->options, o, value);
+  snprintf(what, sizeof what, "--%s needs a value: --%s %s", o->name, o->name,
+           o->value);
+  return see_help(p->command, what);
+}
+
+/* One argument that starts with a dash; *used is how many it took. */
+static exit_code parse_option(parser *p, int n_left, char *const *argv,
+                              int *used) {
+  const size_t length = strcspn(argv[0], "=");
+  const option_row *o =
+      argv[0][1] == '-' ? find(p->bit, argv[0] + 2, length - 2) : NULL;
+  char what[128];
+  if (o == NULL) {
+    snprintf(what, sizeof what, "%.*s", (int)(length < 100 ? length : 100),
+             argv[0]);
+    return unknown_option(p->command, p->bit, what);
+  }
+  if (p->given[o - table]) {
+    snprintf(what, sizeof what, "--%s is given twice", o->name);
+    return see_help(p->command, what);
+  }
+  p->given[o - table] = true;
+  *used = 1;
+  const char *value = argv[0][length] == '=' ? argv[0] + length + 1 : NULL;
+  return parse_value(p, o, value, n_left, argv, used);
+}
+
+exit_code options_parse(command_options *options, const char *command,
+                        command_bit bit, int argc, char *const *argv) {
+  set_defaults(options);
+  options->files = calloc((size_t)argc + 1, sizeof *options->files);
+  if (options->files == NULL) {
+    message_usage("out of memory");
+    return EXIT_NO_ANSWER;
+  }
+  parser p = {.options = options, .command = command, .bit = bit};
+  bool only_files = false;
+  for (int i = 0; i < argc;) {
+    const bool is_option =
+        !only_files && argv[i][0] == '-' && argv[i][1] != '\0';
+    if (is_option && strcmp(argv[i], "--") == 0) {
+      only_files = true;
+      ++i;
+    } else if (is_option) {
+      int used = 1;
+      const exit_code code = parse_option(&p, argc - i, argv + i, &used);
+      if (code != EXIT_DONE)
+        return code;
+      i += used;
+    } else {
+      options->files[options->n_files++] = argv[i++];
+    }
+  }
+  return EXIT_DONE;
+}
+
+void options_free(command_options *options) {
+  free(options->files);
+  options->files = NULL;
+}
+
+/* ---- Help -------------------------------------------------------------- */
+
+void options_help(FILE *out, command_bit bit) {
+  enum { INDENT = 28 };
+  for (size_t i = 0; i < N_OPTIONS; ++i) {
+    const option_row *o = &table[i];
+    if (!(o->commands & bit))
+      continue;
+    const int written =
+        fprintf(out, "  --%s%s%s", o->name, o->value != NULL ? " " : "",
+                o->value != NULL ? o->value : "");
+    if (written >= INDENT - 1) {
+      fprintf(out, "\n%*s", INDENT, "");
+    } else {
+      fprintf(out, "%*s", INDENT - written, "");
+    }
+    help_wrap(out, o->help, INDENT);
+  }
+}

@@ -1,0 +1,50 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** \file
+ * The options of all commands: one table drives parsing, checks, help and the
+ * nearest names. */
+#ifndef COMMAND_OPTION_H
+#define COMMAND_OPTION_H
+
+#include <stdbool.h>
+#include <stddef.h>
+#include <stdio.h>
+
+#include "exit.h"
+
+/** Commands, as bits of the sets in which options are known. */
+typedef enum command_bit {
+  COMMAND_DESCRIBE = 1,
+  COMMAND_MATCH = 2,
+  COMMAND_SWATCH = 4,
+  COMMAND_TABLES = 8
+} command_bit;
+
+typedef enum output_format {
+  FORMAT_TEXT,
+  FORMAT_CSV,
+  FORMAT_JSON
+} output_format;
+
+/** What was asked for. Texts are NULL, numbers NaN and integers -1 when not
+ * given, unless option.c states a default. */
+typedef struct command_options {
+  const char *display, *tone, *observer, *illuminant, *metric, *adaptation;
+  const char *ambient_illuminant, *pictures, *output;
+  double ambient_lux, reflectance, luminance_cd_m2, jnd, tolerance, device_max;
+  int kind; /**< 0 surface, 1 light, -1 not given */
+  int format;
+  int bits, swatch_bits, jobs;
+  bool skip_bad, check, force, quiet, help, version;
+  size_t n_files;
+  const char **files; /**< owned; the texts are those of argv */
+} command_options;
+
+/** Reads the arguments after the command's name. EXIT_DONE, or EXIT_USAGE with
+ * the message already written. Free with options_free in both cases. */
+exit_code options_parse(command_options *options, const char *command,
+                        command_bit bit, int argc, char *const *argv);
+void options_free(command_options *options);
+/** The options a command knows, one a line with its meaning. */
+void options_help(FILE *out, command_bit bit);
+
+#endif

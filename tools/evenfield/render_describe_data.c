@@ -1,0 +1,120 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "render_describe.h"
+
+#include <stdlib.h>
+
+#include "message.h"
+#include "record.h"
+
+struct describe_data {
+  ef_csv *csv;
+  ef_json *json;
+};
+
+static void record_description(record *r, const describe_scene *s,
+                               const description *d) {
+  record_begin(r, NULL);
+  record_text(r, "name", d->name);
+  record_text(r, "file", d->file);
+  record_text(r, "kind", d->kind);
+  record_text(r, "observer", ef_observer_name(s->observer));
+  record_text(r, "illuminant",
+              d->kind[0] == 'l' ? "" : ef_illuminant_name(s->illuminant));
+  record_xyz(r, d->xyz);
+  record_number(r, "x", d->xyy.x);
+  record_number(r, "y", d->xyy.y);
+  record_number(r, "u_prime", d->uv.u_prime);
+  record_number(r, "v_prime", d->uv.v_prime);
+  record_lab(r, d->lab);
+  record_number(r, "luminance_cd_m2", d->luminance_cd_m2);
+  record_number(r, "cct_k", d->cct.cct_k);
+  record_number(r, "duv", d->cct.duv);
+  record_number(r, "Ra", d->Ra);
+  record_number(r, "dominant_nm", d->dominant.dominant_nm);
+  record_boolean(r, "dominant_is_complementary", d->dominant.complementary);
+  record_number(r, "purity", d->dominant.purity);
+  record_number(r, "cone_l", d->lms.cone_l);
+  record_number(r, "cone_m", d->lms.cone_m);
+  record_number(r, "cone_s", d->lms.cone_s);
+  record_number(r, "mb_l", d->mb.mb_l);
+  record_number(r, "mb_s", d->mb.mb_s);
+  record_end(r);
+}
+
+describe_data *describe_data_new(const describe_scene *s, ef_output *output,
+                                 bool is_csv, ef_error *error) {
+  describe_data *d = calloc(1, sizeof *d);
+  if (d == NULL) {
+    message_fail(error, EF_NO_MEMORY, "out of memory for the result");
+    return NULL;
+  }
+  if (is_csv) {
+    d->csv = ef_csv_new(output, error);
+  } else {
+    d->json = ef_json_new(output, error);
+  }
+  if (d->csv != NULL) {
+    const description none = {.name = "", .file = "", .kind = ""};
+    record r = record_of_csv(d->csv, true);
+    record_description(&r, s, &none);
+  } else if (d->json != NULL) {
+    ef_json_begin_object(d->json, NULL);
+    ef_json_text(d->json, "observer", ef_observer_name(s->observer));
+    ef_json_text(d->json, "cones",
+                 ef_observer_cones_borrowed(s->observer)
+                     ? "CIE 2006 fundamentals of the nearest field"
+                     : "the observer's own");
+    ef_json_number(d->json, "cones_field_deg",
+                   ef_observer_field_deg(s->observer));
+    ef_json_begin_array(d->json, "spectra");
+  } else {
+    free(d);
+    return NULL;
+  }
+  return d;
+}
+
+static ef_status rows(void *self, const describe_scene *s, size_t n,
+                      const description *descriptions, ef_error *error) {
+  (void)error; /* the writers keep their errors until they are finished */
+  describe_data *d = self;
+  for (size_t i = 0; i < n; ++i) {
+    record r =
+        d->csv != NULL ? record_of_csv(d->csv, false) : record_of_json(d->json);
+    record_description(&r, s, &descriptions[i]);
+  }
+  return EF_OK;
+}
+
+describe_sink describe_data_sink(describe_data *d) {
+  return (describe_sink){.self = d, .rows = rows};
+}
+
+ef_status describe_data_finish(describe_data *d, size_t n_skipped,
+                               ef_error *error) {
+  ef_status status;
+  if (d->csv != NULL) {
+    status = ef_csv_finish(d->csv, error);
+  } else {
+    ef_json_end_array(d->json);
+    ef_json_integer(d->json, "skipped_rows", (int64_t)n_skipped);
+    ef_json_end_object(d->json);
+    status = ef_json_finish(d->json, error);
+  }
+  d->csv = NULL;
+  d->json = NULL;
+  return status;
+}
+
+/* A run that failed half-way leaves a writer open: it is finished for its
+ * memory, and what it says is of no interest any more. */
+void describe_data_free(describe_data *d) {
+  if (d == NULL)
+    return;
+  ef_error ignored;
+  if (d->csv != NULL)
+    ef_csv_finish(d->csv, &ignored);
+  if (d->json != NULL)
+    ef_json_finish(d->json, &ignored);
+  free(d);
+}

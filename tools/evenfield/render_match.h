@@ -1,0 +1,27 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** \file
+ * The answers of `match`: as text for people, or as CSV or JSON. */
+#ifndef COMMAND_RENDER_MATCH_H
+#define COMMAND_RENDER_MATCH_H
+
+#include "match.h"
+#include "text.h"
+
+/** Keeps what a person can read and writes it at the end. */
+typedef struct match_text match_text;
+/** NULL without memory; `output` must outlive it. */
+match_text *match_text_new(ef_output *output);
+void match_text_free(match_text *t);
+match_sink match_text_sink(match_text *t);
+
+/** What the answers rest on, and the gamut: the lower part of the text. */
+void render_match_basis(text *out, const match_scene *s,
+                        const match_summary *sum);
+
+/** Writes every row as it comes. */
+typedef struct match_data match_data;
+match_data *match_data_new(ef_output *output, bool is_csv);
+void match_data_free(match_data *d);
+match_sink match_data_sink(match_data *d);
+
+#endif

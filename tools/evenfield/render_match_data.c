@@ -1,0 +1,287 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "render_match.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "message.h"
+#include "record.h"
+
+struct match_data {
+  ef_output *output;
+  bool is_csv;
+  ef_csv *csv;
+  ef_json *json;
+};
+
+/* ---- One target -------------------------------------------------------- */
+
+static void names_of_drives(const ef_device *device,
+                            const char *names[EF_MAX_DRIVES]) {
+  for (size_t i = 0; i < ef_device_n_drives(device); ++i) {
+    names[i] = ef_device_drive_name(device, i);
+  }
+}
+
+static void record_colour(record *r, const char *key, ef_xyz xyz,
+                          ef_xyz white) {
+  record_begin(r, key);
+  record_xyz(r, xyz);
+  record_lab(r, ef_xyz_to_lab(xyz, white));
+  record_end(r);
+}
+
+/* The limits that hold the nearest colour, by name. */
+static size_t limits_of(const ef_device *device, const ef_match *m,
+                        const char *names[2 * EF_MAX_DRIVES]) {
+  size_t n = 0;
+  for (size_t i = 0; i < ef_device_n_drives(device); ++i) {
+    const uint32_t bit = (uint32_t)1 << i;
+    if (m->held_low & bit)
+      names[n++] = ef_device_limit_name(device, i, false);
+    if (m->held_high & bit)
+      names[n++] = ef_device_limit_name(device, i, true);
+  }
+  return n;
+}
+
+static void record_shown(record *r, const char *key, const match_scene *s,
+                         const ef_shown *shown) {
+  const double none = (double)NAN;
+  const ef_device *device = s->display.device;
+  const size_t n = ef_device_n_drives(device);
+  const char *names[EF_MAX_DRIVES];
+  names_of_drives(device, names);
+  ef_shown x = *shown;
+  if (!x.found) {
+    for (size_t i = 0; i < n; ++i)
+      x.amount[i] = none;
+    x.xyz = (ef_xyz){none, none, none};
+    x.difference = x.jnds = none;
+    x.components = (ef_components){none, none, none};
+  }
+  record_begin(r, key);
+  record_boolean(r, "found", x.found);
+  record_numbers(r, "amounts", n, names, x.amount);
+  record_xyz(r, x.xyz);
+  record_number(r, "difference", x.difference);
+  record_number(r, "jnds", x.jnds);
+  record_number(r, "lightness_part", x.components.lightness);
+  record_number(r, "chroma_part", x.components.chroma);
+  record_number(r, "hue_part", x.components.hue);
+  record_end(r);
+}
+
+static void record_match(record *r, const match_scene *s, const char *name,
+                         const ef_match *m) {
+  const ef_device *device = s->display.device;
+  const size_t n = ef_device_n_drives(device);
+  const char *names[EF_MAX_DRIVES], *limits[2 * EF_MAX_DRIVES];
+  names_of_drives(device, names);
+  const ef_shown *achieved = match_achieved(s, m);
+  const ef_xyz white = ef_setup_white(s->setup);
+  double codes[EF_MAX_DRIVES];
+  for (size_t i = 0; i < n; ++i)
+    codes[i] = (double)m->code[i];
+  record_begin(r, NULL);
+  record_text(r, "name", name);
+  record_boolean(r, "in_gamut", m->in_gamut);
+  record_colour(r, "target", m->target, white);
+  record_numbers(r, "amounts", n, names, m->amount);
+  record_texts(r, "limits", limits_of(device, m, limits), limits);
+  record_numbers(r, "drive", n, names, achieved->drive);
+  record_numbers(r, "codes", n, names, codes);
+  record_colour(r, "achieved", achieved->xyz, white);
+  record_begin(r, "difference");
+  record_text(r, "metric", ef_metric_name(s->metric));
+  record_number(r, "value", achieved->difference);
+  record_number(r, "jnds", achieved->jnds);
+  record_number(r, "rounded_codes", m->rounded_difference);
+  record_end(r);
+  record_shown(r, "nearest", s, &m->nearest);
+  record_shown(r, "hue_kept", s, &m->hue_kept);
+  record_end(r);
+}
+
+/* ---- The document around the targets ----------------------------------- */
+
+static void write_xy(ef_json *j, const char *key, ef_xy xy) {
+  ef_json_begin_object(j, key);
+  ef_json_number(j, "x", xy.x);
+  ef_json_number(j, "y", xy.y);
+  ef_json_end_object(j);
+}
+
+static void write_xyz(ef_json *j, const char *key, ef_xyz xyz) {
+  ef_json_begin_object(j, key);
+  ef_json_number(j, "X", xyz.X);
+  ef_json_number(j, "Y", xyz.Y);
+  ef_json_number(j, "Z", xyz.Z);
+  ef_json_end_object(j);
+}
+
+static void write_additivity(ef_json *j, const display *d) {
+  if (d->additivity.known) {
+    ef_json_begin_object(j, "white_against_sum");
+    ef_json_number(j, "difference", d->additivity_difference);
+    ef_json_number(j, "luminance_ratio", d->additivity.luminance_ratio);
+    ef_json_end_object(j);
+  }
+  const display_residuals *r = &d->residuals;
+  if (r->n == 0)
+    return;
+  ef_json_begin_object(j, "mixtures_against_model");
+  ef_json_integer(j, "count", (int64_t)r->n);
+  ef_json_number(j, "mean", r->mean);
+  ef_json_number(j, "p95", r->p95);
+  ef_json_number(j, "worst", r->worst);
+  ef_json_integer(j, "worst_line", (int64_t)r->worst_line);
+  ef_json_end_object(j);
+}
+
+static void write_display(ef_json *j, const match_scene *s) {
+  const display *d = &s->display;
+  ef_json_begin_object(j, "display");
+  ef_json_text(j, "name", ef_device_name(d->device));
+  ef_json_text(j, "source", d->source);
+  ef_json_text(j, "known_from", display_origin_text(d->origin));
+  ef_json_number(j, "luminance_cd_m2", s->luminance_cd_m2);
+  write_xyz(j, "white", ef_setup_white(s->setup));
+  write_xyz(j, "black", ef_setup_black(s->setup));
+  ef_json_begin_array(j, "primaries");
+  for (size_t i = 0; i < ef_device_n_drives(d->device); ++i) {
+    ef_json_begin_object(j, NULL);
+    ef_json_text(j, "name", ef_device_drive_name(d->device, i));
+    write_xy(j, "full_drive", s->gamut.primary[i]);
+    ef_json_text(j, "tone_curve", ef_device_curve_about(d->device, i));
+    ef_json_end_object(j);
+  }
+  ef_json_end_array(j);
+  write_additivity(j, d);
+  ef_json_end_object(j);
+}
+
+static void write_gamut(ef_json *j, const ef_gamut *g) {
+  ef_json_begin_object(j, "gamut");
+  ef_json_number(j, "area_xy", g->area_xy);
+  ef_json_number(j, "area_uv", g->area_uv);
+  ef_json_number(j, "locus_share_xy", g->locus_share_xy);
+  ef_json_number(j, "locus_share_uv", g->locus_share_uv);
+  ef_json_number(j, "volume_lab", g->volume_lab);
+  ef_json_number(j, "object_colours_share", g->solid_share);
+  ef_json_number(j, "contrast", g->contrast);
+  ef_json_end_object(j);
+}
+
+static void write_basis(ef_json *j, const match_scene *s) {
+  ef_json_text(j, "observer", ef_observer_name(s->observer));
+  ef_json_text(j, "illuminant", ef_illuminant_name(s->illuminant));
+  ef_json_text(j, "targets_are", s->targets.about);
+  ef_json_text(j, "targets_source", s->target_source);
+  ef_json_text(j, "adaptation", ef_adaptation_name(s->targets.adaptation));
+  ef_json_text(j, "metric", ef_metric_name(s->metric));
+  ef_json_begin_object(j, "jnd");
+  ef_json_number(j, "value", s->jnd.value);
+  ef_json_text(j, "criterion", s->own_jnd ? "" : s->jnd.criterion);
+  ef_json_text(j, "source", s->own_jnd ? "--jnd" : s->jnd.source);
+  ef_json_end_object(j);
+  ef_json_integer(j, "bits", s->settings.bits);
+}
+
+static void write_summary(ef_json *j, const match_scene *s,
+                          const match_summary *sum) {
+  ef_json_begin_object(j, "summary");
+  ef_json_integer(j, "targets", (int64_t)sum->n);
+  ef_json_integer(j, "skipped_rows", (int64_t)sum->n_skipped);
+  ef_json_integer(j, "in_gamut", (int64_t)sum->n_in_gamut);
+  ef_json_integer(j, "missed_within_one_jnd", (int64_t)sum->n_near);
+  ef_json_integer(j, "above_one_jnd", (int64_t)sum->n_visible);
+  ef_json_number(j, "mean_difference", sum->mean);
+  ef_json_number(j, "worst_difference", sum->worst);
+  ef_json_text(j, "worst_name", sum->worst_name);
+  if (s->options->check) {
+    ef_json_number(j, "tolerance", s->tolerance);
+    ef_json_integer(j, "beyond_tolerance", (int64_t)sum->n_beyond);
+  }
+  ef_json_end_object(j);
+}
+
+/* ---- The sink ---------------------------------------------------------- */
+
+static ef_status begin(void *self, const match_scene *s, ef_error *error) {
+  match_data *d = self;
+  if (d->is_csv) {
+    d->csv = ef_csv_new(d->output, error);
+    if (d->csv == NULL)
+      return error->status;
+    record r = record_of_csv(d->csv, true);
+    const ef_match none = {0};
+    record_match(&r, s, "", &none);
+    return EF_OK;
+  }
+  d->json = ef_json_new(d->output, error);
+  if (d->json == NULL)
+    return error->status;
+  ef_json_begin_object(d->json, NULL);
+  ef_json_boolean(d->json, "demo", s->demo_display && s->demo_targets);
+  write_basis(d->json, s);
+  write_display(d->json, s);
+  write_gamut(d->json, &s->gamut);
+  ef_json_begin_array(d->json, "targets");
+  return EF_OK;
+}
+
+static ef_status rows(void *self, const match_scene *s, const ef_block *block,
+                      const ef_match *matches, ef_error *error) {
+  (void)error; /* the writers keep their errors until they are finished */
+  match_data *d = self;
+  for (size_t i = 0; i < block->n; ++i) {
+    record r =
+        d->is_csv ? record_of_csv(d->csv, false) : record_of_json(d->json);
+    record_match(&r, s, block->name[i], &matches[i]);
+  }
+  return EF_OK;
+}
+
+static ef_status end(void *self, const match_scene *s, const match_summary *sum,
+                     ef_error *error) {
+  match_data *d = self;
+  if (d->is_csv) {
+    ef_csv *csv = d->csv;
+    d->csv = NULL;
+    return ef_csv_finish(csv, error);
+  }
+  ef_json *json = d->json;
+  d->json = NULL;
+  ef_json_end_array(json);
+  write_summary(json, s, sum);
+  ef_json_end_object(json);
+  return ef_json_finish(json, error);
+}
+
+match_data *match_data_new(ef_output *output, bool is_csv) {
+  match_data *d = calloc(1, sizeof *d);
+  if (d == NULL)
+    return NULL;
+  d->output = output;
+  d->is_csv = is_csv;
+  return d;
+}
+
+/* A run that failed half-way leaves a writer open: it is finished for its
+ * memory, and what it says is of no interest any more. */
+void match_data_free(match_data *d) {
+  if (d == NULL)
+    return;
+  ef_error ignored;
+  if (d->csv != NULL)
+    ef_csv_finish(d->csv, &ignored);
+  if (d->json != NULL)
+    ef_json_finish(d->json, &ignored);
+  free(d);
+}
+
+match_sink match_data_sink(match_data *d) {
+  return (match_sink){.self = d, .begin = begin, .rows = rows, .end = end};
+}

@@ -1,0 +1,472 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "render_match.h"
+
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "message.h"
+#include "text.h"
+#include "words.h"
+
+/* A person reads so many rows; of a longer list the worst are shown. */
+enum { MOST_ROWS = 200, WORST_ROWS = 50, MOST_READINGS = 12 };
+
+typedef struct kept_row {
+  char *name;
+  size_t order; /* in the file */
+  ef_match match;
+  double difference;
+} kept_row;
+
+struct match_text {
+  ef_output *output;
+  kept_row *row; /* MOST_ROWS + 1 */
+  size_t n_rows, n_seen;
+  bool worst_only;
+};
+
+/* ---- Which rows are kept ----------------------------------------------- */
+
+static int by_difference(const void *a, const void *b) {
+  const kept_row *p = a, *q = b;
+  if (p->difference != q->difference) {
+    return p->difference < q->difference ? 1 : -1;
+  }
+  return (p->order > q->order) - (p->order < q->order);
+}
+
+/* By how far the target lies outside the gamut, the codes apart. */
+static int by_miss(const void *a, const void *b) {
+  const kept_row *p = a, *q = b;
+  const double x = p->match.nearest.difference;
+  const double y = q->match.nearest.difference;
+  if (x != y)
+    return x < y ? 1 : -1;
+  return (p->order > q->order) - (p->order < q->order);
+}
+
+/* Keeps the worst once there are more than a person reads. */
+static void thin(match_text *t) {
+  t->worst_only = true;
+  qsort(t->row, t->n_rows, sizeof *t->row, by_difference);
+  while (t->n_rows > WORST_ROWS)
+    free(t->row[--t->n_rows].name);
+}
+
+static ef_status keep(void *self, const match_scene *s, const ef_block *block,
+                      const ef_match *matches, ef_error *error) {
+  match_text *t = self;
+  for (size_t i = 0; i < block->n; ++i) {
+    const double difference = match_achieved(s, &matches[i])->difference;
+    const size_t order = t->n_seen++;
+    if (t->worst_only && t->n_rows >= WORST_ROWS &&
+        difference <= t->row[WORST_ROWS - 1].difference) {
+      continue;
+    }
+    char *name = strdup(block->name[i]);
+    if (name == NULL) {
+      return message_fail(error, EF_NO_MEMORY, "out of memory for names");
+    }
+    t->row[t->n_rows++] = (kept_row){name, order, matches[i], difference};
+    if (t->n_rows > MOST_ROWS)
+      thin(t);
+  }
+  return EF_OK;
+}
+
+/* ---- The answer -------------------------------------------------------- */
+
+static double hue_of(const match_scene *s, ef_xyz xyz) {
+  const ef_lab lab = ef_xyz_to_lab(xyz, ef_setup_white(s->setup));
+  return ef_lab_to_lch(lab).h_deg;
+}
+
+/* "5.32 Delta E*00 (5.3 JND)" */
+static void add_difference(text *t, const match_scene *s, double value) {
+  char amount[EF_NUMBER_TEXT], jnds[EF_NUMBER_TEXT];
+  words_amount(value, amount);
+  text_format(t, "%s %s", amount, ef_metric_symbol(s->metric));
+  if (isnan(s->jnd.value))
+    return;
+  ef_number_format_fixed(value / s->jnd.value, 1, jnds);
+  text_format(t, " (%s JND)", jnds);
+}
+
+static void add_answer_for_one(text *t, const match_scene *s,
+                               const match_summary *sum) {
+  if (sum->n_in_gamut == 1) {
+    text_format(t, "This display can show %s", sum->worst_name);
+    if (s->settings.bits > 0) {
+      text_format(t, "; its best %d-bit code is off by ", s->settings.bits);
+      add_difference(t, s, sum->worst);
+    }
+    return;
+  }
+  char direction[WORDS_ROOM];
+  words_direction(sum->worst_miss_parts, hue_of(s, sum->worst_miss_target),
+                  direction);
+  text_format(t,
+              "This display cannot show %s: the nearest colour it has is "
+              "off by ",
+              sum->worst_name);
+  add_difference(t, s, sum->worst_miss);
+  text_format(t, ", %s", direction);
+}
+
+static void add_answer_for_all(text *t, const match_scene *s,
+                               const match_summary *sum) {
+  text_format(t, "This display can show all %zu targets", sum->n);
+  if (s->settings.bits == 0)
+    return;
+  text_format(t, "; as %d-bit codes the worst, %s, is off by ",
+              s->settings.bits, sum->worst_name);
+  add_difference(t, s, sum->worst);
+}
+
+static void add_answer_for_some(text *t, const match_scene *s,
+                                const match_summary *sum) {
+  const size_t n_out = sum->n - sum->n_in_gamut;
+  if (sum->n_in_gamut == 0) {
+    text_format(t, "This display can show none of the %zu targets", sum->n);
+  } else {
+    text_format(t, "This display can show %zu of the %zu targets",
+                sum->n_in_gamut, sum->n);
+  }
+  if (sum->n_near > 0) {
+    text_format(t, "%s%zu more to within one JND",
+                sum->n_in_gamut == 0 ? ", " : " and ", sum->n_near);
+  }
+  if (n_out == 1) {
+    text_format(t, "; it misses %s by ", sum->worst_miss_name);
+  } else {
+    text_format(t, "; the worst miss is %s, by ", sum->worst_miss_name);
+  }
+  add_difference(t, s, sum->worst_miss);
+  if (s->settings.bits > 0 && sum->worst_in_gamut > s->jnd.value) {
+    text_format(t, ". %d-bit codes put others off by up to ", s->settings.bits);
+    add_difference(t, s, sum->worst_in_gamut);
+  }
+}
+
+/* The first line: how many targets can be shown, and the worst miss. */
+static void add_answer(text *t, const match_scene *s,
+                       const match_summary *sum) {
+  if (sum->n == 1) {
+    add_answer_for_one(t, s, sum);
+  } else if (sum->n_in_gamut == sum->n) {
+    add_answer_for_all(t, s, sum);
+  } else {
+    add_answer_for_some(t, s, sum);
+  }
+  text_add(t, ".\n");
+}
+
+static void add_second_lines(text *t, const match_scene *s,
+                             const match_summary *sum) {
+  if (s->demo_targets && s->demo_display) {
+    text_add(t, "No files were named, so this is the built-in demo: a ferry's "
+                "painted colours\n(demo:livery) on a ticket kiosk's display "
+                "(demo:kiosk-measurements).\n");
+  } else if (s->demo_targets) {
+    text_add(t, "No targets were named, so these are the demo's painted "
+                "colours (demo:livery).\n");
+  } else if (s->demo_display) {
+    text_add(t, "No display was named, so this is the demo's ticket kiosk "
+                "(demo:kiosk-measurements).\n");
+  }
+  if (s->options->check) {
+    char tolerance[EF_NUMBER_TEXT];
+    ef_number_format(s->tolerance, tolerance);
+    text_format(t,
+                "Check: %zu of %zu targets differ by more than the "
+                "tolerance of %s %s.\n",
+                sum->n_beyond, sum->n, tolerance, ef_metric_symbol(s->metric));
+  }
+  if (sum->n_skipped > 0) {
+    text_format(t, "%zu rows were at fault and are left out.\n",
+                sum->n_skipped);
+  }
+}
+
+/* ---- The table --------------------------------------------------------- */
+
+static void start_table(text_table *t, const match_scene *s,
+                        const char *codes) {
+  const ef_device *device = s->display.device;
+  const size_t n = ef_device_n_drives(device);
+  table_column(t, "Target", "", true);
+  table_column(t, "In", "gamut", true);
+  for (size_t i = 0; i < n; ++i) {
+    table_column(t, i == 0 ? "Amount shown, %" : NULL,
+                 ef_device_drive_name(device, i), false);
+  }
+  for (size_t i = 0; i < n && s->settings.bits > 0; ++i) {
+    table_column(t, i == 0 ? codes : NULL, ef_device_drive_name(device, i),
+                 false);
+  }
+  table_column(t, "Off by", ef_metric_symbol(s->metric), false);
+  if (!isnan(s->jnd.value))
+    table_column(t, NULL, "JND", false);
+}
+
+static const char *in_gamut_word(const match_scene *s, const ef_match *m) {
+  if (m->in_gamut)
+    return "yes";
+  return m->nearest.difference <= s->jnd.value ? "nearly" : "no";
+}
+
+static void add_table(text *out, const match_text *m, const match_scene *s) {
+  text_table t = table_new();
+  const size_t n = ef_device_n_drives(s->display.device);
+  char codes[40];
+  snprintf(codes, sizeof codes, "Code, %d bit", s->settings.bits);
+  start_table(&t, s, codes);
+  for (size_t k = 0; k < m->n_rows; ++k) {
+    const ef_match *match = &m->row[k].match;
+    const ef_shown *shown = match_achieved(s, match);
+    table_cell(&t, m->row[k].name);
+    table_cell(&t, in_gamut_word(s, match));
+    for (size_t i = 0; i < n; ++i) {
+      table_number(&t, 100.0 * shown->amount[i], 2);
+    }
+    for (size_t i = 0; i < n && s->settings.bits > 0; ++i) {
+      table_format(&t, "%u", (unsigned)match->code[i]);
+    }
+    table_number(&t, shown->difference, 2);
+    if (!isnan(s->jnd.value))
+      table_number(&t, shown->jnds, 1);
+  }
+  text_add(out, "\n");
+  if (m->worst_only) {
+    text_format(out, "The %zu worst of %zu targets (--format csv gives all):\n",
+                m->n_rows, m->n_seen);
+  }
+  table_finish(&t, out);
+}
+
+/* ---- Out of gamut ------------------------------------------------------ */
+
+/* "a, b and c" piece by piece: what goes before piece `i` of `n`. */
+static const char *joint(size_t i, size_t n) {
+  return i == 0 ? "" : i + 1 == n ? " and " : ", ";
+}
+
+static void add_limits(text *t, const ef_device *device, const ef_match *m) {
+  const char *name[2 * EF_MAX_DRIVES];
+  size_t n = 0;
+  for (size_t i = 0; i < ef_device_n_drives(device); ++i) {
+    const uint32_t bit = (uint32_t)1 << i;
+    if (m->held_low & bit)
+      name[n++] = ef_device_limit_name(device, i, false);
+    if (m->held_high & bit)
+      name[n++] = ef_device_limit_name(device, i, true);
+  }
+  for (size_t i = 0; i < n; ++i) {
+    text_format(t, "%s%s", joint(i, n), name[i]);
+  }
+}
+
+static void add_percent(text *t, double amount) {
+  char number[EF_NUMBER_TEXT];
+  ef_number_format_fixed(100.0 * amount, 1, number);
+  text_format(t, "%s %%", number);
+}
+
+/* How far amount `i` lies outside its limits. */
+static double excess(const ef_match *m, size_t i) {
+  const double a = m->amount[i];
+  return a < 0.0 ? -a : a > 1.0 ? a - 1.0 : 0.0;
+}
+
+/* Below a twentieth of a percent, which the figures do not show. */
+static bool is_slight(double share) {
+  return share < 0.0005;
+}
+
+/* "3.2 % of blue would have to be added to the target's side" */
+static void add_negative(text *t, const ef_device *device, const ef_match *m,
+                         size_t n, const size_t *which) {
+  for (size_t k = 0; k < n; ++k) {
+    text_add(t, joint(k, n));
+    add_percent(t, excess(m, which[k]));
+    text_format(t, " of %s", ef_device_drive_name(device, which[k]));
+  }
+  text_add(t, " would have to be added to the target's side");
+}
+
+/* "more red and green is needed than full drive gives" */
+static void add_strong(text *t, const ef_device *device, size_t n,
+                       const size_t *which) {
+  text_add(t, "more ");
+  for (size_t k = 0; k < n; ++k) {
+    text_format(t, "%s%s", joint(k, n), ef_device_drive_name(device, which[k]));
+  }
+  text_add(t, " is needed than full drive gives");
+}
+
+/* The classical reading of the signed amounts: a negative one is light of that
+ * primary added to the target, as in the matching experiments. */
+static void add_reading(text *t, const ef_device *device, const ef_match *m) {
+  const size_t n = ef_device_n_drives(device);
+  size_t below[EF_MAX_DRIVES], above[EF_MAX_DRIVES];
+  size_t n_below = 0, n_above = 0;
+  for (size_t i = 0; i < n; ++i) {
+    if (is_slight(excess(m, i)))
+      continue;
+    if (m->amount[i] < 0.0)
+      below[n_below++] = i;
+    else
+      above[n_above++] = i;
+  }
+  if (n_below + n_above == 0) {
+    text_add(t, " An exact match is less than 0.1 % of full drive away.");
+    return;
+  }
+  text_add(t, " An exact match takes ");
+  for (size_t i = 0; i < n; ++i) {
+    text_format(t, "%s%s ", joint(i, n), ef_device_drive_name(device, i));
+    add_percent(t, m->amount[i]);
+  }
+  text_add(t, ": ");
+  if (n_below > 0)
+    add_negative(t, device, m, n_below, below);
+  if (n_below > 0 && n_above > 0)
+    text_add(t, ", and ");
+  if (n_above > 0)
+    add_strong(t, device, n_above, above);
+  text_add(t, ".");
+}
+
+static void add_miss(text *out, const match_scene *s, const kept_row *row) {
+  const ef_match *m = &row->match;
+  const ef_device *device = s->display.device;
+  text t = {0};
+  char direction[WORDS_ROOM], amount[EF_NUMBER_TEXT];
+  words_direction(m->nearest.components, hue_of(s, m->target), direction);
+  text_format(&t, "%s: the nearest colour is off by ", row->name);
+  add_difference(&t, s, m->nearest.difference);
+  text_format(&t, ", %s; in the way: ", direction);
+  add_limits(&t, device, m);
+  text_add(&t, ".");
+  if (m->hue_kept.found) {
+    words_amount(m->hue_kept.difference, amount);
+    text_format(&t, " With hue and lightness kept it is off by %s %s.", amount,
+                ef_metric_symbol(s->metric));
+  }
+  add_reading(&t, device, m);
+  text_add(out, "  ");
+  text_wrap(out, t.bytes != NULL ? t.bytes : "", 4);
+  out->failed = out->failed || t.failed;
+  text_free(&t);
+}
+
+/* Too little to tell about: the two decimals of the table show nothing. */
+static bool is_told(const kept_row *row) {
+  return !row->match.in_gamut && row->match.nearest.difference >= 0.005;
+}
+
+static void add_misses(text *out, const match_text *m, const match_scene *s,
+                       const match_summary *sum) {
+  const size_t n_out = sum->n - sum->n_in_gamut;
+  if (n_out == 0)
+    return;
+  kept_row *sorted = malloc(m->n_rows * sizeof *sorted);
+  if (sorted == NULL) {
+    out->failed = true;
+    return;
+  }
+  memcpy(sorted, m->row, m->n_rows * sizeof *sorted);
+  qsort(sorted, m->n_rows, sizeof *sorted, by_miss);
+  size_t n_told = 0;
+  text_add(out, "\nOut of this display's gamut, the worst first:\n");
+  for (size_t k = 0; k < m->n_rows && n_told < MOST_READINGS; ++k) {
+    if (!is_told(&sorted[k]))
+      continue;
+    add_miss(out, s, &sorted[k]);
+    ++n_told;
+  }
+  if (n_told < n_out) {
+    const char *more = n_told > 0 ? " more" : "";
+    if (n_told < MOST_READINGS) {
+      text_format(out, "  %zu%s by less than 0.005 %s\n", n_out - n_told, more,
+                  ef_metric_symbol(s->metric));
+    } else {
+      text_format(out, "  %zu%s (--format csv or json gives all)\n",
+                  n_out - n_told, more);
+    }
+  }
+  free(sorted);
+}
+
+static void add_pictures(text *out, const match_scene *s) {
+  const command_options *o = s->options;
+  if (o->pictures == NULL)
+    return;
+  text_format(out,
+              "\nPictures are in %.900s: a split field of each target "
+              "(left the target, right what is\nshown, a striped corner where "
+              "that is no match), and all of them on sheet.png.\n",
+              o->pictures);
+}
+
+static const char people[] =
+    "These figures hold for the observer named above. People differ from that "
+    "observer and from each other, and what they see changes with the size of "
+    "the field, its surround, brightness and glare: read a JND as a guide, and "
+    "let eyes decide where it matters.";
+
+/* ---- The sink ---------------------------------------------------------- */
+
+static ef_status begin(void *self, const match_scene *s, ef_error *error) {
+  (void)self;
+  (void)s;
+  (void)error;
+  return EF_OK;
+}
+
+static ef_status end(void *self, const match_scene *s, const match_summary *sum,
+                     ef_error *error) {
+  match_text *m = self;
+  if (m->worst_only)
+    thin(m);
+  text out = {0};
+  add_answer(&out, s, sum);
+  add_second_lines(&out, s, sum);
+  add_table(&out, m, s);
+  add_misses(&out, m, s, sum);
+  add_pictures(&out, s);
+  render_match_basis(&out, s, sum);
+  text_add(&out, "\n");
+  text_wrap(&out, people, 0);
+  const ef_status status = text_write(&out, m->output, error);
+  text_free(&out);
+  return status;
+}
+
+match_text *match_text_new(ef_output *output) {
+  match_text *t = calloc(1, sizeof *t);
+  if (t == NULL)
+    return NULL;
+  t->output = output;
+  t->row = malloc((MOST_ROWS + 1) * sizeof *t->row);
+  if (t->row == NULL) {
+    free(t);
+    return NULL;
+  }
+  return t;
+}
+
+void match_text_free(match_text *t) {
+  if (t == NULL)
+    return;
+  for (size_t i = 0; i < t->n_rows; ++i)
+    free(t->row[i].name);
+  free(t->row);
+  free(t);
+}
+
+match_sink match_text_sink(match_text *t) {
+  return (match_sink){.self = t, .begin = begin, .rows = keep, .end = end};
+}

@@ -1,0 +1,154 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "source.h"
+
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+#include <unistd.h>
+
+#include "message.h"
+#include "rows.h"
+
+static bool ends_with(const char *text, const char *end) {
+  const size_t n = strlen(text), m = strlen(end);
+  return n >= m && strcmp(text + n - m, end) == 0;
+}
+
+bool source_is_file(const char *name) {
+  return strncmp(name, "demo:", 5) == 0 || strcmp(name, "-") == 0 ||
+         strchr(name, '/') != NULL || ends_with(name, ".csv") ||
+         access(name, F_OK) == 0;
+}
+
+ef_kind_choice source_kind(const command_options *options) {
+  if (options->kind < 0)
+    return EF_KIND_AUTO;
+  return options->kind == 0 ? EF_KIND_SURFACE : EF_KIND_LIGHT;
+}
+
+ef_reader *source_reader(const command_options *options, const char *path,
+                         ef_kind_choice kind, const ef_notes *notes,
+                         ef_error *error) {
+  ef_reader_settings settings = ef_reader_settings_default();
+  settings.kind = kind;
+  settings.skip_bad = options->skip_bad;
+  if (!isnan(options->device_max))
+    settings.device_max = options->device_max;
+  settings.notes = notes;
+  return ef_reader_open(path, &settings, error);
+}
+
+static const char no_file[] = "; and there is no such file";
+
+static ef_spectra *read_lights(const command_options *options, const char *path,
+                               const ef_notes *notes, ef_error *error) {
+  ef_reader *reader = source_reader(options, path, EF_KIND_LIGHT, notes, error);
+  if (reader == NULL)
+    return NULL;
+  const ef_reader_head *head = ef_reader_get_head(reader);
+  ef_spectra *spectra = NULL;
+  rows all = {0};
+  if (head->content != EF_CONTENT_SPECTRA) {
+    message_fail(error, EF_MALFORMED, "spectra are needed here, not %s",
+                 ef_content_text(head->content));
+    message_place(error, path);
+  } else if (rows_read(reader, &all, error) == EF_OK) {
+    spectra = rows_spectra(&all, head, error);
+  }
+  rows_free(&all);
+  ef_reader_free(reader);
+  return spectra;
+}
+
+/* ---- Observers --------------------------------------------------------- */
+
+ef_observer *source_observer(const command_options *options,
+                             const ef_notes *notes, ef_error *error) {
+  const char *name = options->observer != NULL ? options->observer : "cie-1931";
+  ef_observer *observer = ef_observer_new(name, error);
+  if (observer != NULL || error->status != EF_UNKNOWN_NAME)
+    return observer;
+  if (!source_is_file(name)) {
+    message_option(error, "observer", no_file);
+    return NULL;
+  }
+  ef_spectra *functions = read_lights(options, name, notes, error);
+  if (functions == NULL)
+    return NULL;
+  observer = ef_observer_from_spectra(name, functions, error);
+  if (observer == NULL)
+    message_place(error, name);
+  ef_spectra_free(functions);
+  return observer;
+}
+
+/* ---- Illuminants ------------------------------------------------------- */
+
+/* Says that a file holds several spectra, and how to choose. */
+static void ask_for_column(const ef_spectra *lights, const char *option,
+                           const char *path, ef_error *error) {
+  char names[200] = "";
+  size_t length = 0;
+  const size_t n = ef_spectra_count(lights);
+  for (size_t i = 0; i < n && length < sizeof names; ++i) {
+    length += (size_t)snprintf(names + length, sizeof names - length, "%s%s",
+                               i == 0 ? "" : ", ", ef_spectra_name(lights, i));
+  }
+  message_fail(error, EF_INVALID,
+               "holds %zu spectra (%s); choose one with --%s FILE:COLUMN", n,
+               names, option);
+  message_place(error, path);
+}
+
+static ef_illuminant *illuminant_from_file(const command_options *options,
+                                           const char *option, const char *path,
+                                           const char *column,
+                                           const ef_notes *notes,
+                                           ef_error *error) {
+  ef_spectra *lights = read_lights(options, path, notes, error);
+  if (lights == NULL)
+    return NULL;
+  ef_illuminant *illuminant = NULL;
+  size_t i = 0;
+  if (column == NULL && ef_spectra_count(lights) > 1) {
+    ask_for_column(lights, option, path, error);
+  } else if (column == NULL ||
+             ef_spectra_find(lights, column, &i, error) == EF_OK) {
+    illuminant = ef_illuminant_from_spectra(lights, i, error);
+  }
+  if (illuminant == NULL)
+    message_place(error, path);
+  ef_spectra_free(lights);
+  return illuminant;
+}
+
+ef_illuminant *source_illuminant(const command_options *options,
+                                 const char *option, const char *name,
+                                 const ef_notes *notes, ef_error *error) {
+  ef_illuminant *illuminant = ef_illuminant_new(name, error);
+  if (illuminant != NULL)
+    return illuminant;
+  if (error->status != EF_UNKNOWN_NAME) {
+    message_option(error, option, "");
+    return NULL;
+  }
+  char path[4096];
+  snprintf(path, sizeof path, "%s", name);
+  char *colon = strrchr(path, ':');
+  const bool is_demo = strncmp(path, "demo:", 5) == 0;
+  if (colon == NULL || access(name, F_OK) == 0 ||
+      (is_demo && colon == path + 4)) {
+    if (source_is_file(name)) {
+      return illuminant_from_file(options, option, name, NULL, notes, error);
+    }
+  } else {
+    *colon = '\0';
+    if (source_is_file(path)) {
+      return illuminant_from_file(options, option, path, colon + 1, notes,
+                                  error);
+    }
+  }
+  message_option(error, option, no_file);
+  return NULL;
+}

@@ -1,0 +1,31 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** \file
+ * What options name: a built-in thing or a file. */
+#ifndef COMMAND_SOURCE_H
+#define COMMAND_SOURCE_H
+
+#include <evenfield/exchange.h>
+#include <evenfield/observer.h>
+
+#include "option.h"
+
+/** True when `name` is meant as a file: it exists, or it has the look of a
+ * path. */
+bool source_is_file(const char *name);
+/** --kind. */
+ef_kind_choice source_kind(const command_options *options);
+/** Opens a file as the options say; `kind` is the answer the place gives when
+ * the file is silent, EF_KIND_AUTO if it gives none. */
+ef_reader *source_reader(const command_options *options, const char *path,
+                         ef_kind_choice kind, const ef_notes *notes,
+                         ef_error *error);
+/** --observer: a name or a file. */
+ef_observer *source_observer(const command_options *options,
+                             const ef_notes *notes, ef_error *error);
+/** A light by name, FILE or FILE:COLUMN; `option` names the option in
+ * messages. */
+ef_illuminant *source_illuminant(const command_options *options,
+                                 const char *option, const char *name,
+                                 const ef_notes *notes, ef_error *error);
+
+#endif

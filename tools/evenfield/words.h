@@ -1,0 +1,23 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** \file
+ * Figures as plain English. */
+#ifndef COMMAND_WORDS_H
+#define COMMAND_WORDS_H
+
+#include <evenfield/difference.h>
+
+#define WORDS_ROOM 200
+
+/** How a sample with these components (sample minus reference) differs from a
+ * reference of hue `h_deg`: "duller by 4.8, lighter by 1.2"; the largest
+ * part first, parts below a tenth of the whole left out, "alike" when all are
+ * zero. `h_deg` is the hue angle in CIELAB. */
+void words_direction(ef_components components, double h_deg,
+                     char text[WORDS_ROOM]);
+/** A number with two decimals, or more where the first two are zero. */
+void words_amount(double value, char text[EF_NUMBER_TEXT]);
+/** "1 target", "3 targets". */
+void words_count(size_t n, const char *one, const char *many,
+                 char text[WORDS_ROOM]);
+
+#endif
