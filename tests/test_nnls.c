@@ -10,7 +10,7 @@
 
 enum { MOST_ROWS = 40, MOST_COLUMNS = 12 };
 
-static double scratch[MOST_ROWS * (MOST_COLUMNS + 2)];
+static double scratch[MOST_ROWS * 3 * (MOST_COLUMNS + 3)];
 
 static void solves_by_hand(void **state) {
   (void)state;
@@ -84,6 +84,7 @@ static void random_problems_end_at_the_optimum(void **state) {
     const size_t n = 1 + gen_below(&g, MOST_COLUMNS);
     gen_fill(&g, m * n, trial % 2 ? 0 : -1, 1, a);
     gen_fill(&g, m, -0.3, 1, b);
+    assert_true(ef__nnls_scratch(m, n) <= sizeof scratch / sizeof *scratch);
     assert_true(ef__nnls(m, n, a, b, scratch, x, NULL));
     check_optimum(m, n, a, b, x, &off);
     for (size_t j = 0; j < n; j++)

@@ -56,7 +56,7 @@ EF_API double ef_tone_curve_drive(const ef_tone_curve *curve, double amount);
 typedef struct ef_device ef_device;
 
 EF_API void ef_device_free(ef_device *device);
-/** "display", "halftone", "colourants", "profile". Static. */
+/** "display", "halftone", "mixture", "profile". Static. */
 EF_API const char *ef_device_kind(const ef_device *device);
 EF_API const char *ef_device_name(const ef_device *device);
 EF_API size_t ef_device_n_drives(const ef_device *device);
@@ -294,6 +294,193 @@ EF_API ef_device *ef_halftone_from_measurements(
 
 /** The Yule-Nielsen factor of a halftone; NaN for other devices. */
 EF_API double ef_halftone_n(const ef_device *device);
+
+/* ---- Colourants -------------------------------------------------------- */
+
+/* Kubelka & Munk (Zeitschrift fuer technische Physik 12, 593-601 (1931);
+ * Kubelka, Journal of the Optical Society of America 38, 448-457 (1948)):
+ * diffuse light in a layer with absorption K and scattering S per unit of
+ * thickness. Reflectances here are inside the material; ef_surface leads from
+ * there to what an instrument outside measures. */
+
+/** K/S = (1 - R)^2 / (2 R) of an opaque layer; infinite for 0, NaN outside
+ * [0, 1]. */
+EF_API double ef_km_ratio(double reflectance);
+/** Reflectance of a layer of that thickness (infinite: opaque, `backing` is
+ * then not seen) over a backing of reflectance `backing`. `slope` unless NULL
+ * receives d R / d K and d R / d S; where K is below 2.2e-16 S an opaque layer
+ * has the slope of that K, as at K = 0 it is infinite. Any S >= 0, K >= 0; a
+ * layer with neither is clear, and black when it is opaque. */
+EF_API double ef_km_reflectance(double absorption, double scattering,
+                                double thickness, double backing,
+                                double slope[2]);
+
+/** What a smooth surface does to light on its way in and out (Saunderson,
+ * Journal of the Optical Society of America 32, 727-736 (1942)). */
+typedef struct ef_surface {
+  double k1; /**< share of the light falling on it that it throws back */
+  double k2; /**< share of the diffuse light inside that it throws back in */
+  /** The instrument sees what k1 throws back (diffuse geometry with the
+   * specular component); false for 45/0 and specular excluded. */
+  bool specular_included;
+} ef_surface;
+
+/** Nothing thrown back. */
+EF_API ef_surface ef_surface_none(void);
+/** By Fresnel's equations from the refractive index (1 to 3): k1 for light
+ * along the normal, ((n - 1) / (n + 1))^2, and k2 = 1 - (1 - r) / n^2 with the
+ * reflection r of diffuse light from outside (Walsh's integral; Judd, Journal
+ * of Research of the National Bureau of Standards 29, 329-332 (1942)), which
+ * goes to `r_diffuse` unless NULL. For 1.5: 0.04, 0.596 and 0.092. */
+EF_API ef_status ef_surface_from_index(double refractive_index,
+                                       bool specular_included, ef_surface *out,
+                                       double *r_diffuse, ef_error *error);
+/** R = k1 (if included) + (1 - k1) (1 - k2) r / (1 - k2 r) of a reflectance r
+ * inside; `slope` unless NULL receives d R / d r. */
+EF_API double ef_surface_outside(const ef_surface *surface, double inside,
+                                 double *slope);
+/** The inverse. Below what k1 alone throws back it is negative. */
+EF_API double ef_surface_inside(const ef_surface *surface, double outside);
+
+/** Most colourants of a set. */
+#define EF_MAX_COLOURANTS 16
+
+/** Absorption and scattering of some colourants per unit of concentration, on
+ * one grid; immutable, owns its memory. */
+typedef struct ef_colourants ef_colourants;
+
+/** n colourants, `absorption` and `scattering` n x grid->count, finite and not
+ * below zero (EF_INVALID names the first at fault). `scattering` NULL:
+ * single-constant theory, `absorption` holds K/S in units of the scattering of
+ * the base. `names` NULL: "1", "2" ... Free with ef_colourants_free. */
+EF_API ef_colourants *ef_colourants_new(size_t n, const char *const *names,
+                                        const ef_grid *grid,
+                                        const double *absorption,
+                                        const double *scattering,
+                                        ef_error *error);
+/** From spectra in pairs named NAME_k and NAME_s, in any order (the colourants
+ * in the order of their first), or all named NAME_ks for single-constant
+ * theory; case ignored. The kind of the spectra does not matter. EF_MALFORMED
+ * names a spectrum without its partner. */
+EF_API ef_colourants *ef_colourants_from_spectra(const ef_spectra *spectra,
+                                                 ef_error *error);
+/** The colourants `index[0 .. n)` of a set. */
+EF_API ef_colourants *ef_colourants_pick(const ef_colourants *colourants,
+                                         size_t n, const size_t *index,
+                                         ef_error *error);
+EF_API void ef_colourants_free(ef_colourants *colourants);
+EF_API size_t ef_colourants_count(const ef_colourants *colourants);
+/** Borrowed until freed, as are the next three. */
+EF_API const char *ef_colourants_name(const ef_colourants *colourants,
+                                      size_t i);
+/** EF_UNKNOWN_NAME lists near names. Case is ignored. */
+EF_API ef_status ef_colourants_find(const ef_colourants *colourants,
+                                    const char *name, size_t *index,
+                                    ef_error *error);
+EF_API const ef_grid *ef_colourants_grid(const ef_colourants *colourants);
+/** grid count values of colourant i. */
+EF_API const double *ef_colourants_absorption(const ef_colourants *colourants,
+                                              size_t i);
+/** NULL in single-constant theory. */
+EF_API const double *ef_colourants_scattering(const ef_colourants *colourants,
+                                              size_t i);
+
+/** Samples of known composition from which colourants are fitted. */
+typedef struct ef_drawdowns {
+  size_t n_drawdowns;
+  size_t n_colourants;
+  const char *const *name;     /**< of the colourants, or NULL */
+  const double *concentration; /**< n_drawdowns x n_colourants, >= 0 */
+  const double *thickness;     /**< of each, infinite: opaque; NULL: all are */
+  /** Reflectance of what each lies on, n_drawdowns x grid.count, measured
+   * like the samples; NULL when all are opaque. */
+  const double *backing;
+  const double *reflectance;   /**< n_drawdowns x grid.count, measured */
+  ef_grid grid;
+  const size_t *line;          /**< of each in its file, or NULL */
+} ef_drawdowns;
+
+typedef struct ef_colourant_fit_settings {
+  bool single_constant; /**< opaque samples only; needs a base */
+  size_t base;          /**< index of the base, SIZE_MAX: none */
+  ef_surface surface;
+  /** Reflectances below this count as this much in relative errors: what the
+   * instrument cannot tell from black. */
+  double least_reflectance;
+} ef_colourant_fit_settings;
+
+/** Two constants, no base, no surface, 0.01. */
+EF_API ef_colourant_fit_settings ef_colourant_fit_settings_default(void);
+
+/** The absorption and scattering, none below zero, that make the sum of the
+ * squared relative errors of the reflectances least, wavelength by wavelength:
+ * Gauss-Newton steps (Levenberg-Marquardt), each a non-negative least-squares
+ * problem (Lawson & Hanson 1974), from the linear solution for opaque samples
+ * and from several starts for films. Opaque samples alone leave the unit of K
+ * and S open: the scattering of the base, or of the first colourant, is then 1
+ * at every wavelength. In single-constant theory the base's share is 1 in
+ * every sample (its concentrations are not used).
+ * `relative_rms` unless NULL receives for each drawdown the root mean square of
+ * its relative errors. EF_NO_ANSWER when a colourant stands in too few
+ * drawdowns to be told: one for single-constant theory and for what sets the
+ * unit, else two. EF_INVALID for values that are not finite or out of range,
+ * with the line of the drawdown. */
+EF_API ef_colourants *ef_colourants_fit(
+    const ef_drawdowns *drawdowns, const ef_colourant_fit_settings *settings,
+    double *relative_rms, ef_error *error);
+
+typedef struct ef_mixture_settings {
+  size_t base; /**< index of the base, SIZE_MAX: none */
+  /** The most that the concentrations of all but the base may sum to. With a
+   * base in two-constant theory at most 1: the base is the rest to 1. */
+  double total_loading;
+  double thickness; /**< of the film; infinite: opaque */
+  /** Reflectance of what the film lies on, measured like the mixture: as many
+   * values as the colourants' grid has. NULL: opaque. */
+  const double *substrate;
+  ef_surface surface;
+} ef_mixture_settings;
+
+/** No base, loading 1, opaque, no surface. */
+EF_API ef_mixture_settings ef_mixture_settings_default(void);
+
+/** A device that mixes the colourants (1 to EF_MAX_DRIVES beside the base):
+ * K = sum of concentration * absorption, S likewise, then ef_km_reflectance and
+ * ef_surface_outside. Each drive is the share that its colourant takes of the
+ * loading left over by those before it, so that the box of drives is exactly
+ * the mixtures within the total loading: a drive at zero is none of that
+ * colourant, a drive at full is the limit called "total loading". See
+ * ef_mixture_concentrations. EF_INVALID for settings out of range, and for
+ * opaque mixtures without a base that scatters. */
+EF_API ef_device *ef_mixture_new(const char *name,
+                                 const ef_colourants *colourants,
+                                 const ef_mixture_settings *settings,
+                                 ef_error *error);
+/** How many colourants are mixed, the base among them, in the order of the
+ * set; 0 for other devices. */
+EF_API size_t ef_mixture_count(const ef_device *device);
+EF_API const char *ef_mixture_name(const ef_device *device, size_t i);
+/** Index of the base; SIZE_MAX when there is none. */
+EF_API size_t ef_mixture_base(const ef_device *device);
+EF_API double ef_mixture_total_loading(const ef_device *device);
+/** Concentrations at `drive[n_drives]`: ef_mixture_count values. */
+EF_API ef_status ef_mixture_concentrations(const ef_device *device,
+                                           const double *drive,
+                                           double *concentration,
+                                           ef_error *error);
+/** Drives of concentrations (that of the base is not used); EF_INVALID for
+ * negative ones or more than the total loading by 1e-12 of it. Where nothing
+ * of the loading is left the drive is 0. */
+EF_API ef_status ef_mixture_drives(const ef_device *device,
+                                   const double *concentration, double *drive,
+                                   ef_error *error);
+/** Reflectance of any concentrations >= 0, that of the base as given, and
+ * unless NULL its Jacobian d R / d concentration, grid count x
+ * ef_mixture_count. */
+EF_API ef_status ef_mixture_spectrum(const ef_device *device,
+                                     const double *concentration,
+                                     double *spectrum, double *jacobian,
+                                     ef_error *error);
 
 /* ---- Setups: a device seen by an observer ------------------------------ */
 

@@ -23,8 +23,16 @@ typedef struct problem {
   size_t n_free;
 } problem;
 
+/* Rows that stay when many are folded: |A x - b| is that of the triangle and
+ * of what it leaves of b. */
+static size_t folded_rows(size_t n_rows, size_t n_columns) {
+  return n_rows > 2 * (n_columns + 1) ? n_columns + 1 : n_rows;
+}
+
 size_t ef__nnls_scratch(size_t n_rows, size_t n_columns) {
-  return n_rows * (n_columns + 2);
+  const size_t n_left = folded_rows(n_rows, n_columns);
+  const size_t n_folded = n_left < n_rows ? n_rows * (n_columns + 1) : 0;
+  return n_folded + n_left * (2 * n_columns + 3);
 }
 
 /* ---- Unconstrained least squares on the free columns -------------------- */
@@ -181,28 +189,73 @@ static bool solution_is_positive(const problem *p) {
   return true;
 }
 
-bool ef__nnls(size_t n_rows, size_t n_columns, const double *a, const double *b,
-              double *scratch, double *x, double *residual_norm) {
-  problem p = {.n_rows = n_rows, .n_columns = n_columns, .a = a, .b = b};
-  p.factor = scratch;
-  p.right = scratch + n_rows * n_columns;
-  p.residual = p.right + n_rows;
-  memset(x, 0, n_columns * sizeof *x);
-  double norm = take_residual(&p, x);
+/* Householder's reflections on the columns of A and on b, which lie in `folded`
+ * by column; then the upper rows go to `a` by row and to `b`. */
+static void fold_rows(size_t n_rows, size_t n_columns, const double *a,
+                      const double *b, double *folded, double *a_out,
+                      double *b_out) {
+  const size_t n_left = n_columns + 1;
+  for (size_t r = 0; r < n_rows; r++) {
+    for (size_t j = 0; j < n_columns; j++)
+      folded[j * n_rows + r] = a[r * n_columns + j];
+    folded[n_columns * n_rows + r] = b[r];
+  }
+  for (size_t k = 0; k < n_left; k++) {
+    double *v = folded + k * n_rows;
+    double rest = 0.0;
+    for (size_t r = k; r < n_rows; r++)
+      rest = hypot(rest, v[r]);
+    const double diagonal = v[k] > 0.0 ? -rest : rest;
+    v[k] -= diagonal;
+    const problem p = {.n_rows = n_rows, .factor = folded};
+    for (size_t j = k + 1; j < n_left; j++)
+      reflect(&p, k, folded + j * n_rows);
+    for (size_t j = 0; j < n_columns; j++)
+      a_out[k * n_columns + j] = j < k    ? 0.0
+                                 : j == k ? diagonal
+                                          : folded[j * n_rows + k];
+    b_out[k] = k == n_columns ? diagonal : folded[n_columns * n_rows + k];
+  }
+}
+
+/* Frees columns one by one until none pulls any more. */
+static bool solve(problem *p, double *x, double *norm) {
+  memset(x, 0, p->n_columns * sizeof *x);
+  *norm = take_residual(p, x);
   /* Each free column lowers the residual, so no set of them comes twice; in
    * exact arithmetic there is an end. The limit is that of the authors. */
-  const size_t most_steps = 3 * n_columns;
-  size_t n_steps = 0;
-  bool found = false;
-  while (n_steps < most_steps && !(found = !free_one(&p))) {
+  for (size_t n_steps = 0; n_steps < 3 * p->n_columns; n_steps++) {
+    if (!free_one(p))
+      return true;
     /* Each step back holds one more column, so this ends by itself. */
-    while (!solution_is_positive(&p))
-      step_back(&p, x);
-    for (size_t k = 0; k < p.n_free; k++)
-      x[p.free[k]] = p.solution[k];
-    norm = take_residual(&p, x);
-    n_steps++;
+    while (!solution_is_positive(p))
+      step_back(p, x);
+    for (size_t k = 0; k < p->n_free; k++)
+      x[p->free[k]] = p->solution[k];
+    *norm = take_residual(p, x);
   }
+  return !free_one(p);
+}
+
+bool ef__nnls(size_t n_rows, size_t n_columns, const double *a, const double *b,
+              double *scratch, double *x, double *residual_norm) {
+  const size_t n_left = folded_rows(n_rows, n_columns);
+  problem p = {.n_rows = n_left, .n_columns = n_columns, .a = a, .b = b};
+  double *at = scratch;
+  if (n_left < n_rows) {
+    double *folded = at;
+    double *a_out = folded + n_rows * (n_columns + 1);
+    double *b_out = a_out + n_left * n_columns;
+    fold_rows(n_rows, n_columns, a, b, folded, a_out, b_out);
+    p.a = a_out;
+    p.b = b_out;
+    at = b_out + n_left;
+  }
+  p.factor = at;
+  p.right = at + n_left * n_columns;
+  p.residual = p.right + n_left;
+  double norm;
+  const bool found = solve(&p, x, &norm);
   if (residual_norm != NULL)
     *residual_norm = norm;
   return found;
@@ -253,7 +306,7 @@ bool ef__least_quadratic(size_t n, const double *matrix, const double *linear,
   enum { MOST = EF__QUADRATIC_UNKNOWNS, LIMITS = EF__NNLS_COLUMNS };
   double r[MOST * MOST], start[MOST], row[MOST];
   double a[(MOST + 1) * LIMITS], b[MOST + 1] = {0.0}, u[LIMITS], y[MOST + 1];
-  double scratch[(MOST + 1) * (LIMITS + 2)];
+  double scratch[(MOST + 1) * (2 * LIMITS + 3)];
   if (!cholesky(n, matrix, r))
     return false;
   /* With y = R x + R^-T g the form is |y|^2 / 2 and a constant. */

@@ -141,6 +141,9 @@ ef_weights *ef__reflecting_weights(const ef_observer *observer,
                                    const ef_grid *grid, const ef_notes *notes,
                                    double white[3], ef_error *error);
 
+/** EF_INVALID unless both constants lie in [0, 1). */
+ef_status ef__surface_check(const ef_surface *surface, ef_error *error);
+
 /* ---- Halftone prints (halftone.c, halftone_fit.c) ---------------------- */
 
 enum { EF__INKS = 3, EF__OVERPRINTS = 8, EF__MOST_INKS = 4 };
