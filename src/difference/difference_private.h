@@ -56,6 +56,12 @@ struct ef_metric {
   const ef__parameter_set *parameter_set; /**< NULL, or ends with name NULL */
   void (*coordinates)(const ef_metric *self, ef_xyz xyz,
                       const ef_conditions *conditions, double coordinate[3]);
+  /** Optional: the same for n colours, n x 3 each, when there is something to
+   * prepare once. `coordinate` may be `xyz`. */
+  void (*coordinates_of_many)(const ef_metric *self, size_t n,
+                              const double *xyz,
+                              const ef_conditions *conditions,
+                              double *coordinate);
   ef_xyz (*inverse)(const ef_metric *self, const double coordinate[3],
                     const ef_conditions *conditions);
   void (*jacobian)(const ef_metric *self, ef_xyz xyz,

@@ -61,6 +61,37 @@ void ef_metric_coordinates(const ef_metric *metric, ef_xyz xyz,
   metric->coordinates(metric, xyz, conditions, coordinate);
 }
 
+typedef struct coordinate_batch {
+  const ef_metric *metric;
+  const ef_conditions *conditions;
+  const double *xyz;
+  double *coordinate;
+} coordinate_batch;
+
+static void coordinate_range(void *context, size_t begin, size_t end) {
+  const coordinate_batch *const b = context;
+  const ef_metric *const metric = b->metric;
+  if (metric->coordinates_of_many != NULL) {
+    metric->coordinates_of_many(metric, end - begin, b->xyz + 3 * begin,
+                                b->conditions, b->coordinate + 3 * begin);
+    return;
+  }
+  for (size_t i = begin; i < end; ++i) {
+    const double *const v = b->xyz + 3 * i;
+    metric->coordinates(metric, (ef_xyz){v[0], v[1], v[2]}, b->conditions,
+                        b->coordinate + 3 * i);
+  }
+}
+
+void ef_metric_coordinates_batch(const ef_metric *metric, size_t n,
+                                 const double *xyz,
+                                 const ef_conditions *conditions, int jobs,
+                                 double *coordinate) {
+  enum { CHUNK = 4096 }; /* as for differences */
+  coordinate_batch b = {metric, conditions, xyz, coordinate};
+  ef__parallel_for(n, CHUNK, jobs, coordinate_range, &b);
+}
+
 ef_xyz ef_metric_xyz(const ef_metric *metric, const double coordinate[3],
                      const ef_conditions *conditions) {
   return metric->inverse(metric, coordinate, conditions);

@@ -34,18 +34,30 @@ static bool set_model(const ef_metric *self, const ef_conditions *conditions,
   return ef_cam_model_set(version, &viewing, model, NULL) == EF_OK;
 }
 
+static void coordinates_of_many(const ef_metric *self, size_t n,
+                                const double *xyz,
+                                const ef_conditions *conditions,
+                                double *coordinate) {
+  ef_cam_model model;
+  const bool is_set = set_model(self, conditions, &model);
+  const double factor = unit(conditions);
+  for (size_t i = 0; i < 3 * n; i += 3) {
+    ef_ucs ucs = {(double)NAN, (double)NAN, (double)NAN};
+    if (is_set) {
+      const ef_xyz one = {xyz[i], xyz[i + 1], xyz[i + 2]};
+      ucs = ef_cam_to_ucs(ef_xyz_to_cam(scaled(one, factor), &model),
+                          shape(self));
+    }
+    coordinate[i] = ucs.J_prime;
+    coordinate[i + 1] = ucs.a_prime;
+    coordinate[i + 2] = ucs.b_prime;
+  }
+}
+
 static void coordinates(const ef_metric *self, ef_xyz xyz,
                         const ef_conditions *conditions, double coordinate[3]) {
-  ef_cam_model model;
-  if (!set_model(self, conditions, &model)) {
-    coordinate[0] = coordinate[1] = coordinate[2] = (double)NAN;
-    return;
-  }
-  const ef_cam cam = ef_xyz_to_cam(scaled(xyz, unit(conditions)), &model);
-  const ef_ucs ucs = ef_cam_to_ucs(cam, shape(self));
-  coordinate[0] = ucs.J_prime;
-  coordinate[1] = ucs.a_prime;
-  coordinate[2] = ucs.b_prime;
+  const double one[3] = {xyz.X, xyz.Y, xyz.Z};
+  coordinates_of_many(self, 1, one, conditions, coordinate);
 }
 
 static ef_xyz inverse(const ef_metric *self, const double coordinate[3],
@@ -114,7 +126,8 @@ static const ef__parameter_set sets[] = {{"lcd", {0.77, 0.007, 0.0053}},
   .parameter = {{"kl", 1, "divides the lightness difference"},                 \
                 {"c1", 0.007, "compression of lightness"},                     \
                 {"c2", 0.0228, "compression of colourfulness"}},               \
-  .parameter_set = sets, .coordinates = coordinates, .inverse = inverse,       \
+  .parameter_set = sets, .coordinates = coordinates,                           \
+  .coordinates_of_many = coordinates_of_many, .inverse = inverse,              \
   .jacobian = jacobian, .chord = chord, .kinked_axis = true,                   \
   .difference = difference, .components = components, .tensor = tensor,        \
   .expand = expand

@@ -253,6 +253,38 @@ static void batches_equal_single_calls(void **state) {
   free(many);
 }
 
+static void coordinates_in_batches_equal_single_calls(void **state) {
+  (void)state;
+  enum { N = 10007 };
+  const ef_conditions conditions = {.white = {95.047, 100, 108.883}};
+  double *const xyz = malloc(3 * N * sizeof *xyz);
+  double *const one = malloc(3 * N * sizeof *one);
+  double *const many = malloc(3 * N * sizeof *many);
+  assert_true(xyz != NULL && one != NULL && many != NULL);
+  gen g = gen_new(10);
+  gen_fill(&g, 3 * N, 20, 90, xyz);
+  for (size_t m = 0; m < every_metric_count(); ++m) {
+    const ef_metric *const metric = every_metric(m);
+    for (size_t i = 0; i < N; ++i) {
+      const double *const v = xyz + 3 * i;
+      ef_metric_coordinates(metric, (ef_xyz){v[0], v[1], v[2]}, &conditions,
+                            one + 3 * i);
+    }
+    for (int jobs = 0; jobs < 4; ++jobs) {
+      memset(many, 0, 3 * N * sizeof *many);
+      ef_metric_coordinates_batch(metric, N, xyz, &conditions, jobs, many);
+      assert_same_bits(many, one, 3 * N);
+    }
+    /* In place. */
+    memcpy(many, xyz, 3 * N * sizeof *many);
+    ef_metric_coordinates_batch(metric, N, many, &conditions, 2, many);
+    assert_same_bits(many, one, 3 * N);
+  }
+  free(xyz);
+  free(one);
+  free(many);
+}
+
 static void agrees_with_little_cms(void **state) {
   (void)state;
   deviation lab = {0, ""}, de2000 = {0, ""};
@@ -288,6 +320,7 @@ int main(void) {
       cmocka_unit_test(tensors_measure_small_steps),
       cmocka_unit_test(closed_tensors_equal_numeric_ones),
       cmocka_unit_test(batches_equal_single_calls),
+      cmocka_unit_test(coordinates_in_batches_equal_single_calls),
       cmocka_unit_test(agrees_with_little_cms),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
