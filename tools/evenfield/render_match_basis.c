@@ -186,6 +186,26 @@ static void add_area(text *t, double area, double share, const char *plane) {
               percent);
 }
 
+/* Of each primary at full drive, of white and of black; in cd/m2 where that is
+ * known, else in per cent of the white. */
+static void add_luminances(text *t, const match_scene *s) {
+  const ef_device *device = s->display.device;
+  const size_t n = ef_device_n_drives(device);
+  const bool absolute = !isnan(s->luminance_cd_m2);
+  const double unit = absolute ? s->luminance_cd_m2 / 100.0 : 1.0;
+  char number[EF_NUMBER_TEXT];
+  for (size_t i = 0; i < n; ++i) {
+    double amount[EF_MAX_DRIVES] = {0.0};
+    amount[i] = 1.0;
+    words_amount(unit * ef_setup_xyz(s->setup, amount, NULL).Y, number);
+    text_format(t, "%s %s, ", ef_device_drive_name(device, i), number);
+  }
+  words_amount(unit * ef_setup_white(s->setup).Y, number);
+  text_format(t, "white %s, ", number);
+  words_amount(unit * ef_setup_black(s->setup).Y, number);
+  text_format(t, "black %s %s", number, absolute ? "cd/m2" : "% of white");
+}
+
 static void add_gamut(text *out, const match_scene *s,
                       const match_summary *sum) {
   const ef_gamut *g = &s->gamut;
@@ -200,6 +220,8 @@ static void add_gamut(text *out, const match_scene *s,
   }
   add_chromaticity(&t, "white", g->white);
   text_label(out, "x, y", &t);
+  add_luminances(&t, s);
+  text_label(out, "Luminance", &t);
   add_area(&t, g->area_xy, g->locus_share_xy, "x, y");
   text_add(&t, "; ");
   add_area(&t, g->area_uv, g->locus_share_uv, "u', v'");

@@ -106,18 +106,26 @@ static void record_match(record *r, const match_scene *s, const char *name,
 
 /* ---- The document around the targets ----------------------------------- */
 
-static void write_xy(ef_json *j, const char *key, ef_xy xy) {
-  ef_json_begin_object(j, key);
-  ef_json_number(j, "x", xy.x);
-  ef_json_number(j, "y", xy.y);
-  ef_json_end_object(j);
-}
-
 static void write_xyz(ef_json *j, const char *key, ef_xyz xyz) {
   ef_json_begin_object(j, key);
   ef_json_number(j, "X", xyz.X);
   ef_json_number(j, "Y", xyz.Y);
   ef_json_number(j, "Z", xyz.Z);
+  ef_json_end_object(j);
+}
+
+/* Colour of one primary at full drive, the others at zero. */
+static void write_full_drive(ef_json *j, const match_scene *s, size_t i) {
+  double amount[EF_MAX_DRIVES] = {0.0};
+  amount[i] = 1.0;
+  const ef_xyz xyz = ef_setup_xyz(s->setup, amount, NULL);
+  const ef_xyy c = ef_xyz_to_xyy(xyz);
+  ef_json_begin_object(j, "full_drive");
+  ef_json_number(j, "X", xyz.X);
+  ef_json_number(j, "Y", xyz.Y);
+  ef_json_number(j, "Z", xyz.Z);
+  ef_json_number(j, "x", c.x);
+  ef_json_number(j, "y", c.y);
   ef_json_end_object(j);
 }
 
@@ -153,7 +161,7 @@ static void write_display(ef_json *j, const match_scene *s) {
   for (size_t i = 0; i < ef_device_n_drives(d->device); ++i) {
     ef_json_begin_object(j, NULL);
     ef_json_text(j, "name", ef_device_drive_name(d->device, i));
-    write_xy(j, "full_drive", s->gamut.primary[i]);
+    write_full_drive(j, s, i);
     ef_json_text(j, "tone_curve", ef_device_curve_about(d->device, i));
     ef_json_end_object(j);
   }

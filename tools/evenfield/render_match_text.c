@@ -401,14 +401,18 @@ static void add_misses(text *out, const match_text *m, const match_scene *s,
 }
 
 static void add_pictures(text *out, const match_scene *s) {
-  const command_options *o = s->options;
-  if (o->pictures == NULL)
+  if (s->options->pictures == NULL)
     return;
-  text_format(out,
-              "\nPictures are in %.900s: a split field of each target "
-              "(left the target, right what is\nshown, a striped corner where "
-              "that is no match), and all of them on sheet.png.\n",
-              o->pictures);
+  text t = {0};
+  text_format(&t,
+              "Pictures are in %.900s: a split field of each target (left the "
+              "target, right what is shown, a striped corner where that is no "
+              "exact match), and all of them on sheet.png.",
+              s->options->pictures);
+  text_add(out, "\n");
+  text_wrap(out, t.bytes != NULL ? t.bytes : "", 0);
+  out->failed = out->failed || t.failed;
+  text_free(&t);
 }
 
 static const char people[] =
