@@ -106,6 +106,49 @@ bool ef__least_quadratic(size_t n, const double *matrix, const double *linear,
                          size_t n_limits, const double *limit,
                          const double *bound, double *x);
 
+/* ---- Linear programmes (simplex.c) -------------------------------------- */
+
+/** Most rows of a programme. */
+#define EF__PROGRAMME_ROWS 16
+
+/** All x with sum over columns of column_j x_j = right and low <= x <= high:
+ * few rows, any number of columns. Borrowed; limits are finite. */
+typedef struct ef__programme {
+  size_t n_rows, n_columns;
+  const double *column; /**< n_columns x n_rows: column after column */
+  const double *right;  /**< n_rows */
+  const double *low, *high; /**< n_columns each, low <= high */
+} ef__programme;
+
+typedef enum ef__simplex_end {
+  EF__SIMPLEX_BEST,
+  EF__SIMPLEX_INFEASIBLE, /**< no x keeps to rows and limits */
+  EF__SIMPLEX_STALLED     /**< stopped after far too many steps (never seen) */
+} ef__simplex_end;
+
+/** Where the last search ended and the next begins: programmes of one size that
+ * differ little follow each other cheaply. Owns its memory. */
+typedef struct ef__simplex ef__simplex;
+
+/** NULL without memory or for more than EF__PROGRAMME_ROWS rows. */
+ef__simplex *ef__simplex_new(size_t n_rows, size_t n_columns);
+void ef__simplex_free(ef__simplex *simplex);
+/** Forgets where the last search ended. */
+void ef__simplex_restart(ef__simplex *simplex);
+
+/** The x that makes cost . x greatest. `x` (n_columns) lies within its limits
+ * to the bit and keeps to the rows to rounding (relative to `right` and the
+ * sizes of the terms some 1e-12); `dual` (n_rows, may be NULL) receives the
+ * prices of the rows: for any x within its limits
+ *   cost . x <= dual . right' + sum of max over the limits of
+ *               (cost_j - dual . column_j) x_j
+ * where right' is what its rows sum to. Nothing is written unless the end is
+ * EF__SIMPLEX_BEST. */
+ef__simplex_end ef__simplex_maximise(ef__simplex *simplex,
+                                     const ef__programme *programme,
+                                     const double *cost, double *x,
+                                     double *dual);
+
 /* ---- Shortest digits (shortest.c) -------------------------------------- */
 
 /** Room for 17 digits, the terminator, and a digit while rounding. */
