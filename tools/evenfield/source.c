@@ -67,8 +67,12 @@ ef_observer *source_observer(const command_options *options,
                              const ef_notes *notes, ef_error *error) {
   const char *name = options->observer != NULL ? options->observer : "cie-1931";
   ef_observer *observer = ef_observer_new(name, error);
-  if (observer != NULL || error->status != EF_UNKNOWN_NAME)
+  if (observer != NULL)
     return observer;
+  if (error->status != EF_UNKNOWN_NAME) {
+    message_option(error, "observer", "");
+    return NULL;
+  }
   if (!source_is_file(name)) {
     message_option(error, "observer", no_file);
     return NULL;
