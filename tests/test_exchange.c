@@ -441,6 +441,53 @@ static void check_kind(const char *text, ef_kind_choice asked, ef_kind kind,
   ef_reader_free(reader);
 }
 
+static double first_value(const char *text, ef_kind_choice asked, size_t i,
+                          ef_status expected, ef_error *error) {
+  ef_reader_settings settings = ef_reader_settings_default();
+  settings.kind = asked;
+  ef_reader *const reader =
+      ef_reader_from_text("t.csv", text, strlen(text), &settings, error);
+  ef_block block = {0};
+  ef_status status = error->status;
+  if (reader != NULL) status = ef_reader_next(reader, 1, &block, error);
+  assert_int_equal(status, expected);
+  const double value = status == EF_OK ? block.value[i] : 0;
+  ef_reader_free(reader);
+  return value;
+}
+
+/* An instrument's noise below zero is kept, by row or by file. */
+static void lights_may_be_noisy(void **state) {
+  (void)state;
+  ef_error error;
+  const double kept = first_value("name,400,410,420\na,37.25,-0.037,1\n",
+                                  EF_KIND_LIGHT, 1, EF_OK, &error);
+  assert_true(kept == -0.037);
+  first_value("name,400,410,420\na,37.25,-0.038,1\n", EF_KIND_LIGHT, 1,
+              EF_MALFORMED, &error);
+  assert_string_equal(error.message,
+                      "found -0.038 for a light, expected zero or more, noise "
+                      "of 0.1 % of the largest value apart; check the dark "
+                      "reading");
+  const char *const by_file =
+      "wavelength_nm,black,white\n400,-0.002,3\n410,0.25,2.75\n";
+  assert_true(first_value(by_file, EF_KIND_LIGHT, 0, EF_OK, &error) == -0.002);
+  const char *const too_low =
+      "wavelength_nm,black,white\n400,-0.0031,3\n410,0.25,2.75\n";
+  first_value(too_low, EF_KIND_LIGHT, 0, EF_MALFORMED, &error);
+  assert_int_equal(error.line, 2);
+  assert_string_equal(error.field, "black");
+}
+
+static void functions_have_any_sign(void **state) {
+  (void)state;
+  ef_error error;
+  const char *const text =
+      "wavelength_nm,r,g,b\n400,-0.5,250,3\n410,0.25,-2.75,1\n";
+  assert_true(first_value(text, EF_KIND_FUNCTION, 0, EF_OK, &error) == -0.5);
+  first_value(text, EF_KIND_LIGHT, 0, EF_MALFORMED, &error);
+}
+
 static void kind_rule(void **state) {
   (void)state;
   check_kind(
@@ -501,6 +548,8 @@ int main(void) {
       cmocka_unit_test(units_in_their_spellings),
       cmocka_unit_test(absolute_colours),
       cmocka_unit_test(kind_rule),
+      cmocka_unit_test(lights_may_be_noisy),
+      cmocka_unit_test(functions_have_any_sign),
       cmocka_unit_test(kind_of_colours),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);

@@ -31,7 +31,10 @@ EF_API const char *ef_content_text(ef_content content);
 typedef enum ef_kind_choice {
   EF_KIND_AUTO,
   EF_KIND_SURFACE,
-  EF_KIND_LIGHT
+  EF_KIND_LIGHT,
+  EF_KIND_FUNCTION /**< functions of wavelength of any sign and size, such as
+                        colour-matching functions; the kind of the head is
+                        EF_LIGHT */
 } ef_kind_choice;
 
 typedef struct ef_reader_settings {
@@ -74,8 +77,10 @@ typedef struct ef_reader ef_reader;
  * Kind rule: the settings; else a quantity line that says reflectance,
  * radiance factor, transmittance (surface) or radiance, power, light
  * (light); else surface when every value of the first rows lies in -0.02 to 2,
- * light otherwise, with a note. Refused: values below zero of lights, values
- * of surfaces below -0.02 or above 2 (percent: the message says so), Y or L
+ * light otherwise, with a note. Values of lights may fall below zero by 0.1 %
+ * of the largest value of their row (of their file for long spectra): that is
+ * the noise of an instrument, and it is kept. Refused: lower values of lights,
+ * values of surfaces below -0.02 or above 2 (percent: the message says so), Y or L
  * below zero, chromaticities without y, device values below zero or above full
  * drive, text in a number, nan, inf, wavelengths that are duplicate, unsorted
  * or outside 100 to 10000 nm, repeated column names, ragged rows, lines above

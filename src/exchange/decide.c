@@ -42,6 +42,11 @@ static void decide_kind(ef_reader *reader) {
                            ef__unit_is_radiance(remarks->quantity);
   if (said == 0) said = ef__quantity_kind(remarks->unit);
   if (said == 0 && is_radiance) said = -1;
+  if (asked == EF_KIND_FUNCTION) {
+    reader->limits.kind = EF_LIGHT;
+    reader->limits.any_sign = true;
+    return;
+  }
   if (asked == EF_KIND_AUTO) {
     reader->limits.kind = said < 0 ? EF_LIGHT : EF_SURFACE;
     reader->limits.kind_is_assumed = said == 0;

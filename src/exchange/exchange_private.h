@@ -219,6 +219,8 @@ ef_status ef__row_read(ef__table *table, const ef__layout *layout,
 typedef struct ef__limits {
   ef_kind kind;
   bool kind_is_assumed;
+  bool any_sign;       /**< functions: no limits at all */
+  double largest_light; /**< long spectra: of the file; 0: take the row's */
   double device_max;
   bool device_max_is_assumed;
 } ef__limits;

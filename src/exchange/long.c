@@ -163,6 +163,7 @@ ef_status ef__long_read(ef_reader *reader, ef_error *error) {
       ef__range_add(&value, rows.width - 1, rows.value + i * rows.width + 1);
     }
     ef__decide_from_values(reader, rows.n, value, ef__range_none());
+    reader->limits.largest_light = value.highest;
     status = check_rows(reader, &rows, error);
   }
   if (status == EF_OK) status = turn(reader, &rows, error);

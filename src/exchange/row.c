@@ -8,6 +8,8 @@
 
 /* Noise of an instrument at black may go below zero by this. */
 static const double lowest_surface = -0.02;
+/* For lights, by this share of the largest value. */
+static const double light_noise = 1e-3;
 /* Fluorescence goes above 1; beyond this it is percent. */
 static const double highest_surface = 2;
 
@@ -112,8 +114,8 @@ static ef_status refuse_light(double value, bool is_assumed, ef_error *error) {
   ef_number_format(value, number);
   return ef__error_set(
       error, EF_MALFORMED,
-      "found %s for a light%s, expected zero or more; set noise below zero to "
-      "0",
+      "found %s for a light%s, expected zero or more, noise of 0.1 %% of the "
+      "largest value apart; check the dark reading",
       number,
       is_assumed ? " (assumed from the first rows; if these are surfaces, add "
                    "'# quantity: reflectance')"
@@ -124,7 +126,15 @@ static ef_status check_spectrum(const ef__limits *limits, size_t n,
                                 const double *value, size_t *fault,
                                 ef_error *error) {
   const bool is_surface = limits->kind == EF_SURFACE;
-  const double low = is_surface ? lowest_surface : 0;
+  if (limits->any_sign) return EF_OK;
+  double low = lowest_surface;
+  if (!is_surface) {
+    double largest = limits->largest_light;
+    for (size_t i = 0; i < n && limits->largest_light == 0; ++i) {
+      if (value[i] > largest) largest = value[i];
+    }
+    low = -light_noise * largest;
+  }
   /* One pass without a branch a value; the place is looked for afterwards. */
   bool is_good = true;
   for (size_t i = 0; i < n; ++i) {

@@ -117,6 +117,12 @@ bool ef__hue_kept(const ef__search *search, double amount[3]) {
     if (share < 0) return false;
   }
   margin(search, lightness, share, amount);
-  for (int i = 0; i < 3; ++i) amount[i] = ef__clamp(amount[i], 0, 1);
+  /* The crossing is found from inside, to 1e-14 of the chroma: what is that
+   * close to a bound sits at it. */
+  const double close = 1e-12;
+  for (int i = 0; i < 3; ++i) {
+    if (amount[i] < close) amount[i] = 0;
+    if (amount[i] > 1 - close) amount[i] = 1;
+  }
   return true;
 }

@@ -34,50 +34,13 @@ static char *read_text(const char *path, size_t *length) {
   return text;
 }
 
-/* A light below zero is refused with the advice to set the noise to zero: done
- * here on the text, ",-1.0249e-05" to ",0". The noise is below 1e-5 of the
- * light it stands beside. */
-static size_t noise_to_zero(char *text) {
-  size_t n_changed = 0;
-  char *to = text;
-  bool in_comment = false;
-  for (const char *from = text; *from != '\0'; from++) {
-    if (from == text || from[-1] == '\n')
-      in_comment = *from == '#';
-    *to++ = *from;
-    if (in_comment || from[0] != ',' || from[1] != '-')
-      continue;
-    *to++ = '0';
-    n_changed++;
-    while (from[1] != ',' && from[1] != '\n' && from[1] != '\r' &&
-           from[1] != '\0')
-      from++;
-  }
-  *to = '\0';
-  return n_changed;
-}
-
-static ef_spectra *read_lights(const char *path, size_t n_noise) {
+static ef_spectra *read_lights(const char *path) {
   ef_reader_settings settings = ef_reader_settings_default();
   settings.kind = EF_KIND_LIGHT;
-  size_t length;
   ef_error error;
-  char *text = read_text(path, &length);
-  assert_int_equal(noise_to_zero(text), n_noise);
-  ef_reader *reader =
-      ef_reader_from_text(path, text, strlen(text), &settings, &error);
-  if (reader == NULL)
-    fail_msg("%s", error.message);
-  const ef_reader_head *head = ef_reader_get_head(reader);
-  assert_int_equal(head->content, EF_CONTENT_SPECTRA);
-  ef_block block;
-  assert_int_equal(ef_reader_next(reader, 100, &block, &error), EF_OK);
-  ef_spectra *spectra = ef_spectra_new(block.n, block.name, &head->grid,
-                                       EF_LIGHT, block.value, &error);
+  ef_spectra *spectra = ef_spectra_read(path, &settings, &error);
   if (spectra == NULL)
     fail_msg("%s", error.message);
-  ef_reader_free(reader);
-  free(text);
   return spectra;
 }
 
@@ -89,19 +52,16 @@ static ef_spectra *read_lights(const char *path, size_t n_noise) {
  * own. */
 typedef struct real_display {
   const char *file;
-  size_t n_noise; /* readings below zero */
   ef_xyy light[4];
 } real_display;
 
 static const real_display crt = {"display_spd_crt.csv",
-                                 0,
                                  {{0.6175, 0.3495, 162.96},
                                   {0.3052, 0.5907, 457.83},
                                   {0.1494, 0.0745, 62.20},
                                   {0.3127, 0.3290, 682.99}}};
 
 static const real_display led_lcd = {"display_spd_led_lcd.csv",
-                                     22,
                                      {{0.5871, 0.3560, 154.26},
                                       {0.3240, 0.5695, 482.32},
                                       {0.1512, 0.0583, 46.40},
@@ -114,7 +74,7 @@ static void check_display(const real_display *real) {
   char path[1024];
   reference_path(real->file, path);
   ef_error error;
-  ef_spectra *spectra = read_lights(path, real->n_noise);
+  ef_spectra *spectra = read_lights(path);
   ef_spectra_set_absolute(spectra, true); /* for the factor 683 */
   ef_device *device =
       ef_display_from_spectra("measured", spectra, NULL, &error);
@@ -201,7 +161,7 @@ static void tristimulus_values_of_metamers(void **state) {
   const size_t n = read_metamers(path, MAX, name, expected);
   assert_int_equal(n, 42);
   reference_path("display_metamers_spd.csv", path);
-  ef_spectra *spectra = read_lights(path, 0);
+  ef_spectra *spectra = read_lights(path);
   assert_int_equal(ef_spectra_count(spectra), n);
   ef_viewing viewing = ef_viewing_default(NULL);
   viewing.absolute = true;

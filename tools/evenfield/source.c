@@ -41,9 +41,10 @@ ef_reader *source_reader(const command_options *options, const char *path,
 
 static const char no_file[] = "; and there is no such file";
 
-static ef_spectra *read_lights(const command_options *options, const char *path,
-                               const ef_notes *notes, ef_error *error) {
-  ef_reader *reader = source_reader(options, path, EF_KIND_LIGHT, notes, error);
+static ef_spectra *read_spectra(const command_options *options,
+                                const char *path, ef_kind_choice kind,
+                                const ef_notes *notes, ef_error *error) {
+  ef_reader *reader = source_reader(options, path, kind, notes, error);
   if (reader == NULL)
     return NULL;
   const ef_reader_head *head = ef_reader_get_head(reader);
@@ -77,7 +78,8 @@ ef_observer *source_observer(const command_options *options,
     message_option(error, "observer", no_file);
     return NULL;
   }
-  ef_spectra *functions = read_lights(options, name, notes, error);
+  ef_spectra *functions =
+      read_spectra(options, name, EF_KIND_FUNCTION, notes, error);
   if (functions == NULL)
     return NULL;
   observer = ef_observer_from_spectra(name, functions, error);
@@ -110,7 +112,7 @@ static ef_illuminant *illuminant_from_file(const command_options *options,
                                            const char *column,
                                            const ef_notes *notes,
                                            ef_error *error) {
-  ef_spectra *lights = read_lights(options, path, notes, error);
+  ef_spectra *lights = read_spectra(options, path, EF_KIND_LIGHT, notes, error);
   if (lights == NULL)
     return NULL;
   ef_illuminant *illuminant = NULL;
