@@ -286,6 +286,241 @@ EF_API const ef_lamp_colour *ef_lamp_at(size_t i);
 EF_API const ef_lamp_colour *ef_lamp_find(const char *name, ef_error *error);
 EF_API ef_ellipse ef_lamp_ellipse(const ef_lamp_colour *lamp, double n_steps);
 
+/* ---- Metamerism (CIE 015:2018) ----------------------------------------- */
+
+/** An observer and how surfaces are seen. */
+typedef struct ef_look {
+  const ef_observer *observer; /**< borrowed */
+  ef_viewing viewing;          /**< of surfaces */
+} ef_look;
+
+/** How the mismatch that a pair has under the reference look is taken out
+ * before it is seen under another. */
+typedef enum ef_correction {
+  /** X, Y, Z of the sample times those of the standard over those of the
+   * sample under the reference (CIE 015). */
+  EF_CORRECT_MULTIPLICATIVE,
+  /** Coordinates of the sample in the formula, plus standard minus sample under
+   * the reference: in CIELAB what is told is the change of the difference. */
+  EF_CORRECT_ADDITIVE,
+  /** The spectrum of the sample, see ef_spectral_correct (Fairman 1987). */
+  EF_CORRECT_SPECTRAL,
+  EF_CORRECT_NONE
+} ef_correction;
+
+/** "multiplicative", "additive", "spectral", "none". Static. */
+EF_API const char *ef_correction_name(ef_correction correction);
+EF_API ef_status ef_correction_find(const char *name, ef_correction *out,
+                                    ef_error *error);
+
+/** A pair as one look shows it. */
+typedef struct ef_seen {
+  ef_xyz standard, sample;
+  ef_conditions conditions;
+} ef_seen;
+
+/** Special index of metamerism of one pair: change of illuminant where the two
+ * looks differ in the light, change of observer where in the observer. */
+typedef struct ef_metamerism {
+  double reference_difference; /**< under the reference, as it is */
+  double test_difference;      /**< under the test, as it is */
+  double index;                /**< under the test, corrected */
+  ef_components components;    /**< of the index: sample minus standard */
+} ef_metamerism;
+
+/** From tristimulus values. EF_CORRECT_SPECTRAL, which needs spectra, has a NaN
+ * index, and so has the multiplicative correction of a sample that has a zero
+ * X, Y or Z under the reference where the standard has not the same. */
+EF_API ef_metamerism ef_metamerism_of_seen(const ef_metric *metric,
+                                           const ef_seen *reference,
+                                           const ef_seen *test,
+                                           ef_correction correction);
+
+typedef struct ef_metamerism_settings {
+  const ef_metric *metric;
+  ef_correction correction;
+  ef_conditions conditions; /**< but for the white: each look has its own */
+} ef_metamerism_settings;
+
+/** CIELAB, multiplicative correction, default conditions: CIE 015. */
+EF_API ef_metamerism_settings ef_metamerism_settings_default(void);
+
+/** n pairs of surfaces sampled on `grid` (n x grid->count each), matched under
+ * `reference`, seen under each of `test[0 .. n_tests)`; `out` is n x n_tests.
+ * The CIE recommends D65 as the reference light and one of A and the
+ * fluorescent lamps as test, and CIE 1931 or 1964 as the reference observer.
+ * Works in some MB beside its arguments; results do not depend on `jobs` (0:
+ * all cores) or `n`. EF_INVALID for values that are not finite and for looks at
+ * lights. */
+EF_API ef_status ef_metamerism_batch(
+    const ef_grid *grid, size_t n, const double *standard,
+    const double *sample, const ef_look *reference, size_t n_tests,
+    const ef_look *test, const ef_metamerism_settings *settings, int jobs,
+    ef_metamerism *out, const ef_notes *notes, ef_error *error);
+
+/** Samples whose spectra are changed as little as it takes (least squares) to
+ * have the channel values of their standards: sample + A (A'A)^-1 A' (standard
+ * - sample), the columns of A being the rows of `reference`. It is the standard's
+ * fundamental with the sample's metameric black (Cohen & Kappauf 1982; as a
+ * correction Fairman, Color Res. Appl. 12 (1987) 261-265; both from memory).
+ * n spectra of the weights' samples each; `corrected` may be `sample`. Values
+ * may leave the range of reflectances by a little. EF_NO_ANSWER for channels
+ * that depend on each other. */
+EF_API ef_status ef_spectral_correct(const ef_weights *reference, size_t n,
+                                     const double *standard,
+                                     const double *sample, double *corrected,
+                                     ef_error *error);
+
+/** How far two spectra are apart whatever the light: general indices. All are
+ * zero for identical spectra. */
+typedef struct ef_spectral_index {
+  double rms;       /**< root mean square of sample - standard */
+  double black_rms; /**< the same of the part that the reference does not see,
+                         the metameric black: equal to rms for a pair that
+                         matches there */
+  /** Square root of the sum over samples and channels of the squared weighted
+   * differences, in units of the channels; grows with the root of the sampling
+   * step. Nimeroff & Yurow, J. Opt. Soc. Am. 55 (1965) 185-190 (from memory).
+   */
+  double weighted;
+} ef_spectral_index;
+
+/** Of n pairs sampled as `reference` was folded for. EF_NO_ANSWER as for
+ * ef_spectral_correct. */
+EF_API ef_status ef_spectral_index_batch(const ef_weights *reference, size_t n,
+                                         const double *standard,
+                                         const double *sample,
+                                         ef_spectral_index *out,
+                                         ef_error *error);
+
+/** Colour inconstancy: one surface under a reference and a test light. The
+ * colour under the test light is carried to the reference's white by complete
+ * adaptation and told as a difference from the colour there: zero when the
+ * surface keeps its colour as far as the eye adapts. Luo, Li, Hunt, Rigg &
+ * Smith, Color Res. Appl. 28 (2003) 379-392 (from memory), who take CMCCAT2000
+ * and CMC for it. `components` (may be NULL): test minus reference. EF_INVALID
+ * as in ef_adaptation_matrix. */
+EF_API ef_status ef_inconstancy(const ef_metric *metric,
+                                ef_adaptation adaptation, ef_xyz reference,
+                                const ef_conditions *reference_conditions,
+                                ef_xyz test, ef_xyz test_white, double *index,
+                                ef_components *components, ef_error *error);
+
+/* ---- Grades of standards ----------------------------------------------- */
+
+/** Grade of a daylight simulator, "A" to "E", by its mean index over the
+ * virtual metamers of ISO/CIE 23603 (CIE S 012), in CIELAB and for CIE 1964:
+ * up to 0.25, 0.5, 1, 2 and above. For no other index; the pairs themselves are
+ * not part of this library. Limits from memory, that of B confirmed. NULL for
+ * an index that is not >= 0. */
+EF_API const char *ef_simulator_grade(double mean_index);
+
+/** Step of the grey scale for change in colour, "5" (none), "4-5" ... "1",
+ * whose pair is nearest in contrast to a CIELAB difference. Differences of the
+ * steps: ISO 105-A02:1993. NULL for a difference that is not >= 0. */
+EF_API const char *ef_grey_scale_grade(double delta_e_cielab);
+
+/* ---- Finishes ---------------------------------------------------------- */
+
+/** Constants of whiteness, tint and yellowness for an observer and a light. */
+typedef struct ef_white_scale {
+  const char *observer;   /**< "cie-1931" or "cie-1964" */
+  const char *illuminant; /**< "C", "D50" or "D65" */
+  ef_xy white;
+  /** Whiteness is Y + per_x (x_n - x) + per_y (y_n - y). */
+  double per_x, per_y;
+  /** Tint is tint_x (x_n - x) - tint_y (y_n - y). */
+  double tint_x, tint_y;
+  /** Yellowness is 100 (yellow_x X - yellow_z Z) / Y; NaN with D50. */
+  double yellow_x, yellow_z;
+  bool is_cie; /**< CIE 015 defines whiteness and tint for D65 alone; with the
+                    other lights they are those of ASTM E313 */
+} ef_white_scale;
+
+/** EF_NO_ANSWER when none is defined for the two. Static. */
+EF_API const ef_white_scale *ef_white_scale_find(const char *observer,
+                                                 const char *illuminant,
+                                                 ef_error *error);
+
+typedef struct ef_whiteness {
+  double whiteness; /**< CIE 015:2018, ASTM E313; 100 for the perfect reflecting
+                         diffuser; NaN for black */
+  double tint;      /**< above 0 greener, below 0 redder than the reference */
+  double yellowness; /**< ASTM E313; NaN where it is not defined */
+  /** CIE 015 calls a sample white when its whiteness is above 40 and below
+   * 5 Y - 280 and its tint above -4 and below 2 (limits from memory): else the
+   * two say nothing. */
+  bool is_white;
+} ef_whiteness;
+
+/** `xyz` has Y = 100 for the perfect reflecting diffuser and belongs to the
+ * observer and the light of `scale`. For samples measured on one instrument at
+ * about the same time; fluorescent ones need its ultraviolet share to be that
+ * of the light. Coefficients of whiteness and tint from memory. */
+EF_API ef_whiteness ef_whiteness_of(ef_xyz xyz, const ef_white_scale *scale);
+
+/** One finish seen at several angles. */
+typedef struct ef_angles {
+  double worst;       /**< largest difference */
+  size_t worst_angle; /**< its index, the first of equal ones */
+  double mean;        /**< weighted mean */
+  double total;       /**< root of the weighted mean of the squares: the one
+                           difference that at all angles would sum to the same.
+                           Common practice, no source */
+} ef_angles;
+
+/** From the differences at `n` angles with a weight each, not negative and not
+ * all 0 (NULL: equal ones). A difference of NaN makes all of it NaN. EF_INVALID
+ * names the weight at fault. */
+EF_API ef_status ef_angles_combine(size_t n, const double *difference,
+                                   const double *weight, ef_angles *out,
+                                   ef_error *error);
+
+/** Mean of n readings of `count` values each (n x count), and the standard
+ * deviation of one reading (`sd` may be NULL; NaN for one reading). EF_INVALID
+ * names the value that is not finite. */
+EF_API ef_status ef_readings_mean(size_t n, size_t count, const double *value,
+                                  double *mean, double *sd, ef_error *error);
+
+/** What measurement leaves open of a colour: covariance of X, Y, Z, row-major,
+ * of one reading. Divide by the number of readings for their mean. */
+typedef struct ef_scatter {
+  double covariance[9];
+} ef_scatter;
+
+/** From n >= 2 readings of one sample, n x 3 tristimulus values: spectral noise
+ * with all its correlations, as colour is linear in the spectrum. EF_NO_ANSWER
+ * for one reading. */
+EF_API ef_status ef_scatter_of_readings(size_t n, const double *xyz,
+                                        ef_scatter *out, ef_error *error);
+/** From the standard deviation of each sample of the spectrum, independent of
+ * each other: V = W diag(sd^2) W'. EF_INVALID for weights that have other than
+ * three channels or an sd that is not >= 0. */
+EF_API ef_status ef_scatter_of_noise(const ef_weights *weights,
+                                     const double *sd, ef_scatter *out,
+                                     ef_error *error);
+
+/** A difference between two measured colours with its uncertainty. */
+typedef struct ef_uncertain {
+  double difference;
+  /** Standard uncertainty to first order, sqrt(g' V g) with the slope g of the
+   * difference. For equal colours, whose difference has no slope, noise_alone
+   * over the root of 3. It holds where it is well below the difference. */
+  double sd;
+  /** Root mean square difference that the scatter alone makes between two
+   * samples of one colour: sqrt(trace(G V)), G being the metric's tensor. A
+   * measured difference of this size need not be one. */
+  double noise_alone;
+} ef_uncertain;
+
+/** Scatters of what was compared (the mean of n readings has a scatter n times
+ * less); NULL for none. */
+EF_API ef_uncertain ef_metric_uncertainty(const ef_metric *metric,
+                                          ef_xyz reference, ef_xyz sample,
+                                          const ef_conditions *conditions,
+                                          const ef_scatter *reference_scatter,
+                                          const ef_scatter *sample_scatter);
+
 /* The formulas as plain functions. */
 
 /** CIE 1976 (ISO/CIE 11664-4). */
