@@ -3,6 +3,7 @@
  * Visual panels: what people answered, turned into thresholds and
  * just-noticeable differences with their intervals; how many trials a question
  * takes; which pair to show next; the panel's own JND in a difference formula.
+ * Tasks and what d' means in each are those of evenfield/difference.h.
  *
  * Answers come in as plain arrays: at each level, how many were shown and how
  * many answers were positive ("yes", "different", right, "greater"). Nothing
@@ -12,88 +13,11 @@
 #define EVENFIELD_PANEL_H
 
 #include <evenfield/base.h>
+#include <evenfield/difference.h>
 
 #ifdef __cplusplus
 extern "C" {
 #endif
-
-/* ---- Tasks ------------------------------------------------------------- */
-
-/** What the observer is asked. */
-typedef enum ef_task {
-  EF_TASK_YES_NO,         /**< "do you see it?"; positive: yes */
-  EF_TASK_2IFC,           /**< which of two holds it; positive: right */
-  EF_TASK_SAME_DIFFERENT, /**< "same or different?"; positive: different */
-  EF_TASK_TRIANGLE,       /**< which of three is the odd one; positive: right */
-  EF_TASK_GREATER_LESS    /**< sample against standard; positive: greater */
-} ef_task;
-
-EF_API size_t ef_task_count(void);
-/** "yes-no", "2ifc", "same-different", "triangle", "greater-less". Static. */
-EF_API const char *ef_task_name(ef_task task);
-/** By that name; EF_UNKNOWN_NAME gives the nearest names. */
-EF_API ef_status ef_task_find(const char *name, ef_task *task, ef_error *error);
-/** What a positive answer is: "yes", "right", "different" ... Static. */
-EF_API const char *ef_task_positive(ef_task task);
-/** Share of positive answers by guessing: 1/2, 1/3; 0 for greater-less, whose
- * curve begins at 0; NaN for yes-no and same-different, where it is the
- * observer's false-alarm rate. */
-EF_API double ef_task_chance(ef_task task);
-
-/** Share of positive answers at sensitivity d' >= 0 (Macmillan & Creelman,
- * Detection Theory, 2nd ed. 2005). `false_alarms` is the share of positive
- * answers where there is no signal, in (0, 1), used by two tasks:
- *   yes-no          Phi(d' + z(F))
- *   2ifc            Phi(d' / sqrt 2)
- *   same-different  Phi((d' - k) / sqrt 2) + Phi((-d' - k) / sqrt 2) with
- *                   k = -sqrt 2 z(F / 2): the differencing model
- *   triangle        1 - 4 T(d' / sqrt 6, sqrt 3), T of Owen 1956; equal to the
- *                   integral of Ennis 1993
- *   greater-less    Phi(d' / sqrt 2), at one d' above the point of equality
- * NaN outside these domains. */
-EF_API double ef_task_proportion(ef_task task, double false_alarms,
-                                 double d_prime);
-/** The inverse. 0 at chance; NaN below chance (greater-less: negative there),
- * and for a proportion of 1, which no finite d' gives. */
-EF_API double ef_task_d_prime(ef_task task, double false_alarms,
-                              double proportion);
-/** Share of right answers of an observer without bias, half the trials of
- * yes-no and same-different without signal: Phi(d'/2); in same-different the
- * largest share that any criterion k gives. Else as ef_task_proportion. */
-EF_API double ef_task_best_correct(ef_task task, double d_prime);
-/** d' from that share; NaN below chance or at 1. */
-EF_API double ef_task_best_d_prime(ef_task task, double correct);
-/** Same-different under the model of independent observations instead, for
- * designs with a fixed standard: the largest share of right answers is
- * Phi(d'/2)^2 + Phi(-d'/2)^2, and d' from hit and false-alarm rate is
- * 2 z((1 + sqrt(2 p - 1)) / 2) with p = Phi((z(H) - z(F)) / 2). */
-EF_API double ef_independent_best_correct(double d_prime);
-EF_API double ef_independent_d_prime(double hits, double false_alarms);
-
-/** At which answer a threshold is taken. */
-typedef struct ef_criterion {
-  ef_task task;
-  double proportion;   /**< of positive answers; ignored when d_prime is set */
-  double false_alarms; /**< yes-no and same-different; else ignored */
-  double d_prime;      /**< NaN: from the proportion */
-} ef_criterion;
-
-/** The proportion that counts as "just noticeable" unless another is named:
- * 75 % right in 2IFC. Its d' is the JND's in every other task. */
-#define EF_JND_PROPORTION 0.75
-/** sqrt 2 z(0.75) */
-#define EF_JND_D_PRIME 0.95387255240893972
-
-/** d' at the criterion; NaN when it has none. */
-EF_API double ef_criterion_d_prime(const ef_criterion *criterion);
-/** A threshold at one criterion turned into that of another, of the same or
- * another task, for d' proportional to level^exponent: level (d'_to /
- * d'_from)^(1 / exponent). EF_INVALID for a threshold or exponent not above 0;
- * EF_NO_ANSWER when a criterion has no d' above 0. */
-EF_API ef_status ef_threshold_convert(double threshold, double exponent,
-                                      const ef_criterion *from,
-                                      const ef_criterion *to, double *converted,
-                                      ef_error *error);
 
 /* ---- Answers ----------------------------------------------------------- */
 
@@ -113,12 +37,6 @@ typedef struct ef_responses {
 EF_API size_t ef_responses_collect(size_t n_trials, const double *level,
                                    const bool *is_positive, double *out_level,
                                    size_t *out_shown, size_t *out_positive);
-
-/** A value with its standard error and interval; NaN where not known, infinite
- * where the interval is open on that side. */
-typedef struct ef_estimate {
-  double value, se, low, high;
-} ef_estimate;
 
 /* ---- Sensitivity and bias ---------------------------------------------- */
 

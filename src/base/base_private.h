@@ -192,6 +192,12 @@ double ef__random_unit(ef__random *random);
  * function of GSL. */
 double ef__random_normal(ef__random *random);
 
+/* ---- Normal distribution (normal.c) ------------------------------------ */
+
+double ef__phi(double x);            /**< density */
+double ef__normal(double x);         /**< distribution function */
+double ef__normal_inverse(double p); /**< infinite at 0 and 1 */
+
 /* ---- GSL (gsl.c) ------------------------------------------------------- */
 
 /** Switches GSL's process-ending error handler off, once. To be called before

@@ -219,6 +219,11 @@ void ef__numeric_tensor(const ef_metric *metric, const double coordinate[3],
 ef_status ef__macadam_without(ef_xy at, double size, size_t left_out,
                               ef_ellipse *out, ef_error *error);
 
+/* ---- Tasks (task.c) ----------------------------------------------------- */
+
+/** Share of wrong answers in the triangle test over its chance share 2/3. */
+double ef__triangle_miss(double d_prime);
+
 /* ---- By name (formula.c) ----------------------------------------------- */
 
 /** The registered formula whose name is `name[0 .. length)`. */

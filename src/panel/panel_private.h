@@ -7,15 +7,7 @@
 #include <evenfield/panel.h>
 
 #include "base/base_private.h"
-
-/* ---- Normal distribution (task.c) -------------------------------------- */
-
-double ef__phi(double x);            /**< density */
-double ef__normal(double x);         /**< distribution function */
-double ef__normal_inverse(double p); /**< infinite at 0 and 1 */
-
-/** Share of wrong answers in the triangle test over its chance share 2/3. */
-double ef__triangle_miss(double d_prime);
+#include "difference/difference_private.h"
 
 /* ---- Curves with derivatives (psychometric.c) -------------------------- */
 

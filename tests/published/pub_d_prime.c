@@ -3,7 +3,7 @@
  * files). */
 #include <stdlib.h>
 
-#include <evenfield/panel.h>
+#include <evenfield/difference.h>
 
 #include "figures.h"
 #include "near.h"

@@ -1,16 +1,15 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /* From sensitivity d' to answers and back, task by task. */
-#include "panel/panel_private.h"
+#include "difference/difference_private.h"
+
+#include "base/base_private.h"
 
 #include <float.h>
 #include <math.h>
 
-#include <gsl/gsl_cdf.h>
-
 #define SQRT_2 1.4142135623730950488
 #define SQRT_6 2.4494897427831780982
 #define PI 3.14159265358979323846
-#define INVERSE_SQRT_2_PI 0.39894228040143267794
 
 typedef struct task_row {
   const char *name;
@@ -58,22 +57,6 @@ ef_status ef_task_find(const char *name, ef_task *task, ef_error *error) {
     known[i] = rows[i].name;
   }
   return ef__error_unknown(error, "task", name, known, n);
-}
-
-double ef__phi(double x) {
-  return INVERSE_SQRT_2_PI * exp(-0.5 * x * x);
-}
-
-double ef__normal(double x) {
-  return 0.5 * erfc(-x / SQRT_2);
-}
-
-double ef__normal_inverse(double p) {
-  if (p <= 0)
-    return -(double)INFINITY;
-  if (p >= 1)
-    return (double)INFINITY;
-  return gsl_cdf_ugaussian_Pinv(p);
 }
 
 /* Ennis 1993: p = 2 int_0^inf [Phi(-z sqrt 3 + a) + Phi(-z sqrt 3 - a)] phi(z)
@@ -127,7 +110,6 @@ static bool is_rate(double p) {
 double ef_task_proportion(ef_task task, double false_alarms, double d_prime) {
   if (!(d_prime >= 0))
     return (double)NAN;
-  ef__gsl_ready();
   switch (task) {
   case EF_TASK_YES_NO:
     if (!is_rate(false_alarms))
@@ -179,7 +161,6 @@ static double triangle_share(double d_prime, double unused) {
 double ef_task_d_prime(ef_task task, double false_alarms, double proportion) {
   if (!(proportion > 0) || !(proportion < 1))
     return (double)NAN;
-  ef__gsl_ready();
   double d_prime = (double)NAN;
   switch (task) {
   case EF_TASK_YES_NO:
@@ -233,7 +214,6 @@ double ef_task_best_correct(ef_task task, double d_prime) {
 double ef_task_best_d_prime(ef_task task, double correct) {
   if (!(correct > 0) || !(correct < 1))
     return (double)NAN;
-  ef__gsl_ready();
   if (task == EF_TASK_YES_NO) {
     const double d_prime = 2 * ef__normal_inverse(correct);
     return d_prime >= 0 ? d_prime : (double)NAN;
@@ -254,7 +234,6 @@ double ef_independent_best_correct(double d_prime) {
 double ef_independent_d_prime(double hits, double false_alarms) {
   if (!is_rate(hits) || !is_rate(false_alarms))
     return (double)NAN;
-  ef__gsl_ready();
   const double correct = ef__normal(
       0.5 * (ef__normal_inverse(hits) - ef__normal_inverse(false_alarms)));
   if (correct < 0.5)
