@@ -508,6 +508,10 @@ EF_API ef_xyz ef_setup_black(const ef_setup *setup);
 EF_API double ef_setup_luminance_cd_m2(const ef_setup *setup);
 /** Factor from the device's own tristimulus unit to the setup's scale. */
 EF_API double ef_setup_scale(const ef_setup *setup);
+/** What two colours of the setup must differ by, in shares of the white, to be
+ * told apart from the rounding that they are computed with: 1e-10, and 1e-6 for
+ * profiles, which are evaluated in single precision. */
+EF_API double ef_setup_resolution(const ef_setup *setup);
 /** True when XYZ = black + sum of amounts times vectors: every additive
  * device. */
 EF_API bool ef_setup_affine(const ef_setup *setup);

@@ -47,6 +47,9 @@ typedef struct ef__colour_map {
   double vector[3 * EF_MAX_DRIVES]; /**< 3 x n_drives, row-major */
   /** XYZ of the white that the setup scales to Y = 100. */
   double white[3];
+  /** Set for maps computed in less than double precision; 0: 1e-10. See
+   * ef_setup_resolution. */
+  double resolution;
   /** Colour at `amount`, and unless NULL d XYZ / d amount, 3 x n_drives. */
   void (*xyz)(const void *data, const double *amount, double xyz[3],
               double *jacobian);

@@ -111,6 +111,10 @@ double ef_setup_scale(const ef_setup *setup) {
   return setup->scale;
 }
 
+double ef_setup_resolution(const ef_setup *setup) {
+  return setup->map.resolution > 0.0 ? setup->map.resolution : 1e-10;
+}
+
 bool ef_setup_affine(const ef_setup *setup) {
   return setup->map.affine;
 }

@@ -71,7 +71,7 @@ static bool exact_by_newton(const ef__mixing *mixing, ef_xyz target,
   static const double starts[][3] = {{0.5, 0.5, 0.5},    {0.1, 0.1, 0.1},
                                      {0.9, 0.9, 0.9},    {0.75, 0.25, 0.25},
                                      {0.25, 0.75, 0.25}, {0.25, 0.25, 0.75}};
-  const double enough = 1e-20; /* squared: 1e-10 of the white */
+  const double enough = mixing->resolution * mixing->resolution;
   double least = (double)INFINITY;
   for (size_t s = 0; s < sizeof starts / sizeof starts[0]; ++s) {
     double a[3];
@@ -83,6 +83,10 @@ static bool exact_by_newton(const ef__mixing *mixing, ef_xyz target,
     if (least < enough) return true;
   }
   return false;
+}
+
+bool ef__exact_from(const ef__mixing *mixing, ef_xyz xyz, double amount[3]) {
+  return newton(mixing, xyz, amount) < mixing->resolution * mixing->resolution;
 }
 
 bool ef__exact(const ef__mixing *mixing, ef_xyz xyz, double amount[3]) {

@@ -98,6 +98,22 @@ static void fill_codes(const batch *job, ef__search *search,
       ef_metric_difference(search->metric, search->target, coordinate);
 }
 
+/* True when the nearest colour that was found is the target after all, which
+ * the search for exact amounts, with its few starts, has missed. */
+static bool is_reached(const batch *job, ef_match *m, ef__minima *minima) {
+  const double near = 1e-3; /* from where Newton's method finds the rest */
+  if (!(minima->at[0].square < near * near)) return false;
+  double amount[3];
+  memcpy(amount, minima->at[0].amount, sizeof amount);
+  if (!ef__exact_from(&job->mixing, m->target, amount)) return false;
+  memcpy(m->amount, amount, sizeof amount);
+  memcpy(minima->at[0].amount, amount, sizeof amount);
+  minima->at[0].square = 0;
+  minima->n = 1;
+  m->in_gamut = true;
+  return true;
+}
+
 static void match_one(const batch *job, ef_xyz target, ef_match *m) {
   ef__search search = {.mixing = &job->mixing, .metric = job->settings->metric};
   ef__minima minima;
@@ -115,6 +131,12 @@ static void match_one(const batch *job, ef_xyz target, ef_match *m) {
     if (job->settings->hue_kept) m->hue_kept = m->nearest;
   } else {
     ef__nearest(&search, amount, &minima);
+  }
+  if (!m->in_gamut && !job->mixing.affine && is_reached(job, m, &minima)) {
+    memcpy(amount, m->amount, sizeof amount);
+    fill_exact(job, amount, target, &m->nearest);
+    if (job->settings->hue_kept) m->hue_kept = m->nearest;
+  } else if (!m->in_gamut) {
     fill_shown(job, &search, minima.at[0].amount, &m->nearest);
     double kept[3];
     if (job->settings->hue_kept && ef__hue_kept(&search, kept)) {
@@ -201,8 +223,15 @@ ef_status ef_match_batch(const ef_setup *setup, size_t n, const double *xyz,
   j.jnd = isnan(settings->jnd) ? ef_metric_jnd(settings->metric).value
                                : settings->jnd;
   double *block = NULL;
+  ef__scout *scout = NULL;
+  if (!j.mixing.affine) {
+    scout = ef__scout_new(&j.mixing, settings->metric, error);
+    if (scout == NULL) return EF_NO_MEMORY;
+    j.mixing.scout = scout;
+  }
   if (settings->bits > 0) status = make_lattice(&j, &block, error);
   if (status == EF_OK) ef__parallel_for(n, CHUNK, jobs, match_range, &j);
   free(block);
+  ef__scout_free(scout);
   return status;
 }

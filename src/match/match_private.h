@@ -9,6 +9,9 @@
 
 #include "difference/difference_private.h"
 
+/** A look over the whole gamut, see below. */
+typedef struct ef__scout ef__scout;
+
 /* ---- Mixing (mixing.c) ------------------------------------------------- */
 
 /** Three amounts to a colour. For affine setups the numbers are copied, so
@@ -21,6 +24,8 @@ typedef struct ef__mixing {
   double inverse[9]; /**< affine: of `vector` */
   ef_xyz (*xyz)(const void *context, const double *amount, double *jacobian);
   const void *context; /**< borrowed */
+  double resolution;   /**< see ef_setup_resolution */
+  const ef__scout *scout; /**< borrowed; NULL for affine setups */
 } ef__mixing;
 
 /** From a setup, which it borrows. EF_INVALID unless there are three drives,
@@ -37,9 +42,11 @@ ef_xyz ef__mixing_xyz(const ef__mixing *mixing, const double amount[3],
 /* ---- Exact amounts (exact.c) ------------------------------------------- */
 
 /** Amounts that mix to `xyz`. Affine: always, with any sign. Else: true when
- * amounts in [0, 1] reach it to 1e-10 of the white, and the amounts of the
- * closest colour that was found when not. */
+ * amounts in [0, 1] reach it to the resolution of the setup, and the amounts of
+ * the closest colour that was found when not. */
 bool ef__exact(const ef__mixing *mixing, ef_xyz xyz, double amount[3]);
+/** The same from the one start in `amount`, for setups that are not affine. */
+bool ef__exact_from(const ef__mixing *mixing, ef_xyz xyz, double amount[3]);
 
 /* ---- Descent in the unit box (descend.c, edge.c) ----------------------- */
 
@@ -72,6 +79,21 @@ bool ef__descend(ef__search *search, ef__place *place);
 /** From where a descent stopped at the jump of opposite hues: along the edge of
  * the jump to its least value. True when that is lower. */
 bool ef__descend_edge(ef__search *search, ef__place *place);
+
+/* ---- Starts all over the gamut (scout.c) ------------------------------- */
+
+/** Most starts that a look over the gamut gives. */
+enum { EF__MAX_SCOUTED = 4 };
+
+/** Colours of a grid of amounts, for one metric. Free with ef__scout_free. */
+ef__scout *ef__scout_new(const ef__mixing *mixing, const ef_metric *metric,
+                         ef_error *error);
+void ef__scout_free(ef__scout *scout);
+/** Amounts of the grid that are nearer to the target (in the metric's
+ * coordinates) than all their neighbours, the nearest first. */
+size_t ef__scout_starts(const ef__scout *scout, const ef_metric *metric,
+                        const double target[3],
+                        double start[EF__MAX_SCOUTED][3]);
 
 /* ---- Nearest colour (nearest.c) ---------------------------------------- */
 

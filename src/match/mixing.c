@@ -56,6 +56,7 @@ ef_status ef__mixing_from_setup(const ef_setup *setup, ef__mixing *out,
   out->conditions.white = ef_setup_white(setup);
   out->xyz = setup_xyz;
   out->context = setup;
+  out->resolution = ef_setup_resolution(setup);
   const double zero[EF_MAX_DRIVES] = {0};
   const ef_xyz black = ef_setup_xyz(setup, zero, out->vector);
   out->black[0] = black.X;

@@ -121,6 +121,14 @@ static void search_decoys(ef__search *search, ef__minima *out) {
   }
 }
 
+/* Where colours do not add: from the low points of a look over the gamut. */
+static void search_scouted(ef__search *search, ef__minima *out) {
+  double start[EF__MAX_SCOUTED][3];
+  const size_t n = ef__scout_starts(search->mixing->scout, search->metric,
+                                    search->target, start);
+  for (size_t i = 0; i < n; ++i) descend_from(search, start[i], out);
+}
+
 void ef__nearest(ef__search *search, const double exact[3], ef__minima *out) {
   double left[3], clipped[3];
   for (int i = 0; i < 3; ++i) clipped[i] = ef__clamp(exact[i], 0, 1);
@@ -128,6 +136,7 @@ void ef__nearest(ef__search *search, const double exact[3], ef__minima *out) {
   const bool left_first =
       ef__search_value(search, left) < ef__search_value(search, clipped);
   out->n = 0;
+  if (search->mixing->scout != NULL) search_scouted(search, out);
   descend_from(search, left_first ? left : clipped, out);
   /* The law test finds other basins only beyond some such difference. */
   if (out->at[0].square < 49) return;
