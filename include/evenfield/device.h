@@ -474,6 +474,11 @@ EF_API ef_status ef_mixture_concentrations(const ef_device *device,
 EF_API ef_status ef_mixture_drives(const ef_device *device,
                                    const double *concentration, double *drive,
                                    ef_error *error);
+/** Sets the concentration of the base to what goes with the others: 1 less
+ * their sum, or 1 in single-constant theory; nothing without a base. Returns
+ * the slope of it with each of the others: -1, or 0. */
+EF_API double ef_mixture_complete(const ef_device *device,
+                                  double *concentration);
 /** Reflectance of any concentrations >= 0, that of the base as given, and
  * unless NULL its Jacobian d R / d concentration, grid count x
  * ef_mixture_count. */

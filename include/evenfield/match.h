@@ -191,6 +191,82 @@ typedef struct ef_spread_index {
 /** NaN and 0 for n = 0. */
 EF_API ef_spread_index ef_spread_index_of(size_t n, const ef_spread *spread);
 
+/* ---- Recipes ------------------------------------------------------------ */
+
+/** Most lights of a recipe, and most colourants with the base. */
+#define EF_MAX_LIGHTS 8
+#define EF_MAX_RECIPE (EF_MAX_DRIVES + 1)
+
+/** What is to be matched: a spectrum, or where `grid` is NULL tristimulus
+ * values in the first light (Y = 100 for the perfect reflecting diffuser). */
+typedef struct ef_standard {
+  const ef_grid *grid;
+  const double *spectrum;
+  ef_xyz xyz;
+} ef_standard;
+
+typedef struct ef_recipe_settings {
+  const ef_metric *metric;
+  const ef_observer *observer;
+  /** 1 to EF_MAX_LIGHTS lights that the recipe is told for. */
+  size_t n_lights;
+  const ef_illuminant *const *light;
+  /** How much each light counts for the match; 0: it is only told. NULL: the
+   * first counts alone. */
+  const double *weight;
+  /** Smallest step of a concentration, 0: none. */
+  double step;
+} ef_recipe_settings;
+
+/** CIEDE2000, no steps; observer and lights are the caller's to set. */
+EF_API ef_recipe_settings ef_recipe_settings_default(void);
+
+/** Standard and mixture in one light. */
+typedef struct ef_recipe_view {
+  ef_xyz white;              /**< Y = 100 */
+  ef_xyz standard, mixture;  /**< NaN for a standard not known in this light */
+  double difference;         /**< in the metric */
+  ef_components components;  /**< mixture minus standard */
+} ef_recipe_view;
+
+typedef struct ef_recipe {
+  bool found; /**< false: not asked for, or no spectrum to match */
+  double concentration[EF_MAX_RECIPE]; /**< in the order of ef_mixture_name */
+  uint32_t at_zero;      /**< bit i: none of colourant i */
+  bool at_total_loading; /**< more of the colourants would be wanted */
+  /** Root of the weighted mean of the squared differences in the lights. */
+  double difference;
+  /** Of the reflectances, over the samples of the colourants; NaN without a
+   * spectrum. */
+  double spectral_rms;
+  ef_recipe_view view[EF_MAX_LIGHTS];
+  /** How far the mixture's colour in the first light moves, in the metric, when
+   * 1 % more of colourant i is weighed in and all else stays. */
+  double sensitivity[EF_MAX_RECIPE];
+} ef_recipe;
+
+typedef struct ef_recipes {
+  ef_recipe colour;   /**< the least `difference` */
+  ef_recipe spectral; /**< the least `spectral_rms`: what differs least in any
+                           other light, as far as these colourants can */
+  /** The least `difference` that was found with whole steps: among all
+   * roundings up and down of `colour`, then by moves of one step in one or two
+   * colourants. Of the total loading whole steps count as well. */
+  ef_recipe stepped;
+} ef_recipes;
+
+/** Concentrations of a mixture's colourants (ef_mixture_new) that match a
+ * standard: none below zero, their sum at most the total loading, the base the
+ * rest. Gauss-Newton steps (Levenberg-Marquardt) with these limits kept in each
+ * step, from several starts; the least of what they end at is taken. A standard
+ * with a spectrum is interpolated to the samples of the colourants (its ends
+ * held). EF_INVALID for other devices and for settings that make no sense, for
+ * instance several lights that count and a standard without a spectrum. */
+EF_API ef_status ef_recipe_find(const ef_device *device,
+                                const ef_standard *standard,
+                                const ef_recipe_settings *settings,
+                                ef_recipes *out, ef_error *error);
+
 #ifdef __cplusplus
 }
 #endif

@@ -210,6 +210,17 @@ double ef_mixture_total_loading(const ef_device *device) {
   return is_mixture(device) ? as_mixture(device)->total_loading : nan("");
 }
 
+double ef_mixture_complete(const ef_device *device, double *concentration) {
+  if (!is_mixture(device) || as_mixture(device)->base == SIZE_MAX)
+    return 0.0;
+  const mixture *m = as_mixture(device);
+  double sum = 0.0;
+  for (size_t i = 0; m->two_constant && i < m->n; i++)
+    sum += i != m->base ? concentration[i] : 0.0;
+  concentration[m->base] = fmax(1.0 - sum, 0.0);
+  return m->two_constant ? -1.0 : 0.0;
+}
+
 static ef_status check_kind(const ef_device *device, ef_error *error) {
   return is_mixture(device)
              ? EF_OK
