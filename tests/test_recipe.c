@@ -152,7 +152,7 @@ static void only_the_base_fits(void **state) {
   const double c[4] = {0.9, 0.02, 0.03, 0.05};
   ef_recipe_settings settings = s->settings;
   ef_recipes found;
-  settings.step = 0.5;
+  settings.quantum = 0.5;
   ef_mixture_spectrum(s->device, c, r, NULL, NULL);
   const ef_standard standard = {.grid = &grid, .spectrum = r};
   assert_int_equal(
@@ -209,7 +209,7 @@ static void recipes_at_fault(void **state) {
          "a standard known by tristimulus values can be matched in the first "
          "light only; light 2 needs its spectrum");
   settings = s->settings;
-  settings.step = 0.6;
+  settings.quantum = 0.6;
   refuse(s, s->device, &standard, &settings,
          "steps of 0.6; expected zero or more, up to the total loading of 0.5");
   const ef_standard endless = {.xyz = {10, INFINITE, 10}};
@@ -239,7 +239,7 @@ static void livery_is_mixed_again(void **state) {
   mixing.base = 0;
   ef_device *device = ef_mixture_new("livery", set, &mixing, &error);
   ef_recipe_settings settings = s->settings;
-  settings.step = 0.001;
+  settings.quantum = 0.001;
   size_t n_matched = 0;
   for (size_t i = 0; i < ef_spectra_count(livery); i++) {
     const ef_grid *grid = ef_spectra_grid(livery);

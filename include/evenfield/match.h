@@ -214,8 +214,8 @@ typedef struct ef_recipe_settings {
   /** How much each light counts for the match; 0: it is only told. NULL: the
    * first counts alone. */
   const double *weight;
-  /** Smallest step of a concentration, 0: none. */
-  double step;
+  /** Concentrations of `stepped` are multiples of this, 0: none. */
+  double quantum;
 } ef_recipe_settings;
 
 /** CIEDE2000, no steps; observer and lights are the caller's to set. */

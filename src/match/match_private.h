@@ -93,7 +93,7 @@ void ef__scout_free(ef__scout *scout);
  * coordinates) than all their neighbours, the nearest first. */
 size_t ef__scout_starts(const ef__scout *scout, const ef_metric *metric,
                         const double target[3],
-                        double start[EF__MAX_SCOUTED][3]);
+                        double place[EF__MAX_SCOUTED][3]);
 
 /* ---- Nearest colour (nearest.c) ---------------------------------------- */
 

@@ -90,7 +90,7 @@ ef_recipe_settings ef_recipe_settings_default(void) {
       .n_lights = 0,
       .light = NULL,
       .weight = NULL,
-      .step = 0.0,
+      .quantum = 0.0,
   };
   return settings;
 }
@@ -133,12 +133,12 @@ static ef_status check(const ef_device *device, const ef_standard *standard,
   if (ef_mixture_count(device) == 0)
     return ef__error_set(error, EF_INVALID, "'%s' (%s) is no mixture",
                          ef_device_name(device), ef_device_kind(device));
-  if (!(settings->step >= 0.0 &&
-        settings->step <= ef_mixture_total_loading(device)))
+  if (!(settings->quantum >= 0.0 &&
+        settings->quantum <= ef_mixture_total_loading(device)))
     return ef__error_set(error, EF_INVALID,
                          "steps of %g; expected zero or more, up to the total "
                          "loading of %g",
-                         settings->step, ef_mixture_total_loading(device));
+                         settings->quantum, ef_mixture_total_loading(device));
   if (standard->grid == NULL &&
       !(isfinite(standard->xyz.X) && isfinite(standard->xyz.Y) &&
         isfinite(standard->xyz.Z)))
@@ -280,7 +280,7 @@ ef_status ef_recipe_find(const ef_device *device, const ef_standard *standard,
   const ef_status status = prepare(&p, standard, settings, &block, error);
   if (status == EF_OK) {
     *out = (ef_recipes){0};
-    find_all(&p, settings->step, out);
+    find_all(&p, settings->quantum, out);
   }
   for (size_t k = 0; k < p.n_lights; k++)
     ef_weights_free(p.light[k].weights);

@@ -53,9 +53,9 @@ ef_xyz ef__recipe_colour(const ef__recipe_search *search,
 double ef__recipe_mean_square(const ef__recipe_search *search);
 
 /** The unknowns with the least goal of what several starts end at; from
- * `start` as well, unless NULL. */
+ * `known` as well, unless NULL. */
 void ef__recipe_least(ef__recipe_search *search, ef__recipe_goal goal,
-                      const double *start, double *c);
+                      const double *known, double *c);
 /** Whole steps near `exact`, see ef_recipes.stepped. */
 void ef__recipe_whole_steps(ef__recipe_search *search, const double *exact,
                             double size, double *c);

@@ -55,7 +55,8 @@ static bool is_low(const double *difference, int point) {
           continue;
         }
         const int other = (x * SIDE + y) * SIDE + z;
-        if (difference[other] < difference[point]) return false;
+        if (difference[other] < difference[point])
+          return false;
         /* Of equal neighbours one counts. */
         if (difference[other] == difference[point] && other < point) {
           return false;
@@ -68,7 +69,7 @@ static bool is_low(const double *difference, int point) {
 
 size_t ef__scout_starts(const ef__scout *scout, const ef_metric *metric,
                         const double target[3],
-                        double start[EF__MAX_SCOUTED][3]) {
+                        double place[EF__MAX_SCOUTED][3]) {
   double difference[POINTS];
   int low[EF__MAX_SCOUTED];
   size_t n = 0;
@@ -80,13 +81,15 @@ size_t ef__scout_starts(const ef__scout *scout, const ef_metric *metric,
     if (n == EF__MAX_SCOUTED && !(difference[p] < difference[low[n - 1]])) {
       continue;
     }
-    if (!is_low(difference, p)) continue;
+    if (!is_low(difference, p))
+      continue;
     size_t i = n < EF__MAX_SCOUTED ? n++ : n - 1;
     for (; i > 0 && difference[low[i - 1]] > difference[p]; --i) {
       low[i] = low[i - 1];
     }
     low[i] = p;
   }
-  for (size_t i = 0; i < n; ++i) point_amounts(low[i], start[i]);
+  for (size_t i = 0; i < n; ++i)
+    point_amounts(low[i], place[i]);
   return n;
 }

@@ -162,7 +162,7 @@ static void nothing_better_on_a_grid(void **state) {
     assert_true(found.spectral.spectral_rms <=
                 found.colour.spectral_rms + 1e-15);
     assert_true(found.colour.difference <= found.spectral.difference + 1e-12);
-    settings.step = most / STEPS; /* walks the grid by a search of its own */
+    settings.quantum = most / STEPS; /* walks the grid by a search of its own */
     find(device, r, &settings, &one);
     assert_true(one.stepped.found);
     check_recipe(device, &one.stepped, r);
@@ -253,7 +253,7 @@ static void whole_steps_are_the_best(void **state) {
     double c[EF_MAX_RECIPE], r[N];
     ef_recipe_settings settings = s->settings;
     ef_recipes found;
-    settings.step = most / STEPS;
+    settings.quantum = most / STEPS;
     random_concentrations(&g, device, c);
     ef_mixture_spectrum(device, c, r, NULL, NULL);
     find(device, r, &settings, &found);
@@ -261,7 +261,7 @@ static void whole_steps_are_the_best(void **state) {
     check_recipe(device, &found.stepped, r);
     double least = INFINITE;
     for (size_t i = 1; i < PAINTS; i++) {
-      const double steps = found.stepped.concentration[i] / settings.step;
+      const double steps = found.stepped.concentration[i] / settings.quantum;
       assert_near(steps, round(steps), 1e-9);
     }
     for (int i = 0; i <= STEPS; i++)
