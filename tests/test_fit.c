@@ -176,8 +176,8 @@ static void settings_refused(void **state) {
   s = good;
   s.criterion = 0.5;
   assert_refused(&sound, &s, EF_INVALID,
-                 "criterion is 0.5, expected a proportion above the guess rate "
-                 "0.5 and below 1");
+                 "criterion is 0.5, expected a proportion above 0.5 and below "
+                 "1");
   s = good;
   s.shape = EF_SHAPE_DETECTION;
   assert_refused(&sound, &s, EF_INVALID,

@@ -166,9 +166,11 @@ typedef struct ef_fit_settings {
   double lapse;     /**< NaN: estimated between 0 and lapse_max */
   double lapse_max; /**< below 1 - guess */
   double width;     /**< NaN: estimated */
-  double criterion; /**< proportion at the threshold, lapses left out; NaN: 0.75
-                         in 2IFC, 2/3 in triangle, else 1/2. EF_SHAPE_DETECTION
-                         with yes-no and same-different: d' = 1 always */
+  double criterion; /**< where the threshold is taken; NaN: 0.75 in 2IFC, 2/3 in
+                         triangle: proportion right, lapses left out; else 1/2:
+                         share of F, lapses and guesses left out.
+                         EF_SHAPE_DETECTION with yes-no and same-different:
+                         d' = 1 always */
   const ef_notes *notes;
 } ef_fit_settings;
 
@@ -211,7 +213,7 @@ typedef struct ef_fit {
    * EF_SHAPE_DETECTION), lapse, row-major, from the expected information; zero
    * for what is fixed or lies at its limit. */
   double covariance[16];
-  double criterion;      /**< proportion at the threshold; NaN when at d' = 1 */
+  double criterion;      /**< of the settings or task; NaN when at d' = 1 */
   ef_estimate threshold; /**< level at the criterion */
   ef_estimate equality;  /**< greater-less: level answered "greater" half the
                               time (PSE); else NaN */
@@ -242,6 +244,50 @@ typedef struct ef_fit {
  * the user should know beside an answer goes to the notes. */
 EF_API ef_status ef_fit_responses(const ef_responses *responses,
                                   const ef_fit_settings *settings, ef_fit *out,
+                                  ef_error *error);
+
+/* ---- Intervals and goodness of fit ------------------------------------- */
+
+typedef enum ef_interval_method {
+  EF_INTERVAL_PROFILE,  /**< profile likelihood */
+  EF_INTERVAL_BOOTSTRAP /**< bias-corrected percentiles of fits to simulated
+                             answers; plain ones when lapses are fitted */
+} ef_interval_method;
+
+typedef struct ef_interval_settings {
+  ef_interval_method method;
+  double level; /**< 0.95 */
+  size_t
+      n_samples; /**< simulated experiments, for the bootstrap and the p-value
+                      of the deviance; 0: no simulation, p by chi-square */
+  uint64_t seed;
+  bool widen; /**< widen intervals where answers vary more than chance */
+  int jobs;   /**< threads, 0: all cores */
+} ef_interval_settings;
+/** Profile likelihood, 95 %, 2000 samples, seed 1, widened, all cores. */
+EF_API ef_interval_settings ef_interval_settings_default(void);
+
+typedef struct ef_goodness {
+  double p_value; /**< of a deviance as large as this if the curve holds:
+                       (1 + number of simulated ones at least as large) /
+                       (n_samples + 1); NaN without degrees of freedom */
+  double
+      dispersion; /**< Pearson's chi-square over its degrees of freedom: 1 for
+                       answers that vary by chance alone; NaN without any */
+  bool is_overdispersed; /**< p below 0.05 and dispersion above 1 */
+  double widened_by;     /**< factor on the distance to the limits, 1 for none:
+                              sqrt(dispersion) t / z */
+  size_t n_samples, n_failed; /**< simulated experiments; without a threshold */
+} ef_goodness;
+
+/** Fills `low` and `high` of the estimates of `fit`, which is that of the same
+ * responses and settings. A profile has no limits for the JND of yes-no and
+ * same-different but with EF_SHAPE_DETECTION (NaN); the bootstrap has. Samples
+ * without a threshold count half as below and half as above every level. */
+EF_API ef_status ef_fit_intervals(const ef_responses *responses,
+                                  const ef_fit_settings *settings,
+                                  const ef_interval_settings *intervals,
+                                  ef_fit *fit, ef_goodness *out,
                                   ef_error *error);
 
 #ifdef __cplusplus

@@ -85,67 +85,35 @@ static ef_estimate level_at(const ef_fit *fit, double eta) {
 }
 
 /* Half of the level at 75 % minus the level at 25 %. */
-static ef_estimate half_range(const ef_fit *fit, const ef__model *model) {
+static ef_estimate half_range(const ef_fit *fit, const ef__reading *reading) {
+  const double eta[2] = {reading->eta_low, reading->eta_high};
   double value = 0, by_intercept = 0, by_slope = 0;
-  for (int sign = -1; sign <= 1; sign += 2) {
-    const double eta =
-        ef__model_eta(model, fit->curve.guess,
-                      sign > 0 ? EF_JND_PROPORTION : 1 - EF_JND_PROPORTION);
-    const double t = (eta - fit->intercept) / fit->slope;
+  for (size_t i = 0; i < 2; ++i) {
+    const double half = i == 0 ? -0.5 : 0.5;
+    const double t = (eta[i] - fit->intercept) / fit->slope;
     const double level = ef__axis_level(fit->curve.axis, t);
     const double by_t = fit->curve.axis == EF_AXIS_LOG ? LN_10 * level : 1;
-    value += 0.5 * sign * level;
-    by_intercept -= 0.5 * sign * by_t / fit->slope;
-    by_slope -= 0.5 * sign * by_t * t / fit->slope;
+    value += half * level;
+    by_intercept -= half * by_t / fit->slope;
+    by_slope -= half * by_t * t / fit->slope;
   }
   return estimate(value, se_of(fit, by_intercept, by_slope));
 }
 
-/* A level of 0 was shown. */
-static bool has_zero(const ef__data *data) {
-  if (data->has_blank)
-    return true;
-  for (size_t i = 0; i < data->n; ++i) {
-    const double t = data->centre + data->scale * data->t[i];
-    if (fabs(t) <= 8 * DBL_EPSILON * (fabs(data->centre) + data->scale))
-      return true;
-  }
-  return false;
-}
-
-/* Share of positive answers at level 0, lapses left out. */
-static double zero_share(const ef_fit *fit, const ef__data *data) {
-  if (!has_zero(data))
-    return (double)NAN;
-  ef_psychometric curve = fit->curve;
-  curve.lapse = 0;
-  return ef_psychometric_value(&curve, 0);
-}
-
 static ef_estimate jnd_of(const ef__likelihood *likelihood, const ef_fit *fit,
-                          const double *theta) {
-  const ef__model *const model = &likelihood->model;
-  if (ef__model_has_criterion(model))
-    return level_at(fit, log(EF_JND_D_PRIME));
-  double alarms = (double)NAN;
-  switch (model->task) {
-  case EF_TASK_GREATER_LESS:
-    return half_range(fit, model);
-  case EF_TASK_2IFC:
-  case EF_TASK_TRIANGLE:
-    break;
-  case EF_TASK_YES_NO:
-  case EF_TASK_SAME_DIFFERENT:
-    alarms = zero_share(fit, likelihood->data);
+                          const ef__reading *reading, const double *theta) {
+  switch (reading->jnd) {
+  case EF__JND_AT_ETA:
+    return level_at(fit, reading->eta_jnd);
+  case EF__JND_RANGE:
+    return half_range(fit, reading);
+  case EF__JND_BY_ALARMS:
+    /* The false-alarm rate is an estimate too; the bootstrap knows. */
+    return estimate(ef__reading_jnd(reading, likelihood, theta), (double)NAN);
+  case EF__JND_NONE:
     break;
   }
-  const double share = ef_task_proportion(model->task, alarms, EF_JND_D_PRIME);
-  ef_estimate jnd =
-      level_at(fit, ef__model_eta(model, theta[EF__GUESS], share));
-  /* The false-alarm rate is an estimate too; the bootstrap knows. */
-  if (!isnan(alarms))
-    jnd.se = (double)NAN;
-  return jnd;
+  return estimate((double)NAN, (double)NAN);
 }
 
 static void describe_asymptotes(const ef__likelihood *likelihood,
@@ -215,15 +183,14 @@ void ef__fit_describe(const ef__likelihood *likelihood,
   covariance(likelihood, theta, out);
   out->se_intercept = sqrt(out->covariance[0]);
   out->se_slope = sqrt(out->covariance[M + 1]);
-  const double eta = ef__criterion_eta(model, settings, theta[EF__GUESS]);
+  const ef__reading reading = ef__reading_new(likelihood, settings);
   out->criterion =
       ef__model_has_criterion(model) ? (double)NAN : ef__criterion(settings);
-  out->threshold = level_at(out, eta);
+  out->threshold = level_at(out, reading.eta_threshold);
   out->equality = none;
-  if (settings->task == EF_TASK_GREATER_LESS) {
-    out->equality = level_at(out, ef__model_eta(model, theta[EF__GUESS], 0.5));
-  }
-  out->jnd = jnd_of(likelihood, out, theta);
+  if (settings->task == EF_TASK_GREATER_LESS)
+    out->equality = level_at(out, reading.eta_equality);
+  out->jnd = jnd_of(likelihood, out, &reading, theta);
   const double slope = out->slope;
   const double deviation = ef__shape_deviation(model->shape);
   out->sigma =
@@ -233,8 +200,8 @@ void ef__fit_describe(const ef__likelihood *likelihood,
     out->exponent = estimate(slope / LN_10, out->se_slope / LN_10);
   describe_asymptotes(likelihood, theta, out);
   describe_quality(likelihood, minimum, out);
-  out->extrapolated =
-      is_outside(likelihood->data, (eta - out->intercept) / slope);
+  out->extrapolated = is_outside(
+      likelihood->data, (reading.eta_threshold - out->intercept) / slope);
 }
 
 static void without_error(ef_estimate *estimate) {

@@ -32,13 +32,6 @@ double ef__criterion(const ef_fit_settings *settings) {
   }
 }
 
-double ef__criterion_eta(const ef__model *model,
-                         const ef_fit_settings *settings, double guess) {
-  if (ef__model_has_criterion(model))
-    return 0; /* d' = 1 */
-  return ef__model_eta(model, guess, ef__criterion(settings));
-}
-
 bool ef__is_estimated(const ef__likelihood *likelihood, size_t parameter) {
   return likelihood->low[parameter] < likelihood->high[parameter];
 }
@@ -110,11 +103,12 @@ static ef_status check_settings(const ef_fit_settings *s, double guess,
                          "width is %g, expected a number above 0", s->width);
   }
   const double criterion = ef__criterion(s);
-  if (!(criterion > guess && criterion < 1)) {
+  const double lowest = ef_task_chance(s->task) > 0 ? guess : 0;
+  if (!(criterion > lowest && criterion < 1)) {
     return ef__error_set(error, EF_INVALID,
-                         "criterion is %g, expected a proportion above the "
-                         "guess rate %g and below 1",
-                         criterion, guess);
+                         "criterion is %g, expected a proportion above %g and "
+                         "below 1",
+                         criterion, lowest);
   }
   return EF_OK;
 }

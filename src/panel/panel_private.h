@@ -41,6 +41,8 @@ void ef__model_share(const ef__model *model, double eta, bool is_blank,
                      double guess, double lapse, double *p, double *q);
 /** eta at a share of positive answers without lapses; NaN when none. */
 double ef__model_eta(const ef__model *model, double guess, double proportion);
+/** eta where F has this value; for models without a criterion. */
+double ef__model_core_eta(const ef__model *model, double f);
 /** Guess rate <-> third parameter. */
 double ef__model_guess(const ef__model *model, double rate);
 double ef__model_guess_rate(const ef__model *model, double guess);
@@ -134,17 +136,15 @@ bool ef__is_estimated(const ef__likelihood *likelihood, size_t parameter);
 size_t ef__parameter_count(const ef__likelihood *likelihood);
 /** Proportion at the threshold by settings or task. */
 double ef__criterion(const ef_fit_settings *settings);
-/** eta at the threshold, for third parameter `guess`. */
-double ef__criterion_eta(const ef__model *model,
-                         const ef_fit_settings *settings, double guess);
 
 /** Gain in log likelihood below which the next step is the last. A gain of g
  * means sqrt(2 g) standard errors, which the last step squares: 1e-9 of one. */
 #define EF__TOLERANCE 1e-9
+/** For fits to simulated answers: 1e-5 standard errors. */
+#define EF__TOLERANCE_QUICK 1e-5
 
 /** The largest likelihood from the starts that the data suggest and, unless
- * NULL, from `origin`. With an origin and `is_quick`, only the better of the
- * two is followed, and the others when that fails. */
+ * NULL, from `origin`. Quick: from three starts instead of seven. */
 void ef__maximise(const ef__likelihood *likelihood, const double *origin,
                   bool is_quick, double tolerance, ef__minimum *out);
 
@@ -166,6 +166,71 @@ ef_status ef__support_error(const ef__likelihood *likelihood,
 
 /** Level of a row. */
 double ef__row_level(const ef__data *data, ef_axis axis, size_t row);
+
+/** Where on the curve the answers to the user's questions stand. */
+typedef struct ef__reading {
+  ef_axis axis;
+  double eta_threshold, eta_equality;
+  double eta_low, eta_high; /**< F = 1/4 and 3/4 */
+  enum { EF__JND_NONE, EF__JND_AT_ETA, EF__JND_RANGE, EF__JND_BY_ALARMS } jnd;
+  double eta_jnd;
+  double
+      zero; /**< t of level 0 on a linear axis; -infinity on a logarithmic one
+             */
+} ef__reading;
+ef__reading ef__reading_new(const ef__likelihood *likelihood,
+                            const ef_fit_settings *settings);
+/** JND in levels for parameters in the scaled axis. */
+double ef__reading_jnd(const ef__reading *reading,
+                       const ef__likelihood *likelihood, const double *theta);
+
+/* ---- Simulated answers (simulate.c) ------------------------------------- */
+
+/** Positive answers out of n at share p. */
+double ef__draw_binomial(ef__random *random, double n, double p);
+/** Positive answers at each level. */
+void ef__draw_answers(ef__random *random, const ef__data *data,
+                      const double *share, double *positive);
+
+/* ---- Intervals (profile.c, bootstrap.c) --------------------------------- */
+
+/** What is profiled, and in which coordinate. */
+typedef struct ef__profile {
+  enum {
+    EF__PROFILE_ETA,   /**< scaled t where F^-1 is `eta` */
+    EF__PROFILE_RANGE, /**< ln of half the range of levels between eta_low and
+                            eta_high */
+    EF__PROFILE_SLOPE, /**< ln of the scaled slope */
+    EF__PROFILE_GUESS, /**< the third parameter */
+    EF__PROFILE_LAPSE
+  } what;
+  double eta, eta_low, eta_high;
+} ef__profile;
+
+/** Limits, on either side of `estimate`, where the largest likelihood given the
+ * coordinate has fallen by `drop`; infinite where it never does, the bound of
+ * the parameter where that comes first. `step` is a first guess of the
+ * distance.
+ */
+void ef__profile_limits(const ef__likelihood *likelihood,
+                        const ef__minimum *fit, const ef__profile *profile,
+                        ef_axis axis, double estimate, double step, double drop,
+                        double *low, double *high);
+
+/** Fits to simulated answers; arrays of n_samples, each sorted by the caller.
+ * NaN in all but deviance where a sample carries no threshold. */
+typedef struct ef__samples {
+  size_t n, n_failed;
+  double *threshold, *equality; /**< scaled t */
+  double *jnd;                  /**< level */
+  double *slope;                /**< scaled; infinite for a step */
+  double *guess, *lapse;        /**< rates */
+  double *deviance;
+} ef__samples;
+ef_status ef__samples_new(const ef__likelihood *likelihood,
+                          const ef__reading *reading, const ef__minimum *fit,
+                          size_t n_samples, uint64_t seed, int jobs,
+                          ef__samples *out, void **block, ef_error *error);
 
 /** Curve in the user's axis from parameters in the scaled one. */
 ef_psychometric ef__curve(const ef__likelihood *likelihood, ef_axis axis,

@@ -217,17 +217,35 @@ void ef__model_point(const ef__model *model, double eta, bool is_blank,
                      .p_eta_lapse = -(1 + both) * c.slope};
 }
 
+/* F and 1 - F alone: half the work where a search only looks. */
+static core share_at(const ef__model *model, double eta) {
+  if (model->shape != EF_SHAPE_GAUSSIAN)
+    return core_at(model, eta);
+  eta = clamp(eta, -37, 37);
+  const double tail = 0.5 * erfc(fabs(eta) / SQRT_2);
+  return (core){.f = eta < 0 ? tail : 1 - tail,
+                .rest = eta < 0 ? 1 - tail : tail};
+}
+
 void ef__model_share(const ef__model *model, double eta, bool is_blank,
                      double guess, double lapse, double *p, double *q) {
-  ef__point point;
-  ef__model_point(model, eta, is_blank, guess, lapse, &point);
-  *p = point.p;
-  *q = point.q;
+  if (ef__model_has_criterion(model)) {
+    ef__point point;
+    criterion_point(model, eta, is_blank, guess, lapse, &point);
+    *p = point.p;
+    *q = point.q;
+    return;
+  }
+  const core c = is_blank ? (core){.rest = 1} : share_at(model, eta);
+  const double low = guess + (model->lapses_both_ways ? lapse : 0);
+  const double span = 1 - low - lapse;
+  *p = low + span * c.f;
+  *q = lapse + span * c.rest;
 }
 
 /* ---- Inverse ------------------------------------------------------------- */
 
-static double core_eta(const ef__model *model, double f) {
+double ef__model_core_eta(const ef__model *model, double f) {
   if (!(f > 0) || !(f < 1))
     return (double)NAN;
   switch (model->shape) {
@@ -263,8 +281,8 @@ double ef__model_eta(const ef__model *model, double guess, double proportion) {
   }
   /* The lower end of greater-less is lapses, which thresholds leave out. */
   if (model->task == EF_TASK_GREATER_LESS)
-    return core_eta(model, proportion);
-  return core_eta(model, (proportion - guess) / (1 - guess));
+    return ef__model_core_eta(model, proportion);
+  return ef__model_core_eta(model, (proportion - guess) / (1 - guess));
 }
 
 double ef__shape_deviation(ef_shape shape) {
