@@ -209,12 +209,12 @@ typedef struct ef__profile {
 
 /** Limits, on either side of `estimate`, where the largest likelihood given the
  * coordinate has fallen by `drop`; infinite where it never does, the bound of
- * the parameter where that comes first. `step` is a first guess of the
+ * the parameter where that comes first. `reach` is a first guess of the
  * distance.
  */
 void ef__profile_limits(const ef__likelihood *likelihood,
                         const ef__minimum *fit, const ef__profile *profile,
-                        ef_axis axis, double estimate, double step, double drop,
+                        ef_axis axis, double estimate, double reach, double drop,
                         double *low, double *high);
 
 /** Fits to simulated answers; arrays of n_samples, each sorted by the caller.
