@@ -14,6 +14,7 @@
 typedef enum option_type {
   TYPE_FLAG,
   TYPE_TEXT,
+  TYPE_TEXTS,  /* may be given more than once */
   TYPE_CHOICE, /* one of `choices`; its number is stored */
   TYPE_INTEGER,
   TYPE_NUMBER
@@ -32,13 +33,45 @@ typedef struct option_row {
 
 static const char *const kinds[] = {"surface", "light", NULL};
 static const char *const formats[] = {"text", "csv", "json", NULL};
+static const char *const figures[] = {"section", "projection", "ellipsoid",
+                                      NULL};
+static const char *const bases[] = {"formula", "macadam-1942", "n-step",
+                                    "lamp-colours", NULL};
 
 #define FIELD(name) offsetof(command_options, name)
-#define SEEING (COMMAND_DESCRIBE | COMMAND_MATCH | COMMAND_SWATCH)
+#define SEEING                                                                 \
+  (COMMAND_DESCRIBE | COMMAND_MATCH | COMMAND_SWATCH | COMMAND_ELLIPSE)
 #define MATCHING (COMMAND_MATCH | COMMAND_SWATCH)
+#define DIFFERING (MATCHING | COMMAND_ELLIPSE)
 #define EVERY (SEEING | COMMAND_TABLES)
 
 static const option_row table[] = {
+    {"at", "COLOUR", COMMAND_ELLIPSE, TYPE_TEXTS, FIELD(at), 0, 0, NULL,
+     "a colour as lab:L,a,b, xyz:X,Y,Z, xyy:x,y,Y or xy:x,y, or three numbers "
+     "alone, which are x,y,Y when the first two lie in 0 to 1 and L,a,b "
+     "otherwise; may be given more than once"},
+    {"space", "SPACE", COMMAND_ELLIPSE, TYPE_TEXT, FIELD(space), 0, 0, NULL,
+     "the plane of the ellipses: xy, uv, lab (a*, b*), mb (MacLeod-Boynton), "
+     "cone (contrasts of the L and S cones) or cone-lm (L and M); default xy"},
+    {"figure", "section|projection|ellipsoid", COMMAND_ELLIPSE, TYPE_CHOICE,
+     FIELD(figure), 0, 0, figures,
+     "section: the colours of the same luminance; projection: the shadow of "
+     "the whole ellipsoid, all colours it holds; ellipsoid: the section with "
+     "the solid it is cut from; default section"},
+    {"basis", "BASIS", COMMAND_ELLIPSE, TYPE_CHOICE, FIELD(basis), 0, 0, bases,
+     "where the ellipses come from: formula (see --metric), macadam-1942 (the "
+     "matching experiment, interpolated between its 25 centres), n-step (the "
+     "circles of CIE TN 001) or lamp-colours (the standard colours of "
+     "fluorescent lamps, --at F4000); default formula"},
+    {"steps", "N", COMMAND_ELLIPSE, TYPE_NUMBER, FIELD(steps), 1e-6, 1e6, NULL,
+     "how many just-noticeable differences, standard deviations (macadam-1942) "
+     "or steps the ellipses are large; default 1"},
+    {"size", "VALUE", COMMAND_ELLIPSE, TYPE_NUMBER, FIELD(size), 1e-9, 1e6,
+     NULL, "the size of the ellipses in units of the metric, instead of a JND"},
+    {"contrast-from", "COLOUR", COMMAND_ELLIPSE, TYPE_TEXT,
+     FIELD(contrast_from), 0, 0, NULL,
+     "the background that cone contrasts are taken from, written like --at; "
+     "default the white"},
     {"display", "DISPLAY", MATCHING, TYPE_TEXT, FIELD(display), 0, 0, NULL,
      "a file with the spectra of the primaries at full drive or with measured "
      "rows (R,G,B and X,Y,Z or a spectrum), a published encoding such as "
@@ -71,12 +104,24 @@ static const option_row table[] = {
     {"adaptation", "NAME", MATCHING, TYPE_TEXT, FIELD(adaptation), 0, 0, NULL,
      "from the targets' white to the display's: cat16, bradford or none; "
      "default cat16, none for lights and for targets in cd/m2"},
-    {"metric", "NAME", MATCHING, TYPE_TEXT, FIELD(metric), 0, 0, NULL,
+    {"metric", "NAME", DIFFERING, TYPE_TEXT, FIELD(metric), 0, 0, NULL,
      "how differences are measured, a name from `evenfield tables metrics`, "
      "with parameters as in ciede2000:kl=2; default ciede2000"},
-    {"jnd", "VALUE", MATCHING, TYPE_NUMBER, FIELD(jnd), 1e-6, 1e6, NULL,
+    {"jnd", "VALUE", DIFFERING, TYPE_NUMBER, FIELD(jnd), 1e-6, 1e6, NULL,
      "the difference that is just noticed, in units of the metric; default: "
      "the published one of the metric"},
+    {"white-luminance", "CD", COMMAND_ELLIPSE, TYPE_NUMBER, FIELD(white_cd_m2),
+     1e-6, 1e9, NULL,
+     "luminance of the white the eye is adapted to, in cd/m2, for cam02-ucs, "
+     "cam16-ucs, itp and colours in cd/m2; default 318, a perfect diffuser "
+     "under 1000 lx"},
+    {"background", "Y", COMMAND_ELLIPSE, TYPE_NUMBER, FIELD(background_Y), 1e-3,
+     100, NULL,
+     "luminance of the background in percent of the white's, for cam02-ucs and "
+     "cam16-ucs; default 20"},
+    {"surround", "NAME", COMMAND_ELLIPSE, TYPE_TEXT, FIELD(surround), 0, 0,
+     NULL,
+     "average, dim or dark, for cam02-ucs and cam16-ucs; default average"},
     {"check", NULL, COMMAND_MATCH, TYPE_FLAG, FIELD(check), 0, 0, NULL,
      "exit with status 1 when a target's difference exceeds the tolerance"},
     {"tolerance", "VALUE", COMMAND_MATCH, TYPE_NUMBER, FIELD(tolerance), 0, 1e6,
@@ -113,6 +158,10 @@ static void set_defaults(command_options *o) {
                          .jnd = not_given,
                          .tolerance = not_given,
                          .device_max = not_given,
+                         .size = not_given,
+                         .steps = not_given,
+                         .white_cd_m2 = not_given,
+                         .background_Y = not_given,
                          .kind = -1,
                          .format = FORMAT_TEXT,
                          .bits = 8,
@@ -183,9 +232,15 @@ static exit_code store(command_options *options, const option_row *o,
     *(bool *)field = true;
     return EXIT_DONE;
   case TYPE_TEXT:
+  case TYPE_TEXTS:
     if (value[0] == '\0')
       return message_usage("--%s is empty", o->name);
-    *(const char **)field = value;
+    if (o->type == TYPE_TEXT) {
+      *(const char **)field = value;
+    } else {
+      text_list *list = field;
+      list->text[list->n++] = value;
+    }
     return EXIT_DONE;
   case TYPE_CHOICE:
     for (int i = 0; o->choices[i] != NULL; ++i) {
@@ -265,7 +320,7 @@ static exit_code parse_option(parser *p, int n_left, char *const *argv,
              argv[0]);
     return unknown_option(p->command, p->bit, what);
   }
-  if (p->given[o - table]) {
+  if (p->given[o - table] && o->type != TYPE_TEXTS) {
     snprintf(what, sizeof what, "--%s is given twice", o->name);
     return see_help(p->command, what);
   }
@@ -278,8 +333,11 @@ static exit_code parse_option(parser *p, int n_left, char *const *argv,
 exit_code options_parse(command_options *options, const char *command,
                         command_bit bit, int argc, char *const *argv) {
   set_defaults(options);
-  options->files = calloc((size_t)argc + 1, sizeof *options->files);
-  if (options->files == NULL) {
+  /* No list is longer than the arguments. */
+  const size_t room = (size_t)argc + 1;
+  options->files = calloc(room, sizeof *options->files);
+  options->at.text = calloc(room, sizeof *options->at.text);
+  if (options->files == NULL || options->at.text == NULL) {
     message_usage("out of memory");
     return EXIT_NO_ANSWER;
   }
@@ -306,7 +364,8 @@ exit_code options_parse(command_options *options, const char *command,
 
 void options_free(command_options *options) {
   free(options->files);
-  options->files = NULL;
+  free(options->at.text);
+  options->files = options->at.text = NULL;
 }
 
 /* ---- Help -------------------------------------------------------------- */

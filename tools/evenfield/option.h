@@ -16,7 +16,8 @@ typedef enum command_bit {
   COMMAND_DESCRIBE = 1,
   COMMAND_MATCH = 2,
   COMMAND_SWATCH = 4,
-  COMMAND_TABLES = 8
+  COMMAND_TABLES = 8,
+  COMMAND_ELLIPSE = 16
 } command_bit;
 
 typedef enum output_format {
@@ -25,16 +26,27 @@ typedef enum output_format {
   FORMAT_JSON
 } output_format;
 
+/** Values of an option that may be given more than once. */
+typedef struct text_list {
+  size_t n;
+  const char **text; /**< owned; the texts are those of argv */
+} text_list;
+
 /** What was asked for. Texts are NULL, numbers NaN and integers -1 when not
  * given, unless option.c states a default. */
 typedef struct command_options {
   const char *display, *tone, *observer, *illuminant, *metric, *adaptation;
   const char *ambient_illuminant, *pictures, *output;
+  const char *space, *contrast_from, *surround;
   double ambient_lux, reflectance, luminance_cd_m2, jnd, tolerance, device_max;
-  int kind; /**< 0 surface, 1 light, -1 not given */
+  double size, steps, white_cd_m2, background_Y;
+  int kind;   /**< 0 surface, 1 light, -1 not given */
+  int figure; /**< of enum ellipse_figure */
+  int basis;  /**< of enum ellipse_basis */
   int format;
   int bits, swatch_bits, jobs;
   bool skip_bad, check, force, quiet, help, version;
+  text_list at;
   size_t n_files;
   const char **files; /**< owned; the texts are those of argv */
 } command_options;

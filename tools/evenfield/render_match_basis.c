@@ -4,6 +4,7 @@
 #include <math.h>
 #include <string.h>
 
+#include "viewing.h"
 #include "words.h"
 
 /* ---- What it rests on -------------------------------------------------- */
@@ -117,19 +118,6 @@ static void add_observer(text *out, const match_scene *s) {
   text_label(out, "Observer", &t);
 }
 
-/* Appearance models and those on an absolute scale ask how bright the white
- * is: a middling grey tells which ones do. */
-static bool depends_on_luminance(const ef_metric *metric) {
-  ef_conditions conditions = ef_conditions_default((ef_xyz){95, 100, 109});
-  const ef_xyz grey = {30, 32, 30};
-  double dim[3], bright[3];
-  conditions.white_luminance_cd_m2 = 50.0;
-  ef_metric_coordinates(metric, grey, &conditions, dim);
-  conditions.white_luminance_cd_m2 = 5000.0;
-  ef_metric_coordinates(metric, grey, &conditions, bright);
-  return dim[0] != bright[0] || dim[1] != bright[1] || dim[2] != bright[2];
-}
-
 static void add_metric(text *out, const match_scene *s) {
   const char *symbol = ef_metric_symbol(s->metric);
   text t = {0};
@@ -145,7 +133,7 @@ static void add_metric(text *out, const match_scene *s) {
       text_format(&t, ": %s (%s)", s->jnd.criterion, s->jnd.source);
     }
   }
-  if (depends_on_luminance(s->metric))
+  if (viewing_matters(s->metric))
     text_add(&t, "; for a white of 318 cd/m2 (1000 lx on a perfect diffuser), "
                  "a background of 20 % of it and an average surround");
   text_label(out, "Difference", &t);

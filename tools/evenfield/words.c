@@ -68,6 +68,14 @@ void words_amount(double value, char text[EF_NUMBER_TEXT]) {
   ef_number_format_fixed(value, decimals, text);
 }
 
+int words_decimals(double value, int digits) {
+  const double size = fabs(value);
+  if (!(size > 0.0) || isinf(size))
+    return 2;
+  const int decimals = digits - 1 - (int)floor(log10(size));
+  return decimals < 0 ? 0 : decimals > 9 ? 9 : decimals;
+}
+
 void words_count(size_t n, const char *one, const char *many,
                  char text[WORDS_ROOM]) {
   snprintf(text, WORDS_ROOM, "%zu %s", n, n == 1 ? one : many);

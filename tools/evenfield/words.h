@@ -16,6 +16,8 @@ void words_direction(ef_components components, double h_deg,
                      char text[WORDS_ROOM]);
 /** A number with two decimals, or more where the first two are zero. */
 void words_amount(double value, char text[EF_NUMBER_TEXT]);
+/** How many decimals show `digits` significant digits of `value`: 0 to 9. */
+int words_decimals(double value, int digits);
 /** "1 target", "3 targets". */
 void words_count(size_t n, const char *one, const char *many,
                  char text[WORDS_ROOM]);
