@@ -23,6 +23,7 @@ struct ef__simplex {
   double inverse[ROWS * ROWS]; /* of the basis' columns */
   double value[ROWS];          /* of the basic variables */
   double slack[ROWS];          /* a basic variable may be outside by */
+  double size[ROWS];           /* of the terms that sum to each row */
   size_t age;                  /* steps since the last inversion */
   size_t n_idle;               /* steps without progress, one after another */
   double worth; /* gain, relative to its terms, from which a step is taken */
@@ -71,29 +72,35 @@ static double entry_of(const ef__programme *p, size_t j, size_t i) {
 
 /* ---- The basis --------------------------------------------------------- */
 
-/* right - the part of the variables off the basis. */
-static void remainder_of(const ef__simplex *s, const ef__programme *p,
-                         double *out) {
+/* right - the part of the variables off the basis; sets the sizes of rows. */
+static void remainder_of(ef__simplex *s, const ef__programme *p, double *out) {
   const size_t m = p->n_rows;
-  memcpy(out, p->right, m * sizeof *out);
+  for (size_t i = 0; i < m; ++i) {
+    out[i] = p->right[i];
+    s->size[i] = fabs(p->right[i]);
+  }
   for (size_t j = 0; j < p->n_columns; ++j) {
     if (s->place[j] == BASIC)
       continue;
     const double x = s->place[j] == AT_LOW ? p->low[j] : p->high[j];
-    for (size_t i = 0; i < m && x != 0; ++i)
+    for (size_t i = 0; i < m && x != 0; ++i) {
       out[i] -= p->column[j * m + i] * x;
+      s->size[i] += fabs(p->column[j * m + i] * x);
+    }
   }
 }
 
+/* A ten-billionth of what it varies by, and what the rounding of the rows comes
+ * to in it: much, where its column is small. */
 static void set_slack(ef__simplex *s, const ef__programme *p) {
-  double largest = 0;
-  for (size_t i = 0; i < p->n_rows; ++i)
-    largest = fmax(largest, fabs(p->right[i]));
-  for (size_t i = 0; i < p->n_rows; ++i) {
+  const size_t m = p->n_rows;
+  for (size_t i = 0; i < m; ++i) {
+    double rounding = 0;
+    for (size_t k = 0; k < m; ++k)
+      rounding += fabs(s->inverse[i * m + k]) * s->size[k];
     const size_t j = s->basis[i];
-    const double size =
-        j < p->n_columns ? p->high[j] - p->low[j] : fmax(largest, DBL_MIN);
-    s->slack[i] = 1e-10 * size;
+    s->slack[i] = 1e-10 * (high_of(p, j) - low_of(p, j)) +
+                  64 * DBL_EPSILON * rounding;
   }
 }
 
