@@ -266,6 +266,99 @@ EF_API ef_status ef_recipe_find(const ef_device *device,
                                 const ef_standard *standard,
                                 const ef_recipe_settings *settings,
                                 ef_recipes *out, ef_error *error);
+/* ---- Metamer mismatch bodies ------------------------------------------- */
+
+/** All colours that surfaces which match under one look (or several) may have
+ * under another: how wrong a match can go. Reflectances range over two limits,
+ * independently at each sample and linear between, so the set of metamers and
+ * the body of their colours are convex (Finlayson & Morovic, J. Opt. Soc. Am. A
+ * 22 (2005) 810-819; Logvinenko, Funt & Godau, IEEE Trans. Image Process. 23
+ * (2014) 34-43). Its boundary is found by sampling the sphere of directions and
+ * solving a linear programme in each, after Mackiewicz, Rivertz & Finlayson, J.
+ * Opt. Soc. Am. A 36 (2019) 96-104 (references from memory); here the
+ * directions are those in which to go from the centre, which gives points and
+ * supporting planes at once. Owns its memory. */
+typedef struct ef_metamer_set ef_metamer_set;
+
+typedef struct ef_metamer_settings {
+  ef_grid grid;     /**< of the reflectances, at most 1000 samples */
+  double low, high; /**< limits of the reflectance, 0 <= low < high */
+  /** 10 4^level + 2 directions: 0 to 5. */
+  int level;
+  const ef_notes *notes;
+} ef_metamer_settings;
+
+/** 380 to 780 nm at 5 nm, reflectances of 0 to 1, level 3 (642 directions), no
+ * notes. Finer samples leave more metamers: from 5 to 1 nm the volume of a grey
+ * grows by some 5 % (D65 to A). */
+EF_API ef_metamer_settings ef_metamer_settings_default(void);
+
+/** Looks that a metamer must match under: at most this many. */
+enum { EF_METAMER_LOOKS = 4 };
+
+/** Surfaces that have the colours `xyz[0 .. n_references)` under the looks
+ * `reference` (1 to EF_METAMER_LOOKS), seen under `test`. The interpolation
+ * and the ends of the looks' viewings are not used. Results do not depend on
+ * `jobs` (0: all cores). EF_NO_ANSWER when no surface has these colours;
+ * EF_INVALID for settings outside their ranges and looks at lights. Free with
+ * ef_metamer_set_free. */
+EF_API ef_metamer_set *ef_metamer_set_new(size_t n_references,
+                                          const ef_look *reference,
+                                          const ef_xyz *xyz,
+                                          const ef_look *test,
+                                          const ef_metamer_settings *settings,
+                                          int jobs, ef_error *error);
+EF_API void ef_metamer_set_free(ef_metamer_set *set);
+
+/** The body as a whole, in X, Y, Z of the test look. */
+typedef struct ef_metamer_body {
+  /** No volume: the metamers are all alike (white, black, optimal colours), or
+   * differ in one or two ways only (few samples, a test look that is nearly the
+   * reference). The points are then where planes of all directions touch. */
+  bool is_flat;
+  ef_xyz center;     /**< a colour inside; where directions start */
+  ef_xyz white;      /**< of the test look */
+  double volume_low; /**< of the mesh of points: no more than the body's */
+  double volume_high; /**< of the supporting planes: no less; infinite where
+                           directions are too few to enclose it */
+  double volume_lab;  /**< of the mesh in CIELAB of the test look */
+} ef_metamer_body;
+EF_API ef_metamer_body ef_metamer_set_body(const ef_metamer_set *set);
+
+/** Points on the boundary, and the surface that reaches each: reflectances on
+ * the settings' grid, borrowed until the set is freed. */
+EF_API size_t ef_metamer_set_count(const ef_metamer_set *set);
+EF_API ef_xyz ef_metamer_set_point(const ef_metamer_set *set, size_t i);
+EF_API const double *ef_metamer_set_spectrum(const ef_metamer_set *set,
+                                             size_t i);
+/** Triangles between the points, three indices each, outside counterclockwise
+ * in right-handed X, Y, Z; none for a flat body. Borrowed. */
+EF_API size_t ef_metamer_set_triangles(const ef_metamer_set *set,
+                                       const size_t **corner);
+
+/** How far, in X, Y, Z, a colour lies outside the supporting plane it is most
+ * outside of; not above zero (but for rounding, some 1e-9) for every colour of
+ * a metamer. */
+EF_API double ef_metamer_set_outside(const ef_metamer_set *set, ef_xyz xyz);
+
+/** The metamer that differs most from `from`, say from the colour of the sample
+ * itself under the test look: two samples that match under the reference may
+ * differ by this much. `conditions` but for the white, which is the test
+ * look's, may be NULL for the default ones. Searched from the boundary points
+ * towards the corners of the body between them. */
+EF_API ef_status ef_metamer_set_farthest(const ef_metamer_set *set,
+                                         const ef_metric *metric,
+                                         const ef_conditions *conditions,
+                                         ef_xyz from, ef_xyz *farthest_xyz,
+                                         double *difference, ef_error *error);
+/** The two metamers that differ most from each other: the standard is then not
+ * known either. Looks at all pairs of boundary points first. */
+EF_API ef_status ef_metamer_set_widest(const ef_metamer_set *set,
+                                       const ef_metric *metric,
+                                       const ef_conditions *conditions,
+                                       int jobs, ef_xyz *standard,
+                                       ef_xyz *sample, double *difference,
+                                       ef_error *error);
 
 #ifdef __cplusplus
 }
