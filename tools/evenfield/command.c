@@ -9,8 +9,10 @@ static const command_entry table[] = {
      "FILE...",
      "what a spectrum or a colour is, in the numbers of the trade",
      {"Colorimetry of every spectrum or colour in the files: tristimulus "
-      "values, chromaticity, CIELAB, cone excitations; for lights colour "
-      "temperature, colour rendering and luminance.",
+      "values, chromaticity, CIELAB, cone excitations; for surfaces whiteness, "
+      "tint and yellowness under D65, C and D50 (observers cie-1931 and "
+      "cie-1964); for lights colour temperature, colour rendering and "
+      "luminance.",
       "A FILE is CSV: wavelength_nm and a column for each spectrum, or a row "
       "for each spectrum with columns named by wavelength, or colours as L,a,b "
       "or X,Y,Z or x,y,Y. The file - is standard input, demo:NAME is a file of "

@@ -43,6 +43,11 @@ ef_status describe_scene_load(describe_scene *s, const command_options *options,
     return error->status;
   const ef_status status =
       colour_basis_init(&s->basis, s->observer, s->illuminant, error);
+  /* Defined for a few lights only: that there is none is no failure. */
+  ef_error ignored;
+  s->white_scale =
+      ef_white_scale_find(ef_observer_name(s->observer),
+                          ef_illuminant_name(s->illuminant), &ignored);
   return status == EF_OK ? set_equal_energy(s, error) : status;
 }
 
@@ -208,6 +213,14 @@ static void add_dominant(description *d, const describe_scene *s,
   }
 }
 
+static void add_whiteness(description *d, const describe_scene *s,
+                          const file_work *w) {
+  const double none = (double)NAN;
+  d->whiteness = (ef_whiteness){none, none, none, false};
+  if (!w->is_light && s->white_scale != NULL)
+    d->whiteness = ef_whiteness_of(d->xyz, s->white_scale);
+}
+
 static void add_rendering(description *d, const file_work *w,
                           const double *value) {
   d->Ra = (double)NAN;
@@ -238,6 +251,7 @@ static description describe(const describe_scene *s, const file_work *w,
   add_cones(&d, s, w, i);
   add_temperature(&d, w, i);
   add_dominant(&d, s, w);
+  add_whiteness(&d, s, w);
   add_rendering(&d, w, block->value + i * w->head->width);
   return d;
 }

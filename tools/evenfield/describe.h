@@ -4,6 +4,8 @@
 #ifndef COMMAND_DESCRIBE_H
 #define COMMAND_DESCRIBE_H
 
+#include <evenfield/difference.h>
+
 #include "colours.h"
 #include "option.h"
 
@@ -23,6 +25,7 @@ typedef struct description {
   ef_dominant dominant;
   double Ra;
   bool Ra_tolerable; /**< near enough to its reference for Ra to mean much */
+  ef_whiteness whiteness; /**< of surfaces and colours */
 } description;
 
 /** Everything the answers rest on. */
@@ -32,8 +35,10 @@ typedef struct describe_scene {
   ef_observer *observer_1931; /**< for colour temperature; NULL: the same */
   ef_illuminant *illuminant;
   colour_basis basis;
-  ef_xy equal_energy;   /**< white of lights */
-  bool has_light_white; /**< a file held a light named white */
+  ef_xy equal_energy;                /**< white of lights */
+  const ef_white_scale *white_scale; /**< NULL: none for this observer and
+                                          light */
+  bool has_light_white;              /**< a file held a light named white */
 } describe_scene;
 
 /** Free with describe_scene_free in every case. */

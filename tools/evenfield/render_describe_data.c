@@ -38,6 +38,10 @@ static void record_description(record *r, const describe_scene *s,
   record_number(r, "cone_s", d->lms.cone_s);
   record_number(r, "mb_l", d->mb.mb_l);
   record_number(r, "mb_s", d->mb.mb_s);
+  record_number(r, "whiteness", d->whiteness.whiteness);
+  record_number(r, "tint", d->whiteness.tint);
+  record_boolean(r, "is_white", d->whiteness.is_white);
+  record_number(r, "yellowness", d->whiteness.yellowness);
   record_end(r);
 }
 

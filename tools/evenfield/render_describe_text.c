@@ -351,7 +351,42 @@ static void add_cones(text *out, const describe_text *t, const group *g) {
   table_finish(&a, out);
 }
 
-static void add_group(text *out, const describe_text *t, const char *kind,
+static bool has_whiteness(const description *d) {
+  return d->whiteness.is_white || !isnan(d->whiteness.yellowness);
+}
+
+/* Whiteness and tint say nothing of what is not white by the limits of the
+ * CIE. */
+static void add_whiteness(text *out, const describe_text *t, const group *g) {
+  text_table a = table_new();
+  size_t n = 0;
+  table_column(&a, "Name", "", true);
+  table_column(&a, "Whiteness", "", false);
+  table_column(&a, "Tint", "", false);
+  table_column(&a, "Yellowness", "", false);
+  for (size_t i = 0; i < t->n_rows; ++i) {
+    const description *d = &t->row[i];
+    if (!belongs(g, d) || !has_whiteness(d))
+      continue;
+    const bool white = d->whiteness.is_white;
+    table_cell(&a, d->name);
+    table_number(&a, white ? d->whiteness.whiteness : (double)NAN, 1);
+    table_number(&a, white ? d->whiteness.tint : (double)NAN, 1);
+    table_number(&a, d->whiteness.yellowness, 1);
+    ++n;
+  }
+  text whole = {0};
+  table_finish(&a, &whole);
+  if (n > 0) {
+    text_add(out, "\n");
+    text_add(out, whole.bytes != NULL ? whole.bytes : "");
+  }
+  out->failed = out->failed || whole.failed;
+  text_free(&whole);
+}
+
+static void add_group(text *out, const describe_text *t,
+                      const describe_scene *s, const char *kind,
                       bool is_absolute) {
   const group g = look_at(t, kind, is_absolute);
   if (g.n == 0)
@@ -361,6 +396,8 @@ static void add_group(text *out, const describe_text *t, const char *kind,
   add_appearance(out, t, &g);
   if (g.has_cones)
     add_cones(out, t, &g);
+  if (kind[0] != 'l' && s->white_scale != NULL)
+    add_whiteness(out, t, &g);
 }
 
 /* ---- What it rests on -------------------------------------------------- */
@@ -385,6 +422,23 @@ static void add_cone_basis(text *out, const describe_scene *s) {
   text_label(out, "Cones", &line);
 }
 
+static void add_whiteness_basis(text *out, const describe_scene *s) {
+  const ef_white_scale *scale = s->white_scale;
+  if (scale == NULL)
+    return;
+  text line = {0};
+  text_format(&line,
+              "whiteness and tint (above 0 greener, below 0 redder): %s for %s "
+              "and %s, of samples within the limits of the CIE for white",
+              scale->is_cie ? "CIE 015:2018" : "ASTM E313", scale->observer,
+              scale->illuminant);
+  if (!isnan(scale->yellow_x))
+    text_add(&line, "; yellowness: ASTM E313");
+  text_add(&line, "; the coefficients are from memory; for samples compared on "
+                  "one instrument");
+  text_label(out, "Whiteness", &line);
+}
+
 static void add_basis(text *out, const describe_text *t,
                       const describe_scene *s) {
   text line = {0};
@@ -401,6 +455,8 @@ static void add_basis(text *out, const describe_text *t,
                 ef_illuminant_name(s->illuminant));
     text_label(out, "White", &line);
   }
+  if (t->n_surfaces + t->n_colours > 0)
+    add_whiteness_basis(out, s);
   if (t->n_lights == 0)
     return;
   text_format(&line,
@@ -461,10 +517,10 @@ ef_status describe_text_finish(describe_text *t, const describe_scene *s,
     text_format(&out, "The first %zu of %zu follow (--format csv gives all).\n",
                 t->n_rows, n);
   }
-  add_group(&out, t, "surface", false);
-  add_group(&out, t, "colour", false);
-  add_group(&out, t, "light", true);
-  add_group(&out, t, "light", false);
+  add_group(&out, t, s, "surface", false);
+  add_group(&out, t, s, "colour", false);
+  add_group(&out, t, s, "light", true);
+  add_group(&out, t, s, "light", false);
   add_basis(&out, t, s);
   const ef_status status = text_write(&out, output, error);
   text_free(&out);
