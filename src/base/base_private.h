@@ -133,6 +133,10 @@ typedef struct ef__simplex ef__simplex;
 /** NULL without memory or for more than EF__PROGRAMME_ROWS rows. */
 ef__simplex *ef__simplex_new(size_t n_rows, size_t n_columns);
 void ef__simplex_free(ef__simplex *simplex);
+/** How far outside its limits, as a share of their distance, a variable may be
+ * before it is put back on them; 1e-10 unless set, at least 1e-15. Less keeps
+ * closer to the rows and takes more care of degenerate corners. */
+void ef__simplex_set_slack(ef__simplex *simplex, double share);
 /** Forgets where the last search ended. */
 void ef__simplex_restart(ef__simplex *simplex);
 

@@ -14,6 +14,8 @@
 
 enum { ROWS = EF__PROGRAMME_ROWS, RENEW = 20 /* steps between inversions */ };
 
+static const double usual_slack = 1e-10; /* of the distance of the limits */
+
 enum { AT_LOW, AT_HIGH, BASIC };
 
 struct ef__simplex {
@@ -26,6 +28,7 @@ struct ef__simplex {
   double size[ROWS];           /* of the terms that sum to each row */
   size_t age;                  /* steps since the last inversion */
   size_t n_idle;               /* steps without progress, one after another */
+  double least_slack, slack_share; /* of the distance of the limits */
   double worth; /* gain, relative to its terms, from which a step is taken */
 };
 
@@ -39,12 +42,17 @@ ef__simplex *ef__simplex_new(size_t n_rows, size_t n_columns) {
   s->n_rows = n_rows;
   s->n_columns = n_columns;
   s->place = place;
+  s->least_slack = s->slack_share = usual_slack;
   ef__simplex_restart(s);
   return s;
 }
 
 void ef__simplex_free(ef__simplex *simplex) {
   free(simplex);
+}
+
+void ef__simplex_set_slack(ef__simplex *simplex, double share) {
+  simplex->least_slack = share;
 }
 
 void ef__simplex_restart(ef__simplex *s) {
@@ -99,7 +107,7 @@ static void set_slack(ef__simplex *s, const ef__programme *p) {
     for (size_t k = 0; k < m; ++k)
       rounding += fabs(s->inverse[i * m + k]) * s->size[k];
     const size_t j = s->basis[i];
-    s->slack[i] = 1e-10 * (high_of(p, j) - low_of(p, j)) +
+    s->slack[i] = s->slack_share * (high_of(p, j) - low_of(p, j)) +
                   64 * DBL_EPSILON * rounding;
   }
 }
@@ -304,6 +312,42 @@ static void read_out(const ef__simplex *s, const ef__programme *p, double *x) {
   }
 }
 
+/* cost . x, and the sum of the sizes of its terms. */
+static double worth_of(const ef__simplex *s, const ef__programme *p,
+                       const double *cost, double *size) {
+  double sum = 0;
+  *size = 0;
+  for (size_t j = 0; j < p->n_columns; ++j) {
+    if (s->place[j] == BASIC)
+      continue;
+    const double term = cost[j] * (s->place[j] == AT_LOW ? p->low[j]
+                                                         : p->high[j]);
+    sum += term;
+    *size += fabs(term);
+  }
+  for (size_t i = 0; i < p->n_rows; ++i) {
+    const size_t j = s->basis[i];
+    const double term = j < p->n_columns ? cost[j] * s->value[i] : 0;
+    sum += term;
+    *size += fabs(term);
+  }
+  return sum;
+}
+
+/* True when the cost has not risen, but for rounding, in many steps: from then
+ * on they follow prices that are rounding. */
+static bool is_flat(const ef__simplex *s, const ef__programme *p,
+                    const double *cost, double *best, size_t *n_flat) {
+  const size_t most = 8 * (p->n_rows + 20) + p->n_columns;
+  double size;
+  const double now = worth_of(s, p, cost, &size);
+  if (now > *best + 64 * DBL_EPSILON * size) {
+    *best = now;
+    *n_flat = 0;
+  }
+  return ++*n_flat > most;
+}
+
 ef__simplex_end ef__simplex_maximise(ef__simplex *s, const ef__programme *p,
                                      const double *cost, double *x,
                                      double *dual) {
@@ -314,11 +358,14 @@ ef__simplex_end ef__simplex_maximise(ef__simplex *s, const ef__programme *p,
     renew(s, p);
   }
   s->n_idle = 0;
+  s->slack_share = s->least_slack;
+  set_slack(s, p);
   /* What cancellation leaves of nothing. Where the basis is so badly
    * conditioned that more is left, two columns may take turns for ever: after
    * some ends that did not hold, more counts as nothing. */
   s->worth = 1e-11;
-  size_t n_ends = 0;
+  size_t n_ends = 0, n_flat = 0;
+  double best = -(double)INFINITY;
   for (size_t step = 0; step < most_steps; ++step) {
     if (s->age >= RENEW && !renew(s, p)) {
       ef__simplex_restart(s);
@@ -328,13 +375,20 @@ ef__simplex_end ef__simplex_maximise(ef__simplex *s, const ef__programme *p,
     const bool first = s->n_idle > 20 + 2 * p->n_rows;
     const size_t j =
         entering(s, p, outside ? NULL : cost, prices, terms, first);
-    if (j < p->n_columns) {
+    const bool ends = j == p->n_columns ||
+                      (!outside && is_flat(s, p, cost, &best, &n_flat));
+    if (!ends) {
       move(s, p, j, first);
       continue;
     }
     if (s->age > 0) { /* the end must hold without what steps have added up */
       s->age = RENEW;
       s->worth = ++n_ends < 4 ? 1e-11 : 1e-9;
+      continue;
+    }
+    if (outside && s->slack_share < usual_slack) {
+      s->slack_share *= 10; /* by rounding, perhaps */
+      set_slack(s, p);
       continue;
     }
     if (outside)
