@@ -12,6 +12,7 @@
 #include <evenfield/difference.h>
 #include <evenfield/device.h>
 #include <evenfield/match.h>
+#include <evenfield/stimulus.h>
 #include <evenfield/panel.h>
 #include <evenfield/exchange.h>
 #include <evenfield/picture.h>

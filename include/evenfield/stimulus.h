@@ -1,0 +1,236 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** \file
+ * Stimuli that change the receptors they are meant to change and leave the
+ * others alone: modulations of the primaries of a display, what other
+ * observers and the code values make of them, frames in space and time, what
+ * reaches the eye, and cautions.
+ *
+ * Amounts are shares of a primary's light at full drive, 0 to 1, in front of
+ * the tone curve (ef_device_amount, ef_device_drive). The contrast of a
+ * receptor is the change of its excitation over its excitation by the
+ * background, with the display's black and the room light in both. Arrays of
+ * receptors stand in the order of ef_receptor. */
+#ifndef EVENFIELD_STIMULUS_H
+#define EVENFIELD_STIMULUS_H
+
+#include <evenfield/base.h>
+#include <evenfield/device.h>
+#include <evenfield/observer.h>
+
+#ifdef __cplusplus
+extern "C" {
+#endif
+
+/* ---- Receptors of a display's primaries --------------------------------- */
+
+/** "L", "M", "S", "rod", "mel". Static. */
+EF_API const char *ef_receptor_symbol(ef_receptor receptor);
+/** By symbol, case ignored. EF_UNKNOWN_NAME lists the symbols. */
+EF_API ef_status ef_receptor_find(const char *symbol, ef_receptor *out,
+                                  ef_error *error);
+
+/** A display as the receptors of one observer get it; owns its memory. */
+typedef struct ef_stimulator ef_stimulator;
+
+/** Of a display with spectra, whose amounts add. `luminance_weight` (3, may be
+ * NULL): personal weights of L, M and S in luminance, as flicker photometry
+ * gives them, for excitations by fundamentals of unit peak in energy units
+ * (EF_CONES); only their ratios matter. NULL: k_l, k_m, 0 of CIE 170-2:2015
+ * for the observer's cones. Where the cones are borrowed (ef_observer_cones_
+ * borrowed) a note says so. The device and the observer must outlive it.
+ * EF_NO_ANSWER for a device without spectra or one that reflects, EF_INVALID
+ * for weights below zero. Free with ef_stimulator_free. */
+EF_API ef_stimulator *ef_stimulator_new(const ef_device *device,
+                                        const ef_observer *observer,
+                                        const double *luminance_weight,
+                                        const ef_notes *notes, ef_error *error);
+EF_API void ef_stimulator_free(ef_stimulator *stimulator);
+EF_API const ef_device *ef_stimulator_device(const ef_stimulator *stimulator);
+EF_API const ef_observer *
+ef_stimulator_observer(const ef_stimulator *stimulator);
+EF_API size_t ef_stimulator_n_primaries(const ef_stimulator *stimulator);
+/** Weights of L, M and S in luminance, scaled to a sum of 1; borrowed. */
+EF_API const double *
+ef_stimulator_luminance_weights(const ef_stimulator *stimulator);
+/** Excitations by each primary at full drive without the black, EF_N_RECEPTORS
+ * x n_primaries, in the units of ef_observer_weights; borrowed. */
+EF_API const double *ef_stimulator_matrix(const ef_stimulator *stimulator);
+/** Excitations at `amount[n_primaries]`, any reals. */
+EF_API void ef_stimulator_excitations(const ef_stimulator *stimulator,
+                                      const double *amount,
+                                      double excitation[EF_N_RECEPTORS]);
+/** Luminance at `amount` by the observer's own y_bar; NaN when the device's
+ * spectra are not absolute. */
+EF_API double ef_stimulator_luminance_cd_m2(const ef_stimulator *stimulator,
+                                            const double *amount);
+
+/* ---- Directions --------------------------------------------------------- */
+
+/** What is wanted of a receptor. */
+typedef enum ef_receptor_role {
+  EF_RECEPTOR_IGNORED, /**< whatever comes of it */
+  EF_RECEPTOR_SILENT,
+  EF_RECEPTOR_CHANGED
+} ef_receptor_role;
+
+typedef enum ef_direction_kind {
+  EF_DIRECTION_CONTRAST, /**< `contrast` of each receptor that changes */
+  /** An angle in the isoluminant plane of DKL coordinates: 0 degrees red-green
+   * (L up, M down, S silent), 90 degrees tritan (S up). */
+  EF_DIRECTION_ISOLUMINANT,
+  EF_DIRECTION_DKL,
+  /** Steps of l_MB and s_MB at constant luminance, both of CIE 170-2:2015
+   * whatever the personal weights. */
+  EF_DIRECTION_MB
+} ef_direction_kind;
+
+/** Which receptors change, by how much in relation to each other, and which
+ * must not. A plain value; fill it with ef_direction_parse or by hand. */
+typedef struct ef_direction {
+  ef_direction_kind kind;
+  /** For other kinds than contrasts the cones' roles are those of the
+   * direction, and only rods and melanopsin are looked at. */
+  ef_receptor_role role[EF_N_RECEPTORS];
+  double contrast[EF_N_RECEPTORS]; /**< where the role is changed */
+  double angle_deg;                /**< EF_DIRECTION_ISOLUMINANT */
+  double dkl[3];                   /**< achromatic, red-green, tritan */
+  double mb[2];                    /**< steps of l_MB and s_MB */
+} ef_direction;
+
+/** Reads:
+ * - receptors that change, by 1, or by the number behind `=`, with or without
+ *   sign: `S`, `L,-M`, `L=0.1,M=-0.05,mel=0.2`. The other cones are silent,
+ *   rods and melanopsin ignored;
+ * - `luminance`: L, M and S by 1 each;
+ * - `isoluminant red-green`, `isoluminant tritan`, `isoluminant:DEGREES`;
+ * - `dkl:ACHROMATIC,RED-GREEN,TRITAN` (see ef_dkl_space);
+ * - `macleod-boynton:L,S`, steps of l_MB and s_MB.
+ * Case is ignored. EF_UNKNOWN_NAME or EF_INVALID name what is at fault. */
+EF_API ef_status ef_direction_parse(const char *text, ef_direction *out,
+                                    ef_error *error);
+/** Gives `role` (silent or ignored) to the receptors of a list such as
+ * `L,M,rod`. EF_INVALID for a receptor that is to change, and for cones where
+ * the direction itself says what they do. */
+EF_API ef_status ef_direction_set_role(ef_direction *direction,
+                                       const char *list, ef_receptor_role role,
+                                       ef_error *error);
+
+/** Cone-opponent coordinates around a background (Derrington, Krauskopf &
+ * Lennie, J. Physiol. 357 (1984) 241-265), linear in the contrasts of L, M, S.
+ * Mechanisms: achromatic, the luminance contrast C_lum by the stimulator's
+ * luminance weights; red-green, C_L - C_M; tritan, C_S - C_lum. Unit: each axis
+ * is the stimulus that only its own mechanism sees, with a root of summed
+ * squares of the three cone contrasts of 1 (as in Brainard 1996); achromatic
+ * is L, M, S equally up, red-green has L up, tritan S up. */
+typedef struct ef_dkl_space {
+  double to_dkl[9];   /**< row-major, from contrasts of L, M, S */
+  double from_dkl[9]; /**< columns: contrasts of the three axes */
+} ef_dkl_space;
+/** For the excitations of L, M, S by the background. EF_INVALID unless all are
+ * above zero, EF_NO_ANSWER when only one of L and M has luminance weight, so
+ * that no red-green axis is left. */
+EF_API ef_status ef_dkl_space_make(const ef_stimulator *stimulator,
+                                   const double excitation[3],
+                                   ef_dkl_space *out, ef_error *error);
+
+/** The direction at a background: roles, and the contrast that one unit along
+ * it gives each receptor (0 where silent or ignored). Cones that the direction
+ * leaves at zero are silent. EF_INVALID for a direction that changes nothing,
+ * for numbers that are not finite, and for a receptor with a role that the
+ * background does not excite. */
+EF_API ef_status ef_direction_resolve(const ef_stimulator *stimulator,
+                                      const ef_direction *direction,
+                                      const double excitation[EF_N_RECEPTORS],
+                                      ef_receptor_role role[EF_N_RECEPTORS],
+                                      double contrast[EF_N_RECEPTORS],
+                                      ef_error *error);
+
+/* ---- Isolation ---------------------------------------------------------- */
+
+typedef enum ef_background_rule {
+  EF_BACKGROUND_GIVEN,
+  /** Any amounts with the same L, M, S excitations as the given background
+   * (a metamer of it; more than three primaries), chosen for the largest
+   * contrast. */
+  EF_BACKGROUND_SAME_CONES,
+  /** Any amounts that give at least `least_share` of what all primaries at full
+   * drive give, in luminance and in each receptor that changes: what the eye
+   * is adapted to does not go dark for the sake of contrast. */
+  EF_BACKGROUND_FREE
+} ef_background_rule;
+
+typedef enum ef_modulation {
+  EF_SYMMETRIC, /**< background plus and minus the modulation */
+  EF_PULSE      /**< background, and background plus the modulation */
+} ef_modulation;
+
+typedef struct ef_isolate_settings {
+  ef_background_rule background_rule;
+  double background[EF_MAX_DRIVES]; /**< amounts; not used when free */
+  double least_share;               /**< above 0 to below 1; when free */
+  ef_modulation modulation;
+  /** How far to go along the direction, above 0; NaN: as far as the gamut
+   * allows. */
+  double contrast;
+} ef_isolate_settings;
+
+/** Background given, half of each primary; share 0.5; symmetric; NaN. */
+EF_API ef_isolate_settings ef_isolate_settings_default(void);
+
+/** A modulation of the primaries and what the receptors get of it. */
+typedef struct ef_isolation {
+  size_t n_primaries;
+  ef_modulation modulation_kind;
+  ef_receptor_role role[EF_N_RECEPTORS];
+  double direction[EF_N_RECEPTORS];  /**< contrasts of one unit along it */
+  double background[EF_MAX_DRIVES];  /**< amounts */
+  double modulation[EF_MAX_DRIVES];  /**< amounts to add */
+  double excitation[EF_N_RECEPTORS]; /**< by the background */
+  double contrast[EF_N_RECEPTORS];   /**< of every receptor; NaN for one that
+                                          the background does not excite */
+  double pooled_contrast;            /**< root of summed squares over L, M, S */
+  double along;                      /**< how far along the direction */
+  double largest; /**< how far the gamut allows; the modulation for it
+                       is this one times largest / along */
+  /** Limits that hold the largest modulation: bit i for primary i at zero and
+   * at full drive (ef_device_limit_name). */
+  uint32_t held_low, held_high;
+  double luminance_cd_m2;  /**< of the background; NaN unless absolute */
+  double luminance_change; /**< contrast of luminance by the stimulator's
+                                weights */
+  /** Of the matrix from amounts to the contrasts that the directions fixes
+   * (2-norm, dependent rows left out). Errors of the spectra grow by up to
+   * this factor. */
+  double condition_number;
+  size_t n_controlled; /**< receptors that are to change or to stay silent */
+  size_t rank;         /**< how many of them are independent */
+} ef_isolation;
+
+/** The modulation along `direction` and the largest that the gamut holds. With
+ * as many primaries as receptors that are controlled, in closed form; with
+ * more, by a linear programme for the largest contrast, of which any smaller
+ * one is a part, so that contrast grows in proportion up to the edge.
+ * Silent receptors get less than 1e-12.
+ *
+ * A background that is chosen is the middle of those for which the largest
+ * contrast is largest, to a millionth. Where the direction itself depends on
+ * the background (isoluminant, DKL and MacLeod-Boynton directions with a free
+ * background) the choice is repeated until the direction agrees with the
+ * background that comes of it, at most 30 times; that is a good background and
+ * not always the best.
+ *
+ * EF_INVALID for a background outside the gamut or numbers that break the
+ * settings' ranges. EF_NO_ANSWER when the primaries cannot separate the
+ * receptors (the message has the rank, or a condition number above 6.7e7 with
+ * which half of the digits are lost), and when the wanted contrast is above the
+ * largest (which the message tells, with the limit by name). */
+EF_API ef_status ef_isolate(const ef_stimulator *stimulator,
+                            const ef_direction *direction,
+                            const ef_isolate_settings *settings,
+                            ef_isolation *out, ef_error *error);
+
+#ifdef __cplusplus
+}
+#endif
+
+#endif
