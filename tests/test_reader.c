@@ -131,6 +131,36 @@ static void good_rows_may_come_late(void **state) {
   ef_reader_free(reader);
 }
 
+/* Beside a quoted name, which takes the careful way, and past rows that are
+ * left out; long spectra have columns of that name, not angles. */
+static void measuring_angles(void **state) {
+  (void)state;
+  ef_reader_settings settings = ef_reader_settings_default();
+  settings.skip_bad = true;
+  ef_reader *reader = open_with("# quantity: reflectance\n"
+                                "name,angle_deg,400,410\n"
+                                "sea,15,0.5,0.25\nsea,25,37,0.25\n"
+                                "\"sea, deep\",-15.5,0.125,0.25\n"
+                                "sea,110,0.5,0.75\n",
+                                &settings);
+  const double angles[] = {15, -15.5, 110};
+  const double values[] = {0.5, 0.25, 0.125, 0.25, 0.5, 0.75};
+  assert_true(ef_reader_get_head(reader)->has_angles);
+  const ef_block block = next(reader, 9);
+  assert_int_equal(block.n, 3);
+  assert_same_bits(block.angle_deg, angles, 3);
+  assert_same_bits(block.value, values, 6);
+  assert_string_equal(block.name[1], "sea, deep");
+  ef_reader_free(reader);
+  reader = open_with("Angle,L,a,b,R,G,B\n45,50,1,2,0,0.5,1\n", &settings);
+  assert_near(next(reader, 1).angle_deg[0], 45, 0);
+  ef_reader_free(reader);
+  reader = open_with("wavelength_nm,angle\n400,0.5\n410,0.5\n", &settings);
+  assert_false(ef_reader_get_head(reader)->has_angles);
+  assert_null(next(reader, 1).angle_deg);
+  ef_reader_free(reader);
+}
+
 static void faulty_device_values_are_left_out(void **state) {
   (void)state;
   ef_reader_settings settings = ef_reader_settings_default();
@@ -457,6 +487,7 @@ int main(void) {
       cmocka_unit_test(faulty_wavelengths_are_left_out),
       cmocka_unit_test(faulty_device_values_are_left_out),
       cmocka_unit_test(good_rows_may_come_late),
+      cmocka_unit_test(measuring_angles),
       cmocka_unit_test(rows_stream_in_bounded_memory),
       cmocka_unit_test(limits),
       cmocka_unit_test(long_spectra_have_a_limit),

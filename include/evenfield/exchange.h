@@ -69,10 +69,11 @@ typedef struct ef_reader ef_reader;
  * Header: `wavelength_nm` first: long spectra; columns named by wavelength
  * (400, 400nm, nm400): wide spectra; L,a,b / X,Y,Z / x,y,Y; R,G,B / C,M,Y
  * (or red,green,blue / cyan,magenta,yellow) device values beside any of these
- * or alone; `name` anywhere. Case counts: x is not X. Where several sets are
- * there, spectra come first, then X,Y,Z, x,y,Y, L,a,b; columns that are not
- * used are noted. Comment lines above the header `# title:`, `# quantity:`,
- * `# unit:`, `# device_max:` are understood.
+ * or alone; `name` anywhere, and `angle_deg` (or `angle`) for one of several
+ * angles at which a sample was measured (not in long spectra). Case counts: x
+ * is not X. Where several sets are there, spectra come first, then X,Y,Z, x,y,Y,
+ * L,a,b; columns that are not used are noted. Comment lines above the header
+ * `# title:`, `# quantity:`, `# unit:`, `# device_max:` are understood.
  *
  * Kind rule: the settings; else a quantity line that says reflectance,
  * radiance factor, transmittance (surface) or radiance, power, light
@@ -108,6 +109,7 @@ typedef struct ef_reader_head {
   bool absolute;           /**< unit line says W sr-1 m-2 nm-1, or X,Y,Z in
                                 cd/m2 (x,y,Y too) */
   bool has_names;          /**< rows have names of their own */
+  bool has_angles;         /**< rows have a measuring angle */
   size_t n_device;         /**< device values per row, 0 if none */
   const char *const *device_name; /**< "red", "green", "blue", or "cyan" ... */
 } ef_reader_head;
@@ -120,6 +122,7 @@ typedef struct ef_block {
   const size_t *line;       /**< line in the file (column number for long) */
   const double *value;      /**< n x width */
   const double *device;     /**< n x n_device in [0, 1], NULL if none */
+  const double *angle_deg;  /**< n measuring angles, NULL if none */
 } ef_block;
 
 /** Next rows, at most `max_rows` (1 or more); n = 0 at the end. After an error

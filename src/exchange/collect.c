@@ -35,8 +35,8 @@ static ef_status append(ef__rows *rows, const ef_block *block,
     for (size_t k = 0; k < rows->width; ++k) {
       to[k] = block->value[i * rows->width + k];
     }
-    status = ef__rows_add(rows, block->line[i], ef__span_of(block->name[i]),
-                          error);
+    const ef__label label = {.name = ef__span_of(block->name[i])};
+    status = ef__rows_add(rows, block->line[i], label, error);
   }
   return status;
 }

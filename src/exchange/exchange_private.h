@@ -180,6 +180,7 @@ ef_status ef__header_error(const ef__table *table, size_t column,
 /** Where the number of a column goes: a slot of the row, or nowhere. */
 #define EF__SLOT_NONE SIZE_MAX
 #define EF__SLOT_NAME (SIZE_MAX - 1)
+#define EF__SLOT_ANGLE (SIZE_MAX - 2)
 
 typedef struct ef__layout {
   ef_content content;
@@ -190,7 +191,8 @@ typedef struct ef__layout {
   const char *const *device_letter;
   size_t *slot;     /**< by column */
   size_t *column;   /**< by slot */
-  size_t name_column; /**< SIZE_MAX if none */
+  size_t name_column;  /**< SIZE_MAX if none */
+  size_t angle_column; /**< likewise */
   double *wavelength_nm; /**< of the values of wide spectra */
 } ef__layout;
 
@@ -209,10 +211,16 @@ bool ef__unit_is_luminance(const char *text);
 
 /* ---- One row (row.c) --------------------------------------------------- */
 
+/** What a row says of itself beside its numbers. */
+typedef struct ef__label {
+  ef__span name;    /**< empty if it has none */
+  double angle_deg; /**< NaN if it has none */
+} ef__label;
+
 /** Reads the numbers of the current row into value[n_values] and
- * device[n_device] and its name (an empty span if it has none). */
+ * device[n_device], and its label. */
 ef_status ef__row_read(ef__table *table, const ef__layout *layout,
-                       double *value, double *device, ef__span *name,
+                       double *value, double *device, ef__label *label,
                        ef_error *error);
 
 /** What the values of a file must keep to, and why. */
@@ -237,9 +245,11 @@ ef_status ef__row_check(const ef__table *table, const ef__layout *layout,
  * move while rows are added. */
 typedef struct ef__rows {
   size_t width, n_device;
+  bool has_angles;
   size_t n, room;
-  double *value;  /**< room x width */
-  double *device; /**< room x n_device, NULL if none */
+  double *value;     /**< room x width */
+  double *device;    /**< room x n_device, NULL if none */
+  double *angle_deg; /**< room, NULL if none */
   size_t *line;
   size_t *name_at;
   const char **name;
@@ -249,8 +259,8 @@ typedef struct ef__rows {
 
 /** Room for `room` rows in all; what is there stays. */
 ef_status ef__rows_reserve(ef__rows *rows, size_t room, ef_error *error);
-/** Gives row `n` its line and name and counts it; its values are in place. */
-ef_status ef__rows_add(ef__rows *rows, size_t line, ef__span name,
+/** Gives row `n` its line and label and counts it; its values are in place. */
+ef_status ef__rows_add(ef__rows *rows, size_t line, ef__label label,
                        ef_error *error);
 /** Moves row `from` to the lower place `to`. */
 void ef__rows_move(ef__rows *rows, size_t from, size_t to);
@@ -289,7 +299,7 @@ ef_status ef__reader_fault(ef_reader *reader, const ef_error *fault,
 /** Next row into value and device, passing over faulty ones as the settings
  * say; its range is checked when `with_limits`. */
 ef_status ef__reader_row(ef_reader *reader, bool with_limits, double *value,
-                         double *device, ef__span *name, bool *has_row,
+                         double *device, ef__label *label, bool *has_row,
                          ef_error *error);
 /** Reads a long table whole and turns it into rows. */
 ef_status ef__long_read(ef_reader *reader, ef_error *error);

@@ -196,7 +196,7 @@ static ef_status allocate_layout(const ef__table *table, ef__layout *layout,
       {&layout->slot, n, sizeof *layout->slot},
       {&layout->column, n + 6, sizeof *layout->column},
       {&layout->wavelength_nm, n, sizeof *layout->wavelength_nm}};
-  *layout = (ef__layout){.name_column = SIZE_MAX};
+  *layout = (ef__layout){.name_column = SIZE_MAX, .angle_column = SIZE_MAX};
   if (ef__allocate_block(3, parts) == NULL) {
     return ef__error_memory(error, "the header row");
   }
@@ -337,12 +337,33 @@ static ef_status find_name_column(const ef__table *table, ef__layout *layout,
   return EF_OK;
 }
 
+/* The measuring angle of rows that are one sample. */
+static ef_status find_angle_column(const ef__table *table, ef__layout *layout,
+                                   ef_error *error) {
+  for (size_t i = 0; i < table->n_columns; ++i) {
+    if (!ef__name_equal(table->column[i], "angle_deg") &&
+        !ef__name_equal(table->column[i], "angle")) {
+      continue;
+    }
+    if (layout->angle_column != SIZE_MAX) {
+      return ef__header_error(table, i, error,
+                              "columns %zu and %zu are both angles; "
+                              "rename one of them",
+                              layout->angle_column + 1, i + 1);
+    }
+    layout->angle_column = i;
+    layout->slot[i] = EF__SLOT_ANGLE;
+  }
+  return EF_OK;
+}
+
 static ef_status lay_out_rows(const ef__table *table, ef__layout *layout,
                               ef_error *error) {
   bool is_colour = false;
   ef_status status = check_is_header(table, error);
   if (status != EF_OK) return status;
   status = find_name_column(table, layout, error);
+  if (status == EF_OK) status = find_angle_column(table, layout, error);
   if (status != EF_OK) return status;
   const size_t n_wavelengths = count_wavelengths(table);
   /* One column with a number for a name beside colours is no spectrum. */

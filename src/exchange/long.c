@@ -85,10 +85,10 @@ static ef_status read_rows(ef_reader *reader, long_rows *rows,
   for (;;) {
     ef_status status = reserve(rows, error);
     if (status != EF_OK) return status;
-    ef__span name;
+    ef__label label;
     bool has_row;
     status = ef__reader_row(reader, false, rows->value + rows->n * rows->width,
-                            NULL, &name, &has_row, error);
+                            NULL, &label, &has_row, error);
     if (status != EF_OK || !has_row) return status;
     status = check_size(reader, error);
     if (status != EF_OK) return status;
@@ -146,8 +146,8 @@ static ef_status turn(ef_reader *reader, const long_rows *from,
     }
   }
   for (size_t s = 0; s < n_spectra && status == EF_OK; ++s) {
-    const ef__span name = ef__span_of(reader->table.column[s + 1]);
-    status = ef__rows_add(rows, s + 2, name, error);
+    const ef__label label = {.name = ef__span_of(reader->table.column[s + 1])};
+    status = ef__rows_add(rows, s + 2, label, error);
   }
   ef__rows_name_all(rows);
   return status;

@@ -49,14 +49,14 @@ ef_status ef__reader_fault(ef_reader *reader, const ef_error *fault,
 }
 
 ef_status ef__reader_row(ef_reader *reader, bool with_limits, double *value,
-                         double *device, ef__span *name, bool *has_row,
+                         double *device, ef__label *label, bool *has_row,
                          ef_error *error) {
   ef_error fault;
   for (;;) {
     ef_status status = ef__table_next(&reader->table, has_row, error);
     if (status != EF_OK || !*has_row) return status;
     ++reader->n_rows_seen;
-    status = ef__row_read(&reader->table, &reader->layout, value, device, name,
+    status = ef__row_read(&reader->table, &reader->layout, value, device, label,
                           &fault);
     if (status == EF_OK && with_limits) {
       status = ef__row_check(&reader->table, &reader->layout, &reader->limits,
@@ -96,21 +96,23 @@ static ef_status fill(ef_reader *reader, size_t n_wanted, bool with_limits,
   ef_status status = ef__rows_reserve(rows, n_wanted, error);
   while (status == EF_OK && rows->n < n_wanted) {
     char number[32];
-    ef__span name;
+    ef__label label;
     bool has_row;
     double *const device =
         rows->n_device > 0 ? rows->device + rows->n * rows->n_device : NULL;
     status = ef__reader_row(reader, with_limits,
-                            rows->value + rows->n * rows->width, device, &name,
+                            rows->value + rows->n * rows->width, device, &label,
                             &has_row, error);
     if (status != EF_OK) return status;
     if (!has_row) {
       reader->at_end = true;
       break;
     }
-    if (name.length == 0) name = number_name(reader->n_rows_seen, number);
+    if (label.name.length == 0) {
+      label.name = number_name(reader->n_rows_seen, number);
+    }
     if (with_limits) scale_device(reader, rows->n);
-    status = ef__rows_add(rows, reader->table.records.line, name, error);
+    status = ef__rows_add(rows, reader->table.records.line, label, error);
   }
   ef__rows_name_all(rows);
   return status;
@@ -156,6 +158,7 @@ static ef_status read_first_rows(ef_reader *reader, ef_error *error) {
   const ef__layout *const layout = &reader->layout;
   rows->width = layout->n_values;
   rows->n_device = layout->n_device;
+  rows->has_angles = layout->angle_column != SIZE_MAX;
   ef_status status = fill(reader, FIRST_ROWS, false, error);
   if (status != EF_OK) return status;
   ef__range value = ef__range_none();
@@ -182,6 +185,7 @@ static void fill_head(ef_reader *reader) {
   head->width = reader->rows.width;
   head->kind = reader->limits.kind;
   head->has_names = layout->is_long || layout->name_column != SIZE_MAX;
+  head->has_angles = layout->angle_column != SIZE_MAX;
   head->n_device = layout->n_device;
   head->device_name = layout->device_name;
   if (layout->content != EF_CONTENT_SPECTRA) return;
@@ -325,5 +329,6 @@ ef_status ef_reader_next(ef_reader *reader, size_t max_rows, ef_block *block,
   block->line = rows->line + first;
   block->value = rows->value + first * rows->width;
   if (rows->n_device > 0) block->device = rows->device + first * rows->n_device;
+  if (rows->has_angles) block->angle_deg = rows->angle_deg + first;
   return EF_OK;
 }

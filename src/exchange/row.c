@@ -2,6 +2,7 @@
 /* Numbers of one row, and what they must keep to. */
 #include "exchange/exchange_private.h"
 
+#include <math.h>
 #include <string.h>
 
 #include "base/base_private.h"
@@ -19,7 +20,7 @@ static const double highest_surface = 2;
  * blanks, plain numbers. False sends the row to the careful reader, which
  * knows all forms and names what is wrong. */
 static bool read_plainly(const ef__table *table, const ef__layout *layout,
-                         double *value, double *device, ef__span *name) {
+                         double *value, double *device, ef__label *label) {
   const ef__records *const records = &table->records;
   const char separator = records->separator;
   const char mark = table->mark;
@@ -30,8 +31,9 @@ static bool read_plainly(const ef__table *table, const ef__layout *layout,
   for (size_t i = 0; i < n_columns; ++i) {
     const size_t slot = layout->slot[i];
     if (slot < EF__SLOT_NAME) {
-      double *const to =
-          slot < n_values ? &value[slot] : &device[slot - n_values];
+      double *const to = slot == EF__SLOT_ANGLE ? &label->angle_deg
+                         : slot < n_values      ? &value[slot]
+                                           : &device[slot - n_values];
       at = ef__decimal_scan(at, end, mark, to);
       if (at == NULL) return false;
     } else {
@@ -39,7 +41,7 @@ static bool read_plainly(const ef__table *table, const ef__layout *layout,
       at = memchr(at, separator, (size_t)(end - at));
       if (at == NULL) at = end;
       if (slot == EF__SLOT_NAME) {
-        *name = ef__span_trim((ef__span){from, (size_t)(at - from)});
+        label->name = ef__span_trim((ef__span){from, (size_t)(at - from)});
       }
     }
     if (i + 1 == n_columns) break;
@@ -50,32 +52,32 @@ static bool read_plainly(const ef__table *table, const ef__layout *layout,
 }
 
 static ef_status read_carefully(ef__table *table, const ef__layout *layout,
-                                double *value, double *device, ef__span *name,
-                                ef_error *error) {
+                                double *value, double *device,
+                                ef__label *label, ef_error *error) {
   ef_status status = ef__table_split(table, error);
   for (size_t i = 0; status == EF_OK && i < table->n_columns; ++i) {
     const size_t slot = layout->slot[i];
     if (slot >= EF__SLOT_NAME) continue;
-    double *const to = slot < layout->n_values
-                           ? &value[slot]
-                           : &device[slot - layout->n_values];
+    double *const to = slot == EF__SLOT_ANGLE     ? &label->angle_deg
+                       : slot < layout->n_values ? &value[slot]
+                                            : &device[slot - layout->n_values];
     status = ef__table_number(table, i, to, error);
   }
   if (status == EF_OK && layout->name_column != SIZE_MAX) {
-    *name = table->records.field[layout->name_column];
+    label->name = table->records.field[layout->name_column];
   }
   return status;
 }
 
 ef_status ef__row_read(ef__table *table, const ef__layout *layout,
-                       double *value, double *device, ef__span *name,
+                       double *value, double *device, ef__label *label,
                        ef_error *error) {
-  *name = (ef__span){"", 0};
+  *label = (ef__label){{"", 0}, (double)NAN};
   if (!table->records.has_quotes &&
-      read_plainly(table, layout, value, device, name)) {
+      read_plainly(table, layout, value, device, label)) {
     return EF_OK;
   }
-  return read_carefully(table, layout, value, device, name, error);
+  return read_carefully(table, layout, value, device, label, error);
 }
 
 /* ---- Checking ---------------------------------------------------------- */

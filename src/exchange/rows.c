@@ -27,6 +27,8 @@ ef_status ef__rows_reserve(ef__rows *rows, size_t room, ef_error *error) {
       resize(&rows->value, room, rows->width, sizeof *rows->value) &&
       (rows->n_device == 0 ||
        resize(&rows->device, room, rows->n_device, sizeof *rows->device)) &&
+      (!rows->has_angles ||
+       resize(&rows->angle_deg, room, 1, sizeof *rows->angle_deg)) &&
       resize(&rows->line, room, 1, sizeof *rows->line) &&
       resize(&rows->name_at, room, 1, sizeof *rows->name_at) &&
       resize(&rows->name, room, 1, sizeof *rows->name);
@@ -46,8 +48,9 @@ static ef_status reserve_text(ef__rows *rows, size_t length, ef_error *error) {
   return EF_OK;
 }
 
-ef_status ef__rows_add(ef__rows *rows, size_t line, ef__span name,
+ef_status ef__rows_add(ef__rows *rows, size_t line, ef__label label,
                        ef_error *error) {
+  const ef__span name = label.name;
   const ef_status status = reserve_text(rows, name.length + 1, error);
   if (status != EF_OK) return status;
   char *const to = rows->texts + rows->texts_used;
@@ -55,6 +58,7 @@ ef_status ef__rows_add(ef__rows *rows, size_t line, ef__span name,
   to[name.length] = '\0';
   rows->name_at[rows->n] = rows->texts_used;
   rows->line[rows->n] = line;
+  if (rows->has_angles) rows->angle_deg[rows->n] = label.angle_deg;
   rows->texts_used += name.length + 1;
   ++rows->n;
   return EF_OK;
@@ -71,6 +75,7 @@ void ef__rows_move(ef__rows *rows, size_t from, size_t to) {
            rows->device + from * rows->n_device,
            rows->n_device * sizeof *rows->device);
   }
+  if (rows->has_angles) rows->angle_deg[to] = rows->angle_deg[from];
   rows->line[to] = rows->line[from];
   rows->name_at[to] = rows->name_at[from];
 }
@@ -84,6 +89,7 @@ void ef__rows_name_all(ef__rows *rows) {
 void ef__rows_clear(ef__rows *rows) {
   free(rows->value);
   free(rows->device);
+  free(rows->angle_deg);
   free(rows->line);
   free(rows->name_at);
   free(rows->name);
