@@ -229,6 +229,53 @@ EF_API ef_status ef_isolate(const ef_stimulator *stimulator,
                             const ef_isolate_settings *settings,
                             ef_isolation *out, ef_error *error);
 
+/* ---- Other observers ---------------------------------------------------- */
+
+/** What the members of a population get in one receptor, against what was
+ * intended for it: 0 where it is silent, the contrast that was to be where it
+ * changes, what the stimulator's observer gets where it is ignored. */
+typedef struct ef_receptor_spread {
+  double intended;
+  double mean;   /**< contrast over the members */
+  double rms;    /**< root mean square of contrast minus intended */
+  double p95;    /**< 95th percentile of its absolute value, linear between
+                      neighbouring members (place 0.95 (n - 1) of the sorted
+                      values, counted from 0) */
+  double worst;  /**< the largest absolute value */
+  size_t member; /**< who gets that, for ef_population_member */
+} ef_receptor_spread;
+
+/** The modulation as a population gets it, each member against the background
+ * as that member sees it: `out` by ef_receptor, and unless NULL all contrasts,
+ * count x EF_N_RECEPTORS. Cones are those of the member's own fundamentals;
+ * rods and melanopsin are carried to the member's ocular media, as for an
+ * observer from a model. A receptor that a member does not have (S of a
+ * tritanope) gets 0. Uses up to `jobs` threads (0: all cores), which changes
+ * nothing. A note tells when the population looks at another field than the
+ * stimulator's observer. */
+EF_API ef_status ef_isolation_spread(const ef_stimulator *stimulator,
+                                     const ef_isolation *isolation,
+                                     const ef_population *population, int jobs,
+                                     ef_receptor_spread out[EF_N_RECEPTORS],
+                                     double *contrast, const ef_notes *notes,
+                                     ef_error *error);
+
+/** Like ef_isolate, at its background and contrast, but with the modulation
+ * that leaves least in the silent receptors of a whole population: of all
+ * modulations in gamut that give the stimulator's observer the wanted contrast
+ * in the receptors that change, the one with the least mean over members of
+ * the summed squares of the silent receptors' contrasts (and 1e-9 of the mean
+ * square weight times the squared length of the modulation, which decides where
+ * that is the same). A convex quadratic programme. The observer's own silent
+ * receptors then get what `contrast` says; `largest` and its limits remain
+ * those of ef_isolate. EF_INVALID when no receptor is silent. */
+EF_API ef_status ef_isolate_robust(const ef_stimulator *stimulator,
+                                   const ef_direction *direction,
+                                   const ef_isolate_settings *settings,
+                                   const ef_population *population, int jobs,
+                                   ef_isolation *out, const ef_notes *notes,
+                                   ef_error *error);
+
 #ifdef __cplusplus
 }
 #endif

@@ -179,7 +179,8 @@ static void find_limits(ef_isolation *out, const double *largest) {
   }
 }
 
-static void take_contrasts(const ef_stimulator *stimulator, ef_isolation *out) {
+void ef__isolation_take_contrasts(const ef_stimulator *stimulator,
+                                  ef_isolation *out) {
   const size_t n = stimulator->n;
   const double *const weight = stimulator->luminance_weight;
   double pooled = 0, before = 0, change = 0;
@@ -270,7 +271,7 @@ static ef_status isolate_at(const ef_stimulator *stimulator,
   out->along = all ? out->largest : fmin(settings->contrast, out->largest);
   for (size_t i = 0; i < n; ++i)
     out->modulation[i] = largest[i] * (out->along / out->largest);
-  take_contrasts(stimulator, out);
+  ef__isolation_take_contrasts(stimulator, out);
   return EF_OK;
 }
 

@@ -48,6 +48,10 @@ typedef struct ef__table {
 ef__simplex_end ef__table_solve(const ef__table *table, ef__simplex *simplex,
                                 double *x, double *value);
 
+/** Moves x, within its limits, as close to the rows as rounding allows, and no
+ * more than that takes; what stands at a limit stays there. */
+void ef__table_bring_onto_rows(const ef__table *table, double *x);
+
 /* ---- Rows (rows.c) ------------------------------------------------------ */
 
 /** Receptors that are controlled, and luminance never: at most one row each. */
@@ -87,5 +91,42 @@ ef_status ef__background_choose(const ef_stimulator *stimulator,
                                 const ef_isolate_settings *settings,
                                 double background[EF_MAX_DRIVES],
                                 ef_error *error);
+
+/** Fills contrasts, luminance and pooled contrast of an isolation from its
+ * background, excitations and modulation. */
+void ef__isolation_take_contrasts(const ef_stimulator *stimulator,
+                                  ef_isolation *isolation);
+
+/* ---- Populations (eyes.c) ------------------------------------------------ */
+
+enum { EF__WORKING_SAMPLES = 471 }; /* of ef_grid_standard */
+
+/** The display's light on the standard grid, and what it takes to make a
+ * model's excitations of it. One block, released with free(). */
+typedef struct ef__eyes {
+  size_t n;                /**< primaries */
+  struct ef__cones *cones; /**< released with free() too */
+  double *light; /**< (1 + n) x EF__WORKING_SAMPLES: all amounts 0, then each
+                      primary without it */
+  double *rest;  /**< rods and melanopsin of the mean observer, 2 x that */
+} ef__eyes;
+
+ef_status ef__eyes_new(const ef_stimulator *stimulator, ef__eyes **out,
+                       ef_error *error);
+void ef__eyes_free(ef__eyes *eyes);
+/** Excitations by all amounts 0 and by each primary (EF_N_RECEPTORS x n), in
+ * units of the member's own. */
+void ef__eyes_excitations(const ef__eyes *eyes, const ef_cone_model *model,
+                          double dark[EF_N_RECEPTORS], double *matrix);
+
+/** Contrasts that one unit of each primary gives a member at a background,
+ * EF_N_RECEPTORS x n; 0 for a receptor it does not excite. */
+void ef__eyes_gains(const ef__eyes *eyes, const ef_cone_model *model,
+                    const double *background, double *gain);
+
+/** A note when the population looks at another field than the observer
+ * (spread.c). */
+void ef__tell_field(const ef_stimulator *stimulator,
+                    const ef_population *population, const ef_notes *notes);
 
 #endif

@@ -51,8 +51,7 @@ static bool correct(const ef__table *t, const double *residual, double *x) {
   return true;
 }
 
-/* As close to the rows as rounding allows. */
-static void bring_onto_rows(const ef__table *t, double *x) {
+void ef__table_bring_onto_rows(const ef__table *t, double *x) {
   enum { MOST_PASSES = 3 };
   double residual[EF__TABLE_ROWS], better[EF__TABLE_COLUMNS];
   double worst = residual_of(t, x, residual);
@@ -86,7 +85,7 @@ ef__simplex_end ef__table_solve(const ef__table *t, ef__simplex *simplex,
       ef__simplex_maximise(simplex, &programme, t->gain, x, NULL);
   if (end != EF__SIMPLEX_BEST)
     return end;
-  bring_onto_rows(t, x);
+  ef__table_bring_onto_rows(t, x);
   *value = 0;
   for (size_t j = 0; j < t->n_columns; ++j)
     *value += t->gain[j] * x[j];
