@@ -57,7 +57,8 @@ static void no_whiteness(void **state) {
                       "whiteness is defined for cie-1931 and cie-1964 under C, "
                       "D50 and D65, not for cie-2015-10 under D65");
   assert_null(ef_white_scale_find("cie-1931", "FL11", NULL));
-  const ef_white_scale *const d50 = ef_white_scale_find("cie-1931", "D50", NULL);
+  const ef_white_scale *const d50 =
+      ef_white_scale_find("cie-1931", "D50", NULL);
   assert_false(d50->is_cie);
   const ef_whiteness paper =
       ef_whiteness_of((ef_xyz){84.2, 88.0, 73.5}, d50);

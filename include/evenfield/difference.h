@@ -360,9 +360,10 @@ EF_API ef_status ef_metamerism_batch(
 
 /** Samples whose spectra are changed as little as it takes (least squares) to
  * have the channel values of their standards: sample + A (A'A)^-1 A' (standard
- * - sample), the columns of A being the rows of `reference`. It is the standard's
- * fundamental with the sample's metameric black (Cohen & Kappauf 1982; as a
- * correction Fairman, Color Res. Appl. 12 (1987) 261-265; both from memory).
+ * - sample), the columns of A being the rows of `reference`. It is the
+ * fundamental of the standard with the metameric black of the sample (Cohen &
+ * Kappauf 1982; as a correction Fairman, Color Res. Appl. 12 (1987) 261-265;
+ * both from memory).
  * n spectra of the weights' samples each; `corrected` may be `sample`. Values
  * may leave the range of reflectances by a little. EF_NO_ANSWER for channels
  * that depend on each other. */
@@ -604,6 +605,125 @@ EF_API ef_status ef_threshold_convert(double threshold, double exponent,
 typedef struct ef_estimate {
   double value, se, low, high;
 } ef_estimate;
+
+/* ---- Just-noticeable differences --------------------------------------- */
+
+/** By a short text: `50%`, `75%`, `84%`, `d-prime:1.2`, or a task and its share
+ * of positive answers, `2ifc:80%`, `triangle:60%`, `yes-no:60%:20%` (with the
+ * false alarms, which yes-no and same-different need). Of the short ones
+ *   75%  is 75 % right in 2IFC, d' 0.954;
+ *   84%  is one standard deviation, 84.13 % right in 2IFC, d' 1.414;
+ *   50%  is seen by half, or half of the time, with false alarms not known:
+ *        taken as 75 % right in 2IFC, which is half of the way from chance
+ *        (common practice, no source).
+ * EF_INVALID for a share that is not above chance and below 100 %. */
+EF_API ef_status ef_criterion_find(const char *text, ef_criterion *out,
+                                   ef_error *error);
+
+/** A just-noticeable difference with what it rests on: what a panel's result is
+ * kept as, and what predictions of answers start from. A plain value. */
+typedef struct ef_jnd_record {
+  char metric[64];        /**< name of the formula, as ef_metric_name has it */
+  double value;           /**< median over observers, in its unit */
+  ef_criterion criterion; /**< what was answered at this difference */
+  double exponent;        /**< beta: d' grows with this power of the difference,
+                               0.1 to 10; 1 unless it was measured */
+  /** Standard deviation over observers of the natural logarithm of the JND, 0
+   * to 3: exp of it is the geometric standard deviation. */
+  double observer_log_sd;
+  double low, high;       /**< 95 % interval of the value; NaN: not known */
+  size_t n_observers;     /**< 0: not known */
+  char source[256];       /**< publication, or panel and date */
+} ef_jnd_record;
+
+/** EF_INVALID names the member that is out of range. */
+EF_API ef_status ef_jnd_record_check(const ef_jnd_record *record,
+                                     ef_error *error);
+
+/** The metric's published default (ef_metric_jnd) at the criterion 50%, with
+ * exponent 1 and, for the spread over observers, the median spread of the
+ * judgements of a published experiment: 0.28, the standard deviation over the
+ * median tolerance of 147 vectors in Berns et al., Color Res. Appl. 16 (1991)
+ * 297-316, Table IV, which holds the scatter of single judgements too. Notes say
+ * all of this, and that viewing conditions matter. EF_NO_ANSWER when no JND is
+ * published. */
+EF_API ef_status ef_jnd_record_default(const ef_metric *metric,
+                                       ef_jnd_record *out,
+                                       const ef_notes *notes, ef_error *error);
+
+/** The same JND at another criterion, in value and interval. EF_INVALID and
+ * EF_NO_ANSWER as ef_threshold_convert. */
+EF_API ef_status ef_jnd_record_convert(const ef_jnd_record *record,
+                                       const ef_criterion *criterion,
+                                       ef_jnd_record *out, ef_error *error);
+
+/* ---- Told apart -------------------------------------------------------- */
+
+/** How uncertainties reach the answer. */
+typedef enum ef_propagation {
+  EF_PROPAGATE_MONTE_CARLO, /**< by drawing from them */
+  EF_PROPAGATE_FIRST_ORDER  /**< by the slope of the answer: quick, for
+                                 uncertainties well below the difference */
+} ef_propagation;
+
+typedef struct ef_told_apart_settings {
+  ef_propagation propagation;
+  uint64_t seed;
+  size_t n_draws; /**< 100 to 10 000 000 */
+} ef_told_apart_settings;
+
+/** Monte Carlo, seed 1, 10 000 draws. */
+EF_API ef_told_apart_settings ef_told_apart_settings_default(void);
+
+/** n pairs to be judged. */
+typedef struct ef_judged {
+  /** In the metric of the JND, not negative; n, or for a population n x
+   * n_observers: what each observer sees of each pair (ef_population_spread).
+   * NaN for a pair that could not be computed. */
+  const double *difference;
+  size_t n_observers; /**< 1, or the size of the population */
+  /** Standard deviations in the same unit; n each, or NULL for none. What
+   * repeated measurement leaves open (ef_metric_uncertainty), and how far the
+   * pieces of the batch depart from the one measured. Both move what every
+   * observer sees by the same amount. */
+  const double *measurement_sd;
+  const double *batch_sd;
+} ef_judged;
+
+/** What people will say of a pair. Each with its standard deviation and its
+ * 95 % interval from the uncertainties of measurement, batch and JND (the last
+ * from the record's interval). All NaN for a difference of NaN. */
+typedef struct ef_told_apart {
+  ef_estimate jnds; /**< difference over JND; for a population its mean */
+  /** Of the observer with the median JND: jnds^beta times d' at the JND's
+   * criterion. */
+  ef_estimate d_prime;
+  /** Expected share of right answers over all observers, JNDs being log-normal:
+   * 2IFC, same-different by the differencing model with the best criterion and
+   * half of the pairs the same, triangle. */
+  ef_estimate correct_2ifc, correct_same_different, correct_triangle;
+  /** Of observers whose own JND is below the difference that they see. */
+  ef_estimate share_of_observers;
+  /** Shares of measurement, batch and JND in the variance of ln(jnds), to first
+   * order; 0 each when nothing is uncertain. */
+  double from_measurement, from_batch, from_jnd;
+} ef_told_apart;
+
+/** By d' = (difference / JND)^beta d'(criterion). An uncertain difference is
+ * drawn from a normal distribution and cut off at 0, an uncertain JND from a
+ * log-normal one. Draw i takes stream i of the seed and serves all pairs, so
+ * that results do not depend on n or `jobs` (0: all cores). By first order
+ * standard deviations are those of the slope, and the interval is that of the logarithm
+ * of the JNDs that would give the answer; NaN for a difference of 0 that is
+ * uncertain, and for the share of a population without a spread of JNDs, which
+ * have no slope. Answers are right to 2e-8 beside that. EF_INVALID for a record
+ * that does not pass its check and for differences or standard deviations below
+ * 0. */
+EF_API ef_status ef_told_apart_batch(const ef_jnd_record *jnd, size_t n,
+                                     const ef_judged *judged,
+                                     const ef_told_apart_settings *settings,
+                                     int jobs, ef_told_apart *out,
+                                     ef_error *error);
 
 /* The formulas as plain functions. */
 

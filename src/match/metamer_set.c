@@ -80,9 +80,10 @@ static ef_status look_at(const ef_look *look,
 /* A block with the set and its arrays: one free() releases all. */
 static ef_metamer_set *set_new(const ef_metamer_settings *settings,
                                size_t n_references) {
-  ef_metamer_set *set, filled = {.n_samples = settings->grid.count,
-                                 .n_rows = 3 * n_references,
-                                 .n_points = ef__sphere_points(settings->level)};
+  ef_metamer_set *set;
+  ef_metamer_set filled = {.n_samples = settings->grid.count,
+                           .n_rows = 3 * n_references,
+                           .n_points = ef__sphere_points(settings->level)};
   const size_t n = filled.n_samples, n_points = filled.n_points;
   const ef__part parts[] = {
       {&set, 1, sizeof *set},

@@ -92,7 +92,8 @@ static void walk(gen *g, const ef_weights *reference, double *spectrum) {
 }
 
 /* Whether the tetrahedron from the centre to some triangle of the mesh holds
- * the colour: then it is inside the points found, not only inside the planes. */
+ * the colour: then it is inside the points found, not inside the planes alone.
+ */
 static bool in_mesh(const ef_metamer_set *set, ef_xyz xyz) {
   const ef_xyz c = ef_metamer_set_body(set).center;
   const double q[3] = {xyz.X - c.X, xyz.Y - c.Y, xyz.Z - c.Z};
