@@ -276,6 +276,61 @@ EF_API ef_status ef_isolate_robust(const ef_stimulator *stimulator,
                                    ef_isolation *out, const ef_notes *notes,
                                    ef_error *error);
 
+/* ---- Code values --------------------------------------------------------- */
+
+typedef struct ef_codes_settings {
+  int bits; /**< 1 to 16 */
+  /** How much more an error of contrast counts in a receptor that is to be
+   * silent than in one that changes; 1 or more. */
+  double quiet_weight;
+  /** The smallest step is one whose departure from the direction, in every
+   * controlled receptor, is at most this share of its largest contrast; above
+   * 0 to 1. */
+  double step_purity;
+} ef_codes_settings;
+
+/** 8 bits, weight 10, purity 0.1. */
+EF_API ef_codes_settings ef_codes_settings_default(void);
+
+/** What the codes of a display make of a modulation. Contrasts are against the
+ * background that the codes give. */
+typedef struct ef_coded {
+  int bits;
+  uint32_t background[EF_MAX_DRIVES];      /**< nearest to the amounts wanted */
+  uint32_t high[EF_MAX_DRIVES];            /**< background plus modulation */
+  uint32_t low[EF_MAX_DRIVES];             /**< and minus it; for a pulse the
+                                                background */
+  double background_error[EF_N_RECEPTORS]; /**< of excitations, as a share of
+                                                those wanted */
+  double contrast_high[EF_N_RECEPTORS];
+  double contrast_low[EF_N_RECEPTORS];
+  double along_high, along_low; /**< least-squares distance along the direction
+                                     in the receptors that change */
+  double residual; /**< largest absolute contrast in a silent receptor, high or
+                        low; 0 when none is silent */
+  double rounded_residual; /**< the same with plainly rounded codes */
+  /** The smallest step up from the background along the direction that was
+   * found within 12 codes in each primary, and its codes; NaN when there is
+   * none of the purity asked for. */
+  double smallest_contrast;
+  uint32_t smallest[EF_MAX_DRIVES];
+  bool below_resolution; /**< the wanted contrast is below the smallest step, or
+                              there is none */
+} ef_coded;
+
+/** Codes for the background and for the extremes of a modulation. Those of the
+ * extremes are not rounded but searched for (Fincke & Pohst 1985): of all codes
+ * the ones with the least sum of squared errors of contrast, silent receptors
+ * counting `quiet_weight` times. Where there are more primaries than controlled
+ * receptors, many codes are all but equal, and each code away from the wanted
+ * amount counts besides, a twentieth of what one code changes. The search gives
+ * up after 20000 places; it then has what is best so far. EF_INVALID for
+ * settings outside their ranges. */
+EF_API ef_status ef_isolation_codes(const ef_stimulator *stimulator,
+                                    const ef_isolation *isolation,
+                                    const ef_codes_settings *settings,
+                                    ef_coded *out, ef_error *error);
+
 #ifdef __cplusplus
 }
 #endif

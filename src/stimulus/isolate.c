@@ -59,6 +59,15 @@ static ef_status check(const ef_stimulator *stimulator,
       share);
 }
 
+ef_status ef__isolation_check(const ef_stimulator *stimulator,
+                              const ef_isolation *isolation, ef_error *error) {
+  if (isolation->n_primaries == stimulator->n)
+    return EF_OK;
+  return ef__error_set(error, EF_INVALID,
+                       "a modulation of %zu primaries is shown on %zu",
+                       isolation->n_primaries, stimulator->n);
+}
+
 /* ---- The largest modulation --------------------------------------------- */
 
 void ef__isolate_room(ef_modulation modulation, size_t n,

@@ -74,15 +74,6 @@ static ef_receptor_spread spread_of(const ef_isolation *isolation, size_t r,
   return out;
 }
 
-static ef_status check(const ef_stimulator *stimulator,
-                       const ef_isolation *isolation, ef_error *error) {
-  if (isolation->n_primaries == stimulator->n)
-    return EF_OK;
-  return ef__error_set(error, EF_INVALID,
-                       "a modulation of %zu primaries is shown on %zu",
-                       isolation->n_primaries, stimulator->n);
-}
-
 void ef__tell_field(const ef_stimulator *stimulator,
                     const ef_population *population, const ef_notes *notes) {
   const double own = ef_observer_field_deg(stimulator->observer);
@@ -103,7 +94,7 @@ ef_status ef_isolation_spread(const ef_stimulator *stimulator,
                               ef_error *error) {
   enum { CHUNK = 4 };
   const size_t count = ef_population_count(population);
-  ef_status status = check(stimulator, isolation, error);
+  ef_status status = ef__isolation_check(stimulator, isolation, error);
   if (status != EF_OK)
     return status;
   double *all = NULL, *off = NULL;

@@ -97,6 +97,16 @@ ef_status ef__background_choose(const ef_stimulator *stimulator,
 void ef__isolation_take_contrasts(const ef_stimulator *stimulator,
                                   ef_isolation *isolation);
 
+/** EF_INVALID unless it is one of as many primaries. */
+ef_status ef__isolation_check(const ef_stimulator *stimulator,
+                              const ef_isolation *isolation, ef_error *error);
+
+/** Least-squares distance of contrasts along the direction, in the receptors
+ * that change; `square` receives the direction's squared length in them
+ * (codes.c). */
+double ef__along(const ef_isolation *isolation, const double *contrast,
+                 double *square);
+
 /* ---- Populations (eyes.c) ------------------------------------------------ */
 
 enum { EF__WORKING_SAMPLES = 471 }; /* of ef_grid_standard */
@@ -128,5 +138,71 @@ void ef__eyes_gains(const ef__eyes *eyes, const ef_cone_model *model,
  * (spread.c). */
 void ef__tell_field(const ef_stimulator *stimulator,
                     const ef_population *population, const ef_notes *notes);
+
+/* ---- Code values (lattice.c, codes.c, step.c)
+ * ------------------------------------ */
+
+/** Amounts that the codes of each primary give, in increasing order. */
+typedef struct ef__codes {
+  size_t n;       /**< primaries */
+  size_t n_codes; /**< 2^bits */
+  double *amount; /**< n x n_codes */
+} ef__codes;
+
+/** One block, released with free(). `bits` 1 to 16. */
+ef_status ef__codes_new(const ef_device *device, int bits, ef__codes **out,
+                        ef_error *error);
+/** Code whose amount is nearest. */
+uint32_t ef__codes_round(const ef__codes *codes, size_t i, double amount);
+
+/** A walk through all codes whose amounts x have |R (x - centre)|^2 below a
+ * bound that shrinks on the way, the most promising first. */
+typedef struct ef__walk {
+  const ef__codes *codes;
+  double root[EF_MAX_DRIVES * EF_MAX_DRIVES]; /**< R, upper triangular, n x n */
+  double centre[EF_MAX_DRIVES];
+  uint32_t first[EF_MAX_DRIVES], last[EF_MAX_DRIVES]; /**< codes to stay in */
+  size_t most_places;
+  double bound;
+  /** Called at each place; returns the bound from then on. */
+  double (*visit)(void *context, const uint32_t *code, const double *amount,
+                  double square);
+  void *context;
+} ef__walk;
+
+void ef__walk_run(ef__walk *walk);
+
+/** Upper R with R' R = matrix (n x n, positive definite; a row that is not so
+ * to rounding gets a diagonal that is). */
+void ef__walk_set_root(ef__walk *walk, const double *matrix);
+
+/** The error of a modulation as a quadratic form, to choose codes by. */
+typedef struct ef__fit {
+  size_t n;
+  double background[EF_MAX_DRIVES]; /**< amounts of its codes */
+  double excitation[EF_N_RECEPTORS];
+  double weight[EF_N_RECEPTORS]; /**< of the squared error of contrast */
+  double gain[EF_N_RECEPTORS * EF_MAX_DRIVES]; /**< contrast per amount */
+  double matrix[EF_MAX_DRIVES * EF_MAX_DRIVES];
+} ef__fit;
+
+/** For an isolation around the amounts of `background` codes. */
+void ef__fit_set(ef__fit *fit, const ef_stimulator *stimulator,
+                 const ef_isolation *isolation, const ef__codes *codes,
+                 const uint32_t *background, double quiet_weight);
+/** Codes for `level` times the modulation (-1 to 1). */
+void ef__fit_codes(const ef__fit *fit, const ef__codes *codes,
+                   const ef_isolation *isolation, double level, uint32_t *code);
+/** Contrasts of amounts, and of codes, against the background of the fit; NaN
+ * for a receptor that it does not excite. */
+void ef__fit_contrasts_at(const ef__fit *fit, const double *amount,
+                          double contrast[EF_N_RECEPTORS]);
+void ef__fit_contrasts(const ef__fit *fit, const ef__codes *codes,
+                       const uint32_t *code, double contrast[EF_N_RECEPTORS]);
+
+/** Fills the smallest step of `out`, whose background codes are set. */
+void ef__smallest_step(const ef__fit *fit, const ef__codes *codes,
+                       const ef_isolation *isolation, double purity,
+                       ef_coded *out);
 
 #endif
