@@ -31,11 +31,8 @@ static void coordinates_at(const ef__search *search, const double amount[3],
 }
 
 /* At a kink the slope is another one in every direction. Looks around, 98
- * directions as far as they lead into the box, for one that goes down. The step
- * is so short that the bend of the difference does not hide a slope that could
- * gain 1e-6. */
-static bool nudge(ef__search *search, ef__place *place) {
-  const double reach = 1e-5;
+ * directions as far as they lead into the box, for one that goes down. */
+static bool look_around(ef__search *search, double reach, ef__place *place) {
   double best[3] = {0, 0, 0};
   double least = place->square * (1 - 1e-12);
   bool found = false;
@@ -59,6 +56,11 @@ static bool nudge(ef__search *search, ef__place *place) {
   return found;
 }
 
+/* A long look sees over small bends, a short one finds minima that lie near. */
+static bool nudge(ef__search *search, ef__place *place) {
+  return look_around(search, 1e-5, place) || look_around(search, 1e-7, place);
+}
+
 static bool on_neutral_axis(const ef__search *search,
                             const double amount[3]) {
   double c[3];
@@ -75,8 +77,11 @@ static void descend_from(ef__search *search, const double amount[3],
   if (!smooth && search->metric->jumps_at_opposite_hue) {
     smooth = ef__descend_edge(search, &place);
   }
-  for (int i = 0; i < MOST_NUDGES && search->metric->kinked_axis; ++i) {
-    if (smooth && !on_neutral_axis(search, place.amount)) break;
+  for (int i = 0; i < MOST_NUDGES; ++i) {
+    if (smooth && !(search->metric->kinked_axis &&
+                    on_neutral_axis(search, place.amount))) {
+      break;
+    }
     ef__place next = place;
     if (!nudge(search, &next)) break;
     smooth = ef__descend(search, &next);
@@ -129,6 +134,28 @@ static void search_scouted(ef__search *search, ef__minima *out) {
   for (size_t i = 0; i < n; ++i) descend_from(search, start[i], out);
 }
 
+/* The two best of the 27 points with amounts 0, 1/2 and 1: where the target is
+ * far away, the basin of the least difference need not be the one that either
+ * of the usual starts lies in. */
+static void search_lattice(ef__search *search, ef__minima *out) {
+  enum { N_STARTS = 2 };
+  double start[N_STARTS][3] = {{0}};
+  double least[N_STARTS] = {(double)INFINITY, (double)INFINITY};
+  for (int code = 0; code < 27; ++code) {
+    const double at[3] = {code % 3 / 2.0, code / 3 % 3 / 2.0, code / 9 / 2.0};
+    const double square = ef__search_value(search, at);
+    const int place = square < least[0] ? 0 : square < least[1] ? 1 : N_STARTS;
+    if (place == N_STARTS) continue;
+    if (place == 0) {
+      least[1] = least[0];
+      memcpy(start[1], start[0], sizeof start[0]);
+    }
+    least[place] = square;
+    memcpy(start[place], at, sizeof at);
+  }
+  for (int i = 0; i < N_STARTS; ++i) descend_from(search, start[i], out);
+}
+
 void ef__nearest(ef__search *search, const double exact[3], ef__minima *out) {
   double left[3], clipped[3];
   for (int i = 0; i < 3; ++i) clipped[i] = ef__clamp(exact[i], 0, 1);
@@ -145,4 +172,5 @@ void ef__nearest(ef__search *search, const double exact[3], ef__minima *out) {
   if (search->metric->decoys != NULL && out->at[0].square > least * least) {
     search_decoys(search, out);
   }
+  search_lattice(search, out);
 }

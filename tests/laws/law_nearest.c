@@ -99,6 +99,9 @@ static target random_target(gen *g, int kind, const ef__mixing *mixing,
     if (in_box(t.exact)) continue;
     if (kind == BEYOND && !(xyz.X >= 0 && xyz.Y >= 0 && xyz.Z >= 0)) continue;
     ef_metric_coordinates(metric, xyz, &mixing->conditions, t.coordinate);
+    /* Darker than black has a meaning in CIELAB alone: the other formulas
+     * leave their domain there. */
+    if (kind == BEYOND && !(t.coordinate[0] >= 0)) continue;
     return t;
   }
 }
