@@ -514,8 +514,8 @@ EF_API double ef_setup_luminance_cd_m2(const ef_setup *setup);
 /** Factor from the device's own tristimulus unit to the setup's scale. */
 EF_API double ef_setup_scale(const ef_setup *setup);
 /** What two colours of the setup must differ by, in shares of the white, to be
- * told apart from the rounding that they are computed with: 1e-10, and 1e-6 for
- * profiles, which are evaluated in single precision. */
+ * told apart from the rounding that they are computed with: 1e-10, and 1e-4 for
+ * profiles with tables of 16 bits. */
 EF_API double ef_setup_resolution(const ef_setup *setup);
 /** True when XYZ = black + sum of amounts times vectors: every additive
  * device. */
@@ -532,7 +532,126 @@ EF_API ef_status ef_setup_light_xyz(const ef_setup *setup, const ef_grid *grid,
                                     const ef_notes *notes, double *xyz,
                                     ef_error *error);
 
-/* ---- Profiles ---------------------------------------------------------- */
+/* ---- Profiles ----------------------------------------------------------- */
+
+/** Rendering intents, in the order of ICC.1. */
+typedef enum ef_intent {
+  EF_INTENT_PERCEPTUAL,
+  EF_INTENT_RELATIVE,   /**< colours relative to the white of the medium */
+  EF_INTENT_SATURATION,
+  EF_INTENT_ABSOLUTE    /**< relative, and the white of the medium with it */
+} ef_intent;
+
+/** "perceptual", "relative", "saturation", "absolute". Static. */
+EF_API const char *ef_intent_name(ef_intent intent);
+/** EF_UNKNOWN_NAME gives near names. */
+EF_API ef_status ef_intent_find(const char *name, ef_intent *out,
+                                ef_error *error);
+
+/** An ICC.1 profile of version 2 or 4; immutable, owns its memory. */
+typedef struct ef_profile ef_profile;
+
+/** Reads the `length` bytes of a profile, which are copied; `name` is used in
+ * messages. EF_MALFORMED for what is no profile: too short, cut off, without
+ * its signature, of another major version, tags beyond its end, tables larger
+ * than their tag. Free with ef_profile_free. */
+EF_API ef_profile *ef_profile_new(const char *name, const void *bytes,
+                                  size_t length, ef_error *error);
+EF_API void ef_profile_free(ef_profile *profile);
+
+/** What a profile says of itself. Texts are borrowed from it. */
+typedef struct ef_profile_info {
+  const char *name;
+  const char *description; /**< in ASCII, "" if none */
+  /** "display", "output", "input", "colour space", "device link", "abstract",
+   * "named colours", "unknown". */
+  const char *device_class;
+  char space[5];          /**< of device values: "RGB", "CMYK", "Lab" ... */
+  char pcs[5];            /**< connection space: "XYZ", "Lab" */
+  int major, minor;       /**< version */
+  size_t n_channels;      /**< 0 when the space has none that are counted */
+  bool is_matrix;         /**< three curves and a matrix, no tables */
+  bool has_intent[4];     /**< a table of its own for it; all for a matrix */
+  ef_xyz media_white;     /**< `wtpt`, Y of the perfect diffuser = 100 */
+  /** Signatures of the tags that ICC.1:2022, clause 8 requires of its class
+   * and that are not there, separated by blanks; "" when all are. */
+  const char *missing;
+} ef_profile_info;
+EF_API ef_profile_info ef_profile_get_info(const ef_profile *profile);
+
+typedef struct ef_profile_settings {
+  ef_intent intent;
+  /** Scale the colours so that the darkest one of the profile is black (not with
+   * absolute). Without it the colours are those of the profile, also for
+   * perceptual and saturation. */
+  bool black_point_compensation;
+  double black; /**< drive of the black of CMYK, fixed, 0 to 1 */
+  const ef_notes *notes;
+} ef_profile_settings;
+/** Relative, no compensation, no black. */
+EF_API ef_profile_settings ef_profile_settings_default(void);
+
+/** The device that a profile describes: RGB, CMY, or CMYK with its black fixed,
+ * of class input, display, output or colour space; EF_NO_ANSWER says why
+ * another one cannot serve. Its colours are those of the connection space: CIE
+ * 1931 under D50, the white of the medium at D50 unless the intent is absolute.
+ * It counts as a light: its setup takes no illuminant, only observer cie-1931,
+ * and its white is that of all drives at full for displays, else D50.
+ * A matrix profile is an additive device: its curves and columns are read with
+ * lcms2 and mixed in double precision, provided that this agrees with lcms2's
+ * own transform to 5e-4 of the white on a grid (flat parts of a curve are raised
+ * by up to 2e-6, so that it has an inverse). Every other profile is evaluated by
+ * lcms2 in single precision, tables of 16 bits as such; its Jacobian is the
+ * difference over a step of 1/256 of each drive to both sides (to one where the
+ * drive ends). Notes say which it is, and what becomes of white and black. */
+EF_API ef_device *ef_profile_device(const ef_profile *profile,
+                                    const ef_profile_settings *settings,
+                                    ef_error *error);
+
+/** A transform of colours between two profiles, or a profile and the
+ * connection space. */
+typedef struct ef_transform ef_transform;
+
+typedef struct ef_transform_settings {
+  ef_intent intent;
+  bool black_point_compensation;
+  bool lab; /**< the connection space as L*, a*, b*; else X, Y, Z */
+} ef_transform_settings;
+/** Relative, no compensation, X, Y, Z. */
+EF_API ef_transform_settings ef_transform_settings_default(void);
+
+/** `from` or `to` NULL: the connection space, CIE 1931 and D50, X, Y, Z with
+ * Y = 100 for its white, or L*, a*, b*; not both. Any profile but device links,
+ * abstract ones and named colours. EF_NO_ANSWER when a profile has no transform
+ * in that direction. Free with ef_transform_free. */
+EF_API ef_transform *ef_transform_new(const ef_profile *from,
+                                      const ef_profile *to,
+                                      const ef_transform_settings *settings,
+                                      ef_error *error);
+EF_API void ef_transform_free(ef_transform *transform);
+EF_API size_t ef_transform_inputs(const ef_transform *transform);
+EF_API size_t ef_transform_outputs(const ef_transform *transform);
+/** n colours, n x inputs to n x outputs: device values in [0, 1] (others are
+ * clamped where the profile has tables; results are clamped), colours as above.
+ * EF_INVALID for a value that is not finite. Over up to `jobs` threads (0: all
+ * cores); results do not depend on them or on n. */
+EF_API ef_status ef_transform_apply(const ef_transform *transform, size_t n,
+                                    const double *in, int jobs, double *out,
+                                    ef_error *error);
+
+/** How well a profile describes measurements of its device (3 or 4 drives as
+ * the profile has): in `residual` (room for n_rows) for every row what was
+ * measured and what the profile says, both relative to D50. Relative,
+ * perceptual and saturation: the measured white goes to D50, of RGB (all drives
+ * at full) by linear Bradford, of inks (all at zero) by the ratios of X, Y and
+ * Z, as ICC.1 has it for media; EF_NO_ANSWER when no row shows it.
+ * Absolute: the measured values are taken as under D50, Y = 100 for the perfect
+ * reflecting diffuser. Spectra are refused unless they are lights: for
+ * reflectances give X, Y, Z under D50. */
+EF_API ef_status ef_profile_check(const ef_profile *profile,
+                                  const ef_measurements *measurements,
+                                  const ef_profile_settings *settings,
+                                  ef_residual *residual, ef_error *error);
 
 /** Bytes of an ICC.1 version 4 matrix profile with one tone curve: display
  * class, XYZ connection space, adapted to D50 by linear Bradford with the
@@ -542,6 +661,19 @@ EF_API ef_status ef_profile_make_matrix(const char *description,
                                         const ef_encoding *encoding,
                                         unsigned char **bytes, size_t *length,
                                         ef_error *error);
+
+/** The same for a display of three primaries (ef_display_from_measurements and
+ * others), for CIE 1931. Its white, black and room light included, goes to D50;
+ * the black is laid into the curves, as a matrix profile has no other place for
+ * it, as far as the primaries can make it (else a note says what is left). A
+ * curve of closed form is kept as such (`para`) where no black is added, else
+ * it is 4096 steps of 16 bits. `lumi` tells the luminance of the white where it
+ * is known. */
+EF_API ef_status ef_profile_make_display(const char *description,
+                                         const ef_device *display,
+                                         const ef_notes *notes,
+                                         unsigned char **bytes, size_t *length,
+                                         ef_error *error);
 
 #ifdef __cplusplus
 }

@@ -22,6 +22,9 @@ typedef struct ef__parametric {
 /** False when the curve is a measured ramp. */
 bool ef__tone_curve_parametric(const ef_tone_curve *curve, ef__parametric *out);
 
+/** Says something else of a curve than what it was made of. */
+void ef__tone_curve_describe(ef_tone_curve *curve, const char *about);
+
 /** One point of a measured ramp. */
 typedef struct ef__ramp_point {
   double drive, level;

@@ -224,10 +224,18 @@ ef_tone_curve *ef_tone_curve_from_ramp(size_t n, const double *drive,
   return curve;
 }
 
+void ef__tone_curve_describe(ef_tone_curve *curve, const char *about) {
+  snprintf(curve->about, sizeof curve->about, "%s", about);
+}
+
 ef_tone_curve *ef_tone_curve_copy(const ef_tone_curve *curve, ef_error *error) {
-  if (curve->n_points > 0)
-    return ef_tone_curve_from_ramp(curve->n_points, curve->drive, curve->level,
-                                   error);
+  if (curve->n_points > 0) {
+    ef_tone_curve *copy = ef_tone_curve_from_ramp(curve->n_points, curve->drive,
+                                                  curve->level, error);
+    if (copy != NULL)
+      ef__tone_curve_describe(copy, curve->about);
+    return copy;
+  }
   return new_form(&curve->form, curve->about, error);
 }
 

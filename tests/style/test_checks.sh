@@ -58,7 +58,12 @@ expect 1 'folder "novelty" has no place in the order' check_layers
 tree tools/evenfield/main.c '#include "base/base_private.h"'
 expect 1 'which is not public' check_layers
 tree src/device/display.c '#include <lcms2.h>'
-expect 1 'only src/device/profile.c may include lcms2.h' check_layers
+expect 1 'only src/device/profile_private.h may include lcms2.h' check_layers
+tree src/device/display.c '#include "device/profile_private.h"'
+expect 1 'only src/device/profile*.c may include device/profile_private.h' \
+  check_layers
+tree src/device/profile_open.c '#include "device/profile_private.h"'
+expect 0 'layers: no fault' check_layers
 tree src/base/base_private.h '#include <gsl/gsl_math.h>'
 expect 1 'only .c files of src may include gsl/gsl_math.h' check_layers
 tree src/device/display.c 'void f(void) { printf("x"); }'
