@@ -644,9 +644,9 @@ EF_API ef_status ef_jnd_record_check(const ef_jnd_record *record,
  * exponent 1 and, for the spread over observers, the median spread of the
  * judgements of a published experiment: 0.28, the standard deviation over the
  * median tolerance of 147 vectors in Berns et al., Color Res. Appl. 16 (1991)
- * 297-316, Table IV, which holds the scatter of single judgements too. Notes say
- * all of this, and that viewing conditions matter. EF_NO_ANSWER when no JND is
- * published. */
+ * 297-316, Table IV, which holds the scatter of single judgements too. Notes
+ * say all of this, and that viewing conditions matter. EF_NO_ANSWER when no JND
+ * is published. */
 EF_API ef_status ef_jnd_record_default(const ef_metric *metric,
                                        ef_jnd_record *out,
                                        const ef_notes *notes, ef_error *error);
@@ -713,12 +713,12 @@ typedef struct ef_told_apart {
  * drawn from a normal distribution and cut off at 0, an uncertain JND from a
  * log-normal one. Draw i takes stream i of the seed and serves all pairs, so
  * that results do not depend on n or `jobs` (0: all cores). By first order
- * standard deviations are those of the slope, and the interval is that of the logarithm
- * of the JNDs that would give the answer; NaN for a difference of 0 that is
- * uncertain, and for the share of a population without a spread of JNDs, which
- * have no slope. Answers are right to 2e-8 beside that. EF_INVALID for a record
- * that does not pass its check and for differences or standard deviations below
- * 0. */
+ * standard deviations are those of the slope, and the interval is that of the
+ * logarithm of the JNDs that would give the answer; NaN for a difference of 0
+ * that is uncertain, and for the share of a population without a spread of
+ * JNDs, which have no slope. Answers are right to 2e-8 beside that. EF_INVALID
+ * for a record that does not pass its check and for differences or standard
+ * deviations below 0. */
 EF_API ef_status ef_told_apart_batch(const ef_jnd_record *jnd, size_t n,
                                      const ef_judged *judged,
                                      const ef_told_apart_settings *settings,
