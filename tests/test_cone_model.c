@@ -391,8 +391,20 @@ static void observer_is_what_the_model_says(void **state) {
                       "stated in its name");
   ef_observer *const again = ef_observer_from_model(&model, NULL);
   assert_string_equal(ef_observer_name(again), "model:age=45,field=4,lens=12");
+  ef_cone_model told;
+  assert_true(ef_observer_model(again, &told));
+  assert_memory_equal(&told, &model, sizeof told);
   ef_observer_free(again);
   ef_observer_free(observer);
+}
+
+static void tables_have_no_model(void **state) {
+  (void)state;
+  ef_observer *const table = make("cie-2015-2");
+  ef_cone_model told = {.age_years = 77};
+  assert_false(ef_observer_model(table, &told));
+  assert_true(told.age_years == 77);
+  ef_observer_free(table);
 }
 
 /* k_s of the mean observer is that of CIE 170-2 to what the templates allow. */
@@ -664,6 +676,7 @@ int main(void) {
       cmocka_unit_test(wrong_names_are_answered),
       cmocka_unit_test(listed_names_are_taken),
       cmocka_unit_test(observer_is_what_the_model_says),
+      cmocka_unit_test(tables_have_no_model),
       cmocka_unit_test(macleod_boynton_factor),
       cmocka_unit_test(dichromats_have_two_kinds_of_cones),
       cmocka_unit_test(dichromatic_functions_have_rank_two),

@@ -137,6 +137,29 @@ EF_API ef_spectra *ef_spectra_read(const char *path,
                                    const ef_reader_settings *settings,
                                    ef_error *error);
 
+/** A small table of numbers whose columns are known by name (ages and their
+ * shares ...), held whole; owns its memory. */
+typedef struct ef_columns ef_columns;
+
+enum { EF_COLUMNS_MOST = 16, EF_COLUMNS_MOST_ROWS = 1000000 };
+
+/** Reads the columns `names[0 .. n_columns)`, in any order in the file and
+ * whatever their case; others are noted and not used. Path and CSV as for
+ * ef_reader_open; every cell read must hold a finite number. EF_MALFORMED names
+ * the line and the field, or the column that is missing. Free with
+ * ef_columns_free. */
+EF_API ef_columns *ef_columns_read(const char *path, size_t n_columns,
+                                   const char *const *names,
+                                   const ef_notes *notes, ef_error *error);
+EF_API void ef_columns_free(ef_columns *columns);
+/** At least 1. */
+EF_API size_t ef_columns_rows(const ef_columns *columns);
+/** `column` by its place in the names asked for. */
+EF_API double ef_columns_at(const ef_columns *columns, size_t row,
+                            size_t column);
+/** Line of a row in its file. */
+EF_API size_t ef_columns_line(const ef_columns *columns, size_t row);
+
 /** Names and texts of the built-in scenario's files ("livery" ...). */
 EF_API size_t ef_demo_count(void);
 EF_API const char *ef_demo_name(size_t i);

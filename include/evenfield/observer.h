@@ -243,6 +243,10 @@ EF_API ef_status ef_cone_model_tristimulus(const ef_cone_model *model,
 EF_API ef_observer *ef_observer_from_model(const ef_cone_model *model,
                                            ef_error *error);
 
+/** The model that `observer` was made of; false, and `out` left as it is, for
+ * tables and files. */
+EF_API bool ef_observer_model(const ef_observer *observer, ef_cone_model *out);
+
 /** Trichromats one of whose pigments lies nearer to the other's. */
 typedef enum ef_anomaly {
   EF_PROTANOMALOUS,  /**< the L pigment, towards M: to shorter wavelengths */

@@ -78,6 +78,8 @@ static void fill(const ef__cones *cones, const ef_grid *grid,
   observer->field_deg = model->field_deg;
   observer->k_m = field->k_m;
   observer->dimensions = model->deficiency == EF_TRICHROMAT ? 3 : 2;
+  observer->has_model = true;
+  observer->model = *model;
 }
 
 ef_observer *ef__observer_from_model(const char *name,

@@ -66,6 +66,11 @@ size_t ef_observer_dimensions(const ef_observer *observer) {
   return observer->dimensions;
 }
 
+bool ef_observer_model(const ef_observer *observer, ef_cone_model *out) {
+  if (observer->has_model) *out = observer->model;
+  return observer->has_model;
+}
+
 ef_mb_scale ef_observer_mb_scale(const ef_observer *observer) {
   return observer->mb_scale;
 }

@@ -22,6 +22,8 @@ struct ef_observer {
   bool cones_borrowed;
   ef_mb_scale mb_scale;
   size_t dimensions;      /**< 3, or 2 for dichromats */
+  bool has_model;         /**< made of a cone model: this one */
+  ef_cone_model model;
   ef__channel_set set[3]; /**< by ef_channel_role; the cones are the first
                                three channels of the receptors */
 };
