@@ -65,11 +65,40 @@ typedef struct ef_match {
 /** Matches n targets (n x 3 tristimulus values, finite, on the setup's scale)
  * over up to `jobs` threads (0: all cores). Results do not depend on `jobs` or
  * `n`. Setups with exactly three drives; others are EF_INVALID.
- * EF_NO_ANSWER when the primaries are linearly dependent. */
+ * EF_NO_ANSWER when the primaries are linearly dependent. For observers of two
+ * dimensions see ef_match_flat_batch, which this then calls without `near`. */
 EF_API ef_status ef_match_batch(const ef_setup *setup, size_t n,
                                 const double *xyz,
                                 const ef_match_settings *settings, int jobs,
                                 ef_match *out, ef_error *error);
+
+/** The same for observers of two dimensions (dichromats), for whom what matches
+ * a target is a line of amounts: of its part in [0, 1] the point nearest to
+ * `near`, n x 3 amounts (such as those that match for the trichromat with the
+ * same eyes: where no adaptation comes in between, they lie on the line), or
+ * its middle where `near` is NULL.
+ * `amount` of a target out of gamut is the point of the line that leaves [0, 1]
+ * least; the nearest colour is the least difference on the hexagon of the
+ * colours that the setup can show; `hue_kept` is not found there, for such
+ * colours have no third dimension to give up. Codes are the best of the four
+ * nearest of each channel. EF_INVALID for observers of three dimensions and for
+ * targets off the plane of the observer's colours. EF_NO_ANSWER for setups whose
+ * colours do not add, and for primaries that differ in brightness only. A
+ * tritanope's colours have one of two opposite hues, where CIEDE2000 jumps by
+ * some percent: between a reddish and a greenish one rounding decides. */
+EF_API ef_status ef_match_flat_batch(const ef_setup *setup, size_t n,
+                                     const double *xyz, const double *near,
+                                     const ef_match_settings *settings,
+                                     int jobs, ef_match *out, ef_error *error);
+
+/** Row-major 3 x 3 that carries an observer's X, Y, Z from white to white:
+ * ef_adaptation_matrix; for dichromats by von Kries (each of the two kinds of
+ * cones scaled to the new white, whatever `adaptation` is unless EF_ADAPT_NONE),
+ * since the others would lead off the plane of their colours. */
+EF_API ef_status ef_match_adaptation(const ef_observer *observer,
+                                     ef_adaptation adaptation, ef_xyz from,
+                                     ef_xyz to, double matrix[9],
+                                     ef_error *error);
 
 /** The gamut of a setup. Two-dimensional observers (dichromats) have areas and
  * volumes of 0 and no shares. */
@@ -133,7 +162,7 @@ typedef struct ef_side {
 typedef struct ef_spread_settings {
   const ef_metric *metric;
   /** From the target's white to the match's, complete; as for the match
-   * itself. */
+   * itself (see ef_match_adaptation). */
   ef_adaptation adaptation;
   /** Difference from which on the two are told apart, in the metric's unit;
    * NaN: the metric's default JND. */

@@ -15,17 +15,6 @@
  * condition 1e3, far above any real display's, and below any code. */
 #define SNAP 4e-12
 
-typedef struct batch {
-  const ef_device *device;
-  ef__mixing mixing;
-  const ef_match_settings *settings;
-  double jnd;
-  ef__lattice lattice;
-  double max_code;
-  const double *xyz;
-  ef_match *out;
-} batch;
-
 ef_match_settings ef_match_settings_default(void) {
   return (ef_match_settings){.metric = ef_metric_find("ciede2000", NULL),
                              .bits = 8,
@@ -33,9 +22,8 @@ ef_match_settings ef_match_settings_default(void) {
                              .jnd = (double)NAN};
 }
 
-/* Everything about the colour that `amount` shows. */
-static void fill_shown(const batch *job, const ef__search *search,
-                       const double amount[3], ef_shown *out) {
+void ef__fill_shown(const ef__batch *job, const ef__search *search,
+                    const double amount[3], ef_shown *out) {
   double coordinate[3];
   for (size_t i = 0; i < 3; ++i) {
     out->amount[i] = amount[i];
@@ -50,9 +38,8 @@ static void fill_shown(const batch *job, const ef__search *search,
   out->found = true;
 }
 
-/* The target itself, shown exactly: no difference, not even of rounding. */
-static void fill_exact(const batch *job, const double amount[3], ef_xyz target,
-                       ef_shown *out) {
+void ef__fill_exact(const ef__batch *job, const double amount[3],
+                    ef_xyz target, ef_shown *out) {
   for (size_t i = 0; i < 3; ++i) {
     out->amount[i] = amount[i];
     out->drive[i] = ef_device_drive(job->device, i, amount[i]);
@@ -64,30 +51,43 @@ static void fill_exact(const batch *job, const double amount[3], ef_xyz target,
   out->found = true;
 }
 
-static void fill_amounts(const ef__mixing *mixing, ef_match *m,
-                         double amount[3]) {
-  bool reached = ef__exact(mixing, m->target, amount);
-  m->in_gamut = reached;
+void ef__fill_amounts(double amount[3], ef_match *m) {
   for (int i = 0; i < 3; ++i) {
     if (fabs(amount[i]) < SNAP) amount[i] = 0;
     if (fabs(amount[i] - 1) < SNAP) amount[i] = 1;
-    if (reached && amount[i] < 0) m->below |= (uint32_t)1 << i;
-    if (reached && amount[i] > 1) m->above |= (uint32_t)1 << i;
-    m->amount[i] = reached ? amount[i] : (double)NAN;
+    if (amount[i] < 0) m->below |= (uint32_t)1 << i;
+    if (amount[i] > 1) m->above |= (uint32_t)1 << i;
+    m->amount[i] = amount[i];
   }
-  if (m->below != 0 || m->above != 0) m->in_gamut = false;
+  m->in_gamut = m->below == 0 && m->above == 0;
 }
 
-static void fill_codes(const batch *job, ef__search *search,
-                       const ef__minima *minima, ef_match *m) {
-  double amount[3], square, rounded[3], coordinate[3];
-  ef__quantise(search, &job->lattice, minima, m->code, &square);
+static void fill_exact_amounts(const ef__mixing *mixing, ef_match *m,
+                               double amount[3]) {
+  if (ef__exact(mixing, m->target, amount)) {
+    ef__fill_amounts(amount, m);
+    return;
+  }
+  for (int i = 0; i < 3; ++i) m->amount[i] = (double)NAN;
+}
+
+void ef__fill_held(ef_match *m) {
+  for (int i = 0; i < 3; ++i) {
+    if (m->in_gamut) break;
+    if (m->nearest.amount[i] <= 0) m->held_low |= (uint32_t)1 << i;
+    if (m->nearest.amount[i] >= 1) m->held_high |= (uint32_t)1 << i;
+  }
+}
+
+void ef__fill_coded(const ef__batch *job, const ef__search *search,
+                    ef_match *m) {
+  double amount[3], rounded[3], coordinate[3];
   for (int i = 0; i < 3; ++i) {
     const double code = round(m->nearest.drive[i] * job->max_code);
     amount[i] = job->lattice.amount[i][m->code[i]];
     rounded[i] = job->lattice.amount[i][(size_t)code];
   }
-  fill_shown(job, search, amount, &m->coded);
+  ef__fill_shown(job, search, amount, &m->coded);
   for (int i = 0; i < 3; ++i) {
     m->coded.drive[i] = (double)m->code[i] / job->max_code;
   }
@@ -100,7 +100,7 @@ static void fill_codes(const batch *job, ef__search *search,
 
 /* True when the nearest colour that was found is the target after all, which
  * the search for exact amounts, with its few starts, has missed. */
-static bool is_reached(const batch *job, ef_match *m, ef__minima *minima) {
+static bool is_reached(const ef__batch *job, ef_match *m, ef__minima *minima) {
   const double near = 1e-3; /* from where Newton's method finds the rest */
   if (!(minima->at[0].square < near * near)) return false;
   double amount[3];
@@ -114,7 +114,7 @@ static bool is_reached(const batch *job, ef_match *m, ef__minima *minima) {
   return true;
 }
 
-static void match_one(const batch *job, ef_xyz target, ef_match *m) {
+static void match_one(const ef__batch *job, ef_xyz target, ef_match *m) {
   ef__search search = {.mixing = &job->mixing, .metric = job->settings->metric};
   ef__minima minima;
   double amount[3];
@@ -122,9 +122,9 @@ static void match_one(const batch *job, ef_xyz target, ef_match *m) {
   m->target = target;
   ef_metric_coordinates(search.metric, target, &job->mixing.conditions,
                         search.target);
-  fill_amounts(&job->mixing, m, amount);
+  fill_exact_amounts(&job->mixing, m, amount);
   if (m->in_gamut) {
-    fill_exact(job, amount, target, &m->nearest);
+    ef__fill_exact(job, amount, target, &m->nearest);
     minima.n = 1;
     minima.at[0].square = 0;
     memcpy(minima.at[0].amount, amount, sizeof amount);
@@ -134,25 +134,25 @@ static void match_one(const batch *job, ef_xyz target, ef_match *m) {
   }
   if (!m->in_gamut && !job->mixing.affine && is_reached(job, m, &minima)) {
     memcpy(amount, m->amount, sizeof amount);
-    fill_exact(job, amount, target, &m->nearest);
+    ef__fill_exact(job, amount, target, &m->nearest);
     if (job->settings->hue_kept) m->hue_kept = m->nearest;
   } else if (!m->in_gamut) {
-    fill_shown(job, &search, minima.at[0].amount, &m->nearest);
+    ef__fill_shown(job, &search, minima.at[0].amount, &m->nearest);
     double kept[3];
     if (job->settings->hue_kept && ef__hue_kept(&search, kept)) {
-      fill_shown(job, &search, kept, &m->hue_kept);
+      ef__fill_shown(job, &search, kept, &m->hue_kept);
     }
   }
-  for (int i = 0; i < 3; ++i) {
-    if (m->in_gamut) break;
-    if (m->nearest.amount[i] <= 0) m->held_low |= (uint32_t)1 << i;
-    if (m->nearest.amount[i] >= 1) m->held_high |= (uint32_t)1 << i;
+  ef__fill_held(m);
+  if (job->settings->bits > 0) {
+    double square;
+    ef__quantise(&search, &job->lattice, &minima, m->code, &square);
+    ef__fill_coded(job, &search, m);
   }
-  if (job->settings->bits > 0) fill_codes(job, &search, &minima, m);
 }
 
 static void match_range(void *context, size_t begin, size_t end) {
-  const batch *const j = context;
+  const ef__batch *const j = context;
   for (size_t i = begin; i < end; ++i) {
     const double *const t = j->xyz + 3 * i;
     match_one(j, (ef_xyz){t[0], t[1], t[2]}, &j->out[i]);
@@ -160,7 +160,7 @@ static void match_range(void *context, size_t begin, size_t end) {
 }
 
 /* Amounts of all codes: 2^bits of each channel in one block. */
-static ef_status make_lattice(batch *job, double **block, ef_error *error) {
+static ef_status make_lattice(ef__batch *job, double **block, ef_error *error) {
   const size_t n = (size_t)1 << job->settings->bits;
   *block = ef__allocate(3 * n, sizeof **block);
   if (*block == NULL) return ef__error_memory(error, "the code values");
@@ -208,28 +208,42 @@ static ef_status check_targets(size_t n, const double *xyz, ef_error *error) {
   return EF_OK;
 }
 
+ef_status ef__batch_start(ef__batch *batch, const ef_setup *setup, size_t n,
+                          const double *xyz, const ef_match_settings *settings,
+                          int jobs, ef_match *out, double **block,
+                          ef_error *error) {
+  *batch = (ef__batch){.device = ef_setup_device(setup),
+                       .settings = settings,
+                       .xyz = xyz,
+                       .out = out};
+  *block = NULL;
+  ef_status status = check_settings(settings, jobs, error);
+  if (status == EF_OK) status = check_targets(n, xyz, error);
+  if (status != EF_OK) return status;
+  batch->jnd = isnan(settings->jnd) ? ef_metric_jnd(settings->metric).value
+                                    : settings->jnd;
+  return settings->bits > 0 ? make_lattice(batch, block, error) : EF_OK;
+}
+
 ef_status ef_match_batch(const ef_setup *setup, size_t n, const double *xyz,
                          const ef_match_settings *settings, int jobs,
                          ef_match *out, ef_error *error) {
   enum { CHUNK = 64 }; /* some 0.3 ms of targets out of gamut */
-  batch j = {.device = ef_setup_device(setup), .settings = settings,
-           .xyz = xyz, .out = out};
-  ef_status status = check_settings(settings, jobs, error);
-  if (status == EF_OK) status = check_targets(n, xyz, error);
-  if (status == EF_OK) {
-    status = ef__mixing_from_setup(setup, &j.mixing, error);
+  if (ef_observer_dimensions(ef_setup_observer(setup)) < 3) {
+    return ef_match_flat_batch(setup, n, xyz, NULL, settings, jobs, out,
+                               error);
   }
-  if (status != EF_OK) return status;
-  j.jnd = isnan(settings->jnd) ? ef_metric_jnd(settings->metric).value
-                               : settings->jnd;
-  double *block = NULL;
+  ef__batch j;
+  double *block;
   ef__scout *scout = NULL;
-  if (!j.mixing.affine) {
+  ef_status status = ef__batch_start(&j, setup, n, xyz, settings, jobs, out,
+                                     &block, error);
+  if (status == EF_OK) status = ef__mixing_from_setup(setup, &j.mixing, error);
+  if (status == EF_OK && !j.mixing.affine) {
     scout = ef__scout_new(&j.mixing, settings->metric, error);
-    if (scout == NULL) return EF_NO_MEMORY;
+    if (scout == NULL) status = EF_NO_MEMORY;
     j.mixing.scout = scout;
   }
-  if (settings->bits > 0) status = make_lattice(&j, &block, error);
   if (status == EF_OK) ef__parallel_for(n, CHUNK, jobs, match_range, &j);
   free(block);
   ef__scout_free(scout);

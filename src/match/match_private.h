@@ -33,6 +33,10 @@ typedef struct ef__mixing {
  * condition number is above 1e8, where amounts have no 8 digits left. */
 ef_status ef__mixing_from_setup(const ef_setup *setup, ef__mixing *out,
                                 ef_error *error);
+/** The same but for `inverse` and its check: what matching for observers of two
+ * dimensions starts from. */
+ef_status ef__mixing_copy(const ef_setup *setup, ef__mixing *out,
+                          ef_error *error);
 /** Fills `inverse` from `vector` and checks it as above. */
 ef_status ef__mixing_finish(ef__mixing *mixing, ef_error *error);
 
@@ -130,6 +134,49 @@ typedef struct ef__lattice {
  * `square` receives the squared difference of these codes. */
 void ef__quantise(ef__search *search, const ef__lattice *lattice,
                   const ef__minima *minima, uint32_t code[3], double *square);
+
+/* ---- Answers (match.c) ------------------------------------------------- */
+
+/** What all targets of a call share. */
+typedef struct ef__batch {
+  const ef_device *device;
+  ef__mixing mixing;
+  const ef_match_settings *settings;
+  double jnd;
+  ef__lattice lattice;
+  double max_code;
+  const double *xyz;
+  ef_match *out;
+} ef__batch;
+
+/** Checks settings, jobs and targets and fills all but `mixing`. `*block` is
+ * the memory of the lattice, to free in every case. */
+ef_status ef__batch_start(ef__batch *batch, const ef_setup *setup, size_t n,
+                          const double *xyz, const ef_match_settings *settings,
+                          int jobs, ef_match *out, double **block,
+                          ef_error *error);
+/** Everything about the colour that `amount` shows. */
+void ef__fill_shown(const ef__batch *batch, const ef__search *search,
+                    const double amount[3], ef_shown *out);
+/** The target itself, shown exactly: no difference, not even of rounding. */
+void ef__fill_exact(const ef__batch *batch, const double amount[3],
+                    ef_xyz target, ef_shown *out);
+/** What m->code shows, and what plainly rounded codes would. */
+void ef__fill_coded(const ef__batch *batch, const ef__search *search,
+                    ef_match *m);
+/** Amounts this close to 0 or 1 become 0 or 1; sets `amount`, `below`, `above`
+ * and `in_gamut` of `m`. */
+void ef__fill_amounts(double amount[3], ef_match *m);
+/** The limits at which the nearest colour of `m` stands. */
+void ef__fill_held(ef_match *m);
+
+/* ---- Dichromats (dichromat.c) ------------------------------------------ */
+
+/** See ef_match_adaptation; `field_matrix` is that of ef_cone_xyz_matrix. */
+ef_status ef__dichromat_adaptation(ef_deficiency deficiency,
+                                   const double field_matrix[9], ef_xyz from,
+                                   ef_xyz to, double matrix[9],
+                                   ef_error *error);
 
 static inline double ef__clamp(double value, double low, double high) {
   return value < low ? low : value > high ? high : value;

@@ -45,6 +45,13 @@ static ef_xyz setup_xyz(const void *context, const double *amount,
 
 ef_status ef__mixing_from_setup(const ef_setup *setup, ef__mixing *out,
                                 ef_error *error) {
+  const ef_status status = ef__mixing_copy(setup, out, error);
+  if (status != EF_OK || !out->affine) return status;
+  return ef__mixing_finish(out, error);
+}
+
+ef_status ef__mixing_copy(const ef_setup *setup, ef__mixing *out,
+                          ef_error *error) {
   const size_t n = ef_device_n_drives(ef_setup_device(setup));
   if (n != 3) {
     return ef__error_set(error, EF_INVALID,
@@ -62,5 +69,5 @@ ef_status ef__mixing_from_setup(const ef_setup *setup, ef__mixing *out,
   out->black[0] = black.X;
   out->black[1] = black.Y;
   out->black[2] = black.Z;
-  return out->affine ? ef__mixing_finish(out, error) : EF_OK;
+  return EF_OK;
 }

@@ -9,7 +9,7 @@
 
 #include "base/base_private.h"
 
-#include <evenfield/match.h>
+#include "match/match_private.h"
 
 enum {
   OBSERVERS = 128,    /* in a block: their weights fit into a cache of 2 MB */
@@ -44,6 +44,8 @@ typedef struct work {
   const ef_spread_settings *settings;
   const ef_side *side[2];
   bool sides_agree;  /* in grid and viewing: weights are shared */
+  ef_deficiency deficiency;
+  double field_matrix[9]; /* cones to X, Y, Z of everybody's field */
   double *white[2];  /* samples of both whites */
   double *xyz[2];    /* PAIRS x 3 OBSERVERS */
   eyes *block;
@@ -149,8 +151,12 @@ static ef_status normalise(work *w, size_t i, double white[2][3],
     matrix[0] = factor[TARGET];
     return EF_OK;
   }
-  const ef_status status = ef_adaptation_matrix(w->settings->adaptation, from,
-                                                to, matrix, error);
+  const ef_status status =
+      w->deficiency == EF_TRICHROMAT
+          ? ef_adaptation_matrix(w->settings->adaptation, from, to, matrix,
+                                 error)
+          : ef__dichromat_adaptation(w->deficiency, w->field_matrix, from, to,
+                                     matrix, error);
   for (size_t k = 0; k < 9; ++k) matrix[k] *= factor[TARGET];
   return status;
 }
@@ -305,6 +311,7 @@ ef_status ef_population_spread(const ef_population *population, size_t n,
             .side = {target, match},
             .sides_agree = agree(target, match),
             .n_observers = ef_population_count(population),
+            .deficiency = ef_population_member(population, 0).deficiency,
             .threshold = isnan(settings->threshold)
                              ? ef_metric_jnd(settings->metric).value
                              : settings->threshold};
@@ -312,6 +319,10 @@ ef_status ef_population_spread(const ef_population *population, size_t n,
   void *block = NULL;
   ef_status status = check_side(target, n, side_names[TARGET], error);
   if (status == EF_OK) status = check_side(match, n, side_names[MATCH], error);
+  if (status == EF_OK) {
+    status = ef_cone_xyz_matrix(ef_population_field_deg(population),
+                                w.field_matrix, NULL, error);
+  }
   if (status == EF_OK) status = allocate(&w, n, &n_kept, &block, error);
   if (status != EF_OK) return status;
   set_white(target, w.white[TARGET]);
