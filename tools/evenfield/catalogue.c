@@ -35,6 +35,38 @@ static ef_status fill_tables(listing *l, ef_error *error) {
   return EF_OK;
 }
 
+/* A name of the cone model as --observer takes it. */
+typedef struct model_row {
+  const char *name, *about;
+} model_row;
+
+static const model_row models[] = {
+    {"model:age=45,field=4", "Mean observer of any age (20 to 80 years) and "
+                             "field (1 to 10 degrees), by "
+                             "the cone model of CIE 170-1:2006"},
+    {"protanope", "The same with M pigment in the L cones"},
+    {"deuteranope", "The same with L pigment in the M cones"},
+    {"tritanope", "The same without S cones"},
+    {"protanomalous:shift=12",
+     "The same with the L pigment shifted towards M, by up to 32 nm"},
+    {"deuteranomalous:shift=12",
+     "The same with the M pigment shifted towards L, by up to 32 nm"},
+};
+
+static ef_status add_models(listing *l, ef_error *error) {
+  for (size_t i = 0; i < sizeof models / sizeof models[0]; ++i) {
+    ef_observer *observer = ef_observer_new(models[i].name, error);
+    if (observer == NULL)
+      return error->status;
+    listing_text(l, models[i].name);
+    listing_number(l, ef_observer_field_deg(observer));
+    listing_number(l, ef_observer_k_m(observer));
+    listing_text(l, models[i].about);
+    ef_observer_free(observer);
+  }
+  return EF_OK;
+}
+
 static ef_status fill_observers(listing *l, ef_error *error) {
   listing_text_column(l, "name", "Name", "");
   listing_number_column(l, "field_deg", "Cone field", "deg", 0);
@@ -52,7 +84,7 @@ static ef_status fill_observers(listing *l, ef_error *error) {
     listing_text(l, ef_observer_about(observer));
     ef_observer_free(observer);
   }
-  return EF_OK;
+  return add_models(l, error);
 }
 
 static ef_status add_illuminant(listing *l, const ef_observer *observer,
@@ -206,7 +238,12 @@ static const catalogue catalogues[] = {
     {"observers", "observers are built in",
      "For --observer; or a file with three colour-matching functions. Where an "
      "observer has no cone fundamentals of its own, those of the CIE 2006 "
-     "observer with the field named here are used.",
+     "observer with the field named here are used. Those below the tables come "
+     "from a model and take settings after a colon, as shown: age (default "
+     "32), "
+     "field (default 2); in percent more or less than the mean lens, macular, "
+     "density-l, density-m, density-s; in nm shift-l, shift-m, shift-s. "
+     "`evenfield observer build NAME` writes the functions of any of them.",
      fill_observers},
     {"illuminants", "illuminants are built in",
      "For --illuminant; also daylight:K (4000 to 25000) and planck:K (500 to "
@@ -225,6 +262,14 @@ static const catalogue catalogues[] = {
      "as it stands. All of it is invented.",
      fill_demo},
 };
+
+const catalogue *catalogue_find(const char *name) {
+  for (size_t i = 0; i < sizeof catalogues / sizeof catalogues[0]; ++i) {
+    if (strcmp(catalogues[i].name, name) == 0)
+      return &catalogues[i];
+  }
+  return NULL;
+}
 
 size_t catalogue_all(const catalogue **out) {
   *out = catalogues;

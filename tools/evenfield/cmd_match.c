@@ -1,5 +1,8 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "command.h"
+
+#include <math.h>
+
 #include "match.h"
 #include "message.h"
 #include "pictures.h"
@@ -51,8 +54,15 @@ static ef_status run(match_scene *s, receivers *r, match_summary *sum,
 
 exit_code command_match(const command_options *options) {
   exit_code code = result_check_usage(options, 1);
+  if (code == EXIT_DONE)
+    code =
+        people_check_usage(options, "population", !isnan(options->population));
   if (code != EXIT_DONE)
     return code;
+  if (options->seen_by >= 0 && options->pictures == NULL) {
+    return message_usage("--seen-by is for pictures: --pictures names their "
+                         "folder");
+  }
   message_sink sink = {.quiet = options->quiet};
   const ef_notes notes = message_notes(&sink);
   ef_error error = {0};

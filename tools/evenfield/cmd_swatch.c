@@ -16,6 +16,12 @@
 
 static const char default_folder[] = "swatches";
 
+static void set_observer(swatch_scene *drawn, const ef_observer *observer) {
+  snprintf(drawn->observer, sizeof drawn->observer, "%s",
+           ef_observer_name(observer));
+  drawn->cones_borrowed = ef_observer_cones_borrowed(observer);
+}
+
 /* ---- Targets and a display --------------------------------------------- */
 
 static ef_status draw_targets(const command_options *options,
@@ -37,7 +43,10 @@ static ef_status draw_targets(const command_options *options,
       .head = {"In", "gamut"},
       .none = "the display can show all targets",
       .some = "targets lie outside the display's gamut",
-      .is_demo = scene.demo_display && scene.demo_targets};
+      .is_demo = scene.demo_display && scene.demo_targets,
+      .display = scene.display.source};
+  if (scene.observer != NULL)
+    set_observer(drawn, scene.observer);
   scene.metric = NULL; /* goes on with the pictures */
   match_scene_free(&scene);
   return status;
@@ -113,11 +122,9 @@ static ef_status add_pair(pictures *p, const half *left, const half *right,
 
 static ef_status add_pairs(pictures *p, const command_options *options,
                            const colour_basis *basis, const ef_metric *metric,
-                           const ef_notes *notes, ef_error *error) {
+                           double jnd, const ef_notes *notes, ef_error *error) {
   half left = {0}, right = {0};
   const char *const *files = options->files;
-  const double jnd =
-      isnan(options->jnd) ? ef_metric_jnd(metric).value : options->jnd;
   ef_status status = read_half(&left, options, files[0], basis, notes, error);
   if (status == EF_OK) {
     status = read_half(&right, options, files[1], basis, notes, error);
@@ -153,6 +160,7 @@ static ef_status draw_pairs(const command_options *options,
       .some = "pairs differ by more than one JND"};
   if (metric == NULL)
     return message_option(error, "metric", "");
+  const double jnd = isnan(o->jnd) ? ef_metric_jnd(metric).value : o->jnd;
   ef_observer *observer = source_observer(o, notes, error);
   ef_illuminant *illuminant =
       observer == NULL
@@ -164,11 +172,15 @@ static ef_status draw_pairs(const command_options *options,
   ef_status status = illuminant == NULL ? error->status
                                         : colour_basis_init(&basis, observer,
                                                             illuminant, error);
+  if (status == EF_OK)
+    status = pictures_check(observer, error);
   if (status == EF_OK) {
-    status = add_pairs(p, o, &basis, metric, notes, error);
+    status = add_pairs(p, o, &basis, metric, jnd, notes, error);
   }
   if (status == EF_OK) {
-    status = pictures_write(p, basis.white, metric, o, error);
+    const picture_eyes eyes = {observer, basis.white, metric, jnd};
+    set_observer(drawn, observer);
+    status = pictures_write(p, &eyes, o, error);
   }
   ef_illuminant_free(illuminant);
   ef_observer_free(observer);

@@ -8,16 +8,6 @@
 #include "render_tables.h"
 #include "result.h"
 
-static const catalogue *find_catalogue(const char *name) {
-  const catalogue *all;
-  const size_t n = catalogue_all(&all);
-  for (size_t i = 0; i < n; ++i) {
-    if (strcmp(all[i].name, name) == 0)
-      return &all[i];
-  }
-  return NULL;
-}
-
 static ef_status unknown_demo(const char *name, ef_error *error) {
   const size_t n = ef_demo_count();
   const char **known = malloc((n + 1) * sizeof *known);
@@ -76,7 +66,7 @@ static ef_status run(const char *name, int format, ef_output *output,
   if (strncmp(name, "demo:", 5) == 0) {
     return demo_by_name(name + 5, format, output, error);
   }
-  const catalogue *list = find_catalogue(name);
+  const catalogue *list = catalogue_find(name);
   if (list != NULL)
     return render_catalogue(list, format, output, error);
   ef_error ignored;

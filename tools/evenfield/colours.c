@@ -31,6 +31,15 @@ ef_status colours_init(colours *c, const colour_basis *basis,
                  "L,a,b or X,Y,Z or x,y,Y or spectra are needed");
     return message_place(error, head->file);
   }
+  if (head->content != EF_CONTENT_SPECTRA &&
+      ef_observer_dimensions(basis->observer) < 3) {
+    message_fail(error, EF_NO_ANSWER,
+                 "%s are colours for eyes with three kinds of cones; what "
+                 "observer %.100s sees follows from spectra only",
+                 ef_content_text(head->content),
+                 ef_observer_name(basis->observer));
+    return message_place(error, head->file);
+  }
   if (head->n_device > 0) {
     message_note(notes, "%s: the device values are not used, only %s",
                  head->file, ef_content_text(head->content));

@@ -28,8 +28,9 @@ typedef struct colours {
   ef_weights *weights; /**< of spectra */
 } colours;
 
-/** For a file with this head; EF_MALFORMED for device values alone. Free with
- * colours_free in every case. */
+/** For a file with this head; EF_MALFORMED for device values alone,
+ * EF_NO_ANSWER for what is no spectrum to an observer of two dimensions. Free
+ * with colours_free in every case. */
 ef_status colours_init(colours *c, const colour_basis *basis,
                        const ef_reader_head *head, const ef_notes *notes,
                        ef_error *error);

@@ -29,7 +29,8 @@ static const command_entry table[] = {
       "of surfaces, or spectra of lights in the unit of the display's own "
       "spectra. Without it the ferry's painted colours are the targets "
       "(demo:livery), and without --display the ticket kiosk is the display "
-      "(demo:kiosk-measurements)."},
+      "(demo:kiosk-measurements, or demo:kiosk-primaries where spectra are "
+      "needed: for another --observer and for --population)."},
      command_match},
     {"ellipse",
      COMMAND_ELLIPSE,
@@ -43,6 +44,21 @@ static const command_entry table[] = {
       "A FILE is CSV as for describe: spectra, or colours as L,a,b or X,Y,Z or "
       "x,y,Y. A colour without an ellipse (black) is listed with the reason."},
      command_ellipse},
+    {"observer",
+     COMMAND_OBSERVER,
+     "list | build [OBSERVER]",
+     "who looks: functions of an observer of any age, field and eyes",
+     {"`evenfield observer list` says what --observer takes. `evenfield "
+      "observer build OBSERVER` writes the colour-matching functions and the "
+      "cone fundamentals of one of them at 1 nm, as CSV with all digits unless "
+      "--format says otherwise; a file so written serves as an --observer. "
+      "OBSERVER may be model:age=45,field=4, deuteranope, "
+      "protanomalous:shift=8 ...",
+      "`evenfield observer build --categories 10` draws a population and "
+      "writes the observers that stand best for it, each with its name and the "
+      "share of the people it stands for. An OBSERVER then is the mean from "
+      "which people vary."},
+     command_observer},
     {"swatch",
      COMMAND_SWATCH,
      "[TARGETS | LEFT RIGHT]",

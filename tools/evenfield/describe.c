@@ -64,22 +64,27 @@ typedef struct file_work {
   const ef_reader_head *head;
   bool is_light; /* no illuminant makes its white */
   colours colours;
-  ef_weights *cones;    /* of spectra */
-  ef_weights *xyz_1931; /* of lights, when the observer is another */
+  ef_weights *receptors; /* of spectra */
+  ef_weights *xyz_1931;  /* of lights, when the observer is another */
+  ef_weights *alpha;     /* of spectra of lights */
   bool has_white;
-  ef_xyz white;               /* Y = 100 */
-  double white_level;         /* Y of the white in the unit of the rows */
-  double *xyz, *lms, *xyz_31; /* BLOCK_ROWS x 3 each */
+  ef_xyz white;         /* Y = 100 */
+  double white_level;   /* Y of the white in the unit of the rows */
+  double *xyz, *xyz_31; /* BLOCK_ROWS x 3 each */
+  double *excitation;   /* BLOCK_ROWS x EF_N_RECEPTORS */
+  double *sums;         /* BLOCK_ROWS x EF_ALPHA_OPIC_CHANNELS */
   description *out;
 } file_work;
 
 static void work_free(file_work *w) {
   colours_free(&w->colours);
-  ef_weights_free(w->cones);
+  ef_weights_free(w->receptors);
   ef_weights_free(w->xyz_1931);
+  ef_weights_free(w->alpha);
   free(w->xyz);
-  free(w->lms);
   free(w->xyz_31);
+  free(w->excitation);
+  free(w->sums);
   free(w->out);
 }
 
@@ -87,11 +92,16 @@ static ef_status fold_more(file_work *w, const describe_scene *s,
                            ef_error *error) {
   ef_viewing viewing = ef_viewing_default(w->is_light ? NULL : s->illuminant);
   viewing.absolute = w->is_light && w->head->absolute;
-  w->cones = ef_observer_weights(s->observer, EF_CONES, &w->head->grid,
-                                 &viewing, NULL, error);
-  if (w->cones == NULL)
+  w->receptors = ef_observer_weights(s->observer, EF_RECEPTORS, &w->head->grid,
+                                     &viewing, NULL, error);
+  if (w->receptors == NULL)
     return error->status;
-  if (!w->is_light || s->observer_1931 == NULL)
+  if (!w->is_light)
+    return EF_OK;
+  w->alpha = ef_alpha_opic_weights(&w->head->grid, &viewing, NULL, error);
+  if (w->alpha == NULL)
+    return error->status;
+  if (s->observer_1931 == NULL)
     return EF_OK;
   w->xyz_1931 = ef_observer_weights(s->observer_1931, EF_TRISTIMULUS,
                                     &w->head->grid, &viewing, NULL, error);
@@ -113,10 +123,12 @@ static ef_status work_init(file_work *w, const describe_scene *s,
   w->white = s->basis.white;
   w->white_level = 100.0;
   w->xyz = malloc(3 * BLOCK_ROWS * sizeof *w->xyz);
-  w->lms = malloc(3 * BLOCK_ROWS * sizeof *w->lms);
   w->xyz_31 = malloc(3 * BLOCK_ROWS * sizeof *w->xyz_31);
+  w->excitation = malloc(EF_N_RECEPTORS * BLOCK_ROWS * sizeof *w->excitation);
+  w->sums = malloc(EF_ALPHA_OPIC_CHANNELS * BLOCK_ROWS * sizeof *w->sums);
   w->out = malloc(BLOCK_ROWS * sizeof *w->out);
-  if (w->xyz != NULL && w->lms != NULL && w->xyz_31 != NULL && w->out != NULL) {
+  if (w->xyz != NULL && w->xyz_31 != NULL && w->excitation != NULL &&
+      w->sums != NULL && w->out != NULL) {
     return EF_OK;
   }
   return message_fail(error, EF_NO_MEMORY, "out of memory for the rows");
@@ -126,9 +138,13 @@ static ef_status integrate(file_work *w, const ef_block *block, int jobs,
                            ef_error *error) {
   ef_status status =
       colours_xyz(&w->colours, block->n, block->value, jobs, w->xyz, error);
-  if (status == EF_OK && w->cones != NULL) {
-    status =
-        ef_weights_apply(w->cones, block->n, block->value, jobs, w->lms, error);
+  if (status == EF_OK && w->receptors != NULL) {
+    status = ef_weights_apply(w->receptors, block->n, block->value, jobs,
+                              w->excitation, error);
+  }
+  if (status == EF_OK && w->alpha != NULL) {
+    status = ef_weights_apply(w->alpha, block->n, block->value, jobs, w->sums,
+                              error);
   }
   if (status == EF_OK && w->xyz_1931 != NULL) {
     status = ef_weights_apply(w->xyz_1931, block->n, block->value, jobs,
@@ -168,15 +184,31 @@ static ef_lab lab_of(const file_work *w, size_t i) {
                        w->white);
 }
 
-static void add_cones(description *d, const describe_scene *s,
-                      const file_work *w, size_t i) {
+static void add_receptors(description *d, const describe_scene *s,
+                          const file_work *w, size_t i) {
   const double none = (double)NAN;
   d->lms = (ef_lms){none, none, none};
+  d->rod = d->melanopsin = none;
   d->mb = (ef_mb){none, none, none};
-  if (w->cones == NULL)
+  d->has_alpha = w->alpha != NULL;
+  if (d->has_alpha)
+    d->alpha = ef_alpha_opic_from(w->sums + EF_ALPHA_OPIC_CHANNELS * i);
+  if (w->receptors == NULL)
     return;
-  d->lms = (ef_lms){w->lms[3 * i], w->lms[3 * i + 1], w->lms[3 * i + 2]};
+  const double *excitation = w->excitation + EF_N_RECEPTORS * i;
+  d->lms = (ef_lms){excitation[EF_L_CONE], excitation[EF_M_CONE],
+                    excitation[EF_S_CONE]};
+  d->rod = excitation[EF_ROD];
+  d->melanopsin = excitation[EF_MELANOPSIN];
   d->mb = ef_lms_to_mb(d->lms, ef_observer_mb_scale(s->observer));
+  /* A coordinate that is the same for all lights tells nothing. */
+  ef_cone_model model;
+  if (!ef_observer_model(s->observer, &model))
+    return;
+  if (model.deficiency == EF_TRITANOPE)
+    d->mb.mb_s = none;
+  else if (model.deficiency != EF_TRICHROMAT)
+    d->mb.mb_l = none;
 }
 
 /* Colour temperature is defined with the CIE 1931 observer, whoever looks. */
@@ -200,7 +232,7 @@ static void add_dominant(description *d, const describe_scene *s,
                          const file_work *w) {
   const double none = (double)NAN;
   d->dominant = (ef_dominant){none, false, none};
-  if (isnan(d->xyy.x))
+  if (isnan(d->xyy.x) || ef_observer_dimensions(s->observer) < 3)
     return;
   const ef_xyy white = ef_xyz_to_xyy(s->basis.white);
   const ef_xy against =
@@ -248,7 +280,7 @@ static description describe(const describe_scene *s, const file_work *w,
   d.uv = ef_xyz_to_uv(d.xyz);
   d.lab = lab_of(w, i);
   d.luminance_cd_m2 = w->is_light && w->head->absolute ? d.xyz.Y : (double)NAN;
-  add_cones(&d, s, w, i);
+  add_receptors(&d, s, w, i);
   add_temperature(&d, w, i);
   add_dominant(&d, s, w);
   add_whiteness(&d, s, w);

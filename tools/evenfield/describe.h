@@ -19,7 +19,10 @@ typedef struct description {
   ef_uv uv;
   ef_lab lab;
   ef_lms lms;
+  double rod, melanopsin; /**< excitations on the scale of the cones' */
   ef_mb mb;
+  bool has_alpha;      /**< of spectra of lights */
+  ef_alpha_opic alpha; /**< absolute when luminance_cd_m2 is known */
   double luminance_cd_m2;
   ef_cct cct;
   ef_dominant dominant;

@@ -11,8 +11,6 @@
 #include "source.h"
 #include "tone.h"
 
-static const char default_display[] = "demo:kiosk-measurements";
-
 const char *display_origin_text(display_origin origin) {
   switch (origin) {
   case DISPLAY_PRIMARIES:
@@ -228,8 +226,7 @@ static ef_status measure_additivity(const ef_metric *metric, display *out,
 
 ef_status display_load(const command_options *options, const ef_metric *metric,
                        const ef_notes *notes, display *out, ef_error *error) {
-  *out = (display){.source = options->display != NULL ? options->display
-                                                      : default_display};
+  *out = (display){.source = options->display};
   ef_display_settings settings = ef_display_settings_default();
   settings.notes = notes;
   tone_curves tone = {0};

@@ -35,9 +35,9 @@ typedef struct display {
   display_residuals residuals;
 } display;
 
-/** The display named by the options, by default the kiosk of the demo. Failures
- * count as bad input, whatever the library calls them. Free with display_free
- * in every case. */
+/** The display named by the options, which must name one. Failures count as bad
+ * input, whatever the library calls them. Free with display_free in every
+ * case. */
 ef_status display_load(const command_options *options, const ef_metric *metric,
                        const ef_notes *notes, display *out, ef_error *error);
 void display_free(display *d);

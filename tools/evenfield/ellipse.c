@@ -46,6 +46,12 @@ static ef_status set_size(ellipse_scene *s, const ef_notes *notes,
 
 /* The experiments and the steps of the trade are in CIE 1931 coordinates. */
 static ef_status check_observer(const ellipse_scene *s, ef_error *error) {
+  if (ef_observer_dimensions(s->observer) < 3) {
+    return message_fail(error, EF_NO_ANSWER,
+                        "to observer %.100s the colours of one luminance lie "
+                        "on a line: there are no ellipses",
+                        ef_observer_name(s->observer));
+  }
   if (s->from == BASIS_FORMULA ||
       strcmp(ef_observer_name(s->observer), "cie-1931") == 0) {
     return EF_OK;

@@ -4,6 +4,7 @@
 #include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
+#include <string.h>
 
 #include "message.h"
 #include "source.h"
@@ -52,11 +53,28 @@ static ef_status set_light(match_scene *s, const ef_notes *notes,
   return colour_basis_init(&s->basis, s->observer, s->illuminant, error);
 }
 
+/* The kiosk as its software sees it is known for the CIE 1931 observer only;
+ * its spectra serve all others, with the same curves. */
+static command_options with_display(const match_scene *s) {
+  command_options o = *s->options;
+  if (o.display != NULL)
+    return o;
+  const bool needs_spectra =
+      !isnan(o.population) ||
+      strcmp(ef_observer_name(s->observer), "cie-1931") != 0;
+  o.display =
+      needs_spectra ? "demo:kiosk-primaries" : "demo:kiosk-measurements";
+  if (needs_spectra && o.tone == NULL)
+    o.tone = "demo:kiosk-measurements";
+  return o;
+}
+
 static ef_status set_display(match_scene *s, const ef_notes *notes,
                              ef_error *error) {
   const command_options *o = s->options;
+  const command_options chosen = with_display(s);
   const ef_status status =
-      display_load(o, s->metric, notes, &s->display, error);
+      display_load(&chosen, s->metric, notes, &s->display, error);
   if (status != EF_OK)
     return status;
   const size_t n_drives = ef_device_n_drives(s->display.device);
@@ -88,6 +106,25 @@ static ef_status set_targets(match_scene *s, const ef_notes *notes,
                       ef_reader_get_head(s->reader), notes, error);
 }
 
+static ef_status set_companion(match_scene *s, ef_error *error) {
+  return companion_init(&s->companion, s->options, s->setup, &s->basis,
+                        ef_reader_get_head(s->reader), &s->settings, BLOCK_ROWS,
+                        error);
+}
+
+static ef_status set_people(match_scene *s, const ef_notes *notes,
+                            ef_error *error) {
+  const seen_basis basis = {.options = s->options,
+                            .setup = s->setup,
+                            .display_source = s->display.source,
+                            .targets = &s->targets,
+                            .head = ef_reader_get_head(s->reader),
+                            .illuminant = s->illuminant,
+                            .metric = s->metric,
+                            .jnd = s->jnd.value};
+  return seen_init(&s->seen, &basis, BLOCK_ROWS, notes, error);
+}
+
 ef_status match_scene_load(match_scene *s, const command_options *options,
                            const ef_notes *notes, ef_error *error) {
   *s = (match_scene){.options = options};
@@ -98,10 +135,16 @@ ef_status match_scene_load(match_scene *s, const command_options *options,
     status = set_display(s, notes, error);
   if (status == EF_OK)
     status = set_targets(s, notes, error);
+  if (status == EF_OK)
+    status = set_companion(s, error);
+  if (status == EF_OK)
+    status = set_people(s, notes, error);
   return status;
 }
 
 void match_scene_free(match_scene *s) {
+  seen_free(&s->seen);
+  companion_free(&s->companion);
   targets_free(&s->targets);
   ef_reader_free(s->reader);
   ef_setup_free(s->setup);
@@ -125,8 +168,28 @@ const ef_shown *match_achieved(const match_scene *s, const ef_match *m) {
   return s->settings.bits > 0 ? &m->coded : &m->nearest;
 }
 
-void match_summary_add(match_summary *sum, const match_scene *s,
-                       const char *name, const ef_match *m) {
+/* Adds one more to the mean of n - 1. */
+static void add_to_mean(ef_spread *mean, const ef_spread *one, size_t n) {
+  mean->mean += (one->mean - mean->mean) / (double)n;
+  mean->p95 += (one->p95 - mean->p95) / (double)n;
+  mean->share_of_observers +=
+      (one->share_of_observers - mean->share_of_observers) / (double)n;
+}
+
+/* After the counts of the target. */
+static void add_seen(match_summary *sum, const char *name, const ef_match *m,
+                     const ef_spread *spread) {
+  add_to_mean(&sum->all, spread, sum->n);
+  if (m->in_gamut)
+    add_to_mean(&sum->in_gamut, spread, sum->n_in_gamut);
+  if (sum->n > 1 && !(spread->p95 > sum->worst_seen.p95))
+    return;
+  sum->worst_seen = *spread;
+  snprintf(sum->worst_seen_name, sizeof sum->worst_seen_name, "%s", name);
+}
+
+static void add_match(match_summary *sum, const match_scene *s,
+                      const char *name, const ef_match *m) {
   const double shown = match_achieved(s, m)->difference;
   const double jnd = s->jnd.value;
   ++sum->n;
@@ -157,29 +220,70 @@ void match_summary_add(match_summary *sum, const match_scene *s,
   }
 }
 
+void match_summary_add(match_summary *sum, const match_scene *s,
+                       const match_rows *rows, size_t i) {
+  add_match(sum, s, rows->name[i], &rows->match[i]);
+  if (rows->spread != NULL)
+    add_seen(sum, rows->name[i], &rows->match[i], &rows->spread[i]);
+}
+
 /* ---- Streaming --------------------------------------------------------- */
 
 typedef struct workspace {
   double *xyz;
   ef_match *match;
+  ef_spread *spread; /* NULL without a population */
 } workspace;
+
+static ef_status match_block(match_scene *s, const ef_block *block,
+                             const workspace *w, ef_error *error) {
+  const int jobs = s->options->jobs;
+  ef_status status =
+      targets_xyz(&s->targets, block->n, block->value, jobs, w->xyz, error);
+  if (status != EF_OK)
+    return status;
+  if (s->companion.observer == NULL) {
+    return ef_match_batch(s->setup, block->n, w->xyz, &s->settings, jobs,
+                          w->match, error);
+  }
+  const double *near;
+  status = companion_match(&s->companion, block->n, block->value, jobs, &near,
+                           error);
+  if (status != EF_OK)
+    return status;
+  return ef_match_flat_batch(s->setup, block->n, w->xyz, near, &s->settings,
+                             jobs, w->match, error);
+}
+
+static ef_status look(match_scene *s, const ef_block *block, const workspace *w,
+                      ef_error *error) {
+  if (w->spread == NULL)
+    return EF_OK;
+  ef_status status = EF_OK;
+  for (size_t i = 0; i < block->n && status == EF_OK; ++i) {
+    const ef_shown *shown = match_achieved(s, &w->match[i]);
+    status = seen_show(&s->seen, i, shown->drive, error);
+  }
+  if (status == EF_OK) {
+    status = seen_rows(&s->seen, block->n, block->value, s->options->jobs,
+                       w->spread, error);
+  }
+  return status;
+}
 
 static ef_status one_block(match_scene *s, const ef_block *block,
                            const workspace *w, size_t n_sinks,
                            const match_sink *const *sinks, match_summary *sum,
                            ef_error *error) {
-  const int jobs = s->options->jobs;
-  ef_status status =
-      targets_xyz(&s->targets, block->n, block->value, jobs, w->xyz, error);
-  if (status == EF_OK) {
-    status = ef_match_batch(s->setup, block->n, w->xyz, &s->settings, jobs,
-                            w->match, error);
-  }
+  ef_status status = match_block(s, block, w, error);
+  if (status == EF_OK)
+    status = look(s, block, w, error);
+  const match_rows rows = {block->n, block->name, w->match, w->spread};
   for (size_t i = 0; i < block->n && status == EF_OK; ++i) {
-    match_summary_add(sum, s, block->name[i], &w->match[i]);
+    match_summary_add(sum, s, &rows, i);
   }
   for (size_t k = 0; k < n_sinks && status == EF_OK; ++k) {
-    status = sinks[k]->rows(sinks[k]->self, s, block, w->match, error);
+    status = sinks[k]->rows(sinks[k]->self, s, &rows, error);
   }
   return status;
 }
@@ -206,10 +310,13 @@ ef_status match_stream(match_scene *s, size_t n_sinks,
                        const match_sink *const *sinks, match_summary *sum,
                        ef_error *error) {
   *sum = (match_summary){0};
+  const bool has_people = s->seen.people.population != NULL;
   const workspace w = {malloc(3 * BLOCK_ROWS * sizeof *w.xyz),
-                       malloc(BLOCK_ROWS * sizeof *w.match)};
+                       malloc(BLOCK_ROWS * sizeof *w.match),
+                       has_people ? malloc(BLOCK_ROWS * sizeof *w.spread)
+                                  : NULL};
   ef_status status = EF_OK;
-  if (w.xyz == NULL || w.match == NULL) {
+  if (w.xyz == NULL || w.match == NULL || (has_people && w.spread == NULL)) {
     status = message_fail(error, EF_NO_MEMORY, "out of memory for the matches");
   }
   for (size_t k = 0; k < n_sinks && status == EF_OK; ++k) {
@@ -217,6 +324,10 @@ ef_status match_stream(match_scene *s, size_t n_sinks,
   }
   if (status == EF_OK) {
     status = all_blocks(s, &w, n_sinks, sinks, sum, error);
+  }
+  if (sum->n_in_gamut == 0) {
+    const double none = (double)NAN;
+    sum->in_gamut = (ef_spread){none, none, none};
   }
   if (status == EF_OK && sum->n == 0) {
     message_fail(error, EF_MALFORMED,
@@ -229,5 +340,6 @@ ef_status match_stream(match_scene *s, size_t n_sinks,
   }
   free(w.xyz);
   free(w.match);
+  free(w.spread);
   return status;
 }

@@ -6,7 +6,9 @@
 
 #include <evenfield/match.h>
 
+#include "companion.h"
 #include "display.h"
+#include "seen.h"
 #include "targets.h"
 
 /** Everything the answers rest on. */
@@ -29,6 +31,8 @@ typedef struct match_scene {
   bool demo_display, demo_targets;
   ef_reader *reader; /**< of the targets */
   targets targets;
+  companion companion; /**< of a dichromat */
+  seen seen;           /**< its population is NULL without --population */
 } match_scene;
 
 /** Reads and checks everything but the rows of the targets. Free with
@@ -57,18 +61,31 @@ typedef struct match_summary {
   ef_components worst_miss_parts;
   ef_xyz worst_miss_target;
   double sum;
+  /* Of a population: means over the targets in gamut (NaN without any) and over
+   * all targets, and the target with the largest 95th percentile of all. */
+  ef_spread in_gamut, all;
+  ef_spread worst_seen;
+  char worst_seen_name[128];
 } match_summary;
 
+/** One block of answers. */
+typedef struct match_rows {
+  size_t n;
+  const char *const *name;
+  const ef_match *match;
+  const ef_spread *spread; /**< NULL without --population */
+} match_rows;
+
 void match_summary_add(match_summary *sum, const match_scene *s,
-                       const char *name, const ef_match *m);
+                       const match_rows *rows, size_t i);
 
 /** Who receives the answers, block by block. A function that fails ends the
  * run. */
 typedef struct match_sink {
   void *self;
   ef_status (*begin)(void *self, const match_scene *s, ef_error *error);
-  ef_status (*rows)(void *self, const match_scene *s, const ef_block *block,
-                    const ef_match *matches, ef_error *error);
+  ef_status (*rows)(void *self, const match_scene *s, const match_rows *rows,
+                    ef_error *error);
   ef_status (*end)(void *self, const match_scene *s, const match_summary *sum,
                    ef_error *error);
 } match_sink;

@@ -84,15 +84,22 @@ ef_status message_fail(ef_error *error, ef_status status, const char *format,
   return status;
 }
 
-ef_status message_option(ef_error *error, const char *option,
-                         const char *after) {
+ef_status message_argument(ef_error *error, const char *what,
+                           const char *after) {
   ef_error whole;
   if (error->status == EF_INVALID)
     error->status = EF_UNKNOWN_NAME;
-  message_fail(&whole, error->status, "--%s: %.400s%s", option, error->message,
+  message_fail(&whole, error->status, "%s: %.400s%s", what, error->message,
                after);
   *error = whole;
   return error->status;
+}
+
+ef_status message_option(ef_error *error, const char *option,
+                         const char *after) {
+  char what[100];
+  snprintf(what, sizeof what, "--%s", option);
+  return message_argument(error, what, after);
 }
 
 ef_status message_place(ef_error *error, const char *file) {

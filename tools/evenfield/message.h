@@ -31,6 +31,9 @@ ef_status message_fail(ef_error *error, ef_status status, const char *format,
  * a name that is not known or not allowed, which is wrong usage. */
 ef_status message_option(ef_error *error, const char *option,
                          const char *after);
+/** The same with "WHAT: ", for an argument that is no option's. */
+ef_status message_argument(ef_error *error, const char *what,
+                           const char *after);
 /** Names the file in an error that names none; returns its status. */
 ef_status message_place(ef_error *error, const char *file);
 

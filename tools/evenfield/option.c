@@ -7,6 +7,7 @@
 #include <string.h>
 
 #include <evenfield/base.h>
+#include <evenfield/observer.h>
 
 #include "help.h"
 #include "message.h"
@@ -17,6 +18,7 @@ typedef enum option_type {
   TYPE_TEXTS,  /* may be given more than once */
   TYPE_CHOICE, /* one of `choices`; its number is stored */
   TYPE_INTEGER,
+  TYPE_WHOLE, /* a whole number that an int may be too small for */
   TYPE_NUMBER
 } option_type;
 
@@ -32,18 +34,25 @@ typedef struct option_row {
 } option_row;
 
 static const char *const kinds[] = {"surface", "light", NULL};
+static const char *const units[] = {"energy", "quantal", NULL};
+static const char *const dichromats[] = {"protanope", "deuteranope",
+                                         "tritanope", NULL};
 static const char *const formats[] = {"text", "csv", "json", NULL};
 static const char *const figures[] = {"section", "projection", "ellipsoid",
                                       NULL};
 static const char *const bases[] = {"formula", "macadam-1942", "n-step",
                                     "lamp-colours", NULL};
 
+/* Every whole number up to this is a double. */
+#define LARGEST_SEED 9007199254740991.0
+
 #define FIELD(name) offsetof(command_options, name)
 #define SEEING                                                                 \
   (COMMAND_DESCRIBE | COMMAND_MATCH | COMMAND_SWATCH | COMMAND_ELLIPSE)
 #define MATCHING (COMMAND_MATCH | COMMAND_SWATCH)
 #define DIFFERING (MATCHING | COMMAND_ELLIPSE)
-#define EVERY (SEEING | COMMAND_TABLES)
+#define PEOPLE (COMMAND_MATCH | COMMAND_OBSERVER)
+#define EVERY (SEEING | COMMAND_TABLES | COMMAND_OBSERVER)
 
 static const option_row table[] = {
     {"at", "COLOUR", COMMAND_ELLIPSE, TYPE_TEXTS, FIELD(at), 0, 0, NULL,
@@ -93,8 +102,9 @@ static const option_row table[] = {
      "luminance of the display's white in cd/m2; X,Y,Z and x,y,Y targets are "
      "then in cd/m2 too"},
     {"observer", "OBSERVER", SEEING, TYPE_TEXT, FIELD(observer), 0, 0, NULL,
-     "a name from `evenfield tables observers` or a file with three "
-     "colour-matching functions; default cie-1931"},
+     "who looks: a name from `evenfield observer list`, with settings as in "
+     "model:age=45,field=4, or a file with three colour-matching functions; "
+     "default cie-1931"},
     {"illuminant", "LIGHT", SEEING, TYPE_TEXT, FIELD(illuminant), 0, 0, NULL,
      "the light on surfaces and the white of colours: a name from `evenfield "
      "tables illuminants`, daylight:K, planck:K, FILE or FILE:COLUMN; default "
@@ -126,6 +136,33 @@ static const option_row table[] = {
      "exit with status 1 when a target's difference exceeds the tolerance"},
     {"tolerance", "VALUE", COMMAND_MATCH, TYPE_NUMBER, FIELD(tolerance), 0, 1e6,
      NULL, "for --check, in units of the metric; default one JND"},
+    {"population", "N", COMMAND_OBSERVER, TYPE_WHOLE, FIELD(population), 1,
+     EF_POPULATION_MOST, NULL,
+     "how many people --categories chooses from, at most 100000; default "
+     "10000"},
+    {"population", "N", COMMAND_MATCH, TYPE_WHOLE, FIELD(population), 1,
+     EF_POPULATION_MOST, NULL,
+     "what N people would see, drawn at random by age and by how eyes vary; "
+     "needs spectra of display and targets"},
+    {"ages", "FROM-TO|FILE", PEOPLE, TYPE_TEXT, FIELD(ages), 0, 0, NULL,
+     "their ages, 20 to 80 years: evenly from FROM to TO, all of one AGE, or a "
+     "CSV file with columns age and share; default 20-70"},
+    {"seed", "N", PEOPLE, TYPE_WHOLE, FIELD(seed), 0, LARGEST_SEED, NULL,
+     "chooses which people are drawn; the same N gives the same people; "
+     "default 1"},
+    {"field", "DEG", PEOPLE, TYPE_NUMBER, FIELD(field_deg), 1, 10, NULL,
+     "diameter of the field they look at, 1 to 10 degrees; default that of the "
+     "observer"},
+    {"categories", "K", COMMAND_OBSERVER, TYPE_INTEGER, FIELD(categories), 1,
+     100, NULL, "the K observers that stand best for a population"},
+    {"units", "energy|quantal", COMMAND_OBSERVER, TYPE_CHOICE, FIELD(units), 0,
+     0, units,
+     "cone fundamentals for equal power or for equal numbers of quanta at each "
+     "wavelength; default energy"},
+    {"seen-by", "DICHROMAT", MATCHING, TYPE_CHOICE, FIELD(seen_by), 0, 0,
+     dichromats,
+     "draws the pictures as a protanope, deuteranope or tritanope is taken to "
+     "see them"},
     {"pictures", "DIR", MATCHING, TYPE_TEXT, FIELD(pictures), 0, 0, NULL,
      "the folder for a split field of every target and a sheet of all (PNG)"},
     {"swatch-bits", "8|16", MATCHING, TYPE_INTEGER, FIELD(swatch_bits), 8, 16,
@@ -134,10 +171,15 @@ static const option_row table[] = {
      NULL, "device value of full drive in the files; default: what they say"},
     {"skip-bad", NULL, SEEING, TYPE_FLAG, FIELD(skip_bad), 0, 0, NULL,
      "leave out rows that are at fault, and count them"},
-    {"jobs", "N", SEEING, TYPE_INTEGER, FIELD(jobs), 0, 4096, NULL,
-     "threads to use; default 0, one for each core; changes no result"},
-    {"format", "text|csv|json", EVERY, TYPE_CHOICE, FIELD(format), 0, 0,
-     formats, "text for people, csv and json for programs; default text"},
+    {"jobs", "N", SEEING | COMMAND_OBSERVER, TYPE_INTEGER, FIELD(jobs), 0, 4096,
+     NULL, "threads to use; default 0, one for each core; changes no result"},
+    {"format", "text|csv|json", COMMAND_OBSERVER, TYPE_CHOICE, FIELD(format), 0,
+     0, formats,
+     "text for people, csv and json for programs; default csv of build, text "
+     "of list"},
+    {"format", "text|csv|json", EVERY & ~(unsigned)COMMAND_OBSERVER,
+     TYPE_CHOICE, FIELD(format), 0, 0, formats,
+     "text for people, csv and json for programs; default text"},
     {"output", "PATH", EVERY, TYPE_TEXT, FIELD(output), 0, 0, NULL,
      "the file for the result; default standard output"},
     {"force", NULL, EVERY, TYPE_FLAG, FIELD(force), 0, 0, NULL,
@@ -162,8 +204,12 @@ static void set_defaults(command_options *o) {
                          .steps = not_given,
                          .white_cd_m2 = not_given,
                          .background_Y = not_given,
+                         .population = not_given,
+                         .seed = not_given,
+                         .field_deg = not_given,
                          .kind = -1,
-                         .format = FORMAT_TEXT,
+                         .seen_by = -1,
+                         .format = -1,
                          .bits = 8,
                          .swatch_bits = 8,
                          .jobs = 0};
@@ -213,12 +259,18 @@ static exit_code bad_choice(const option_row *o, const char *value) {
 }
 
 static exit_code bad_range(const option_row *o, const char *value) {
+  const bool is_whole = o->type != TYPE_NUMBER;
   char low[EF_NUMBER_TEXT], high[EF_NUMBER_TEXT];
-  ef_number_format(o->low, low);
-  ef_number_format(o->high, high);
+  if (is_whole) {
+    ef_number_format_fixed(o->low, 0, low);
+    ef_number_format_fixed(o->high, 0, high);
+  } else {
+    ef_number_format(o->low, low);
+    ef_number_format(o->high, high);
+  }
   return message_usage("--%s is %s from %s to %s, not \"%.100s\"", o->name,
-                       o->type == TYPE_INTEGER ? "a whole number" : "a number",
-                       low, high, value);
+                       is_whole ? "a whole number" : "a number", low, high,
+                       value);
 }
 
 /* ---- Parsing ----------------------------------------------------------- */
@@ -251,18 +303,18 @@ static exit_code store(command_options *options, const option_row *o,
     }
     return bad_choice(o, value);
   case TYPE_INTEGER:
+  case TYPE_WHOLE:
   case TYPE_NUMBER:
     if (!ef_number_parse(value, strlen(value), '.', &number) ||
         !(number >= o->low && number <= o->high)) {
       return bad_range(o, value);
     }
-    if (o->type == TYPE_NUMBER) {
-      *(double *)field = number;
-      return EXIT_DONE;
-    }
-    if (number != floor(number))
+    if (o->type != TYPE_NUMBER && number != floor(number))
       return bad_range(o, value);
-    *(int *)field = (int)number;
+    if (o->type == TYPE_INTEGER)
+      *(int *)field = (int)number;
+    else
+      *(double *)field = number;
     return EXIT_DONE;
   }
   return EXIT_USAGE;
@@ -359,6 +411,8 @@ exit_code options_parse(command_options *options, const char *command,
       options->files[options->n_files++] = argv[i++];
     }
   }
+  if (options->format < 0 && bit != COMMAND_OBSERVER)
+    options->format = FORMAT_TEXT;
   return EXIT_DONE;
 }
 

@@ -17,7 +17,8 @@ typedef enum command_bit {
   COMMAND_MATCH = 2,
   COMMAND_SWATCH = 4,
   COMMAND_TABLES = 8,
-  COMMAND_ELLIPSE = 16
+  COMMAND_ELLIPSE = 16,
+  COMMAND_OBSERVER = 32
 } command_bit;
 
 typedef enum output_format {
@@ -33,18 +34,22 @@ typedef struct text_list {
 } text_list;
 
 /** What was asked for. Texts are NULL, numbers NaN and integers -1 when not
- * given, unless option.c states a default. */
+ * given, unless option.c states a default. The format of `observer`, whose
+ * default depends on what it is asked for, is -1 when not given. */
 typedef struct command_options {
   const char *display, *tone, *observer, *illuminant, *metric, *adaptation;
-  const char *ambient_illuminant, *pictures, *output;
+  const char *ambient_illuminant, *pictures, *output, *ages;
   const char *space, *contrast_from, *surround;
   double ambient_lux, reflectance, luminance_cd_m2, jnd, tolerance, device_max;
   double size, steps, white_cd_m2, background_Y;
-  int kind;   /**< 0 surface, 1 light, -1 not given */
-  int figure; /**< of enum ellipse_figure */
-  int basis;  /**< of enum ellipse_basis */
+  double population, seed, field_deg; /**< the first two are whole */
+  int kind;    /**< 0 surface, 1 light, -1 not given */
+  int figure;  /**< of enum ellipse_figure */
+  int basis;   /**< of enum ellipse_basis */
+  int seen_by; /**< EF_PROTANOPE - 1 ..., -1 not given */
+  int units;   /**< an ef_cone_units */
   int format;
-  int bits, swatch_bits, jobs;
+  int bits, swatch_bits, jobs, categories;
   bool skip_bad, check, force, quiet, help, version;
   text_list at;
   size_t n_files;

@@ -6,6 +6,7 @@
 #include <string.h>
 #include <unistd.h>
 
+#include "dichromat.h"
 #include "message.h"
 
 /* ---- Collecting -------------------------------------------------------- */
@@ -46,26 +47,26 @@ ef_status pictures_add(pictures *p, const char *name, ef_xyz target,
   if (copy == NULL) {
     return message_fail(error, EF_NO_MEMORY, "out of memory for pictures");
   }
-  p->pair[p->n++] =
-      (picture_pair){copy, NULL, target, match, shown, difference};
+  p->pair[p->n++] = (picture_pair){.name = copy,
+                                   .target = target,
+                                   .match = match,
+                                   .shown = shown,
+                                   .difference = difference};
   return EF_OK;
 }
 
 static ef_status begin(void *self, const match_scene *s, ef_error *error) {
   (void)self;
-  (void)s;
-  (void)error;
-  return EF_OK;
+  return pictures_check(s->observer, error);
 }
 
 static ef_status collect(void *self, const match_scene *s,
-                         const ef_block *block, const ef_match *matches,
-                         ef_error *error) {
+                         const match_rows *rows, ef_error *error) {
   ef_status status = EF_OK;
-  for (size_t i = 0; i < block->n && status == EF_OK; ++i) {
-    const ef_match *m = &matches[i];
+  for (size_t i = 0; i < rows->n && status == EF_OK; ++i) {
+    const ef_match *m = &rows->match[i];
     const ef_shown *shown = match_achieved(s, m);
-    status = pictures_add(self, block->name[i], m->target, shown->xyz,
+    status = pictures_add(self, rows->name[i], m->target, shown->xyz,
                           m->in_gamut, shown->difference, error);
   }
   return status;
@@ -74,8 +75,9 @@ static ef_status collect(void *self, const match_scene *s,
 static ef_status end(void *self, const match_scene *s, const match_summary *sum,
                      ef_error *error) {
   (void)sum;
-  return pictures_write(self, ef_setup_white(s->setup), s->metric, s->options,
-                        error);
+  const picture_eyes eyes = {s->observer, ef_setup_white(s->setup), s->metric,
+                             s->jnd.value};
+  return pictures_write(self, &eyes, s->options, error);
 }
 
 match_sink pictures_sink(pictures *p) {
@@ -143,21 +145,53 @@ static ef_status name_files(pictures *p, bool overwrite, ef_error *error) {
 
 /* ---- Drawing ----------------------------------------------------------- */
 
-static ef_swatch swatch_of(const picture_pair *pair) {
-  return (ef_swatch){.name = pair->name,
-                     .target = pair->target,
-                     .match = pair->match,
-                     .shown = pair->shown,
-                     .difference = pair->difference};
+ef_status pictures_check(const ef_observer *observer, ef_error *error) {
+  if (ef_observer_dimensions(observer) == 3)
+    return EF_OK;
+  return message_fail(error, EF_NO_ANSWER,
+                      "pictures are for eyes with three kinds of cones, and "
+                      "the colours of observer %.100s have two dimensions: "
+                      "draw another observer's with --seen-by",
+                      ef_observer_name(observer));
+}
+
+static void draw_as_they_are(pictures *p) {
+  for (size_t i = 0; i < p->n; ++i) {
+    picture_pair *pair = &p->pair[i];
+    pair->drawn = (ef_swatch){.name = pair->name,
+                              .target = pair->target,
+                              .match = pair->match,
+                              .shown = pair->shown,
+                              .difference = pair->difference};
+  }
+}
+
+/* Whether the halves are alike is then told by what is drawn. */
+static ef_status draw_as_seen(pictures *p, const picture_eyes *eyes,
+                              int seen_by, ef_error *error) {
+  const ef_conditions conditions = ef_conditions_default(eyes->white);
+  dichromat d;
+  const ef_status status =
+      dichromat_init(&d, seen_by, eyes->observer, eyes->white, error);
+  for (size_t i = 0; i < p->n && status == EF_OK; ++i) {
+    ef_swatch *drawn = &p->pair[i].drawn;
+    double at[2][3];
+    drawn->target = dichromat_see(&d, drawn->target);
+    drawn->match = dichromat_see(&d, drawn->match);
+    ef_metric_coordinates(eyes->metric, drawn->target, &conditions, at[0]);
+    ef_metric_coordinates(eyes->metric, drawn->match, &conditions, at[1]);
+    drawn->difference = ef_metric_difference(eyes->metric, at[0], at[1]);
+    drawn->shown = !(drawn->difference > eyes->jnd);
+  }
+  return status;
 }
 
 static ef_status draw_each(pictures *p, const ef_swatch_settings *settings,
                            ef_error *error) {
   for (size_t i = 0; i < p->n; ++i) {
-    const ef_swatch swatch = swatch_of(&p->pair[i]);
     ef_swatch_report report;
-    const ef_status status =
-        ef_swatch_write(p->pair[i].file, &swatch, settings, &report, error);
+    const ef_status status = ef_swatch_write(p->pair[i].file, &p->pair[i].drawn,
+                                             settings, &report, error);
     if (status != EF_OK)
       return status;
     p->n_clipped += report.n_clipped;
@@ -172,7 +206,7 @@ static ef_status draw_sheet(pictures *p, ef_swatch_settings settings,
     return message_fail(error, EF_NO_MEMORY, "out of memory for the sheet");
   }
   for (size_t i = 0; i < p->n; ++i)
-    swatches[i] = swatch_of(&p->pair[i]);
+    swatches[i] = p->pair[i].drawn;
   settings.width = p->n <= 30 ? 384 : p->n <= 120 ? 256 : 160;
   ef_swatch_report report;
   const ef_status status = ef_swatch_write_sheet(p->sheet, p->n, swatches,
@@ -182,14 +216,19 @@ static ef_status draw_sheet(pictures *p, ef_swatch_settings settings,
   return status;
 }
 
-ef_status pictures_write(pictures *p, ef_xyz white, const ef_metric *metric,
+ef_status pictures_write(pictures *p, const picture_eyes *eyes,
                          const command_options *options, ef_error *error) {
   ef_swatch_settings settings = ef_swatch_settings_default();
-  settings.white = white;
+  settings.white = eyes->white;
   settings.bits = options->swatch_bits;
-  settings.difference_symbol = ef_metric_symbol(metric);
+  settings.difference_symbol = ef_metric_symbol(eyes->metric);
   settings.overwrite = options->force;
-  ef_status status = name_files(p, options->force, error);
+  draw_as_they_are(p);
+  ef_status status = EF_OK;
+  if (options->seen_by >= 0)
+    status = draw_as_seen(p, eyes, options->seen_by, error);
+  if (status == EF_OK)
+    status = name_files(p, options->force, error);
   if (status == EF_OK)
     status = ef_directory_make(p->folder, error);
   if (status == EF_OK)

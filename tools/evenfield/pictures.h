@@ -17,7 +17,17 @@ typedef struct picture_pair {
   ef_xyz target, match;
   bool shown;
   double difference;
+  /* What is drawn: the above, or with --seen-by as a dichromat sees it. */
+  ef_swatch drawn;
 } picture_pair;
+
+/** For whom and on what the colours are. */
+typedef struct picture_eyes {
+  const ef_observer *observer;
+  ef_xyz white;
+  const ef_metric *metric;
+  double jnd; /**< NaN: not known */
+} picture_eyes;
 
 typedef struct pictures {
   const char *folder;
@@ -36,10 +46,13 @@ void pictures_free(pictures *p);
 ef_status pictures_add(pictures *p, const char *name, ef_xyz target,
                        ef_xyz match, bool shown, double difference,
                        ef_error *error);
-/** Draws all of them, seen against `white`. Refuses before it draws when a file
- * is there that may not be overwritten. */
-ef_status pictures_write(pictures *p, ef_xyz white, const ef_metric *metric,
+/** Draws all of them. Refuses before it draws when a file is there that may not
+ * be overwritten. */
+ef_status pictures_write(pictures *p, const picture_eyes *eyes,
                          const command_options *options, ef_error *error);
+/** EF_NO_ANSWER for colours of two dimensions, which are no colours to those
+ * who look at pictures. */
+ef_status pictures_check(const ef_observer *observer, ef_error *error);
 
 /** A sink that collects a pair for every target and draws at the end. */
 match_sink pictures_sink(pictures *p);

@@ -1,6 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "render_describe.h"
 
+#include <math.h>
 #include <stdlib.h>
 
 #include "message.h"
@@ -10,6 +11,35 @@ struct describe_data {
   ef_csv *csv;
   ef_json *json;
 };
+
+static void record_receptors(record *r, const char *key, bool is_known,
+                             const double value[EF_N_RECEPTORS]) {
+  record_begin(r, key);
+  for (int i = 0; i < EF_N_RECEPTORS; ++i) {
+    record_number(r, ef_receptor_name((ef_receptor)i),
+                  is_known ? value[i] : (double)NAN);
+  }
+  record_end(r);
+}
+
+/* Quantities with a unit where that of the light is known, ratios of all
+ * lights. */
+static void record_alpha(record *r, const description *d) {
+  const ef_alpha_opic *a = &d->alpha;
+  const bool is_known = d->has_alpha;
+  const bool is_absolute = is_known && !isnan(d->luminance_cd_m2);
+  const double none = (double)NAN;
+  record_begin(r, "alpha_opic");
+  record_receptors(r, "radiance_w_m2_sr", is_absolute, a->quantity);
+  record_receptors(r, "equivalent_daylight_cd_m2", is_absolute,
+                   a->equivalent_d65);
+  record_receptors(r, "efficacy_mw_lm", is_known, a->efficacy_mw_lm);
+  record_receptors(r, "daylight_ratio", is_known, a->daylight_ratio);
+  record_number(r, "scotopic_cd_m2", is_absolute ? a->scotopic : none);
+  record_number(r, "scotopic_photopic_ratio",
+                is_known ? a->scotopic / a->photopic : none);
+  record_end(r);
+}
 
 static void record_description(record *r, const describe_scene *s,
                                const description *d) {
@@ -36,12 +66,15 @@ static void record_description(record *r, const describe_scene *s,
   record_number(r, "cone_l", d->lms.cone_l);
   record_number(r, "cone_m", d->lms.cone_m);
   record_number(r, "cone_s", d->lms.cone_s);
+  record_number(r, "rod", d->rod);
+  record_number(r, "melanopsin", d->melanopsin);
   record_number(r, "mb_l", d->mb.mb_l);
   record_number(r, "mb_s", d->mb.mb_s);
   record_number(r, "whiteness", d->whiteness.whiteness);
   record_number(r, "tint", d->whiteness.tint);
   record_boolean(r, "is_white", d->whiteness.is_white);
   record_number(r, "yellowness", d->whiteness.yellowness);
+  record_alpha(r, d);
   record_end(r);
 }
 

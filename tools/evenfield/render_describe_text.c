@@ -7,6 +7,7 @@
 #include <string.h>
 
 #include "message.h"
+#include "render_receptors.h"
 #include "text.h"
 #include "words.h"
 
@@ -26,7 +27,7 @@ struct describe_text {
   char **name; /* of the rows, owned */
   size_t n_rows;
   size_t n_lights, n_surfaces, n_colours;
-  bool has_cones;
+  bool has_cones, has_alpha;
   range lightness, chroma, temperature, rendering;
 };
 
@@ -52,6 +53,7 @@ static bool is_light(const description *d) {
 
 static void count(describe_text *t, const description *d) {
   t->has_cones = t->has_cones || !isnan(d->lms.cone_l);
+  t->has_alpha = t->has_alpha || d->has_alpha;
   if (is_light(d)) {
     ++t->n_lights;
     extend(&t->temperature, d->cct.cct_k, d->name);
@@ -328,27 +330,27 @@ static void add_appearance(text *out, const describe_text *t, const group *g) {
   }
 }
 
-static void add_cones(text *out, const describe_text *t, const group *g) {
-  text_table a = table_new();
-  table_column(&a, "Name", "", true);
-  table_column(&a, "Cone excitation", "L", false);
-  table_column(&a, NULL, "M", false);
-  table_column(&a, NULL, "S", false);
-  table_column(&a, "MacLeod-Boynton", "l", false);
-  table_column(&a, NULL, "s", false);
-  for (size_t i = 0; i < t->n_rows; ++i) {
-    const description *d = &t->row[i];
-    if (!belongs(g, d))
-      continue;
-    table_cell(&a, d->name);
-    table_number(&a, d->lms.cone_l, g->decimals);
-    table_number(&a, d->lms.cone_m, g->decimals);
-    table_number(&a, d->lms.cone_s, g->decimals);
-    table_number(&a, d->mb.mb_l, 4);
-    table_number(&a, d->mb.mb_s, 4);
+/* The rows of a group, in order; NULL without memory. */
+static const description **rows_of(const describe_text *t, const group *g) {
+  const description **row = malloc((g->n + 1) * sizeof *row);
+  size_t n = 0;
+  for (size_t i = 0; i < t->n_rows && row != NULL; ++i) {
+    if (belongs(g, &t->row[i]))
+      row[n++] = &t->row[i];
   }
-  text_add(out, "\n");
-  table_finish(&a, out);
+  return row;
+}
+
+static void add_receptors(text *out, const describe_text *t, const group *g) {
+  const description **row = rows_of(t, g);
+  if (row == NULL) {
+    out->failed = true;
+    return;
+  }
+  render_receptors(out, g->n, row, g->decimals);
+  if (row[0]->has_alpha)
+    render_alpha_opic(out, g->n, row, g->is_absolute);
+  free(row);
 }
 
 static bool has_whiteness(const description *d) {
@@ -395,32 +397,12 @@ static void add_group(text *out, const describe_text *t,
   add_tristimulus(out, t, &g);
   add_appearance(out, t, &g);
   if (g.has_cones)
-    add_cones(out, t, &g);
+    add_receptors(out, t, &g);
   if (kind[0] != 'l' && s->white_scale != NULL)
     add_whiteness(out, t, &g);
 }
 
 /* ---- What it rests on -------------------------------------------------- */
-
-static void add_cone_basis(text *out, const describe_scene *s) {
-  char field[EF_NUMBER_TEXT];
-  ef_number_format(ef_observer_field_deg(s->observer), field);
-  text line = {0};
-  if (ef_observer_cones_borrowed(s->observer)) {
-    text_format(&line,
-                "the CIE 2006 fundamentals for a field of %s degrees, "
-                "since this observer has none of its own",
-                field);
-  } else {
-    text_format(&line,
-                "the observer's own fundamentals for a field of %s "
-                "degrees",
-                field);
-  }
-  text_add(&line, "; energy units, unit peak; MacLeod-Boynton coordinates by "
-                  "CIE 170-2:2015");
-  text_label(out, "Cones", &line);
-}
 
 static void add_whiteness_basis(text *out, const describe_scene *s) {
   const ef_white_scale *scale = s->white_scale;
@@ -446,8 +428,12 @@ static void add_basis(text *out, const describe_text *t,
   text_format(&line, "%s: %s", ef_observer_name(s->observer),
               ef_observer_about(s->observer));
   text_label(out, "Observer", &line);
+  if (ef_observer_dimensions(s->observer) < 3) {
+    text_add(&line, words_two_dimensions);
+    text_label(out, "", &line);
+  }
   if (t->has_cones)
-    add_cone_basis(out, s);
+    render_receptor_basis(out, s, t->has_alpha);
   if (t->n_surfaces + t->n_colours > 0) {
     text_format(&line,
                 "CIELAB, dominant wavelength and purity of surfaces and "

@@ -14,6 +14,23 @@ match_text *match_text_new(ef_output *output);
 void match_text_free(match_text *t);
 match_sink match_text_sink(match_text *t);
 
+/** A target that a person reads about. */
+typedef struct kept_row {
+  char *name;
+  size_t order; /**< in the file */
+  ef_match match;
+  ef_spread spread;  /**< with a population */
+  double difference; /**< rows of a long list are kept by this */
+} kept_row;
+
+/** With a population the sentence that says what it sees, and a table of the
+ * rows, the worst first; nothing without. */
+void render_match_people_answer(text *out, const match_scene *s,
+                                const match_summary *sum);
+void render_match_people(text *out, const match_scene *s,
+                         const match_summary *sum, size_t n_rows,
+                         const kept_row *row);
+
 /** What the answers rest on, and the gamut: the lower part of the text. */
 void render_match_basis(text *out, const match_scene *s,
                         const match_summary *sum);

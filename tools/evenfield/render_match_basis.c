@@ -105,7 +105,10 @@ static void add_targets(text *out, const match_scene *s) {
                 "; adapted from the white of %s to the display's white by "
                 "%s",
                 ef_illuminant_name(s->illuminant),
-                s->targets.adaptation == EF_ADAPT_CAT16 ? "CAT16" : "Bradford");
+                s->companion.observer != NULL
+                    ? "von Kries, each of the two kinds of cones by itself"
+                : s->targets.adaptation == EF_ADAPT_CAT16 ? "CAT16"
+                                                          : "Bradford");
     break;
   }
   text_label(out, "Targets", &t);
@@ -116,6 +119,30 @@ static void add_observer(text *out, const match_scene *s) {
   text_format(&t, "%s: %s", ef_observer_name(s->observer),
               ef_observer_about(s->observer));
   text_label(out, "Observer", &t);
+  if (s->companion.observer == NULL)
+    return;
+  text_format(&t,
+              "%s; many amounts match, and those given come nearest to a match "
+              "for %s, the same eyes with all cones",
+              words_two_dimensions, ef_observer_name(s->companion.observer));
+  text_label(out, "", &t);
+}
+
+static void add_people(text *out, const match_scene *s) {
+  if (s->seen.people.population == NULL)
+    return;
+  text t = {0};
+  people_add(&t, &s->seen.people);
+  text_add(&t,
+           "; their eyes vary in ocular media, macular pigment, density and "
+           "peak of the cone pigments (Asano, Fairchild & Blonde 2016), "
+           "each judges against the whites as they see them");
+  if (!isnan(s->jnd.value))
+    text_add(&t, " and tells apart what differs by more than one JND");
+  else
+    text_add(&t, "; without a JND nobody can be said to tell apart anything "
+                 "(--jnd gives one)");
+  text_label(out, "People", &t);
 }
 
 static void add_metric(text *out, const match_scene *s) {
@@ -154,6 +181,7 @@ static void add_basis(text *out, const match_scene *s) {
   add_white(out, s);
   add_targets(out, s);
   add_observer(out, s);
+  add_people(out, s);
   add_metric(out, s);
 }
 
@@ -194,6 +222,32 @@ static void add_luminances(text *t, const match_scene *s) {
   text_format(t, "black %s %s", number, absolute ? "cd/m2" : "% of white");
 }
 
+static void add_sizes(text *out, const match_scene *s) {
+  const ef_gamut *g = &s->gamut;
+  char number[EF_NUMBER_TEXT], share[EF_NUMBER_TEXT];
+  text t = {0};
+  if (ef_observer_dimensions(s->observer) < 3) {
+    text_add(&t, "none, and no volume: colours of two dimensions lie on a line "
+                 "in x, y and on a surface in CIELAB");
+    text_label(out, "Area", &t);
+    return;
+  }
+  add_area(&t, g->area_xy, g->locus_share_xy, "x, y");
+  text_add(&t, "; ");
+  add_area(&t, g->area_uv, g->locus_share_uv, "u', v'");
+  text_label(out, "Area", &t);
+  /* It is known to 0.1 %. */
+  const bool is_large = g->volume_lab >= 1e5;
+  ef_number_format_fixed(g->volume_lab / (is_large ? 1e3 : 1.0), 0, number);
+  ef_number_format_fixed(100.0 * g->solid_share, 1, share);
+  text_format(&t,
+              "%s%s cubic units of CIELAB; it holds %s %% of all surface "
+              "colours possible under %s",
+              number, is_large ? " thousand" : "", share,
+              ef_illuminant_name(s->illuminant));
+  text_label(out, "Volume", &t);
+}
+
 static void add_gamut(text *out, const match_scene *s,
                       const match_summary *sum) {
   const ef_gamut *g = &s->gamut;
@@ -210,20 +264,7 @@ static void add_gamut(text *out, const match_scene *s,
   text_label(out, "x, y", &t);
   add_luminances(&t, s);
   text_label(out, "Luminance", &t);
-  add_area(&t, g->area_xy, g->locus_share_xy, "x, y");
-  text_add(&t, "; ");
-  add_area(&t, g->area_uv, g->locus_share_uv, "u', v'");
-  text_label(out, "Area", &t);
-  /* It is known to 0.1 %. */
-  const bool is_large = g->volume_lab >= 1e5;
-  ef_number_format_fixed(g->volume_lab / (is_large ? 1e3 : 1.0), 0, number);
-  ef_number_format_fixed(100.0 * g->solid_share, 1, share);
-  text_format(&t,
-              "%s%s cubic units of CIELAB; it holds %s %% of all surface "
-              "colours possible under %s",
-              number, is_large ? " thousand" : "", share,
-              ef_illuminant_name(s->illuminant));
-  text_label(out, "Volume", &t);
+  add_sizes(out, s);
   if (isinf(g->contrast)) {
     text_add(&t, "not known: the black is taken as no light at all");
   } else {

@@ -73,8 +73,15 @@ static void record_shown(record *r, const char *key, const match_scene *s,
   record_end(r);
 }
 
+static void record_spread(record *r, const ef_spread *spread) {
+  record_number(r, "mean", spread->mean);
+  record_number(r, "p95", spread->p95);
+  record_number(r, "share_of_observers", spread->share_of_observers);
+}
+
+/* `spread` NULL without a population. */
 static void record_match(record *r, const match_scene *s, const char *name,
-                         const ef_match *m) {
+                         const ef_match *m, const ef_spread *spread) {
   const ef_device *device = s->display.device;
   const size_t n = ef_device_n_drives(device);
   const char *names[EF_MAX_DRIVES], *limits[2 * EF_MAX_DRIVES];
@@ -101,6 +108,11 @@ static void record_match(record *r, const match_scene *s, const char *name,
   record_end(r);
   record_shown(r, "nearest", s, &m->nearest);
   record_shown(r, "hue_kept", s, &m->hue_kept);
+  if (spread != NULL) {
+    record_begin(r, "population");
+    record_spread(r, spread);
+    record_end(r);
+  }
   record_end(r);
 }
 
@@ -184,10 +196,16 @@ static void write_gamut(ef_json *j, const ef_gamut *g) {
 
 static void write_basis(ef_json *j, const match_scene *s) {
   ef_json_text(j, "observer", ef_observer_name(s->observer));
+  ef_json_integer(j, "observer_dimensions",
+                  (int64_t)ef_observer_dimensions(s->observer));
   ef_json_text(j, "illuminant", ef_illuminant_name(s->illuminant));
   ef_json_text(j, "targets_are", s->targets.about);
   ef_json_text(j, "targets_source", s->target_source);
-  ef_json_text(j, "adaptation", ef_adaptation_name(s->targets.adaptation));
+  const bool is_von_kries =
+      s->companion.observer != NULL && s->targets.adaptation != EF_ADAPT_NONE;
+  ef_json_text(j, "adaptation",
+               is_von_kries ? "von-kries"
+                            : ef_adaptation_name(s->targets.adaptation));
   ef_json_text(j, "metric", ef_metric_name(s->metric));
   ef_json_begin_object(j, "jnd");
   ef_json_number(j, "value", s->jnd.value);
@@ -195,6 +213,18 @@ static void write_basis(ef_json *j, const match_scene *s) {
   ef_json_text(j, "source", s->own_jnd ? "--jnd" : s->jnd.source);
   ef_json_end_object(j);
   ef_json_integer(j, "bits", s->settings.bits);
+  if (s->seen.people.population == NULL)
+    return;
+  ef_json_begin_object(j, "population");
+  people_write(j, &s->seen.people);
+  ef_json_end_object(j);
+}
+
+static void write_spread(ef_json *j, const char *key, const ef_spread *spread) {
+  record r = record_of_json(j);
+  record_begin(&r, key);
+  record_spread(&r, spread);
+  record_end(&r);
 }
 
 static void write_summary(ef_json *j, const match_scene *s,
@@ -212,6 +242,12 @@ static void write_summary(ef_json *j, const match_scene *s,
     ef_json_number(j, "tolerance", s->tolerance);
     ef_json_integer(j, "beyond_tolerance", (int64_t)sum->n_beyond);
   }
+  if (s->seen.people.population != NULL) {
+    ef_json_number(j, "observer_metamerism_index", sum->in_gamut.mean);
+    write_spread(j, "population_in_gamut", &sum->in_gamut);
+    write_spread(j, "population_all", &sum->all);
+    ef_json_text(j, "population_worst_name", sum->worst_seen_name);
+  }
   ef_json_end_object(j);
 }
 
@@ -225,7 +261,9 @@ static ef_status begin(void *self, const match_scene *s, ef_error *error) {
       return error->status;
     record r = record_of_csv(d->csv, true);
     const ef_match none = {0};
-    record_match(&r, s, "", &none);
+    const ef_spread no_spread = {0};
+    record_match(&r, s, "", &none,
+                 s->seen.people.population != NULL ? &no_spread : NULL);
     return EF_OK;
   }
   d->json = ef_json_new(d->output, error);
@@ -240,14 +278,15 @@ static ef_status begin(void *self, const match_scene *s, ef_error *error) {
   return EF_OK;
 }
 
-static ef_status rows(void *self, const match_scene *s, const ef_block *block,
-                      const ef_match *matches, ef_error *error) {
+static ef_status rows(void *self, const match_scene *s, const match_rows *rows,
+                      ef_error *error) {
   (void)error; /* the writers keep their errors until they are finished */
   match_data *d = self;
-  for (size_t i = 0; i < block->n; ++i) {
+  for (size_t i = 0; i < rows->n; ++i) {
     record r =
         d->is_csv ? record_of_csv(d->csv, false) : record_of_json(d->json);
-    record_match(&r, s, block->name[i], &matches[i]);
+    record_match(&r, s, rows->name[i], &rows->match[i],
+                 rows->spread != NULL ? &rows->spread[i] : NULL);
   }
   return EF_OK;
 }

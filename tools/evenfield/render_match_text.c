@@ -6,19 +6,13 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "dichromat.h"
 #include "message.h"
 #include "text.h"
 #include "words.h"
 
 /* A person reads so many rows; of a longer list the worst are shown. */
 enum { MOST_ROWS = 200, WORST_ROWS = 50, MOST_READINGS = 12 };
-
-typedef struct kept_row {
-  char *name;
-  size_t order; /* in the file */
-  ef_match match;
-  double difference;
-} kept_row;
 
 struct match_text {
   ef_output *output;
@@ -55,21 +49,26 @@ static void thin(match_text *t) {
     free(t->row[--t->n_rows].name);
 }
 
-static ef_status keep(void *self, const match_scene *s, const ef_block *block,
-                      const ef_match *matches, ef_error *error) {
+static ef_status keep(void *self, const match_scene *s, const match_rows *rows,
+                      ef_error *error) {
   match_text *t = self;
-  for (size_t i = 0; i < block->n; ++i) {
-    const double difference = match_achieved(s, &matches[i])->difference;
+  for (size_t i = 0; i < rows->n; ++i) {
+    const ef_match *match = &rows->match[i];
+    const ef_spread spread =
+        rows->spread != NULL ? rows->spread[i] : (ef_spread){0};
+    const double difference = rows->spread != NULL
+                                  ? spread.p95
+                                  : match_achieved(s, match)->difference;
     const size_t order = t->n_seen++;
     if (t->worst_only && t->n_rows >= WORST_ROWS &&
         difference <= t->row[WORST_ROWS - 1].difference) {
       continue;
     }
-    char *name = strdup(block->name[i]);
+    char *name = strdup(rows->name[i]);
     if (name == NULL) {
       return message_fail(error, EF_NO_MEMORY, "out of memory for names");
     }
-    t->row[t->n_rows++] = (kept_row){name, order, matches[i], difference};
+    t->row[t->n_rows++] = (kept_row){name, order, *match, spread, difference};
     if (t->n_rows > MOST_ROWS)
       thin(t);
   }
@@ -81,6 +80,29 @@ static ef_status keep(void *self, const match_scene *s, const ef_block *block,
 static double hue_of(const match_scene *s, ef_xyz xyz) {
   const ef_lab lab = ef_xyz_to_lab(xyz, ef_setup_white(s->setup));
   return ef_lab_to_lch(lab).h_deg;
+}
+
+static bool is_flat(const match_scene *s) {
+  return ef_observer_dimensions(s->observer) < 3;
+}
+
+/* "This display", or whom it is for when that is not everybody. */
+static void add_display(text *t, const match_scene *s) {
+  ef_cone_model model;
+  if (is_flat(s) && ef_observer_model(s->observer, &model)) {
+    text_format(t, "To a %s this display",
+                ef_deficiency_name(model.deficiency));
+  } else {
+    text_add(t, "This display");
+  }
+}
+
+/* Of colours in two dimensions lightness and chroma are all there is to say. */
+static void add_direction(const match_scene *s, ef_components parts,
+                          ef_xyz target, char direction[WORDS_ROOM]) {
+  if (is_flat(s))
+    parts.hue = 0.0;
+  words_direction(parts, hue_of(s, target), direction);
 }
 
 /* "5.32 Delta E*00 (5.3 JND)" */
@@ -96,8 +118,9 @@ static void add_difference(text *t, const match_scene *s, double value) {
 
 static void add_answer_for_one(text *t, const match_scene *s,
                                const match_summary *sum) {
+  add_display(t, s);
   if (sum->n_in_gamut == 1) {
-    text_format(t, "This display can show %s", sum->worst_name);
+    text_format(t, " can show %s", sum->worst_name);
     if (s->settings.bits > 0) {
       text_format(t, "; its best %d-bit code is off by ", s->settings.bits);
       add_difference(t, s, sum->worst);
@@ -105,10 +128,9 @@ static void add_answer_for_one(text *t, const match_scene *s,
     return;
   }
   char direction[WORDS_ROOM];
-  words_direction(sum->worst_miss_parts, hue_of(s, sum->worst_miss_target),
-                  direction);
+  add_direction(s, sum->worst_miss_parts, sum->worst_miss_target, direction);
   text_format(t,
-              "This display cannot show %s: the nearest colour it has is "
+              " cannot show %s: the nearest colour it has is "
               "off by ",
               sum->worst_name);
   add_difference(t, s, sum->worst_miss);
@@ -117,7 +139,8 @@ static void add_answer_for_one(text *t, const match_scene *s,
 
 static void add_answer_for_all(text *t, const match_scene *s,
                                const match_summary *sum) {
-  text_format(t, "This display can show all %zu targets", sum->n);
+  add_display(t, s);
+  text_format(t, " can show all %zu targets", sum->n);
   if (s->settings.bits == 0)
     return;
   text_format(t, "; as %d-bit codes the worst, %s, is off by ",
@@ -128,11 +151,11 @@ static void add_answer_for_all(text *t, const match_scene *s,
 static void add_answer_for_some(text *t, const match_scene *s,
                                 const match_summary *sum) {
   const size_t n_out = sum->n - sum->n_in_gamut;
+  add_display(t, s);
   if (sum->n_in_gamut == 0) {
-    text_format(t, "This display can show none of the %zu targets", sum->n);
+    text_format(t, " can show none of the %zu targets", sum->n);
   } else {
-    text_format(t, "This display can show %zu of the %zu targets",
-                sum->n_in_gamut, sum->n);
+    text_format(t, " can show %zu of the %zu targets", sum->n_in_gamut, sum->n);
   }
   if (sum->n_near > 0) {
     text_format(t, "%s%zu more to within one JND",
@@ -167,14 +190,16 @@ static void add_second_lines(text *t, const match_scene *s,
                              const match_summary *sum) {
   if (s->demo_targets && s->demo_display) {
     text_add(t, "No files were named, so this is the built-in demo: a ferry's "
-                "painted colours\n(demo:livery) on a ticket kiosk's display "
-                "(demo:kiosk-measurements).\n");
+                "painted colours\n(demo:livery) on a ticket kiosk's display (");
+    text_format(t, "%s).\n", s->display.source);
   } else if (s->demo_targets) {
     text_add(t, "No targets were named, so these are the demo's painted "
                 "colours (demo:livery).\n");
   } else if (s->demo_display) {
-    text_add(t, "No display was named, so this is the demo's ticket kiosk "
-                "(demo:kiosk-measurements).\n");
+    text_format(t,
+                "No display was named, so this is the demo's ticket kiosk "
+                "(%s).\n",
+                s->display.source);
   }
   if (s->options->check) {
     char tolerance[EF_NUMBER_TEXT];
@@ -344,7 +369,7 @@ static void add_miss(text *out, const match_scene *s, const kept_row *row) {
   const ef_device *device = s->display.device;
   text t = {0};
   char direction[WORDS_ROOM], amount[EF_NUMBER_TEXT];
-  words_direction(m->nearest.components, hue_of(s, m->target), direction);
+  add_direction(s, m->nearest.components, m->target, direction);
   text_format(&t, "%s: the nearest colour is off by ", row->name);
   add_difference(&t, s, m->nearest.difference);
   text_format(&t, ", %s; in the way: ", direction);
@@ -406,16 +431,26 @@ static void add_pictures(text *out, const match_scene *s) {
   text t = {0};
   text_format(&t,
               "Pictures are in %.900s: a split field of each target (left the "
-              "target, right what is shown, a striped corner where that is no "
-              "exact match), and all of them on sheet.png.",
-              s->options->pictures);
+              "target, right what is shown%s), and all of them on sheet.png.",
+              s->options->pictures,
+              s->options->seen_by < 0
+                  ? ", a striped corner where that is no exact match"
+                  : "");
+  if (s->options->seen_by >= 0) {
+    text_format(&t,
+                " They are drawn as a %s is taken to see them (Brettel, Vienot "
+                "& Mollon 1997): a picture of a model, which tells nothing "
+                "about the eyes of any one person. The striped corner tells "
+                "where the halves then still differ by more than one JND.",
+                dichromat_name(s->options->seen_by));
+  }
   text_add(out, "\n");
   text_wrap(out, t.bytes != NULL ? t.bytes : "", 0);
   out->failed = out->failed || t.failed;
   text_free(&t);
 }
 
-static const char people[] =
+static const char closing[] =
     "These figures hold for the observer named above. People differ from that "
     "observer and from each other, and what they see changes with the size of "
     "the field, its surround, brightness and glare: read a JND as a guide, and "
@@ -437,13 +472,15 @@ static ef_status end(void *self, const match_scene *s, const match_summary *sum,
     thin(m);
   text out = {0};
   add_answer(&out, s, sum);
+  render_match_people_answer(&out, s, sum);
   add_second_lines(&out, s, sum);
   add_table(&out, m, s);
+  render_match_people(&out, s, sum, m->n_rows, m->row);
   add_misses(&out, m, s, sum);
   add_pictures(&out, s);
   render_match_basis(&out, s, sum);
   text_add(&out, "\n");
-  text_wrap(&out, people, 0);
+  text_wrap(&out, closing, 0);
   const ef_status status = text_write(&out, m->output, error);
   text_free(&out);
   return status;

@@ -18,6 +18,9 @@ typedef struct swatch_scene {
   const char *none, *some; /**< what it means that no pair or so many pairs have
                                 a striped corner, a phrase */
   bool is_demo;
+  const char *display; /**< of the demo */
+  char observer[400];  /**< whose colours they are */
+  bool cones_borrowed;
 } swatch_scene;
 
 ef_status render_swatch(const swatch_scene *s, const command_options *options,

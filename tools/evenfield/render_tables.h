@@ -20,6 +20,9 @@ typedef struct catalogue {
  * `tables` alone prints. */
 size_t catalogue_all(const catalogue **catalogues);
 
+/** NULL when there is none of that name. */
+const catalogue *catalogue_find(const char *name);
+
 ef_status render_catalogue(const catalogue *c, int format, ef_output *output,
                            ef_error *error);
 ef_status render_table(const ef_table *table, int format, ef_output *output,

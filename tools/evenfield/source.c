@@ -64,22 +64,61 @@ static ef_spectra *read_spectra(const command_options *options,
 
 /* ---- Observers --------------------------------------------------------- */
 
-ef_observer *source_observer(const command_options *options,
-                             const ef_notes *notes, ef_error *error) {
-  const char *name = options->observer != NULL ? options->observer : "cie-1931";
+/* Of a file that holds x_bar, y_bar, z_bar and more, as `observer build` writes
+ * it, these three; else all. Takes `all` over. */
+static ef_spectra *only_matching(ef_spectra *all, const char *path,
+                                 const ef_notes *notes, ef_error *error) {
+  static const char *const names[3] = {"x_bar", "y_bar", "z_bar"};
+  const size_t n_samples = ef_spectra_grid(all)->count;
+  size_t place[3];
+  bool has_names = ef_spectra_count(all) > 3;
+  for (size_t i = 0; i < 3 && has_names; ++i) {
+    ef_error ignored;
+    has_names = ef_spectra_find(all, names[i], &place[i], &ignored) == EF_OK;
+  }
+  double *value = has_names ? malloc(3 * n_samples * sizeof *value) : NULL;
+  if (!has_names)
+    return all;
+  ef_spectra *three = NULL;
+  if (value == NULL) {
+    message_fail(error, EF_NO_MEMORY, "out of memory for an observer");
+  } else {
+    for (size_t i = 0; i < 3; ++i) {
+      memcpy(value + i * n_samples,
+             ef_spectra_values(all) + place[i] * n_samples,
+             n_samples * sizeof *value);
+    }
+    three =
+        ef_spectra_new(3, names, ef_spectra_grid(all), EF_LIGHT, value, error);
+    message_note(notes,
+                 "%s: of its %zu functions x_bar, y_bar and z_bar are "
+                 "taken",
+                 path, ef_spectra_count(all));
+  }
+  free(value);
+  ef_spectra_free(all);
+  return three;
+}
+
+ef_observer *source_observer_named(const command_options *options,
+                                   const char *name, const char *what,
+                                   const ef_notes *notes, ef_error *error) {
   ef_observer *observer = ef_observer_new(name, error);
   if (observer != NULL)
     return observer;
   if (error->status != EF_UNKNOWN_NAME) {
-    message_option(error, "observer", "");
+    message_argument(error, what, "");
     return NULL;
   }
   if (!source_is_file(name)) {
-    message_option(error, "observer", no_file);
+    /* With settings behind a colon no file can be meant. */
+    message_argument(error, what, strchr(name, ':') == NULL ? no_file : "");
     return NULL;
   }
   ef_spectra *functions =
       read_spectra(options, name, EF_KIND_FUNCTION, notes, error);
+  if (functions != NULL)
+    functions = only_matching(functions, name, notes, error);
   if (functions == NULL)
     return NULL;
   observer = ef_observer_from_spectra(name, functions, error);
@@ -87,6 +126,12 @@ ef_observer *source_observer(const command_options *options,
     message_place(error, name);
   ef_spectra_free(functions);
   return observer;
+}
+
+ef_observer *source_observer(const command_options *options,
+                             const ef_notes *notes, ef_error *error) {
+  const char *name = options->observer != NULL ? options->observer : "cie-1931";
+  return source_observer_named(options, name, "--observer", notes, error);
 }
 
 /* ---- Illuminants ------------------------------------------------------- */

@@ -22,6 +22,10 @@ ef_reader *source_reader(const command_options *options, const char *path,
 /** --observer: a name or a file. */
 ef_observer *source_observer(const command_options *options,
                              const ef_notes *notes, ef_error *error);
+/** The same of any name; `what` names the argument in messages. */
+ef_observer *source_observer_named(const command_options *options,
+                                   const char *name, const char *what,
+                                   const ef_notes *notes, ef_error *error);
 /** A light by name, FILE or FILE:COLUMN; `option` names the option in
  * messages. */
 ef_illuminant *source_illuminant(const command_options *options,

@@ -4,6 +4,8 @@
 #include <math.h>
 #include <stdio.h>
 
+#include <evenfield/match.h>
+
 #include "message.h"
 
 /* ---- What the numbers are ---------------------------------------------- */
@@ -54,8 +56,8 @@ static ef_status set_adaptation(targets *t, const command_options *options,
     if (status != EF_OK)
       return message_option(error, "adaptation", "");
   }
-  return ef_adaptation_matrix(t->adaptation, white, ef_setup_white(t->setup),
-                              t->adapt, error);
+  return ef_match_adaptation(ef_setup_observer(t->setup), t->adaptation, white,
+                             ef_setup_white(t->setup), t->adapt, error);
 }
 
 static void describe(targets *t, const char *light) {

@@ -5,6 +5,10 @@
 #include <stdio.h>
 #include <string.h>
 
+const char words_two_dimensions[] =
+    "for these eyes colours have two dimensions only: X, Y, Z and what follows "
+    "from them lie on one plane, and differences are taken within it";
+
 /* The unique hues' words on the CIELAB axes, anticlockwise from +a*. */
 static const char *const hue_words[] = {"redder", "yellower", "greener",
                                         "bluer"};

@@ -8,6 +8,9 @@
 
 #define WORDS_ROOM 200
 
+/** What to know of an observer whose colours have two dimensions. */
+extern const char words_two_dimensions[];
+
 /** How a sample with these components (sample minus reference) differs from a
  * reference of hue `h_deg`: "duller by 4.8, lighter by 1.2"; the largest
  * part first, parts below a tenth of the whole left out, "alike" when all are
