@@ -374,7 +374,7 @@ static void a_small_case_by_hand(void **state) {
 
 static bool try_stimulator(void *context) {
   invented *i = context;
-  ef_error error = {EF_OK};
+  ef_error error = {.status = EF_OK};
   ef_stimulator *s =
       ef_stimulator_new(i->device, i->observer, NULL, NULL, &error);
   const bool made = s != NULL;

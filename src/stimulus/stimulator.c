@@ -90,7 +90,7 @@ static ef_status see(const ef_stimulator *s, ef_channel_role role,
                      const ef_notes *notes, double *out, ef_error *error) {
   ef_viewing viewing = ef_viewing_default(NULL);
   viewing.absolute = ef_device_absolute(s->device);
-  ef_error failure = {EF_OK};
+  ef_error failure = {.status = EF_OK};
   ef_weights *const weights = ef_observer_weights(s->observer, role, &s->grid,
                                                   &viewing, notes, &failure);
   ef_status status = failure.status;

@@ -134,7 +134,7 @@ static void excitations(const scene *s, deviation *d) {
 static ef_isolation isolate(const scene *s, const char *direction) {
   ef_error error;
   ef_direction way;
-  ef_isolation out;
+  ef_isolation out = {0};
   const ef_isolate_settings settings = ef_isolate_settings_default();
   if (ef_direction_parse(direction, &way, &error) != EF_OK ||
       ef_isolate(s->stimulator, &way, &settings, &out, &error) != EF_OK)

@@ -45,7 +45,7 @@ static double polish(const grid_search *s, const double target[3],
   coordinates_at(s, amount, coordinate);
   double least = ef_metric_difference(s->metric, target, coordinate);
   for (double step = 1.0 / (s->side - 1); step > 1e-10;) {
-    double best_root[3], before = least;
+    double best_root[3] = {0, 0, 0}, before = least;
     for (int code = 0; code < 27; ++code) {
       const int digit[3] = {code % 3 - 1, code / 3 % 3 - 1, code / 9 - 1};
       double to[3], to_root[3];
