@@ -238,6 +238,19 @@ EF_API ef_status ef_png_write(const char *path, bool overwrite, size_t width,
                               size_t height, int bits, const uint16_t *sample,
                               const ef_png_tags *tags, ef_error *error);
 
+/** Gives the rows of a picture, from the top, each once. */
+typedef struct ef_png_rows {
+  /** Fills row `y`, width x 3 samples in 16-bit range. */
+  void (*fill)(void *cookie, size_t y, uint16_t *sample);
+  void *cookie;
+} ef_png_rows;
+
+/** Like ef_png_write, holding one row at a time. */
+EF_API ef_status ef_png_write_rows(const char *path, bool overwrite,
+                                   size_t width, size_t height, int bits,
+                                   const ef_png_rows *rows,
+                                   const ef_png_tags *tags, ef_error *error);
+
 #ifdef __cplusplus
 }
 #endif

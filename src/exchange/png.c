@@ -22,6 +22,7 @@ typedef struct picture {
   png_structp png;
   png_infop info;
   png_byte *row;
+  uint16_t *sample; /* of the row */
   ef_error error; /* of the output, if it failed */
   char reason[160]; /* of libpng */
 } picture;
@@ -102,13 +103,14 @@ static void fill_row(png_byte *row, size_t n, int bits,
 
 /* Everything that may jump; false when it did. */
 static bool write_picture(picture *p, size_t width, size_t height, int bits,
-                          const uint16_t *sample, const ef_png_tags *tags) {
+                          const ef_png_rows *rows, const ef_png_tags *tags) {
   const size_t n = width * CHANNELS;
   if (setjmp(png_jmpbuf(p->png)) != 0) return false;
   png_set_write_fn(p->png, p, write_bytes, flush_nothing);
   write_head(p, width, height, bits, tags);
   for (size_t y = 0; y < height; ++y) {
-    fill_row(p->row, n, bits, sample + y * n);
+    rows->fill(rows->cookie, y, p->sample);
+    fill_row(p->row, n, bits, p->sample);
     png_write_row(p->png, p->row);
   }
   png_write_end(p->png, p->info);
@@ -163,22 +165,24 @@ static ef_status refuse(const picture *p, const char *path, ef_error *error) {
 }
 
 static ef_status write_to(picture *p, const char *path, size_t width,
-                          size_t height, int bits, const uint16_t *sample,
+                          size_t height, int bits, const ef_png_rows *rows,
                           const ef_png_tags *tags, ef_error *error) {
   p->png = png_create_write_struct(PNG_LIBPNG_VER_STRING, p, keep_reason,
                                    ignore_warning);
   if (p->png != NULL) p->info = png_create_info_struct(p->png);
   p->row = ef__allocate(width * CHANNELS, (size_t)bits / 8);
-  if (p->png == NULL || p->info == NULL || p->row == NULL) {
+  p->sample = ef__allocate(width * CHANNELS, sizeof *p->sample);
+  if (p->png == NULL || p->info == NULL || p->row == NULL ||
+      p->sample == NULL) {
     return ef__error_memory(error, "a picture");
   }
-  if (write_picture(p, width, height, bits, sample, tags)) return EF_OK;
+  if (write_picture(p, width, height, bits, rows, tags)) return EF_OK;
   return refuse(p, path, error);
 }
 
-ef_status ef_png_write(const char *path, bool overwrite, size_t width,
-                       size_t height, int bits, const uint16_t *sample,
-                       const ef_png_tags *tags, ef_error *error) {
+ef_status ef_png_write_rows(const char *path, bool overwrite, size_t width,
+                            size_t height, int bits, const ef_png_rows *rows,
+                            const ef_png_tags *tags, ef_error *error) {
   ef_status status = check(width, height, bits, tags, error);
   if (status != EF_OK) return status;
   ef_error opening = {0};
@@ -187,10 +191,32 @@ ef_status ef_png_write(const char *path, bool overwrite, size_t width,
     if (error != NULL) *error = opening;
     return opening.status;
   }
-  status = write_to(&p, path, width, height, bits, sample, tags, error);
+  status = write_to(&p, path, width, height, bits, rows, tags, error);
   png_destroy_write_struct(&p.png, &p.info);
+  free(p.sample);
   free(p.row);
   if (status == EF_OK) return ef_output_commit(p.output, error);
   ef_output_discard(p.output);
   return status;
+}
+
+/* ---- Pictures in memory ------------------------------------------------ */
+
+typedef struct whole {
+  const uint16_t *sample;
+  size_t n; /* a row */
+} whole;
+
+static void copy_row(void *cookie, size_t y, uint16_t *sample) {
+  const whole *const w = cookie;
+  memcpy(sample, w->sample + y * w->n, w->n * sizeof *sample);
+}
+
+ef_status ef_png_write(const char *path, bool overwrite, size_t width,
+                       size_t height, int bits, const uint16_t *sample,
+                       const ef_png_tags *tags, ef_error *error) {
+  whole w = {sample, width * CHANNELS};
+  const ef_png_rows rows = {copy_row, &w};
+  return ef_png_write_rows(path, overwrite, width, height, bits, &rows, tags,
+                           error);
 }
