@@ -331,6 +331,168 @@ EF_API ef_status ef_isolation_codes(const ef_stimulator *stimulator,
                                     const ef_codes_settings *settings,
                                     ef_coded *out, ef_error *error);
 
+/* ---- Waveforms ----------------------------------------------------------- */
+
+typedef enum ef_waveform_kind {
+  EF_WAVEFORM_STEADY, /**< 1 throughout */
+  EF_WAVEFORM_SINUSOID,
+  EF_WAVEFORM_SQUARE
+} ef_waveform_kind;
+
+/** A modulation in time. */
+typedef struct ef_waveform {
+  ef_waveform_kind kind;
+  double frequency_hz; /**< above 0 unless steady */
+  double phase_deg;    /**< 0: sine, rising through 0 at the start; square: up
+                            from the start */
+  double duty;         /**< of a square: share of the cycle that is up, between
+                            0 and 1 */
+  double duration_s;   /**< 0: a single frame that stands */
+  double ramp_s;       /**< raised-cosine rise and fall at the ends, inside the
+                            duration */
+} ef_waveform;
+
+/** Steady, 1 Hz, duty 0.5, a single frame, no ramps. */
+EF_API ef_waveform ef_waveform_default(void);
+/** "steady", "sinusoid", "square". Static. */
+EF_API const char *ef_waveform_name(ef_waveform_kind kind);
+EF_API ef_status ef_waveform_find(const char *name, ef_waveform_kind *out,
+                                  ef_error *error);
+/** Frames that the duration takes, to the nearest, at least 1. */
+EF_API size_t ef_waveform_frames(const ef_waveform *waveform,
+                                 double frame_rate_hz);
+/** EF_INVALID names the number at fault; a frequency above half the frame rate
+ * is one. A note tells when a cycle is not a whole number of frames. */
+EF_API ef_status ef_waveform_check(const ef_waveform *waveform,
+                                   double frame_rate_hz, const ef_notes *notes,
+                                   ef_error *error);
+/** The wave itself at a time, -1 to 1. */
+EF_API double ef_waveform_at(const ef_waveform *waveform, double time_s);
+/** Share that the ramps leave of it, 0 to 1; 0 before and after. 1 for a frame
+ * that stands. */
+EF_API double ef_waveform_ramp(const ef_waveform *waveform, double time_s);
+
+/* ---- Frames ---------------------------------------------------------------
+ */
+
+/** Angles on a flat screen seen straight ahead from `distance_mm`: what lies x
+ * from the middle is seen at atan(x / distance). */
+EF_API double ef_degrees_to_pixels(double angle_deg, double distance_mm,
+                                   double pixels_per_mm);
+EF_API double ef_pixels_to_degrees(double pixels, double distance_mm,
+                                   double pixels_per_mm);
+
+typedef enum ef_pattern {
+  EF_PATTERN_UNIFORM, /**< the whole frame */
+  EF_PATTERN_DISC,
+  EF_PATTERN_ANNULUS,
+  EF_PATTERN_GRATING, /**< in a disc, or over the whole frame */
+  EF_PATTERN_GABOR    /**< a grating in a Gaussian */
+} ef_pattern;
+
+/** "uniform", "disc", "annulus", "grating", "gabor". Static. */
+EF_API const char *ef_pattern_name(ef_pattern pattern);
+EF_API ef_status ef_pattern_find(const char *name, ef_pattern *out,
+                                 ef_error *error);
+
+typedef enum ef_dither {
+  EF_DITHER_NONE, /**< each place has the codes that keep silent receptors
+                       quiet (ef_isolation_codes; above 10 bits rounded ones) */
+  /** Each primary is rounded up or down against a threshold that runs through
+   * 64 values over 8 x 8 pixels and moves on by the golden section from frame
+   * to frame, so that their mean is the amount wanted. */
+  EF_DITHER_ORDERED
+} ef_dither;
+
+typedef struct ef_frame_settings {
+  size_t width_px, height_px; /**< 1 to 32768 each */
+  double distance_mm;         /**< from the eye to the screen */
+  double pixels_per_mm;
+  ef_pattern pattern;
+  double size_deg;  /**< diameter of the disc or annulus at half its edge, of
+                         the disc that a grating is cut to (0: not cut) */
+  double hole_deg;  /**< inner diameter of the annulus */
+  double edge_deg;  /**< width of the raised-cosine edges, centred on these */
+  double sigma_deg; /**< standard deviation of a Gabor's Gaussian */
+  double cycles_per_deg;
+  double orientation_deg; /**< direction in which the grating changes,
+                               counterclockwise; 0: to the right */
+  double phase_deg;       /**< 0: a peak in the middle */
+  double drift_hz;        /**< cycles a second that the grating moves in its
+                               direction; negative: against it */
+  double centre_x_deg, centre_y_deg; /**< right of and above the middle */
+  ef_waveform waveform;
+  double frame_rate_hz;
+  int bits; /**< 8, 10 or 16 */
+  ef_dither dither;
+  uint64_t seed;     /**< of the thresholds */
+  double most_bytes; /**< of all frames together, uncompressed */
+} ef_frame_settings;
+
+/** 1920 x 1080 pixels of 0.25 mm at 700 mm; a disc of 2 degrees with edges of
+ * 0.2; 2 cycles a degree, sigma 0.5; the default waveform at 60 Hz; 8 bits, no
+ * dithering, seed 1, 4e9 bytes. */
+EF_API ef_frame_settings ef_frame_settings_default(void);
+
+/** Frames of a modulation, made row by row; immutable, owns its memory. At each
+ * place the modulation is multiplied by a level: window x ramp x w, with w the
+ * grating times the waveform, and for a pulse (1 + w) / 2, so that it stays on
+ * its side. A frame shows the waveform at the middle of its time. */
+typedef struct ef_frames ef_frames;
+
+/** The stimulator must outlive the frames. EF_INVALID for settings outside
+ * their ranges, for a grating finer than two pixels a cycle in the middle, for
+ * a frequency above half the frame rate, and for more bytes than allowed; each
+ * message has the figure. Notes: a pattern that does not fit into the frame,
+ * codes that are rounded. Free with ef_frames_free. */
+EF_API ef_frames *ef_frames_new(const ef_stimulator *stimulator,
+                                const ef_isolation *isolation,
+                                const ef_frame_settings *settings,
+                                const ef_notes *notes, ef_error *error);
+EF_API void ef_frames_free(ef_frames *frames);
+EF_API size_t ef_frames_count(const ef_frames *frames);
+/** As given; borrowed until freed. */
+EF_API const ef_frame_settings *ef_frames_settings(const ef_frames *frames);
+/** Bytes of all frames, uncompressed: one a code for 8 bits, else two, with
+ * primaries in pictures of three. */
+EF_API double ef_frames_bytes(const ef_frames *frames);
+/** Levels of row `y` (0: the top) of a frame, `width_px` values, -1 to 1. */
+EF_API void ef_frames_levels(const ef_frames *frames, size_t frame, size_t y,
+                             double *level);
+/** Codes of that row, width_px x n_primaries, 0 to 2^bits - 1. */
+EF_API void ef_frames_row(const ef_frames *frames, size_t frame, size_t y,
+                          uint16_t *code);
+/** A code as a 16-bit sample of a picture: 257 times one of 8 bits; ten bits in
+ * the upper ten with the upper six repeated below; 16 bits as they are. */
+EF_API uint16_t ef_code_to_sample(int bits, uint32_t code);
+
+/** How much of the frame the pattern takes where its window is at least one
+ * half. */
+typedef struct ef_frame_area {
+  double solid_angle_sr;
+  double share_of_frame; /**< of its pixels */
+  double frame_solid_angle_sr;
+} ef_frame_area;
+EF_API ef_frame_area ef_frames_area(const ef_frames *frames);
+
+/** What dithering does to a modulation at full level. */
+typedef struct ef_dither_effect {
+  /** Contrast of the mean over 8 x 8 pixels and 16 frames against the mean of
+   * the background over the same. */
+  double contrast[EF_N_RECEPTORS];
+  double residual;         /**< largest absolute one in a silent receptor */
+  double rounded_residual; /**< the same with plainly rounded codes */
+  /** Noise that the pixels pay for it: standard deviation of a pixel's contrast
+   * in one frame. */
+  double noise[EF_N_RECEPTORS];
+} ef_dither_effect;
+
+/** Measured on the codes that ef_frames_row would give. `bits` 8, 10 or 16. */
+EF_API ef_status ef_isolation_dither(const ef_stimulator *stimulator,
+                                     const ef_isolation *isolation, int bits,
+                                     uint64_t seed, ef_dither_effect *out,
+                                     ef_error *error);
+
 #ifdef __cplusplus
 }
 #endif

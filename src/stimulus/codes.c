@@ -130,10 +130,10 @@ static void find_centre(const ef__fit *fit, const ef_isolation *isolation,
 
 void ef__fit_codes(const ef__fit *fit, const ef__codes *codes,
                    const ef_isolation *isolation, double level,
-                   uint32_t *code) {
+                   size_t most_places, uint32_t *code) {
   nearest found = {.n = fit->n, .least = HUGE_VAL};
   ef__walk walk = {.codes = codes,
-                   .most_places = MOST_PLACES,
+                   .most_places = most_places,
                    .bound = HUGE_VAL,
                    .visit = keep_nearest,
                    .context = &found};
@@ -217,9 +217,9 @@ static void choose(const ef_stimulator *stimulator,
   for (size_t r = 0; r < EF_N_RECEPTORS; ++r)
     out->background_error[r] = fit.excitation[r] / isolation->excitation[r] - 1;
   memcpy(out->low, out->background, sizeof out->low);
-  ef__fit_codes(&fit, codes, isolation, 1, out->high);
+  ef__fit_codes(&fit, codes, isolation, 1, MOST_PLACES, out->high);
   if (both)
-    ef__fit_codes(&fit, codes, isolation, -1, out->low);
+    ef__fit_codes(&fit, codes, isolation, -1, MOST_PLACES, out->low);
   ef__fit_contrasts(&fit, codes, out->high, out->contrast_high);
   ef__fit_contrasts(&fit, codes, out->low, out->contrast_low);
   out->along_high = ef__along(isolation, out->contrast_high, &unused);

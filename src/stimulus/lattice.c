@@ -50,6 +50,12 @@ static uint32_t first_at_least(const ef__codes *codes, size_t i,
   return (uint32_t)low;
 }
 
+uint32_t ef__codes_below(const ef__codes *codes, size_t i, double amount) {
+  const double *const row = codes->amount + i * codes->n_codes;
+  const uint32_t up = first_at_least(codes, i, amount);
+  return up > 0 && row[up] > amount ? up - 1 : up;
+}
+
 uint32_t ef__codes_round(const ef__codes *codes, size_t i, double amount) {
   const double *const row = codes->amount + i * codes->n_codes;
   const uint32_t up = first_at_least(codes, i, amount);

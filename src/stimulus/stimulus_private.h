@@ -152,6 +152,8 @@ typedef struct ef__codes {
 /** One block, released with free(). `bits` 1 to 16. */
 ef_status ef__codes_new(const ef_device *device, int bits, ef__codes **out,
                         ef_error *error);
+/** Last code whose amount is not above `amount`; 0 when there is none. */
+uint32_t ef__codes_below(const ef__codes *codes, size_t i, double amount);
 /** Code whose amount is nearest. */
 uint32_t ef__codes_round(const ef__codes *codes, size_t i, double amount);
 
@@ -190,9 +192,11 @@ typedef struct ef__fit {
 void ef__fit_set(ef__fit *fit, const ef_stimulator *stimulator,
                  const ef_isolation *isolation, const ef__codes *codes,
                  const uint32_t *background, double quiet_weight);
-/** Codes for `level` times the modulation (-1 to 1). */
+/** Codes for `level` times the modulation (-1 to 1), the best of the first
+ * `most_places` places. */
 void ef__fit_codes(const ef__fit *fit, const ef__codes *codes,
-                   const ef_isolation *isolation, double level, uint32_t *code);
+                   const ef_isolation *isolation, double level,
+                   size_t most_places, uint32_t *code);
 /** Contrasts of amounts, and of codes, against the background of the fit; NaN
  * for a receptor that it does not excite. */
 void ef__fit_contrasts_at(const ef__fit *fit, const double *amount,
@@ -204,5 +208,42 @@ void ef__fit_contrasts(const ef__fit *fit, const ef__codes *codes,
 void ef__smallest_step(const ef__fit *fit, const ef__codes *codes,
                        const ef_isolation *isolation, double purity,
                        ef_coded *out);
+
+/* ---- Frames (pattern.c, dither.c) ---------------------------------------- */
+
+/** Where a pixel lies, seen from the eye. */
+typedef struct ef__view {
+  double pixel_mm, distance_mm;
+  double middle_x, middle_y; /**< of the frame, in pixels from its corner */
+  double centre[3];          /**< of the pattern, mm; the screen is at z = 0 and
+                                  the eye at -distance */
+  double direction[2];       /**< of the grating */
+  double centre_angle_deg;   /**< of the pattern, along the direction */
+} ef__view;
+
+ef__view ef__view_of(const ef_frame_settings *settings);
+/** Window of the pattern at a pixel, 0 to 1. */
+double ef__pattern_window(const ef_frame_settings *settings,
+                          const ef__view *view, size_t x, size_t y);
+/** Grating at a pixel and time, -1 to 1; 1 for patterns without one. */
+double ef__pattern_carrier(const ef_frame_settings *settings,
+                           const ef__view *view, size_t x, size_t y,
+                           double time_s);
+/** Solid angle of a pixel. */
+double ef__pixel_sr(const ef__view *view, size_t x, size_t y);
+
+enum { EF__DITHER_TILE = 8 };
+
+/** Where the thresholds of each primary begin. */
+typedef struct ef__thresholds {
+  uint32_t dx[EF_MAX_DRIVES], dy[EF_MAX_DRIVES];
+  double offset[EF_MAX_DRIVES];
+} ef__thresholds;
+
+ef__thresholds ef__thresholds_of(size_t n, uint64_t seed);
+/** Code of primary i for an amount at a pixel of a frame. */
+uint32_t ef__dither_code(const ef__thresholds *thresholds,
+                         const ef__codes *codes, size_t i, double amount,
+                         size_t x, size_t y, size_t frame);
 
 #endif
