@@ -163,7 +163,9 @@ void people_add_who(text *out, const people *p) {
   ef_number_format(s->age_max_years, high);
   text_format(out, "%zu %s ", s->count, noun(p));
   if (p->age_file != NULL) {
-    text_format(out, "of the ages in %.200s", p->age_file);
+    const bool is_stdin = strcmp(p->age_file, "-") == 0;
+    text_format(out, "of the ages in %.200s",
+                is_stdin ? "standard input" : p->age_file);
   } else if (s->age_min_years < s->age_max_years) {
     text_format(out, "%s to %s years old", low, high);
   } else {

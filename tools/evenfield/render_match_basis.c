@@ -135,8 +135,9 @@ static void add_people(text *out, const match_scene *s) {
   people_add(&t, &s->seen.people);
   text_add(&t,
            "; their eyes vary in ocular media, macular pigment, density and "
-           "peak of the cone pigments (Asano, Fairchild & Blonde 2016), "
-           "each judges against the whites as they see them");
+           "peak of the cone pigments (Asano, Fairchild & Blonde 2016; their "
+           "standard deviations from memory and a second source), each judges "
+           "against the whites as they see them");
   if (!isnan(s->jnd.value))
     text_add(&t, " and tells apart what differs by more than one JND");
   else
