@@ -290,6 +290,294 @@ EF_API ef_status ef_fit_intervals(const ef_responses *responses,
                                   ef_fit *fit, ef_goodness *out,
                                   ef_error *error);
 
+/* ---- Groups ------------------------------------------------------------ */
+
+typedef enum ef_group_method {
+  EF_GROUP_RESTRICTED, /**< restricted maximum likelihood (REML) */
+  EF_GROUP_LIKELIHOOD  /**< maximum likelihood: the spread comes out too small
+                            for few observers */
+} ef_group_method;
+
+/** Several observers. Thresholds of people are taken as log-normal: ln
+ * threshold of one is normal about the group's with standard deviation
+ * `spread`, and known to its own standard error. */
+typedef struct ef_group {
+  size_t n, n_left_out;  /**< observers in the summary, and without a finite
+                              threshold above 0 and standard error */
+  ef_estimate mean;      /**< geometric mean; interval by Student's t (Hartung &
+                              Knapp 2001) */
+  double mean_ln, se_ln; /**< its logarithm and that one's standard error for a
+                              known spread */
+  ef_estimate spread; /**< of ln threshold across people; profile interval, se
+                           NaN */
+  double next_low, next_high; /**< where the next observer is expected */
+  double q, q_p_value; /**< Cochran's Q of no spread at all, chi-square with n -
+                            1 degrees of freedom */
+} ef_group;
+
+/** n thresholds and their standard errors. EF_NO_ANSWER for fewer than two that
+ * can be used. */
+EF_API ef_status ef_group_summary(size_t n, const double *threshold,
+                                  const double *se, ef_group_method method,
+                                  double level, const ef_notes *notes,
+                                  ef_group *out, ef_error *error);
+
+/* ---- What to show next ------------------------------------------------- */
+
+/** What the next answer should tell most about. */
+typedef enum ef_next_aim {
+  EF_NEXT_THRESHOLD, /**< the threshold alone, the width and lapses left open */
+  EF_NEXT_BOTH       /**< threshold and width together */
+} ef_next_aim;
+
+/** The answers so far and a prior become a posterior over a grid of threshold,
+ * width and lapse rate: flat in t, in the logarithm of the width, and in the
+ * lapse rate. NaN limits are set from the levels: the threshold from half their
+ * range (ten times, for a single one) below the lowest to as much above the
+ * highest, the width from 1/30 of the range to the whole. */
+typedef struct ef_next_settings {
+  ef_task task;
+  ef_shape shape;
+  ef_axis axis;
+  double guess; /**< NaN: by the task; for yes-no and same-different from the
+                     blanks among the answers, (k + 1/2) / (n + 1), else 0.02
+                     */
+  double criterion;                     /**< as in ef_fit_settings */
+  double threshold_low, threshold_high; /**< levels */
+  double width_low, width_high;         /**< in t */
+  double lapse_max;
+  size_t n_thresholds, n_widths, n_lapses; /**< of the grid, each at least 1 */
+  ef_next_aim aim;
+  double level;     /**< of the intervals */
+  double precision; /**< done when half the threshold's interval is at most this
+                         times the JND (the threshold where there is no JND); 0:
+                         never */
+  size_t most_trials; /**< done after these; 0: no end */
+  const ef_notes *notes;
+} ef_next_settings;
+/** Gaussian on a linear axis, Weibull on a logarithmic one for 2ifc and
+ * triangle; 81 x 21 x 4 places; lapses up to 0.06; the threshold; 95 %,
+ * precision 0.1. */
+EF_API ef_next_settings ef_next_settings_default(ef_task task);
+
+typedef struct ef_next {
+  size_t choice;         /**< of the levels in hand: shows most */
+  double gain_bits;      /**< expected loss of entropy by an answer there */
+  ef_estimate threshold; /**< mean, standard deviation, interval */
+  ef_estimate jnd;       /**< NaN for yes-no and same-different but with
+                              EF_SHAPE_DETECTION */
+  ef_estimate width;     /**< in t */
+  double lapse;          /**< mean */
+  double entropy_bits;   /**< of what is aimed at, on the grid */
+  double edge_share; /**< of the posterior on the grid's outermost thresholds;
+                          above 0.05 is noted: levels or limits are wrong */
+  size_t n_trials;
+  bool is_precise, is_done;
+} ef_next;
+
+/** Which of `n_levels` levels in hand to show next, from all answers so far
+ * (none: n_rows 0) and nothing else: the same answers give the same choice.
+ * `gain` (n_levels, may be NULL) receives the expected loss of entropy at each
+ * in bits; of equal ones the first is chosen. */
+EF_API ef_status ef_next_choose(const ef_responses *answers, size_t n_levels,
+                                const double *level,
+                                const ef_next_settings *settings, ef_next *out,
+                                double *gain, ef_error *error);
+
+/* ---- Plan -------------------------------------------------------------- */
+
+/** An up-down rule (Levitt, J. Acoust. Soc. Am. 49 (1971) 467): the level falls
+ * by `step_down` after `n_down` right answers in a row and rises by `step_up`
+ * after `n_up` wrong ones in a row; a change starts both counts anew. */
+typedef struct ef_up_down {
+  unsigned n_down, n_up;
+  double step_down, step_up; /**< factors of the level, above 1 */
+  double first_step; /**< either way until `n_turns_left_out` turns are over */
+  size_t n_turns_left_out; /**< of the estimate */
+} ef_up_down;
+/** 2 down, 1 up, by factors of 1.25, at first 1.6; 2 turns left out. */
+EF_API ef_up_down ef_up_down_default(void);
+
+/** Share of right answers at which the rule comes to rest: 0.5^(1 / n_down) for
+ * n_up 1 and equal steps (70.7 % for 2, 79.4 % for 3, 84.1 % for 4). NaN for a
+ * rule that is none. */
+EF_API double ef_up_down_target(const ef_up_down *rule);
+
+/** A way to find a threshold. */
+typedef enum ef_procedure {
+  EF_PROCEDURE_CONSTANT, /**< the same levels for all, maximum-likelihood fit */
+  EF_PROCEDURE_UP_DOWN,  /**< one run, mean of the levels at its turns; 2ifc and
+                              triangle only */
+  EF_PROCEDURE_ADAPTIVE  /**< each level chosen by the least expected entropy,
+                              posterior mean */
+} ef_procedure;
+EF_API const char *ef_procedure_name(ef_procedure procedure);
+
+/** A panel to be planned, and the people it will meet. */
+typedef struct ef_plan_settings {
+  ef_task task;
+  ef_shape shape; /**< of the observers and of the fit */
+  ef_axis axis;
+  double jnd;          /**< expected */
+  double equality;     /**< greater-less: expected point of equality */
+  double exponent;     /**< of d' (detection, Weibull) */
+  double lapse;        /**< of the observers; the fit allows up to 0.06 */
+  double false_alarms; /**< of yes-no and same-different */
+  double uncertainty;  /**< standard deviation of ln JND before the experiment:
+                            where the levels are set in relation to the truth */
+  double spread;       /**< standard deviation of ln JND across people */
+  size_t n_levels;     /**< of constant stimuli */
+  size_t n_in_hand;    /**< levels to choose from adaptively, equally spread */
+  double lowest, highest; /**< level, in expected JND: of the difference;
+                               greater-less: from the point of equality */
+  ef_up_down rule;        /**< begins at the highest level */
+  double other_jnd;     /**< power: JND to be told from the expected one; NaN */
+  size_t n_experiments; /**< simulated for each row */
+  uint64_t seed;
+  int jobs;
+} ef_plan_settings;
+/** Detection on a logarithmic axis (greater-less: Gaussian on a linear one),
+ * exponent 1, lapses 1 %, false alarms 0.1, uncertainty 0.3, spread 0.3, 7
+ * levels, 15 in hand; levels from 0.4 to 3 JND (2ifc, yes-no), 0.7 to 5
+ * (triangle, same-different), -2.5 to 2.5 (greater-less), where the answers
+ * change; the default up-down rule, 1000 experiments, seed 1. */
+EF_API ef_plan_settings ef_plan_settings_default(ef_task task, double jnd);
+
+/** What experiments of one size by one procedure come to. Ratios are estimate
+ * over truth: of the JND; for an up-down run of the level at its target. */
+typedef struct ef_plan_row {
+  ef_procedure procedure;
+  size_t n_trials;                /**< of one observer, blanks included */
+  size_t n_experiments, n_failed; /**< without a threshold */
+  double median;                  /**< ratio */
+  double low, high;  /**< ratios that hold the middle 95 %; failures half at
+                          either end */
+  double half_width; /**< (high - low) / 2: the precision */
+  double sd_ln;      /**< of the ln ratio, from its middle 68 % */
+  double power;      /**< share of experiments whose estimate lies outside the
+                          middle 95 % of what the other JND would give; NaN
+                          without one */
+} ef_plan_row;
+
+/** Simulates experiments of `n_trials` by one procedure. In yes-no and
+ * same-different a quarter of them are blanks, and adaptive runs take the false
+ * alarms as known. */
+EF_API ef_status ef_plan_simulate(const ef_plan_settings *settings,
+                                  ef_procedure procedure, size_t n_trials,
+                                  ef_plan_row *out, ef_error *error);
+/** The fewest trials of one observer whose half_width is at most `precision`,
+ * to about one part in ten. EF_NO_ANSWER above `most_trials`; `out` is then the
+ * row at that number. */
+EF_API ef_status ef_plan_search(const ef_plan_settings *settings,
+                                ef_procedure procedure, double precision,
+                                size_t most_trials, ef_plan_row *out,
+                                ef_error *error);
+/** Observers needed for a group's JND within a factor of 1 + precision at 95 %,
+ * when ln JND varies by `spread` across people and each is known to `sd_ln`:
+ * t(n - 1) sqrt((spread^2 + sd_ln^2) / n) <= ln(1 + precision). 0 above 100000.
+ */
+EF_API size_t ef_plan_observers(double spread, double sd_ln, double precision);
+
+/* ---- The panel's JND in a difference formula ---------------------------- */
+
+typedef struct ef_calibration_settings {
+  ef_task task;    /**< all but greater-less */
+  double exponent; /**< of d' = ((difference / JND)^exponent) EF_JND_D_PRIME;
+                        NaN: estimated from all answers together */
+  double lapse;    /**< NaN: estimated up to lapse_max */
+  double lapse_max;
+  ef_interval_settings intervals;
+  size_t least_observers; /**< for the JND to be the group's; else pooled */
+  const ef_notes *notes;
+} ef_calibration_settings;
+/** Exponent 1, lapses up to 0.06, default intervals, 3 observers, no notes. */
+EF_API ef_calibration_settings ef_calibration_settings_default(ef_task task);
+
+/** One observer's part. */
+typedef struct ef_observer_jnd {
+  size_t n_trials;
+  ef_support support;
+  ef_estimate jnd; /**< NaN without a threshold; interval by profile */
+} ef_observer_jnd;
+
+typedef struct ef_calibration {
+  ef_estimate jnd; /**< the panel's, in units of the formula, at 75 % right in
+                        2IFC whatever the task: of the group, or pooled */
+  bool is_pooled;  /**< pooled: its interval knows no differences of people */
+  ef_fit pooled;   /**< one curve for all answers */
+  ef_goodness goodness; /**< of the pooled curve */
+  ef_group group;       /**< n 0 when fewer than two observers have a JND */
+  double exponent;      /**< used for every observer */
+} ef_calibration;
+
+/** JND of a formula from all trials: `difference` of the pair shown, `observer`
+ * 0 to n_observers - 1, `shown` and `positive` answers, a row each (single
+ * trials: shown 1). Pairs without a difference (same pairs, blanks) have
+ * difference 0; same-different and yes-no need them. Every observer is fitted
+ * with the exponent and lapse rate of the pooled curve; the group is their
+ * random-effects summary. `each` has room for n_observers. */
+EF_API ef_status ef_calibrate(size_t n_rows, const double *difference,
+                              const size_t *observer, const size_t *shown,
+                              const size_t *positive, size_t n_observers,
+                              const ef_calibration_settings *settings,
+                              ef_calibration *out, ef_observer_jnd *each,
+                              ef_error *error);
+
+/** Standardised residual sum of squares between computed and seen differences
+ * in percent, 0 when they are proportional (Garcia, Huertas, Melgosa & Cui, J.
+ * Opt. Soc. Am. A 24 (2007) 1823): 100 sqrt(sum (E - f V)^2 / sum (f V)^2) with
+ * f = sum E^2 / sum E V. EF_NO_ANSWER for fewer than two pairs, or when either
+ * side is all 0. */
+EF_API ef_status ef_stress(size_t n, const double *computed, const double *seen,
+                           double *stress, ef_error *error);
+/** F-test of two formulas on the same n pairs: F = (a / b)^2 with n - 1 degrees
+ * of freedom on either side; two-sided p-value. F above 1: `a` is the worse. */
+EF_API void ef_stress_compare(size_t n, double a, double b, double *f,
+                              double *p_value);
+
+/** How well a formula orders the panel's pairs. */
+typedef struct ef_formula_score {
+  double stress;         /**< against the d' of each pair, in percent */
+  double f, p_value;     /**< against the best; of the best 1 and 1 */
+  double log_likelihood; /**< of all answers under its own JND; NaN without */
+  double jnd, exponent;  /**< maximum likelihood; NaN without a threshold */
+} ef_formula_score;
+
+/** Scores n_formulas on n_pairs: `difference` is n_formulas x n_pairs. The seen
+ * difference of a pair is the d' of its answers, rate log-linear corrected and
+ * at least chance; pairs with difference 0 in every formula give the false
+ * alarms of yes-no and same-different and are left out of STRESS. `best` is the
+ * index of the least STRESS. */
+EF_API ef_status ef_formulas_score(size_t n_pairs, size_t n_formulas,
+                                   const double *difference,
+                                   const size_t *shown, const size_t *positive,
+                                   const ef_calibration_settings *settings,
+                                   ef_formula_score *out, size_t *best,
+                                   ef_error *error);
+
+/* ---- Flicker photometry ------------------------------------------------- */
+
+/** Personal luminance weights from settings of least flicker. */
+typedef struct ef_flicker {
+  size_t n;
+  ef_estimate l_share; /**< l / (l + m) of luminance = l L + m M */
+  ef_estimate ratio;   /**< l / m; infinite at l_share 1 */
+  double residual;     /**< standard deviation of a setting, in ln luminance */
+} ef_flicker;
+
+/** At setting i the two alternating lights, with cone excitations (L, M) first
+ * and second, looked equally bright: l L + m M is the same for both. Least
+ * squares of ln luminance over all settings, the intervals by Student's t on
+ * the share (95 %). The ratio l : m belongs to the cone fundamentals that L and
+ * M were computed with. EF_MALFORMED for excitations not above 0; EF_NO_ANSWER
+ * below two settings, when no ratio of l to m can be told from another, or when
+ * the best one lies at an end. */
+EF_API ef_status ef_flicker_weights(size_t n, const double *first_l,
+                                    const double *first_m,
+                                    const double *second_l,
+                                    const double *second_m, ef_flicker *out,
+                                    ef_error *error);
+
 #ifdef __cplusplus
 }
 #endif

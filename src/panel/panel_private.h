@@ -167,6 +167,63 @@ ef_status ef__support_error(const ef__likelihood *likelihood,
 /** Level of a row. */
 double ef__row_level(const ef__data *data, ef_axis axis, size_t row);
 
+/* ---- Posterior on a grid (posterior.c) ---------------------------------- */
+
+/** Places of the grid in the order threshold, width, lapse, the last running
+ * fastest. */
+typedef struct ef__grid {
+  size_t n_thresholds, n_widths, n_lapses;
+  double *threshold, *width, *lapse; /**< values of each, in t */
+} ef__grid;
+
+/** Posterior over it, and p at the levels in hand. */
+typedef struct ef__posterior {
+  ef__grid grid;
+  ef__model model;
+  double guess, eta; /**< third parameter, and F^-1 at the threshold */
+  size_t n_places, n_levels;
+  double *weight; /**< n_places, sum 1 */
+  double *share;  /**< n_levels x n_places */
+} ef__posterior;
+
+/** Allocates for the grid's counts and sets its values: thresholds and widths
+ * evenly and evenly in the logarithm. The prior is flat. */
+ef_status ef__posterior_new(ef__posterior *out, size_t n_levels,
+                            const double threshold[2], const double width[2],
+                            double lapse_max, void **block, ef_error *error);
+/** p of every place at t (a blank: is_blank). */
+void ef__posterior_share(const ef__posterior *posterior, double t,
+                         bool is_blank, double *share);
+void ef__posterior_reset(ef__posterior *posterior);
+/** One answer at a level in hand. */
+void ef__posterior_update(ef__posterior *posterior, size_t level,
+                          bool is_positive);
+/** Expected entropy of what is aimed at after an answer at that level, in nats.
+ */
+double ef__posterior_expected(const ef__posterior *posterior, size_t level,
+                              ef_next_aim aim);
+double ef__posterior_entropy(const ef__posterior *posterior, ef_next_aim aim);
+/** Mean and variance of the threshold in t. */
+double ef__posterior_mean(const ef__posterior *posterior, double *variance);
+
+/* ---- Up-down (up_down.c) ------------------------------------------------ */
+
+/** A run under way. */
+typedef struct ef__run {
+  ef_up_down rule;
+  double t;                  /**< ln level */
+  unsigned n_right, n_wrong; /**< in a row */
+  int direction;             /**< of the last change, 0 before the first */
+  size_t n_turns;
+  double sum; /**< of t at the turns that count */
+  size_t n_summed;
+  double last[2]; /**< t of the latest two turns that count */
+} ef__run;
+ef__run ef__run_begin(const ef_up_down *rule, double level);
+void ef__run_answer(ef__run *run, bool is_right);
+/** Geometric mean of the levels at an even number of turns; NaN below two. */
+double ef__run_estimate(const ef__run *run);
+
 /** Where on the curve the answers to the user's questions stand. */
 typedef struct ef__reading {
   ef_axis axis;
@@ -214,8 +271,8 @@ typedef struct ef__profile {
  */
 void ef__profile_limits(const ef__likelihood *likelihood,
                         const ef__minimum *fit, const ef__profile *profile,
-                        ef_axis axis, double estimate, double reach, double drop,
-                        double *low, double *high);
+                        ef_axis axis, double estimate, double reach,
+                        double drop, double *low, double *high);
 
 /** Fits to simulated answers; arrays of n_samples, each sorted by the caller.
  * NaN in all but deviance where a sample carries no threshold. */
@@ -242,5 +299,36 @@ void ef__fit_describe(const ef__likelihood *likelihood,
 /** Turns a description at the bound of the slope into that of a step. */
 void ef__fit_describe_step(const ef__likelihood *likelihood,
                            const ef__verdict *verdict, ef_fit *out);
+
+/* ---- Experiments that plans simulate (experiment.c) ---------------------- */
+
+/** What all experiments of a row share. */
+typedef struct ef__design {
+  const ef_plan_settings *settings;
+  ef_procedure procedure;
+  size_t n_trials;
+  size_t n_blanks; /**< at level 0, of n_trials */
+  bool has_blanks;
+  size_t n_levels; /**< blank included */
+  double *level;   /**< lowest first */
+  double *ratio;   /**< out: estimate over truth; NaN when failed */
+  ef__data data;   /**< levels and trials of constant stimuli */
+  ef__likelihood likelihood;
+  ef__reading reading;
+  ef__posterior posterior; /**< of adaptive runs: grid and shares */
+  double *positive;        /**< scratch: n_levels for each chunk */
+  double *weight;          /**< scratch: n_places for each chunk */
+} ef__design;
+
+/** The observer whose JND is `factor` times the expected one. */
+ef_psychometric ef__plan_observer(const ef_plan_settings *settings,
+                                  double factor);
+/** Lays out an experiment of n_trials. The three blocks are for free(), also
+ * after an error. Settings have been checked. */
+ef_status ef__design_make(const ef_plan_settings *settings,
+                          ef_procedure procedure, size_t n_trials,
+                          ef__design *out, void *block[3], ef_error *error);
+/** Simulates all experiments; fills `ratio`. */
+void ef__design_run(ef__design *design);
 
 #endif

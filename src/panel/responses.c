@@ -37,6 +37,8 @@ static size_t index_of(size_t n, const double *sorted, double value) {
 size_t ef_responses_collect(size_t n_trials, const double *level,
                             const bool *is_positive, double *out_level,
                             size_t *out_shown, size_t *out_positive) {
+  if (n_trials == 0)
+    return 0;
   memcpy(out_level, level, n_trials * sizeof *level);
   const size_t n = sort_unique(n_trials, out_level);
   memset(out_shown, 0, n * sizeof *out_shown);
@@ -123,7 +125,8 @@ ef_status ef__data_new(const ef_responses *responses, ef_axis axis,
   *block = ef__allocate_block(4, part);
   if (*block == NULL)
     return ef__error_memory(error, "the answers");
-  memcpy(level, responses->level, n_rows * sizeof *level);
+  if (n_rows > 0)
+    memcpy(level, responses->level, n_rows * sizeof *level);
   out->n = sort_unique(n_rows, level);
   for (size_t i = 0; i < n_rows; ++i) {
     const size_t row = index_of(out->n, level, responses->level[i]);
