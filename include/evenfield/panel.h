@@ -334,7 +334,8 @@ typedef enum ef_next_aim {
  * width and lapse rate: flat in t, in the logarithm of the width, and in the
  * lapse rate. NaN limits are set from the levels: the threshold from half their
  * range (ten times, for a single one) below the lowest to as much above the
- * highest, the width from 1/30 of the range to the whole. */
+ * highest, the width from 1/30 of the range to the whole. The grid closes in on
+ * a posterior that fills less than half of it. */
 typedef struct ef_next_settings {
   ef_task task;
   ef_shape shape;
@@ -368,9 +369,9 @@ typedef struct ef_next {
                               EF_SHAPE_DETECTION */
   ef_estimate width;     /**< in t */
   double lapse;          /**< mean */
-  double entropy_bits;   /**< of what is aimed at, on the grid */
-  double edge_share; /**< of the posterior on the grid's outermost thresholds;
-                          above 0.05 is noted: levels or limits are wrong */
+  double entropy_bits; /**< of what is aimed at, in places of the first grid */
+  double edge_share;   /**< of the posterior on the grid's outermost thresholds;
+                            above 0.05 is noted: levels or limits are wrong */
   size_t n_trials;
   bool is_precise, is_done;
 } ef_next;
@@ -507,6 +508,7 @@ typedef struct ef_calibration {
   ef_fit pooled;   /**< one curve for all answers */
   ef_goodness goodness; /**< of the pooled curve */
   ef_group group;       /**< n 0 when fewer than two observers have a JND */
+  size_t n_observers;   /**< with a JND of their own */
   double exponent;      /**< used for every observer */
 } ef_calibration;
 
@@ -522,6 +524,13 @@ EF_API ef_status ef_calibrate(size_t n_rows, const double *difference,
                               const ef_calibration_settings *settings,
                               ef_calibration *out, ef_observer_jnd *each,
                               ef_error *error);
+
+/** As a record that predictions start from (evenfield/difference.h): criterion
+ * 75 % right in 2IFC, median over observers, spread over them (pooled: 0, one
+ * observer). `metric` and `source` are cut to the record's room. */
+EF_API void ef_calibration_record(const ef_calibration *calibration,
+                                  const char *metric, const char *source,
+                                  ef_jnd_record *out);
 
 /** Standardised residual sum of squares between computed and seen differences
  * in percent, 0 when they are proportional (Garcia, Huertas, Melgosa & Cui, J.

@@ -118,6 +118,7 @@ static ef_status summarise(const ef_calibration_settings *s, size_t n_observers,
   for (size_t i = 0; i < n_observers; ++i) {
     value[i] = each[i].jnd.value;
     se[i] = each[i].jnd.se;
+    out->n_observers += isnan(value[i]) ? 0 : 1;
   }
   ef_error reason;
   const ef_status status =
@@ -132,10 +133,10 @@ static ef_status summarise(const ef_calibration_settings *s, size_t n_observers,
   out->jnd = out->is_pooled ? out->pooled.jnd : out->group.mean;
   if (out->is_pooled) {
     ef__note(s->notes,
-             "%zu observers with a JND, expected %zu for the panel's to be "
-             "that of a group: all answers pooled, and the interval does not "
-             "hold for other people",
-             out->group.n, s->least_observers);
+             "%zu of %zu observers have a JND of their own, expected at least "
+             "%zu for the panel's to be that of a group: all answers pooled, "
+             "and the interval does not hold for other people",
+             out->n_observers, n_observers, s->least_observers);
   }
   return EF_OK;
 }
@@ -193,6 +194,32 @@ ef_status ef_calibrate(size_t n_rows, const double *difference,
   if (status == EF_OK)
     status = summarise(settings, n_observers, each, out, error);
   return status;
+}
+
+static void copy_text(char *to, size_t size, const char *from) {
+  const size_t length = strlen(from);
+  const size_t kept = length < size ? length : size - 1;
+  memcpy(to, from, kept);
+  to[kept] = '\0';
+}
+
+void ef_calibration_record(const ef_calibration *calibration,
+                           const char *metric, const char *source,
+                           ef_jnd_record *out) {
+  const bool is_pooled = calibration->is_pooled;
+  memset(out, 0, sizeof *out);
+  copy_text(out->metric, sizeof out->metric, metric);
+  copy_text(out->source, sizeof out->source, source);
+  out->value = calibration->jnd.value;
+  out->criterion = (ef_criterion){.task = EF_TASK_2IFC,
+                                  .proportion = EF_JND_PROPORTION,
+                                  .false_alarms = (double)NAN,
+                                  .d_prime = (double)NAN};
+  out->exponent = calibration->exponent;
+  out->observer_log_sd = is_pooled ? 0 : calibration->group.spread.value;
+  out->low = calibration->jnd.low;
+  out->high = calibration->jnd.high;
+  out->n_observers = is_pooled ? 1 : calibration->group.n;
 }
 
 /* ---- Formulas ------------------------------------------------------------ */

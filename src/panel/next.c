@@ -328,6 +328,17 @@ static void judge(const ef_next_settings *s, ef_next *out) {
 
 /* ---- Public -------------------------------------------------------------- */
 
+/* Size of one place of the grid, as bits: entropy is told in places of the
+ * first grid. */
+static double cell_bits(const ef__grid *g, ef_next_aim aim) {
+  double bits = 0;
+  if (g->n_thresholds > 1)
+    bits += log2(g->threshold[1] - g->threshold[0]);
+  if (aim == EF_NEXT_BOTH && g->n_widths > 1)
+    bits += log2(log(g->width[1] / g->width[0]));
+  return bits;
+}
+
 static ef_status with_posterior(const ef__data *data, const double *level,
                                 const ef_next_settings *s,
                                 const ef__reading *reading, ef__posterior *p,
@@ -340,18 +351,23 @@ static ef_status with_posterior(const ef__data *data, const double *level,
   void *const block = ef__allocate_block(2, part);
   if (block == NULL)
     return ef__error_memory(error, "the grid");
+  const double prior_bits = cell_bits(&p->grid, s->aim);
   weigh(data, p, share);
+  out->edge_share = know_edge(p);
+  /* With many answers the posterior is finer than the grid. */
+  for (int pass = 0; pass < 4 && ef__posterior_narrow(p, share); ++pass)
+    weigh(data, p, share);
   for (size_t i = 0; i < p->n_levels; ++i) {
     const bool is_blank = s->axis == EF_AXIS_LOG && level[i] == 0;
     ef__posterior_share(p, is_blank ? 0 : ef__axis_value(s->axis, level[i]),
                         is_blank, p->share + i * p->n_places);
   }
   choose(p, s->aim, out, gain);
+  out->entropy_bits += cell_bits(&p->grid, s->aim) - prior_bits;
   out->threshold = know_threshold(&k);
   out->jnd = know_jnd(&k);
   out->width = know_width(&k);
   out->lapse = know_lapse(p);
-  out->edge_share = know_edge(p);
   judge(s, out);
   free(block);
   return EF_OK;

@@ -194,6 +194,13 @@ ef_status ef__posterior_new(ef__posterior *out, size_t n_levels,
 /** p of every place at t (a blank: is_blank). */
 void ef__posterior_share(const ef__posterior *posterior, double t,
                          bool is_blank, double *share);
+/** Moves the grid; the prior is flat again. */
+void ef__posterior_place(ef__posterior *posterior, const double threshold[2],
+                         const double width[2]);
+/** Moves it to the places that hold all but a ten-millionth of the weight, when
+ * these are less than half of it either way; `scratch` has room for the larger
+ * of n_thresholds and n_widths. False when it stays. */
+bool ef__posterior_narrow(ef__posterior *posterior, double *scratch);
 void ef__posterior_reset(ef__posterior *posterior);
 /** One answer at a level in hand. */
 void ef__posterior_update(ef__posterior *posterior, size_t level,

@@ -33,16 +33,73 @@ ef_status ef__posterior_new(ef__posterior *out, size_t n_levels,
   if (*block == NULL)
     return ef__error_memory(error, "the grid");
   out->n_levels = n_levels;
-  for (size_t i = 0; i < g->n_thresholds; ++i)
-    g->threshold[i] = even(threshold[0], threshold[1], g->n_thresholds, i);
-  for (size_t i = 0; i < g->n_widths; ++i)
-    g->width[i] = exp(even(log(width[0]), log(width[1]), g->n_widths, i));
   for (size_t i = 0; i < g->n_lapses; ++i)
     g->lapse[i] = even(0, lapse_max, g->n_lapses, i);
   if (g->n_lapses == 1)
     g->lapse[0] = lapse_max;
-  ef__posterior_reset(out);
+  ef__posterior_place(out, threshold, width);
   return EF_OK;
+}
+
+void ef__posterior_place(ef__posterior *p, const double threshold[2],
+                         const double width[2]) {
+  ef__grid *const g = &p->grid;
+  for (size_t i = 0; i < g->n_thresholds; ++i)
+    g->threshold[i] = even(threshold[0], threshold[1], g->n_thresholds, i);
+  for (size_t i = 0; i < g->n_widths; ++i)
+    g->width[i] = exp(even(log(width[0]), log(width[1]), g->n_widths, i));
+  ef__posterior_reset(p);
+}
+
+/* First and last of n sums of weights that leave more than a ten-millionth
+ * outside, with a neighbour on either side. */
+static void holding(size_t n, const double *mass, size_t *first, size_t *last) {
+  double below = 0, above = 0;
+  *first = 0;
+  *last = n - 1;
+  while (*first < n - 1 && below + mass[*first] < 1e-7)
+    below += mass[(*first)++];
+  while (*last > *first && above + mass[*last] < 1e-7)
+    above += mass[(*last)--];
+  if (*first > 0)
+    (*first)--;
+  if (*last < n - 1)
+    (*last)++;
+}
+
+/* Whether places first to last are few enough of n to be worth a finer grid. */
+static bool is_narrow(size_t n, size_t first, size_t last) {
+  return n >= 9 && last > first && 2 * (last - first) < n - 1;
+}
+
+bool ef__posterior_narrow(ef__posterior *p, double *scratch) {
+  const ef__grid *const g = &p->grid;
+  size_t first, last;
+  bool is_changed = false;
+  double threshold[2] = {g->threshold[0], g->threshold[g->n_thresholds - 1]};
+  double width[2] = {g->width[0], g->width[g->n_widths - 1]};
+  const size_t size = g->n_widths * g->n_lapses;
+  memset(scratch, 0, g->n_thresholds * sizeof *scratch);
+  for (size_t i = 0; i < p->n_places; ++i)
+    scratch[i / size] += p->weight[i];
+  holding(g->n_thresholds, scratch, &first, &last);
+  if (is_narrow(g->n_thresholds, first, last)) {
+    threshold[0] = g->threshold[first];
+    threshold[1] = g->threshold[last];
+    is_changed = true;
+  }
+  memset(scratch, 0, g->n_widths * sizeof *scratch);
+  for (size_t i = 0; i < p->n_places; ++i)
+    scratch[i / g->n_lapses % g->n_widths] += p->weight[i];
+  holding(g->n_widths, scratch, &first, &last);
+  if (is_narrow(g->n_widths, first, last)) {
+    width[0] = g->width[first];
+    width[1] = g->width[last];
+    is_changed = true;
+  }
+  if (is_changed)
+    ef__posterior_place(p, threshold, width);
+  return is_changed;
 }
 
 void ef__posterior_reset(ef__posterior *p) {

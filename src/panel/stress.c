@@ -39,7 +39,7 @@ void ef_stress_compare(size_t n, double a, double b, double *f,
                        double *p_value) {
   ef__gsl_ready();
   const double degrees = (double)n - 1;
-  *f = a * a / (b * b);
+  *f = a == b ? 1 : a * a / (b * b); /* also two that are 0 */
   *p_value = 2 * fmin(gsl_cdf_fdist_P(*f, degrees, degrees),
                       gsl_cdf_fdist_Q(*f, degrees, degrees));
 }

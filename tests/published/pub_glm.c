@@ -107,9 +107,28 @@ static void glm_of_r(void **state) {
   figures_free(&data);
 }
 
+/* S. Hecht, S. Shlaer & M. H. Pirenne, J. Gen. Physiol. 25 (1942) 819: the
+ * threshold lies between 54 and 148 quanta at the cornea (their summary); it
+ * was taken at 60 % seen (from memory). */
+static void threshold_of_vision(void **state) {
+  (void)state;
+  static const char *const set[] = {"hsp1942-SS-1", "hsp1942-SS-2",
+                                    "hsp1942-SH-2", "hsp1942-MHP-1"};
+  figures data = figures_read("published", "psychometric-data.csv");
+  for (size_t i = 0; i < 4; ++i) {
+    const counts c = counts_of(&data, set[i]);
+    const ef_fit fit = fit_of(&c, "probit", true);
+    const double quanta = ef_psychometric_level(&fit.curve, 0.6);
+    printf("# %s: seen at 60 %% with %.1f quanta\n", set[i], quanta);
+    assert_true(quanta > 54 && quanta < 148);
+  }
+  figures_free(&data);
+}
+
 int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(glm_of_r),
+      cmocka_unit_test(threshold_of_vision),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
   return cmocka_run_group_tests(tests, NULL, NULL);
