@@ -279,7 +279,7 @@ static void samples_of_codes(void **state) {
 
 static void refuse(const invented *i, const ef_isolation *way,
                    const ef_frame_settings *s, const char *message) {
-  ef_error error = {EF_OK};
+  ef_error error = {.status = EF_OK};
   assert_null(ef_frames_new(i->stimulator, way, s, NULL, &error));
   assert_int_equal(error.status, EF_INVALID);
   assert_string_equal(error.message, message);
@@ -451,7 +451,7 @@ typedef struct attempt {
 
 static bool try_frames(void *context) {
   attempt *a = context;
-  ef_error error = {EF_OK};
+  ef_error error = {.status = EF_OK};
   ef_frames *frames =
       ef_frames_new(a->i.stimulator, &a->way, &a->settings, NULL, &error);
   if (frames == NULL)

@@ -493,6 +493,125 @@ EF_API ef_status ef_isolation_dither(const ef_stimulator *stimulator,
                                      uint64_t seed, ef_dither_effect *out,
                                      ef_error *error);
 
+/* ---- At the eye -----------------------------------------------------------
+ */
+
+typedef enum ef_pupil_formula {
+  EF_PUPIL_GIVEN,
+  EF_PUPIL_MOON_SPENCER,   /**< 4.9 - 3 tanh(0.4 lg L) */
+  EF_PUPIL_STANLEY_DAVIES, /**< with the area of the adapting field */
+  EF_PUPIL_WATSON_YELLOTT  /**< with age and the number of eyes besides */
+} ef_pupil_formula;
+
+/** "given", "moon-spencer", "stanley-davies", "watson-yellott". Static. */
+EF_API const char *ef_pupil_name(ef_pupil_formula formula);
+EF_API ef_status ef_pupil_find(const char *name, ef_pupil_formula *out,
+                               ef_error *error);
+/** The publication (constants of all three from memory). Static. */
+EF_API const char *ef_pupil_source(ef_pupil_formula formula);
+
+typedef struct ef_pupil {
+  ef_pupil_formula formula;
+  double diameter_mm; /**< when given, 1 to 10 */
+  double age_years;   /**< 20 to 83, of Watson & Yellott */
+  double field_deg2;  /**< area of the adapting field, square degrees */
+  bool both_eyes;     /**< light in both; one eye counts a tenth */
+} ef_pupil;
+
+/** Watson & Yellott, 32 years, a disc of 2 degrees, both eyes. */
+EF_API ef_pupil ef_pupil_default(void);
+/** Diameter at a luminance above 0. EF_INVALID names the number at fault. */
+EF_API ef_status ef_pupil_diameter(const ef_pupil *pupil,
+                                   double luminance_cd_m2, double *diameter_mm,
+                                   ef_error *error);
+
+/** What reaches the eye of a uniform disc. */
+typedef struct ef_retinal {
+  double luminance_cd_m2;
+  double pupil_diameter_mm, pupil_area_mm2;
+  double photopic_td, scotopic_td; /**< trolands: luminance times area */
+  ef_alpha_opic radiance;          /**< alpha-opic radiances (CIE S 026) */
+  /** At the cornea, of the disc seen straight ahead: radiance times pi sin^2
+   * of half its diameter. */
+  double irradiance_w_m2[EF_N_RECEPTORS];
+  double equivalent_d65_lx[EF_N_RECEPTORS]; /**< alpha-opic EDI */
+} ef_retinal;
+
+/** At `amount` of the primaries. EF_NO_ANSWER unless the device's spectra are
+ * absolute. */
+EF_API ef_status ef_retinal_measure(const ef_stimulator *stimulator,
+                                    const double *amount, const ef_pupil *pupil,
+                                    double field_diameter_deg,
+                                    const ef_notes *notes, ef_retinal *out,
+                                    ef_error *error);
+
+/* ---- Cautions -------------------------------------------------------------
+ */
+
+/** The sentence that stands under every caution: these figures are no
+ * clearance. Static. */
+EF_API const char *ef_caution_deferral(void);
+
+/** A place of the stimulus in time, where it changes most. */
+typedef struct ef_flash_input {
+  size_t n; /**< frames */
+  double frame_rate_hz;
+  const double *xyz;     /**< n x 3, CIE 1931, Y of the display's white = 1 */
+  double white_cd_m2;    /**< luminance of that white; NaN: not known */
+  double solid_angle_sr; /**< that changes together */
+  double share_of_frame; /**< 0 to 1 */
+} ef_flash_input;
+
+/** Flashes: pairs of opposing changes, the most in any second.
+ * WCAG 2.3.1: changes of at least 0.10 of relative luminance with the darker
+ * below 0.80; at most 3 in a second unless all together stay within 0.006 sr.
+ * ITU-R BT.1702: changes of at least 20 cd/m2 with the darker below 160; at
+ * most 3 in a second over more than 25 % of the picture. Saturated red (WCAG
+ * 2.2): changes of more than 0.2 in u'v' of which one side has R / (R + G + B)
+ * of at least 0.8 in linear sRGB. */
+typedef struct ef_flash {
+  size_t n_general, n_television, n_red;
+  bool has_luminance; /**< false: n_television is not known and 0 */
+  double solid_angle_sr, share_of_frame;
+  bool exceeds_general, exceeds_television, exceeds_red;
+} ef_flash;
+
+/** EF_INVALID without frames or for a colour that is not finite. */
+EF_API ef_status ef_flash_count(const ef_flash_input *input, ef_flash *out,
+                                ef_error *error);
+/** Of frames: the place with the full window and the pattern's area. */
+EF_API ef_status ef_frames_flash(const ef_frames *frames, ef_flash *out,
+                                 ef_error *error);
+
+/** Blue-light hazard (IEC 62471:2006, ICNIRP 2013), with the weights B of the
+ * built-in table "retinal-hazard" (from memory, supported by one published
+ * worked value), 300 to 700 nm. */
+typedef struct ef_blue_light {
+  double radiance_w_m2_sr; /**< L_B */
+  bool is_small;           /**< seen under less than 0.011 rad */
+  double irradiance_w_m2;  /**< E_B, for a disc of that size */
+  double exposure_s;
+  double limit_s; /**< 1e6 J m-2 sr-1 / L_B, for small sources 100 J m-2 / E_B;
+                       infinite below 100 W m-2 sr-1 (1 W m-2) */
+  bool exceeds;   /**< exposure above the limit */
+} ef_blue_light;
+
+/** Of a spectral radiance in W sr-1 m-2 nm-1; one measurement held for all of
+ * the exposure. */
+EF_API ef_status ef_blue_light_measure(const ef_grid *grid,
+                                       const double *radiance,
+                                       double angular_subtense_rad,
+                                       double exposure_s, ef_blue_light *out,
+                                       ef_error *error);
+
+enum { EF_MOST_CAUTIONS = 4, EF_CAUTION_TEXT = 400 };
+
+/** Cautions in words, one a line: flashes, saturated red, blue light where they
+ * apply (either may be NULL), and always, last, the deferral. Returns how
+ * many. */
+EF_API size_t ef_cautions(const ef_flash *flash, const ef_blue_light *blue,
+                          char text[EF_MOST_CAUTIONS][EF_CAUTION_TEXT]);
+
 #ifdef __cplusplus
 }
 #endif

@@ -331,6 +331,26 @@ void ef_frames_levels(const ef_frames *frames, size_t frame, size_t y,
   fill_piece(frames, frame, y, 0, frames->settings.width_px, level);
 }
 
+const ef_device *ef__frames_device(const ef_frames *frames) {
+  return frames->stimulator->device;
+}
+
+void ef__frames_peak(const ef_frames *frames, size_t frame, double *amount) {
+  const ef_frame_settings *const s = &frames->settings;
+  const bool stands = !(s->waveform.duration_s > 0);
+  const double time_s = stands ? 0 : time_of(frames, frame);
+  double w = stands ? 1 : ef_waveform_at(&s->waveform, time_s);
+  if (s->pattern == EF_PATTERN_GRATING || s->pattern == EF_PATTERN_GABOR)
+    w *= cos(2 * 3.14159265358979323846 * s->drift_hz * time_s);
+  if (frames->isolation.modulation_kind == EF_PULSE)
+    w = (1 + w) / 2;
+  const double level = w * ef_waveform_ramp(&s->waveform, time_s);
+  for (size_t i = 0; i < frames->stimulator->n; ++i) {
+    amount[i] = frames->isolation.background[i] +
+                level * frames->isolation.modulation[i];
+  }
+}
+
 /* Codes of one place. */
 static void code_level(const ef_frames *frames, double level, size_t x,
                        size_t y, size_t frame, uint16_t *code) {

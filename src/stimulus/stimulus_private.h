@@ -246,4 +246,9 @@ uint32_t ef__dither_code(const ef__thresholds *thresholds,
                          const ef__codes *codes, size_t i, double amount,
                          size_t x, size_t y, size_t frame);
 
+/** Amounts of a frame where the window is full and a grating at its most; the
+ * device (frame.c). */
+void ef__frames_peak(const ef_frames *frames, size_t frame, double *amount);
+const ef_device *ef__frames_device(const ef_frames *frames);
+
 #endif

@@ -1,0 +1,290 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/* What reaches the eye, and cautions: published figures, small cases by hand,
+ * what is refused. Figures of WCAG and ITU-R BT.1702 are those of
+ * practice: 3 flashes in a second, 0.10, 0.80, 0.006 sr, 20 and 160 cd/m2,
+ * 25 %, red 0.8 and 0.2 u'v'. */
+#include <stdlib.h>
+
+#include "invented_display.h"
+#include "invented_stimulator.h"
+#include "near.h"
+
+/* ---- Pupil and trolands ------------------------------------------------- */
+
+static double diameter(ef_pupil_formula formula, double luminance_cd_m2,
+                       double field_deg2, double age, bool both) {
+  const ef_pupil pupil = {formula, 4.5, age, field_deg2, both};
+  double out = 0;
+  ef_error error;
+  if (ef_pupil_diameter(&pupil, luminance_cd_m2, &out, &error) != EF_OK)
+    fail_msg("%s", error.message);
+  return out;
+}
+
+/* From memory: Moon & Spencer run from 7.9 to 1.9 mm through 4.9 at 1 cd/m2;
+ * Stanley & Davies from 7.75 to 2 mm, half-way where (F / 846)^0.41 is 2;
+ * Watson & Yellott equal them at 28.58 years for both eyes, and one eye is a
+ * tenth of the light. */
+static void pupils_of_the_formulas(void **state) {
+  (void)state;
+  assert_near(diameter(EF_PUPIL_MOON_SPENCER, 1, 1, 0, true), 4.9, 1e-15);
+  assert_near(diameter(EF_PUPIL_MOON_SPENCER, 1e12, 1, 0, true), 1.9, 1e-3);
+  assert_near(diameter(EF_PUPIL_MOON_SPENCER, 1e-12, 1, 0, true), 7.9, 1e-3);
+  const double half = 846 * pow(2, 1 / 0.41);
+  assert_near(diameter(EF_PUPIL_STANLEY_DAVIES, half, 1, 0, true), 4.875,
+              1e-12);
+  assert_near(diameter(EF_PUPIL_STANLEY_DAVIES, half / 40, 40, 0, true), 4.875,
+              1e-12);
+  assert_near(diameter(EF_PUPIL_STANLEY_DAVIES, 1e-20, 1, 0, true), 7.75, 1e-6);
+  assert_near(diameter(EF_PUPIL_WATSON_YELLOTT, 30, 12, 28.58, true),
+              diameter(EF_PUPIL_STANLEY_DAVIES, 30, 12, 0, true), 1e-14);
+  assert_near(diameter(EF_PUPIL_WATSON_YELLOTT, 30, 12, 28.58, false),
+              diameter(EF_PUPIL_STANLEY_DAVIES, 3, 12, 0, true), 1e-12);
+  assert_true(diameter(EF_PUPIL_WATSON_YELLOTT, 30, 12, 70, true) <
+              diameter(EF_PUPIL_WATSON_YELLOTT, 30, 12, 25, true));
+  assert_near(diameter(EF_PUPIL_GIVEN, 30, 12, 70, true), 4.5, 0);
+  ef_pupil_formula formula;
+  assert_int_equal(ef_pupil_find("watson-yellott", &formula, NULL), EF_OK);
+  assert_int_equal(formula, EF_PUPIL_WATSON_YELLOTT);
+  assert_non_null(strstr(ef_pupil_source(formula), "J. Vision 12(10) (2012)"));
+  ef_error error;
+  double out;
+  ef_pupil pupil = ef_pupil_default();
+  pupil.age_years = 12;
+  assert_int_equal(ef_pupil_diameter(&pupil, 10, &out, &error), EF_INVALID);
+  assert_string_equal(error.message,
+                      "an age of 12 years; the pupil formula takes 20 to 83");
+  pupil.formula = EF_PUPIL_GIVEN;
+  pupil.diameter_mm = 12;
+  assert_int_equal(ef_pupil_diameter(&pupil, 10, &out, &error), EF_INVALID);
+  assert_string_equal(error.message, "a pupil of 12 mm; expected 1 to 10");
+  assert_int_equal(ef_pupil_diameter(&pupil, 0, &out, &error), EF_INVALID);
+  assert_string_equal(error.message, "a luminance of 0 cd/m2 for the pupil; "
+                                     "expected more than 0");
+}
+
+/* A troland is 1 cd/m2 through 1 mm2. */
+static void trolands_and_alpha_opic_irradiance(void **state) {
+  (void)state;
+  invented i = invented_new(4, "cie-1931");
+  const double amount[4] = {0.3, 0.6, 0.2, 0.9};
+  ef_pupil pupil = ef_pupil_default();
+  pupil.formula = EF_PUPIL_GIVEN;
+  pupil.diameter_mm = 3;
+  ef_retinal out;
+  ef_error error;
+  if (ef_retinal_measure(i.stimulator, amount, &pupil, 60, NULL, &out,
+                         &error) != EF_OK)
+    fail_msg("%s", error.message);
+  assert_near(out.pupil_area_mm2, 7.0685834705770345, 1e-14);
+  assert_near_relative(out.photopic_td,
+                       7.0685834705770345 * out.luminance_cd_m2, 1e-14);
+  assert_near_relative(out.luminance_cd_m2,
+                       ef_stimulator_luminance_cd_m2(i.stimulator, amount),
+                       1e-14);
+  assert_near_relative(out.radiance.photopic, out.luminance_cd_m2, 1e-12);
+  /* pi sin^2 30 degrees = pi / 4 */
+  for (size_t r = 0; r < EF_N_RECEPTORS; r++) {
+    assert_near_relative(out.irradiance_w_m2[r],
+                         0.78539816339744831 * out.radiance.quantity[r], 1e-13);
+    assert_near_relative(out.equivalent_d65_lx[r],
+                         1000 * out.irradiance_w_m2[r] /
+                             ef_alpha_opic_d65_mw_lm((ef_receptor)r),
+                         1e-13);
+  }
+  assert_int_equal(
+      ef_retinal_measure(i.stimulator, amount, &pupil, 200, NULL, &out, &error),
+      EF_INVALID);
+  assert_string_equal(error.message, "a field of 200 degrees; expected more "
+                                     "than 0 and at most 180");
+  invented_free(&i);
+  ef_device *device = invented_display(false);
+  ef_observer *observer = ef_observer_new("cie-1931", NULL);
+  ef_stimulator *s = ef_stimulator_new(device, observer, NULL, NULL, NULL);
+  assert_int_equal(
+      ef_retinal_measure(s, amount, &pupil, 10, NULL, &out, &error),
+      EF_NO_ANSWER);
+  assert_string_equal(error.message,
+                      "the spectra of 'kiosk' have no absolute unit, so what "
+                      "reaches the eye is not known; measure W sr-1 m-2 nm-1");
+  ef_stimulator_free(s);
+  ef_observer_free(observer);
+  ef_device_free(device);
+}
+
+/* ---- Flashes ------------------------------------------------------------ */
+
+enum { RATE = 60, FRAMES = 120 };
+
+/* A square wave between two greys, 60 frames a second for 2 s. */
+static ef_flash flicker(double hz, double low, double high, double white_cd_m2,
+                        double sr, double share) {
+  double xyz[3 * FRAMES];
+  for (size_t k = 0; k < FRAMES; k++) {
+    const double cycles = ((double)k + 0.5) * hz / RATE;
+    const double y = cycles - floor(cycles) < 0.5 ? high : low;
+    xyz[3 * k] = 0.9505 * y;
+    xyz[3 * k + 1] = y;
+    xyz[3 * k + 2] = 1.089 * y;
+  }
+  const ef_flash_input input = {FRAMES, RATE, xyz, white_cd_m2, sr, share};
+  ef_flash out;
+  assert_int_equal(ef_flash_count(&input, &out, NULL), EF_OK);
+  return out;
+}
+
+static void flashes_are_counted(void **state) {
+  (void)state;
+  ef_flash f = flicker(3, 0.2, 0.6, 100, 0.1, 1);
+  assert_int_equal(f.n_general, 3);
+  assert_int_equal(f.n_television, 3);
+  assert_int_equal(f.n_red, 0);
+  assert_false(f.exceeds_general || f.exceeds_television || f.exceeds_red);
+  f = flicker(10, 0.2, 0.6, 100, 0.1, 1);
+  assert_int_equal(f.n_general, 10);
+  assert_true(f.exceeds_general && f.exceeds_television);
+  f = flicker(10, 0.2, 0.6, 100, 0.005, 0.2); /* small */
+  assert_false(f.exceeds_general || f.exceeds_television);
+  f = flicker(10, 0.2, 0.6, 100, 0.005, 0.3);
+  assert_false(f.exceeds_general);
+  assert_true(f.exceeds_television);
+  assert_int_equal(flicker(10, 0.50, 0.59, 100, 1, 1).n_general, 0);
+  assert_int_equal(flicker(10, 0.50, 0.61, 100, 1, 1).n_general, 10);
+  assert_int_equal(flicker(10, 0.81, 0.95, 100, 1, 1).n_general, 0);
+  assert_int_equal(flicker(10, 0.50, 0.69, 100, 1, 1).n_television, 0);
+  assert_int_equal(flicker(10, 0.50, 0.71, 100, 1, 1).n_television, 10);
+  assert_int_equal(flicker(10, 0.50, 0.71, 400, 1, 1).n_television, 0);
+  f = flicker(10, 0.2, 0.6, (double)NAN, 1, 1);
+  assert_false(f.has_luminance);
+  assert_int_equal(f.n_television, 0);
+}
+
+/* The red of IEC 61966-2-1 against its green, of one luminance. */
+static void saturated_red_is_counted(void **state) {
+  (void)state;
+  static const double red[3] = {0.4124, 0.2126, 0.0193};
+  static const double grey[3] = {0.2021, 0.2126, 0.2315};
+  double xyz[3 * FRAMES];
+  for (int with_red = 0; with_red < 2; with_red++) {
+    for (size_t k = 0; k < FRAMES; k++)
+      memcpy(xyz + 3 * k, (k / 6) % 2 && with_red ? red : grey, sizeof red);
+    const ef_flash_input input = {FRAMES, RATE, xyz, 100, 0.02, 1};
+    ef_flash out;
+    assert_int_equal(ef_flash_count(&input, &out, NULL), EF_OK);
+    assert_int_equal(out.n_general, 0); /* no luminance changes */
+    assert_int_equal(out.n_red, with_red ? 5 : 0);
+    assert_int_equal(out.exceeds_red, with_red);
+  }
+  ef_flash out;
+  ef_error error;
+  const ef_flash_input none = {0, RATE, xyz, 100, 0.02, 1};
+  assert_int_equal(ef_flash_count(&none, &out, &error), EF_INVALID);
+  assert_string_equal(error.message, "0 frames at 60 Hz; expected at least 1, "
+                                     "and a rate above 0");
+  xyz[4] = INFINITE;
+  const ef_flash_input bad = {FRAMES, RATE, xyz, 100, 0.02, 1};
+  assert_int_equal(ef_flash_count(&bad, &out, &error), EF_INVALID);
+  assert_string_equal(error.message, "frame 2 has no finite colour");
+}
+
+static void frames_flash_as_their_waveform(void **state) {
+  (void)state;
+  invented i = invented_new(3, "cie-2015-2");
+  ef_isolation way;
+  ef_isolate_settings settings = ef_isolate_settings_default();
+  const ef_direction direction = invented_direction("luminance", "");
+  assert_int_equal(ef_isolate(i.stimulator, &direction, &settings, &way, NULL),
+                   EF_OK);
+  ef_frame_settings s = ef_frame_settings_default();
+  s.width_px = 320;
+  s.height_px = 180;
+  s.pattern = EF_PATTERN_UNIFORM;
+  s.waveform.kind = EF_WAVEFORM_SINUSOID;
+  s.waveform.frequency_hz = 5;
+  s.waveform.duration_s = 2;
+  ef_frames *frames = ef_frames_new(i.stimulator, &way, &s, NULL, NULL);
+  ef_flash out;
+  assert_int_equal(ef_frames_flash(frames, &out, NULL), EF_OK);
+  assert_int_equal(out.n_general, 5);
+  assert_true(out.exceeds_general);
+  assert_near(out.share_of_frame, 1.0, 1e-9);
+  ef_frames_free(frames);
+  invented_free(&i);
+}
+
+/* ---- Blue light --------------------------------------------------------- */
+
+/* Independently published: the spectrum of LED-B1 taken as W m-2 sr-1 nm-1 and
+ * seen for 5 s gives 1317.5 J m-2 sr-1, permitted for 3795.2 s. */
+static void blue_light_of_led_b1(void **state) {
+  (void)state;
+  const ef_grid grid = {81, 380, 5, NULL};
+  double power[81];
+  ef_illuminant *led = ef_illuminant_new("LED-B1", NULL);
+  ef_illuminant_sample(led, &grid, power, NULL);
+  ef_blue_light out;
+  ef_error error;
+  if (ef_blue_light_measure(&grid, power, 0.1, 5, &out, &error) != EF_OK)
+    fail_msg("%s", error.message);
+  printf("# LED-B1: %.2f J m-2 sr-1 (1317.5), %.1f s (3795.2)\n",
+         5 * out.radiance_w_m2_sr, out.limit_s);
+  assert_near_relative(5 * out.radiance_w_m2_sr, 1317.5, 1e-4);
+  assert_near_relative(out.limit_s, 3795.2, 1e-4);
+  assert_false(out.is_small || out.exceeds);
+  assert_int_equal(ef_blue_light_measure(&grid, power, 0.1, 4000, &out, NULL),
+                   EF_OK);
+  assert_true(out.exceeds);
+  /* Dimmed below 100 W m-2 sr-1 there is no limit. */
+  for (size_t k = 0; k < 81; k++)
+    power[k] *= 0.3;
+  assert_int_equal(ef_blue_light_measure(&grid, power, 0.1, 1e6, &out, NULL),
+                   EF_OK);
+  assert_true(isinf(out.limit_s) && !out.exceeds);
+  assert_int_equal(ef_blue_light_measure(&grid, power, 0.01, 1, &out, NULL),
+                   EF_OK);
+  assert_true(out.is_small);
+  assert_near_relative(out.irradiance_w_m2,
+                       out.radiance_w_m2_sr * 7.8539816339744831e-5, 1e-12);
+  assert_int_equal(ef_blue_light_measure(&grid, power, 0, 1, &out, &error),
+                   EF_INVALID);
+  assert_string_equal(error.message, "a source of 0 rad seen for 1 s; expected "
+                                     "more than 0, and 0 or more");
+  ef_illuminant_free(led);
+}
+
+static void cautions_end_with_the_deferral(void **state) {
+  (void)state;
+  char text[EF_MOST_CAUTIONS][EF_CAUTION_TEXT];
+  assert_int_equal(ef_cautions(NULL, NULL, text), 1);
+  assert_string_equal(text[0], ef_caution_deferral());
+  assert_non_null(strstr(text[0], "no clearance"));
+  const ef_flash f = flicker(10, 0.2, 0.6, 100, 0.1, 1);
+  const ef_blue_light blue = {.radiance_w_m2_sr = 250, .limit_s = 4000};
+  assert_int_equal(ef_cautions(&f, &blue, text), 3);
+  assert_string_equal(text[0],
+                      "flashes: 10 in a second over 0.1 sr, 100 % of the "
+                      "frame; WCAG 2.3.1 and ITU-R BT.1702 allow 3 over more "
+                      "than 0.006 sr or 25 %: exceeded");
+  assert_string_equal(text[1], "blue light: weighted radiance 250 W m-2 sr-1, "
+                               "exposure limit of IEC 62471 after 4000 s");
+  assert_string_equal(text[2], ef_caution_deferral());
+  const ef_blue_light dim = {.radiance_w_m2_sr = 2, .limit_s = INFINITE};
+  assert_int_equal(ef_cautions(NULL, &dim, text), 2);
+  assert_string_equal(text[0],
+                      "blue light: weighted radiance 2 W m-2 sr-1, below the "
+                      "exposure limit of IEC 62471 for any time");
+}
+
+int main(void) {
+  const struct CMUnitTest tests[] = {
+      cmocka_unit_test(pupils_of_the_formulas),
+      cmocka_unit_test(trolands_and_alpha_opic_irradiance),
+      cmocka_unit_test(flashes_are_counted),
+      cmocka_unit_test(saturated_red_is_counted),
+      cmocka_unit_test(frames_flash_as_their_waveform),
+      cmocka_unit_test(blue_light_of_led_b1),
+      cmocka_unit_test(cautions_end_with_the_deferral),
+  };
+  cmocka_set_message_output(CM_OUTPUT_TAP);
+  return cmocka_run_group_tests(tests, NULL, NULL);
+}
