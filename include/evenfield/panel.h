@@ -393,7 +393,7 @@ EF_API ef_status ef_next_choose(const ef_responses *answers, size_t n_levels,
 typedef struct ef_up_down {
   unsigned n_down, n_up;
   double step_down, step_up; /**< factors of the level, above 1 */
-  double first_step; /**< either way until `n_turns_left_out` turns are over */
+  double step_first; /**< either way until `n_turns_left_out` turns are over */
   size_t n_turns_left_out; /**< of the estimate */
 } ef_up_down;
 /** 2 down, 1 up, by factors of 1.25, at first 1.6; 2 turns left out. */

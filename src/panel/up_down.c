@@ -16,9 +16,9 @@ static double down_before_up(double p, unsigned r, unsigned s) {
 
 static bool is_rule(const ef_up_down *rule) {
   return rule->n_down >= 1 && rule->n_up >= 1 && rule->step_down > 1 &&
-         rule->step_up > 1 && rule->first_step > 1 &&
+         rule->step_up > 1 && rule->step_first > 1 &&
          isfinite(rule->step_down) && isfinite(rule->step_up) &&
-         isfinite(rule->first_step);
+         isfinite(rule->step_first);
 }
 
 ef_up_down ef_up_down_default(void) {
@@ -26,7 +26,7 @@ ef_up_down ef_up_down_default(void) {
                       .n_up = 1,
                       .step_down = 1.25,
                       .step_up = 1.25,
-                      .first_step = 1.6,
+                      .step_first = 1.6,
                       .n_turns_left_out = 2};
 }
 
@@ -65,7 +65,7 @@ static void change(ef__run *run, int direction, double step) {
   }
   run->direction = direction;
   const bool is_first = run->n_turns < run->rule.n_turns_left_out;
-  run->t += direction * log(is_first ? run->rule.first_step : step);
+  run->t += direction * log(is_first ? run->rule.step_first : step);
   run->n_right = run->n_wrong = 0;
 }
 

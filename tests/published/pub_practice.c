@@ -94,7 +94,7 @@ static void thirty_trials_up_and_down(void **state) {
   s.uncertainty = 0.8;
   s.lowest = 0.15;
   s.highest = 6;
-  s.rule.first_step = 2;
+  s.rule.step_first = 2;
   ef_plan_row run, constant[3];
   const size_t n[3] = {30, 100, 300};
   ef_error error;
@@ -133,7 +133,7 @@ static double off_by(bool is_plain, size_t n_lapses, uint64_t index) {
                                     .guess = 0.5};
   ef_up_down rule = ef_up_down_default();
   if (is_plain) {
-    rule.first_step = rule.step_up;
+    rule.step_first = rule.step_up;
     rule.n_turns_left_out = 0;
   }
   ef__run run = ef__run_begin(&rule, 2);
