@@ -160,6 +160,29 @@ EF_API double ef_columns_at(const ef_columns *columns, size_t row,
 /** Line of a row in its file. */
 EF_API size_t ef_columns_line(const ef_columns *columns, size_t row);
 
+/** A table whose fields are taken as texts, by the names of their columns: lists
+ * of pairs, records. Streams; owns its memory. */
+typedef struct ef_fields ef_fields;
+
+enum { EF_FIELDS_MOST = 16 };
+
+/** `names[0 .. n)` in any order in the file and whatever their case; the first
+ * `n_needed` must be there (EF_MALFORMED else), and columns of other names are
+ * noted and not used. Path and CSV as for ef_reader_open. Free with
+ * ef_fields_free. */
+EF_API ef_fields *ef_fields_open(const char *path, size_t n, size_t n_needed,
+                                 const char *const *names,
+                                 const ef_notes *notes, ef_error *error);
+EF_API void ef_fields_free(ef_fields *fields);
+/** The next row's n texts without blanks around them, borrowed until the next
+ * call, "" where the file has no such column; NULL at the end. */
+EF_API ef_status ef_fields_next(ef_fields *fields, const char *const **text,
+                                size_t *line, ef_error *error);
+/** Field `i` of the current row as a number; EF_MALFORMED names line and
+ * field. */
+EF_API ef_status ef_fields_number(ef_fields *fields, size_t i, double *value,
+                                  ef_error *error);
+
 /** Names and texts of the built-in scenario's files ("livery" ...). */
 EF_API size_t ef_demo_count(void);
 EF_API const char *ef_demo_name(size_t i);
