@@ -39,7 +39,8 @@ static ef_status run_data(ellipse_scene *s, const ef_notes *notes,
 /* Options that only a formula has a use for. */
 static exit_code check_formula_only(const command_options *o) {
   const char *wrong = o->metric != NULL                ? "--metric"
-                      : !isnan(o->jnd)                 ? "--jnd"
+                      : o->jnd_text != NULL            ? "--jnd"
+                      : o->criterion != NULL           ? "--criterion"
                       : !isnan(o->size)                ? "--size"
                       : o->figure == FIGURE_PROJECTION ? "--figure projection"
                       : o->figure == FIGURE_ELLIPSOID  ? "--figure ellipsoid"

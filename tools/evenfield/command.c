@@ -32,6 +32,23 @@ static const command_entry table[] = {
       "(demo:kiosk-measurements, or demo:kiosk-primaries where spectra are "
       "needed: for another --observer and for --population)."},
      command_match},
+    {"compare",
+     COMMAND_COMPARE,
+     "[STANDARD BATCH]",
+     "how different are two finishes, in which light, and who will notice?",
+     {"Compares every sample of BATCH with the standard, under several lights: "
+      "the difference and its direction, the share of customers who would tell "
+      "the two apart with an interval, the right answers to expect of a panel, "
+      "metamerism, and a verdict against a tolerance. Rows of one name are "
+      "readings of one sample: their mean counts, and their scatter is the "
+      "uncertainty of measurement. With a column angle_deg they are one finish "
+      "seen at several angles.",
+      "STANDARD and BATCH are CSV of reflectances, or of colours, which are "
+      "compared in one light only. Where STANDARD holds several standards, "
+      "each "
+      "sample is compared with the one of its own name; --pairs names any "
+      "pairs. Without files the seats of the demo are compared."},
+     command_compare},
     {"ellipse",
      COMMAND_ELLIPSE,
      "--at COLOUR | FILE...",

@@ -18,17 +18,16 @@ static ef_status set_size(ellipse_scene *s, const ef_notes *notes,
                           ef_error *error) {
   const command_options *o = s->options;
   s->steps = isnan(o->steps) ? 1.0 : o->steps;
-  s->jnd.value = s->size = (double)NAN;
+  s->size = (double)NAN;
   if (s->from != BASIS_FORMULA)
     return EF_OK;
-  s->metric = ef_metric_new(o->metric != NULL ? o->metric : "ciede2000", error);
+  s->metric = jnd_metric(o, notes, error);
   if (s->metric == NULL)
-    return message_option(error, "metric", "");
-  s->jnd = ef_metric_jnd(s->metric);
-  s->own_jnd = !isnan(o->jnd);
-  if (s->own_jnd)
-    s->jnd.value = o->jnd;
-  s->size = s->steps * s->jnd.value;
+    return error->status;
+  const ef_status status = jnd_load(o, s->metric, notes, &s->jnd, error);
+  if (status != EF_OK)
+    return status;
+  s->size = s->steps * s->jnd.record.value;
   if (!isnan(o->size)) {
     s->size = o->size;
     s->steps = (double)NAN;

@@ -7,7 +7,7 @@
 #include <evenfield/difference.h>
 
 #include "colours.h"
-#include "option.h"
+#include "jnd.h"
 #include "point.h"
 
 /** Values of --figure, in the order of its choices. */
@@ -31,10 +31,9 @@ typedef struct ellipse_scene {
   ellipse_basis from;
   ellipse_figure figure;
   ef_metric *metric; /**< owned; NULL unless from a formula */
-  ef_jnd jnd;        /**< value NaN: none */
-  bool own_jnd;      /**< from --jnd */
-  double steps;      /**< JND, standard deviations or steps; NaN: a size */
-  double size;       /**< in units of the metric */
+  jnd jnd;
+  double steps; /**< JND, standard deviations or steps; NaN: a size */
+  double size;  /**< in units of the metric */
   ef_observer *observer;
   ef_illuminant *illuminant;
   colour_basis basis;

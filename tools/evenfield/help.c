@@ -15,9 +15,11 @@ void help_first_screen(FILE *out) {
   for (size_t i = 0; i < n; ++i) {
     fprintf(out, "  %-10s %s\n", commands[i].name, commands[i].summary);
   }
-  fputs("\nThree to try; they need no files:\n"
+  fputs("\nFour to try; they need no files:\n"
         "  evenfield match\n"
         "      can the ticket kiosk's display show the ferry's colours?\n"
+        "  evenfield compare\n"
+        "      will passengers tell the delivered seats from the standard?\n"
         "  evenfield describe demo:livery\n"
         "      the same colours in numbers\n"
         "  evenfield swatch --pictures fields\n"

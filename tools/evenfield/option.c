@@ -50,15 +50,20 @@ static const char *const bases[] = {"formula", "macadam-1942", "n-step",
 #define SEEING                                                                 \
   (COMMAND_DESCRIBE | COMMAND_MATCH | COMMAND_SWATCH | COMMAND_ELLIPSE)
 #define MATCHING (COMMAND_MATCH | COMMAND_SWATCH)
-#define DIFFERING (MATCHING | COMMAND_ELLIPSE)
-#define PEOPLE (COMMAND_MATCH | COMMAND_OBSERVER)
-#define EVERY (SEEING | COMMAND_TABLES | COMMAND_OBSERVER)
+#define DIFFERING (MATCHING | THRESHOLDS)
+#define THRESHOLDS (COMMAND_ELLIPSE | COMMAND_COMPARE)
+#define READING (SEEING | COMMAND_COMPARE)
+#define PEOPLE (COMMAND_MATCH | COMMAND_OBSERVER | COMMAND_COMPARE)
+#define EVERY (READING | COMMAND_TABLES | COMMAND_OBSERVER)
 
 static const option_row table[] = {
     {"at", "COLOUR", COMMAND_ELLIPSE, TYPE_TEXTS, FIELD(at), 0, 0, NULL,
      "a colour as lab:L,a,b, xyz:X,Y,Z, xyy:x,y,Y or xy:x,y, or three numbers "
      "alone, which are x,y,Y when the first two lie in 0 to 1 and L,a,b "
      "otherwise; may be given more than once"},
+    {"pairs", "FILE", COMMAND_COMPARE, TYPE_TEXT, FIELD(pairs), 0, 0, NULL,
+     "which samples are compared: CSV with the columns reference and sample, "
+     "names of the one file or of the two"},
     {"space", "SPACE", COMMAND_ELLIPSE, TYPE_TEXT, FIELD(space), 0, 0, NULL,
      "the plane of the ellipses: xy, uv, lab (a*, b*), mb (MacLeod-Boynton), "
      "cone (contrasts of the L and S cones) or cone-lm (L and M); default xy"},
@@ -109,29 +114,91 @@ static const option_row table[] = {
      "the light on surfaces and the white of colours: a name from `evenfield "
      "tables illuminants`, daylight:K, planck:K, FILE or FILE:COLUMN; default "
      "D65"},
-    {"kind", "surface|light", SEEING, TYPE_CHOICE, FIELD(kind), 0, 0, kinds,
+    {"illuminant", "LIGHT", COMMAND_COMPARE, TYPE_TEXTS, FIELD(lights), 0, 0,
+     NULL,
+     "a light on the samples: a name from `evenfield tables illuminants`, "
+     "daylight:K, planck:K, FILE or FILE:COLUMN; may be given more than once, "
+     "the first being the one in which a pair should match; default D65, A, "
+     "FL11 (a fluorescent lamp of shops) and LED-B3 (a neutral white LED)"},
+    {"observer", "OBSERVER", COMMAND_COMPARE, TYPE_TEXTS, FIELD(observers), 0,
+     0, NULL,
+     "who looks: a name from `evenfield observer list`, with settings as in "
+     "model:age=45,field=4, or a file with three colour-matching functions; "
+     "may be given more than once; default cie-1931"},
+    {"kind", "surface|light", READING, TYPE_CHOICE, FIELD(kind), 0, 0, kinds,
      "what the spectra in the files are; default: what the file says"},
+    {"adaptation", "NAME", COMMAND_COMPARE, TYPE_TEXT, FIELD(adaptation), 0, 0,
+     NULL,
+     "from one light to another, for colour inconstancy: cat16, bradford or "
+     "none; default cat16"},
     {"adaptation", "NAME", MATCHING, TYPE_TEXT, FIELD(adaptation), 0, 0, NULL,
      "from the targets' white to the display's: cat16, bradford or none; "
      "default cat16, none for lights and for targets in cd/m2"},
     {"metric", "NAME", DIFFERING, TYPE_TEXT, FIELD(metric), 0, 0, NULL,
      "how differences are measured, a name from `evenfield tables metrics`, "
      "with parameters as in ciede2000:kl=2; default ciede2000"},
-    {"jnd", "VALUE", DIFFERING, TYPE_NUMBER, FIELD(jnd), 1e-6, 1e6, NULL,
+    {"jnd", "VALUE|FILE", THRESHOLDS, TYPE_TEXT, FIELD(jnd_text), 0, 0, NULL,
+     "the difference that is just noticed: a number in units of the metric, "
+     "NUMBER:CRITERION where it was not taken at 75 % right answers of two "
+     "intervals, or a file with a panel's JND; default: the published one of "
+     "the metric"},
+    {"criterion", "CRITERION", THRESHOLDS, TYPE_TEXT, FIELD(criterion), 0, 0,
+     NULL,
+     "the answers at which a difference counts as noticed: 50%, 75%, 84%, "
+     "d-prime:N, or a task with its share as in triangle:60%; the JND is "
+     "converted to it"},
+    {"exponent", "BETA", THRESHOLDS, TYPE_NUMBER, FIELD(exponent), 0.1, 10,
+     NULL,
+     "the power of the difference that d' grows with; default 1, or what the "
+     "file of the JND says"},
+    {"spread", "SD", COMMAND_COMPARE, TYPE_NUMBER, FIELD(spread), 0, 3, NULL,
+     "how JNDs differ from person to person: the standard deviation of their "
+     "natural logarithm; default 0.28, or what the file of the JND says"},
+    {"jnd", "VALUE", MATCHING, TYPE_NUMBER, FIELD(jnd), 1e-6, 1e6, NULL,
      "the difference that is just noticed, in units of the metric; default: "
      "the published one of the metric"},
-    {"white-luminance", "CD", COMMAND_ELLIPSE, TYPE_NUMBER, FIELD(white_cd_m2),
-     1e-6, 1e9, NULL,
+    {"white-luminance", "CD", THRESHOLDS, TYPE_NUMBER, FIELD(white_cd_m2), 1e-6,
+     1e9, NULL,
      "luminance of the white the eye is adapted to, in cd/m2, for cam02-ucs, "
      "cam16-ucs, itp and colours in cd/m2; default 318, a perfect diffuser "
      "under 1000 lx"},
-    {"background", "Y", COMMAND_ELLIPSE, TYPE_NUMBER, FIELD(background_Y), 1e-3,
-     100, NULL,
+    {"background", "Y", THRESHOLDS, TYPE_NUMBER, FIELD(background_Y), 1e-3, 100,
+     NULL,
      "luminance of the background in percent of the white's, for cam02-ucs and "
      "cam16-ucs; default 20"},
-    {"surround", "NAME", COMMAND_ELLIPSE, TYPE_TEXT, FIELD(surround), 0, 0,
-     NULL,
+    {"surround", "NAME", THRESHOLDS, TYPE_TEXT, FIELD(surround), 0, 0, NULL,
      "average, dim or dark, for cam02-ucs and cam16-ucs; default average"},
+    {"task", "TASK", COMMAND_COMPARE, TYPE_TEXT, FIELD(task), 0, 0, NULL,
+     "whose share of right answers is the proportion_correct of csv and json: "
+     "2ifc, same-different or triangle; default 2ifc; all three are always "
+     "given"},
+    {"batch-sd", "VALUE", COMMAND_COMPARE, TYPE_NUMBER, FIELD(batch_sd), 0, 1e6,
+     NULL,
+     "how far pieces of a batch scatter about the one measured, a standard "
+     "deviation in units of the metric; default 0"},
+    {"samples", "N", COMMAND_COMPARE, TYPE_WHOLE, FIELD(samples), 0, 1e7, NULL,
+     "draws behind an interval, 0 for first order; default 10000, and first "
+     "order where the uncertainty is small"},
+    {"correction", "NAME", COMMAND_COMPARE, TYPE_TEXT, FIELD(correction), 0, 0,
+     NULL,
+     "how a difference in the first light is taken out of the index of "
+     "metamerism: multiplicative, additive, spectral or none; default "
+     "multiplicative"},
+    {"worst-case", NULL, COMMAND_COMPARE, TYPE_FLAG, FIELD(worst_case), 0, 0,
+     NULL,
+     "also tells how far any surface that matches the standard in the first "
+     "light may part from it in the others; text and json only"},
+    {"angle-weights", "LIST", COMMAND_COMPARE, TYPE_TEXT, FIELD(angle_weights),
+     0, 0, NULL,
+     "weights of measuring angles in the total of a finish, such as "
+     "15:2,45:1; default 1 each"},
+    {"check", NULL, COMMAND_COMPARE, TYPE_FLAG, FIELD(check), 0, 0, NULL,
+     "exit with status 1 when a pair is not within the tolerance in every "
+     "light, or could not be computed"},
+    {"tolerance", "VALUE", COMMAND_COMPARE, TYPE_TEXT, FIELD(tolerance_text), 0,
+     0, NULL,
+     "the largest difference that passes, in units of the metric, or "
+     "FORMULA:VALUE; default one JND"},
     {"check", NULL, COMMAND_MATCH, TYPE_FLAG, FIELD(check), 0, 0, NULL,
      "exit with status 1 when a target's difference exceeds the tolerance"},
     {"tolerance", "VALUE", COMMAND_MATCH, TYPE_NUMBER, FIELD(tolerance), 0, 1e6,
@@ -144,6 +211,11 @@ static const option_row table[] = {
      EF_POPULATION_MOST, NULL,
      "what N people would see, drawn at random by age and by how eyes vary; "
      "needs spectra of display and targets"},
+    {"population", "N", COMMAND_COMPARE, TYPE_WHOLE, FIELD(population), 1,
+     EF_POPULATION_MOST, NULL,
+     "who would tell pairs apart of N people, drawn at random by age and by "
+     "how "
+     "eyes vary, each with a JND of their own; needs spectra"},
     {"ages", "FROM-TO|FILE", PEOPLE, TYPE_TEXT, FIELD(ages), 0, 0, NULL,
      "their ages, 20 to 80 years: evenly from FROM to TO, all of one AGE, or a "
      "CSV file with columns age and share; default 20-70"},
@@ -169,10 +241,11 @@ static const option_row table[] = {
      NULL, "bits per channel of the pictures; default 8"},
     {"device-max", "VALUE", MATCHING, TYPE_NUMBER, FIELD(device_max), 1e-6, 1e9,
      NULL, "device value of full drive in the files; default: what they say"},
-    {"skip-bad", NULL, SEEING, TYPE_FLAG, FIELD(skip_bad), 0, 0, NULL,
+    {"skip-bad", NULL, READING, TYPE_FLAG, FIELD(skip_bad), 0, 0, NULL,
      "leave out rows that are at fault, and count them"},
-    {"jobs", "N", SEEING | COMMAND_OBSERVER, TYPE_INTEGER, FIELD(jobs), 0, 4096,
-     NULL, "threads to use; default 0, one for each core; changes no result"},
+    {"jobs", "N", READING | COMMAND_OBSERVER, TYPE_INTEGER, FIELD(jobs), 0,
+     4096, NULL,
+     "threads to use; default 0, one for each core; changes no result"},
     {"format", "text|csv|json", COMMAND_OBSERVER, TYPE_CHOICE, FIELD(format), 0,
      0, formats,
      "text for people, csv and json for programs; default csv of build, text "
@@ -204,6 +277,10 @@ static void set_defaults(command_options *o) {
                          .steps = not_given,
                          .white_cd_m2 = not_given,
                          .background_Y = not_given,
+                         .exponent = not_given,
+                         .spread = not_given,
+                         .batch_sd = not_given,
+                         .samples = not_given,
                          .population = not_given,
                          .seed = not_given,
                          .field_deg = not_given,
@@ -389,7 +466,10 @@ exit_code options_parse(command_options *options, const char *command,
   const size_t room = (size_t)argc + 1;
   options->files = calloc(room, sizeof *options->files);
   options->at.text = calloc(room, sizeof *options->at.text);
-  if (options->files == NULL || options->at.text == NULL) {
+  options->lights.text = calloc(room, sizeof *options->lights.text);
+  options->observers.text = calloc(room, sizeof *options->observers.text);
+  if (options->files == NULL || options->at.text == NULL ||
+      options->lights.text == NULL || options->observers.text == NULL) {
     message_usage("out of memory");
     return EXIT_NO_ANSWER;
   }
@@ -419,7 +499,10 @@ exit_code options_parse(command_options *options, const char *command,
 void options_free(command_options *options) {
   free(options->files);
   free(options->at.text);
+  free(options->lights.text);
+  free(options->observers.text);
   options->files = options->at.text = NULL;
+  options->lights.text = options->observers.text = NULL;
 }
 
 /* ---- Help -------------------------------------------------------------- */

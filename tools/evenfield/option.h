@@ -18,7 +18,8 @@ typedef enum command_bit {
   COMMAND_SWATCH = 4,
   COMMAND_TABLES = 8,
   COMMAND_ELLIPSE = 16,
-  COMMAND_OBSERVER = 32
+  COMMAND_OBSERVER = 32,
+  COMMAND_COMPARE = 64
 } command_bit;
 
 typedef enum output_format {
@@ -40,18 +41,21 @@ typedef struct command_options {
   const char *display, *tone, *observer, *illuminant, *metric, *adaptation;
   const char *ambient_illuminant, *pictures, *output, *ages;
   const char *space, *contrast_from, *surround;
+  const char *jnd_text, *criterion, *tolerance_text; /**< of compare, ellipse */
+  const char *pairs, *task, *correction, *angle_weights;
   double ambient_lux, reflectance, luminance_cd_m2, jnd, tolerance, device_max;
   double size, steps, white_cd_m2, background_Y;
+  double exponent, spread, batch_sd, samples;
   double population, seed, field_deg; /**< the first two are whole */
-  int kind;    /**< 0 surface, 1 light, -1 not given */
-  int figure;  /**< of enum ellipse_figure */
-  int basis;   /**< of enum ellipse_basis */
-  int seen_by; /**< EF_PROTANOPE - 1 ..., -1 not given */
-  int units;   /**< an ef_cone_units */
+  int kind;                           /**< 0 surface, 1 light, -1 not given */
+  int figure;                         /**< of enum ellipse_figure */
+  int basis;                          /**< of enum ellipse_basis */
+  int seen_by;                        /**< EF_PROTANOPE - 1 ..., -1 not given */
+  int units;                          /**< an ef_cone_units */
   int format;
   int bits, swatch_bits, jobs, categories;
-  bool skip_bad, check, force, quiet, help, version;
-  text_list at;
+  bool skip_bad, check, worst_case, force, quiet, help, version;
+  text_list at, lights, observers;
   size_t n_files;
   const char **files; /**< owned; the texts are those of argv */
 } command_options;

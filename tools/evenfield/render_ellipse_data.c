@@ -75,11 +75,7 @@ static void write_basis(ef_json *j, const ellipse_scene *s) {
   if (s->metric != NULL) {
     ef_json_text(j, "metric", ef_metric_name(s->metric));
     ef_json_number(j, "size_in_metric", s->size);
-    ef_json_begin_object(j, "jnd");
-    ef_json_number(j, "value", s->jnd.value);
-    ef_json_text(j, "criterion", s->own_jnd ? "" : s->jnd.criterion);
-    ef_json_text(j, "source", s->own_jnd ? "--jnd" : s->jnd.source);
-    ef_json_end_object(j);
+    jnd_write(j, &s->jnd);
   } else {
     ef_json_number(j, "steps", s->steps);
   }

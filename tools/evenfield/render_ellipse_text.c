@@ -315,24 +315,11 @@ static void add_missing(text *out, const ellipse_text *t,
     text line = {0};
     text_format(&line, "%s: %s", t->row[i].name, t->row[i].reason);
     text_add(out, "  ");
-    text_wrap(out, line.bytes != NULL ? line.bytes : "", 4);
-    out->failed = out->failed || line.failed;
-    text_free(&line);
+    text_paragraph(out, &line, 4);
   }
 }
 
 /* ---- What it rests on -------------------------------------------------- */
-
-static void add_jnd(text *line, const ellipse_scene *s) {
-  char value[EF_NUMBER_TEXT];
-  ef_number_format(s->jnd.value, value);
-  text_format(line, "one JND is %s %s", value, ef_metric_symbol(s->metric));
-  if (s->own_jnd) {
-    text_add(line, ", as given with --jnd");
-  } else {
-    text_format(line, ": %s (%s)", s->jnd.criterion, s->jnd.source);
-  }
-}
 
 static void add_formula(text *out, const ellipse_scene *s) {
   text line = {0};
@@ -348,7 +335,7 @@ static void add_formula(text *out, const ellipse_scene *s) {
   text_label(out, "Formula", &line);
   if (isnan(s->steps))
     return;
-  add_jnd(&line, s);
+  jnd_add(&line, &s->jnd, s->metric);
   text_label(out, "JND", &line);
 }
 

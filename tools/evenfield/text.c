@@ -128,6 +128,12 @@ void text_wrap(text *t, const char *sentence, size_t indent) {
   text_add(t, "\n");
 }
 
+void text_paragraph(text *t, text *content, size_t indent) {
+  text_wrap(t, content->bytes != NULL ? content->bytes : "", indent);
+  t->failed = t->failed || content->failed;
+  text_free(content);
+}
+
 void text_label(text *t, const char *label, text *content) {
   enum { LABEL_WIDTH = 15 };
   text_format(t, "  %-*s", LABEL_WIDTH - 2, label);

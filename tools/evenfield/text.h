@@ -23,6 +23,9 @@ void text_free(text *t);
  * each line but the first, and a line end. */
 void text_wrap(text *t, const char *sentence, size_t indent);
 
+/** The same for a text that was put together; frees it. */
+void text_paragraph(text *t, text *content, size_t indent);
+
 /** One line of "what it is: this", with `content` wrapped beside the label.
  * Frees the content. */
 void text_label(text *t, const char *label, text *content);
