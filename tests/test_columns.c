@@ -13,6 +13,12 @@ static const char *const names[] = {"age", "share"};
 static ef_columns *read_text(const char *text, const ef_notes *notes,
                              ef_error *error) {
   char path[SCRATCH_PATH];
+  /* The same from memory. */
+  ef_error again = {0};
+  ef_columns *const columns = ef_columns_from_text(
+      "t.csv", text, strlen(text), 2, names, NULL, &again);
+  if (columns == NULL) assert_int_equal(again.status, EF_MALFORMED);
+  ef_columns_free(columns);
   scratch_write("t.csv", text, strlen(text));
   scratch_path("t.csv", path);
   return ef_columns_read(path, 2, names, notes, error);

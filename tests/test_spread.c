@@ -209,6 +209,80 @@ static void statistics_are_those_of_the_differences(void **state) {
   pairs_free(p);
 }
 
+/* Two observers of whom one counts twice are as three. The percentile with
+ * weights is the least value that 95 % of them reach. */
+static void weights_count_observers(void **state) {
+  (void)state;
+  enum { N = 3 };
+  pairs *const p = pairs_new(6);
+  const size_t once[2] = {3, 11}, twice[N] = {3, 3, 11};
+  const double weight[2] = {2.0 / 3, 1.0 / 3}, heavy[2] = {0.96, 0.04};
+  ef_population *const all = make_many(20, 5);
+  ef_population *const two = ef_population_choose(all, 2, once, NULL);
+  ef_population *const three = ef_population_choose(all, N, twice, NULL);
+  ef_spread_settings settings = ef_spread_settings_default();
+  ef_spread weighted[N_PAIRS], alike[N_PAIRS];
+  double difference[N_PAIRS * 2];
+  settings.threshold = 20;
+  assert_int_equal(ef_population_spread(three, N_PAIRS, &p->target, &p->match,
+                                        &settings, 1, alike, NULL, NULL, NULL),
+                   EF_OK);
+  settings.weight = weight;
+  assert_int_equal(ef_population_spread(two, N_PAIRS, &p->target, &p->match,
+                                        &settings, 1, weighted, difference,
+                                        NULL, NULL),
+                   EF_OK);
+  for (size_t k = 0; k < N_PAIRS; ++k) {
+    const double *const value = difference + 2 * k;
+    assert_near_relative(weighted[k].mean, alike[k].mean, 1e-14);
+    assert_near(weighted[k].share_of_observers, alike[k].share_of_observers,
+                1e-15);
+    assert_true(weighted[k].p95 == fmax(value[0], value[1]));
+  }
+  settings.weight = heavy;
+  ef_population_spread(two, N_PAIRS, &p->target, &p->match, &settings, 1,
+                       weighted, NULL, NULL, NULL);
+  for (size_t k = 0; k < N_PAIRS; ++k) {
+    assert_true(weighted[k].p95 == difference[2 * k] ||
+                difference[2 * k + 1] < difference[2 * k]);
+  }
+  ef_population_free(three);
+  ef_population_free(two);
+  ef_population_free(all);
+  pairs_free(p);
+}
+
+static void check_weights_refused(const pairs *p, size_t n,
+                                  const double *weight, const char *message) {
+  ef_population *const population = make_many(n, 5);
+  ef_spread_settings settings = ef_spread_settings_default();
+  ef_spread spread[N_PAIRS];
+  ef_error error;
+  settings.weight = weight;
+  assert_int_equal(ef_population_spread(population, N_PAIRS, &p->target,
+                                        &p->match, &settings, 1, spread, NULL,
+                                        NULL, &error),
+                   EF_INVALID);
+  assert_string_equal(error.message, message);
+  ef_population_free(population);
+}
+
+static void weights_are_checked(void **state) {
+  (void)state;
+  pairs *const p = pairs_new(6);
+  const double none[2] = {1, 0}, half[2] = {0.3, 0.2};
+  double *const many = calloc(1001, sizeof *many);
+  check_weights_refused(p, 2, none,
+                        "the weight of observer 2 is 0; it must be above 0");
+  check_weights_refused(p, 2, half,
+                        "the weights of the observers sum to 0.5; they must "
+                        "sum to 1");
+  check_weights_refused(p, 1001, many,
+                        "weights for 1001 observers; at most 1000 have some");
+  free(many);
+  pairs_free(p);
+}
+
 /* Threads, blocks of pairs, blocks of observers and what else is asked in the
  * same call change no bit. 5000 observers x 900 pairs are more differences than
  * are kept at a time. */
@@ -364,6 +438,8 @@ int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(equals_a_loop_over_observers),
       cmocka_unit_test(statistics_are_those_of_the_differences),
+      cmocka_unit_test(weights_count_observers),
+      cmocka_unit_test(weights_are_checked),
       cmocka_unit_test(blocks_and_threads_change_nothing),
       cmocka_unit_test(index_is_the_mean_of_pairs),
       cmocka_unit_test(threshold_is_the_jnd),

@@ -151,6 +151,12 @@ enum { EF_COLUMNS_MOST = 16, EF_COLUMNS_MOST_ROWS = 1000000 };
 EF_API ef_columns *ef_columns_read(const char *path, size_t n_columns,
                                    const char *const *names,
                                    const ef_notes *notes, ef_error *error);
+/** The same from `length` bytes of text. */
+EF_API ef_columns *ef_columns_from_text(const char *name, const char *text,
+                                        size_t length, size_t n_columns,
+                                        const char *const *names,
+                                        const ef_notes *notes,
+                                        ef_error *error);
 EF_API void ef_columns_free(ef_columns *columns);
 /** At least 1. */
 EF_API size_t ef_columns_rows(const ef_columns *columns);

@@ -167,9 +167,14 @@ typedef struct ef_spread_settings {
   /** Difference from which on the two are told apart, in the metric's unit;
    * NaN: the metric's default JND. */
   double threshold;
+  /** Weight of each observer of a population of at most 1000, above 0, with a
+   * sum of 1 to 0.001 (the shares of ef_population_medoids). NULL: all alike,
+   * any number. With weights the 95th percentile is the least difference that
+   * at least 95 % of the weight do not exceed. */
+  const double *weight;
 } ef_spread_settings;
 
-/** CIEDE2000, CAT16, default JND. */
+/** CIEDE2000, CAT16, default JND, all observers alike. */
 EF_API ef_spread_settings ef_spread_settings_default(void);
 
 /** The difference of one pair as a population sees it, in the metric's unit. */
@@ -195,7 +200,8 @@ typedef struct ef_spread {
  * Tristimulus values come from one product per block of observers
  * (ef_weights_apply); results do not depend on `jobs` (0: all cores). Works in
  * some 50 MB beside its arguments. EF_INVALID for a sample that is not finite,
- * for lights without a white, and for a white that is dark. */
+ * for lights without a white, for a white that is dark, and for weights that
+ * are none. */
 EF_API ef_status ef_population_spread(const ef_population *population,
                                       size_t n, const ef_side *target,
                                       const ef_side *match,

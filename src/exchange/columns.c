@@ -118,41 +118,59 @@ static ef_status read_table(ef_columns *columns, ef__table *table,
                           "there is a header and no row to read");
 }
 
-static ef__input *open_input(const char *path, ef_error *error) {
-  ef__span demo;
-  switch (ef__demo_find(path, &demo, error)) {
-  case EF__DEMO_NONE: break;
-  case EF__DEMO_UNKNOWN: return NULL;
-  case EF__DEMO_FOUND:
-    return ef__input_from_text(path, demo.text, demo.length, error);
-  }
-  return ef__input_open(path, error);
-}
-
-ef_columns *ef_columns_read(const char *path, size_t n_columns,
-                            const char *const *names, const ef_notes *notes,
-                            ef_error *error) {
-  if (n_columns == 0 || n_columns > EF_COLUMNS_MOST) {
-    ef__error_set(error, EF_INVALID, "%zu columns are asked for; 1 to %d can be",
-                  n_columns, EF_COLUMNS_MOST);
-    return NULL;
-  }
+/* Takes the input over; NULL: the error is set already. */
+static ef_columns *read_input(ef__input *input, size_t n_columns,
+                              const char *const *names, const ef_notes *notes,
+                              ef_error *error) {
+  if (input == NULL) return NULL;
+  ef__table table;
   ef_columns *const columns = ef__allocate_zeroed(1, sizeof *columns);
   if (columns == NULL) {
+    ef__input_free(input);
     ef__error_memory(error, "a table of numbers");
     return NULL;
   }
   columns->n_columns = n_columns;
-  ef__table table;
-  ef__input *const input = open_input(path, error);
   bool is_read = false;
-  if (input != NULL && ef__table_open(input, notes, &table, error) == EF_OK) {
+  if (ef__table_open(input, notes, &table, error) == EF_OK) {
     is_read = read_table(columns, &table, names, error) == EF_OK;
     ef__table_clear(&table);
   }
   if (is_read) return columns;
   ef_columns_free(columns);
   return NULL;
+}
+
+static bool count_is_good(size_t n_columns, ef_error *error) {
+  if (n_columns >= 1 && n_columns <= EF_COLUMNS_MOST) return true;
+  ef__error_set(error, EF_INVALID, "%zu columns are asked for; 1 to %d can be",
+                n_columns, EF_COLUMNS_MOST);
+  return false;
+}
+
+ef_columns *ef_columns_from_text(const char *name, const char *text,
+                                 size_t length, size_t n_columns,
+                                 const char *const *names,
+                                 const ef_notes *notes, ef_error *error) {
+  if (!count_is_good(n_columns, error)) return NULL;
+  return read_input(ef__input_from_text(name, text, length, error), n_columns,
+                    names, notes, error);
+}
+
+ef_columns *ef_columns_read(const char *path, size_t n_columns,
+                            const char *const *names, const ef_notes *notes,
+                            ef_error *error) {
+  ef__span demo;
+  if (!count_is_good(n_columns, error)) return NULL;
+  switch (ef__demo_find(path, &demo, error)) {
+  case EF__DEMO_NONE: break;
+  case EF__DEMO_UNKNOWN: return NULL;
+  case EF__DEMO_FOUND:
+    return ef_columns_from_text(path, demo.text, demo.length, n_columns, names,
+                                notes, error);
+  }
+  return read_input(ef__input_open(path, error), n_columns, names, notes,
+                    error);
 }
 
 void ef_columns_free(ef_columns *columns) {

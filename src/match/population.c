@@ -87,6 +87,33 @@ static ef_status check_side(const ef_side *side, size_t n, const char *name,
   return check_finite(count, side->white, count, "white", error);
 }
 
+static ef_status check_weights(const double *weight, size_t n,
+                               ef_error *error) {
+  enum { MOST = 1000 };       /* the percentile compares all with all */
+  const double rounding = 0.001; /* of shares printed with some decimals */
+  double sum = 0;
+  if (weight == NULL) return EF_OK;
+  if (n > MOST) {
+    return ef__error_set(error, EF_INVALID,
+                         "weights for %zu observers; at most %d have some", n,
+                         MOST);
+  }
+  for (size_t i = 0; i < n; ++i) {
+    if (!(weight[i] > 0)) {
+      return ef__error_set(error, EF_INVALID,
+                           "the weight of observer %zu is %g; it must be above "
+                           "0",
+                           i + 1, weight[i]);
+    }
+    sum += weight[i];
+  }
+  if (fabs(sum - 1) <= rounding) return EF_OK;
+  return ef__error_set(error, EF_INVALID,
+                       "the weights of the observers sum to %g; they must sum "
+                       "to 1",
+                       sum);
+}
+
 static bool agree(const ef_side *a, const ef_side *b) {
   const ef_viewing *const v = &a->viewing, *const u = &b->viewing;
   return ef_grid_equal(&a->grid, &b->grid) && v->kind == u->kind &&
@@ -236,25 +263,65 @@ static ef_status see_pairs(work *w, size_t pair, size_t n_kept, int jobs,
 
 /* ---- Statistics -------------------------------------------------------- */
 
+/* Of one pair; changes the order of `value`. */
+static ef_spread summarise_alike(const work *w, double *value) {
+  const size_t n = w->n_observers;
+  double sum = 0;
+  size_t n_above = 0;
+  for (size_t i = 0; i < n; ++i) {
+    sum += value[i];
+    n_above += value[i] > w->threshold;
+  }
+  return (ef_spread){.mean = sum / (double)n,
+                     .p95 = ef__quantile(n, value, 0.95),
+                     .share_of_observers = (double)n_above / (double)n};
+}
+
+/* The least value of those that at least 95 % of the weight do not exceed. For
+ * a handful of observers: every value is tried. */
+static double weighted_percentile_95(size_t n, const double *value,
+                                     const double *weight, double whole) {
+  double least = (double)INFINITY;
+  for (size_t k = 0; k < n; ++k) {
+    double up_to = 0;
+    for (size_t i = 0; i < n; ++i) {
+      if (value[i] <= value[k]) up_to += weight[i];
+    }
+    if (up_to >= 0.95 * whole && value[k] < least) least = value[k];
+  }
+  return least;
+}
+
+static ef_spread summarise_weighted(const work *w, const double *value) {
+  const size_t n = w->n_observers;
+  const double *const weight = w->settings->weight;
+  double sum = 0, above = 0, whole = 0;
+  for (size_t i = 0; i < n; ++i) {
+    whole += weight[i];
+    sum += weight[i] * value[i];
+    if (value[i] > w->threshold) above += weight[i];
+  }
+  return (ef_spread){
+      .mean = sum / whole,
+      .p95 = weighted_percentile_95(n, value, weight, whole),
+      .share_of_observers = above / whole};
+}
+
 static void summarise(void *context, size_t begin, size_t end) {
   const work *const w = context;
   const size_t n = w->n_observers;
   for (size_t p = begin; p < end; ++p) {
     double *const value = w->kept + p * n;
-    double sum = 0;
-    size_t n_above = 0;
+    const double none = (double)NAN;
     bool is_finite = true;
-    for (size_t i = 0; i < n; ++i) {
-      sum += value[i];
-      n_above += value[i] > w->threshold;
-      is_finite = is_finite && isfinite(value[i]);
+    for (size_t i = 0; i < n; ++i) is_finite = is_finite && isfinite(value[i]);
+    if (!is_finite) {
+      w->out[p] = (ef_spread){none, none, none};
+      continue;
     }
-    const bool has_share = is_finite && !isnan(w->threshold);
-    w->out[p] = (ef_spread){
-        .mean = sum / (double)n,
-        .p95 = is_finite ? ef__quantile(n, value, 0.95) : (double)NAN,
-        .share_of_observers =
-            has_share ? (double)n_above / (double)n : (double)NAN};
+    w->out[p] = w->settings->weight == NULL ? summarise_alike(w, value)
+                                            : summarise_weighted(w, value);
+    if (isnan(w->threshold)) w->out[p].share_of_observers = none;
   }
 }
 
@@ -319,6 +386,9 @@ ef_status ef_population_spread(const ef_population *population, size_t n,
   void *block = NULL;
   ef_status status = check_side(target, n, side_names[TARGET], error);
   if (status == EF_OK) status = check_side(match, n, side_names[MATCH], error);
+  if (status == EF_OK) {
+    status = check_weights(settings->weight, w.n_observers, error);
+  }
   if (status == EF_OK) {
     status = ef_cone_xyz_matrix(ef_population_field_deg(population),
                                 w.field_matrix, NULL, error);

@@ -55,7 +55,7 @@ static void identical_spectra_are_told_apart_by_nobody(void **state) {
                           ef_viewing_default(is_surface ? fl2 : NULL),
                           is_surface && round % 2 == 0 ? NULL : white};
     const ef_spread_settings how = {ef_metric_at((size_t)round % 2),
-                                    (ef_adaptation)(round % 3), 0};
+                                    (ef_adaptation)(round % 3), 0, NULL};
     spread_of(population, N_PAIRS, &side, &side, &how, spread, difference);
     for (size_t i = 0; i < N_PAIRS * N_OBSERVERS; ++i) {
       assert_true(difference[i] == 0);

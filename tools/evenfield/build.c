@@ -8,9 +8,6 @@
 #include "message.h"
 #include "source.h"
 
-/* Of how many people --categories chooses, unless --population says. */
-enum { CHOSEN_FROM = 10000 };
-
 const char *build_function_name(size_t i) {
   static const char *const names[BUILD_FUNCTIONS] = {"x_bar", "y_bar", "z_bar",
                                                      "l_bar", "m_bar", "s_bar"};
@@ -88,45 +85,27 @@ static ef_status make_room(build *b, size_t n, ef_error *error) {
   return EF_OK;
 }
 
-static ef_status choose(build *b, ef_error *error) {
-  const size_t n = b->n;
-  const ef_population *population = b->people.population;
-  size_t *index = malloc(n * sizeof *index);
-  double *share = malloc(n * sizeof *share);
-  ef_status status =
-      index == NULL || share == NULL
-          ? message_fail(error, EF_NO_MEMORY, "out of memory for observers")
-          : ef_population_medoids(population, n, b->people.settings.seed,
-                                  b->options->jobs, index, share, error);
-  for (size_t i = 0; i < n && status == EF_OK; ++i) {
-    const ef_cone_model member = ef_population_member(population, index[i]);
-    b->one[i].share = share[i];
-    b->one[i].observer = ef_observer_from_model(&member, error);
-    if (b->one[i].observer == NULL)
-      status = error->status;
-  }
-  free(index);
-  free(share);
-  return status;
-}
-
 static ef_status choose_categories(build *b, const ef_notes *notes,
                                    ef_error *error) {
   const size_t n = (size_t)b->options->categories;
   ef_observer *mean = named(b->options, notes, error);
   if (mean == NULL)
     return error->status;
-  ef_status status =
-      people_load(&b->people, b->options, CHOSEN_FROM, mean, notes, error);
+  ef_status status = people_load(&b->people, b->options, PEOPLE_CHOSEN_FROM,
+                                 mean, notes, error);
   ef_observer_free(mean);
-  if (status == EF_OK && n > b->people.settings.count) {
-    status = message_fail(error, EF_UNKNOWN_NAME,
-                          "--categories is at most the number of people, %zu",
-                          b->people.settings.count);
-  }
+  if (status == EF_OK)
+    status = people_choose(&b->people, n, b->options->jobs, error);
   if (status == EF_OK)
     status = make_room(b, n, error);
-  return status == EF_OK ? choose(b, error) : status;
+  for (size_t i = 0; i < n && status == EF_OK; ++i) {
+    const ef_cone_model member = ef_population_member(b->people.population, i);
+    b->one[i].share = b->people.share[i];
+    b->one[i].observer = ef_observer_from_model(&member, error);
+    if (b->one[i].observer == NULL)
+      status = error->status;
+  }
+  return status;
 }
 
 static ef_status take_one(build *b, const ef_notes *notes, ef_error *error) {

@@ -1,8 +1,6 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "command.h"
 
-#include <math.h>
-
 #include "match.h"
 #include "message.h"
 #include "pictures.h"
@@ -55,8 +53,7 @@ static ef_status run(match_scene *s, receivers *r, match_summary *sum,
 exit_code command_match(const command_options *options) {
   exit_code code = result_check_usage(options, 1);
   if (code == EXIT_DONE)
-    code =
-        people_check_usage(options, "population", !isnan(options->population));
+    code = people_check_usage(options, "population", seen_is_asked(options));
   if (code != EXIT_DONE)
     return code;
   if (options->seen_by >= 0 && options->pictures == NULL) {

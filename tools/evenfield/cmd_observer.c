@@ -10,9 +10,6 @@
 #include "render_tables.h"
 #include "result.h"
 
-/* As many as ef_population_medoids takes. */
-enum { MOST_TO_CHOOSE_FROM = 100000 };
-
 /* ---- observer list ----------------------------------------------------- */
 
 static exit_code list(const command_options *options) {
@@ -37,11 +34,6 @@ static exit_code check_build(const command_options *options) {
   if (!isnan(o->population) && o->categories == 0) {
     return message_usage("--population is what --categories chooses from, and "
                          "that is not given");
-  }
-  if (o->population > MOST_TO_CHOOSE_FROM) {
-    return message_usage("--categories chooses from a --population of at most "
-                         "%d",
-                         MOST_TO_CHOOSE_FROM);
   }
   return people_check_usage(o, "categories", o->categories > 0);
 }

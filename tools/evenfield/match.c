@@ -60,7 +60,7 @@ static command_options with_display(const match_scene *s) {
   if (o.display != NULL)
     return o;
   const bool needs_spectra =
-      !isnan(o.population) ||
+      seen_is_asked(&o) ||
       strcmp(ef_observer_name(s->observer), "cie-1931") != 0;
   o.display =
       needs_spectra ? "demo:kiosk-primaries" : "demo:kiosk-measurements";

@@ -227,6 +227,11 @@ static const option_row table[] = {
      "observer"},
     {"categories", "K", COMMAND_OBSERVER, TYPE_INTEGER, FIELD(categories), 1,
      100, NULL, "the K observers that stand best for a population"},
+    {"categories", "K", COMMAND_MATCH, TYPE_INTEGER, FIELD(categories), 1, 100,
+     NULL,
+     "asks only the K observers that stand best for the population, each with "
+     "the share it stands for; of 10000 people unless --population says "
+     "otherwise"},
     {"units", "energy|quantal", COMMAND_OBSERVER, TYPE_CHOICE, FIELD(units), 0,
      0, units,
      "cone fundamentals for equal power or for equal numbers of quanta at each "

@@ -9,9 +9,17 @@
 #include "message.h"
 #include "source.h"
 
+/* As many as ef_population_medoids takes. */
+enum { MOST_TO_CHOOSE_FROM = 100000 };
+
 exit_code people_check_usage(const command_options *options, const char *option,
                              bool is_asked) {
   const command_options *o = options;
+  if (o->categories > 0 && o->population > MOST_TO_CHOOSE_FROM) {
+    return message_usage("--categories chooses from a --population of at most "
+                         "%d",
+                         MOST_TO_CHOOSE_FROM);
+  }
   if (is_asked)
     return EXIT_DONE;
   const char *alone = o->ages != NULL        ? "ages"
@@ -139,8 +147,37 @@ ef_status people_load(people *p, const command_options *options,
   return o->ages != NULL ? message_option(error, "ages", "") : error->status;
 }
 
+ef_status people_choose(people *p, size_t k, int jobs, ef_error *error) {
+  if (k > p->settings.count) {
+    return message_fail(error, EF_UNKNOWN_NAME,
+                        "--categories is at most the number of people, %zu",
+                        p->settings.count);
+  }
+  size_t *index = malloc(k * sizeof *index);
+  p->share = malloc(k * sizeof *p->share);
+  ef_population *chosen = NULL;
+  ef_status status =
+      index == NULL || p->share == NULL
+          ? message_fail(error, EF_NO_MEMORY, "out of memory for observers")
+          : ef_population_medoids(p->population, k, p->settings.seed, jobs,
+                                  index, p->share, error);
+  if (status == EF_OK) {
+    chosen = ef_population_choose(p->population, k, index, error);
+    if (chosen == NULL)
+      status = error->status;
+  }
+  free(index);
+  if (status != EF_OK)
+    return status;
+  ef_population_free(p->population);
+  p->population = chosen;
+  p->n_chosen = k;
+  return EF_OK;
+}
+
 void people_free(people *p) {
   ef_population_free(p->population);
+  free(p->share);
   free(p->table);
   *p = (people){0};
 }
@@ -187,6 +224,8 @@ void people_write(ef_json *json, const people *p) {
   const ef_population_settings *s = &p->settings;
   ef_json_integer(json, "count", (int64_t)s->count);
   ef_json_integer(json, "seed", (int64_t)s->seed);
+  if (p->n_chosen > 0)
+    ef_json_integer(json, "categories", (int64_t)p->n_chosen);
   if (p->age_file != NULL) {
     ef_json_text(json, "ages", p->age_file);
   } else {

@@ -133,6 +133,12 @@ static void add_people(text *out, const match_scene *s) {
     return;
   text t = {0};
   people_add(&t, &s->seen.people);
+  if (s->seen.people.n_chosen > 0) {
+    text_format(&t,
+                "; by %zu of them, medoids of their cone fundamentals, each "
+                "with the share it stands for",
+                s->seen.people.n_chosen);
+  }
   text_add(&t,
            "; their eyes vary in ocular media, macular pigment, density and "
            "peak of the cone pigments (Asano, Fairchild & Blonde 2016; their "

@@ -47,14 +47,17 @@ void render_match_people_answer(text *out, const match_scene *s,
   text t = {0};
   text_add(&t, "Of ");
   people_add_who(&t, &s->seen.people);
+  if (s->seen.people.n_chosen > 0)
+    text_format(&t, " (by %zu who stand for all)", s->seen.people.n_chosen);
   text_add(&t, ", ");
   add_told_apart(&t, s, sum);
   if (sum->n > 1) {
     text_format(&t, "; the worst seen is %s, with ", sum->worst_seen_name);
     add_amount(&t, s, sum->worst_seen.p95);
-    text_add(&t, s->seen.people.settings.count < 20
-                     ? " at the 95th percentile"
-                     : " or more for one person in twenty");
+    text_add(&t,
+             s->seen.people.settings.count < 20 || s->seen.people.n_chosen > 0
+                 ? " at the 95th percentile"
+                 : " or more for one person in twenty");
   }
   text_add(&t, ".");
   text_wrap(out, t.bytes != NULL ? t.bytes : "", 0);

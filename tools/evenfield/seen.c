@@ -6,9 +6,6 @@
 
 #include "message.h"
 
-/* People in a population that nobody gave a size for: it was not asked for. */
-enum { NOT_ASKED = 0 };
-
 /* ---- Whether there is an answer ---------------------------------------- */
 
 static ef_status check_spectra(const seen_basis *b, ef_error *error) {
@@ -68,6 +65,10 @@ static ef_status set_lights(seen *s, size_t most_rows, ef_error *error) {
                      error);
 }
 
+bool seen_is_asked(const command_options *options) {
+  return !isnan(options->population) || options->categories > 0;
+}
+
 ef_status seen_init(seen *s, const seen_basis *basis, size_t most_rows,
                     const ef_notes *notes, ef_error *error) {
   const seen_basis *b = basis;
@@ -78,12 +79,17 @@ ef_status seen_init(seen *s, const seen_basis *basis, size_t most_rows,
               .settings = {.metric = b->metric,
                            .adaptation = b->targets->adaptation,
                            .threshold = b->jnd}};
-  if (isnan(b->options->population))
+  const command_options *o = b->options;
+  if (!seen_is_asked(o))
     return EF_OK;
   ef_status status = check_spectra(b, error);
   if (status == EF_OK) {
     status =
-        people_load(&s->people, b->options, NOT_ASKED, observer, notes, error);
+        people_load(&s->people, o, PEOPLE_CHOSEN_FROM, observer, notes, error);
+  }
+  if (status == EF_OK && o->categories > 0) {
+    status = people_choose(&s->people, (size_t)o->categories, o->jobs, error);
+    s->settings.weight = s->people.share;
   }
   if (status == EF_OK)
     status = set_match(s, most_rows, error);

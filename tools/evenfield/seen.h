@@ -22,6 +22,9 @@ typedef struct seen {
   const ef_notes *notes; /**< for the first block */
 } seen;
 
+/** --population, or --categories of one. */
+bool seen_is_asked(const command_options *options);
+
 /** What it rests on; all borrowed. */
 typedef struct seen_basis {
   const command_options *options;
