@@ -36,7 +36,7 @@ static bool light_words(const char *name, char words[200]) {
     snprintf(words, 200, "in incandescent light (A)");
     return false;
   }
-  snprintf(words, 200, "in the light of %.150s", name);
+  snprintf(words, 200, "in the light of %.150s", name != NULL ? name : "");
   return strcmp(name, "C") != 0 && strcmp(name, "E") != 0;
 }
 
