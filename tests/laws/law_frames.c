@@ -355,7 +355,8 @@ static uint16_t *read_picture(const char *path, size_t width, size_t height,
   for (size_t k = 0; k < width * height * 3; k++) {
     const png_byte *row = rows[k / (width * 3)];
     const size_t x = k % (width * 3);
-    out[k] = bits == 8 ? row[x] : (uint16_t)(row[2 * x] << 8 | row[2 * x + 1]);
+    const int sample = bits == 8 ? row[x] : row[2 * x] << 8 | row[2 * x + 1];
+    out[k] = (uint16_t)sample;
   }
   png_destroy_read_struct(&png, &info, NULL);
   fclose(file);
