@@ -24,7 +24,7 @@ typedef enum option_type {
 
 typedef struct option_row {
   const char *name;
-  const char *value; /* placeholder in help; NULL for a flag */
+  const char *value; /* as help shows it; NULL for a flag */
   unsigned commands; /* which know it */
   option_type type;
   size_t offset;    /* of its field in struct command_options */
