@@ -62,6 +62,11 @@ int main(void) {
       cmocka_unit_test(numbers_survive_a_decimal_comma),
       cmocka_unit_test(marks_are_those_asked_for),
   };
+  /* cmocka's skip() counts as a failure in a TAP stream. */
+  if (setlocale(LC_NUMERIC, "comma") == NULL) {
+    puts("1..0 # SKIP no locale with a decimal comma could be compiled here");
+    return 0;
+  }
   cmocka_set_message_output(CM_OUTPUT_TAP);
   return cmocka_run_group_tests(tests, set_comma, NULL);
 }
