@@ -61,6 +61,20 @@ static const command_entry table[] = {
       "A FILE is CSV as for describe: spectra, or colours as L,a,b or X,Y,Z or "
       "x,y,Y. A colour without an ellipse (black) is listed with the reason."},
      command_ellipse},
+    {"isolate",
+     COMMAND_ISOLATE,
+     "",
+     "lights that change only the receptors they are meant to change",
+     {"Finds the background and the modulation of a display's primaries that "
+      "change chosen receptors of the eye and leave others alone: amounts, "
+      "drives and code values, the contrast of every receptor, the largest "
+      "contrast the display holds, what code values and other people's eyes "
+      "leave of the silence, what reaches the eye, and cautions.",
+      "Receptors are the L, M and S cones, rods and melanopsin; contrast is "
+      "the change of a receptor's excitation over its excitation by the "
+      "background. Without --display the vision laboratory's stimulator is "
+      "used (demo:lab-display)."},
+     command_isolate},
     {"observer",
      COMMAND_OBSERVER,
      "list | build [OBSERVER]",

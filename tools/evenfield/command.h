@@ -19,6 +19,7 @@ typedef struct command_entry {
 exit_code command_describe(const command_options *options);
 exit_code command_compare(const command_options *options);
 exit_code command_ellipse(const command_options *options);
+exit_code command_isolate(const command_options *options);
 exit_code command_match(const command_options *options);
 exit_code command_observer(const command_options *options);
 exit_code command_swatch(const command_options *options);

@@ -40,6 +40,7 @@ static const char *const dichromats[] = {"protanope", "deuteranope",
 static const char *const formats[] = {"text", "csv", "json", NULL};
 static const char *const figures[] = {"section", "projection", "ellipsoid",
                                       NULL};
+static const char *const modulations[] = {"symmetric", "pulse", NULL};
 static const char *const bases[] = {"formula", "macadam-1942", "n-step",
                                     "lamp-colours", NULL};
 
@@ -50,13 +51,63 @@ static const char *const bases[] = {"formula", "macadam-1942", "n-step",
 #define SEEING                                                                 \
   (COMMAND_DESCRIBE | COMMAND_MATCH | COMMAND_SWATCH | COMMAND_ELLIPSE)
 #define MATCHING (COMMAND_MATCH | COMMAND_SWATCH)
+#define SHOWING (MATCHING | COMMAND_ISOLATE)
 #define DIFFERING (MATCHING | THRESHOLDS)
 #define THRESHOLDS (COMMAND_ELLIPSE | COMMAND_COMPARE)
 #define READING (SEEING | COMMAND_COMPARE)
-#define PEOPLE (COMMAND_MATCH | COMMAND_OBSERVER | COMMAND_COMPARE)
-#define EVERY (READING | COMMAND_TABLES | COMMAND_OBSERVER)
+#define PEOPLE                                                                 \
+  (COMMAND_MATCH | COMMAND_OBSERVER | COMMAND_COMPARE | COMMAND_ISOLATE)
+#define EVERY (READING | COMMAND_TABLES | COMMAND_OBSERVER | COMMAND_ISOLATE)
 
 static const option_row table[] = {
+    {"change", "DIRECTION", COMMAND_ISOLATE, TYPE_TEXT, FIELD(change), 0, 0,
+     NULL,
+     "what is to change: receptors as in S, L,-M or L=0.1,mel=-0.2 (of L, M, "
+     "S, rod, mel); luminance; \"isoluminant red-green\", \"isoluminant "
+     "tritan\" or isoluminant:DEGREES (0 is red-green with L up, 90 tritan "
+     "with S up); dkl:ACHROMATIC,RED-GREEN,TRITAN (one unit of each axis is a "
+     "pooled cone contrast of 1); or macleod-boynton:L,S (steps of the "
+     "chromaticity); default S"},
+    {"silence", "LIST", COMMAND_ISOLATE, TYPE_TEXT, FIELD(silence), 0, 0, NULL,
+     "receptors that must not change; default the cones that --change leaves "
+     "out"},
+    {"ignore", "LIST", COMMAND_ISOLATE, TYPE_TEXT, FIELD(ignore), 0, 0, NULL,
+     "receptors that do not matter; default rod and mel, unless --change or "
+     "--silence names them"},
+    {"contrast", "C", COMMAND_ISOLATE, TYPE_NUMBER, FIELD(contrast), 1e-9, 1e9,
+     NULL,
+     "how far to go along the direction: 0.2 with --change S changes S by "
+     "20 %; default: as far as the display allows, and 1 where --change gives "
+     "numbers"},
+    {"background", "PLACE", COMMAND_ISOLATE, TYPE_TEXT, FIELD(background), 0, 0,
+     NULL,
+     "what the eye is adapted to: amounts of the primaries, shares of their "
+     "light at full drive, as in 0.5,0.5,0.5 or 0.5 for all; drive:LIST or "
+     "codes:LIST in front of the tone curve; largest (chosen for the largest "
+     "contrast, no darker than half of full drive) or largest:SHARE; or "
+     "metamer:LIST (the same L, M and S, chosen for the largest contrast); "
+     "default 0.5"},
+    {"modulation", "symmetric|pulse", COMMAND_ISOLATE, TYPE_CHOICE,
+     FIELD(modulation), 0, 0, modulations,
+     "symmetric: to both sides of the background; pulse: to one side; default "
+     "symmetric"},
+    {"luminance-weights", "L:M[:S]", COMMAND_ISOLATE, TYPE_TEXT,
+     FIELD(luminance_weights), 0, 0, NULL,
+     "what L, M and S count in this person's luminance, as flicker photometry "
+     "gives them; only their ratios matter; default those of CIE 170-2"},
+    {"robust", NULL, COMMAND_ISOLATE, TYPE_FLAG, FIELD(robust), 0, 0, NULL,
+     "of all modulations of the wanted contrast the one that leaves least in "
+     "the silent receptors of a population"},
+    {"size-deg", "DEG", COMMAND_ISOLATE, TYPE_NUMBER, FIELD(size_deg), 0.01,
+     120, NULL, "diameter of the field that changes; default 2"},
+    {"pupil", "MM|FORMULA", COMMAND_ISOLATE, TYPE_TEXT, FIELD(pupil), 0, 0,
+     NULL,
+     "the pupil's diameter in mm, or moon-spencer, stanley-davies, "
+     "watson-yellott or watson-yellott:AGE; default watson-yellott"},
+    {"exposure", "S", COMMAND_ISOLATE, TYPE_NUMBER, FIELD(exposure_s), 1e-6,
+     1e6, NULL,
+     "seconds that somebody looks at it in a day, for the blue-light caution; "
+     "default 28800, eight hours"},
     {"at", "COLOUR", COMMAND_ELLIPSE, TYPE_TEXTS, FIELD(at), 0, 0, NULL,
      "a colour as lab:L,a,b, xyz:X,Y,Z, xyy:x,y,Y or xy:x,y, or three numbers "
      "alone, which are x,y,Y when the first two lie in 0 to 1 and L,a,b "
@@ -90,16 +141,21 @@ static const option_row table[] = {
      "a file with the spectra of the primaries at full drive or with measured "
      "rows (R,G,B and X,Y,Z or a spectrum), a published encoding such as "
      "bt709, or demo:NAME; default demo:kiosk-measurements"},
-    {"tone", "CURVE", MATCHING, TYPE_TEXT, FIELD(tone), 0, 0, NULL,
+    {"display", "DISPLAY", COMMAND_ISOLATE, TYPE_TEXT, FIELD(display), 0, 0,
+     NULL,
+     "a file with the spectra of 3 to 8 primaries at full drive, or with "
+     "measured rows (R,G,B and a spectrum), or demo:NAME; default "
+     "demo:lab-display"},
+    {"tone", "CURVE", SHOWING, TYPE_TEXT, FIELD(tone), 0, 0, NULL,
      "from drive to light: linear, power:G, iec61966-2-1, or a file with "
      "measured ramps; default: what the display's file or encoding says"},
-    {"bits", "N", MATCHING, TYPE_INTEGER, FIELD(bits), 1, 16, NULL,
+    {"bits", "N", SHOWING, TYPE_INTEGER, FIELD(bits), 1, 16, NULL,
      "bits of a code value, 1 to 16; default 8"},
-    {"ambient", "LUX", MATCHING, TYPE_NUMBER, FIELD(ambient_lux), 0, 1e6, NULL,
+    {"ambient", "LUX", SHOWING, TYPE_NUMBER, FIELD(ambient_lux), 0, 1e6, NULL,
      "illuminance on the screen; default 0, a dark room"},
-    {"reflectance", "R", MATCHING, TYPE_NUMBER, FIELD(reflectance), 0, 1, NULL,
+    {"reflectance", "R", SHOWING, TYPE_NUMBER, FIELD(reflectance), 0, 1, NULL,
      "diffuse reflectance of the screen, 0 to 1; goes with --ambient"},
-    {"ambient-illuminant", "LIGHT", MATCHING, TYPE_TEXT,
+    {"ambient-illuminant", "LIGHT", SHOWING, TYPE_TEXT,
      FIELD(ambient_illuminant), 0, 0, NULL,
      "what falls on the screen, named like --illuminant; default D65"},
     {"luminance", "CD", MATCHING, TYPE_NUMBER, FIELD(luminance_cd_m2), 1e-6,
@@ -110,6 +166,10 @@ static const option_row table[] = {
      "who looks: a name from `evenfield observer list`, with settings as in "
      "model:age=45,field=4, or a file with three colour-matching functions; "
      "default cie-1931"},
+    {"observer", "OBSERVER", COMMAND_ISOLATE, TYPE_TEXT, FIELD(observer), 0, 0,
+     NULL,
+     "whose cones: a name from `evenfield observer list`, with settings as in "
+     "model:age=45,field=10; default cie-2015-2"},
     {"illuminant", "LIGHT", SEEING, TYPE_TEXT, FIELD(illuminant), 0, 0, NULL,
      "the light on surfaces and the white of colours: a name from `evenfield "
      "tables illuminants`, daylight:K, planck:K, FILE or FILE:COLUMN; default "
@@ -216,6 +276,10 @@ static const option_row table[] = {
      "who would tell pairs apart of N people, drawn at random by age and by "
      "how "
      "eyes vary, each with a JND of their own; needs spectra"},
+    {"population", "N", COMMAND_ISOLATE, TYPE_WHOLE, FIELD(population), 1,
+     EF_POPULATION_MOST, NULL,
+     "what N people get in the receptors that should be silent, drawn at "
+     "random by age and by how eyes vary; default 500 with --robust"},
     {"ages", "FROM-TO|FILE", PEOPLE, TYPE_TEXT, FIELD(ages), 0, 0, NULL,
      "their ages, 20 to 80 years: evenly from FROM to TO, all of one AGE, or a "
      "CSV file with columns age and share; default 20-70"},
@@ -244,11 +308,11 @@ static const option_row table[] = {
      "the folder for a split field of every target and a sheet of all (PNG)"},
     {"swatch-bits", "8|16", MATCHING, TYPE_INTEGER, FIELD(swatch_bits), 8, 16,
      NULL, "bits per channel of the pictures; default 8"},
-    {"device-max", "VALUE", MATCHING, TYPE_NUMBER, FIELD(device_max), 1e-6, 1e9,
+    {"device-max", "VALUE", SHOWING, TYPE_NUMBER, FIELD(device_max), 1e-6, 1e9,
      NULL, "device value of full drive in the files; default: what they say"},
     {"skip-bad", NULL, READING, TYPE_FLAG, FIELD(skip_bad), 0, 0, NULL,
      "leave out rows that are at fault, and count them"},
-    {"jobs", "N", READING | COMMAND_OBSERVER, TYPE_INTEGER, FIELD(jobs), 0,
+    {"jobs", "N", READING | COMMAND_OBSERVER | COMMAND_ISOLATE, TYPE_INTEGER, FIELD(jobs), 0,
      4096, NULL,
      "threads to use; default 0, one for each core; changes no result"},
     {"format", "text|csv|json", COMMAND_OBSERVER, TYPE_CHOICE, FIELD(format), 0,
@@ -289,6 +353,9 @@ static void set_defaults(command_options *o) {
                          .population = not_given,
                          .seed = not_given,
                          .field_deg = not_given,
+                         .contrast = not_given,
+                         .exposure_s = not_given,
+                         .size_deg = not_given,
                          .kind = -1,
                          .seen_by = -1,
                          .format = -1,
@@ -421,13 +488,21 @@ typedef struct parser {
   bool given[N_OPTIONS];
 } parser;
 
+static void remember(given_options *given, const option_row *o,
+                     const char *value) {
+  given->name[given->n] = o->name;
+  given->value[given->n++] = value;
+}
+
 /* The option's value is `value`, or the next argument when that is NULL. */
 static exit_code parse_value(parser *p, const option_row *o, const char *value,
                              int n_left, char *const *argv, int *used) {
   char what[200];
   if (o->value == NULL) {
-    if (value == NULL)
+    if (value == NULL) {
+      remember(&p->options->given, o, NULL);
       return store(p->options, o, NULL);
+    }
     snprintf(what, sizeof what, "--%s takes no value", o->name);
     return see_help(p->command, what);
   }
@@ -435,8 +510,10 @@ static exit_code parse_value(parser *p, const option_row *o, const char *value,
     value = argv[1];
     *used = 2;
   }
-  if (value != NULL)
+  if (value != NULL) {
+    remember(&p->options->given, o, value);
     return store(p->options, o, value);
+  }
   snprintf(what, sizeof what, "--%s needs a value: --%s %s", o->name, o->name,
            o->value);
   return see_help(p->command, what);
@@ -473,7 +550,10 @@ exit_code options_parse(command_options *options, const char *command,
   options->at.text = calloc(room, sizeof *options->at.text);
   options->lights.text = calloc(room, sizeof *options->lights.text);
   options->observers.text = calloc(room, sizeof *options->observers.text);
-  if (options->files == NULL || options->at.text == NULL ||
+  options->given.name = calloc(room, sizeof *options->given.name);
+  options->given.value = calloc(room, sizeof *options->given.value);
+  if (options->given.name == NULL || options->given.value == NULL ||
+      options->files == NULL || options->at.text == NULL ||
       options->lights.text == NULL || options->observers.text == NULL) {
     message_usage("out of memory");
     return EXIT_NO_ANSWER;
@@ -506,6 +586,9 @@ void options_free(command_options *options) {
   free(options->at.text);
   free(options->lights.text);
   free(options->observers.text);
+  free(options->given.name);
+  free(options->given.value);
+  options->given = (given_options){0};
   options->files = options->at.text = NULL;
   options->lights.text = options->observers.text = NULL;
 }

@@ -19,7 +19,8 @@ typedef enum command_bit {
   COMMAND_TABLES = 8,
   COMMAND_ELLIPSE = 16,
   COMMAND_OBSERVER = 32,
-  COMMAND_COMPARE = 64
+  COMMAND_COMPARE = 64,
+  COMMAND_ISOLATE = 256
 } command_bit;
 
 typedef enum output_format {
@@ -34,6 +35,12 @@ typedef struct text_list {
   const char **text; /**< owned; the texts are those of argv */
 } text_list;
 
+/** Options as they were given, in their order; `value` NULL for a flag. */
+typedef struct given_options {
+  size_t n;
+  const char **name, **value; /**< owned; the texts are those of argv */
+} given_options;
+
 /** What was asked for. Texts are NULL, numbers NaN and integers -1 when not
  * given, unless option.c states a default. The format of `observer`, whose
  * default depends on what it is asked for, is -1 when not given. */
@@ -43,6 +50,9 @@ typedef struct command_options {
   const char *space, *contrast_from, *surround;
   const char *jnd_text, *criterion, *tolerance_text; /**< of compare, ellipse */
   const char *pairs, *task, *correction, *angle_weights;
+  const char *change, *silence, *ignore, *background; /**< of isolate */
+  const char *luminance_weights, *pupil;
+  double contrast, exposure_s, size_deg;
   double ambient_lux, reflectance, luminance_cd_m2, jnd, tolerance, device_max;
   double size, steps, white_cd_m2, background_Y;
   double exponent, spread, batch_sd, samples;
@@ -52,12 +62,14 @@ typedef struct command_options {
   int basis;                          /**< of enum ellipse_basis */
   int seen_by;                        /**< EF_PROTANOPE - 1 ..., -1 not given */
   int units;                          /**< an ef_cone_units */
+  int modulation;                     /**< an ef_modulation */
   int format;
   int bits, swatch_bits, jobs, categories;
-  bool skip_bad, check, worst_case, force, quiet, help, version;
+  bool skip_bad, check, worst_case, robust, force, quiet, help, version;
   text_list at, lights, observers;
   size_t n_files;
   const char **files; /**< owned; the texts are those of argv */
+  given_options given;
 } command_options;
 
 /** Reads the arguments after the command's name. EXIT_DONE, or EXIT_USAGE with

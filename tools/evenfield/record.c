@@ -99,7 +99,7 @@ void record_texts(record *r, const char *key, size_t n,
     ef_json_end_array(r->json);
     return;
   }
-  char joined[512] = "";
+  char joined[2048] = "";
   size_t length = 0;
   for (size_t i = 0; i < n && length < sizeof joined; ++i) {
     length += (size_t)snprintf(joined + length, sizeof joined - length, "%s%s",

@@ -1,0 +1,30 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** \file
+ * The answer of `isolate`: as text for people, or as CSV or JSON. */
+#ifndef COMMAND_RENDER_ISOLATE_H
+#define COMMAND_RENDER_ISOLATE_H
+
+#include <evenfield/exchange.h>
+
+#include "isolate.h"
+#include "record.h"
+#include "text.h"
+
+ef_status isolate_text_write(const isolate_scene *s, const isolate_result *r,
+                             ef_output *output, ef_error *error);
+ef_status isolate_data_write(const isolate_scene *s, const isolate_result *r,
+                             ef_output *output, bool is_csv, ef_error *error);
+/** The members of the answer, into a record that is open. */
+void isolate_record(record *out, const isolate_scene *s,
+                    const isolate_result *r);
+
+/** "L", "M", "S", "rods", "melanopsin". */
+const char *isolate_receptor_words(size_t receptor);
+/** A contrast in percent, with three significant digits or as many decimals as
+ * 1e-6 takes, and a sign unless it is zero: "+12.3", "-0.042", "0". */
+void isolate_percent(double contrast, char out[EF_NUMBER_TEXT]);
+/** What all figures rest on. */
+void render_isolate_basis(text *out, const isolate_scene *s,
+                          const isolate_result *r);
+
+#endif
