@@ -132,8 +132,9 @@ EF_API double ef_metric_components(const ef_metric *metric,
                                    const double reference[3],
                                    const double sample[3],
                                    ef_components *components);
-/** n pairs, n x 3 each, over up to `jobs` threads (0: all cores); results do
- * not depend on `jobs` or `n`. */
+/** n pairs, n x 3 each, over up to `jobs` threads (0: all cores), by the batch
+ * kernels: a pair's result does not depend on `jobs`, `n` or its place, bit for
+ * bit, and is that of ef_metric_difference to 1e-10. */
 EF_API void ef_metric_difference_batch(const ef_metric *metric, size_t n,
                                        const double *reference,
                                        const double *sample, int jobs,

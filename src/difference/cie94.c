@@ -4,6 +4,7 @@
 #include <math.h>
 
 #include "difference/difference_private.h"
+#include "kernel/kernels.h"
 
 enum { K_L, K_C, K_H, K_1, K_2 };
 
@@ -27,6 +28,14 @@ static double difference(const ef_metric *self, const double reference[3],
                          const double sample[3]) {
   ef_components part;
   return components(self, reference, sample, &part);
+}
+
+static void differences(const ef_metric *self, size_t n,
+                        const double *reference, const double *sample,
+                        double *difference) {
+  double factor[5];
+  for (size_t i = 0; i < 5; ++i) factor[i] = self->parameter[i].value;
+  ef__kernels()->cie94(n, reference, sample, factor, difference);
 }
 
 static void tensor(const ef_metric *self, const double coordinate[3],
@@ -63,6 +72,7 @@ const ef_metric ef__metric_cie94 = {
     .inverse = ef__lab_inverse,
     .jacobian = ef__lab_jacobian,
     .difference = difference,
+    .differences = differences,
     .components = components,
     .tensor = tensor,
     .expand = expand,

@@ -5,6 +5,8 @@
 
 #include <math.h>
 
+#include "kernel/kernels.h"
+
 /* cos and sin of the angles in eq. 15, degrees. */
 #define COS_30 0.86602540378443865
 #define SIN_30 0.5
@@ -128,6 +130,14 @@ static double difference(const ef_metric *self, const double reference[3],
   return components(self, reference, sample, &part);
 }
 
+static void differences(const ef_metric *self, size_t n,
+                        const double *reference, const double *sample,
+                        double *difference) {
+  double factor[3];
+  for (size_t i = 0; i < 3; ++i) factor[i] = self->parameter[i].value;
+  ef__kernels()->ciede2000(n, reference, sample, factor, difference);
+}
+
 double ef_delta_e_ciede2000(ef_lab reference, ef_lab sample, double k_l,
                             double k_c, double k_h) {
   const double r[3] = {reference.L_star, reference.a_star, reference.b_star};
@@ -212,6 +222,7 @@ const ef_metric ef__metric_ciede2000 = {
     .inverse = ef__lab_inverse,
     .jacobian = ef__lab_jacobian,
     .difference = difference,
+    .differences = differences,
     .components = components,
     .tensor = tensor,
     .expand = ef__ciede2000_expand,

@@ -5,6 +5,7 @@
 #include <math.h>
 
 #include "difference/difference_private.h"
+#include "kernel/kernels.h"
 
 static const double radian = 0.017453292519943295; /* pi / 180 */
 
@@ -44,6 +45,14 @@ static double difference(const ef_metric *self, const double reference[3],
   return components(self, reference, sample, &part);
 }
 
+static void differences(const ef_metric *self, size_t n,
+                        const double *reference, const double *sample,
+                        double *difference) {
+  double factor[2];
+  for (size_t i = 0; i < 2; ++i) factor[i] = self->parameter[i].value;
+  ef__kernels()->cmc(n, reference, sample, factor, difference);
+}
+
 static void tensor(const ef_metric *self, const double coordinate[3],
                    double g[9]) {
   const ef__polar_weights w = weights(self, coordinate);
@@ -75,6 +84,7 @@ const ef_metric ef__metric_cmc = {
     .inverse = ef__lab_inverse,
     .jacobian = ef__lab_jacobian,
     .difference = difference,
+    .differences = differences,
     .components = components,
     .tensor = tensor,
     .expand = expand,

@@ -74,6 +74,10 @@ struct ef_metric {
                 double jacobian[9]);
   double (*difference)(const ef_metric *self, const double reference[3],
                        const double sample[3]);
+  /** Optional: the differences of n pairs, n x 3 each, to rounding those of
+   * `difference`; a pair's must not depend on its neighbours or its place. */
+  void (*differences)(const ef_metric *self, size_t n, const double *reference,
+                      const double *sample, double *difference);
   double (*components)(const ef_metric *self, const double reference[3],
                        const double sample[3], ef_components *components);
   void (*tensor)(const ef_metric *self, const double coordinate[3],
@@ -174,6 +178,9 @@ double ef__euclidean_components(const ef_metric *self,
                                 const double reference[3],
                                 const double sample[3],
                                 ef_components *components);
+void ef__euclidean_differences(const ef_metric *self, size_t n,
+                               const double *reference, const double *sample,
+                               double *difference);
 void ef__euclidean_tensor(const ef_metric *self, const double coordinate[3],
                           double tensor[9]);
 void ef__euclidean_expand(const ef_metric *self, const double reference[3],
@@ -186,6 +193,8 @@ typedef struct ef__scale {
 } ef__scale;
 double ef__scaled_difference(ef__scale scale, const double reference[3],
                              const double sample[3]);
+void ef__scaled_differences(ef__scale scale, size_t n, const double *reference,
+                            const double *sample, double *difference);
 double ef__scaled_components(ef__scale scale, const double reference[3],
                              const double sample[3],
                              ef_components *components);

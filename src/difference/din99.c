@@ -93,6 +93,12 @@ static double difference(const ef_metric *self, const double reference[3],
   return ef__scaled_difference(scale(self), reference, sample);
 }
 
+static void differences(const ef_metric *self, size_t n,
+                        const double *reference, const double *sample,
+                        double *difference) {
+  ef__scaled_differences(scale(self), n, reference, sample, difference);
+}
+
 static double components(const ef_metric *self, const double reference[3],
                          const double sample[3], ef_components *part) {
   return ef__scaled_components(scale(self), reference, sample, part);
@@ -121,6 +127,7 @@ const ef_metric ef__metric_din99o = {
     .inverse = inverse,
     .jacobian = jacobian,
     .difference = difference,
+    .differences = differences,
     .components = components,
     .tensor = tensor,
     .expand = expand,

@@ -87,7 +87,7 @@ void ef_metric_coordinates_batch(const ef_metric *metric, size_t n,
                                  const double *xyz,
                                  const ef_conditions *conditions, int jobs,
                                  double *coordinate) {
-  enum { CHUNK = 4096 }; /* as for differences */
+  enum { CHUNK = 4096 };
   coordinate_batch b = {metric, conditions, xyz, coordinate};
   ef__parallel_for(n, CHUNK, jobs, coordinate_range, &b);
 }
@@ -128,6 +128,11 @@ typedef struct batch {
 static void batch_range(void *context, size_t begin, size_t end) {
   const batch *const b = context;
   const ef_metric *const metric = b->metric;
+  if (metric->differences != NULL) {
+    metric->differences(metric, end - begin, b->reference + 3 * begin,
+                        b->sample + 3 * begin, b->difference + begin);
+    return;
+  }
   for (size_t i = begin; i < end; ++i) {
     b->difference[i] =
         metric->difference(metric, b->reference + 3 * i, b->sample + 3 * i);
@@ -137,7 +142,7 @@ static void batch_range(void *context, size_t begin, size_t end) {
 void ef_metric_difference_batch(const ef_metric *metric, size_t n,
                                 const double *reference, const double *sample,
                                 int jobs, double *difference) {
-  enum { CHUNK = 4096 }; /* some 0.3 ms of work: enough for a thread */
+  enum { CHUNK = 16384 }; /* some 0.1 to 0.3 ms of work: enough for a thread */
   batch b = {metric, reference, sample, difference};
   ef__parallel_for(n, CHUNK, jobs, batch_range, &b);
 }

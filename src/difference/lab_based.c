@@ -115,6 +115,7 @@ const ef_metric ef__metric_cielab = {
     .inverse = ef__lab_inverse,
     .jacobian = ef__lab_jacobian,
     .difference = ef__euclidean_difference,
+    .differences = ef__euclidean_differences,
     .components = ef__euclidean_components,
     .tensor = ef__euclidean_tensor,
     .expand = ef__euclidean_expand,

@@ -58,6 +58,7 @@ const ef_metric ef__metric_cieluv = {
     .inverse = inverse,
     .jacobian = jacobian,
     .difference = ef__euclidean_difference,
+    .differences = ef__euclidean_differences,
     .components = ef__euclidean_components,
     .tensor = ef__euclidean_tensor,
     .expand = ef__euclidean_expand,

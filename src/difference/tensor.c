@@ -5,12 +5,20 @@
 
 #include <math.h>
 
+#include "kernel/kernels.h"
+
 double ef__scaled_difference(ef__scale scale, const double reference[3],
                              const double sample[3]) {
   const double d0 = (sample[0] - reference[0]) / scale.lightness;
   const double d1 = (sample[1] - reference[1]) / scale.chromatic;
   const double d2 = (sample[2] - reference[2]) / scale.chromatic;
   return sqrt(d0 * d0 + d1 * d1 + d2 * d2);
+}
+
+void ef__scaled_differences(ef__scale scale, size_t n, const double *reference,
+                            const double *sample, double *difference) {
+  const double factor[2] = {scale.lightness, scale.chromatic};
+  ef__kernels()->distance(n, reference, sample, factor, difference);
 }
 
 double ef__scaled_components(ef__scale scale, const double reference[3],
@@ -53,6 +61,13 @@ double ef__euclidean_difference(const ef_metric *self,
                                 const double sample[3]) {
   (void)self;
   return ef__scaled_difference(plain, reference, sample);
+}
+
+void ef__euclidean_differences(const ef_metric *self, size_t n,
+                               const double *reference, const double *sample,
+                               double *difference) {
+  (void)self;
+  ef__scaled_differences(plain, n, reference, sample, difference);
 }
 
 double ef__euclidean_components(const ef_metric *self,

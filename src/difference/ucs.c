@@ -98,6 +98,12 @@ static double difference(const ef_metric *self, const double reference[3],
   return ef__scaled_difference(scale(self), reference, sample);
 }
 
+static void differences(const ef_metric *self, size_t n,
+                        const double *reference, const double *sample,
+                        double *difference) {
+  ef__scaled_differences(scale(self), n, reference, sample, difference);
+}
+
 static double components(const ef_metric *self, const double reference[3],
                          const double sample[3], ef_components *part) {
   return ef__scaled_components(scale(self), reference, sample, part);
@@ -129,8 +135,8 @@ static const ef__parameter_set sets[] = {{"lcd", {0.77, 0.007, 0.0053}},
   .parameter_set = sets, .coordinates = coordinates,                           \
   .coordinates_of_many = coordinates_of_many, .inverse = inverse,              \
   .jacobian = jacobian, .chord = chord, .kinked_axis = true,                   \
-  .difference = difference, .components = components, .tensor = tensor,        \
-  .expand = expand
+  .difference = difference, .differences = differences,                        \
+  .components = components, .tensor = tensor, .expand = expand
 
 const ef_metric ef__metric_cam02_ucs = {
     .name = "cam02-ucs",

@@ -4,38 +4,13 @@
 #include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
-#include <time.h>
 
 #include <evenfield/match.h>
 
+#include "bench.h"
 #include "gen.h"
 
 enum { N_OBSERVERS = 1000, N_PAIRS = 1000, N_LOOP = 50, SAMPLES = 401 };
-
-/* Time on the wall and on the processors, which other work does not disturb. */
-typedef struct span {
-  double wall_s, busy_s;
-} span;
-
-static double read_clock(clockid_t which) {
-  struct timespec t;
-  clock_gettime(which, &t);
-  return (double)t.tv_sec + 1e-9 * (double)t.tv_nsec;
-}
-
-static span now(void) {
-  return (span){read_clock(CLOCK_MONOTONIC),
-                read_clock(CLOCK_PROCESS_CPUTIME_ID)};
-}
-
-static span since(span start) {
-  const span end = now();
-  return (span){end.wall_s - start.wall_s, end.busy_s - start.busy_s};
-}
-
-static void print_span(const char *what, span taken) {
-  printf("  %-28s %7.3f s   %7.3f s\n", what, taken.wall_s, taken.busy_s);
-}
 
 static void give_up(const char *what, const ef_error *error) {
   fprintf(stderr, "%s: %s\n", what, error->message);
@@ -87,28 +62,43 @@ static double one_observer(const ef_population *population, size_t i,
   return sum;
 }
 
-/* Sums the differences of the first N_LOOP observers; returns their time scaled
- * up to all of them. */
-static span time_loop(const ef_population *population, const ef_side *target,
-                      const ef_side *match, const ef_metric *metric,
-                      double *sum) {
-  const double factor = (double)N_OBSERVERS / N_LOOP;
-  const span start = now();
-  *sum = 0;
+typedef struct contest {
+  const ef_population *population;
+  const ef_side *target, *match;
+  const ef_spread_settings *how;
+  int jobs;
+  ef_spread *spread;
+  double *difference;
+  double loop_sum;
+} contest;
+
+/* The first N_LOOP observers only. */
+static void run_loop(void *context) {
+  contest *const c = context;
+  c->loop_sum = 0;
   for (size_t i = 0; i < N_LOOP; ++i) {
-    *sum += one_observer(population, i, target, match, metric);
+    c->loop_sum +=
+        one_observer(c->population, i, c->target, c->match, c->how->metric);
   }
-  const span taken = since(start);
-  return (span){factor * taken.wall_s, factor * taken.busy_s};
+}
+
+static void run_spread(void *context) {
+  contest *const c = context;
+  ef_error error;
+  if (ef_population_spread(c->population, N_PAIRS, c->target, c->match, c->how,
+                           c->jobs, c->spread, c->difference, NULL,
+                           &error) != EF_OK) {
+    give_up("spread", &error);
+  }
 }
 
 int main(void) {
   gen g = gen_new(1);
   ef_error error;
-  double *const sample = malloc(2 * N_PAIRS * SAMPLES * sizeof *sample);
+  double *const sample = bench_allocate(2 * N_PAIRS * SAMPLES, sizeof *sample);
   double *const difference =
-      malloc((size_t)N_PAIRS * N_OBSERVERS * sizeof *difference);
-  ef_spread *const spread = malloc(N_PAIRS * sizeof *spread);
+      bench_allocate((size_t)N_PAIRS * N_OBSERVERS, sizeof *difference);
+  ef_spread *const spread = bench_allocate(N_PAIRS, sizeof *spread);
   static double white[SAMPLES];
   for (size_t i = 0; i < 2 * N_PAIRS; ++i) {
     gen_smooth(&g, SAMPLES, sample + i * SAMPLES);
@@ -126,40 +116,31 @@ int main(void) {
   ef_population *const population = ef_population_new(&settings, &error);
   if (population == NULL) give_up("population", &error);
   const ef_spread_settings how = ef_spread_settings_default();
-  const int jobs[3] = {1, 2, 0};
-  span taken[3];
-  for (size_t k = 0; k < 3; ++k) {
-    const span start = now();
-    if (ef_population_spread(population, N_PAIRS, &target, &match, &how,
-                             jobs[k], spread, difference, NULL,
-                             &error) != EF_OK) {
-      give_up("spread", &error);
-    }
-    taken[k] = since(start);
-  }
-  double loop_sum, sum = 0;
-  const span loop =
-      time_loop(population, &target, &match, how.metric, &loop_sum);
+  contest one = {population, &target, &match, &how, 1, spread, difference, 0};
+  contest two = one;
+  two.jobs = 2;
+  bench_entry entry[] = {{"population_loop", run_loop, &one, false, 0},
+                         {"population_one_thread", run_spread, &one, false, 0},
+                         {"population_two_threads", run_spread, &two, true, 0}};
+  bench_run(3, entry);
+  entry[0].seconds *= (double)N_OBSERVERS / N_LOOP;
+  bench_per_item(3, entry, (double)N_OBSERVERS * N_PAIRS);
+  bench_row("1000 observers x 1000 pairs, 401 samples, CIEDE2000",
+            "plain loop, one observer after the other", &entry[1], &entry[0],
+            0);
+  bench_row("the same, two threads, wall", "plain loop, one thread", &entry[2],
+            &entry[0], 0);
+  double sum = 0;
   for (size_t i = 0; i < N_LOOP; ++i) {
     for (size_t p = 0; p < N_PAIRS; ++p) {
       sum += difference[p * N_OBSERVERS + i];
     }
   }
-  printf("%d observers x %d pairs, %d samples at 1 nm, CIEDE2000\n",
-         N_OBSERVERS, N_PAIRS, SAMPLES);
-  printf("  %-28s %9s   %9s\n", "", "wall", "processor");
-  print_span("one job", taken[0]);
-  print_span("two jobs", taken[1]);
-  print_span("all cores", taken[2]);
-  print_span("plain loop, from 50 observers", loop);
-  printf("  plain loop / one job, processor time: %.1f\n"
-         "  plain loop / two jobs, wall:          %.1f\n",
-         loop.busy_s / taken[0].busy_s, loop.wall_s / taken[1].wall_s);
-  printf("  sum of the differences, relative to the loop's: %.2g\n",
-         fabs(sum / loop_sum - 1));
+  bench_value("population_error", fabs(sum / one.loop_sum - 1),
+              "relative, of the sum of the differences");
   ef_population_free(population);
   free(spread);
   free(difference);
   free(sample);
-  return fabs(sum / loop_sum - 1) < 1e-9 ? 0 : 1;
+  return fabs(sum / one.loop_sum - 1) < 1e-9 ? 0 : 1;
 }

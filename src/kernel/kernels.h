@@ -1,0 +1,48 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** \file
+ * The batch kernels: arrays in, arrays out, no allocation, no threads. Each is
+ * built once for every target and called through ef__kernels(), which chooses
+ * once. All targets give the same bits, and an item the same whatever its place
+ * in the batch: the last, short vector is filled up and takes the same path.
+ * Outputs may be inputs of the same shape. Not for values that are not finite
+ * unless said; NaN gives NaN. */
+#ifndef EVENFIELD_KERNEL_KERNELS_H
+#define EVENFIELD_KERNEL_KERNELS_H
+
+#include <stddef.h>
+
+/** X(name, arguments) of every kernel. Pairs are n x 3 each. */
+#define EF__KERNEL_LIST(X)                                                     \
+  /* mathematics.c: functions of n numbers, domains as in mathematics.h. */    \
+  X(cube_root, (size_t n, const double *x, double *out))                       \
+  X(exp, (size_t n, const double *x, double *out))                             \
+  X(log, (size_t n, const double *x, double *out))                             \
+  X(power, (size_t n, const double *x, double y, double *out))                 \
+  X(sin_cos, (size_t n, const double *x, double *sine, double *cosine))        \
+  X(atan2, (size_t n, const double *y, const double *x, double *out))          \
+  /* cielab.c, cie94.c, cmc.c, ciede2000.c: differences of n pairs. */         \
+  X(ciede2000, (size_t n, const double *reference, const double *sample,       \
+                const double factor[3], double *out))                          \
+  X(cie94, (size_t n, const double *reference, const double *sample,           \
+            const double factor[5], double *out))                              \
+  X(cmc, (size_t n, const double *reference, const double *sample,             \
+          const double factor[2], double *out))                                \
+  /* The distance, coordinate 0 over factor[0], the others over factor[1]. */  \
+  X(distance, (size_t n, const double *reference, const double *sample,        \
+               const double factor[2], double *out))
+
+typedef struct ef__kernel_table {
+  const char *target; /**< "avx2", "baseline" */
+#define EF__KERNEL_MEMBER(name, arguments) void(*name) arguments;
+  EF__KERNEL_LIST(EF__KERNEL_MEMBER)
+#undef EF__KERNEL_MEMBER
+} ef__kernel_table;
+
+/** The best that this processor has. */
+const ef__kernel_table *ef__kernels(void);
+
+/** Those that this build has and this processor can run, the best first; NULL
+ * beyond the last. */
+const ef__kernel_table *ef__kernels_at(size_t i);
+
+#endif

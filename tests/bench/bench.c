@@ -1,0 +1,70 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "bench.h"
+
+#include <stdio.h>
+#include <stdlib.h>
+#include <time.h>
+
+static double read_clock(clockid_t which) {
+  struct timespec t;
+  clock_gettime(which, &t);
+  return (double)t.tv_sec + 1e-9 * (double)t.tv_nsec;
+}
+
+double bench_wall_s(void) {
+  return read_clock(CLOCK_MONOTONIC);
+}
+
+double bench_busy_s(void) {
+  return read_clock(CLOCK_PROCESS_CPUTIME_ID);
+}
+
+static double time_of(const bench_entry *entry) {
+  const double start = entry->by_wall ? bench_wall_s() : bench_busy_s();
+  entry->run(entry->context);
+  return (entry->by_wall ? bench_wall_s() : bench_busy_s()) - start;
+}
+
+static int by_size(const void *a, const void *b) {
+  const double x = *(const double *)a, y = *(const double *)b;
+  return (x > y) - (x < y);
+}
+
+void bench_run(size_t n, bench_entry *entry) {
+  double taken[BENCH_MOST_ENTRIES][BENCH_ROUNDS];
+  for (size_t i = 0; i < n; ++i) entry[i].run(entry[i].context);
+  for (size_t round = 0; round < BENCH_ROUNDS; ++round) {
+    for (size_t i = 0; i < n; ++i) taken[i][round] = time_of(&entry[i]);
+  }
+  for (size_t i = 0; i < n; ++i) {
+    qsort(taken[i], BENCH_ROUNDS, sizeof taken[i][0], by_size);
+    entry[i].seconds = taken[i][BENCH_ROUNDS / 2];
+  }
+}
+
+void bench_value(const char *name, double value, const char *unit) {
+  printf("%s %.4g %s\n", name, value, unit);
+}
+
+void bench_per_item(size_t n, const bench_entry *entry, double n_items) {
+  for (size_t i = 0; i < n; ++i) {
+    printf("%s_ns %.4g ns\n", entry[i].name, entry[i].seconds / n_items * 1e9);
+  }
+}
+
+void bench_row(const char *what, const char *peer_title,
+               const bench_entry *ours, const bench_entry *peer,
+               double wanted) {
+  const double ratio = peer->seconds / ours->seconds;
+  printf("%s_over_%s %.4g times\n", ours->name, peer->name, ratio);
+  printf("| %s | %s | %.*f |", what, peer_title, ratio < 10 ? 1 : 0, ratio);
+  if (wanted > 0) printf(" %g |\n", wanted);
+  else printf(" - |\n");
+}
+
+void *bench_allocate(size_t count, size_t size) {
+  void *const block = malloc(count * size);
+  if (block != NULL) return block;
+  fprintf(stderr, "no memory for %zu items of %zu bytes\n", count, size);
+  exit(1);
+}
