@@ -368,7 +368,7 @@ static void loop_visits_each_index_once_in_fixed_chunks(void **state) {
       for (size_t c = 0; c < 5; ++c) {
         static loop_record r;
         memset(&r, 0, sizeof r);
-        ef__parallel_for(size[b], chunk[c], jobs[a], record_range, &r);
+        ef_parallel_for(size[b], chunk[c], jobs[a], record_range, &r);
         const size_t step = chunk[c] == 0 ? 1 : chunk[c];
         for (size_t i = 0; i < size[b]; ++i) {
           assert_int_equal(r.visits[i], 1);
@@ -378,7 +378,7 @@ static void loop_visits_each_index_once_in_fixed_chunks(void **state) {
       }
     }
   }
-  ef__parallel_for(0, 4, 0, record_range, NULL); /* nothing to call */
+  ef_parallel_for(0, 4, 0, record_range, NULL); /* nothing to call */
 }
 
 /* ---- GSL --------------------------------------------------------------- */

@@ -408,6 +408,39 @@ static void memory_may_run_out(void **state) {
   clear("a.csv");
 }
 
+static void parts_in_memory(void **state) {
+  (void)state;
+  enum { N = 30000 };
+  size_t length;
+  ef_output *const part = ef_output_memory(NULL);
+  assert_null(ef_output_bytes(part, &length));
+  assert_int_equal(length, 0);
+  for (int i = 0; i < N; ++i) put(part, "37.23\n");
+  const char *bytes = ef_output_bytes(part, &length);
+  assert_int_equal(length, 6 * N);
+  for (size_t i = 0; i < length; ++i)
+    assert_int_equal(bytes[i], "37.23\n"[i % 6]);
+  ef_output_clear(part);
+  put(part, "4");
+  bytes = ef_output_bytes(part, &length);
+  assert_int_equal(length, 1);
+  assert_int_equal(bytes[0], '4');
+  ef_output_discard(part);
+  assert_int_equal(scratch_count(), 0);
+}
+
+static void parts_in_short_memory(void **state) {
+  (void)state;
+  ef_error error = {0};
+  ef_output *const part = ef_output_memory(NULL);
+  fail_alloc_at(1);
+  assert_int_equal(ef_output_text(part, "37.23", &error), EF_NO_MEMORY);
+  assert_true(fail_alloc_stop());
+  assert_error(&error, EF_NO_MEMORY, "output");
+  put(part, "4");
+  ef_output_discard(part);
+}
+
 int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(a_file_appears_at_the_end),
@@ -428,6 +461,8 @@ int main(void) {
       cmocka_unit_test(standard_output_may_be_full),
       cmocka_unit_test(directories),
       cmocka_unit_test(memory_may_run_out),
+      cmocka_unit_test(parts_in_memory),
+      cmocka_unit_test(parts_in_short_memory),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
   return cmocka_run_group_tests(tests, scratch_make, scratch_remove);

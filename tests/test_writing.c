@@ -68,6 +68,29 @@ static void csv_rows(void **state) {
   assert_int_equal(ef_csv_finish(NULL, NULL), EF_OK);
 }
 
+/* A row of its own, and in parts. */
+static void csv_rows_from_another_writer(void **state) {
+  (void)state;
+  ef_output *const output = begin();
+  ef_output *const part = ef_output_memory(NULL);
+  ef_csv *const csv = ef_csv_new(output, NULL);
+  size_t length;
+  ef_csv_text(csv, "name");
+  for (int i = 0; i < 2; ++i) {
+    ef_csv *const rows = ef_csv_new(part, NULL);
+    ef_output_clear(part);
+    ef_csv_text(rows, "a,b");
+    ef_csv_number(rows, 37.23 + i);
+    assert_int_equal(ef_csv_finish(rows, NULL), EF_OK);
+    const char *const bytes = ef_output_bytes(part, &length);
+    ef_csv_rows(csv, bytes, length); /* the first one ends the header */
+  }
+  ef_csv_rows(csv, NULL, 0);
+  assert_int_equal(ef_csv_finish(csv, NULL), EF_OK);
+  ef_output_discard(part);
+  expect(output, "name\n\"a,b\",37.23\n\"a,b\",38.23\n");
+}
+
 static void csv_keeps_the_failure(void **state) {
   (void)state;
   ef_error error = {0};
@@ -145,6 +168,92 @@ static void check_text(const char *text, const char *expected) {
   ef_json_text(json, NULL, text);
   assert_int_equal(ef_json_finish(json, NULL), EF_OK);
   expect(output, expected);
+}
+
+/* Objects with all their indentation. */
+static void write_target(ef_json *json, int64_t a) {
+  ef_json_begin_object(json, NULL);
+  ef_json_integer(json, "a", a);
+  ef_json_end_object(json);
+}
+
+static void append_targets(ef_json *json, ef_output *part, int64_t n) {
+  size_t length;
+  ef_output_clear(part);
+  ef_json *const elements = ef_json_new_elements(part, 2, NULL);
+  for (int64_t i = 0; i < n; ++i) write_target(elements, i);
+  assert_int_equal(ef_json_finish(elements, NULL), EF_OK);
+  const char *const bytes = ef_output_bytes(part, &length);
+  ef_json_elements(json, bytes, length);
+}
+
+static void append_plain(ef_json *json, ef_output *part, double value) {
+  size_t length;
+  ef_output_clear(part);
+  ef_json *const elements = ef_json_new_elements(part, 2, NULL);
+  ef_json_number(elements, NULL, value);
+  ef_json_number(elements, NULL, -value);
+  assert_int_equal(ef_json_finish(elements, NULL), EF_OK);
+  const char *const bytes = ef_output_bytes(part, &length);
+  ef_json_elements(json, bytes, length);
+}
+
+static void json_elements_from_another_writer(void **state) {
+  (void)state;
+  ef_output *const output = begin();
+  ef_output *const part = ef_output_memory(NULL);
+  ef_json *const json = ef_json_new(output, NULL);
+  ef_json_begin_object(json, NULL);
+  ef_json_begin_array(json, "none");
+  append_targets(json, part, 0);
+  ef_json_end_array(json);
+  ef_json_begin_array(json, "plain");
+  append_plain(json, part, 0.5);
+  append_plain(json, part, 2);
+  ef_json_end_array(json);
+  ef_json_begin_array(json, "targets");
+  append_targets(json, part, 2);
+  write_target(json, 7);
+  append_targets(json, part, 1);
+  append_plain(json, part, 3);
+  ef_json_end_array(json);
+  ef_json_end_object(json);
+  assert_int_equal(ef_json_finish(json, NULL), EF_OK);
+  ef_output_discard(part);
+  expect(output, "{\n"
+                 "  \"none\": [],\n"
+                 "  \"plain\": [0.5, -0.5, 2, -2],\n"
+                 "  \"targets\": [\n"
+                 "    {\n      \"a\": 0\n    },\n"
+                 "    {\n      \"a\": 1\n    },\n"
+                 "    {\n      \"a\": 7\n    },\n"
+                 "    {\n      \"a\": 0\n    },\n"
+                 "    3, -3\n"
+                 "  ]\n"
+                 "}\n");
+}
+
+static void json_elements_have_a_place(void **state) {
+  (void)state;
+  ef_error error = {0};
+  ef_output *const part = ef_output_memory(NULL);
+  assert_null(ef_json_new_elements(part, 0, &error));
+  assert_error(&error, EF_INVALID, "no array lies 0 deep");
+  assert_null(ef_json_new_elements(part, 64, NULL));
+  ef_json *json = ef_json_new_elements(part, 1, NULL);
+  ef_json_end_array(json); /* the array is not this writer's */
+  assert_int_equal(ef_json_finish(json, &error), EF_INVALID);
+  assert_error(&error, EF_INVALID, "an end without its beginning");
+  json = ef_json_new_elements(part, 1, NULL);
+  ef_json_begin_object(json, NULL);
+  assert_int_equal(ef_json_finish(json, &error), EF_INVALID);
+  assert_error(&error, EF_INVALID, "does not end");
+  json = ef_json_new(part, NULL);
+  ef_json_begin_object(json, NULL);
+  ef_json_elements(json, "1", 1);
+  assert_int_equal(ef_json_finish(json, &error), EF_INVALID);
+  assert_error(&error, EF_INVALID, "elements outside all arrays");
+  ef_output_discard(part);
 }
 
 static void json_texts(void **state) {
@@ -281,8 +390,11 @@ static void writers_without_memory(void **state) {
 int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(csv_rows),
+      cmocka_unit_test(csv_rows_from_another_writer),
       cmocka_unit_test(csv_keeps_the_failure),
       cmocka_unit_test(json_document),
+      cmocka_unit_test(json_elements_from_another_writer),
+      cmocka_unit_test(json_elements_have_a_place),
       cmocka_unit_test(json_texts),
       cmocka_unit_test(json_nesting_is_checked),
       cmocka_unit_test(json_may_be_deep),

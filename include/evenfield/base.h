@@ -98,6 +98,15 @@ EF_API bool ef_number_parse(const char *text, size_t length, char decimal_mark,
 EF_API size_t ef_nearest_names(const char *name, const char *const *known,
                                size_t n, size_t max, size_t *index);
 
+/** Calls `body` for the pieces [begin, end) of 0 .. n, each `chunk` long but
+ * the last, on up to `jobs` threads (0: all cores), the caller's among them,
+ * and returns when all are done. Pieces depend on n and `chunk` alone, so a
+ * body that writes only to its own range gives the same result with any number
+ * of threads. `chunk` 0 counts as 1. */
+EF_API void ef_parallel_for(size_t n, size_t chunk, int jobs,
+                            void (*body)(void *ctx, size_t begin, size_t end),
+                            void *ctx);
+
 #ifdef __cplusplus
 }
 #endif

@@ -214,6 +214,13 @@ EF_API ef_status ef_output_text(ef_output *output, const char *text,
 EF_API ef_status ef_output_commit(ef_output *output, ef_error *error);
 /** Drops what was written and frees; NULL is fine. */
 EF_API void ef_output_discard(ef_output *output);
+/** An output in memory, such as a part of another that a thread of its own
+ * writes. ef_output_bytes gives what was written to it, borrowed until the next
+ * write (NULL and 0 for nothing); ef_output_clear forgets it and keeps the room.
+ * Free with ef_output_discard. */
+EF_API ef_output *ef_output_memory(ef_error *error);
+EF_API const char *ef_output_bytes(const ef_output *output, size_t *length);
+EF_API void ef_output_clear(ef_output *output);
 /** Creates a directory unless it is there. */
 EF_API ef_status ef_directory_make(const char *path, ef_error *error);
 
@@ -227,6 +234,8 @@ EF_API void ef_csv_comment(ef_csv *csv, const char *text);
 EF_API void ef_csv_text(ef_csv *csv, const char *text);
 EF_API void ef_csv_number(ef_csv *csv, double value);
 EF_API void ef_csv_end_row(ef_csv *csv);
+/** Whole rows that another writer made, as they are. */
+EF_API void ef_csv_rows(ef_csv *csv, const char *bytes, size_t length);
 EF_API ef_status ef_csv_finish(ef_csv *csv, ef_error *error);
 
 /** One JSON document, written as it comes (RFC 8259, UTF-8): NaN and
@@ -246,6 +255,15 @@ EF_API void ef_json_integer(ef_json *json, const char *key, int64_t value);
 EF_API void ef_json_boolean(ef_json *json, const char *key, bool value);
 EF_API void ef_json_null(ef_json *json, const char *key);
 EF_API ef_status ef_json_finish(ef_json *json, ef_error *error);
+
+/** Part of a document: elements of an array that lies `depth` deep (1: the top
+ * value, 2: a member of the top object ...), written elsewhere and put in their
+ * place by ef_json_elements. EF_INVALID for a depth of 0 or above 63. Free with
+ * ef_json_finish. */
+EF_API ef_json *ef_json_new_elements(ef_output *output, size_t depth,
+                                     ef_error *error);
+/** Elements for the array that is open, from a writer for its depth. */
+EF_API void ef_json_elements(ef_json *json, const char *bytes, size_t length);
 
 /* ---- PNG --------------------------------------------------------------- */
 

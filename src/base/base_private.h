@@ -165,12 +165,9 @@ int ef__shortest_digits(double value, char digit[EF__SHORTEST_DIGITS]);
 
 /* ---- Loops (parallel.c) ------------------------------------------------ */
 
-/** Calls body(ctx, begin, end) for the chunks [0, chunk), [chunk, 2 chunk) ...
- * of [0, n) on up to `jobs` threads (0: as many as there are cores online), in
- * any order, and returns when all are done. Chunks depend on n and `chunk`
- * alone, so a body that writes only to its own range gives the same result
- * with any number of threads. A single chunk runs on the calling thread.
- * Threads that cannot be started are done without. `chunk` 0 counts as 1. */
+/** ef_parallel_for under the name that the library calls it by. A single chunk
+ * runs on the calling thread; threads that cannot be started are done without.
+ */
 void ef__parallel_for(size_t n, size_t chunk, int jobs,
                       void (*body)(void *ctx, size_t begin, size_t end),
                       void *ctx);

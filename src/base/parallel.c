@@ -71,3 +71,9 @@ void ef__parallel_for(size_t n, size_t chunk, int jobs,
   for (size_t i = 0; i < n_started; ++i)
     pthread_join(thread[i], NULL);
 }
+
+void ef_parallel_for(size_t n, size_t chunk, int jobs,
+                     void (*body)(void *ctx, size_t begin, size_t end),
+                     void *ctx) {
+  ef__parallel_for(n, chunk, jobs, body, ctx);
+}

@@ -110,6 +110,11 @@ void ef_csv_end_row(ef_csv *csv) {
   csv->row_is_blank = false;
 }
 
+void ef_csv_rows(ef_csv *csv, const char *bytes, size_t length) {
+  if (csv->in_row) ef_csv_end_row(csv);
+  if (length > 0) put(csv, bytes, length);
+}
+
 ef_status ef_csv_finish(ef_csv *csv, ef_error *error) {
   if (csv == NULL) return EF_OK;
   if (csv->in_row) ef_csv_end_row(csv);

@@ -22,6 +22,7 @@ typedef struct level {
 struct ef_json {
   ef_output *output;
   size_t depth;
+  size_t outer;   /* of a part: the levels of the document around it */
   bool has_top; /* the one value of the document was begun */
   level levels[DEEPEST];
   ef_status status; /* of the first failure */
@@ -35,6 +36,20 @@ ef_json *ef_json_new(ef_output *output, ef_error *error) {
     return NULL;
   }
   json->output = output;
+  return json;
+}
+
+ef_json *ef_json_new_elements(ef_output *output, size_t depth,
+                              ef_error *error) {
+  if (depth == 0 || depth >= DEEPEST) {
+    ef__error_set(error, EF_INVALID, "JSON: no array lies %zu deep", depth);
+    return NULL;
+  }
+  ef_json *const json = ef_json_new(output, error);
+  if (json == NULL) return NULL;
+  json->has_top = true;
+  json->depth = json->outer = depth;
+  json->levels[depth - 1] = (level){false, true, false};
   return json;
 }
 
@@ -152,7 +167,7 @@ static void begin(ef_json *json, const char *key, bool is_object) {
 
 static void end(ef_json *json, bool is_object) {
   if (json->status != EF_OK) return;
-  if (json->depth == 0 ||
+  if (json->depth == json->outer ||
       json->levels[json->depth - 1].is_object != is_object) {
     refuse(json, "an end without its beginning");
     return;
@@ -176,6 +191,24 @@ void ef_json_begin_array(ef_json *json, const char *key) {
 
 void ef_json_end_array(ef_json *json) {
   end(json, false);
+}
+
+void ef_json_elements(ef_json *json, const char *bytes, size_t length) {
+  if (json->depth == 0 || json->levels[json->depth - 1].is_object) {
+    refuse(json, "elements outside all arrays");
+  }
+  if (json->status != EF_OK || length == 0) return;
+  level *const at = &json->levels[json->depth - 1];
+  if (!at->is_empty) put(json, ",", 1);
+  if (bytes[0] == '\n') {
+    at->is_broken = true; /* containers bring their line break */
+  } else if (at->is_broken) {
+    break_line(json);
+  } else if (!at->is_empty) {
+    put(json, " ", 1);
+  }
+  at->is_empty = false;
+  put(json, bytes, length);
 }
 
 /* ---- Plain values ------------------------------------------------------ */
@@ -220,9 +253,10 @@ void ef_json_null(ef_json *json, const char *key) {
 
 ef_status ef_json_finish(ef_json *json, ef_error *error) {
   if (json == NULL) return EF_OK;
-  if (json->depth > 0) refuse(json, "an object or array does not end");
+  if (json->depth > json->outer)
+    refuse(json, "an object or array does not end");
   if (!json->has_top) refuse(json, "there is no value");
-  put(json, "\n", 1);
+  if (json->outer == 0) put(json, "\n", 1);
   const ef_status status = json->status;
   if (status != EF_OK && error != NULL) *error = json->error;
   free(json);

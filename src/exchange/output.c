@@ -1,7 +1,8 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /* Outputs that appear whole or not at all: written to a file without a
  * meaning beside the place, synced, then given the name. What is no regular
- * file (a device, a pipe, standard output) is written through. */
+ * file (a device, a pipe, standard output) is written through. Outputs in
+ * memory are parts of others. */
 #include "exchange/exchange_private.h"
 
 #include <errno.h>
@@ -29,6 +30,9 @@ struct ef_output {
   char *temporary; /* NULL: nothing to undo */
   mode_t mode;     /* of the file that is replaced, 0 if none */
   int reason;      /* errno of the first failure */
+  bool in_memory;
+  char *kept; /* in memory */
+  size_t kept_used, kept_room;
   size_t used;
   char buffer[BUFFER_BYTES];
 };
@@ -128,6 +132,10 @@ static ef_output *output_new(const char *place, ef_error *error) {
   output->temporary = NULL;
   output->mode = 0;
   output->reason = 0;
+  output->in_memory = false;
+  output->kept = NULL;
+  output->kept_used = 0;
+  output->kept_room = 0;
   output->used = 0;
   return output;
 }
@@ -137,6 +145,7 @@ static void output_free(ef_output *output) {
   free(output->place);
   free(output->target);
   free(output->temporary);
+  free(output->kept);
   free(output);
 }
 
@@ -216,6 +225,21 @@ ef_output *ef_output_open(const char *path, bool overwrite, ef_error *error) {
   return output;
 }
 
+ef_output *ef_output_memory(ef_error *error) {
+  ef_output *const output = output_new("memory", error);
+  if (output != NULL) output->in_memory = true;
+  return output;
+}
+
+const char *ef_output_bytes(const ef_output *output, size_t *length) {
+  *length = output->kept_used;
+  return output->kept;
+}
+
+void ef_output_clear(ef_output *output) {
+  output->kept_used = 0;
+}
+
 /* ---- Writing ----------------------------------------------------------- */
 
 /* All bytes to the descriptor; keeps the reason of the first failure. */
@@ -237,8 +261,24 @@ static void flush(ef_output *output) {
   output->used = 0;
 }
 
+static ef_status keep(ef_output *output, const void *bytes, size_t length,
+                      ef_error *error) {
+  if (length > output->kept_room - output->kept_used) {
+    const size_t needed = output->kept_used + length;
+    const size_t room = needed < BUFFER_BYTES ? BUFFER_BYTES : 2 * needed;
+    char *const grown = realloc(output->kept, room);
+    if (grown == NULL) return ef__error_memory(error, "an output");
+    output->kept = grown;
+    output->kept_room = room;
+  }
+  if (length > 0) memcpy(output->kept + output->kept_used, bytes, length);
+  output->kept_used += length;
+  return EF_OK;
+}
+
 ef_status ef_output_write(ef_output *output, const void *bytes, size_t length,
                           ef_error *error) {
+  if (output->in_memory) return keep(output, bytes, length, error);
   if (length > BUFFER_BYTES - output->used) flush(output);
   if (length > BUFFER_BYTES) {
     write_through(output, bytes, length);

@@ -14,7 +14,7 @@ LC_ALL=C
 export LC_ALL
 number=0
 failed=0
-echo "1..8"
+echo "1..10"
 
 # ef_check NAME FOUND EXPECTED
 ef_check() {
@@ -67,4 +67,13 @@ ef_check "and what does not is told" \
 "$evenfield" compare --quiet --format csv --samples 500 --jobs 1 --output 1.csv
 "$evenfield" compare --quiet --format csv --samples 500 --jobs 3 --output 3.csv
 ef_check "threads change nothing" "$(cmp 1.csv 3.csv && echo same)" same
+head -20000 batch.csv > many.csv
+for format in csv json; do
+  for jobs in 1 3; do
+    "$evenfield" compare standard.csv many.csv --quiet --samples 500 \
+      --format $format --jobs $jobs --output $jobs.$format --force
+  done
+  ef_check "nor in the order of many rows, $format" \
+    "$(cmp 1.$format 3.$format && echo same)" same
+done
 [ "$failed" = 0 ]

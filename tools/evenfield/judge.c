@@ -13,6 +13,9 @@
 
 static const double z_975 = 1.96;
 
+/* Sights a thread takes at a time. */
+enum { PIECE = 64 };
+
 static void work_free(work *w) {
   for (int side = 0; side < 2; ++side) {
     free(w->xyz[side]);
@@ -97,44 +100,6 @@ static void find_sights(work *w, size_t n, const pair *pairs, compared *out) {
   }
 }
 
-/* ---- Differences ------------------------------------------------------- */
-
-static ef_xyz xyz_of(const double *v) {
-  return (ef_xyz){v[0], v[1], v[2]};
-}
-
-static void gather(work *w, size_t under) {
-  for (size_t i = 0; i < w->n; ++i) {
-    memcpy(w->xyz[0] + 3 * i, w->sight[i].standard->xyz + 3 * under,
-           3 * sizeof(double));
-    memcpy(w->xyz[1] + 3 * i, w->sight[i].sample->xyz + 3 * under,
-           3 * sizeof(double));
-  }
-}
-
-static void set_differences(work *w, size_t k) {
-  const compare_scene *s = w->s;
-  const look *l = &s->looks.at[k];
-  const int jobs = s->options->jobs;
-  gather(w, k);
-  for (int side = 0; side < 2; ++side) {
-    ef_metric_coordinates_batch(s->metric, w->n, w->xyz[side], &l->conditions,
-                                jobs, w->at[side]);
-  }
-  ef_metric_difference_batch(s->metric, w->n, w->at[0], w->at[1], jobs,
-                             w->difference);
-  for (size_t i = 0; i < w->n; ++i) {
-    outcome *o = work_outcome(w, i, k);
-    o->standard = xyz_of(w->xyz[0] + 3 * i);
-    o->sample = xyz_of(w->xyz[1] + 3 * i);
-    o->difference = w->difference[i];
-    ef_metric_components(s->metric, w->at[0] + 3 * i, w->at[1] + 3 * i,
-                         &o->components);
-    o->population_mean = o->population_p95 = NONE;
-    o->metamerism = o->inconstancy_standard = o->inconstancy_sample = NONE;
-  }
-}
-
 /* ---- Uncertainty of measurement ---------------------------------------- */
 
 /* Of the mean of a specimen's readings. What was read once is taken to scatter
@@ -151,22 +116,68 @@ static const ef_scatter *scatter_of(const specimen *of, const specimen *other,
   return room;
 }
 
-static void set_uncertainty(work *w, size_t k) {
-  const look *l = &w->s->looks.at[k];
+static void set_uncertainty(const work *w, size_t i) {
+  const size_t k = w->under;
+  const sight *at = &w->sight[i];
+  outcome *o = work_outcome(w, i, k);
+  ef_scatter room[2];
+  const ef_scatter *a = scatter_of(at->standard, at->sample, k, &room[0]);
+  const ef_scatter *b = scatter_of(at->sample, at->standard, k, &room[1]);
+  o->sd = o->noise_alone = NONE;
+  if (a == NULL || isnan(o->difference))
+    return;
+  const ef_uncertain u =
+      ef_metric_uncertainty(w->s->metric, o->standard, o->sample,
+                            &w->s->looks.at[k].conditions, a, b);
+  o->sd = u.sd;
+  o->noise_alone = u.noise_alone;
+}
+
+/* ---- Differences ------------------------------------------------------- */
+
+static ef_xyz xyz_of(const double *v) {
+  return (ef_xyz){v[0], v[1], v[2]};
+}
+
+static void gather(work *w, size_t under) {
   for (size_t i = 0; i < w->n; ++i) {
-    const sight *at = &w->sight[i];
-    outcome *o = work_outcome(w, i, k);
-    ef_scatter room[2];
-    const ef_scatter *a = scatter_of(at->standard, at->sample, k, &room[0]);
-    const ef_scatter *b = scatter_of(at->sample, at->standard, k, &room[1]);
-    o->sd = o->noise_alone = NONE;
-    if (a == NULL || isnan(o->difference))
-      continue;
-    const ef_uncertain u = ef_metric_uncertainty(
-        w->s->metric, o->standard, o->sample, &l->conditions, a, b);
-    o->sd = u.sd;
-    o->noise_alone = u.noise_alone;
+    memcpy(w->xyz[0] + 3 * i, w->sight[i].standard->xyz + 3 * under,
+           3 * sizeof(double));
+    memcpy(w->xyz[1] + 3 * i, w->sight[i].sample->xyz + 3 * under,
+           3 * sizeof(double));
   }
+}
+
+/* The sights [begin, end) under the look at hand, when the coordinates and
+ * differences of all are there. */
+static void set_outcomes(void *context, size_t begin, size_t end) {
+  const work *w = context;
+  for (size_t i = begin; i < end; ++i) {
+    outcome *o = work_outcome(w, i, w->under);
+    o->standard = xyz_of(w->xyz[0] + 3 * i);
+    o->sample = xyz_of(w->xyz[1] + 3 * i);
+    o->difference = w->difference[i];
+    ef_metric_components(w->s->metric, w->at[0] + 3 * i, w->at[1] + 3 * i,
+                         &o->components);
+    o->population_mean = o->population_p95 = NONE;
+    o->metamerism = o->inconstancy_standard = o->inconstancy_sample = NONE;
+    set_uncertainty(w, i);
+  }
+}
+
+static void set_differences(work *w, size_t k) {
+  const compare_scene *s = w->s;
+  const look *l = &s->looks.at[k];
+  const int jobs = s->options->jobs;
+  w->under = k;
+  gather(w, k);
+  for (int side = 0; side < 2; ++side) {
+    ef_metric_coordinates_batch(s->metric, w->n, w->xyz[side], &l->conditions,
+                                jobs, w->at[side]);
+  }
+  ef_metric_difference_batch(s->metric, w->n, w->at[0], w->at[1], jobs,
+                             w->difference);
+  ef_parallel_for(w->n, PIECE, jobs, set_outcomes, w);
 }
 
 /* ---- Metamerism -------------------------------------------------------- */
@@ -184,7 +195,7 @@ static double index_of(const work *w, size_t i, size_t test_look) {
       .index;
 }
 
-static void set_inconstancy(work *w, size_t i, size_t k) {
+static void set_inconstancy(const work *w, size_t i, size_t k) {
   const compare_scene *s = w->s;
   const look *reference = &s->looks.at[0], *test = &s->looks.at[k];
   outcome *o = work_outcome(w, i, k);
@@ -198,15 +209,16 @@ static void set_inconstancy(work *w, size_t i, size_t k) {
                  &ignored);
 }
 
-static void set_indices(work *w, double *other_observer) {
-  const compare_scene *s = w->s;
-  for (size_t i = 0; i < w->n; ++i) {
+static void set_indices(void *context, size_t begin, size_t end) {
+  const work *w = context;
+  const looks *l = &w->s->looks;
+  for (size_t i = begin; i < end; ++i) {
     for (size_t k = 1; k < w->n_looks; ++k) {
       work_outcome(w, i, k)->metamerism = index_of(w, i, k);
-      if (s->looks.at[k].observer == s->looks.at[0].observer)
+      if (l->at[k].observer == l->at[0].observer)
         set_inconstancy(w, i, k);
     }
-    other_observer[i] = s->looks.has_other ? index_of(w, i, w->n_looks) : NONE;
+    w->other_observer[i] = l->has_other ? index_of(w, i, w->n_looks) : NONE;
   }
 }
 
@@ -430,11 +442,10 @@ static ef_status allocate(work *w, judged *j, size_t n, size_t most,
 
 static ef_status compare_sights(work *w, judged *j, ef_error *error) {
   const compare_scene *s = w->s;
-  for (size_t k = 0; k < w->n_looks; ++k) {
+  for (size_t k = 0; k < w->n_looks; ++k)
     set_differences(w, k);
-    set_uncertainty(w, k);
-  }
-  set_indices(w, j->other_observer);
+  w->other_observer = j->other_observer;
+  ef_parallel_for(w->n, PIECE, s->options->jobs, set_indices, w);
   ef_status status = set_spectral(w, j->spectral, j->other_observer, error);
   judge_nothing(w);
   if (status == EF_OK && s->jnd.is_known)

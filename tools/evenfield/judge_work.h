@@ -20,7 +20,9 @@ typedef struct work {
   double *xyz[2];   /**< of standards and samples under one look, n x 3 */
   double *at[2];    /**< in the metric's coordinates */
   double *difference;
-  double *spectrum[2]; /**< n x samples of the standard's grid */
+  size_t under;           /**< the look at hand */
+  double *other_observer; /**< change-of-observer index of each sight */
+  double *spectrum[2];    /**< n x samples of the standard's grid */
 } work;
 
 static inline outcome *work_outcome(const work *w, size_t i, size_t under) {

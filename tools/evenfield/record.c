@@ -17,12 +17,12 @@ record record_of_csv(ef_csv *csv, bool is_header) {
 void record_begin(record *r, const char *key) {
   if (r->json != NULL)
     ef_json_begin_object(r->json, key);
-  const size_t length = strlen(r->prefix);
+  const size_t length = r->is_header ? strlen(r->prefix) : 0;
   if (r->depth < sizeof r->length / sizeof r->length[0]) {
     r->length[r->depth] = length;
   }
   ++r->depth;
-  if (key != NULL) {
+  if (key != NULL && r->is_header) {
     snprintf(r->prefix + length, sizeof r->prefix - length, "%s_", key);
   }
 }

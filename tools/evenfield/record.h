@@ -12,7 +12,7 @@ typedef struct record {
   ef_json *json;  /**< either this */
   ef_csv *csv;    /**< or this */
   bool is_header; /**< CSV: column names are written, values are not */
-  char prefix[200];
+  char prefix[200]; /**< of column names */
   size_t length[8]; /**< of the prefix outside each open object */
   size_t depth;
 } record;

@@ -4,8 +4,8 @@
 #include <math.h>
 #include <stdlib.h>
 
+#include "document.h"
 #include "message.h"
-#include "record.h"
 #include "viewing.h"
 #include "words.h"
 
@@ -14,8 +14,7 @@
   { NONE, NONE, NONE, NONE }
 
 struct compare_data {
-  ef_csv *csv;
-  ef_json *json;
+  document out;
 };
 
 /* ---- Parts of a pair --------------------------------------------------- */
@@ -299,38 +298,40 @@ compare_data *compare_data_new(const compare_scene *s, ef_output *output,
     message_fail(error, EF_NO_MEMORY, "out of memory for the result");
     return NULL;
   }
-  if (is_csv) {
-    d->csv = ef_csv_new(output, error);
-  } else {
-    d->json = ef_json_new(output, error);
-  }
-  if (d->csv != NULL) {
-    static const compared none = {.standard = "", .sample = ""};
-    record r = record_of_csv(d->csv, true);
-    record_row(&r, s, &none, 0);
-  } else if (d->json != NULL) {
-    ef_json_begin_object(d->json, NULL);
-    write_basis(d->json, s);
-    ef_json_begin_array(d->json, "pairs");
-  } else {
-    free(d);
+  if (document_open(&d->out, output, is_csv, error) != EF_OK) {
+    compare_data_free(d);
     return NULL;
   }
+  if (is_csv) {
+    static const compared none = {.standard = "", .sample = ""};
+    record r = document_header(&d->out);
+    record_row(&r, s, &none, 0);
+    return d;
+  }
+  write_basis(d->out.json, s);
+  document_begin_rows(&d->out, "pairs");
   return d;
+}
+
+typedef struct block {
+  const compare_scene *scene;
+  const compared *pair;
+} block;
+
+static void write_one(const document *to, const void *self, size_t i) {
+  const block *b = self;
+  if (to->csv != NULL) {
+    write_rows(to->csv, b->scene, &b->pair[i]);
+  } else {
+    write_pair(to->json, b->scene, &b->pair[i]);
+  }
 }
 
 static ef_status rows(void *self, const compare_scene *s, size_t n,
                       const compared *pairs, ef_error *error) {
-  (void)error; /* the writers keep their errors until they are finished */
   compare_data *d = self;
-  for (size_t i = 0; i < n; ++i) {
-    if (d->csv != NULL) {
-      write_rows(d->csv, s, &pairs[i]);
-    } else {
-      write_pair(d->json, s, &pairs[i]);
-    }
-  }
-  return EF_OK;
+  const block b = {s, pairs};
+  return document_write(&d->out, n, s->options->jobs, write_one, &b, error);
 }
 
 compare_sink compare_data_sink(compare_data *d) {
@@ -375,30 +376,16 @@ static void write_summary(ef_json *j, const compare_scene *s,
 
 ef_status compare_data_finish(compare_data *d, const compare_scene *s,
                               const compare_count *count, ef_error *error) {
-  ef_status status;
-  if (d->csv != NULL) {
-    status = ef_csv_finish(d->csv, error);
-  } else {
-    ef_json_end_array(d->json);
-    write_worst_cases(d->json, s);
-    write_summary(d->json, s, count);
-    ef_json_end_object(d->json);
-    status = ef_json_finish(d->json, error);
+  document_end_rows(&d->out);
+  if (d->out.json != NULL) {
+    write_worst_cases(d->out.json, s);
+    write_summary(d->out.json, s, count);
   }
-  d->csv = NULL;
-  d->json = NULL;
-  return status;
+  return document_close(&d->out, error);
 }
 
-/* A run that failed half-way leaves a writer open: it is finished for its
- * memory, and what it says is of no interest any more. */
 void compare_data_free(compare_data *d) {
-  if (d == NULL)
-    return;
-  ef_error ignored;
-  if (d->csv != NULL)
-    ef_csv_finish(d->csv, &ignored);
-  if (d->json != NULL)
-    ef_json_finish(d->json, &ignored);
+  if (d != NULL)
+    document_free(&d->out);
   free(d);
 }

@@ -4,12 +4,11 @@
 #include <math.h>
 #include <stdlib.h>
 
+#include "document.h"
 #include "message.h"
-#include "record.h"
 
 struct describe_data {
-  ef_csv *csv;
-  ef_json *json;
+  document out;
 };
 
 static void record_receptors(record *r, const char *key, bool is_known,
@@ -85,29 +84,24 @@ describe_data *describe_data_new(const describe_scene *s, ef_output *output,
     message_fail(error, EF_NO_MEMORY, "out of memory for the result");
     return NULL;
   }
-  if (is_csv) {
-    d->csv = ef_csv_new(output, error);
-  } else {
-    d->json = ef_json_new(output, error);
-  }
-  if (d->csv != NULL) {
-    const description none = {.name = "", .file = "", .kind = ""};
-    record r = record_of_csv(d->csv, true);
-    record_description(&r, s, &none);
-  } else if (d->json != NULL) {
-    ef_json_begin_object(d->json, NULL);
-    ef_json_text(d->json, "observer", ef_observer_name(s->observer));
-    ef_json_text(d->json, "cones",
-                 ef_observer_cones_borrowed(s->observer)
-                     ? "CIE 2006 fundamentals of the nearest field"
-                     : "the observer's own");
-    ef_json_number(d->json, "cones_field_deg",
-                   ef_observer_field_deg(s->observer));
-    ef_json_begin_array(d->json, "spectra");
-  } else {
-    free(d);
+  if (document_open(&d->out, output, is_csv, error) != EF_OK) {
+    describe_data_free(d);
     return NULL;
   }
+  if (is_csv) {
+    const description none = {.name = "", .file = "", .kind = ""};
+    record r = document_header(&d->out);
+    record_description(&r, s, &none);
+    return d;
+  }
+  ef_json *j = d->out.json;
+  ef_json_text(j, "observer", ef_observer_name(s->observer));
+  ef_json_text(j, "cones",
+               ef_observer_cones_borrowed(s->observer)
+                   ? "CIE 2006 fundamentals of the nearest field"
+                   : "the observer's own");
+  ef_json_number(j, "cones_field_deg", ef_observer_field_deg(s->observer));
+  document_begin_rows(&d->out, "spectra");
   return d;
 }
 
@@ -116,8 +110,7 @@ static ef_status rows(void *self, const describe_scene *s, size_t n,
   (void)error; /* the writers keep their errors until they are finished */
   describe_data *d = self;
   for (size_t i = 0; i < n; ++i) {
-    record r =
-        d->csv != NULL ? record_of_csv(d->csv, false) : record_of_json(d->json);
+    record r = document_row(&d->out);
     record_description(&r, s, &descriptions[i]);
   }
   return EF_OK;
@@ -129,29 +122,14 @@ describe_sink describe_data_sink(describe_data *d) {
 
 ef_status describe_data_finish(describe_data *d, size_t n_skipped,
                                ef_error *error) {
-  ef_status status;
-  if (d->csv != NULL) {
-    status = ef_csv_finish(d->csv, error);
-  } else {
-    ef_json_end_array(d->json);
-    ef_json_integer(d->json, "skipped_rows", (int64_t)n_skipped);
-    ef_json_end_object(d->json);
-    status = ef_json_finish(d->json, error);
-  }
-  d->csv = NULL;
-  d->json = NULL;
-  return status;
+  document_end_rows(&d->out);
+  if (d->out.json != NULL)
+    ef_json_integer(d->out.json, "skipped_rows", (int64_t)n_skipped);
+  return document_close(&d->out, error);
 }
 
-/* A run that failed half-way leaves a writer open: it is finished for its
- * memory, and what it says is of no interest any more. */
 void describe_data_free(describe_data *d) {
-  if (d == NULL)
-    return;
-  ef_error ignored;
-  if (d->csv != NULL)
-    ef_csv_finish(d->csv, &ignored);
-  if (d->json != NULL)
-    ef_json_finish(d->json, &ignored);
+  if (d != NULL)
+    document_free(&d->out);
   free(d);
 }

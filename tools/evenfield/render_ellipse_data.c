@@ -4,12 +4,11 @@
 #include <math.h>
 #include <stdlib.h>
 
+#include "document.h"
 #include "message.h"
-#include "record.h"
 
 struct ellipse_data {
-  ef_csv *csv;
-  ef_json *json;
+  document out;
 };
 
 static const char *const figure_names[] = {"section", "projection", "section"};
@@ -88,13 +87,6 @@ static void write_basis(ef_json *j, const ellipse_scene *s) {
   ef_json_text(j, "illuminant", ef_illuminant_name(s->illuminant));
 }
 
-static ef_status start_csv(ellipse_data *d, const ellipse_scene *s) {
-  const ellipse_row none = {.name = ""};
-  record r = record_of_csv(d->csv, true);
-  record_row(&r, s, &none);
-  return EF_OK;
-}
-
 ellipse_data *ellipse_data_new(const ellipse_scene *s, ef_output *output,
                                bool is_csv, ef_error *error) {
   ellipse_data *d = calloc(1, sizeof *d);
@@ -102,21 +94,18 @@ ellipse_data *ellipse_data_new(const ellipse_scene *s, ef_output *output,
     message_fail(error, EF_NO_MEMORY, "out of memory for the result");
     return NULL;
   }
-  if (is_csv) {
-    d->csv = ef_csv_new(output, error);
-  } else {
-    d->json = ef_json_new(output, error);
-  }
-  if (d->csv != NULL) {
-    start_csv(d, s);
-  } else if (d->json != NULL) {
-    ef_json_begin_object(d->json, NULL);
-    write_basis(d->json, s);
-    ef_json_begin_array(d->json, "ellipses");
-  } else {
-    free(d);
+  if (document_open(&d->out, output, is_csv, error) != EF_OK) {
+    ellipse_data_free(d);
     return NULL;
   }
+  if (is_csv) {
+    const ellipse_row none = {.name = ""};
+    record r = document_header(&d->out);
+    record_row(&r, s, &none);
+    return d;
+  }
+  write_basis(d->out.json, s);
+  document_begin_rows(&d->out, "ellipses");
   return d;
 }
 
@@ -125,8 +114,7 @@ static ef_status rows(void *self, const ellipse_scene *s, size_t n,
   (void)error; /* the writers keep their errors until they are finished */
   ellipse_data *d = self;
   for (size_t i = 0; i < n; ++i) {
-    record r =
-        d->csv != NULL ? record_of_csv(d->csv, false) : record_of_json(d->json);
+    record r = document_row(&d->out);
     record_row(&r, s, &all[i]);
   }
   return EF_OK;
@@ -138,31 +126,17 @@ ellipse_sink ellipse_data_sink(ellipse_data *d) {
 
 ef_status ellipse_data_finish(ellipse_data *d, const ellipse_count *count,
                               ef_error *error) {
-  ef_status status;
-  if (d->csv != NULL) {
-    status = ef_csv_finish(d->csv, error);
-  } else {
-    ef_json_end_array(d->json);
-    ef_json_integer(d->json, "without_ellipse",
+  document_end_rows(&d->out);
+  if (d->out.json != NULL) {
+    ef_json_integer(d->out.json, "without_ellipse",
                     (int64_t)(count->n - count->n_found));
-    ef_json_integer(d->json, "skipped_rows", (int64_t)count->n_skipped);
-    ef_json_end_object(d->json);
-    status = ef_json_finish(d->json, error);
+    ef_json_integer(d->out.json, "skipped_rows", (int64_t)count->n_skipped);
   }
-  d->csv = NULL;
-  d->json = NULL;
-  return status;
+  return document_close(&d->out, error);
 }
 
-/* A run that failed half-way leaves a writer open: it is finished for its
- * memory, and what it says is of no interest any more. */
 void ellipse_data_free(ellipse_data *d) {
-  if (d == NULL)
-    return;
-  ef_error ignored;
-  if (d->csv != NULL)
-    ef_csv_finish(d->csv, &ignored);
-  if (d->json != NULL)
-    ef_json_finish(d->json, &ignored);
+  if (d != NULL)
+    document_free(&d->out);
   free(d);
 }

@@ -5,14 +5,13 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "document.h"
 #include "message.h"
-#include "record.h"
 
 struct match_data {
   ef_output *output;
   bool is_csv;
-  ef_csv *csv;
-  ef_json *json;
+  document out;
 };
 
 /* ---- One target -------------------------------------------------------- */
@@ -255,26 +254,23 @@ static void write_summary(ef_json *j, const match_scene *s,
 
 static ef_status begin(void *self, const match_scene *s, ef_error *error) {
   match_data *d = self;
+  const ef_status status =
+      document_open(&d->out, d->output, d->is_csv, error);
+  if (status != EF_OK)
+    return status;
   if (d->is_csv) {
-    d->csv = ef_csv_new(d->output, error);
-    if (d->csv == NULL)
-      return error->status;
-    record r = record_of_csv(d->csv, true);
+    record r = document_header(&d->out);
     const ef_match none = {0};
     const ef_spread no_spread = {0};
     record_match(&r, s, "", &none,
                  s->seen.people.population != NULL ? &no_spread : NULL);
     return EF_OK;
   }
-  d->json = ef_json_new(d->output, error);
-  if (d->json == NULL)
-    return error->status;
-  ef_json_begin_object(d->json, NULL);
-  ef_json_boolean(d->json, "demo", s->demo_display && s->demo_targets);
-  write_basis(d->json, s);
-  write_display(d->json, s);
-  write_gamut(d->json, &s->gamut);
-  ef_json_begin_array(d->json, "targets");
+  ef_json_boolean(d->out.json, "demo", s->demo_display && s->demo_targets);
+  write_basis(d->out.json, s);
+  write_display(d->out.json, s);
+  write_gamut(d->out.json, &s->gamut);
+  document_begin_rows(&d->out, "targets");
   return EF_OK;
 }
 
@@ -283,8 +279,7 @@ static ef_status rows(void *self, const match_scene *s, const match_rows *rows,
   (void)error; /* the writers keep their errors until they are finished */
   match_data *d = self;
   for (size_t i = 0; i < rows->n; ++i) {
-    record r =
-        d->is_csv ? record_of_csv(d->csv, false) : record_of_json(d->json);
+    record r = document_row(&d->out);
     record_match(&r, s, rows->name[i], &rows->match[i],
                  rows->spread != NULL ? &rows->spread[i] : NULL);
   }
@@ -294,17 +289,10 @@ static ef_status rows(void *self, const match_scene *s, const match_rows *rows,
 static ef_status end(void *self, const match_scene *s, const match_summary *sum,
                      ef_error *error) {
   match_data *d = self;
-  if (d->is_csv) {
-    ef_csv *csv = d->csv;
-    d->csv = NULL;
-    return ef_csv_finish(csv, error);
-  }
-  ef_json *json = d->json;
-  d->json = NULL;
-  ef_json_end_array(json);
-  write_summary(json, s, sum);
-  ef_json_end_object(json);
-  return ef_json_finish(json, error);
+  document_end_rows(&d->out);
+  if (d->out.json != NULL)
+    write_summary(d->out.json, s, sum);
+  return document_close(&d->out, error);
 }
 
 match_data *match_data_new(ef_output *output, bool is_csv) {
@@ -316,16 +304,9 @@ match_data *match_data_new(ef_output *output, bool is_csv) {
   return d;
 }
 
-/* A run that failed half-way leaves a writer open: it is finished for its
- * memory, and what it says is of no interest any more. */
 void match_data_free(match_data *d) {
-  if (d == NULL)
-    return;
-  ef_error ignored;
-  if (d->csv != NULL)
-    ef_csv_finish(d->csv, &ignored);
-  if (d->json != NULL)
-    ef_json_finish(d->json, &ignored);
+  if (d != NULL)
+    document_free(&d->out);
   free(d);
 }
 
