@@ -1,6 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /** \file
- * Swatches: target beside match, as tagged PNG. */
+ * Swatches, target beside match, as tagged PNG; and charts as SVG, PDF or
+ * PNG. */
 #ifndef EVENFIELD_PICTURE_H
 #define EVENFIELD_PICTURE_H
 
@@ -58,6 +59,97 @@ EF_API ef_status ef_swatch_write_sheet(const char *path, size_t n,
                                        const ef_swatch_settings *settings,
                                        ef_swatch_report *report,
                                        ef_error *error);
+
+/* ---- Charts ------------------------------------------------------------ */
+
+/** What the points of a series are. */
+typedef enum ef_series_kind {
+  EF_SERIES_LINE,      /**< joined in their order; a point that is not finite
+                            is a gap */
+  EF_SERIES_REGION,    /**< the corners of an area, filled lightly */
+  EF_SERIES_MARKS,     /**< a mark at each */
+  EF_SERIES_PAIRS,     /**< an open mark, joined to a filled one at to_x, to_y */
+  EF_SERIES_ELLIPSES,  /**< centres, see below */
+  EF_SERIES_INTERVALS, /**< a mark with a bar from `low` to `high` in y */
+  EF_SERIES_CLOUD      /**< many small dots without labels */
+} ef_series_kind;
+
+/** Looks of series: each has a colour, a shape of mark and a pattern of line of
+ * its own, so that they differ without colour vision too. */
+enum {
+  EF_LOOK_FRAME = -1, /**< neutral and plain: what the rest is set in */
+  EF_LOOKS = 8
+};
+
+/** One series of plain coordinates in the units of the axes. What a kind does
+ * not need may be NULL. Points that are not finite are not drawn. */
+typedef struct ef_series {
+  ef_series_kind kind;
+  int look;          /**< 0 to EF_LOOKS - 1, or EF_LOOK_FRAME */
+  const char *name;  /**< for the legend; NULL: not there. UTF-8 */
+  size_t n;
+  const double *x, *y;
+  const double *to_x, *to_y; /**< of pairs */
+  const double *low, *high;  /**< of intervals */
+  /** Of ellipses: half axes in units of the axes (x and y alike), the angle of
+   * the major one from x, and how many times as large they are drawn, which the
+   * legend says. */
+  const double *semi_major, *semi_minor, *angle_deg;
+  double magnification;
+  /** n labels, NULL for none; an entry may be NULL. At most 200 are placed, all
+   * of them where they hide no mark and no other label. */
+  const char *const *label;
+} ef_series;
+
+/** 1 times as large, no labels, nothing else. */
+EF_API ef_series ef_series_default(ef_series_kind kind);
+
+typedef struct ef_chart_settings {
+  const char *title;    /**< the question or the answer, NULL: none */
+  const char *subtitle; /**< conditions, NULL: none */
+  const char *x_title, *y_title; /**< of the axes, with their units */
+  const char *description; /**< what the chart shows, for those who do not see
+                                it; NULL: the subtitle */
+  bool equal_scales;    /**< one unit is as long in x as in y */
+  double x_from, x_to;  /**< ends of the axes; NaN: what the series need */
+  double y_from, y_to;
+  size_t width_px;      /**< 240 to 4000; the height follows */
+  bool overwrite;
+} ef_chart_settings;
+/** 720 wide, own scales, ends by the series. */
+EF_API ef_chart_settings ef_chart_settings_default(void);
+
+/** What a drawn chart could not show; it says so itself at its foot. */
+typedef struct ef_chart_report {
+  size_t n_points, n_drawn;  /**< of clouds, marks, pairs, intervals (frames
+                                  apart): the rest is thinned where points lie
+                                  on top of each other */
+  size_t n_labels, n_labelled;
+  bool has_text; /**< false when no text could be drawn: PNG and PDF need
+                      libcairo.so.2 with a font, SVG has its text always */
+} ef_chart_report;
+
+/** A chart that is put together series by series, the first one lowest. Copies
+ * all it is given; free with ef_chart_free. Picture never computes colour: the
+ * coordinates are the caller's. */
+typedef struct ef_chart ef_chart;
+EF_API ef_chart *ef_chart_new(const ef_chart_settings *settings,
+                              ef_error *error);
+EF_API void ef_chart_free(ef_chart *chart);
+/** EF_INVALID for an array that the kind needs and is missing, or a look that
+ * there is not. */
+EF_API ef_status ef_chart_add(ef_chart *chart, const ef_series *series,
+                              ef_error *error);
+/** True for names that ef_chart_write knows: *.svg, *.pdf, *.png. */
+EF_API bool ef_chart_knows(const char *path);
+/** Draws it, whole or not at all. The same chart makes the same bytes (PDF and
+ * PNG: with the same cairo and fonts). SVG is written by Evenfield itself with
+ * text as text; PDF (3/4 point a unit) and PNG (twice the pixels, tagged as
+ * IEC 61966-2-1) by libcairo.so.2, which is loaded here and stays loaded:
+ * EF_UNWRITABLE where it is missing. EF_INVALID for another ending, or when no
+ * point is finite. `report` may be NULL. */
+EF_API ef_status ef_chart_write(const ef_chart *chart, const char *path,
+                                ef_chart_report *report, ef_error *error);
 
 #ifdef __cplusplus
 }

@@ -2,15 +2,17 @@
 #include "command.h"
 
 #include "match.h"
+#include "match_chart.h"
 #include "message.h"
 #include "pictures.h"
 #include "render_match.h"
 #include "result.h"
 
-/* Who receives the matches. The pictures come first, so that nothing is said
- * about pictures that could not be written. */
+/* Who receives the matches. Pictures and chart come first, so that nothing is
+ * said about what could not be written. */
 typedef struct receivers {
   pictures pictures;
+  match_chart *chart; /* NULL: none */
   match_text *text;
   match_data *data;
 } receivers;
@@ -24,7 +26,10 @@ static ef_status open_receivers(receivers *r, const command_options *options,
   } else {
     r->data = match_data_new(output, options->format == FORMAT_CSV);
   }
-  if (r->text != NULL || r->data != NULL)
+  if (options->chart != NULL)
+    r->chart = match_chart_new(options->chart, notes);
+  if ((r->text != NULL || r->data != NULL) &&
+      (r->chart != NULL || options->chart == NULL))
     return EF_OK;
   return message_fail(error, EF_NO_MEMORY, "out of memory for the result");
 }
@@ -32,6 +37,7 @@ static ef_status open_receivers(receivers *r, const command_options *options,
 static void close_receivers(receivers *r) {
   match_text_free(r->text);
   match_data_free(r->data);
+  match_chart_free(r->chart);
   pictures_free(&r->pictures);
 }
 
@@ -43,17 +49,25 @@ static ef_status run(match_scene *s, receivers *r, match_summary *sum,
       return status;
   }
   const match_sink drawing = pictures_sink(&r->pictures);
+  const match_sink chart = match_chart_sink(r->chart);
   const match_sink result =
       r->text != NULL ? match_text_sink(r->text) : match_data_sink(r->data);
-  const match_sink *sinks[2] = {&drawing, &result};
-  const size_t first = s->options->pictures != NULL ? 0 : 1;
-  return match_stream(s, 2 - first, sinks + first, sum, error);
+  const match_sink *sinks[3];
+  size_t n = 0;
+  if (s->options->pictures != NULL)
+    sinks[n++] = &drawing;
+  if (r->chart != NULL)
+    sinks[n++] = &chart;
+  sinks[n++] = &result;
+  return match_stream(s, n, sinks, sum, error);
 }
 
 exit_code command_match(const command_options *options) {
   exit_code code = result_check_usage(options, 1);
   if (code == EXIT_DONE)
     code = people_check_usage(options, "population", seen_is_asked(options));
+  if (code == EXIT_DONE)
+    code = diagram_check_usage(options);
   if (code != EXIT_DONE)
     return code;
   if (options->seen_by >= 0 && options->pictures == NULL) {

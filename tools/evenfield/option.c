@@ -37,6 +37,7 @@ static const char *const kinds[] = {"surface", "light", NULL};
 static const char *const units[] = {"energy", "quantal", NULL};
 static const char *const dichromats[] = {"protanope", "deuteranope",
                                          "tritanope", NULL};
+static const char *const planes[] = {"uv", "xy", "ab", "lc", NULL};
 static const char *const formats[] = {"text", "csv", "json", NULL};
 static const char *const figures[] = {"section", "projection", "ellipsoid",
                                       NULL};
@@ -308,6 +309,12 @@ static const option_row table[] = {
      "the folder for a split field of every target and a sheet of all (PNG)"},
     {"swatch-bits", "8|16", MATCHING, TYPE_INTEGER, FIELD(swatch_bits), 8, 16,
      NULL, "bits per channel of the pictures; default 8"},
+    {"chart", "FILE", COMMAND_MATCH, TYPE_TEXT, FIELD(chart), 0, 0, NULL,
+     "draws the targets and what is shown for them, with the gamut: FILE ends "
+     "in .svg, .pdf or .png"},
+    {"plane", "uv|xy|ab|lc", COMMAND_MATCH, TYPE_CHOICE, FIELD(plane), 0, 0,
+     planes,
+     "the plane of the chart: u', v'; x, y; a*, b*; or C*, L*; default uv"},
     {"device-max", "VALUE", SHOWING, TYPE_NUMBER, FIELD(device_max), 1e-6, 1e9,
      NULL, "device value of full drive in the files; default: what they say"},
     {"skip-bad", NULL, READING, TYPE_FLAG, FIELD(skip_bad), 0, 0, NULL,
@@ -358,6 +365,7 @@ static void set_defaults(command_options *o) {
                          .size_deg = not_given,
                          .kind = -1,
                          .seen_by = -1,
+                         .plane = -1,
                          .format = -1,
                          .bits = 8,
                          .swatch_bits = 8,

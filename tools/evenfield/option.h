@@ -46,7 +46,7 @@ typedef struct given_options {
  * default depends on what it is asked for, is -1 when not given. */
 typedef struct command_options {
   const char *display, *tone, *observer, *illuminant, *metric, *adaptation;
-  const char *ambient_illuminant, *pictures, *output, *ages;
+  const char *ambient_illuminant, *pictures, *output, *ages, *chart;
   const char *space, *contrast_from, *surround;
   const char *jnd_text, *criterion, *tolerance_text; /**< of compare, ellipse */
   const char *pairs, *task, *correction, *angle_weights;
@@ -63,6 +63,7 @@ typedef struct command_options {
   int seen_by;                        /**< EF_PROTANOPE - 1 ..., -1 not given */
   int units;                          /**< an ef_cone_units */
   int modulation;                     /**< an ef_modulation */
+  int plane;                          /**< a diagram_plane, -1 not given */
   int format;
   int bits, swatch_bits, jobs, categories;
   bool skip_bad, check, worst_case, robust, force, quiet, help, version;

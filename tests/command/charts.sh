@@ -1,0 +1,102 @@
+#!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
+# Charts and reports of the built command, judged by other programs: an XML
+# parser and a reader of PDF where they are on the machine (skipped else), and
+# a place that cannot be written.
+#
+#   charts.sh EVENFIELD
+set -u
+evenfield=$(cd "$(dirname "$1")" && pwd)/$(basename "$1")
+scratch=$(mktemp -d) || exit 1
+trap 'rm -rf "$scratch"' EXIT
+cd "$scratch" || exit 1
+LC_ALL=C
+export LC_ALL
+number=0
+failed=0
+
+# ef_check NAME FOUND EXPECTED
+ef_check() {
+  number=$((number + 1))
+  if [ "$2" = "$3" ]; then
+    echo "ok $number - $1"
+  else
+    failed=$((failed + 1))
+    echo "not ok $number - $1"
+    echo "#   found $2, expected $3"
+  fi
+}
+
+# ef_skip NAME TOOL
+ef_skip() {
+  number=$((number + 1))
+  echo "ok $number - $1 # SKIP $2 is not on this machine"
+}
+
+has() {
+  command -v "$1" >/dev/null 2>&1
+}
+
+printf 'name,L,a,b\n</text><b>&amp;"bow",40,5,-40\nred\001light,50,110,70\n' >t.csv
+
+# Each plane as each kind of file.
+for plane in uv xy ab lc; do
+  for kind in svg pdf; do
+    "$evenfield" match t.csv --quiet --plane $plane --chart $plane.$kind >/dev/null
+    ef_check "match --plane $plane --chart .$kind" $? 0
+  done
+  if has xmllint; then
+    ef_check "$plane.svg is XML" "$(xmllint --noout $plane.svg 2>&1)" ""
+  else
+    ef_skip "$plane.svg is XML" xmllint
+  fi
+  if has pdfinfo; then
+    ef_check "$plane.pdf has a page" \
+      "$(pdfinfo $plane.pdf 2>&1 | sed -n 's/^Pages: *//p')" 1
+    ef_check "$plane.pdf has its title" \
+      "$(pdfinfo $plane.pdf 2>&1 | sed -n 's/^Title: *//p')" \
+      "1 of 2 targets are in gamut"
+  else
+    ef_skip "$plane.pdf has a page" pdfinfo
+    ef_skip "$plane.pdf has its title" pdfinfo
+  fi
+done
+
+# The same command makes the same bytes.
+for kind in svg pdf png; do
+  "$evenfield" match t.csv --quiet --chart one.$kind >/dev/null
+  "$evenfield" match t.csv --quiet --chart two.$kind >/dev/null
+  cmp -s one.$kind two.$kind
+  ef_check "two $kind are alike" $? 0
+done
+
+# A full disk: nothing is left, and the exit status says so.
+if [ -c /dev/full ]; then
+  for kind in svg pdf; do
+    ln -s /dev/full full.$kind
+    "$evenfield" match t.csv --quiet --chart full.$kind >out 2>message
+    ef_check "full disk, $kind: status" $? 5
+    ef_check "full disk, $kind: message" "$(cat message)" \
+      "evenfield: full.$kind: no space is left to write it; free some or name another place"
+    ef_check "full disk, $kind: nothing is told" "$(cat out)" ""
+  done
+else
+  ef_skip "full disk" /dev/full
+fi
+"$evenfield" match t.csv --quiet --chart none/a.svg >out 2>message
+ef_check "no folder: status" $? 5
+ef_check "no folder: message" "$(cat message)" \
+  "evenfield: none/a.svg: its folder does not exist; create it or name another"
+
+# Very many targets: the chart says what it leaves out.
+awk 'BEGIN { print "name,L,a,b"; for (i = 0; i < 20000; ++i)
+  print "t" i "," 40 + i % 40 "," i % 97 - 48 "," i % 89 - 44 }' >many.csv
+"$evenfield" match many.csv --chart many.svg --format csv >/dev/null 2>message
+ef_check "many targets: status" $? 0
+grep -q 'of 20000 points are drawn' message
+ef_check "many targets: note" $? 0
+grep -q '>Drawn: [0-9]* of 20000 points' many.svg
+ef_check "many targets: on the chart" $? 0
+
+echo "1..$number"
+[ "$failed" -eq 0 ]
