@@ -17,7 +17,10 @@ static const command_entry table[] = {
       "for each spectrum with columns named by wavelength, or colours as L,a,b "
       "or X,Y,Z or x,y,Y. The file - is standard input, demo:NAME is a file of "
       "the built-in scenario."},
-     command_describe},
+     command_describe,
+     {"evenfield describe demo:livery",
+      "evenfield describe demo:shop-light --format json",
+      "evenfield describe --observer cie-1964 --illuminant D50 demo:livery"}},
     {"match",
      COMMAND_MATCH,
      "[TARGETS]",
@@ -31,7 +34,10 @@ static const command_entry table[] = {
       "(demo:livery), and without --display the ticket kiosk is the display "
       "(demo:kiosk-measurements, or demo:kiosk-primaries where spectra are "
       "needed: for another --observer and for --population)."},
-     command_match},
+     command_match,
+     {"evenfield match",
+      "evenfield match --display p3-d65 --bits 10 demo:livery",
+      "evenfield match --population 1000 --ages 20-70 --seed 7"}},
     {"compare",
      COMMAND_COMPARE,
      "[STANDARD BATCH]",
@@ -48,7 +54,10 @@ static const command_entry table[] = {
       "each "
       "sample is compared with the one of its own name; --pairs names any "
       "pairs. Without files the seats of the demo are compared."},
-     command_compare},
+     command_compare,
+     {"evenfield compare",
+      "evenfield compare --tolerance 1 --check demo:seats-standard demo:seats-deliveries",
+      "evenfield compare --population 500 --format csv"}},
     {"ellipse",
      COMMAND_ELLIPSE,
      "--at COLOUR | FILE...",
@@ -60,7 +69,10 @@ static const command_entry table[] = {
       "--steps or --size says otherwise.",
       "A FILE is CSV as for describe: spectra, or colours as L,a,b or X,Y,Z or "
       "x,y,Y. A colour without an ellipse (black) is listed with the reason."},
-     command_ellipse},
+     command_ellipse,
+     {"evenfield ellipse --at 60,10,20",
+      "evenfield ellipse --at xy:0.31,0.33 --space xy --basis macadam-1942",
+      "evenfield ellipse --metric cam16-ucs --format csv demo:livery"}},
     {"isolate",
      COMMAND_ISOLATE,
      "",
@@ -74,7 +86,10 @@ static const command_entry table[] = {
       "the change of a receptor's excitation over its excitation by the "
       "background. Without --display the vision laboratory's stimulator is "
       "used (demo:lab-display)."},
-     command_isolate},
+     command_isolate,
+     {"evenfield isolate",
+      "evenfield isolate --change S --contrast 0.2 --bits 10",
+      "evenfield isolate --change \"isoluminant red-green\" --population 500"}},
     {"observer",
      COMMAND_OBSERVER,
      "list | build [OBSERVER]",
@@ -89,7 +104,10 @@ static const command_entry table[] = {
       "writes the observers that stand best for it, each with its name and the "
       "share of the people it stands for. An OBSERVER then is the mean from "
       "which people vary."},
-     command_observer},
+     command_observer,
+     {"evenfield observer list",
+      "evenfield observer build model:age=70,field=4",
+      "evenfield observer build --categories 3 --population 1000"}},
     {"swatch",
      COMMAND_SWATCH,
      "[TARGETS | LEFT RIGHT]",
@@ -101,7 +119,9 @@ static const command_entry table[] = {
       "The pictures are PNG with BT.2020 primaries and the curve of IEC "
       "61966-2-1, and say so in their cICP and iCCP chunks. They go into the "
       "folder `swatches` unless --pictures names another."},
-     command_swatch},
+     command_swatch,
+     {"evenfield swatch --pictures fields",
+      "evenfield swatch --display bt709 --pictures fields-bt709 demo:livery"}},
     {"tables",
      COMMAND_TABLES,
      "[NAME]",
@@ -113,7 +133,10 @@ static const command_entry table[] = {
       "the "
       "lists of what --observer, --illuminant, --metric, --display and file "
       "arguments take."},
-     command_tables},
+     command_tables,
+     {"evenfield tables",
+      "evenfield tables observers",
+      "evenfield tables demo:livery"}},
 };
 enum { N_COMMANDS = sizeof table / sizeof table[0] };
 
