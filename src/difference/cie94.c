@@ -50,6 +50,12 @@ static void expand(const ef_metric *self, const double reference[3],
   ef__polar_expand(&w, reference, sample, out);
 }
 
+static double least(const ef_metric *self, const double reference[3],
+                    const double low[3], const double high[3]) {
+  const ef__polar_weights w = weights(self, reference);
+  return ef__polar_least(&w, reference, low, high);
+}
+
 static const ef__parameter_set sets[] = {
     {"graphic-arts", {1, (double)NAN, (double)NAN, 0.045, 0.015}},
     {"textiles", {2, (double)NAN, (double)NAN, 0.048, 0.014}},
@@ -77,5 +83,6 @@ const ef_metric ef__metric_cie94 = {
     .tensor = tensor,
     .expand = expand,
     .carry = ef__lab_carry,
+    .least = least,
     .kinked_axis = true,
 };

@@ -227,6 +227,7 @@ const ef_metric ef__metric_ciede2000 = {
     .tensor = tensor,
     .expand = ef__ciede2000_expand,
     .carry = ef__lab_carry,
+    .least = ef__ciede2000_least,
     .decoys = decoys,
     .decoy_difference = DECOY_DIFFERENCE,
     .kinked_axis = true,

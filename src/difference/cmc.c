@@ -65,6 +65,12 @@ static void expand(const ef_metric *self, const double reference[3],
   ef__polar_expand(&w, reference, sample, out);
 }
 
+static double least(const ef_metric *self, const double reference[3],
+                    const double low[3], const double high[3]) {
+  const ef__polar_weights w = weights(self, reference);
+  return ef__polar_least(&w, reference, low, high);
+}
+
 /* 2:1 is what ISO 105-J03 gives for the acceptability of textiles. */
 static const ef__parameter_set sets[] = {
     {"acceptability", {2, 1}}, {"perceptibility", {1, 1}}, {NULL, {0}}};
@@ -89,5 +95,6 @@ const ef_metric ef__metric_cmc = {
     .tensor = tensor,
     .expand = expand,
     .carry = ef__lab_carry,
+    .least = least,
     .kinked_axis = true,
 };

@@ -92,6 +92,10 @@ struct ef_metric {
   void (*carry)(const ef_metric *self, const double coordinate[3],
                 const ef_conditions *conditions, const ef__expansion *in,
                 ef__expansion *out);
+  /** Optional: a value that the difference is not below for any sample with
+   * coordinates between `low` and `high`, but for rounding. */
+  double (*least)(const ef_metric *self, const double reference[3],
+                  const double low[3], const double high[3]);
   /** Optional: points other than the reference around which the difference to
    * it has local minima in the chromatic plane; returns how many. */
   size_t (*decoys)(const ef_metric *self, const double reference[3],
@@ -168,6 +172,11 @@ double ef__ciede2000_hue_weight(double cos_h, double sin_h,
 void ef__ciede2000_expand(const ef_metric *self, const double reference[3],
                           const double sample[3], ef__expansion *out);
 
+/* ---- Bound of CIEDE2000 (ciede2000_least.c) ----------------------------- */
+
+double ef__ciede2000_least(const ef_metric *self, const double reference[3],
+                           const double low[3], const double high[3]);
+
 /* ---- Tools for formulas (tensor.c) ------------------------------------- */
 
 /** For formulas that are the Euclidean distance of their coordinates. */
@@ -185,6 +194,9 @@ void ef__euclidean_tensor(const ef_metric *self, const double coordinate[3],
                           double tensor[9]);
 void ef__euclidean_expand(const ef_metric *self, const double reference[3],
                           const double sample[3], ef__expansion *out);
+
+double ef__euclidean_least(const ef_metric *self, const double reference[3],
+                           const double low[3], const double high[3]);
 
 /** For formulas that are so up to divisors of the lightness and of the
  * chromatic plane. */
@@ -214,6 +226,8 @@ void ef__polar_tensor(const ef__polar_weights *w, const double coordinate[3],
                       double tensor[9]);
 void ef__polar_expand(const ef__polar_weights *w, const double reference[3],
                       const double sample[3], ef__expansion *out);
+double ef__polar_least(const ef__polar_weights *w, const double reference[3],
+                       const double low[3], const double high[3]);
 
 /** Local tensor from second differences of the formula: for formulas without a
  * closed form, and to check those that have one. Relative error about 1e-6

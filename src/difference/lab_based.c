@@ -120,4 +120,5 @@ const ef_metric ef__metric_cielab = {
     .tensor = ef__euclidean_tensor,
     .expand = ef__euclidean_expand,
     .carry = ef__lab_carry,
+    .least = ef__euclidean_least,
 };

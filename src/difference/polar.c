@@ -5,6 +5,7 @@
 #include <math.h>
 
 #include "difference/difference_private.h"
+#include "difference/range.h"
 
 static double chroma_of(const double coordinate[3]) {
   return sqrt(coordinate[1] * coordinate[1] + coordinate[2] * coordinate[2]);
@@ -70,4 +71,20 @@ void ef__polar_expand(const ef__polar_weights *w, const double reference[3],
   h[4] = 2 * (over * p * p + bend * q * q + hh);
   h[5] = h[7] = 2 * (over - bend) * p * q;
   h[8] = 2 * (over * q * q + bend * p * p + hh);
+}
+
+double ef__polar_least(const ef__polar_weights *w, const double reference[3],
+                       const double low[3], const double high[3]) {
+  const ef__range light = {low[0], high[0]}, a = {low[1], high[1]};
+  const ef__range b = {low[2], high[2]}, c2 = ef__range_chroma(a, b);
+  const double c1 = chroma_of(reference);
+  const double d_l = ef__range_nearest(light, reference[0]) - reference[0];
+  const double d_c = ef__range_nearest(c2, c1) - c1;
+  double d_h = 0;
+  if (c1 > 0) {
+    const ef__range h = ef__range_hue(a, b, reference[1], reference[2]);
+    d_h = 2 * sqrt(c1 * c2.low) * ef__range_least_half_sine(h);
+  }
+  const double l = d_l / w->lightness, c = d_c / w->chroma, h = d_h / w->hue;
+  return sqrt(l * l + c * c + h * h);
 }

@@ -5,6 +5,7 @@
 
 #include <math.h>
 
+#include "difference/range.h"
 #include "kernel/kernels.h"
 
 double ef__scaled_difference(ef__scale scale, const double reference[3],
@@ -89,6 +90,16 @@ void ef__euclidean_expand(const ef_metric *self, const double reference[3],
                           const double sample[3], ef__expansion *out) {
   (void)self;
   ef__scaled_expand(plain, reference, sample, out);
+}
+
+double ef__euclidean_least(const ef_metric *self, const double reference[3],
+                           const double low[3], const double high[3]) {
+  double nearest[3];
+  for (int i = 0; i < 3; ++i) {
+    nearest[i] =
+        ef__range_nearest((ef__range){low[i], high[i]}, reference[i]);
+  }
+  return ef__euclidean_difference(self, reference, nearest);
 }
 
 /* Squared difference of two points placed symmetrically, so that what depends

@@ -134,6 +134,28 @@ typedef struct ef__lattice {
  * `square` receives the squared difference of these codes. */
 void ef__quantise(ef__search *search, const ef__lattice *lattice,
                   const ef__minima *minima, uint32_t code[3], double *square);
+/** The codes on both sides of these amounts. */
+void ef__cell_around(const ef__lattice *lattice, const double amount[3],
+                     uint32_t from[3], uint32_t to[3]);
+
+/* ---- Codes far from the target (cells.c, boxes.c) ---------------------- */
+
+/** Better codes than those of `square`, if there are any, in the cells around
+ * that lead from a minimum (expanded). False when not all were looked at. */
+bool ef__search_cells(ef__search *search, const ef__lattice *lattice,
+                      const ef__place *minimum, uint32_t code[3],
+                      double *square);
+/** True when ef__search_boxes knows what it needs: setups whose colours add,
+ * formulas on CIELAB with a bound. */
+bool ef__boxes_apply(const ef__mixing *mixing, const ef_metric *metric);
+/** The best codes of all, if they are better than those of `square`, up to 1e-9
+ * of the difference. Takes a millisecond or two. */
+void ef__search_boxes(ef__search *search, const ef__lattice *lattice,
+                      uint32_t code[3], double *square);
+/** A bound that no difference of colours with amounts between `from` and `to`
+ * is below, where ef__boxes_apply; not sought closer than `enough`. */
+double ef__least_over(ef__search *search, const double from[3],
+                      const double to[3], double enough);
 
 /* ---- Answers (match.c) ------------------------------------------------- */
 

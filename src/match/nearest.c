@@ -8,8 +8,22 @@
 #include <stdlib.h>
 #include <string.h>
 
+/* Descents that meet end closer to each other than this. */
+static bool is_same(const double a[3], const double b[3]) {
+  const double near = 1e-5;
+  return fabs(a[0] - b[0]) < near && fabs(a[1] - b[1]) < near &&
+         fabs(a[2] - b[2]) < near;
+}
+
 static void keep(ef__minima *minima, const ef__place *place) {
   size_t i = minima->n;
+  for (size_t k = 0; k < minima->n; ++k) {
+    if (!is_same(minima->at[k].amount, place->amount)) continue;
+    if (!(place->square < minima->at[k].square)) return;
+    /* Makes way for the better one. */
+    for (i = --minima->n; k < i; ++k) minima->at[k] = minima->at[k + 1];
+    break;
+  }
   if (minima->n == EF__MAX_MINIMA) {
     if (!(place->square < minima->at[i - 1].square)) return;
     --i;

@@ -1,22 +1,29 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /* The lattice point of least difference. Codes stand on a grid of amounts that
- * is uneven (the tone curve) but separate for each channel. Around the minimum
- * of the difference in the box, the squared difference is
+ * is uneven (the tone curve) but separate for each channel.
+ *
+ * Around a target in gamut, and so near one out of it, the squared difference
+ * is
  *   f = f0 + g . d + d' H d / 2
  * with g . d >= 0 everywhere in the box, so every lattice point that is as good
  * as one already known lies in the ellipsoid d' H d / 2 <= f - f0. Its lattice
  * points are walked through channel by channel (the closest-vector search of
  * Fincke & Pohst 1985, doi 10.1090/S0025-5718-1985-0777278-8), each with the
- * true difference. The bound is widened for what the quadratic neglects. */
+ * true difference. The bound is widened for what the quadratic neglects.
+ *
+ * Farther from the target the neglected may be all there is: the lattice is
+ * then searched cell by cell (cells.c), and where that does not end by bounds
+ * on boxes of codes (boxes.c). */
 #include "match/match_private.h"
 
 #include <math.h>
 #include <string.h>
 
-/* The quadratic's share of the true difference may be this wrong. With codes of
- * 5 bits and more the tests find no lattice point missed; below, every code is
- * tried. */
+/* The quadratic's share of the true difference may be this wrong, up to
+ * differences of TRUSTED units. With codes of 5 bits and more the tests find no
+ * lattice point missed; below, every code is tried. */
 #define WIDENING 2.5
+#define TRUSTED 2.0
 enum { EXHAUSTIVE_CODES = 16, MOST_POINTS = 20000 };
 
 typedef struct walk {
@@ -91,13 +98,13 @@ static void walk_channel(walk *w, int channel, double used) {
 }
 
 /* The eight codes around the best amounts, or all when there are few. */
-static void try_box(walk *w, const size_t from[3], const size_t to[3]) {
-  for (size_t i = from[0]; i <= to[0]; ++i) {
-    for (size_t j = from[1]; j <= to[1]; ++j) {
-      for (size_t k = from[2]; k <= to[2]; ++k) {
-        const size_t at[3] = {i, j, k};
+static void try_box(walk *w, const uint32_t from[3], const uint32_t to[3]) {
+  for (uint32_t i = from[0]; i <= to[0]; ++i) {
+    for (uint32_t j = from[1]; j <= to[1]; ++j) {
+      for (uint32_t k = from[2]; k <= to[2]; ++k) {
+        const uint32_t at[3] = {i, j, k};
         for (int c = 0; c < 3; ++c) {
-          w->code[c] = (uint32_t)at[c];
+          w->code[c] = at[c];
           w->amount[c] = w->lattice->amount[c][at[c]];
         }
         try_point(w);
@@ -106,16 +113,13 @@ static void try_box(walk *w, const size_t from[3], const size_t to[3]) {
   }
 }
 
-static void try_around(walk *w) {
-  size_t from[3], to[3];
-  const size_t last = w->lattice->n_codes - 1;
+void ef__cell_around(const ef__lattice *lattice, const double amount[3],
+                     uint32_t from[3], uint32_t to[3]) {
+  const size_t last = lattice->n_codes - 1;
   for (int c = 0; c < 3; ++c) {
-    const size_t up =
-        first_at_least(w->lattice->amount[c], last, w->best[c]);
-    to[c] = up;
-    from[c] = up > 0 ? up - 1 : 0;
+    to[c] = (uint32_t)first_at_least(lattice->amount[c], last, amount[c]);
+    from[c] = to[c] > 0 ? to[c] - 1 : 0;
   }
-  try_box(w, from, to);
 }
 
 /* root' root = H / 2, with H made positive where it is not. */
@@ -145,37 +149,49 @@ static void factor(const double h[9], double root[9]) {
   }
 }
 
-/* Around one local minimum of the difference. */
-static void search_around(walk *w, const double best[3]) {
+/* Around one local minimum of the difference; false when something may have
+ * been missed. */
+static bool search_around(walk *w, const double best[3]) {
   ef__place place;
+  uint32_t from[3], to[3];
   memcpy(place.amount, best, sizeof place.amount);
   ef__search_expand(w->search, &place);
   w->best = best;
   w->floor = place.square;
   w->n_points = 0;
+  ef__cell_around(w->lattice, best, from, to);
+  try_box(w, from, to);
+  if (w->least > TRUSTED * TRUSTED) {
+    return ef__search_cells(w->search, w->lattice, &place, w->least_code,
+                            &w->least);
+  }
   for (int i = 0; i < 3; ++i) {
     /* At a minimum in the box the slope of a free amount is 0. */
     const bool held = best[i] <= 0 || best[i] >= 1;
     w->gradient[i] = held ? place.gradient[i] : 0;
   }
   factor(place.hessian, w->root);
-  try_around(w);
   walk_channel(w, 2, 0);
+  return w->n_points < MOST_POINTS;
 }
 
 void ef__quantise(ef__search *search, const ef__lattice *lattice,
                   const ef__minima *minima, uint32_t code[3], double *square) {
   walk w = {.search = search, .lattice = lattice, .least = (double)INFINITY};
+  bool whole = true;
   if (lattice->n_codes <= EXHAUSTIVE_CODES) {
-    const size_t last = lattice->n_codes - 1;
-    try_box(&w, (size_t[3]){0, 0, 0}, (size_t[3]){last, last, last});
+    const uint32_t last = (uint32_t)(lattice->n_codes - 1);
+    try_box(&w, (uint32_t[3]){0, 0, 0}, (uint32_t[3]){last, last, last});
   } else {
     for (size_t i = 0; i < minima->n; ++i) {
       /* A minimum that is above a lattice point has none below it around. */
       if (minima->at[i].square < w.least) {
-        search_around(&w, minima->at[i].amount);
+        whole = search_around(&w, minima->at[i].amount) && whole;
       }
     }
+  }
+  if (!whole && ef__boxes_apply(search->mixing, search->metric)) {
+    ef__search_boxes(search, lattice, w.least_code, &w.least);
   }
   memcpy(code, w.least_code, sizeof w.least_code);
   *square = w.least;
