@@ -3,8 +3,8 @@
 # packages they need. Asks nothing; says one line and ends when it cannot.
 
 EF_PACKAGES="gcc libc6-dev meson ninja-build pkg-config libgsl-dev
-  liblcms2-dev libpng-dev libcairo2-dev"
-EF_TEST_PACKAGES="g++ libcmocka-dev libjansson-dev libglpk-dev"
+  liblcms2-dev libpng-dev libjansson-dev libcairo2-dev"
+EF_TEST_PACKAGES="g++ libcmocka-dev libglpk-dev"
 # Contestants in the benches.
 EF_BENCH_PACKAGES="libopenblas-dev libnlopt-dev"
 # Labels on the sheet of swatches need cairo at run time and any font.

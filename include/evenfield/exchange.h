@@ -189,6 +189,30 @@ EF_API ef_status ef_fields_next(ef_fields *fields, const char *const **text,
 EF_API ef_status ef_fields_number(ef_fields *fields, size_t i, double *value,
                                   ef_error *error);
 
+/** All bytes of a text, with a terminator behind them, without a byte-order
+ * mark. Path as for ef_reader_open. EF_MALFORMED for more than `most_bytes`,
+ * for NUL bytes and for what is plainly no text. To be freed with free(). */
+EF_API char *ef_text_read(const char *path, size_t most_bytes, size_t *length,
+                          ef_error *error);
+
+/** A JSON document (RFC 8259) held whole; owns its memory. Its values are found
+ * by JSON Pointer (RFC 6901): "" is all of it, "/files/0/name" a member. */
+typedef struct ef_document ef_document;
+/** EF_MALFORMED names the line; objects with a key twice are refused. Free with
+ * ef_document_free. */
+EF_API ef_document *ef_document_read(const char *path, size_t most_bytes,
+                                     ef_error *error);
+EF_API ef_document *ef_document_from_text(const char *name, const char *text,
+                                          size_t length, ef_error *error);
+EF_API void ef_document_free(ef_document *document);
+/** The text there, borrowed, and its length unless NULL; NULL when there is
+ * nothing or no text. Keys of at most 255 bytes are found. */
+EF_API const char *ef_document_text(const ef_document *document,
+                                    const char *pointer, size_t *length);
+/** How many elements the array there, or members the object, has; else 0. */
+EF_API size_t ef_document_count(const ef_document *document,
+                                const char *pointer);
+
 /** Names and texts of the built-in scenario's files ("livery" ...). */
 EF_API size_t ef_demo_count(void);
 EF_API const char *ef_demo_name(size_t i);

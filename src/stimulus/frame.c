@@ -401,6 +401,7 @@ uint16_t ef_code_to_sample(int bits, uint32_t code) {
 ef_frame_area ef_frames_area(const ef_frames *frames) {
   const ef_frame_settings *const s = &frames->settings;
   const double n_pixels = (double)s->width_px * (double)s->height_px;
+  size_t n_changing = 0;
   ef_frame_area out = {0};
   for (size_t y = 0; y < s->height_px; ++y) {
     for (size_t x = 0; x < s->width_px; ++x) {
@@ -409,8 +410,9 @@ ef_frame_area ef_frames_area(const ef_frames *frames) {
       if (ef__pattern_window(s, &frames->view, x, y) < 0.5)
         continue;
       out.solid_angle_sr += sr;
-      out.share_of_frame += 1 / n_pixels;
+      ++n_changing;
     }
   }
+  out.share_of_frame = (double)n_changing / n_pixels;
   return out;
 }

@@ -88,7 +88,8 @@ static const command_entry table[] = {
       "used (demo:lab-display)."},
      command_isolate,
      {"evenfield isolate",
-      "evenfield isolate --change S --contrast 0.2 --bits 10",
+      "evenfield isolate --change S --contrast 0.2 --frames shown --waveform "
+      "gabor",
       "evenfield isolate --change \"isoluminant red-green\" --population 500"}},
     {"observer",
      COMMAND_OBSERVER,

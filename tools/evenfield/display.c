@@ -240,7 +240,7 @@ ef_status display_load(const command_options *options, const ef_metric *metric,
       curve[i] = tone.curve[i];
     settings.n_curves = tone.n;
     settings.curve = curve;
-    status = source_is_file(out->source)
+    status = source_is_file(options, out->source)
                  ? from_file(options, &settings, metric, notes, out, error)
                  : from_encoding(&settings, out, error);
   }

@@ -95,9 +95,9 @@ static ef_status set_people(isolate_scene *s, const ef_notes *notes,
 
 ef_status isolate_scene_load(isolate_scene *s, const command_options *options,
                              const ef_notes *notes, ef_error *error) {
-  const double day_s = 28800.0, field_deg = 2.0;
+  const double day_s = 28800.0;
   *s = (isolate_scene){.options = options};
-  s->size_deg = isnan(options->size_deg) ? field_deg : options->size_deg;
+  s->size_deg = isolate_size_deg(options);
   s->exposure_s = isnan(options->exposure_s) ? day_s : options->exposure_s;
   ef_status status = set_direction(s, error);
   if (status == EF_OK)
@@ -155,8 +155,9 @@ static ef_status find_way(const isolate_scene *s, const ef_notes *notes,
 }
 
 /* Blue light of one state of the display. */
-static ef_status measure_blue(const isolate_scene *s, const double *amount,
-                              ef_blue_light *out, ef_error *error) {
+static ef_status measure_blue(const isolate_scene *s, double field_deg,
+                              const double *amount, ef_blue_light *out,
+                              ef_error *error) {
   const double rad_per_deg = 0.017453292519943295;
   const ef_device *device = s->display.device;
   const ef_grid *grid = ef_device_grid(device);
@@ -167,11 +168,37 @@ static ef_status measure_blue(const isolate_scene *s, const double *amount,
   isolate_drives(s, amount, drive);
   ef_status status = ef_device_spectrum(device, drive, radiance, NULL, error);
   if (status == EF_OK) {
-    status = ef_blue_light_measure(grid, radiance, s->size_deg * rad_per_deg,
+    status = ef_blue_light_measure(grid, radiance, field_deg * rad_per_deg,
                                    s->exposure_s, out, error);
   }
   free(radiance);
   return status;
+}
+
+/* Diameter of the disc with that solid angle. */
+static double disc_deg(double solid_angle_sr) {
+  const double two_pi = 6.283185307179586, deg_per_rad = 57.29577951308232;
+  return 2.0 * deg_per_rad * acos(1.0 - solid_angle_sr / two_pi);
+}
+
+/* What changes: the disc, or the form where it fills the frame or is cut by
+ * its sides. */
+static void set_field(const isolate_scene *s, isolate_result *r) {
+  const bool is_whole =
+      r->show.frames != NULL &&
+      (r->show.settings.pattern == EF_PATTERN_UNIFORM || !(s->size_deg > 0.0));
+  r->field_deg =
+      is_whole ? disc_deg(r->show.area.frame_solid_angle_sr) : s->size_deg;
+}
+
+/* The whole frame has the background's light; without one only the disc is
+ * known. */
+static double adapting_deg2(const isolate_result *r) {
+  const double quarter_pi = 0.78539816339744831;
+  const double wide_deg = r->show.frames != NULL
+                              ? disc_deg(r->show.area.frame_solid_angle_sr)
+                              : r->field_deg;
+  return quarter_pi * wide_deg * wide_deg;
 }
 
 static ef_status look(const isolate_scene *s, const ef_notes *notes,
@@ -180,18 +207,17 @@ static ef_status look(const isolate_scene *s, const ef_notes *notes,
   if (!r->has_eye)
     return EF_OK;
   ef_pupil pupil = s->pupil;
-  const double quarter_pi = 0.78539816339744831;
-  pupil.field_deg2 = quarter_pi * s->size_deg * s->size_deg;
+  pupil.field_deg2 = adapting_deg2(r);
   ef_status status =
-      ef_retinal_measure(s->stimulator, r->way.background, &pupil, s->size_deg,
-                         notes, &r->eye, error);
+      ef_retinal_measure(s->stimulator, r->way.background, &pupil,
+                         r->field_deg, notes, &r->eye, error);
   for (int sign = -1; sign <= 1 && status == EF_OK; ++sign) {
     double amount[EF_MAX_DRIVES];
     ef_blue_light blue;
     if (sign < 0 && r->way.modulation_kind == EF_PULSE)
       continue;
     isolate_extreme(&r->way, (double)sign, amount);
-    status = measure_blue(s, amount, &blue, error);
+    status = measure_blue(s, r->field_deg, amount, &blue, error);
     if (status == EF_OK && !(blue.radiance_w_m2_sr <= r->blue.radiance_w_m2_sr))
       r->blue = blue;
   }
@@ -200,7 +226,6 @@ static ef_status look(const isolate_scene *s, const ef_notes *notes,
 
 ef_status isolate_compute(const isolate_scene *s, const ef_notes *notes,
                           isolate_result *out, ef_error *error) {
-  *out = (isolate_result){0};
   ef_status status = find_way(s, notes, &out->way, error);
   if (status != EF_OK)
     return status;
@@ -214,10 +239,19 @@ ef_status isolate_compute(const isolate_scene *s, const ef_notes *notes,
                             s->options->jobs, out->spread, NULL, notes, error);
   }
   if (status == EF_OK)
-    status = look(s, notes, out, error);
+    status = isolate_show_new(&out->show, s, &out->way, notes, error);
+  if (status != EF_OK)
+    return status;
+  set_field(s, out);
+  status = look(s, notes, out, error);
   if (status == EF_OK) {
     out->n_cautions =
-        ef_cautions(NULL, out->has_eye ? &out->blue : NULL, out->caution);
+        ef_cautions(out->show.frames != NULL ? &out->show.flash : NULL,
+                    out->has_eye ? &out->blue : NULL, out->caution);
   }
   return status;
+}
+
+void isolate_result_free(isolate_result *r) {
+  isolate_show_free(&r->show);
 }

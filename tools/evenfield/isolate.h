@@ -8,11 +8,12 @@
 #include <evenfield/stimulus.h>
 
 #include "display.h"
+#include "isolate_frames.h"
 #include "option.h"
 #include "people.h"
 
 /** What the modulation rests on. */
-typedef struct isolate_scene {
+struct isolate_scene {
   const command_options *options;
   bool demo_display;
   ef_metric *metric; /**< of the display's residuals */
@@ -26,27 +27,31 @@ typedef struct isolate_scene {
   ef_pupil pupil;
   double size_deg, exposure_s;
   people people; /**< its population is NULL: none was asked for */
-} isolate_scene;
+};
 
 /** What came of it. */
-typedef struct isolate_result {
+struct isolate_result {
   ef_isolation way;
   ef_coded coded;
   ef_receptor_spread spread[EF_N_RECEPTORS]; /**< with a population */
-  bool has_eye; /**< false: the spectra are not absolute, and no luminance,
-                     troland, irradiance or hazard is known */
+  double field_deg; /**< diameter of a disc as large as what changes */
+  bool has_eye;     /**< false: the spectra are not absolute, and no luminance,
+                         troland, irradiance or hazard is known */
   ef_retinal eye;
   ef_blue_light blue; /**< of the worse of the two extremes */
   size_t n_cautions;
   char caution[EF_MOST_CAUTIONS][EF_CAUTION_TEXT];
-} isolate_result;
+  isolate_show show;
+};
 
 /** Reads what the options name. Free with isolate_scene_free in every case. */
 ef_status isolate_scene_load(isolate_scene *s, const command_options *options,
                              const ef_notes *notes, ef_error *error);
 void isolate_scene_free(isolate_scene *s);
+/** Free with isolate_result_free in every case. */
 ef_status isolate_compute(const isolate_scene *s, const ef_notes *notes,
                           isolate_result *out, ef_error *error);
+void isolate_result_free(isolate_result *r);
 
 /** The drives of some amounts. */
 void isolate_drives(const isolate_scene *s, const double *amount,

@@ -138,7 +138,7 @@ ef_metric *jnd_metric(const command_options *options, const ef_notes *notes,
   jnd j = {0};
   const char *name = o->metric;
   if (name == NULL && o->jnd_text != NULL && !is_value(o->jnd_text, &value) &&
-      source_is_file(o->jnd_text)) {
+      source_is_file(o, o->jnd_text)) {
     if (read_file(o->jnd_text, NULL, &j, error) != EF_OK)
       return NULL;
     name = j.record.metric;
@@ -160,7 +160,7 @@ static ef_status load_own(const command_options *o, const ef_metric *metric,
     const ef_status status = read_value(o->jnd_text, value, metric, out, error);
     return status == EF_OK ? EF_OK : message_option(error, "jnd", "");
   }
-  if (!source_is_file(o->jnd_text)) {
+  if (!source_is_file(o, o->jnd_text)) {
     return message_fail(error, EF_UNKNOWN_NAME,
                         "--jnd is a number, NUMBER:CRITERION, or a file with a "
                         "JND; \"%.100s\" is none of them",

@@ -10,6 +10,7 @@
 #include <stdio.h>
 
 #include "exit.h"
+#include "kept.h"
 
 /** Commands, as bits of the sets in which options are known. */
 typedef enum command_bit {
@@ -51,8 +52,13 @@ typedef struct command_options {
   const char *jnd_text, *criterion, *tolerance_text; /**< of compare, ellipse */
   const char *pairs, *task, *correction, *angle_weights;
   const char *change, *silence, *ignore, *background; /**< of isolate */
-  const char *luminance_weights, *pupil;
+  const char *luminance_weights, *pupil, *frames, *replay;
+  const char *frame_size, *centre;
   double contrast, exposure_s, size_deg;
+  /* Of frames. */
+  double cycles_per_deg, hole_deg, edge_deg, sigma_deg, orientation_deg;
+  double phase_deg, drift_hz, distance_mm, pixels_per_mm, frame_rate_hz;
+  double frequency_hz, time_phase_deg, duty, duration_s, ramp_s, most_gb;
   double ambient_lux, reflectance, luminance_cd_m2, jnd, tolerance, device_max;
   double size, steps, white_cd_m2, background_Y;
   double exponent, spread, batch_sd, samples;
@@ -64,6 +70,9 @@ typedef struct command_options {
   int units;                          /**< an ef_cone_units */
   int modulation;                     /**< an ef_modulation */
   int plane;                          /**< a diagram_plane, -1 not given */
+  int pattern;     /**< an ef_pattern, -1 not given */
+  int time_course; /**< an ef_waveform_kind, -1 not given */
+  int dither;      /**< an ef_dither */
   int format;
   int bits, swatch_bits, jobs, categories;
   bool skip_bad, check, worst_case, robust, force, quiet, help, version;
@@ -71,6 +80,7 @@ typedef struct command_options {
   size_t n_files;
   const char **files; /**< owned; the texts are those of argv */
   given_options given;
+  kept_files *kept; /**< borrowed; NULL: files are read as they come */
 } command_options;
 
 /** Reads the arguments after the command's name. EXIT_DONE, or EXIT_USAGE with

@@ -63,10 +63,23 @@ static ef_status check_row(const ef_columns *columns, size_t row,
   return status;
 }
 
-static ef_status read_table(people *p, const char *path, const ef_notes *notes,
-                            ef_error *error) {
+static ef_columns *read_columns(const command_options *options,
+                                const char *path, const ef_notes *notes,
+                                ef_error *error) {
   static const char *const names[] = {"age", "share"};
-  ef_columns *columns = ef_columns_read(path, 2, names, notes, error);
+  if (options->kept == NULL)
+    return ef_columns_read(path, 2, names, notes, error);
+  const char *bytes;
+  size_t length;
+  if (kept_get(options->kept, path, &bytes, &length, error) != EF_OK)
+    return NULL;
+  return ef_columns_from_text(path, bytes, length, 2, names, notes, error);
+}
+
+static ef_status read_table(people *p, const command_options *options,
+                            const char *path, const ef_notes *notes,
+                            ef_error *error) {
+  ef_columns *columns = read_columns(options, path, notes, error);
   if (columns == NULL)
     return message_place(error, path);
   const size_t n = ef_columns_rows(columns);
@@ -89,13 +102,14 @@ static ef_status read_table(people *p, const char *path, const ef_notes *notes,
   return EF_OK;
 }
 
-static ef_status set_ages(people *p, const char *ages, const ef_notes *notes,
-                          ef_error *error) {
+static ef_status set_ages(people *p, const command_options *options,
+                          const ef_notes *notes, ef_error *error) {
+  const char *ages = options->ages;
   ef_population_settings *s = &p->settings;
   if (parse_range(ages, &s->age_min_years, &s->age_max_years))
     return EF_OK;
-  if (source_is_file(ages))
-    return read_table(p, ages, notes, error);
+  if (source_is_file(options, ages))
+    return read_table(p, options, ages, notes, error);
   return message_fail(error, EF_UNKNOWN_NAME,
                       "--ages is a range such as 20-70, one age, or a file "
                       "with columns age and share; \"%.100s\" is none of them",
@@ -135,7 +149,7 @@ ef_status people_load(people *p, const command_options *options,
   if (!isnan(o->field_deg))
     s->mean.field_deg = o->field_deg;
   if (o->ages != NULL) {
-    const ef_status status = set_ages(p, o->ages, notes, error);
+    const ef_status status = set_ages(p, o, notes, error);
     if (status != EF_OK)
       return status;
   }

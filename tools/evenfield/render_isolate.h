@@ -23,6 +23,11 @@ const char *isolate_receptor_words(size_t receptor);
 /** A contrast in percent, with three significant digits or as many decimals as
  * 1e-6 takes, and a sign unless it is zero: "+12.3", "-0.042", "0". */
 void isolate_percent(double contrast, char out[EF_NUMBER_TEXT]);
+/** "12.3 %". */
+void isolate_add_size(text *t, double size);
+/** What is shown. */
+void render_isolate_frames(text *out, const isolate_scene *s,
+                           const isolate_result *r);
 /** What all figures rest on. */
 void render_isolate_basis(text *out, const isolate_scene *s,
                           const isolate_result *r);

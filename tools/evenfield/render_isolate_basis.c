@@ -130,8 +130,9 @@ static void add_pupil(text *out, const isolate_scene *s,
   if (s->pupil.formula == EF_PUPIL_GIVEN) {
     text_add(&t, "as given");
   } else {
-    text_format(&t, "%s; the adapting field is the disc",
-                ef_pupil_source(s->pupil.formula));
+    text_format(&t, "%s; the adapting field is the %s",
+                ef_pupil_source(s->pupil.formula),
+                r->show.frames != NULL ? "frame" : "disc");
   }
   if (s->pupil.formula == EF_PUPIL_WATSON_YELLOTT) {
     char age[EF_NUMBER_TEXT];

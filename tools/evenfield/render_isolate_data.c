@@ -133,12 +133,37 @@ static void record_eye(record *out, const isolate_scene *s,
   record_number(out, "pupil_mm", e.pupil_diameter_mm);
   record_number(out, "photopic_td", e.photopic_td);
   record_number(out, "scotopic_td", e.scotopic_td);
-  record_number(out, "size_deg", s->size_deg);
+  record_number(out, "size_deg", r->field_deg);
   record_receptors(out, "irradiance_w_m2", e.irradiance_w_m2);
   record_receptors(out, "equivalent_d65_lx", e.equivalent_d65_lx);
   record_number(out, "blue_light_w_m2_sr", b.radiance_w_m2_sr);
   record_number(out, "blue_light_limit_s", b.limit_s);
   record_number(out, "exposure_s", s->exposure_s);
+}
+
+/* What is shown when, and how often it flashes. */
+static void record_show(record *out, const isolate_show *show) {
+  const ef_flash *flash = &show->flash;
+  const double none = (double)NAN;
+  record_begin(out, "shown");
+  record_number(out, "n_frames", (double)ef_frames_count(show->frames));
+  record_number(out, "frame_rate_hz", show->settings.frame_rate_hz);
+  record_text(out, "waveform", ef_pattern_name(show->settings.pattern));
+  record_number(out, "solid_angle_sr", show->area.solid_angle_sr);
+  record_number(out, "share_of_frame", show->area.share_of_frame);
+  record_number(out, "flashes_general", (double)flash->n_general);
+  record_number(out, "flashes_television",
+                flash->has_luminance ? (double)flash->n_television : none);
+  record_number(out, "flashes_red", (double)flash->n_red);
+  record_end(out);
+  if (!show->has_dither)
+    return;
+  record_begin(out, "dither");
+  record_receptors(out, "contrast", show->dither.contrast);
+  record_receptors(out, "noise", show->dither.noise);
+  record_number(out, "residual", show->dither.residual);
+  record_number(out, "residual_rounded", show->dither.rounded_residual);
+  record_end(out);
 }
 
 void isolate_record(record *out, const isolate_scene *s,
@@ -154,6 +179,8 @@ void isolate_record(record *out, const isolate_scene *s,
   record_coded(out, s, &r->coded);
   record_people(out, s, r);
   record_eye(out, s, r);
+  if (r->show.frames != NULL)
+    record_show(out, &r->show);
   const char *caution[EF_MOST_CAUTIONS];
   for (size_t i = 0; i < r->n_cautions; ++i)
     caution[i] = r->caution[i];

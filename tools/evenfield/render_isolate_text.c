@@ -50,7 +50,7 @@ static void add_percent(text *t, double contrast) {
   text_format(t, "%s %%", number);
 }
 
-static void add_size(text *t, double size) {
+void isolate_add_size(text *t, double size) {
   char number[EF_NUMBER_TEXT];
   add_digits(100.0 * size, "", number);
   text_format(t, "%s %%", number);
@@ -104,7 +104,7 @@ static void add_changes(text *t, const isolate_result *r) {
       text_format(t, "%s%s by ", between(i, n), isolate_receptor_words(k));
     }
     if (n == 1 && way->contrast[k] > 0.0)
-      add_size(t, way->contrast[k]);
+      isolate_add_size(t, way->contrast[k]);
     else
       add_percent(t, way->contrast[k]);
     ++i;
@@ -192,7 +192,7 @@ static void add_people_answer(text *out, const isolate_scene *s,
   text_add(&t, "Of ");
   people_add_who(&t, &s->people);
   text_format(&t, ", one in twenty gets ");
-  add_size(&t, r->spread[worst].p95);
+  isolate_add_size(&t, r->spread[worst].p95);
   text_format(&t, " or more in %s, which should be silent (%s).",
               isolate_receptor_words(worst),
               s->options->robust ? "the least there is for all of them together"
@@ -217,9 +217,9 @@ static void add_codes_answer(text *out, const isolate_result *r) {
     return;
   text_format(&t, "Shown in %d-bit codes, what should be silent gets at most ",
               c->bits);
-  add_size(&t, c->residual);
+  isolate_add_size(&t, c->residual);
   text_add(&t, " (");
-  add_size(&t, c->rounded_residual);
+  isolate_add_size(&t, c->rounded_residual);
   text_add(&t, " with plainly rounded codes).");
   text_paragraph(out, &t, 0);
 }
@@ -349,7 +349,7 @@ static void add_reach(text *out, const isolate_scene *s,
     add_limits(&t, s, way);
   }
   text_label(out, "Largest", &t);
-  add_size(&t, way->pooled_contrast);
+  isolate_add_size(&t, way->pooled_contrast);
   text_add(&t, ", the root of the summed squares of the contrasts of L, M "
                "and S");
   text_label(out, "Pooled", &t);
@@ -388,6 +388,7 @@ static void add_steps(text *out, const isolate_scene *s,
 static void add_eye(text *out, const isolate_scene *s,
                     const isolate_result *r) {
   text t = {0};
+  char size[EF_NUMBER_TEXT];
   if (!r->has_eye) {
     text_add(&t, "not known: the spectra are relative, not in W sr-1 m-2 "
                  "nm-1, so that there are no luminances, trolands, irradiances "
@@ -412,8 +413,7 @@ static void add_eye(text *out, const isolate_scene *s,
   }
   text_add(&t, " mW/m2; melanopic equivalent daylight (D65) ");
   add_figure(&t, e->equivalent_d65_lx[EF_MELANOPSIN], 3);
-  char size[EF_NUMBER_TEXT];
-  ef_number_format(s->size_deg, size);
+  ef_number_format_fixed(r->field_deg, words_decimals(r->field_deg, 3), size);
   text_format(&t,
               " lx; alpha-opic irradiances (CIE S 026) at the cornea of a "
               "disc of %s degrees",
@@ -451,6 +451,8 @@ ef_status isolate_text_write(const isolate_scene *s, const isolate_result *r,
   text_add(&out, "\nHow far and how finely:\n");
   add_reach(&out, s, r);
   add_steps(&out, s, r);
+  if (r->show.frames != NULL)
+    render_isolate_frames(&out, s, r);
   text_add(&out, "\nAt the eye:\n");
   add_eye(&out, s, r);
   add_cautions(&out, r);

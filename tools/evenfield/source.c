@@ -15,10 +15,18 @@ static bool ends_with(const char *text, const char *end) {
   return n >= m && strcmp(text + n - m, end) == 0;
 }
 
-bool source_is_file(const char *name) {
+/* On the disk, or for a replay in the record. */
+static bool is_there(const command_options *options, const char *name) {
+  const kept_files *kept = options->kept;
+  if (kept != NULL && kept->is_closed)
+    return kept_has(kept, name);
+  return access(name, F_OK) == 0;
+}
+
+bool source_is_file(const command_options *options, const char *name) {
   return strncmp(name, "demo:", 5) == 0 || strcmp(name, "-") == 0 ||
          strchr(name, '/') != NULL || ends_with(name, ".csv") ||
-         access(name, F_OK) == 0;
+         is_there(options, name);
 }
 
 ef_kind_choice source_kind(const command_options *options) {
@@ -36,7 +44,14 @@ ef_reader *source_reader(const command_options *options, const char *path,
   if (!isnan(options->device_max))
     settings.device_max = options->device_max;
   settings.notes = notes;
-  return ef_reader_open(path, &settings, error);
+  if (options->kept == NULL)
+    return ef_reader_open(path, &settings, error);
+  const char *text;
+  size_t length;
+  if (kept_get(options->kept, path, &text, &length, error) != EF_OK)
+    return NULL;
+  const char *name = strcmp(path, "-") == 0 ? "standard input" : path;
+  return ef_reader_from_text(name, text, length, &settings, error);
 }
 
 static const char no_file[] = "; and there is no such file";
@@ -110,7 +125,7 @@ ef_observer *source_observer_named(const command_options *options,
     message_argument(error, what, "");
     return NULL;
   }
-  if (!source_is_file(name)) {
+  if (!source_is_file(options, name)) {
     /* With settings behind a colon no file can be meant. */
     message_argument(error, what, strchr(name, ':') == NULL ? no_file : "");
     return NULL;
@@ -188,14 +203,14 @@ ef_illuminant *source_illuminant(const command_options *options,
   snprintf(path, sizeof path, "%s", name);
   char *colon = strrchr(path, ':');
   const bool is_demo = strncmp(path, "demo:", 5) == 0;
-  if (colon == NULL || access(name, F_OK) == 0 ||
+  if (colon == NULL || is_there(options, name) ||
       (is_demo && colon == path + 4)) {
-    if (source_is_file(name)) {
+    if (source_is_file(options, name)) {
       return illuminant_from_file(options, option, name, NULL, notes, error);
     }
   } else {
     *colon = '\0';
-    if (source_is_file(path)) {
+    if (source_is_file(options, path)) {
       return illuminant_from_file(options, option, path, colon + 1, notes,
                                   error);
     }

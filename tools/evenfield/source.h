@@ -11,7 +11,7 @@
 
 /** True when `name` is meant as a file: it exists, or it has the look of a
  * path. */
-bool source_is_file(const char *name);
+bool source_is_file(const command_options *options, const char *name);
 /** --kind. */
 ef_kind_choice source_kind(const command_options *options);
 /** Opens a file as the options say; `kind` is the answer the place gives when

@@ -180,7 +180,7 @@ ef_status tone_load(const command_options *options, const ef_notes *notes,
   *out = (tone_curves){0};
   if (options->tone == NULL)
     return EF_OK;
-  if (source_is_file(options->tone)) {
+  if (source_is_file(options, options->tone)) {
     return curves_from_file(options, notes, out, error);
   }
   out->curve[0] = ef_tone_curve_new(options->tone, error);
