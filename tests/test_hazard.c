@@ -127,7 +127,8 @@ static ef_flash flicker(double hz, double low, double high, double white_cd_m2,
     xyz[3 * k + 1] = y;
     xyz[3 * k + 2] = 1.089 * y;
   }
-  const ef_flash_input input = {FRAMES, RATE, xyz, white_cd_m2, sr, share};
+  const ef_flash_input input = {FRAMES, RATE,  xyz, white_cd_m2,
+                                sr,     share, 0,   false};
   ef_flash out;
   assert_int_equal(ef_flash_count(&input, &out, NULL), EF_OK);
   return out;
@@ -153,10 +154,46 @@ static void flashes_are_counted(void **state) {
   assert_int_equal(flicker(10, 0.81, 0.95, 100, 1, 1).n_general, 0);
   assert_int_equal(flicker(10, 0.50, 0.69, 100, 1, 1).n_television, 0);
   assert_int_equal(flicker(10, 0.50, 0.71, 100, 1, 1).n_television, 10);
-  assert_int_equal(flicker(10, 0.50, 0.71, 400, 1, 1).n_television, 0);
+  /* From 160 cd/m2 on 1/17 of the sum: 8/9 of the lighter one. */
+  assert_int_equal(flicker(10, 0.50, 0.5624, 400, 1, 1).n_television, 0);
+  assert_int_equal(flicker(10, 0.50, 0.5626, 400, 1, 1).n_television, 10);
+  assert_int_equal(flicker(10, 0.50, 0.71, 400, 1, 1).n_television, 10);
+  /* The two rules are one at 160: 180. */
+  assert_int_equal(flicker(10, 0.1599, 0.1798, 1000, 1, 1).n_television, 0);
+  assert_int_equal(flicker(10, 0.1599, 0.18, 1000, 1, 1).n_television, 10);
+  assert_int_equal(flicker(10, 0.1601, 0.1800, 1000, 1, 1).n_television, 0);
+  assert_int_equal(flicker(10, 0.1601, 0.1802, 1000, 1, 1).n_television, 10);
   f = flicker(10, 0.2, 0.6, (double)NAN, 1, 1);
   assert_false(f.has_luminance);
   assert_int_equal(f.n_television, 0);
+}
+
+/* Wide, but spread out or fine: WCAG looks at any field of 10 degrees, and
+ * leaves out balanced patterns under 0.1 degree. */
+static void area_and_fineness_count(void **state) {
+  (void)state;
+  double xyz[3 * FRAMES];
+  for (size_t k = 0; k < FRAMES; k++)
+    for (int c = 0; c < 3; c++)
+      xyz[3 * k + (size_t)c] = (k / 3) % 2 ? 0.6 : 0.2;
+  ef_flash_input input = {FRAMES, RATE, xyz, 100, 0.1, 1, 0, false};
+  ef_flash out;
+  assert_int_equal(ef_flash_count(&input, &out, NULL), EF_OK);
+  assert_true(out.exceeds_general && out.exceeds_television);
+  assert_near(out.in_ten_deg_sr, 0.1, 0);
+  input.in_ten_deg_sr = 0.005;
+  assert_int_equal(ef_flash_count(&input, &out, NULL), EF_OK);
+  assert_false(out.exceeds_general);
+  assert_true(out.exceeds_television);
+  input.in_ten_deg_sr = 0.02;
+  input.is_fine = true;
+  assert_int_equal(ef_flash_count(&input, &out, NULL), EF_OK);
+  assert_false(out.exceeds_general);
+  assert_true(out.exceeds_television);
+  assert_false(out.is_long);
+  input.frame_rate_hz = RATE / 10.0;
+  assert_int_equal(ef_flash_count(&input, &out, NULL), EF_OK);
+  assert_true(out.is_long);
 }
 
 /* The red of IEC 61966-2-1 against its green, of one luminance. */
@@ -168,7 +205,7 @@ static void saturated_red_is_counted(void **state) {
   for (int with_red = 0; with_red < 2; with_red++) {
     for (size_t k = 0; k < FRAMES; k++)
       memcpy(xyz + 3 * k, (k / 6) % 2 && with_red ? red : grey, sizeof red);
-    const ef_flash_input input = {FRAMES, RATE, xyz, 100, 0.02, 1};
+    const ef_flash_input input = {FRAMES, RATE, xyz, 100, 0.02, 1, 0, false};
     ef_flash out;
     assert_int_equal(ef_flash_count(&input, &out, NULL), EF_OK);
     assert_int_equal(out.n_general, 0); /* no luminance changes */
@@ -177,12 +214,12 @@ static void saturated_red_is_counted(void **state) {
   }
   ef_flash out;
   ef_error error;
-  const ef_flash_input none = {0, RATE, xyz, 100, 0.02, 1};
+  const ef_flash_input none = {0, RATE, xyz, 100, 0.02, 1, 0, false};
   assert_int_equal(ef_flash_count(&none, &out, &error), EF_INVALID);
   assert_string_equal(error.message, "0 frames at 60 Hz; expected at least 1, "
                                      "and a rate above 0");
   xyz[4] = INFINITE;
-  const ef_flash_input bad = {FRAMES, RATE, xyz, 100, 0.02, 1};
+  const ef_flash_input bad = {FRAMES, RATE, xyz, 100, 0.02, 1, 0, false};
   assert_int_equal(ef_flash_count(&bad, &out, &error), EF_INVALID);
   assert_string_equal(error.message, "frame 2 has no finite colour");
 }
@@ -209,6 +246,114 @@ static void frames_flash_as_their_waveform(void **state) {
   assert_true(out.exceeds_general);
   assert_near(out.share_of_frame, 1.0, 1e-9);
   ef_frames_free(frames);
+  invented_free(&i);
+}
+
+/* A disc within the circle counts whole, a wider one as the circle, an annulus
+ * by what of it a circle can hold; never less than is there. */
+static void most_in_ten_degrees(void **state) {
+  (void)state;
+  const double circle_sr =
+      2 * 3.14159265358979323846 * (1 - cos(5 * 3.14159265358979323846 / 180));
+  static const struct {
+    ef_pattern pattern;
+    double size_deg, hole_deg, low, high; /* of the circle */
+  } cases[] = {{EF_PATTERN_DISC, 4, 0, 0.159, 0.161},
+               {EF_PATTERN_DISC, 9.8, 0, 0.955, 0.965},
+               {EF_PATTERN_DISC, 14, 0, 1, 1},
+               {EF_PATTERN_UNIFORM, 0, 0, 1, 1},
+               /* a ring of 1 degree: at most a 10 degree chord of it */
+               {EF_PATTERN_ANNULUS, 20, 18, 0.12, 0.17}};
+  invented i = invented_new(3, "cie-2015-2");
+  const ef_direction direction = invented_direction("luminance", "");
+  const ef_isolate_settings settings = ef_isolate_settings_default();
+  ef_isolation way;
+  assert_int_equal(ef_isolate(i.stimulator, &direction, &settings, &way, NULL),
+                   EF_OK);
+  for (size_t k = 0; k < sizeof cases / sizeof cases[0]; k++) {
+    ef_frame_settings s = ef_frame_settings_default();
+    s.width_px = 384;
+    s.height_px = 320;
+    s.pixels_per_mm = 1;
+    s.distance_mm = 700;
+    s.pattern = cases[k].pattern;
+    s.size_deg = cases[k].size_deg;
+    s.hole_deg = cases[k].hole_deg;
+    s.edge_deg = 0.1;
+    ef_frames *frames = ef_frames_new(i.stimulator, &way, &s, NULL, NULL);
+    assert_non_null(frames);
+    const double share = ef_frames_area(frames).in_ten_deg_sr / circle_sr;
+    printf("# %s of %g degrees: %.4f of a circle of 10 degrees\n",
+           ef_pattern_name(s.pattern), s.size_deg, share);
+    assert_true(share >= cases[k].low && share <= cases[k].high * (1 + 1e-12));
+    ef_frames_free(frames);
+  }
+  invented_free(&i);
+}
+
+static ef_stripes stripes_of(const invented *i, const ef_isolation *way,
+                             ef_pattern pattern, double cycles_per_deg,
+                             double size_deg, bool flickers) {
+  ef_frame_settings s = ef_frame_settings_default();
+  s.width_px = 240;
+  s.height_px = 160;
+  s.pixels_per_mm = 1;
+  s.pattern = pattern;
+  s.size_deg = size_deg;
+  s.edge_deg = 0;
+  s.cycles_per_deg = cycles_per_deg;
+  if (flickers) {
+    s.waveform.kind = EF_WAVEFORM_SQUARE;
+    s.waveform.duration_s = 1;
+  }
+  ef_frames *frames = ef_frames_new(i->stimulator, way, &s, NULL, NULL);
+  ef_stripes out;
+  assert_int_equal(ef_frames_stripes(frames, &out, NULL), EF_OK);
+  ef_frames_free(frames);
+  return out;
+}
+
+/* A frame of 19.46 x 13.05 degrees. */
+static void stripes_are_looked_at(void **state) {
+  (void)state;
+  invented i = invented_new(3, "cie-2015-2");
+  const ef_direction direction = invented_direction("luminance", "");
+  const ef_isolate_settings settings = ef_isolate_settings_default();
+  ef_isolation way;
+  assert_int_equal(ef_isolate(i.stimulator, &direction, &settings, &way, NULL),
+                   EF_OK);
+  double high[EF_MAX_DRIVES];
+  for (size_t k = 0; k < 3; k++)
+    high[k] = way.background[k] + way.modulation[k];
+  const double light = ef_stimulator_luminance_cd_m2(i.stimulator, high);
+  assert_true(light > 100);
+  ef_stripes s = stripes_of(&i, &way, EF_PATTERN_GRATING, 1, 0, false);
+  assert_near(s.pairs, 2 * atan(120.0 / 700) * 180 / 3.14159265358979323846,
+              1e-9);
+  assert_near_relative(s.light_cd_m2, light, 1e-12);
+  assert_true(s.is_discernible && !s.flickers);
+  assert_true(s.exceeds);
+  assert_near(s.share_of_frame, 1, 0);
+  /* Few, or on a small part of the frame. */
+  s = stripes_of(&i, &way, EF_PATTERN_GRATING, 0.2, 0, false);
+  assert_true(s.pairs < 5 && !s.exceeds);
+  s = stripes_of(&i, &way, EF_PATTERN_GRATING, 2, 10, false);
+  assert_near(s.pairs, 20, 1e-12);
+  assert_true(s.share_of_frame > 0.25 && s.share_of_frame < 0.40);
+  assert_false(s.exceeds);
+  s = stripes_of(&i, &way, EF_PATTERN_GRATING, 2, 10, true);
+  assert_true(s.flickers);
+  assert_true(s.exceeds);
+  s = stripes_of(&i, &way, EF_PATTERN_GABOR, 2, 4, false);
+  assert_near(s.pairs, 2 * 0.5 * 2.3548200450309493, 1e-12);
+  s = stripes_of(&i, &way, EF_PATTERN_DISC, 2, 4, false);
+  assert_near(s.pairs, 0, 0);
+  /* Stripes of one luminance are not discernible by it. */
+  const ef_direction tritan = invented_direction("isoluminant tritan", "");
+  assert_int_equal(ef_isolate(i.stimulator, &tritan, &settings, &way, NULL),
+                   EF_OK);
+  s = stripes_of(&i, &way, EF_PATTERN_GRATING, 1, 0, false);
+  assert_false(s.is_discernible || s.exceeds);
   invented_free(&i);
 }
 
@@ -255,24 +400,51 @@ static void blue_light_of_led_b1(void **state) {
 static void cautions_end_with_the_deferral(void **state) {
   (void)state;
   char text[EF_MOST_CAUTIONS][EF_CAUTION_TEXT];
-  assert_int_equal(ef_cautions(NULL, NULL, text), 1);
+  assert_int_equal(ef_cautions(NULL, NULL, NULL, text), 1);
   assert_string_equal(text[0], ef_caution_deferral());
   assert_non_null(strstr(text[0], "no clearance"));
-  const ef_flash f = flicker(10, 0.2, 0.6, 100, 0.1, 1);
+  ef_flash f = flicker(10, 0.2, 0.6, 100, 0.1, 1);
   const ef_blue_light blue = {.radiance_w_m2_sr = 250, .limit_s = 4000};
-  assert_int_equal(ef_cautions(&f, &blue, text), 3);
-  assert_string_equal(text[0],
-                      "flashes: 10 in a second over 0.1 sr, 100 % of the "
-                      "frame; WCAG 2.3.1 and ITU-R BT.1702 allow 3 over more "
-                      "than 0.006 sr or 25 %: exceeded");
+  assert_int_equal(ef_cautions(&f, NULL, &blue, text), 3);
+  assert_string_equal(
+      text[0], "flashes: 10 in a second over 0.1 sr of a field of 10 degrees "
+               "and 100 % of the frame; WCAG 2.3.1 allows 3 over more than "
+               "0.006 sr, ITU-R BT.1702 over more than 25 %: exceeded");
   assert_string_equal(text[1], "blue light: weighted radiance 250 W m-2 sr-1, "
                                "exposure limit of IEC 62471 after 4000 s");
   assert_string_equal(text[2], ef_caution_deferral());
   const ef_blue_light dim = {.radiance_w_m2_sr = 2, .limit_s = INFINITE};
-  assert_int_equal(ef_cautions(NULL, &dim, text), 2);
-  assert_string_equal(text[0],
+  const ef_stripes stripes = {.pairs = 12,
+                              .has_luminance = true,
+                              .light_cd_m2 = 90,
+                              .dark_cd_m2 = 10,
+                              .is_discernible = true,
+                              .share_of_frame = 0.5,
+                              .exceeds = true};
+  assert_int_equal(ef_cautions(NULL, &stripes, &dim, text), 3);
+  assert_string_equal(
+      text[0], "stripes: 12 light-dark pairs of 90 and 10 cd/m2 over 50 % of "
+               "the frame; guidance for television allows more than 5 pairs of "
+               "50 cd/m2 or more over 40 %: exceeded");
+  assert_string_equal(text[1],
                       "blue light: weighted radiance 2 W m-2 sr-1, below the "
                       "exposure limit of IEC 62471 for any time");
+  f = flicker(2, 0.2, 0.6, 100, 0.1, 1);
+  assert_int_equal(ef_cautions(&f, NULL, NULL, text), 1);
+  f.is_long = true;
+  assert_int_equal(ef_cautions(&f, NULL, NULL, text), 2);
+  assert_string_equal(
+      text[0], "flashes: up to 2 in a second, within the limits of WCAG 2.3.1 "
+               "and ITU-R BT.1702; flashing for more than 5 s may be a risk "
+               "even where each second is within the limits");
+  /* The longest of all fit. */
+  f = flicker(10, 0.2, 0.6, 100, 0.123456, 0.987654321);
+  f.is_long = f.is_fine = true;
+  f.n_red = 30;
+  f.exceeds_red = true;
+  assert_int_equal(ef_cautions(&f, &stripes, &blue, text), 5);
+  for (int k = 0; k < 5; k++)
+    assert_true(strlen(text[k]) < EF_CAUTION_TEXT - 20);
 }
 
 int main(void) {
@@ -280,6 +452,9 @@ int main(void) {
       cmocka_unit_test(pupils_of_the_formulas),
       cmocka_unit_test(trolands_and_alpha_opic_irradiance),
       cmocka_unit_test(flashes_are_counted),
+      cmocka_unit_test(area_and_fineness_count),
+      cmocka_unit_test(most_in_ten_degrees),
+      cmocka_unit_test(stripes_are_looked_at),
       cmocka_unit_test(saturated_red_is_counted),
       cmocka_unit_test(frames_flash_as_their_waveform),
       cmocka_unit_test(blue_light_of_led_b1),

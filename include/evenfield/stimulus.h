@@ -470,6 +470,9 @@ EF_API uint16_t ef_code_to_sample(int bits, uint32_t code);
  * half. */
 typedef struct ef_frame_area {
   double solid_angle_sr;
+  /** The most of it in any circle of 10 degrees (on a lattice of at most 48 x
+   * 48 blocks of the frame, rounded up by half a block). */
+  double in_ten_deg_sr;
   double share_of_frame; /**< of its pixels */
   double frame_solid_angle_sr;
 } ef_frame_area;
@@ -560,19 +563,28 @@ typedef struct ef_flash_input {
   double white_cd_m2;    /**< luminance of that white; NaN: not known */
   double solid_angle_sr; /**< that changes together */
   double share_of_frame; /**< 0 to 1 */
+  double in_ten_deg_sr;  /**< most of it in any circle of 10 degrees; 0: all */
+  bool is_fine;          /**< a balanced pattern finer than 0.1 degree */
 } ef_flash_input;
 
-/** Flashes: pairs of opposing changes, the most in any second.
+/** Flashes: pairs of opposing changes, the most in any second. All limits from
+ * memory.
  * WCAG 2.3.1: changes of at least 0.10 of relative luminance with the darker
- * below 0.80; at most 3 in a second unless all together stay within 0.006 sr.
- * ITU-R BT.1702: changes of at least 20 cd/m2 with the darker below 160; at
- * most 3 in a second over more than 25 % of the picture. Saturated red (WCAG
- * 2.2): changes of more than 0.2 in u'v' of which one side has R / (R + G + B)
- * of at least 0.8 in linear sRGB. */
+ * below 0.80; at most 3 in a second unless all together stay within 0.006 sr of
+ * any field of 10 degrees. A balanced pattern of squares or stripes finer than
+ * 0.1 degree does not count.
+ * ITU-R BT.1702: changes of at least 20 cd/m2 where the darker is below 160,
+ * above it those of a Michelson contrast of at least 1/17 (which is the same at
+ * 160); at most 3 in a second over more than 25 % of the picture; more than 5
+ * seconds of flashing may be a risk even so.
+ * Saturated red (WCAG 2.2): changes of more than 0.2 in u'v' of which one side
+ * has R / (R + G + B) of at least 0.8 in linear sRGB. */
 typedef struct ef_flash {
   size_t n_general, n_television, n_red;
   bool has_luminance; /**< false: n_television is not known and 0 */
-  double solid_angle_sr, share_of_frame;
+  double solid_angle_sr, share_of_frame, in_ten_deg_sr;
+  bool is_fine;
+  bool is_long; /**< there are flashes, and frames for more than 5 s */
   bool exceeds_general, exceeds_television, exceeds_red;
 } ef_flash;
 
@@ -582,6 +594,26 @@ EF_API ef_status ef_flash_count(const ef_flash_input *input, ef_flash *out,
 /** Of frames: the place with the full window and the pattern's area. */
 EF_API ef_status ef_frames_flash(const ef_frames *frames, ef_flash *out,
                                  ef_error *error);
+
+/** Regular stripes, which may do harm without a flash (guidance for television
+ * in the United Kingdom, from which ITU-R BT.1702 comes; from memory): more
+ * than five light-dark pairs, the light ones of 50 cd/m2 or more, over more
+ * than 40 % of the picture where they stand or drift, 25 % where they flicker
+ * or reverse. Stripes count as discernible where the change from one to the
+ * next would count as a flash (common practice, no source). */
+typedef struct ef_stripes {
+  double pairs;          /**< across the pattern at half its window; 0: none */
+  bool has_luminance;    /**< false: the next three are not known, NaN, false */
+  double light_cd_m2, dark_cd_m2;
+  bool is_discernible;
+  double share_of_frame;
+  bool flickers;         /**< its contrast changes in time */
+  bool exceeds;
+} ef_stripes;
+
+/** Of gratings and Gabors; of other patterns `pairs` is 0. */
+EF_API ef_status ef_frames_stripes(const ef_frames *frames, ef_stripes *out,
+                                   ef_error *error);
 
 /** Blue-light hazard (IEC 62471:2006, ICNIRP 2013), with the weights B of the
  * built-in table "retinal-hazard" (from memory, supported by one published
@@ -604,12 +636,13 @@ EF_API ef_status ef_blue_light_measure(const ef_grid *grid,
                                        double exposure_s, ef_blue_light *out,
                                        ef_error *error);
 
-enum { EF_MOST_CAUTIONS = 4, EF_CAUTION_TEXT = 400 };
+enum { EF_MOST_CAUTIONS = 6, EF_CAUTION_TEXT = 400 };
 
-/** Cautions in words, one a line: flashes, saturated red, blue light where they
- * apply (either may be NULL), and always, last, the deferral. Returns how
- * many. */
-EF_API size_t ef_cautions(const ef_flash *flash, const ef_blue_light *blue,
+/** Cautions in words, one a line: flashes, saturated red, stripes, blue light
+ * where they apply (each may be NULL), and always, last, the deferral. Returns
+ * how many. */
+EF_API size_t ef_cautions(const ef_flash *flash, const ef_stripes *stripes,
+                          const ef_blue_light *blue,
                           char text[EF_MOST_CAUTIONS][EF_CAUTION_TEXT]);
 
 #ifdef __cplusplus

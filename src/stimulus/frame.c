@@ -23,6 +23,7 @@ struct ef_frames {
   ef__codes *codes;
   ef__thresholds thresholds;
   uint32_t *table; /* LEVELS x n; NULL where codes are not searched for */
+  ef_frame_area area;
 };
 
 ef_frame_settings ef_frame_settings_default(void) {
@@ -209,6 +210,85 @@ static void tell_codes(const ef_frame_settings *s, const ef_notes *notes) {
   }
 }
 
+/* ---- Areas ---------------------------------------------------------------
+ */
+
+/* The solid angle that changes, and how it lies in blocks of the frame. */
+enum { BLOCKS = 48 };
+typedef struct blocks {
+  size_t n_x, n_y;
+  double sr[BLOCKS * BLOCKS];         /* that changes in each */
+  double towards[BLOCKS * BLOCKS][3]; /* unit vectors to their middles */
+  double half_deg;                    /* half of the largest block's diagonal */
+} blocks;
+
+/* The most within any circle of 10 degrees around a block; a block counts when
+ * any of it may lie within. */
+static double most_in_ten_deg(const blocks *b) {
+  const double radius_deg = 5, deg = 3.14159265358979323846 / 180;
+  const double least_cosine = cos((radius_deg + b->half_deg) * deg);
+  const double circle_sr =
+      2 * 3.14159265358979323846 * (1 - cos(radius_deg * deg));
+  const size_t n = b->n_x * b->n_y;
+  double most = 0;
+  for (size_t i = 0; i < n; ++i) {
+    const double *const u = b->towards[i];
+    double sum = 0;
+    for (size_t k = 0; k < n; ++k) {
+      const double *const v = b->towards[k];
+      if (u[0] * v[0] + u[1] * v[1] + u[2] * v[2] >= least_cosine)
+        sum += b->sr[k];
+    }
+    most = fmax(most, sum);
+  }
+  return fmin(most, circle_sr);
+}
+
+static void set_blocks(const ef_frames *frames, blocks *b) {
+  const ef_frame_settings *const s = &frames->settings;
+  const double pixel_mm = 1 / s->pixels_per_mm;
+  const double deg = 3.14159265358979323846 / 180;
+  *b = (blocks){.n_x = s->width_px < BLOCKS ? s->width_px : BLOCKS,
+                .n_y = s->height_px < BLOCKS ? s->height_px : BLOCKS};
+  const double wide_mm = (double)s->width_px / (double)b->n_x * pixel_mm;
+  const double high_mm = (double)s->height_px / (double)b->n_y * pixel_mm;
+  for (size_t y = 0; y < b->n_y; ++y) {
+    for (size_t x = 0; x < b->n_x; ++x) {
+      double *const v = b->towards[y * b->n_x + x];
+      v[0] = ((double)x + 0.5 - (double)b->n_x / 2) * wide_mm;
+      v[1] = ((double)y + 0.5 - (double)b->n_y / 2) * high_mm;
+      v[2] = s->distance_mm;
+      const double length = sqrt(v[0] * v[0] + v[1] * v[1] + v[2] * v[2]);
+      for (int k = 0; k < 3; ++k)
+        v[k] /= length;
+    }
+  }
+  b->half_deg = atan(hypot(wide_mm, high_mm) / 2 / s->distance_mm) / deg;
+}
+
+static ef_frame_area measure_area(const ef_frames *frames) {
+  const ef_frame_settings *const s = &frames->settings;
+  const double n_pixels = (double)s->width_px * (double)s->height_px;
+  size_t n_changing = 0;
+  blocks b;
+  set_blocks(frames, &b);
+  ef_frame_area out = {0};
+  for (size_t y = 0; y < s->height_px; ++y) {
+    for (size_t x = 0; x < s->width_px; ++x) {
+      const double sr = ef__pixel_sr(&frames->view, x, y);
+      out.frame_solid_angle_sr += sr;
+      if (ef__pattern_window(s, &frames->view, x, y) < 0.5)
+        continue;
+      out.solid_angle_sr += sr;
+      b.sr[y * b.n_y / s->height_px * b.n_x + x * b.n_x / s->width_px] += sr;
+      ++n_changing;
+    }
+  }
+  out.share_of_frame = (double)n_changing / n_pixels;
+  out.in_ten_deg_sr = fmin(most_in_ten_deg(&b), out.solid_angle_sr);
+  return out;
+}
+
 /* ---- The object ---------------------------------------------------------- */
 
 static double level_at(const ef_frames *frames, size_t k) {
@@ -276,6 +356,7 @@ ef_frames *ef_frames_new(const ef_stimulator *stimulator,
     ef_frames_free(frames);
     return NULL;
   }
+  frames->area = measure_area(frames);
   tell_size(settings, notes);
   tell_codes(settings, notes);
   return frames;
@@ -333,6 +414,20 @@ void ef_frames_levels(const ef_frames *frames, size_t frame, size_t y,
 
 const ef_device *ef__frames_device(const ef_frames *frames) {
   return frames->stimulator->device;
+}
+
+const ef_stimulator *ef__frames_stimulator(const ef_frames *frames) {
+  return frames->stimulator;
+}
+
+void ef__frames_extremes(const ef_frames *frames, double *high, double *low) {
+  const ef_isolation *const way = &frames->isolation;
+  for (size_t i = 0; i < way->n_primaries; ++i) {
+    high[i] = way->background[i] + way->modulation[i];
+    low[i] = way->modulation_kind == EF_PULSE
+                 ? way->background[i]
+                 : way->background[i] - way->modulation[i];
+  }
 }
 
 void ef__frames_peak(const ef_frames *frames, size_t frame, double *amount) {
@@ -399,20 +494,5 @@ uint16_t ef_code_to_sample(int bits, uint32_t code) {
 }
 
 ef_frame_area ef_frames_area(const ef_frames *frames) {
-  const ef_frame_settings *const s = &frames->settings;
-  const double n_pixels = (double)s->width_px * (double)s->height_px;
-  size_t n_changing = 0;
-  ef_frame_area out = {0};
-  for (size_t y = 0; y < s->height_px; ++y) {
-    for (size_t x = 0; x < s->width_px; ++x) {
-      const double sr = ef__pixel_sr(&frames->view, x, y);
-      out.frame_solid_angle_sr += sr;
-      if (ef__pattern_window(s, &frames->view, x, y) < 0.5)
-        continue;
-      out.solid_angle_sr += sr;
-      ++n_changing;
-    }
-  }
-  out.share_of_frame = (double)n_changing / n_pixels;
-  return out;
+  return frames->area;
 }

@@ -250,5 +250,8 @@ uint32_t ef__dither_code(const ef__thresholds *thresholds,
  * device (frame.c). */
 void ef__frames_peak(const ef_frames *frames, size_t frame, double *amount);
 const ef_device *ef__frames_device(const ef_frames *frames);
+const ef_stimulator *ef__frames_stimulator(const ef_frames *frames);
+/** Amounts of the two ends of the modulation. */
+void ef__frames_extremes(const ef_frames *frames, double *high, double *low);
 
 #endif

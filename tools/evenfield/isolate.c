@@ -209,8 +209,8 @@ static ef_status look(const isolate_scene *s, const ef_notes *notes,
   ef_pupil pupil = s->pupil;
   pupil.field_deg2 = adapting_deg2(r);
   ef_status status =
-      ef_retinal_measure(s->stimulator, r->way.background, &pupil,
-                         r->field_deg, notes, &r->eye, error);
+      ef_retinal_measure(s->stimulator, r->way.background, &pupil, r->field_deg,
+                         notes, &r->eye, error);
   for (int sign = -1; sign <= 1 && status == EF_OK; ++sign) {
     double amount[EF_MAX_DRIVES];
     ef_blue_light blue;
@@ -247,6 +247,7 @@ ef_status isolate_compute(const isolate_scene *s, const ef_notes *notes,
   if (status == EF_OK) {
     out->n_cautions =
         ef_cautions(out->show.frames != NULL ? &out->show.flash : NULL,
+                    out->show.frames != NULL ? &out->show.stripes : NULL,
                     out->has_eye ? &out->blue : NULL, out->caution);
   }
   return status;

@@ -175,6 +175,8 @@ ef_status isolate_show_new(isolate_show *show, const isolate_scene *s,
     return error->status;
   show->area = ef_frames_area(show->frames);
   status = ef_frames_flash(show->frames, &show->flash, error);
+  if (status == EF_OK)
+    status = ef_frames_stripes(show->frames, &show->stripes, error);
   show->has_dither = show->settings.dither != EF_DITHER_NONE;
   if (status == EF_OK && show->has_dither) {
     status = ef_isolation_dither(s->stimulator, way, show->settings.bits,

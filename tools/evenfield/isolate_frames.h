@@ -25,6 +25,7 @@ typedef struct isolate_show {
   ef_frame_settings settings;
   ef_frame_area area;
   ef_flash flash;
+  ef_stripes stripes;
   bool has_dither;
   ef_dither_effect dither;
   size_t n_pictures;

@@ -150,11 +150,13 @@ static void record_show(record *out, const isolate_show *show) {
   record_number(out, "frame_rate_hz", show->settings.frame_rate_hz);
   record_text(out, "waveform", ef_pattern_name(show->settings.pattern));
   record_number(out, "solid_angle_sr", show->area.solid_angle_sr);
+  record_number(out, "in_ten_deg_sr", show->area.in_ten_deg_sr);
   record_number(out, "share_of_frame", show->area.share_of_frame);
   record_number(out, "flashes_general", (double)flash->n_general);
   record_number(out, "flashes_television",
                 flash->has_luminance ? (double)flash->n_television : none);
   record_number(out, "flashes_red", (double)flash->n_red);
+  record_number(out, "stripe_pairs", show->stripes.pairs);
   record_end(out);
   if (!show->has_dither)
     return;
