@@ -21,7 +21,8 @@ static ef_reader *open_with(const char *text, const ef_reader_settings *set) {
   ef_error error = {0};
   ef_reader *const reader =
       ef_reader_from_text("t.csv", text, strlen(text), set, &error);
-  if (reader == NULL) fail_msg("%s", error.message);
+  if (reader == NULL)
+    fail_msg("%s", error.message);
   return reader;
 }
 
@@ -69,7 +70,8 @@ static void faulty_rows_are_left_out(void **state) {
   size_t n = 0;
   for (;;) {
     const ef_block block = next(reader, 37);
-    if (block.n == 0) break;
+    if (block.n == 0)
+      break;
     for (size_t i = 0; i < block.n; ++i) {
       char name[32];
       /* A name counts the rows of the file: two lines stand above them. */
@@ -121,7 +123,8 @@ static void good_rows_may_come_late(void **state) {
   ef_reader_settings settings = ef_reader_settings_default();
   settings.skip_bad = true;
   char text[4096] = "# quantity: reflectance\n400,410\n";
-  for (int i = 0; i < 150; ++i) strcat(text, "0.25,37\n");
+  for (int i = 0; i < 150; ++i)
+    strcat(text, "0.25,37\n");
   strcat(text, "0.25,0.625\n");
   ef_reader *const reader = open_with(text, &settings);
   const ef_block block = next(reader, 5);
@@ -161,6 +164,46 @@ static void measuring_angles(void **state) {
   ef_reader_free(reader);
 }
 
+static void yellow_and_luminance_are_two_columns(void **state) {
+  (void)state;
+  static const struct {
+    const char *text;
+    size_t n_device;
+    double value[3], device[4];
+  } plan[] = {
+      {"# device_max: 100\nC,M,Y,X,Y,Z\n10,20,30,40,50,60\n",
+       3,
+       {40, 50, 60},
+       {0.1, 0.2, 0.3}},
+      {"# device_max: 100\nx,y,Y,C,M,Y,K\n0.3,0.4,50,10,20,30,80\n",
+       4,
+       {0.3, 0.4, 50},
+       {0.1, 0.2, 0.3, 0.8}},
+      {"# device_max: 100\nC,M,Y,K,L,a,b\n10,20,30,80,40,-5,6\n",
+       4,
+       {40, -5, 6},
+       {0.1, 0.2, 0.3, 0.8}},
+      {"# device_max: 100\nblack,L,yellow,a,cyan,b,magenta\n80,40,30,-5,10,6,20"
+       "\n",
+       4,
+       {40, -5, 6},
+       {0.1, 0.2, 0.3, 0.8}},
+  };
+  for (size_t i = 0; i < sizeof plan / sizeof plan[0]; i++) {
+    ef_reader *const reader = open_with(plan[i].text, NULL);
+    const ef_reader_head *const head = ef_reader_get_head(reader);
+    assert_int_equal(head->n_device, plan[i].n_device);
+    assert_string_equal(head->device_name[2], "yellow");
+    if (head->n_device == 4)
+      assert_string_equal(head->device_name[3], "black");
+    const ef_block block = next(reader, 9);
+    assert_int_equal(block.n, 1);
+    assert_same_bits(block.value, plan[i].value, 3);
+    assert_same_bits(block.device, plan[i].device, plan[i].n_device);
+    ef_reader_free(reader);
+  }
+}
+
 static void faulty_device_values_are_left_out(void **state) {
   (void)state;
   ef_reader_settings settings = ef_reader_settings_default();
@@ -187,8 +230,8 @@ static char *many_rows(size_t n) {
   assert_non_null(text);
   size_t used = (size_t)sprintf(text, "name,L,a,b\n");
   for (size_t i = 0; i < n; ++i) {
-    used += (size_t)sprintf(text + used, "sample %zu,37.5,%zu.25,-%zu\n", i, i,
-                            i);
+    used +=
+        (size_t)sprintf(text + used, "sample %zu,37.5,%zu.25,-%zu\n", i, i, i);
   }
   return text;
 }
@@ -207,7 +250,8 @@ static void rows_stream_in_bounded_memory(void **state) {
   fail_alloc_at(1);
   for (;;) {
     const ef_block block = next(reader, 1 + gen_below(&g, 512));
-    if (block.n == 0) break;
+    if (block.n == 0)
+      break;
     for (size_t i = 0; i < block.n; ++i, ++n) {
       assert_near(block.value[3 * i + 1], (double)n + 0.25, 0);
       assert_near(block.value[3 * i + 2], -(double)n, 0);
@@ -264,8 +308,8 @@ static void long_spectra_have_a_limit(void **state) {
   settings.max_bytes = sizeof text - 1;
   ef_reader_free(open_with(text, &settings));
   settings.max_bytes = sizeof text - 9;
-  assert_null(ef_reader_from_text("t.csv", text, sizeof text - 1, &settings,
-                                  &error));
+  assert_null(
+      ef_reader_from_text("t.csv", text, sizeof text - 1, &settings, &error));
   assert_error(&error, EF_MALFORMED, "the file goes on after 53 bytes");
   assert_int_equal(error.line, 5);
 }
@@ -300,9 +344,11 @@ static void a_file_without_permission(void **state) {
   scratch_write("a.csv", "L,a,b\n1,2,3\n", 12);
   scratch_path("a.csv", path);
   assert_int_equal(chmod(path, 0), 0);
-  if (is_root) assert_int_equal(seteuid(65534), 0);
+  if (is_root)
+    assert_int_equal(seteuid(65534), 0);
   assert_null(ef_reader_open(path, NULL, &error));
-  if (is_root) assert_int_equal(seteuid(0), 0);
+  if (is_root)
+    assert_int_equal(seteuid(0), 0);
   assert_error(&error, EF_UNREADABLE, "may not be read by this user");
 }
 
@@ -315,7 +361,8 @@ static void through_standard_input(const char *text, size_t length) {
   if (writer == 0) {
     close(ends[0]);
     for (size_t i = 0; i < length; ++i) {
-      if (write(ends[1], text + i, 1) != 1) _exit(1);
+      if (write(ends[1], text + i, 1) != 1)
+        _exit(1);
     }
     _exit(0);
   }
@@ -325,7 +372,8 @@ static void through_standard_input(const char *text, size_t length) {
   close(ends[0]);
   ef_error error = {0};
   ef_reader *const reader = ef_reader_open("-", NULL, &error);
-  if (reader == NULL) fail_msg("%s", error.message);
+  if (reader == NULL)
+    fail_msg("%s", error.message);
   assert_string_equal(ef_reader_get_head(reader)->file, "standard input");
   const ef_block block = next(reader, 5);
   assert_int_equal(block.n, 1);
@@ -460,7 +508,8 @@ static bool read_in_short_memory(void *context) {
 static bool collect_in_short_memory(void *context) {
   ef_error error = {0};
   ef_spectra *const spectra = ef_spectra_read(context, NULL, &error);
-  if (spectra == NULL) assert_int_equal(error.status, EF_NO_MEMORY);
+  if (spectra == NULL)
+    assert_int_equal(error.status, EF_NO_MEMORY);
   ef_spectra_free(spectra);
   return spectra != NULL;
 }
@@ -485,6 +534,7 @@ int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(faulty_rows_are_left_out),
       cmocka_unit_test(faulty_wavelengths_are_left_out),
+      cmocka_unit_test(yellow_and_luminance_are_two_columns),
       cmocka_unit_test(faulty_device_values_are_left_out),
       cmocka_unit_test(good_rows_may_come_late),
       cmocka_unit_test(measuring_angles),

@@ -69,7 +69,8 @@ typedef struct ef_reader ef_reader;
  * Header: `wavelength_nm` first: long spectra; columns named by wavelength
  * (400, 400nm, nm400): wide spectra; L,a,b / X,Y,Z / x,y,Y; R,G,B / C,M,Y
  * (or red,green,blue / cyan,magenta,yellow) device values beside any of these
- * or alone; `name` anywhere, and `angle_deg` (or `angle`) for one of several
+ * or alone, with inks a fourth K (black); where C,M,Y stand side by side and
+ * another column is Y, theirs is yellow; `name` anywhere, and `angle_deg` (or `angle`) for one of several
  * angles at which a sample was measured (not in long spectra). Case counts: x
  * is not X. Where several sets are there, spectra come first, then X,Y,Z, x,y,Y,
  * L,a,b; columns that are not used are noted. Comment lines above the header
@@ -111,7 +112,8 @@ typedef struct ef_reader_head {
   bool has_names;          /**< rows have names of their own */
   bool has_angles;         /**< rows have a measuring angle */
   size_t n_device;         /**< device values per row, 0 if none */
-  const char *const *device_name; /**< "red", "green", "blue", or "cyan" ... */
+  const char *const *device_name; /**< "red", "green", "blue", or "cyan" ...
+                                      "black" */
 } ef_reader_head;
 EF_API const ef_reader_head *ef_reader_get_head(const ef_reader *reader);
 

@@ -15,9 +15,14 @@
 extern "C" {
 #endif
 
+enum { EF_MATCH_MOST_STEPS = 65535 };
+
 typedef struct ef_match_settings {
   const ef_metric *metric; /**< measures every gap; default CIEDE2000 */
   int bits;                /**< 1 to 16: code values; 0: none */
+  /** Instead of bits: the codes are 0 to n_steps, and a drive is a code over
+   * n_steps (100: whole percents); at most EF_MATCH_MOST_STEPS, 0: none. */
+  int n_steps;
   bool hue_kept;           /**< also find the colour with hue and lightness
                                 kept (costs about as much as the nearest) */
   double jnd;              /**< unit of `jnds`; NaN: the metric's default */
@@ -58,7 +63,7 @@ typedef struct ef_match {
   /** Limits that hold the nearest colour: bit i of low/high. */
   uint32_t held_low, held_high;
   uint32_t code[EF_MAX_DRIVES]; /**< lattice point of least difference */
-  ef_shown coded;           /**< what those codes show; found false: bits 0 */
+  ef_shown coded;           /**< what those codes show; found false: none */
   double rounded_difference; /**< with plainly rounded codes instead */
 } ef_match;
 

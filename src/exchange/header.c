@@ -28,6 +28,7 @@ static const column_set colour_sets[] = {
 };
 enum { N_COLOUR_SETS = sizeof colour_sets / sizeof *colour_sets };
 
+/* Three drives, and for inks a fourth that need not be there. */
 typedef struct device_set {
   const char *const *letter;
   const char *const *word;
@@ -35,8 +36,8 @@ typedef struct device_set {
 
 static const char *const rgb_letters[] = {"R", "G", "B"};
 static const char *const rgb_words[] = {"red", "green", "blue"};
-static const char *const cmy_letters[] = {"C", "M", "Y"};
-static const char *const cmy_words[] = {"cyan", "magenta", "yellow"};
+static const char *const cmy_letters[] = {"C", "M", "Y", "K"};
+static const char *const cmy_words[] = {"cyan", "magenta", "yellow", "black"};
 static const device_set device_sets[] = {{rgb_letters, rgb_words},
                                          {cmy_letters, cmy_words}};
 enum { RGB, CMY, N_DEVICE_SETS };
@@ -293,6 +294,13 @@ static ef_status lay_out_device(const ef__table *table, ef__layout *layout,
   }
   const device_set *const set = &device_sets[has_rgb ? RGB : CMY];
   layout->n_device = 3;
+  const bool has_letters = strcmp(table->column[column[0]], set->letter[0]) == 0;
+  const size_t black =
+      has_rgb ? SIZE_MAX
+              : find_column(table, has_letters ? set->letter[3] : set->word[3]);
+  if (black != SIZE_MAX && layout->slot[black] == EF__SLOT_NONE) {
+    place(layout, black, layout->n_values + layout->n_device++);
+  }
   layout->device_name = set->word;
   layout->device_letter = set->letter;
   return EF_OK;

@@ -106,12 +106,47 @@ static ef_status check_line_ends(const ef__table *table, ef_error *error) {
                            "file with LF or CRLF line ends");
 }
 
+static bool is_named(const ef__records *records, size_t i, char letter) {
+  if (i >= records->n_fields) return false;
+  const ef__span field = ef__span_trim(records->field[i]);
+  return field.length == 1 && field.text[0] == letter;
+}
+
+/* First of the columns C, M, Y side by side, where another Y is there as well:
+ * that of X,Y,Z or x,y,Y. SIZE_MAX when no two columns are called Y so. */
+static size_t find_inks(const ef__records *records) {
+  size_t n_named_y = 0;
+  size_t first = SIZE_MAX;
+  for (size_t i = 0; i < records->n_fields; ++i) {
+    if (!is_named(records, i, 'Y')) continue;
+    ++n_named_y;
+    if (i >= 2 && is_named(records, i - 2, 'C') &&
+        is_named(records, i - 1, 'M')) {
+      if (first != SIZE_MAX) return SIZE_MAX;
+      first = i - 2;
+    }
+  }
+  return n_named_y == 2 ? first : SIZE_MAX;
+}
+
+/* Name of column i; inks are written out where their first is `inks`, so that
+ * yellow and luminance are two things. */
+static ef__span name_of(const ef__records *records, size_t inks, size_t i) {
+  static const char *const words[] = {"cyan", "magenta", "yellow", "black"};
+  const bool is_ink = inks != SIZE_MAX && i >= inks && i < inks + 4;
+  if (is_ink && (i < inks + 3 || is_named(records, i, 'K'))) {
+    return ef__span_of(words[i - inks]);
+  }
+  return ef__span_trim(records->field[i]);
+}
+
 /* Names of the split header row into one block: pointers, then texts. */
 static ef_status copy_names(ef__table *table, ef_error *error) {
   const ef__records *const records = &table->records;
   const size_t n = records->n_fields;
+  const size_t inks = find_inks(records);
   size_t n_bytes = n;
-  for (size_t i = 0; i < n; ++i) n_bytes += records->field[i].length;
+  for (size_t i = 0; i < n; ++i) n_bytes += name_of(records, inks, i).length;
   char *text;
   const ef__part parts[] = {{&table->column, n, sizeof *table->column},
                             {&text, n_bytes, 1}};
@@ -119,7 +154,7 @@ static ef_status copy_names(ef__table *table, ef_error *error) {
     return ef__error_memory(error, "the header row");
   }
   for (size_t i = 0; i < n; ++i) {
-    const ef__span field = ef__span_trim(records->field[i]);
+    const ef__span field = name_of(records, inks, i);
     table->column[i] = text;
     memcpy(text, field.text, field.length);
     text[field.length] = '\0';

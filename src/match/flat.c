@@ -341,7 +341,7 @@ static void match_one(const job *j, size_t t) {
     ef__fill_shown(batch, &search, amount, &m->nearest);
   }
   ef__fill_held(m);
-  if (batch->settings->bits == 0) return;
+  if (batch->max_code <= 0) return;
   find_codes(batch, &search, m);
   ef__fill_coded(batch, &search, m);
 }

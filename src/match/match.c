@@ -144,7 +144,7 @@ static void match_one(const ef__batch *job, ef_xyz target, ef_match *m) {
     }
   }
   ef__fill_held(m);
-  if (job->settings->bits > 0) {
+  if (job->max_code > 0) {
     double square;
     ef__quantise(&search, &job->lattice, &minima, m->code, &square);
     ef__fill_coded(job, &search, m);
@@ -159,12 +159,11 @@ static void match_range(void *context, size_t begin, size_t end) {
   }
 }
 
-/* Amounts of all codes: 2^bits of each channel in one block. */
+/* Amounts of all codes, 0 to max_code of each channel, in one block. */
 static ef_status make_lattice(ef__batch *job, double **block, ef_error *error) {
-  const size_t n = (size_t)1 << job->settings->bits;
+  const size_t n = (size_t)job->max_code + 1;
   *block = ef__allocate(3 * n, sizeof **block);
   if (*block == NULL) return ef__error_memory(error, "the code values");
-  job->max_code = (double)(n - 1);
   job->lattice.n_codes = n;
   for (size_t c = 0; c < 3; ++c) {
     double *const amount = *block + c * n;
@@ -186,6 +185,16 @@ static ef_status check_settings(const ef_match_settings *settings, int jobs,
     return ef__error_set(error, EF_INVALID,
                          "%d bits; code values have 1 to 16, 0 for none",
                          settings->bits);
+  }
+  if (settings->n_steps < 0 || settings->n_steps > EF_MATCH_MOST_STEPS) {
+    return ef__error_set(error, EF_INVALID,
+                         "%d steps of a drive; expected 1 to %d, 0 for none",
+                         settings->n_steps, EF_MATCH_MOST_STEPS);
+  }
+  if (settings->bits > 0 && settings->n_steps > 0) {
+    return ef__error_set(error, EF_INVALID,
+                         "codes of %d bits and %d steps; one of them is 0",
+                         settings->bits, settings->n_steps);
   }
   if (settings->jnd <= 0) {
     return ef__error_set(error, EF_INVALID, "a JND of %g; it is above 0",
@@ -222,7 +231,10 @@ ef_status ef__batch_start(ef__batch *batch, const ef_setup *setup, size_t n,
   if (status != EF_OK) return status;
   batch->jnd = isnan(settings->jnd) ? ef_metric_jnd(settings->metric).value
                                     : settings->jnd;
-  return settings->bits > 0 ? make_lattice(batch, block, error) : EF_OK;
+  batch->max_code = settings->n_steps > 0
+                        ? (double)settings->n_steps
+                        : (double)(((size_t)1 << settings->bits) - 1);
+  return batch->max_code > 0 ? make_lattice(batch, block, error) : EF_OK;
 }
 
 ef_status ef_match_batch(const ef_setup *setup, size_t n, const double *xyz,

@@ -125,7 +125,7 @@ bool ef__hue_kept(const ef__search *search, double amount[3]);
 
 /** Amounts that the codes of one channel give, in increasing order. */
 typedef struct ef__lattice {
-  size_t n_codes;         /**< of each channel: 2^bits */
+  size_t n_codes;         /**< of each channel */
   const double *amount[3]; /**< n_codes each; the channel's curve at the codes */
 } ef__lattice;
 
@@ -166,7 +166,7 @@ typedef struct ef__batch {
   const ef_match_settings *settings;
   double jnd;
   ef__lattice lattice;
-  double max_code;
+  double max_code; /**< highest code; 0: none were asked for */
   const double *xyz;
   ef_match *out;
 } ef__batch;

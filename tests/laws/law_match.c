@@ -130,9 +130,8 @@ static double difference_at(const scene *s, const ef_match_settings *settings,
   const ef_conditions conditions = {.white = ef_setup_white(s->setup)};
   double reference[3], sample[3];
   ef_metric_coordinates(settings->metric, target, &conditions, reference);
-  ef_metric_coordinates(settings->metric,
-                        ef_setup_xyz(s->setup, amount, NULL), &conditions,
-                        sample);
+  ef_metric_coordinates(settings->metric, ef_setup_xyz(s->setup, amount, NULL),
+                        &conditions, sample);
   return ef_metric_difference(settings->metric, reference, sample);
 }
 
@@ -150,15 +149,14 @@ static void nearest_is_never_beaten_by_chance(void **state) {
       const ef_xyz target = random_target(&g, &s);
       const ef_match m = match_of(&s, target, &settings);
       const double least = m.nearest.difference;
-      assert_near(difference_at(&s, &settings, target, m.nearest.amount),
-                  least, m.in_gamut ? 1e-4 : 1e-12);
+      assert_near(difference_at(&s, &settings, target, m.nearest.amount), least,
+                  m.in_gamut ? 1e-4 : 1e-12);
       for (int j = 0; j < 3; j++)
         assert_true(m.nearest.amount[j] >= 0 && m.nearest.amount[j] <= 1);
       double trial[3];
       for (int j = 0; j < 3; j++)
         trial[j] = fmin(fmax(m.amount[j], 0), 1);
-      assert_true(least <=
-                  difference_at(&s, &settings, target, trial) + 1e-9);
+      assert_true(least <= difference_at(&s, &settings, target, trial) + 1e-9);
       if (m.hue_kept.found)
         assert_true(least <= m.hue_kept.difference + 1e-9);
       for (int r = 0; r < 150; r++) {
@@ -208,8 +206,8 @@ static void hue_kept_keeps_hue_and_lightness(void **state) {
       /* A little more chroma is out of the box. */
       const ef_lch more = {want.L_star, got.C_star + 1e-4 * want.C_star,
                            want.h_deg};
-      const ef_match beyond = match_of(
-          &s, ef_lab_to_xyz(ef_lch_to_lab(more), white), &settings);
+      const ef_match beyond =
+          match_of(&s, ef_lab_to_xyz(ef_lch_to_lab(more), white), &settings);
       assert_false(beyond.in_gamut);
     }
     printf("# %s: lightness kept for %d of 1000\n", displays[d],
@@ -222,7 +220,8 @@ static void hue_kept_keeps_hue_and_lightness(void **state) {
 /* Every lattice point, one by one. */
 static double least_of_all(const scene *s, const ef_match_settings *settings,
                            ef_xyz target) {
-  const int n = 1 << settings->bits;
+  const int n =
+      settings->n_steps > 0 ? settings->n_steps + 1 : 1 << settings->bits;
   double least = INFINITE;
   for (int code = 0; code < n * n * n; code++) {
     const int digit[3] = {code % n, code / n % n, code / n / n};
@@ -239,24 +238,31 @@ static double least_of_all(const scene *s, const ef_match_settings *settings,
 static void codes_are_the_best_of_all(void **state) {
   (void)state;
   static const struct {
-    int bits, n_targets;
-  } plan[] = {{1, 60}, {2, 60}, {3, 60}, {4, 12}, {5, 24}, {6, 1}};
+    int bits, n_steps, n_targets;
+  } plan[] = {{1, 0, 60}, {2, 0, 60}, {3, 0, 60}, {4, 0, 12}, {5, 0, 24},
+              {6, 0, 1},  {0, 1, 20}, {0, 5, 20}, {0, 20, 12}};
   size_t n_rounded_worse = 0, n = 0, n_missed = 0;
   for (int d = 0; d < N_DISPLAYS; d++) {
     scene s = scene_new(displays[d]);
     gen g = gen_new(77 + (uint64_t)d);
     for (size_t p = 0; p < sizeof plan / sizeof plan[0]; p++) {
-      const ef_match_settings settings = settings_with(plan[p].bits);
+      ef_match_settings settings = settings_with(plan[p].bits);
+      settings.n_steps = plan[p].n_steps;
       for (int i = 0; i < plan[p].n_targets; i++) {
         const ef_xyz target = random_target(&g, &s);
         const ef_match m = match_of(&s, target, &settings);
         const double least = least_of_all(&s, &settings, target);
         if (!(m.coded.difference <= least + 1e-9)) {
-          print_error("%s, %d bits, target %d: %.9g, best of all %.9g\n",
-                      displays[d], plan[p].bits, i, m.coded.difference, least);
+          print_error("%s, %d bits or %d steps, target %d: %.9g, best of all "
+                      "%.9g\n",
+                      displays[d], plan[p].bits, plan[p].n_steps, i,
+                      m.coded.difference, least);
         }
         n_missed += m.coded.difference > least + 1e-9;
         assert_true(m.coded.difference <= m.rounded_difference + 1e-12);
+        for (size_t c = 0; c < 3 && plan[p].n_steps > 0; c++) {
+          assert_true(m.coded.drive[c] == (double)m.code[c] / plan[p].n_steps);
+        }
         n_rounded_worse += m.rounded_difference > m.coded.difference + 1e-9;
         n++;
       }

@@ -65,6 +65,8 @@ static ef_status run(match_scene *s, receivers *r, match_summary *sum,
 exit_code command_match(const command_options *options) {
   exit_code code = result_check_usage(options, 1);
   if (code == EXIT_DONE)
+    code = device_check_usage(options);
+  if (code == EXIT_DONE)
     code = people_check_usage(options, "population", seen_is_asked(options));
   if (code == EXIT_DONE)
     code = diagram_check_usage(options);

@@ -22,7 +22,7 @@ static void set_observer(swatch_scene *drawn, const ef_observer *observer) {
   drawn->cones_borrowed = ef_observer_cones_borrowed(observer);
 }
 
-/* ---- Targets and a display --------------------------------------------- */
+/* ---- Targets and a device ---------------------------------------------- */
 
 static ef_status draw_targets(const command_options *options,
                               const ef_notes *notes, pictures *p,
@@ -35,16 +35,15 @@ static ef_status draw_targets(const command_options *options,
     match_summary sum;
     status = match_stream(&scene, 1, &sink, &sum, error);
   }
-  *drawn = (swatch_scene){
-      .pictures = p,
-      .metric = scene.metric,
-      .halves = "left the target, right what the display shows for it",
-      .key = "in_gamut",
-      .head = {"In", "gamut"},
-      .none = "the display can show all targets",
-      .some = "targets lie outside the display's gamut",
-      .is_demo = scene.demo_display && scene.demo_targets,
-      .display = scene.display.source};
+  *drawn = (swatch_scene){.pictures = p,
+                          .metric = scene.metric,
+                          .halves = "left the target, right the match for it",
+                          .key = "in_gamut",
+                          .head = {"In", "gamut"},
+                          .none = "all targets lie in the gamut",
+                          .some = "targets lie outside the gamut",
+                          .is_demo = scene.device.is_demo && scene.demo_targets,
+                          .display = scene.device.source};
   if (scene.observer != NULL)
     set_observer(drawn, scene.observer);
   scene.metric = NULL; /* goes on with the pictures */
@@ -193,10 +192,15 @@ exit_code command_swatch(const command_options *options) {
   exit_code code = result_check_usage(options, 2);
   if (code != EXIT_DONE)
     return code;
-  if (options->n_files == 2 && options->display != NULL) {
-    return message_usage("two files are drawn as they stand: --display goes "
-                         "with one file of targets");
+  const char *device = device_kind_of(options)->option;
+  if (options->n_files == 2 && device_is_named(options)) {
+    return message_usage("two files are drawn as they stand: --%s goes with "
+                         "one file of targets",
+                         device);
   }
+  code = device_check_usage(options);
+  if (code != EXIT_DONE)
+    return code;
   message_sink sink = {.quiet = options->quiet};
   const ef_notes notes = message_notes(&sink);
   ef_error error = {0};

@@ -24,14 +24,15 @@ static const command_entry table[] = {
     {"match",
      COMMAND_MATCH,
      "[TARGETS]",
-     "can this three-primary display show these colours, and how well?",
-     {"Matches every target with the display: amounts of the primaries, code "
-      "values, in or out of gamut and which limit is in the way, the nearest "
-      "colour the display can show and how visible the miss is.",
+     "can this display or press show these colours, and how well?",
+     {"Matches every target with a display of three primaries (--display) or a "
+      "press of three inks (--inks): amounts, code values or ink values, in or "
+      "out of gamut and which limit is in the way, the nearest colour there is "
+      "and how visible the miss is.",
       "TARGETS is CSV: colours as L,a,b or X,Y,Z or x,y,Y, reflectance spectra "
-      "of surfaces, or spectra of lights in the unit of the display's own "
-      "spectra. Without it the ferry's painted colours are the targets "
-      "(demo:livery), and without --display the ticket kiosk is the display "
+      "of surfaces, or for displays spectra of lights in the unit of the "
+      "display's own spectra. Without it the ferry's painted colours are the "
+      "targets (demo:livery). Without a device the ticket kiosk is the display "
       "(demo:kiosk-measurements, or demo:kiosk-primaries where spectra are "
       "needed: for another --observer and for --population)."},
      command_match,
@@ -114,9 +115,9 @@ static const command_entry table[] = {
      "[TARGETS | LEFT RIGHT]",
      "pictures of target and match side by side, and a sheet of all",
      {"Draws a split field for every target: on the left the target, on the "
-      "right what the display shows for it. With two files of as many colours "
-      "the pairs are drawn as they stand, without a display. What does not "
-      "match has a striped corner.",
+      "right the match for it. With two files of as many colours the pairs are "
+      "drawn as they stand, without a device. What does not match has a "
+      "striped corner.",
       "The pictures are PNG with BT.2020 primaries and the curve of IEC "
       "61966-2-1, and say so in their cICP and iCCP chunks. They go into the "
       "folder `swatches` unless --pictures names another."},

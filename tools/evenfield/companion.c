@@ -29,6 +29,13 @@ ef_status companion_init(companion *c, const command_options *options,
       !ef_observer_model(observer, &model)) {
     return EF_OK;
   }
+  if (!ef_setup_affine(setup)) {
+    return message_fail(error, EF_NO_ANSWER,
+                        "the colours of observer %.100s have two dimensions; "
+                        "matches for such are found where colours add, on "
+                        "displays",
+                        ef_observer_name(observer));
+  }
   model.deficiency = EF_TRICHROMAT;
   c->settings.bits = 0;
   c->settings.hue_kept = false;

@@ -23,51 +23,7 @@ const char *display_origin_text(display_origin origin) {
   return "";
 }
 
-static double difference(const ef_metric *metric, ef_xyz white, ef_xyz a,
-                         ef_xyz b) {
-  const ef_conditions conditions = ef_conditions_default(white);
-  double p[3], q[3];
-  ef_metric_coordinates(metric, a, &conditions, p);
-  ef_metric_coordinates(metric, b, &conditions, q);
-  return ef_metric_difference(metric, p, q);
-}
-
 /* ---- Measured rows ----------------------------------------------------- */
-
-static int by_value(const void *a, const void *b) {
-  const double x = *(const double *)a, y = *(const double *)b;
-  return (x > y) - (x < y);
-}
-
-/* The 95th percentile of sorted values, between neighbours. */
-static double percentile_95(size_t n, const double *sorted) {
-  const double at = 0.95 * (double)(n - 1);
-  const size_t i = (size_t)at;
-  if (i + 1 >= n)
-    return sorted[n - 1];
-  return sorted[i] + (at - (double)i) * (sorted[i + 1] - sorted[i]);
-}
-
-static void summarise(const rows *r, size_t n, const ef_residual *residual,
-                      const ef_metric *metric, double *scratch,
-                      display_residuals *out) {
-  out->n = n;
-  for (size_t i = 0; i < n; ++i) {
-    scratch[i] = difference(metric, residual[i].white, residual[i].measured,
-                            residual[i].predicted);
-    out->mean += scratch[i] / (double)n;
-    if (i > 0 && scratch[i] <= out->worst)
-      continue;
-    out->worst = scratch[i];
-    out->worst_line = r->line[residual[i].row];
-    memcpy(out->worst_drive, r->device + residual[i].row * r->n_device,
-           r->n_device * sizeof *r->device);
-  }
-  if (n == 0)
-    return;
-  qsort(scratch, n, sizeof *scratch, by_value);
-  out->p95 = percentile_95(n, scratch);
-}
 
 /* Chromaticities and luminances become tristimulus values, in place. */
 static void to_xyz(rows *r) {
@@ -116,20 +72,15 @@ static ef_status from_measurements(rows *r, const ef_reader_head *head,
                                         .line = r->line,
                                         .drive_name = head->device_name};
   ef_residual *residual = calloc(r->n, sizeof *residual);
-  double *scratch = calloc(r->n, sizeof *scratch);
-  if (residual == NULL || scratch == NULL) {
-    status = message_fail(error, EF_NO_MEMORY, "out of memory for residuals");
-  } else {
-    size_t n = 0;
-    out->device = ef_display_from_measurements(name, &measurements, settings,
-                                               residual, &n, error);
-    if (out->device == NULL)
-      status = error->status;
-    else
-      summarise(r, n, residual, metric, scratch, &out->residuals);
-  }
+  if (residual == NULL)
+    return message_fail(error, EF_NO_MEMORY, "out of memory for residuals");
+  size_t n = 0;
+  out->device = ef_display_from_measurements(name, &measurements, settings,
+                                             residual, &n, error);
+  status = out->device == NULL
+               ? error->status
+               : residuals_of(&out->residuals, metric, n, residual, r, error);
   free(residual);
-  free(scratch);
   return status;
 }
 
@@ -219,7 +170,7 @@ static ef_status measure_additivity(const ef_metric *metric, display *out,
   if (status == EF_OK && out->additivity.known) {
     const ef_additivity *a = &out->additivity;
     out->additivity_difference =
-        difference(metric, a->measured, a->measured, a->summed);
+        residuals_difference(metric, a->measured, a->measured, a->summed);
   }
   return status;
 }

@@ -9,21 +9,16 @@
 #include <evenfield/difference.h>
 
 #include "option.h"
+#include "residuals.h"
+
+/** Bits of a code value where none are asked for. */
+enum { DISPLAY_BITS = 8 };
 
 typedef enum display_origin {
   DISPLAY_PRIMARIES,    /**< spectra of the primaries */
   DISPLAY_MEASUREMENTS, /**< measured rows with their device values */
   DISPLAY_ENCODING      /**< a published encoding */
 } display_origin;
-
-/** The additive model against the measured mixtures, in the metric asked
- * for. */
-typedef struct display_residuals {
-  size_t n; /**< 0: no mixture was measured */
-  double mean, p95, worst;
-  size_t worst_line;
-  double worst_drive[EF_MAX_DRIVES];
-} display_residuals;
 
 typedef struct display {
   ef_device *device;
@@ -32,7 +27,7 @@ typedef struct display {
   const ef_encoding *encoding; /**< of DISPLAY_ENCODING */
   ef_additivity additivity;
   double additivity_difference; /**< NaN when not known */
-  display_residuals residuals;
+  residuals residuals;          /**< of mixtures, against the additive model */
 } display;
 
 /** The display named by the options, which must name one. Failures count as bad

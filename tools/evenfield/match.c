@@ -35,7 +35,6 @@ static ef_status set_metric(match_scene *s, ef_error *error) {
   }
   s->settings = ef_match_settings_default();
   s->settings.metric = s->metric;
-  s->settings.bits = o->bits;
   s->settings.jnd = s->jnd.value;
   return EF_OK;
 }
@@ -46,48 +45,42 @@ static ef_status set_light(match_scene *s, const ef_notes *notes,
   s->observer = source_observer(o, notes, error);
   if (s->observer == NULL)
     return error->status;
-  const char *name = o->illuminant != NULL ? o->illuminant : "D65";
+  const char *name =
+      o->illuminant != NULL ? o->illuminant : device_kind_of(o)->illuminant;
   s->illuminant = source_illuminant(o, "illuminant", name, notes, error);
   if (s->illuminant == NULL)
     return error->status;
   return colour_basis_init(&s->basis, s->observer, s->illuminant, error);
 }
 
-/* The kiosk as its software sees it is known for the CIE 1931 observer only;
- * its spectra serve all others, with the same curves. */
-static command_options with_display(const match_scene *s) {
-  command_options o = *s->options;
-  if (o.display != NULL)
-    return o;
-  const bool needs_spectra =
-      seen_is_asked(&o) ||
-      strcmp(ef_observer_name(s->observer), "cie-1931") != 0;
-  o.display =
-      needs_spectra ? "demo:kiosk-primaries" : "demo:kiosk-measurements";
-  if (needs_spectra && o.tone == NULL)
-    o.tone = "demo:kiosk-measurements";
-  return o;
-}
-
-static ef_status set_display(match_scene *s, const ef_notes *notes,
-                             ef_error *error) {
+static ef_status set_device(match_scene *s, const ef_notes *notes,
+                            ef_error *error) {
   const command_options *o = s->options;
-  const command_options chosen = with_display(s);
-  const ef_status status =
-      display_load(&chosen, s->metric, notes, &s->display, error);
+  const device_basis basis = {.options = o,
+                              .metric = s->metric,
+                              .observer = s->observer,
+                              .illuminant = s->illuminant,
+                              .needs_spectra = seen_is_asked(o),
+                              .notes = notes};
+  const ef_status status = device_load(&basis, &s->device, error);
   if (status != EF_OK)
     return status;
-  const size_t n_drives = ef_device_n_drives(s->display.device);
+  const ef_device *device = s->device.device;
+  const device_words *words = &s->device.kind->words;
+  const size_t n_drives = ef_device_n_drives(device);
   if (n_drives != 3) {
     message_fail(error, EF_NO_ANSWER,
-                 "this display has %zu primaries; a match is found for three",
-                 n_drives);
-    return message_place(error, s->display.source);
+                 "this %s has %zu %s; a match is found for three", words->noun,
+                 n_drives, words->channels);
+    return message_place(error, s->device.source);
   }
-  s->demo_display = o->display == NULL;
-  s->setup = ef_setup_new(s->display.device, s->observer, NULL, notes, error);
+  s->setup = ef_setup_new(device, s->observer,
+                          ef_device_reflects(device) ? s->illuminant : NULL,
+                          notes, error);
   if (s->setup == NULL)
-    return message_place(error, s->display.source);
+    return message_place(error, s->device.source);
+  s->settings.bits = s->device.bits;
+  s->settings.n_steps = s->device.n_steps;
   s->luminance_cd_m2 = isnan(o->luminance_cd_m2)
                            ? ef_setup_luminance_cd_m2(s->setup)
                            : o->luminance_cd_m2;
@@ -116,7 +109,7 @@ static ef_status set_people(match_scene *s, const ef_notes *notes,
                             ef_error *error) {
   const seen_basis basis = {.options = s->options,
                             .setup = s->setup,
-                            .display_source = s->display.source,
+                            .chosen = &s->device,
                             .targets = &s->targets,
                             .head = ef_reader_get_head(s->reader),
                             .illuminant = s->illuminant,
@@ -132,7 +125,7 @@ ef_status match_scene_load(match_scene *s, const command_options *options,
   if (status == EF_OK)
     status = set_light(s, notes, error);
   if (status == EF_OK)
-    status = set_display(s, notes, error);
+    status = set_device(s, notes, error);
   if (status == EF_OK)
     status = set_targets(s, notes, error);
   if (status == EF_OK)
@@ -148,7 +141,7 @@ void match_scene_free(match_scene *s) {
   targets_free(&s->targets);
   ef_reader_free(s->reader);
   ef_setup_free(s->setup);
-  display_free(&s->display);
+  device_free(&s->device);
   ef_illuminant_free(s->illuminant);
   ef_observer_free(s->observer);
   ef_metric_free(s->metric);
@@ -165,7 +158,7 @@ ef_status match_measure_gamut(match_scene *s, ef_error *error) {
 /* ---- Answers ----------------------------------------------------------- */
 
 const ef_shown *match_achieved(const match_scene *s, const ef_match *m) {
-  return s->settings.bits > 0 ? &m->coded : &m->nearest;
+  return device_is_quantised(&s->device) ? &m->coded : &m->nearest;
 }
 
 /* Adds one more to the mean of n - 1. */

@@ -7,12 +7,12 @@
 #include <evenfield/match.h>
 
 #include "companion.h"
-#include "display.h"
+#include "device.h"
 #include "seen.h"
 #include "targets.h"
 
 /** Everything the answers rest on. */
-typedef struct match_scene {
+struct match_scene {
   const command_options *options;
   ef_metric *metric; /**< owned */
   ef_jnd jnd;        /**< value NaN: none */
@@ -20,20 +20,20 @@ typedef struct match_scene {
   double tolerance;  /**< for --check */
   ef_observer *observer;
   ef_illuminant *illuminant;
-  display display;
+  chosen_device device;
   ef_setup *setup;
   colour_basis basis;
   ef_match_settings settings;
-  double luminance_cd_m2; /**< of the display's white; NaN when not known */
+  double luminance_cd_m2; /**< of a display's white; NaN when not known */
   bool has_gamut;
   ef_gamut gamut; /**< measured by match_measure_gamut */
   const char *target_source;
-  bool demo_display, demo_targets;
+  bool demo_targets;
   ef_reader *reader; /**< of the targets */
   targets targets;
   companion companion; /**< of a dichromat */
   seen seen;           /**< its population is NULL without --population */
-} match_scene;
+};
 
 /** Reads and checks everything but the rows of the targets. Free with
  * match_scene_free in every case. */

@@ -170,7 +170,7 @@ ef_status match_chart_draw(const match_chart *c, const match_scene *s,
 static void describe(text *subtitle, const match_chart *c, const match_scene *s,
                      const match_summary *sum) {
   text_format(subtitle, "%s; targets: %s (%s)",
-              ef_device_name(s->display.device), s->targets.about,
+              ef_device_name(s->device.device), s->targets.about,
               s->target_source);
   text_format(subtitle, "; observer %s", ef_observer_name(s->observer));
   if (c->stride > 1)

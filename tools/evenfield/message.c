@@ -68,6 +68,8 @@ ef_notes message_notes(message_sink *sink) {
 void message_note(const ef_notes *notes, const char *format, ...) {
   char line[1024];
   va_list arguments;
+  if (notes == NULL)
+    return;
   va_start(arguments, format);
   vsnprintf(line, sizeof line, format, arguments);
   va_end(arguments);

@@ -20,7 +20,7 @@ typedef struct message_sink {
 } message_sink;
 /** Notes as "note: ..." lines, or dropped when the sink is quiet. */
 ef_notes message_notes(message_sink *sink);
-/** A note of the command's own. */
+/** A note of the command's own; none where `notes` is NULL. */
 void message_note(const ef_notes *notes, const char *format, ...)
     EF_PRINTF(2, 3);
 

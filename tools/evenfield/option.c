@@ -221,8 +221,25 @@ static const option_row table[] = {
     {"tone", "CURVE", SHOWING, TYPE_TEXT, FIELD(tone), 0, 0, NULL,
      "from drive to light: linear, power:G, iec61966-2-1, or a file with "
      "measured ramps; default: what the display's file or encoding says"},
-    {"bits", "N", SHOWING, TYPE_INTEGER, FIELD(bits), 1, 16, NULL,
+    {"inks", "FILE", MATCHING, TYPE_TEXT, FIELD(inks), 0, 0, NULL,
+     "a three-ink press in the place of a display: its characterisation, rows "
+     "of C,M,Y and X,Y,Z, L,a,b or a spectrum, with the eight full overprints "
+     "and a ramp of each ink among them; demo:leaflet-press is one"},
+    {"bits", "N", COMMAND_ISOLATE, TYPE_INTEGER, FIELD(bits), 1, 16, NULL,
      "bits of a code value, 1 to 16; default 8"},
+    {"bits", "N", MATCHING, TYPE_INTEGER, FIELD(match_bits), 1, 16, NULL,
+     "bits of a code value, 1 to 16; default 8, and --step for inks"},
+    {"step", "PERCENT", MATCHING, TYPE_NUMBER, FIELD(step_percent), 0.01, 100,
+     NULL,
+     "ink values are multiples of this: 100 over a whole number, such as 5, 1 "
+     "or 0.5; default 1"},
+    {"yule-nielsen", "N", MATCHING, TYPE_NUMBER, FIELD(yule_nielsen), 1, 10,
+     NULL,
+     "Yule-Nielsen factor of the print, 1 to 10; default: fitted to the ramps"},
+    {"black", "PERCENT", MATCHING, TYPE_NUMBER, FIELD(black_percent), 0, 100,
+     NULL,
+     "the black of a print with four inks, which stays fixed; default 0, and "
+     "rows with black are left out"},
     {"ambient", "LUX", SHOWING, TYPE_NUMBER, FIELD(ambient_lux), 0, 1e6, NULL,
      "illuminance on the screen; default 0, a dark room"},
     {"reflectance", "R", SHOWING, TYPE_NUMBER, FIELD(reflectance), 0, 1, NULL,
@@ -242,10 +259,15 @@ static const option_row table[] = {
      NULL,
      "whose cones: a name from `evenfield observer list`, with settings as in "
      "model:age=45,field=10; default cie-2015-2"},
-    {"illuminant", "LIGHT", SEEING, TYPE_TEXT, FIELD(illuminant), 0, 0, NULL,
+    {"illuminant", "LIGHT", SEEING & ~(unsigned)MATCHING, TYPE_TEXT,
+     FIELD(illuminant), 0, 0, NULL,
      "the light on surfaces and the white of colours: a name from `evenfield "
      "tables illuminants`, daylight:K, planck:K, FILE or FILE:COLUMN; default "
      "D65"},
+    {"illuminant", "LIGHT", MATCHING, TYPE_TEXT, FIELD(illuminant), 0, 0, NULL,
+     "the light on surfaces and the white of colours: a name from `evenfield "
+     "tables illuminants`, daylight:K, planck:K, FILE or FILE:COLUMN; default "
+     "D65, with --inks D50"},
     {"illuminant", "LIGHT", COMMAND_COMPARE, TYPE_TEXTS, FIELD(lights), 0, 0,
      NULL,
      "a light on the samples: a name from `evenfield tables illuminants`, "
@@ -456,7 +478,11 @@ static void set_defaults(command_options *o) {
                          .seen_by = -1,
                          .plane = -1,
                          .format = -1,
+                         .step_percent = not_given,
+                         .yule_nielsen = not_given,
+                         .black_percent = not_given,
                          .bits = 8,
+                         .match_bits = -1,
                          .swatch_bits = 8,
                          .jobs = 0};
 }

@@ -46,7 +46,8 @@ typedef struct given_options {
  * given, unless option.c states a default. The format of `observer`, whose
  * default depends on what it is asked for, is -1 when not given. */
 typedef struct command_options {
-  const char *display, *tone, *observer, *illuminant, *metric, *adaptation;
+  const char *display, *inks, *tone, *observer, *illuminant, *metric,
+      *adaptation;
   const char *ambient_illuminant, *pictures, *output, *ages, *chart;
   const char *space, *contrast_from, *surround;
   const char *jnd_text, *criterion, *tolerance_text; /**< of compare, ellipse */
@@ -59,6 +60,7 @@ typedef struct command_options {
   double cycles_per_deg, hole_deg, edge_deg, sigma_deg, orientation_deg;
   double phase_deg, drift_hz, distance_mm, pixels_per_mm, frame_rate_hz;
   double frequency_hz, time_phase_deg, duty, duration_s, ramp_s, most_gb;
+  double step_percent, yule_nielsen, black_percent; /**< of inks */
   double ambient_lux, reflectance, luminance_cd_m2, jnd, tolerance, device_max;
   double size, steps, white_cd_m2, background_Y;
   double exponent, spread, batch_sd, samples;
@@ -74,7 +76,9 @@ typedef struct command_options {
   int time_course; /**< an ef_waveform_kind, -1 not given */
   int dither;      /**< an ef_dither */
   int format;
-  int bits, swatch_bits, jobs, categories;
+  int bits;       /**< of isolate */
+  int match_bits; /**< of match and swatch; -1: what the device has */
+  int swatch_bits, jobs, categories;
   bool skip_bad, check, worst_case, robust, force, quiet, help, version;
   text_list at, lights, observers;
   size_t n_files;

@@ -50,26 +50,13 @@ static void add_tone(text *out, const ef_device *device) {
 }
 
 static void add_residuals(text *out, const render_display *d) {
-  const display_residuals *r = &d->display->residuals;
-  const char *symbol = ef_metric_symbol(d->metric);
+  const residuals *r = &d->display->residuals;
   if (r->n == 0)
     return;
-  char mean[EF_NUMBER_TEXT], p95[EF_NUMBER_TEXT], worst[EF_NUMBER_TEXT];
-  words_amount(r->mean, mean);
-  words_amount(r->p95, p95);
-  words_amount(r->worst, worst);
   text t = {0};
-  text_format(&t,
-              "%zu measured mixtures differ from the sum of the primaries "
-              "by %s %s on average, 95 %% of them by less than %s, at worst by "
-              "%s (line %zu, drive",
-              r->n, mean, symbol, p95, worst, r->worst_line);
-  for (size_t i = 0; i < ef_device_n_drives(d->display->device); ++i) {
-    char drive[EF_NUMBER_TEXT];
-    ef_number_format_fixed(100.0 * r->worst_drive[i], 0, drive);
-    text_format(&t, "%s %s %%", i == 0 ? "" : ",", drive);
-  }
-  text_add(&t, ")");
+  text_format(&t, "%zu measured mixtures differ from the sum of the primaries ",
+              r->n);
+  residuals_add(&t, r, d->metric);
   text_label(out, "Additivity", &t);
 }
 

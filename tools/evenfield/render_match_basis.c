@@ -4,7 +4,6 @@
 #include <math.h>
 #include <string.h>
 
-#include "render_display.h"
 #include "viewing.h"
 #include "words.h"
 
@@ -15,15 +14,15 @@ static void add_targets(text *out, const match_scene *s) {
   text_format(&t, "%s (%s)", s->targets.about, s->target_source);
   switch (s->targets.adaptation) {
   case EF_ADAPT_NONE:
-    text_add(&t, "; taken as they are, without adaptation to the display's "
-                 "white");
+    if (!ef_device_reflects(s->device.device))
+      text_format(&t,
+                  "; taken as they are, without adaptation to the %s's white",
+                  s->device.kind->words.noun);
     break;
   case EF_ADAPT_BRADFORD:
   case EF_ADAPT_CAT16:
-    text_format(&t,
-                "; adapted from the white of %s to the display's white by "
-                "%s",
-                ef_illuminant_name(s->illuminant),
+    text_format(&t, "; adapted from the white of %s to the %s's white by %s",
+                ef_illuminant_name(s->illuminant), s->device.kind->words.noun,
                 s->companion.observer != NULL
                     ? "von Kries, each of the two kinds of cones by itself"
                 : s->targets.adaptation == EF_ADAPT_CAT16 ? "CAT16"
@@ -90,20 +89,21 @@ static void add_metric(text *out, const match_scene *s) {
     text_add(&t, "; for a white of 318 cd/m2 (1000 lx on a perfect diffuser), "
                  "a background of 20 % of it and an average surround");
   text_label(out, "Difference", &t);
-  if (s->settings.bits == 0)
+  if (!device_is_quantised(&s->device))
     return;
-  text_format(&t,
-              "%d bits for each primary; those of the least difference, "
-              "which are not always the rounded ones",
-              s->settings.bits);
-  text_label(out, "Codes", &t);
+  const char *channel = s->device.kind->words.channel;
+  if (s->device.bits > 0)
+    text_format(&t, "%d bits for each %s", s->device.bits, channel);
+  else
+    text_format(&t, "%s of each %s", s->device.step, channel);
+  text_add(&t, "; those of the least difference, which are not always the "
+               "rounded ones");
+  text_label(out, s->device.bits > 0 ? "Codes" : "Steps", &t);
 }
 
 static void add_basis(text *out, const match_scene *s) {
   text_add(out, "\nWhat this rests on:\n");
-  const render_display of_display = {s->options, &s->display, s->metric,
-                                     s->luminance_cd_m2};
-  render_display_basis(out, &of_display);
+  s->device.kind->describe(out, s);
   add_targets(out, s);
   add_observer(out, s);
   add_people(out, s);
@@ -127,24 +127,43 @@ static void add_area(text *t, double area, double share, const char *plane) {
               percent);
 }
 
-/* Of each primary at full drive, of white and of black; in cd/m2 where that is
- * known, else in per cent of the white. */
-static void add_luminances(text *t, const match_scene *s) {
-  const ef_device *device = s->display.device;
+/* Name and colour of drive `i` at full, the others at zero; behind the drives
+ * that of none and of all. */
+static const char *corner(const match_scene *s, size_t i, ef_xyz *xyz) {
+  const ef_device *device = s->device.device;
   const size_t n = ef_device_n_drives(device);
+  double amount[EF_MAX_DRIVES] = {0.0};
+  for (size_t k = 0; k < n; ++k)
+    amount[k] = i == k || i == n + 1 ? 1.0 : 0.0;
+  *xyz = ef_setup_xyz(s->setup, amount, NULL);
+  return i < n    ? ef_device_drive_name(device, i)
+         : i == n ? s->device.kind->words.none
+                  : s->device.kind->words.all;
+}
+
+/* Of each corner, lightest and darkest; in cd/m2 where that is known, else in
+ * per cent of the white. */
+static void add_luminances(text *t, const match_scene *s) {
+  const size_t n = ef_device_n_drives(s->device.device);
   const bool absolute = !isnan(s->luminance_cd_m2);
   const double unit = absolute ? s->luminance_cd_m2 / 100.0 : 1.0;
   char number[EF_NUMBER_TEXT];
+  ef_xyz xyz;
   for (size_t i = 0; i < n; ++i) {
-    double amount[EF_MAX_DRIVES] = {0.0};
-    amount[i] = 1.0;
-    words_amount(unit * ef_setup_xyz(s->setup, amount, NULL).Y, number);
-    text_format(t, "%s %s, ", ef_device_drive_name(device, i), number);
+    const char *name = corner(s, i, &xyz);
+    words_amount(unit * xyz.Y, number);
+    text_format(t, "%s %s, ", name, number);
   }
-  words_amount(unit * ef_setup_white(s->setup).Y, number);
-  text_format(t, "white %s, ", number);
-  words_amount(unit * ef_setup_black(s->setup).Y, number);
-  text_format(t, "black %s %s", number, absolute ? "cd/m2" : "% of white");
+  for (size_t k = 0; k < 2; ++k) {
+    const bool all = (k == 0) != s->device.is_subtractive;
+    const char *name = corner(s, all ? n + 1 : n, &xyz);
+    words_amount(unit * xyz.Y, number);
+    text_format(t, "%s %s%s", name, number, k == 0 ? ", " : "");
+  }
+  text_add(t, absolute ? " cd/m2"
+              : ef_device_reflects(s->device.device)
+                  ? " % of a perfect diffuser"
+                  : " % of white");
 }
 
 static void add_sizes(text *out, const match_scene *s) {
@@ -176,16 +195,20 @@ static void add_sizes(text *out, const match_scene *s) {
 static void add_gamut(text *out, const match_scene *s,
                       const match_summary *sum) {
   const ef_gamut *g = &s->gamut;
-  const size_t n = ef_device_n_drives(s->display.device);
+  const device_words *words = &s->device.kind->words;
+  const size_t n = ef_device_n_drives(s->device.device);
   char number[EF_NUMBER_TEXT], share[EF_NUMBER_TEXT];
   text t = {0};
-  text_add(out, "\nThis display's gamut:\n");
+  ef_xyz lightest;
+  text_format(out, "\nThis %s's gamut:\n", words->noun);
   for (size_t i = 0; i < n; ++i) {
-    add_chromaticity(&t, ef_device_drive_name(s->display.device, i),
+    add_chromaticity(&t, ef_device_drive_name(s->device.device, i),
                      g->primary[i]);
     text_add(&t, "; ");
   }
-  add_chromaticity(&t, "white", g->white);
+  const char *name = corner(s, s->device.is_subtractive ? n : n + 1, &lightest);
+  const ef_xyy at = ef_xyz_to_xyy(lightest);
+  add_chromaticity(&t, name, (ef_xy){at.x, at.y});
   text_label(out, "x, y", &t);
   add_luminances(&t, s);
   text_label(out, "Luminance", &t);
@@ -193,8 +216,10 @@ static void add_gamut(text *out, const match_scene *s,
   if (isinf(g->contrast)) {
     text_add(&t, "not known: the black is taken as no light at all");
   } else {
-    ef_number_format_fixed(g->contrast, 0, number);
-    text_format(&t, "white has %s times the luminance of black", number);
+    ef_number_format_fixed(g->contrast, g->contrast < 100 ? 1 : 0, number);
+    text_format(&t, "%s has %s times the luminance of %s",
+                s->device.is_subtractive ? words->none : words->all, number,
+                s->device.is_subtractive ? words->all : words->none);
   }
   text_label(out, "Contrast", &t);
   ef_number_format_fixed(100.0 * (double)sum->n_in_gamut / (double)sum->n, 1,

@@ -48,7 +48,7 @@ static size_t limits_of(const ef_device *device, const ef_match *m,
 static void record_shown(record *r, const char *key, const match_scene *s,
                          const ef_shown *shown) {
   const double none = (double)NAN;
-  const ef_device *device = s->display.device;
+  const ef_device *device = s->device.device;
   const size_t n = ef_device_n_drives(device);
   const char *names[EF_MAX_DRIVES];
   names_of_drives(device, names);
@@ -81,7 +81,7 @@ static void record_spread(record *r, const ef_spread *spread) {
 /* `spread` NULL without a population. */
 static void record_match(record *r, const match_scene *s, const char *name,
                          const ef_match *m, const ef_spread *spread) {
-  const ef_device *device = s->display.device;
+  const ef_device *device = s->device.device;
   const size_t n = ef_device_n_drives(device);
   const char *names[EF_MAX_DRIVES], *limits[2 * EF_MAX_DRIVES];
   names_of_drives(device, names);
@@ -117,67 +117,12 @@ static void record_match(record *r, const match_scene *s, const char *name,
 
 /* ---- The document around the targets ----------------------------------- */
 
-static void write_xyz(ef_json *j, const char *key, ef_xyz xyz) {
-  ef_json_begin_object(j, key);
-  ef_json_number(j, "X", xyz.X);
-  ef_json_number(j, "Y", xyz.Y);
-  ef_json_number(j, "Z", xyz.Z);
-  ef_json_end_object(j);
-}
-
-/* Colour of one primary at full drive, the others at zero. */
-static void write_full_drive(ef_json *j, const match_scene *s, size_t i) {
-  double amount[EF_MAX_DRIVES] = {0.0};
-  amount[i] = 1.0;
-  const ef_xyz xyz = ef_setup_xyz(s->setup, amount, NULL);
-  const ef_xyy c = ef_xyz_to_xyy(xyz);
-  ef_json_begin_object(j, "full_drive");
-  ef_json_number(j, "X", xyz.X);
-  ef_json_number(j, "Y", xyz.Y);
-  ef_json_number(j, "Z", xyz.Z);
-  ef_json_number(j, "x", c.x);
-  ef_json_number(j, "y", c.y);
-  ef_json_end_object(j);
-}
-
-static void write_additivity(ef_json *j, const display *d) {
-  if (d->additivity.known) {
-    ef_json_begin_object(j, "white_against_sum");
-    ef_json_number(j, "difference", d->additivity_difference);
-    ef_json_number(j, "luminance_ratio", d->additivity.luminance_ratio);
-    ef_json_end_object(j);
-  }
-  const display_residuals *r = &d->residuals;
-  if (r->n == 0)
-    return;
-  ef_json_begin_object(j, "mixtures_against_model");
-  ef_json_integer(j, "count", (int64_t)r->n);
-  ef_json_number(j, "mean", r->mean);
-  ef_json_number(j, "p95", r->p95);
-  ef_json_number(j, "worst", r->worst);
-  ef_json_integer(j, "worst_line", (int64_t)r->worst_line);
-  ef_json_end_object(j);
-}
-
-static void write_display(ef_json *j, const match_scene *s) {
-  const display *d = &s->display;
-  ef_json_begin_object(j, "display");
+static void write_device(ef_json *j, const match_scene *s) {
+  const chosen_device *d = &s->device;
+  ef_json_begin_object(j, d->kind->key);
   ef_json_text(j, "name", ef_device_name(d->device));
   ef_json_text(j, "source", d->source);
-  ef_json_text(j, "known_from", display_origin_text(d->origin));
-  ef_json_number(j, "luminance_cd_m2", s->luminance_cd_m2);
-  write_xyz(j, "white", ef_setup_white(s->setup));
-  write_xyz(j, "black", ef_setup_black(s->setup));
-  ef_json_begin_array(j, "primaries");
-  for (size_t i = 0; i < ef_device_n_drives(d->device); ++i) {
-    ef_json_begin_object(j, NULL);
-    ef_json_text(j, "name", ef_device_drive_name(d->device, i));
-    write_full_drive(j, s, i);
-    ef_json_text(j, "tone_curve", ef_device_curve_about(d->device, i));
-    ef_json_end_object(j);
-  }
-  ef_json_end_array(j);
-  write_additivity(j, d);
+  d->kind->write(j, s);
   ef_json_end_object(j);
 }
 
@@ -212,6 +157,8 @@ static void write_basis(ef_json *j, const match_scene *s) {
   ef_json_text(j, "source", s->own_jnd ? "--jnd" : s->jnd.source);
   ef_json_end_object(j);
   ef_json_integer(j, "bits", s->settings.bits);
+  if (s->settings.n_steps > 0)
+    ef_json_number(j, "step", 1.0 / s->settings.n_steps);
   if (s->seen.people.population == NULL)
     return;
   ef_json_begin_object(j, "population");
@@ -266,9 +213,9 @@ static ef_status begin(void *self, const match_scene *s, ef_error *error) {
                  s->seen.people.population != NULL ? &no_spread : NULL);
     return EF_OK;
   }
-  ef_json_boolean(d->out.json, "demo", s->demo_display && s->demo_targets);
+  ef_json_boolean(d->out.json, "demo", s->device.is_demo && s->demo_targets);
   write_basis(d->out.json, s);
-  write_display(d->out.json, s);
+  write_device(d->out.json, s);
   write_gamut(d->out.json, &s->gamut);
   document_begin_rows(&d->out, "targets");
   return EF_OK;

@@ -86,15 +86,27 @@ static bool is_flat(const match_scene *s) {
   return ef_observer_dimensions(s->observer) < 3;
 }
 
-/* "This display", or whom it is for when that is not everybody. */
-static void add_display(text *t, const match_scene *s) {
+static const device_words *words_of(const match_scene *s) {
+  return &s->device.kind->words;
+}
+
+/* "This display can show", or whom it is for when that is not everybody. */
+static void add_device(text *t, const match_scene *s, const char *can) {
   ef_cone_model model;
   if (is_flat(s) && ef_observer_model(s->observer, &model)) {
-    text_format(t, "To a %s this display",
-                ef_deficiency_name(model.deficiency));
+    text_format(t, "To a %s this", ef_deficiency_name(model.deficiency));
   } else {
-    text_add(t, "This display");
+    text_add(t, "This");
   }
+  text_format(t, " %s %s %s ", words_of(s)->noun, can, words_of(s)->shows);
+}
+
+/* "8-bit codes", "steps of 1 %". */
+static void codes_text(const match_scene *s, char out[40]) {
+  if (s->device.bits > 0)
+    snprintf(out, 40, "%d-bit codes", s->device.bits);
+  else
+    snprintf(out, 40, "steps of %s", s->device.step);
 }
 
 /* Of colours in two dimensions lightness and chroma are all there is to say. */
@@ -118,44 +130,46 @@ static void add_difference(text *t, const match_scene *s, double value) {
 
 static void add_answer_for_one(text *t, const match_scene *s,
                                const match_summary *sum) {
-  add_display(t, s);
   if (sum->n_in_gamut == 1) {
-    text_format(t, " can show %s", sum->worst_name);
-    if (s->settings.bits > 0) {
-      text_format(t, "; its best %d-bit code is off by ", s->settings.bits);
+    add_device(t, s, "can");
+    text_add(t, sum->worst_name);
+    if (s->device.bits > 0)
+      text_format(t, "; its best %d-bit code is off by ", s->device.bits);
+    else if (device_is_quantised(&s->device))
+      text_format(t, "; in steps of %s it is off by ", s->device.step);
+    if (device_is_quantised(&s->device))
       add_difference(t, s, sum->worst);
-    }
     return;
   }
   char direction[WORDS_ROOM];
   add_direction(s, sum->worst_miss_parts, sum->worst_miss_target, direction);
-  text_format(t,
-              " cannot show %s: the nearest colour it has is "
-              "off by ",
-              sum->worst_name);
+  add_device(t, s, "cannot");
+  text_format(t, "%s: the nearest colour it has is off by ", sum->worst_name);
   add_difference(t, s, sum->worst_miss);
   text_format(t, ", %s", direction);
 }
 
 static void add_answer_for_all(text *t, const match_scene *s,
                                const match_summary *sum) {
-  add_display(t, s);
-  text_format(t, " can show all %zu targets", sum->n);
-  if (s->settings.bits == 0)
+  add_device(t, s, "can");
+  text_format(t, "all %zu targets", sum->n);
+  if (!device_is_quantised(&s->device))
     return;
-  text_format(t, "; as %d-bit codes the worst, %s, is off by ",
-              s->settings.bits, sum->worst_name);
+  char codes[40];
+  codes_text(s, codes);
+  text_format(t, "; %s %s the worst, %s, is off by ",
+              s->device.bits > 0 ? "as" : "in", codes, sum->worst_name);
   add_difference(t, s, sum->worst);
 }
 
 static void add_answer_for_some(text *t, const match_scene *s,
                                 const match_summary *sum) {
   const size_t n_out = sum->n - sum->n_in_gamut;
-  add_display(t, s);
+  add_device(t, s, "can");
   if (sum->n_in_gamut == 0) {
-    text_format(t, " can show none of the %zu targets", sum->n);
+    text_format(t, "none of the %zu targets", sum->n);
   } else {
-    text_format(t, " can show %zu of the %zu targets", sum->n_in_gamut, sum->n);
+    text_format(t, "%zu of the %zu targets", sum->n_in_gamut, sum->n);
   }
   if (sum->n_near > 0) {
     text_format(t, "%s%zu more to within one JND",
@@ -167,8 +181,11 @@ static void add_answer_for_some(text *t, const match_scene *s,
     text_format(t, "; the worst miss is %s, by ", sum->worst_miss_name);
   }
   add_difference(t, s, sum->worst_miss);
-  if (s->settings.bits > 0 && sum->worst_in_gamut > s->jnd.value) {
-    text_format(t, ". %d-bit codes put others off by up to ", s->settings.bits);
+  if (device_is_quantised(&s->device) && sum->worst_in_gamut > s->jnd.value) {
+    char codes[40];
+    codes_text(s, codes);
+    text_format(t, ". %c%s put others off by up to ",
+                codes[0] == 's' ? 'S' : codes[0], codes + 1);
     add_difference(t, s, sum->worst_in_gamut);
   }
 }
@@ -188,18 +205,18 @@ static void add_answer(text *t, const match_scene *s,
 
 static void add_second_lines(text *t, const match_scene *s,
                              const match_summary *sum) {
-  if (s->demo_targets && s->demo_display) {
-    text_add(t, "No files were named, so this is the built-in demo: a ferry's "
-                "painted colours\n(demo:livery) on a ticket kiosk's display (");
-    text_format(t, "%s).\n", s->display.source);
+  const chosen_device *d = &s->device;
+  if (s->demo_targets && d->is_demo) {
+    text_format(t,
+                "No files were named, so this is the built-in demo: a ferry's "
+                "painted colours\n(demo:livery) %s (%s).\n",
+                d->kind->demo_story, d->source);
   } else if (s->demo_targets) {
     text_add(t, "No targets were named, so these are the demo's painted "
                 "colours (demo:livery).\n");
-  } else if (s->demo_display) {
-    text_format(t,
-                "No display was named, so this is the demo's ticket kiosk "
-                "(%s).\n",
-                s->display.source);
+  } else if (d->is_demo) {
+    text_format(t, "No %s was named, so this is %s (%s).\n",
+                d->kind->words.noun, d->kind->demo_device, d->source);
   }
   if (s->options->check) {
     char tolerance[EF_NUMBER_TEXT];
@@ -219,15 +236,15 @@ static void add_second_lines(text *t, const match_scene *s,
 
 static void start_table(text_table *t, const match_scene *s,
                         const char *codes) {
-  const ef_device *device = s->display.device;
+  const ef_device *device = s->device.device;
   const size_t n = ef_device_n_drives(device);
   table_column(t, "Target", "", true);
   table_column(t, "In", "gamut", true);
   for (size_t i = 0; i < n; ++i) {
-    table_column(t, i == 0 ? "Amount shown, %" : NULL,
+    table_column(t, i == 0 ? words_of(s)->amounts : NULL,
                  ef_device_drive_name(device, i), false);
   }
-  for (size_t i = 0; i < n && s->settings.bits > 0; ++i) {
+  for (size_t i = 0; i < n && s->device.bits > 0; ++i) {
     table_column(t, i == 0 ? codes : NULL, ef_device_drive_name(device, i),
                  false);
   }
@@ -242,11 +259,30 @@ static const char *in_gamut_word(const match_scene *s, const ef_match *m) {
   return m->nearest.difference <= s->jnd.value ? "nearly" : "no";
 }
 
+/* Of drives in whole steps as many as the step has, and two else. */
+static int decimals_of(const match_scene *s) {
+  if (s->device.n_steps == 0)
+    return 2;
+  const double step = 100.0 / s->device.n_steps;
+  int decimals = 0;
+  for (double x = step; decimals < 4 && fabs(x - round(x)) > 1e-9; x *= 10)
+    ++decimals;
+  return decimals;
+}
+
+/* Of a subtractive device the drives, which are what is printed from; else the
+ * amounts, which are what is seen. */
+static double amount_of(const match_scene *s, const ef_shown *shown, size_t i) {
+  return 100.0 *
+         (s->device.is_subtractive ? shown->drive[i] : shown->amount[i]);
+}
+
 static void add_table(text *out, const match_text *m, const match_scene *s) {
   text_table t = table_new();
-  const size_t n = ef_device_n_drives(s->display.device);
+  const size_t n = ef_device_n_drives(s->device.device);
+  const int decimals = decimals_of(s);
   char codes[40];
-  snprintf(codes, sizeof codes, "Code, %d bit", s->settings.bits);
+  snprintf(codes, sizeof codes, "Code, %d bit", s->device.bits);
   start_table(&t, s, codes);
   for (size_t k = 0; k < m->n_rows; ++k) {
     const ef_match *match = &m->row[k].match;
@@ -254,9 +290,9 @@ static void add_table(text *out, const match_text *m, const match_scene *s) {
     table_cell(&t, m->row[k].name);
     table_cell(&t, in_gamut_word(s, match));
     for (size_t i = 0; i < n; ++i) {
-      table_number(&t, 100.0 * shown->amount[i], 2);
+      table_number(&t, amount_of(s, shown, i), decimals);
     }
-    for (size_t i = 0; i < n && s->settings.bits > 0; ++i) {
+    for (size_t i = 0; i < n && s->device.bits > 0; ++i) {
       table_format(&t, "%u", (unsigned)match->code[i]);
     }
     table_number(&t, shown->difference, 2);
@@ -366,7 +402,7 @@ static void add_reading(text *t, const ef_device *device, const ef_match *m) {
 
 static void add_miss(text *out, const match_scene *s, const kept_row *row) {
   const ef_match *m = &row->match;
-  const ef_device *device = s->display.device;
+  const ef_device *device = s->device.device;
   text t = {0};
   char direction[WORDS_ROOM], amount[EF_NUMBER_TEXT];
   add_direction(s, m->nearest.components, m->target, direction);
@@ -380,7 +416,8 @@ static void add_miss(text *out, const match_scene *s, const kept_row *row) {
     text_format(&t, " With hue and lightness kept it is off by %s %s.", amount,
                 ef_metric_symbol(s->metric));
   }
-  add_reading(&t, device, m);
+  if (ef_setup_affine(s->setup))
+    add_reading(&t, device, m);
   text_add(out, "  ");
   text_wrap(out, t.bytes != NULL ? t.bytes : "", 4);
   out->failed = out->failed || t.failed;
@@ -405,7 +442,8 @@ static void add_misses(text *out, const match_text *m, const match_scene *s,
   memcpy(sorted, m->row, m->n_rows * sizeof *sorted);
   qsort(sorted, m->n_rows, sizeof *sorted, by_miss);
   size_t n_told = 0;
-  text_add(out, "\nOut of this display's gamut, the worst first:\n");
+  text_format(out, "\nOut of this %s's gamut, the worst first:\n",
+              words_of(s)->noun);
   for (size_t k = 0; k < m->n_rows && n_told < MOST_READINGS; ++k) {
     if (!is_told(&sorted[k]))
       continue;
@@ -431,8 +469,8 @@ static void add_pictures(text *out, const match_scene *s) {
   text t = {0};
   text_format(&t,
               "Pictures are in %.900s: a split field of each target (left the "
-              "target, right what is shown%s), and all of them on sheet.png.",
-              s->options->pictures,
+              "target, right what is %s%s), and all of them on sheet.png.",
+              s->options->pictures, words_of(s)->shown,
               s->options->seen_by < 0
                   ? ", a striped corner where that is no exact match"
                   : "");

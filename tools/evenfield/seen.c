@@ -10,12 +10,13 @@
 
 static ef_status check_spectra(const seen_basis *b, ef_error *error) {
   static const char why[] = "what other people see follows from spectra only";
+  const device_words *words = &b->chosen->kind->words;
   if (!ef_device_has_spectra(ef_setup_device(b->setup))) {
     message_fail(error, EF_NO_ANSWER,
-                 "%s, and this display is known without: --population needs a "
-                 "--display with the spectra of its primaries",
-                 why);
-    return message_place(error, b->display_source);
+                 "%s, and this %s is known without: --population needs a file "
+                 "for --%s with %s",
+                 why, words->noun, b->chosen->kind->option, words->spectra);
+    return message_place(error, b->chosen->source);
   }
   if (b->head->content == EF_CONTENT_SPECTRA)
     return EF_OK;
@@ -31,7 +32,8 @@ static double *room(size_t n_rows, size_t n_samples) {
   return malloc(n_rows * n_samples * sizeof(double));
 }
 
-static ef_status set_match(seen *s, size_t most_rows, ef_error *error) {
+static ef_status set_match(seen *s, const seen_basis *b, size_t most_rows,
+                           ef_error *error) {
   const ef_grid *grid = ef_device_grid(s->device);
   s->white = room(1, grid->count);
   s->shown = room(most_rows, grid->count);
@@ -41,6 +43,11 @@ static ef_status set_match(seen *s, size_t most_rows, ef_error *error) {
                        .sample = s->shown,
                        .viewing = ef_viewing_default(NULL),
                        .white = s->white};
+  if (ef_device_reflects(s->device)) {
+    s->match.viewing = ef_viewing_default(b->illuminant);
+    s->match.white = NULL;
+    return EF_OK;
+  }
   double full[EF_MAX_DRIVES];
   for (size_t i = 0; i < EF_MAX_DRIVES; ++i)
     full[i] = 1.0;
@@ -92,7 +99,7 @@ ef_status seen_init(seen *s, const seen_basis *basis, size_t most_rows,
     s->settings.weight = s->people.share;
   }
   if (status == EF_OK)
-    status = set_match(s, most_rows, error);
+    status = set_match(s, b, most_rows, error);
   s->is_light = b->head->kind == EF_LIGHT;
   if (status == EF_OK && s->is_light)
     return set_lights(s, most_rows, error);

@@ -7,6 +7,7 @@
 
 #include <evenfield/match.h>
 
+#include "device.h"
 #include "people.h"
 #include "targets.h"
 
@@ -29,7 +30,7 @@ bool seen_is_asked(const command_options *options);
 typedef struct seen_basis {
   const command_options *options;
   const ef_setup *setup;
-  const char *display_source;
+  const chosen_device *chosen;
   const targets *targets;
   const ef_reader_head *head; /**< of the targets */
   const ef_illuminant *illuminant;

@@ -37,9 +37,13 @@ static ef_status set_scale(targets *t, const command_options *options,
       asked ? options->luminance_cd_m2 : ef_setup_luminance_cd_m2(t->setup);
   if (isnan(white_cd_m2)) {
     return message_fail(error, EF_NO_ANSWER,
-                        "the targets are in cd/m2, and "
-                        "the luminance of this display's white is not known: "
-                        "give it with --luminance");
+                        ef_device_reflects(ef_setup_device(t->setup))
+                            ? "the targets are in cd/m2, and what reflects "
+                              "has no luminance of its own: give them with "
+                              "Y = 100 for the perfect diffuser"
+                            : "the targets are in cd/m2, and "
+                              "the luminance of this display's white is not "
+                              "known: give it with --luminance");
   }
   t->scale = 100.0 / white_cd_m2;
   return EF_OK;
@@ -49,7 +53,9 @@ static ef_status set_scale(targets *t, const command_options *options,
  * which the eye would be adapted. */
 static ef_status set_adaptation(targets *t, const command_options *options,
                                 ef_xyz white, ef_error *error) {
-  t->adaptation = is_light(t) ? EF_ADAPT_NONE : EF_ADAPT_CAT16;
+  /* What reflects lies in the same light as the targets. */
+  const bool reflects = ef_device_reflects(ef_setup_device(t->setup));
+  t->adaptation = is_light(t) || reflects ? EF_ADAPT_NONE : EF_ADAPT_CAT16;
   if (options->adaptation != NULL) {
     const ef_status status =
         ef_adaptation_find(options->adaptation, &t->adaptation, error);
@@ -86,6 +92,13 @@ ef_status targets_init(targets *t, const command_options *options,
   ef_status status = colours_init(&t->colours, basis, head, notes, error);
   if (status != EF_OK)
     return status;
+  const bool reflects = ef_device_reflects(ef_setup_device(setup));
+  if (is_light(t) && reflects) {
+    message_fail(error, EF_NO_ANSWER,
+                 "the targets are lights, and this device reflects: it matches "
+                 "surfaces, or colours under --illuminant");
+    return message_place(error, head->file);
+  }
   if (is_spectral_light(t) && !ef_device_has_spectra(ef_setup_device(setup))) {
     message_fail(error, EF_NO_ANSWER,
                  "the targets are spectra of lights, and "
