@@ -397,6 +397,47 @@ static void blue_light_of_led_b1(void **state) {
   ef_illuminant_free(led);
 }
 
+/* By the published weights: the plain sum over their 5 nm rows. Blue-light
+ * hazard efficacy of luminous radiation, radiance over luminance. */
+static void blue_light_of_a_and_d65(void **state) {
+  (void)state;
+  enum { ROWS = 81, FROM_NM = 300, STEP_NM = 5 };
+  static const char *const names[] = {"A", "D65"};
+  const ef_grid grid = {ROWS, FROM_NM, STEP_NM, NULL};
+  const ef_table *weights = ef_table_find("retinal-hazard", NULL);
+  const ef_table *cmf = ef_table_find("cie-1931", NULL);
+  assert_true(weights != NULL && cmf != NULL);
+  const double *b =
+      weights->value + ef_table_column(weights, "B") * weights->n_rows;
+  double efficacy[2];
+  for (int k = 0; k < 2; k++) {
+    double power[ROWS], sum = 0, luminance = 0;
+    ef_illuminant *light = ef_illuminant_new(names[k], NULL);
+    assert_int_equal(ef_illuminant_sample(light, &grid, power, NULL), EF_OK);
+    ef_observer *observer = ef_observer_new("cie-1931", NULL);
+    const ef_channels y = ef_observer_channels(observer, EF_TRISTIMULUS);
+    for (int i = 0; i < ROWS; i++) {
+      const int nm = FROM_NM + STEP_NM * i;
+      sum += STEP_NM * b[i] * power[i];
+      if (nm >= 360)
+        luminance += 683.0 * STEP_NM * power[i] *
+                     y.value[y.grid.count + (size_t)nm - 360];
+    }
+    ef_blue_light out;
+    assert_int_equal(ef_blue_light_measure(&grid, power, 0.1, 1, &out, NULL),
+                     EF_OK);
+    /* The weights are linear between their rows: at 1 nm the steep flank makes
+     * a little more of a spectrum that is curved there. */
+    assert_near_relative(out.radiance_w_m2_sr, sum, 2e-3);
+    efficacy[k] = out.radiance_w_m2_sr / luminance;
+    printf("# %s: %.4f mW/lm (plain sum %.4f)\n", names[k], 1e3 * efficacy[k],
+           1e3 * sum / luminance);
+    ef_observer_free(observer);
+    ef_illuminant_free(light);
+  }
+  assert_true(efficacy[1] > 2 * efficacy[0]);
+}
+
 static void cautions_end_with_the_deferral(void **state) {
   (void)state;
   char text[EF_MOST_CAUTIONS][EF_CAUTION_TEXT];
@@ -458,6 +499,7 @@ int main(void) {
       cmocka_unit_test(saturated_red_is_counted),
       cmocka_unit_test(frames_flash_as_their_waveform),
       cmocka_unit_test(blue_light_of_led_b1),
+      cmocka_unit_test(blue_light_of_a_and_d65),
       cmocka_unit_test(cautions_end_with_the_deferral),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);

@@ -239,6 +239,7 @@ static ef_status write_pictures(isolate_show *show, painter *p, const folder *f,
                                 bool quiet, ef_error *error) {
   const ef_frame_settings *settings = &show->settings;
   message_progress progress = message_progress_start(quiet);
+  progress.unit = "pictures";
   ef_status status = EF_OK;
   for (size_t k = 0; k < show->n_pictures && status == EF_OK; ++k) {
     isolate_picture *picture = &show->picture[k];

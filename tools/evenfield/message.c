@@ -123,7 +123,7 @@ message_progress message_progress_start(bool quiet) {
                             .start_s = now_s()};
 }
 
-void message_progress_show(message_progress *progress, size_t n_rows) {
+void message_progress_show(message_progress *progress, size_t n) {
   if (!progress->on_terminal)
     return;
   const double t = now_s();
@@ -131,7 +131,8 @@ void message_progress_show(message_progress *progress, size_t n_rows) {
     return;
   progress->last_s = t;
   progress->shown = true;
-  fprintf(stderr, "\r%zu rows", n_rows);
+  fprintf(stderr, "\r%zu %s", n,
+          progress->unit != NULL ? progress->unit : "rows");
 }
 
 void message_progress_end(message_progress *progress) {

@@ -37,13 +37,14 @@ ef_status message_argument(ef_error *error, const char *what,
 /** Names the file in an error that names none; returns its status. */
 ef_status message_place(ef_error *error, const char *file);
 
-/** Rows done so far, on a terminal and once a second has passed. */
+/** Rows, or what `unit` names, done so far, on a terminal and once a second has passed. */
 typedef struct message_progress {
   bool on_terminal, shown;
+  const char *unit; /**< NULL: rows */
   double start_s, last_s;
 } message_progress;
 message_progress message_progress_start(bool quiet);
-void message_progress_show(message_progress *progress, size_t n_rows);
+void message_progress_show(message_progress *progress, size_t n);
 void message_progress_end(message_progress *progress);
 
 #endif
