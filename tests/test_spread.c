@@ -1,7 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include <stdlib.h>
 
-#include <evenfield/match.h>
+#include "match/match_private.h"
 
 #include "fail_alloc.h"
 #include "gen.h"
@@ -410,6 +410,76 @@ static void notes_come_once(void **state) {
   pairs_free(p);
 }
 
+/* Blocks of pairs by one crowd, whose weights are held or, as of very many
+ * people, not all of them: the same digits as one call for all pairs. */
+static void a_crowd_sees_the_same(void **state) {
+  (void)state;
+  for (size_t n_held = 0; n_held < 5; ++n_held) {
+    pairs *const p = pairs_new(4);
+    ef_population *const population = make_many(400, 5); /* four blocks */
+    ef_spread_settings settings = ef_spread_settings_default();
+    settings.threshold = 20;
+    ef_spread whole[N_PAIRS], part[N_PAIRS];
+    int n_lines = 0;
+    const ef_notes notes = {count_line, &n_lines};
+    p->target.grid.start_nm = 430; /* something to note */
+    assert_int_equal(ef_population_spread(population, N_PAIRS, &p->target,
+                                          &p->match, &settings, 0, whole, NULL,
+                                          NULL, NULL),
+                     EF_OK);
+    ef_crowd *const crowd = ef_crowd_new(population, &p->target, &p->match,
+                                         &settings, &notes, NULL);
+    ef__crowd_hold(crowd, n_held);
+    for (size_t i = 0; i < N_PAIRS; ++i) {
+      assert_int_equal(
+          ef_crowd_spread(crowd, 1,
+                          p->target.sample + i * p->target.grid.count,
+                          p->match.sample + i * p->match.grid.count, 1,
+                          &part[i], NULL, NULL),
+          EF_OK);
+    }
+    assert_memory_equal(whole, part, sizeof whole);
+    assert_int_equal(n_lines, 1);
+    ef_crowd_free(crowd);
+    ef_population_free(population);
+    pairs_free(p);
+  }
+  ef_crowd_free(NULL);
+}
+
+/* A fold that failed is made anew at the next call. */
+static void a_crowd_goes_on_after_a_failure(void **state) {
+  (void)state;
+  pairs *const p = pairs_new(4);
+  ef_population *const population = make_many(3, 5);
+  const ef_spread_settings settings = ef_spread_settings_default();
+  ef_spread spread[N_PAIRS], again[N_PAIRS];
+  ef_error error;
+  ef_crowd *const crowd = ef_crowd_new(population, &p->target, &p->match,
+                                       &settings, NULL, NULL);
+  for (size_t n = 1;; ++n) {
+    fail_alloc_at(n);
+    const ef_status status =
+        ef_crowd_spread(crowd, N_PAIRS, p->target.sample, p->match.sample, 1,
+                        spread, NULL, &error);
+    fail_alloc_stop();
+    if (status == EF_OK) break;
+    assert_int_equal(status, EF_NO_MEMORY);
+    assert_true(n < 1000);
+  }
+  ef_population_spread(population, N_PAIRS, &p->target, &p->match, &settings, 1,
+                       again, NULL, NULL, NULL);
+  assert_memory_equal(spread, again, sizeof spread);
+  ((double *)p->surface)[1] = INFINITE;
+  assert_int_equal(ef_crowd_spread(crowd, N_PAIRS, p->target.sample,
+                                   p->match.sample, 1, spread, NULL, &error),
+                   EF_INVALID);
+  assert_error(&error, EF_INVALID, "sample 2 of target 1");
+  ef_crowd_free(crowd);
+  ef_population_free(population);
+  pairs_free(p);
+}
+
 static void spread_survives_a_lack_of_memory(void **state) {
   (void)state;
   pairs *const p = pairs_new(4);
@@ -438,6 +508,8 @@ int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(equals_a_loop_over_observers),
       cmocka_unit_test(statistics_are_those_of_the_differences),
+      cmocka_unit_test(a_crowd_sees_the_same),
+      cmocka_unit_test(a_crowd_goes_on_after_a_failure),
       cmocka_unit_test(weights_count_observers),
       cmocka_unit_test(weights_are_checked),
       cmocka_unit_test(blocks_and_threads_change_nothing),

@@ -204,7 +204,7 @@ typedef struct ef_spread {
  * `out` receives n results, `difference` (may be NULL) n x count differences.
  * Tristimulus values come from one product per block of observers
  * (ef_weights_apply); results do not depend on `jobs` (0: all cores). Works in
- * some 50 MB beside its arguments. EF_INVALID for a sample that is not finite,
+ * some 110 MB at most beside its arguments. EF_INVALID for a sample that is not finite,
  * for lights without a white, for a white that is dark, and for weights that
  * are none. */
 EF_API ef_status ef_population_spread(const ef_population *population,
@@ -214,6 +214,24 @@ EF_API ef_status ef_population_spread(const ef_population *population,
                                       int jobs, ef_spread *out,
                                       double *difference,
                                       const ef_notes *notes, ef_error *error);
+
+/** A population before two sides, for pairs that come in many blocks: weights
+ * are folded once and held, up to 64 MB of them. Opaque. */
+typedef struct ef_crowd ef_crowd;
+/** Sides and settings as for ef_population_spread; the samples of the sides are
+ * not looked at. The population and what sides and settings point to is
+ * borrowed until ef_crowd_free, `notes` too. NULL and the error otherwise. */
+EF_API ef_crowd *ef_crowd_new(const ef_population *population,
+                              const ef_side *target, const ef_side *match,
+                              const ef_spread_settings *settings,
+                              const ef_notes *notes, ef_error *error);
+EF_API void ef_crowd_free(ef_crowd *crowd);
+/** What each of them sees of n pairs, whose samples are `target` and `match`:
+ * the same digits as ef_population_spread gives. One call at a time. */
+EF_API ef_status ef_crowd_spread(ef_crowd *crowd, size_t n,
+                                 const double *target, const double *match,
+                                 int jobs, ef_spread *out, double *difference,
+                                 ef_error *error);
 
 /** A whole setup by its pairs. */
 typedef struct ef_spread_index {

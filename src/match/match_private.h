@@ -192,6 +192,12 @@ void ef__fill_amounts(double amount[3], ef_match *m);
 /** The limits at which the nearest colour of `m` stands. */
 void ef__fill_held(ef_match *m);
 
+/* ---- Crowds (population.c) --------------------------------------------- */
+
+/** The weights of at most so many blocks of observers stay from call to call;
+ * before the first call, for tests. */
+void ef__crowd_hold(ef_crowd *crowd, size_t n_blocks);
+
 /* ---- Dichromats (dichromat.c) ------------------------------------------ */
 
 /** See ef_match_adaptation; `field_matrix` is that of ef_cone_xyz_matrix. */

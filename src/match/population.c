@@ -2,7 +2,8 @@
 /* What a population sees of pairs. Observers go in blocks: one product gives
  * the tristimulus values of a block of pairs for a block of observers, then the
  * differences are taken pair by pair. Those of some pairs and all observers
- * are kept until their percentile is known. */
+ * are kept until their percentile is known. The weights of the first blocks are
+ * held from call to call, those of a very large population folded anew. */
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -15,6 +16,7 @@ enum {
   OBSERVERS = 128,    /* in a block: their weights fit into a cache of 2 MB */
   PAIRS = 512,        /* in a block: tristimulus values in 3 MB a side */
   KEPT = 4 * 1000000, /* differences kept at a time: 32 MB */
+  HELD = 64 << 20,    /* bytes of weights that stay from call to call */
   CHUNK = 4           /* pairs a thread takes: half a thousand differences */
 };
 
@@ -28,7 +30,7 @@ ef_spread_settings ef_spread_settings_default(void) {
 
 /* A block of observers and how each normalises what it sees. */
 typedef struct eyes {
-  size_t first, count;
+  size_t first, count; /* 0: not opened yet */
   ef_weights *weights[2]; /* of both sides; one and the same when they agree */
   struct {
     double target[9];  /* XYZ of the target's side -> on the match's white */
@@ -39,22 +41,30 @@ typedef struct eyes {
 } eyes;
 
 /* Everything a call needs. */
-typedef struct work {
+struct ef_crowd {
   const ef_population *population;
-  const ef_spread_settings *settings;
-  const ef_side *side[2];
+  ef_spread_settings settings;
+  ef_side side[2];
   bool sides_agree;  /* in grid and viewing: weights are shared */
   ef_deficiency deficiency;
   double field_matrix[9]; /* cones to X, Y, Z of everybody's field */
-  double *white[2];  /* samples of both whites */
-  double *xyz[2];    /* PAIRS x 3 OBSERVERS */
-  eyes *block;
   size_t n_observers;
   double threshold;
+  eyes *held; /* n_held of them, and one more for the blocks that are not */
+  size_t n_held;
+  bool is_noted; /* what lies outside the samples: the same for all */
+  const ef_notes *notes;
+  double *white[2]; /* samples of both whites */
+  void *block;      /* of held and white */
+  /* Of one call. */
+  const double *sample[2];
+  eyes *open;        /* the block of observers at hand */
+  double *xyz[2];    /* PAIRS x 3 OBSERVERS */
   size_t first_pair; /* of the pairs kept, first in xyz */
   double *kept;      /* n_kept x n_observers */
   ef_spread *out;    /* of the first pair kept */
-} work;
+};
+typedef ef_crowd work;
 
 /* ---- Checks ------------------------------------------------------------ */
 
@@ -71,9 +81,9 @@ static ef_status check_finite(size_t n, const double *value, size_t row,
   return EF_OK;
 }
 
-static ef_status check_side(const ef_side *side, size_t n, const char *name,
+static ef_status check_side(const ef_side *side, const char *name,
                             ef_error *error) {
-  ef_status status = ef_grid_check(&side->grid, error);
+  const ef_status status = ef_grid_check(&side->grid, error);
   if (status != EF_OK) return status;
   if (side->white == NULL && side->viewing.kind == EF_LIGHT) {
     return ef__error_set(error, EF_INVALID,
@@ -82,8 +92,7 @@ static ef_status check_side(const ef_side *side, size_t n, const char *name,
                          name);
   }
   const size_t count = side->grid.count;
-  status = check_finite(n * count, side->sample, count, name, error);
-  if (status != EF_OK || side->white == NULL) return status;
+  if (side->white == NULL) return EF_OK;
   return check_finite(count, side->white, count, "white", error);
 }
 
@@ -136,7 +145,7 @@ static void forget_eyes(eyes *block) {
 
 static ef_status make_weights(work *w, int jobs, const ef_notes *notes,
                               ef_error *error) {
-  eyes *const block = w->block;
+  eyes *const block = w->open;
   for (size_t s = 0; s < 2; ++s) {
     if (s == MATCH && w->sides_agree) {
       block->weights[MATCH] = block->weights[TARGET];
@@ -144,8 +153,8 @@ static ef_status make_weights(work *w, int jobs, const ef_notes *notes,
     }
     ef_error why;
     block->weights[s] = ef_population_weights(
-        w->population, block->first, block->count, &w->side[s]->grid,
-        &w->side[s]->viewing, jobs, notes, &why);
+        w->population, block->first, block->count, &w->side[s].grid,
+        &w->side[s].viewing, jobs, notes, &why);
     if (block->weights[s] != NULL) continue;
     if (error != NULL) *error = why;
     return why.status;
@@ -160,7 +169,7 @@ static ef_status normalise(work *w, size_t i, double white[2][3],
     if (white[s][1] > 0 && isfinite(100 / white[s][1])) continue;
     return ef__error_set(error, EF_INVALID,
                          "the white of the %s's side is dark for observer %zu",
-                         side_names[s], w->block->first + i + 1);
+                         side_names[s], w->open->first + i + 1);
   }
   const double factor[2] = {100 / white[TARGET][1], 100 / white[MATCH][1]};
   const bool is_same = memcmp(white[TARGET], white[MATCH],
@@ -169,18 +178,18 @@ static ef_status normalise(work *w, size_t i, double white[2][3],
                        factor[TARGET] * white[TARGET][2]};
   const ef_xyz to = {factor[MATCH] * white[MATCH][0], 100,
                      factor[MATCH] * white[MATCH][2]};
-  double *const matrix = w->block->own[i].target;
-  w->block->own[i].match = factor[MATCH];
-  w->block->own[i].conditions.white = to;
-  w->block->own[i].is_scale =
-      is_same || w->settings->adaptation == EF_ADAPT_NONE;
-  if (w->block->own[i].is_scale) {
+  double *const matrix = w->open->own[i].target;
+  w->open->own[i].match = factor[MATCH];
+  w->open->own[i].conditions.white = to;
+  w->open->own[i].is_scale =
+      is_same || w->settings.adaptation == EF_ADAPT_NONE;
+  if (w->open->own[i].is_scale) {
     matrix[0] = factor[TARGET];
     return EF_OK;
   }
   const ef_status status =
       w->deficiency == EF_TRICHROMAT
-          ? ef_adaptation_matrix(w->settings->adaptation, from, to, matrix,
+          ? ef_adaptation_matrix(w->settings.adaptation, from, to, matrix,
                                  error)
           : ef__dichromat_adaptation(w->deficiency, w->field_matrix, from, to,
                                      matrix, error);
@@ -188,14 +197,21 @@ static ef_status normalise(work *w, size_t i, double white[2][3],
   return status;
 }
 
-static ef_status open_eyes(work *w, size_t first, int jobs,
-                           const ef_notes *notes, ef_error *error) {
-  eyes *const block = w->block;
+/* The block of observers that starts with `first`: held, or folded now. */
+static ef_status open_eyes(work *w, size_t first, int jobs, ef_error *error) {
+  const size_t number = first / OBSERVERS;
+  const bool is_held = number < w->n_held;
+  eyes *const block = &w->held[is_held ? number : w->n_held];
   double xyz[2][3 * OBSERVERS];
+  w->open = block;
+  if (is_held && block->count > 0) return EF_OK;
+  forget_eyes(block);
   const size_t left = w->n_observers - first;
   block->first = first;
   block->count = left < OBSERVERS ? left : OBSERVERS;
-  ef_status status = make_weights(w, jobs, notes, error);
+  ef_status status =
+      make_weights(w, jobs, w->is_noted ? NULL : w->notes, error);
+  w->is_noted = true;
   for (size_t s = 0; s < 2 && status == EF_OK; ++s) {
     status = ef_weights_apply(block->weights[s], 1, w->white[s], 1, xyz[s],
                               error);
@@ -207,6 +223,7 @@ static ef_status open_eyes(work *w, size_t first, int jobs,
     }
     status = normalise(w, i, white, error);
   }
+  if (status != EF_OK) block->count = 0;
   return status;
 }
 
@@ -215,8 +232,8 @@ static ef_status open_eyes(work *w, size_t first, int jobs,
 /* Pairs [begin, end) of the block in xyz, for the block of observers. */
 static void compare(void *context, size_t begin, size_t end) {
   const work *const w = context;
-  const eyes *const block = w->block;
-  const ef_metric *const metric = w->settings->metric;
+  const eyes *const block = w->open;
+  const ef_metric *const metric = w->settings.metric;
   double reference[3 * OBSERVERS], sample[3 * OBSERVERS];
   for (size_t p = begin; p < end; ++p) {
     const double *const target = w->xyz[TARGET] + p * 3 * block->count;
@@ -249,10 +266,10 @@ static ef_status see_pairs(work *w, size_t pair, size_t n_kept, int jobs,
     const size_t left = n_kept - first;
     const size_t n = left < PAIRS ? left : PAIRS;
     for (size_t s = 0; s < 2; ++s) {
-      const size_t row = w->side[s]->grid.count;
+      const size_t row = w->side[s].grid.count;
       const ef_status status = ef_weights_apply(
-          w->block->weights[s], n, w->side[s]->sample + (pair + first) * row,
-          jobs, w->xyz[s], error);
+          w->open->weights[s], n, w->sample[s] + (pair + first) * row, jobs,
+          w->xyz[s], error);
       if (status != EF_OK) return status;
     }
     w->first_pair = first;
@@ -294,7 +311,7 @@ static double weighted_percentile_95(size_t n, const double *value,
 
 static ef_spread summarise_weighted(const work *w, const double *value) {
   const size_t n = w->n_observers;
-  const double *const weight = w->settings->weight;
+  const double *const weight = w->settings.weight;
   double sum = 0, above = 0, whole = 0;
   for (size_t i = 0; i < n; ++i) {
     whole += weight[i];
@@ -319,7 +336,7 @@ static void summarise(void *context, size_t begin, size_t end) {
       w->out[p] = (ef_spread){none, none, none};
       continue;
     }
-    w->out[p] = w->settings->weight == NULL ? summarise_alike(w, value)
+    w->out[p] = w->settings.weight == NULL ? summarise_alike(w, value)
                                             : summarise_weighted(w, value);
     if (isnan(w->threshold)) w->out[p].share_of_observers = none;
   }
@@ -333,34 +350,60 @@ static size_t least(size_t a, size_t b) {
 
 /* All observers, pairs [pair, pair + n_kept). */
 static ef_status spread_of(work *w, size_t pair, size_t n_kept, int jobs,
-                           const ef_notes *notes, ef_error *error) {
+                           ef_error *error) {
   ef_status status = EF_OK;
   for (size_t o = 0; o < w->n_observers && status == EF_OK; o += OBSERVERS) {
-    /* What lies outside the samples is the same for all: said once. */
-    const bool is_first = pair == 0 && o == 0;
-    status = open_eyes(w, o, jobs, is_first ? notes : NULL, error);
+    status = open_eyes(w, o, jobs, error);
     if (status == EF_OK) status = see_pairs(w, pair, n_kept, jobs, error);
-    forget_eyes(w->block);
   }
   return status;
 }
 
-static ef_status allocate(work *w, size_t n, size_t *n_kept, void **block,
-                          ef_error *error) {
+static ef_status allocate_call(work *w, size_t n, size_t *n_kept, void **block,
+                               ef_error *error) {
   const size_t fitting = KEPT / w->n_observers;
   *n_kept = least(n, fitting > 0 ? fitting : 1);
   const size_t n_xyz = least(*n_kept, PAIRS) * 3 * OBSERVERS;
   const ef__part parts[] = {
-      {&w->white[TARGET], w->side[TARGET]->grid.count, sizeof(double)},
-      {&w->white[MATCH], w->side[MATCH]->grid.count, sizeof(double)},
       {&w->xyz[TARGET], n_xyz, sizeof(double)},
       {&w->xyz[MATCH], n_xyz, sizeof(double)},
-      {&w->block, 1, sizeof *w->block},
       {&w->kept, *n_kept * w->n_observers, sizeof(double)}};
   *block = ef__allocate_block(sizeof parts / sizeof *parts, parts);
   if (*block == NULL) return ef__error_memory(error, "what a population sees");
   return EF_OK;
 }
+
+ef_status ef_crowd_spread(ef_crowd *crowd, size_t n, const double *target,
+                          const double *match, int jobs, ef_spread *out,
+                          double *difference, ef_error *error) {
+  work *const w = crowd;
+  size_t n_kept;
+  void *block = NULL;
+  ef_status status = EF_OK;
+  w->sample[TARGET] = target;
+  w->sample[MATCH] = match;
+  for (size_t s = 0; s < 2 && status == EF_OK; ++s) {
+    const size_t count = w->side[s].grid.count;
+    status = check_finite(n * count, w->sample[s], count, side_names[s], error);
+  }
+  if (status == EF_OK) status = allocate_call(w, n, &n_kept, &block, error);
+  if (status != EF_OK) return status;
+  for (size_t pair = 0; pair < n && status == EF_OK; pair += n_kept) {
+    const size_t n_here = least(n - pair, n_kept);
+    status = spread_of(w, pair, n_here, jobs, error);
+    if (status != EF_OK) break;
+    if (difference != NULL) {
+      memcpy(difference + pair * w->n_observers, w->kept,
+             n_here * w->n_observers * sizeof *difference);
+    }
+    w->out = out + pair;
+    ef__parallel_for(n_here, CHUNK, jobs, summarise, w);
+  }
+  free(block);
+  return status;
+}
+
+/* ---- A crowd ----------------------------------------------------------- */
 
 static void set_white(const ef_side *side, double *white) {
   for (size_t i = 0; i < side->grid.count; ++i) {
@@ -368,47 +411,100 @@ static void set_white(const ef_side *side, double *white) {
   }
 }
 
+static ef_status allocate(work *w, ef_error *error) {
+  const size_t n_blocks = (w->n_observers + OBSERVERS - 1) / OBSERVERS;
+  const size_t n_samples = w->side[TARGET].grid.count +
+                           (w->sides_agree ? 0 : w->side[MATCH].grid.count);
+  const size_t size =
+      sizeof(eyes) + 3 * OBSERVERS * n_samples * sizeof(double);
+  w->n_held = least(n_blocks, HELD / size);
+  const ef__part parts[] = {
+      {&w->white[TARGET], w->side[TARGET].grid.count, sizeof(double)},
+      {&w->white[MATCH], w->side[MATCH].grid.count, sizeof(double)},
+      {&w->held, w->n_held + 1, sizeof *w->held}};
+  w->block = ef__allocate_block(sizeof parts / sizeof *parts, parts);
+  if (w->block == NULL)
+    return ef__error_memory(error, "what a population sees");
+  for (size_t i = 0; i <= w->n_held; ++i) {
+    w->held[i].count = 0;
+    w->held[i].weights[TARGET] = w->held[i].weights[MATCH] = NULL;
+  }
+  return EF_OK;
+}
+
+static ef_status check(const work *w, ef_error *error) {
+  ef_status status = EF_OK;
+  for (size_t s = 0; s < 2 && status == EF_OK; ++s) {
+    status = check_side(&w->side[s], side_names[s], error);
+  }
+  if (status == EF_OK) {
+    status = check_weights(w->settings.weight, w->n_observers, error);
+  }
+  return status;
+}
+
+ef_crowd *ef_crowd_new(const ef_population *population, const ef_side *target,
+                       const ef_side *match,
+                       const ef_spread_settings *settings,
+                       const ef_notes *notes, ef_error *error) {
+  ef_crowd *const w = ef__allocate_zeroed(1, sizeof *w);
+  if (w == NULL) {
+    ef__error_memory(error, "what a population sees");
+    return NULL;
+  }
+  w->population = population;
+  w->settings = *settings;
+  w->side[TARGET] = *target;
+  w->side[MATCH] = *match;
+  w->sides_agree = agree(target, match);
+  w->n_observers = ef_population_count(population);
+  w->deficiency = ef_population_member(population, 0).deficiency;
+  w->threshold = isnan(settings->threshold)
+                     ? ef_metric_jnd(settings->metric).value
+                     : settings->threshold;
+  w->notes = notes;
+  ef_status status = check(w, error);
+  if (status == EF_OK) {
+    status = ef_cone_xyz_matrix(ef_population_field_deg(population),
+                                w->field_matrix, NULL, error);
+  }
+  if (status == EF_OK) status = allocate(w, error);
+  if (status != EF_OK) {
+    ef_crowd_free(w);
+    return NULL;
+  }
+  for (size_t s = 0; s < 2; ++s) set_white(&w->side[s], w->white[s]);
+  return w;
+}
+
+void ef_crowd_free(ef_crowd *crowd) {
+  if (crowd == NULL) return;
+  for (size_t i = 0; crowd->block != NULL && i <= crowd->n_held; ++i) {
+    forget_eyes(&crowd->held[i]);
+  }
+  free(crowd->block);
+  free(crowd);
+}
+
+void ef__crowd_hold(ef_crowd *crowd, size_t n_blocks) {
+  crowd->n_held = least(crowd->n_held, n_blocks);
+}
+
 ef_status ef_population_spread(const ef_population *population, size_t n,
                                const ef_side *target, const ef_side *match,
                                const ef_spread_settings *settings, int jobs,
                                ef_spread *out, double *difference,
                                const ef_notes *notes, ef_error *error) {
-  work w = {.population = population,
-            .settings = settings,
-            .side = {target, match},
-            .sides_agree = agree(target, match),
-            .n_observers = ef_population_count(population),
-            .deficiency = ef_population_member(population, 0).deficiency,
-            .threshold = isnan(settings->threshold)
-                             ? ef_metric_jnd(settings->metric).value
-                             : settings->threshold};
-  size_t n_kept;
-  void *block = NULL;
-  ef_status status = check_side(target, n, side_names[TARGET], error);
-  if (status == EF_OK) status = check_side(match, n, side_names[MATCH], error);
-  if (status == EF_OK) {
-    status = check_weights(settings->weight, w.n_observers, error);
+  ef_error why = {0};
+  ef_crowd *const crowd =
+      ef_crowd_new(population, target, match, settings, notes, &why);
+  if (crowd == NULL) {
+    if (error != NULL) *error = why;
+    return why.status;
   }
-  if (status == EF_OK) {
-    status = ef_cone_xyz_matrix(ef_population_field_deg(population),
-                                w.field_matrix, NULL, error);
-  }
-  if (status == EF_OK) status = allocate(&w, n, &n_kept, &block, error);
-  if (status != EF_OK) return status;
-  set_white(target, w.white[TARGET]);
-  set_white(match, w.white[MATCH]);
-  for (size_t pair = 0; pair < n && status == EF_OK; pair += n_kept) {
-    const size_t n_here = least(n - pair, n_kept);
-    status = spread_of(&w, pair, n_here, jobs, notes, error);
-    if (status != EF_OK) break;
-    if (difference != NULL) {
-      memcpy(difference + pair * w.n_observers, w.kept,
-             n_here * w.n_observers * sizeof *difference);
-    }
-    w.out = out + pair;
-    ef__parallel_for(n_here, CHUNK, jobs, summarise, &w);
-  }
-  free(block);
+  const ef_status status = ef_crowd_spread(
+      crowd, n, target->sample, match->sample, jobs, out, difference, error);
+  ef_crowd_free(crowd);
   return status;
 }
 

@@ -222,6 +222,26 @@ static ef_status check_worst_case(const compare_scene *s, ef_error *error) {
       "that match there do in others follows from spectra only");
 }
 
+/* Whoever stands before the first observer's looks, seeing both sides on the
+ * standards' wavelengths. */
+static ef_status gather_people(compare_scene *s, ef_error *error) {
+  ef_spread_settings settings = ef_spread_settings_default();
+  settings.metric = s->metric;
+  settings.threshold = s->jnd.record.value;
+  for (size_t k = 0; k < s->looks.n; ++k) {
+    const look *l = &s->looks.at[k];
+    if (l->observer != s->looks.at[0].observer)
+      continue;
+    const ef_side side = {.grid = finish_file_head(s->standard)->grid,
+                          .viewing = ef_viewing_default(l->illuminant)};
+    s->crowd[k] = ef_crowd_new(s->people.population, &side, &side, &settings,
+                               NULL, error);
+    if (s->crowd[k] == NULL)
+      return error->status;
+  }
+  return EF_OK;
+}
+
 static ef_status set_people(compare_scene *s, const ef_notes *notes,
                             ef_error *error) {
   const command_options *o = s->options;
@@ -232,8 +252,9 @@ static ef_status set_people(compare_scene *s, const ef_notes *notes,
                         "--population: what other people see follows from "
                         "spectra only, and these are colours");
   }
-  return people_load(&s->people, o, 1000, s->looks.at[0].observer, notes,
-                     error);
+  const ef_status status =
+      people_load(&s->people, o, 1000, s->looks.at[0].observer, notes, error);
+  return status == EF_OK ? gather_people(s, error) : status;
 }
 
 /* ---- The scene --------------------------------------------------------- */
@@ -280,6 +301,8 @@ ef_status compare_scene_load(compare_scene *s, const command_options *options,
 }
 
 void compare_scene_free(compare_scene *s) {
+  for (size_t k = 0; k < LOOKS_MOST; ++k)
+    ef_crowd_free(s->crowd[k]);
   people_free(&s->people);
   free(s->worst_case);
   finish_file_free(s->batch);

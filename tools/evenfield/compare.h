@@ -4,6 +4,8 @@
 #ifndef COMMAND_COMPARE_H
 #define COMMAND_COMPARE_H
 
+#include <evenfield/match.h>
+
 #include "finish.h"
 #include "jnd.h"
 #include "people.h"
@@ -37,7 +39,9 @@ typedef struct compare_scene {
   finish_file *standard, *batch; /**< one file: `batch` NULL */
   bool has_spectra;              /**< both sides */
   bool same_grid;
-  people people;          /**< population NULL: none asked for */
+  people people; /**< population NULL: none asked for */
+  /** They before each look of the first observer; NULL for the others. */
+  ef_crowd *crowd[LOOKS_MOST];
   worst_case *worst_case; /**< of --worst-case, with one standard; owned */
   size_t n_worst_cases;
   const ef_notes *notes;

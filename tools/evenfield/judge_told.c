@@ -4,8 +4,6 @@
 #include <math.h>
 #include <stdlib.h>
 
-#include <evenfield/match.h>
-
 #include "judge_work.h"
 #include "message.h"
 
@@ -129,27 +127,15 @@ void judge_nothing(work *w) {
 
 /* ---- People ------------------------------------------------------------ */
 
-static ef_side side_of(const compare_scene *s, const double *samples,
-                       size_t under) {
-  return (ef_side){.grid = finish_file_head(s->standard)->grid,
-                   .sample = samples,
-                   .viewing =
-                       ef_viewing_default(s->looks.at[under].illuminant)};
-}
-
 /* The sights first .. first + n under one light, as the people see them. */
 static ef_status see(work *w, size_t under, size_t first, size_t n,
                      told_group *g, ef_spread *spread, ef_error *error) {
   const compare_scene *s = w->s;
   const size_t width = finish_file_head(s->standard)->grid.count;
-  const ef_side standard = side_of(s, w->spectrum[0] + first * width, under);
-  const ef_side sample = side_of(s, w->spectrum[1] + first * width, under);
-  ef_spread_settings settings = ef_spread_settings_default();
-  settings.metric = s->metric;
-  settings.threshold = s->jnd.record.value;
-  ef_status status = ef_population_spread(s->people.population, n, &standard,
-                                          &sample, &settings, s->options->jobs,
-                                          spread, g->difference, NULL, error);
+  ef_status status =
+      ef_crowd_spread(s->crowd[under], n, w->spectrum[0] + first * width,
+                      w->spectrum[1] + first * width, s->options->jobs, spread,
+                      g->difference, error);
   for (size_t i = 0; i < n && status == EF_OK; ++i) {
     outcome *o = work_outcome(w, first + i, under);
     o->population_mean = spread[i].mean;
@@ -173,7 +159,7 @@ ef_status judge_people(work *w, ef_error *error) {
   if (status == EF_OK && spread == NULL)
     status = message_fail(error, EF_NO_MEMORY, "out of memory for people");
   for (size_t k = 0; k < w->n_looks && status == EF_OK; ++k) {
-    if (s->looks.at[k].observer != s->looks.at[0].observer)
+    if (s->crowd[k] == NULL)
       continue;
     for (size_t i = 0; i < w->n && status == EF_OK; i += at_once) {
       const size_t left = w->n - i;
