@@ -2,6 +2,7 @@
 /* Ellipses as forms and axes, their spaces, errors. */
 #include <evenfield/difference.h>
 
+#include "fail_alloc.h"
 #include "gen.h"
 #include "near.h"
 
@@ -337,6 +338,92 @@ static void macadam_refuses_what_is_no_chromaticity(void **state) {
   assert_error(&error, EF_INVALID, "size -1");
 }
 
+/* ---- Experiments on surface colours ------------------------------------ */
+
+static const ef_conditions daylight = {.white = {94.811, 100, 107.304}};
+
+static void experiments_by_name(void **state) {
+  (void)state;
+  ef_error error = {0};
+  for (size_t i = 0; i < ef_experiment_count(); ++i) {
+    ef_experiment *const e =
+        ef_experiment_new(ef_experiment_name_at(i), &error);
+    assert_non_null(e);
+    assert_true(strlen(ef_experiment_source(e)) > 40);
+    assert_true(strlen(ef_experiment_remark(e)) > 40);
+    assert_null(ef_experiment_center(e, ef_experiment_center_count(e), NULL));
+    ef_experiment_free(e);
+  }
+  assert_null(ef_experiment_name_at(ef_experiment_count()));
+  assert_null(ef_experiment_new("huang-2021", &error));
+  assert_error(&error, EF_UNKNOWN_NAME, "huang-2012");
+  assert_null(ef_experiment_new(NULL, NULL));
+  ef_experiment_free(NULL);
+}
+
+static ef_ellipsoid experiment_at(const ef_experiment *e, ef_lab lab,
+                                  double size, ef_nearest_center *nearest) {
+  const ef_frame frame = frame_of(EF_SPACE_LAB);
+  ef_ellipsoid out;
+  ef_error error = {0};
+  if (ef_experiment_ellipsoid(e, ef_lab_to_xyz(lab, daylight.white), &daylight,
+                              &frame, size, &out, nearest, &error) != EF_OK)
+    fail_msg("%s", error.message);
+  return out;
+}
+
+/* Half way between two centres and far from the others both count alike; a
+ * step beside a centre changes little; sizes are lengths. */
+static void between_the_centres(void **state) {
+  (void)state;
+  ef_experiment *const e = ef_experiment_new("rit-dupont-1997", NULL);
+  ef_nearest_center nearest;
+  const ef_lab yellow = {76.057, 18.226, 79.894}; /* the last centre */
+  const ef_ellipsoid own = experiment_at(e, yellow, 1, &nearest);
+  assert_string_equal(nearest.name, "strong orange yellow");
+  assert_near(nearest.difference, 0, 1e-9);
+  assert_near(own.tensor[8], 0.4228, 1e-12);  /* gLL */
+  assert_near(own.tensor[0], 0.2896, 1e-12);  /* gaa */
+  assert_near(own.tensor[1], 0.0023, 1e-12);  /* gab */
+  assert_near(own.tensor[5], -0.0288, 1e-12); /* gLb */
+  const ef_lab beside = {76.057, 18.226, 79.794};
+  const ef_ellipsoid near = experiment_at(e, beside, 1, &nearest);
+  assert_near(nearest.difference, 0.1, 1e-9);
+  /* Weights of (0.1 / 44)^4 or less. */
+  for (int k = 0; k < 9; ++k)
+    assert_near(near.tensor[k], own.tensor[k], 1e-9);
+  const ef_ellipsoid twice = experiment_at(e, yellow, 2, NULL);
+  for (int k = 0; k < 3; ++k)
+    assert_near_relative(twice.semi_axis[k], 2 * own.semi_axis[k], 1e-12);
+  ef_experiment_free(e);
+}
+
+static void experiments_refuse(void **state) {
+  (void)state;
+  ef_experiment *const e = ef_experiment_new("luo-rigg-1986", NULL);
+  const ef_frame frame = frame_of(EF_SPACE_XY);
+  ef_ellipsoid out;
+  ef_error error = {0};
+  const ef_xyz grey = {19, 20, 21};
+  assert_int_equal(ef_experiment_ellipsoid(e, grey, &daylight, &frame, 0, &out,
+                                           NULL, &error),
+                   EF_INVALID);
+  assert_error(&error, EF_INVALID, "size 0");
+  assert_int_equal(ef_experiment_ellipsoid(e, (ef_xyz){NOT_A_NUMBER, 20, 21},
+                                           &daylight, &frame, 1, &out, NULL,
+                                           &error),
+                   EF_INVALID);
+  assert_error(&error, EF_INVALID, "no colour");
+  assert_int_equal(ef_experiment_ellipsoid(e, (ef_xyz){0, 0, 0}, &daylight,
+                                           &frame, 1, &out, NULL, &error),
+                   EF_NO_ANSWER);
+  fail_alloc_at(1);
+  assert_null(ef_experiment_new("huang-2012", &error));
+  assert_true(fail_alloc_stop());
+  assert_error(&error, EF_NO_MEMORY, "experiment");
+  ef_experiment_free(e);
+}
+
 int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(axes_and_form_are_one),
@@ -353,6 +440,9 @@ int main(void) {
       cmocka_unit_test(lamps_by_name),
       cmocka_unit_test(macadam_at_and_between_his_centres),
       cmocka_unit_test(macadam_refuses_what_is_no_chromaticity),
+      cmocka_unit_test(experiments_by_name),
+      cmocka_unit_test(between_the_centres),
+      cmocka_unit_test(experiments_refuse),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
   return cmocka_run_group_tests(tests, NULL, NULL);

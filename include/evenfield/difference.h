@@ -287,6 +287,54 @@ EF_API const ef_lamp_colour *ef_lamp_at(size_t i);
 EF_API const ef_lamp_colour *ef_lamp_find(const char *name, ef_error *error);
 EF_API ef_ellipse ef_lamp_ellipse(const ef_lamp_colour *lamp, double n_steps);
 
+/* ---- Ellipses of surface colours from experiments ---------------------- */
+
+/** Published ellipses or ellipsoids about colours of surfaces, for D65 and the
+ * CIE 1964 observer: "luo-rigg-1986" (88 ellipses), "rit-dupont-1997" (19
+ * ellipsoids) and "huang-2012" (17 ellipses). Owns memory. */
+typedef struct ef_experiment ef_experiment;
+
+EF_API size_t ef_experiment_count(void);
+/** NULL beyond the last. */
+EF_API const char *ef_experiment_name_at(size_t i);
+/** NULL and EF_UNKNOWN_NAME with the nearest names. Free with
+ * ef_experiment_free. */
+EF_API ef_experiment *ef_experiment_new(const char *name, ef_error *error);
+EF_API void ef_experiment_free(ef_experiment *experiment);
+/** "Luo and Rigg (1986)"; where it was published; what its size means. Static.
+ */
+EF_API const char *ef_experiment_title(const ef_experiment *experiment);
+EF_API const char *ef_experiment_source(const ef_experiment *experiment);
+EF_API const char *ef_experiment_remark(const ef_experiment *experiment);
+/** Ellipsoids: lightness took part. Of the others sections at constant
+ * luminance alone have a meaning, and what ef_experiment_ellipsoid says of the
+ * third direction has none. */
+EF_API bool ef_experiment_is_solid(const ef_experiment *experiment);
+EF_API size_t ef_experiment_center_count(const ef_experiment *experiment);
+/** Name of a centre (static), and where it lies (`lab` may be NULL); NULL
+ * beyond the last. */
+EF_API const char *ef_experiment_center(const ef_experiment *experiment,
+                                        size_t i, ef_lab *lab);
+
+/** The centre that a colour is next to. */
+typedef struct ef_nearest_center {
+  const char *name;  /**< static */
+  double difference; /**< CIELAB */
+} ef_nearest_center;
+
+/** At any colour, `size` times as large as published; `conditions` has the
+ * white of D65 for CIE 1964. Between the centres the logarithms of the matrices
+ * in CIELAB are averaged with the weights 1 / difference^4: the published ones
+ * at the centres, smooth, an ellipsoid everywhere. `nearest` may be NULL; far
+ * from all centres the result is little more than a guess. */
+EF_API ef_status ef_experiment_ellipsoid(const ef_experiment *experiment,
+                                         ef_xyz xyz,
+                                         const ef_conditions *conditions,
+                                         const ef_frame *frame, double size,
+                                         ef_ellipsoid *out,
+                                         ef_nearest_center *nearest,
+                                         ef_error *error);
+
 /* ---- Metamerism (CIE 015:2018) ----------------------------------------- */
 
 /** An observer and how surfaces are seen. */

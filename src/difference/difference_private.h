@@ -129,8 +129,7 @@ double ef__adapting_luminance_cd_m2(const ef_conditions *conditions);
 /* ---- Shared by formulas on CIELAB (lab_based.c) ------------------------ */
 
 void ef__lab_coordinates(const ef_metric *self, ef_xyz xyz,
-                         const ef_conditions *conditions,
-                         double coordinate[3]);
+                         const ef_conditions *conditions, double coordinate[3]);
 ef_xyz ef__lab_inverse(const ef_metric *self, const double coordinate[3],
                        const ef_conditions *conditions);
 void ef__lab_jacobian(const ef_metric *self, ef_xyz xyz,
@@ -151,14 +150,14 @@ double ef__delta_hue(double a1, double b1, double a2, double b2,
 /** Terms of the formula that the expansion needs too. Equation numbers are
  * those of Sharma, Wu & Dalal (2005). */
 typedef struct ef__ciede2000 {
-  double one_plus_g;                     /* eq. 4 */
-  double chroma1, chroma2;               /* C'1, C'2, eq. 6 */
-  double delta_l, delta_c, delta_h;      /* eq. 8, 9, 11 */
-  double mean_l, mean_c;                 /* eq. 12, 13 */
-  double mean_h_deg;                     /* eq. 14; 0 where it has no effect */
-  double cos_h, sin_h;                   /* of the mean hue */
-  double hue_weight;                     /* T, eq. 15 */
-  double s_l, s_c, s_h, r_t;             /* eq. 18 to 21 */
+  double one_plus_g;                /* eq. 4 */
+  double chroma1, chroma2;          /* C'1, C'2, eq. 6 */
+  double delta_l, delta_c, delta_h; /* eq. 8, 9, 11 */
+  double mean_l, mean_c;            /* eq. 12, 13 */
+  double mean_h_deg;                /* eq. 14; 0 where it has no effect */
+  double cos_h, sin_h;              /* of the mean hue */
+  double hue_weight;                /* T, eq. 15 */
+  double s_l, s_c, s_h, r_t;        /* eq. 18 to 21 */
 } ef__ciede2000;
 
 void ef__ciede2000_terms(const double reference[3], const double sample[3],
@@ -208,8 +207,7 @@ double ef__scaled_difference(ef__scale scale, const double reference[3],
 void ef__scaled_differences(ef__scale scale, size_t n, const double *reference,
                             const double *sample, double *difference);
 double ef__scaled_components(ef__scale scale, const double reference[3],
-                             const double sample[3],
-                             ef_components *components);
+                             const double sample[3], ef_components *components);
 void ef__scaled_tensor(ef__scale scale, double tensor[9]);
 void ef__scaled_expand(ef__scale scale, const double reference[3],
                        const double sample[3], ef__expansion *out);
@@ -235,12 +233,33 @@ double ef__polar_least(const ef__polar_weights *w, const double reference[3],
 void ef__numeric_tensor(const ef_metric *metric, const double coordinate[3],
                         double tensor[9]);
 
-/* ---- Experiments (macadam.c) ------------------------------------------- */
+/* ---- Forms (ellipsoid.c) ----------------------------------------------- */
+
+/** Eigenvalues of a symmetric 3 x 3 matrix, the smallest first, and as row i of
+ * `axis` the unit vector of value i. */
+void ef__symmetric_axes(const double form[9], double value[3], double axis[9]);
+/** False with its error unless above zero. */
+bool ef__is_ellipse_size(double size, ef_error *error);
+/** A form in coordinates whose derivatives by X, Y, Z are `jacobian`, taken to
+ * a frame. EF_NO_ANSWER, in the name of `name`, where there is no ellipse. */
+ef_status ef__ellipsoid_carry(const char *name, const double form[9],
+                              const double jacobian[9], double size, ef_xyz xyz,
+                              const ef_conditions *conditions,
+                              const ef_frame *frame, ef_ellipsoid *out,
+                              ef_error *error);
+
+/* ---- Experiments (macadam.c, experiment.c) ----------------------------- */
 
 /** ef_macadam_ellipse as if one of the centres were not there; none for their
  * number. */
 ef_status ef__macadam_without(ef_xy at, double size, size_t left_out,
                               ef_ellipse *out, ef_error *error);
+/** The same of ef_experiment_ellipsoid. */
+ef_status ef__experiment_without(const ef_experiment *e, ef_xyz xyz,
+                                 const ef_conditions *conditions,
+                                 const ef_frame *frame, double size,
+                                 size_t left_out, ef_ellipsoid *out,
+                                 ef_nearest_center *nearest, ef_error *error);
 
 /* ---- Tasks (task.c) ----------------------------------------------------- */
 

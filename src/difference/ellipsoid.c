@@ -1,6 +1,6 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-/* The tensor of a formula carried to a space, as an ellipsoid and its plane
- * figures. */
+/* A form carried to a space, as an ellipsoid and its plane figures: the tensor
+ * of a formula, or what an experiment found. */
 #include <math.h>
 #include <string.h>
 
@@ -44,9 +44,9 @@ static void rotate(double a[9], double axes[9], int p, int q) {
   a[3 * p + q] = a[3 * q + p] = 0;
 }
 
-static void set_axes(ef_ellipsoid *e) {
+void ef__symmetric_axes(const double form[9], double value[3], double axis[9]) {
   double a[9], axes[9] = {1, 0, 0, 0, 1, 0, 0, 0, 1};
-  memcpy(a, e->tensor, sizeof a);
+  memcpy(a, form, sizeof a);
   /* Converges quadratically: six sweeps are more than doubles can use. */
   for (int sweep = 0; sweep < 6; ++sweep) {
     rotate(a, axes, 0, 1);
@@ -61,8 +61,8 @@ static void set_axes(ef_ellipsoid *e) {
         least = k;
     }
     used[least] = true;
-    e->semi_axis[i] = 1 / sqrt(a[4 * least]);
-    memcpy(e->direction + 3 * i, axes + 3 * least, 3 * sizeof *axes);
+    value[i] = a[4 * least];
+    memcpy(axis + 3 * i, axes + 3 * least, 3 * sizeof *axes);
   }
 }
 
@@ -76,20 +76,51 @@ static bool is_positive_definite(const double g[9]) {
          ef__mat3_determinant(g) > 0;
 }
 
-ef_status ef_metric_ellipsoid(const ef_metric *metric, ef_xyz xyz,
+ef_status ef__ellipsoid_carry(const char *name, const double form[9],
+                              const double jacobian[9], double size, ef_xyz xyz,
                               const ef_conditions *conditions,
-                              const ef_frame *frame, double size,
-                              ef_ellipsoid *out, ef_error *error) {
-  if (!(size > 0 && isfinite(size))) {
-    return ef__error_set(error, EF_INVALID,
-                         "an ellipse of size %g; it must be above zero", size);
-  }
+                              const ef_frame *frame, ef_ellipsoid *out,
+                              ef_error *error) {
   ef_ellipsoid e;
-  double to_space[9], back[9], coordinate[3], j[9], tensor[9], slopes[9];
+  double to_space[9], back[9], slopes[9], value[3];
   const ef_status status =
       ef_frame_coordinates(frame, xyz, conditions, e.center, to_space, error);
   if (status != EF_OK)
     return status;
+  const bool regular = ef__mat3_inverse(to_space, back);
+  if (regular) {
+    ef__mat3_multiply(jacobian, back, slopes);
+    congruent(form, slopes, e.tensor);
+    for (int i = 0; i < 9; ++i)
+      e.tensor[i] /= size * size;
+  }
+  if (!regular || !is_positive_definite(e.tensor)) {
+    return ef__error_set(error, EF_NO_ANSWER,
+                         "%s has no ellipse in %s at X %g, Y %g, Z %g", name,
+                         ef_space_name(frame->space), xyz.X, xyz.Y, xyz.Z);
+  }
+  ef__symmetric_axes(e.tensor, value, e.direction);
+  for (int i = 0; i < 3; ++i)
+    e.semi_axis[i] = 1 / sqrt(value[i]);
+  *out = e;
+  return EF_OK;
+}
+
+bool ef__is_ellipse_size(double size, ef_error *error) {
+  if (size > 0 && isfinite(size))
+    return true;
+  ef__error_set(error, EF_INVALID,
+                "an ellipse of size %g; it must be above zero", size);
+  return false;
+}
+
+ef_status ef_metric_ellipsoid(const ef_metric *metric, ef_xyz xyz,
+                              const ef_conditions *conditions,
+                              const ef_frame *frame, double size,
+                              ef_ellipsoid *out, ef_error *error) {
+  double coordinate[3], j[9], tensor[9];
+  if (!ef__is_ellipse_size(size, error))
+    return EF_INVALID;
   metric->coordinates(metric, xyz, conditions, coordinate);
   if (metric->chord != NULL) {
     metric->chord(metric, xyz, conditions, size, j);
@@ -97,21 +128,8 @@ ef_status ef_metric_ellipsoid(const ef_metric *metric, ef_xyz xyz,
     metric->jacobian(metric, xyz, conditions, j);
   }
   metric->tensor(metric, coordinate, tensor);
-  const bool regular = ef__mat3_inverse(to_space, back);
-  if (regular) {
-    ef__mat3_multiply(j, back, slopes);
-    congruent(tensor, slopes, e.tensor);
-    for (int i = 0; i < 9; ++i)
-      e.tensor[i] /= size * size;
-  }
-  if (!regular || !is_positive_definite(e.tensor)) {
-    return ef__error_set(
-        error, EF_NO_ANSWER, "%s has no ellipse in %s at X %g, Y %g, Z %g",
-        metric->name, ef_space_name(frame->space), xyz.X, xyz.Y, xyz.Z);
-  }
-  set_axes(&e);
-  *out = e;
-  return EF_OK;
+  return ef__ellipsoid_carry(metric->name, tensor, j, size, xyz, conditions,
+                             frame, out, error);
 }
 
 /* The section leaves the third row and column out; the projection is its Schur

@@ -1,5 +1,6 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include <math.h>
+#include <string.h>
 
 #include "command.h"
 #include "ellipse.h"
@@ -36,24 +37,28 @@ static ef_status run_data(ellipse_scene *s, const ef_notes *notes,
   return status;
 }
 
-/* Options that only a formula has a use for. */
+/* Options that only a formula has a use for; ellipsoids are known of one
+ * experiment too. */
 static exit_code check_formula_only(const command_options *o) {
+  const bool is_plane = o->basis != BASIS_RIT_DUPONT;
   const char *wrong = o->metric != NULL                ? "--metric"
                       : o->jnd_text != NULL            ? "--jnd"
                       : o->criterion != NULL           ? "--criterion"
                       : !isnan(o->size)                ? "--size"
+                      : !is_plane                      ? NULL
                       : o->figure == FIGURE_PROJECTION ? "--figure projection"
                       : o->figure == FIGURE_ELLIPSOID  ? "--figure ellipsoid"
                                                        : NULL;
   if (o->basis == BASIS_FORMULA || wrong == NULL)
     return EXIT_DONE;
-  return message_usage("%s is for --basis formula; the other ellipses are "
-                       "known at constant luminance and in steps (--steps)",
-                       wrong);
+  return message_usage(
+      "%s is for --basis formula%s; the other ellipses are "
+      "known at constant luminance and in steps (--steps)",
+      wrong, strncmp(wrong, "--figure", 8) == 0 ? " or rit-dupont-1997" : "");
 }
 
 static exit_code check_usage(const command_options *o) {
-  if (o->at.n == 0 && o->n_files == 0 && o->basis != BASIS_LAMPS) {
+  if (o->at.n == 0 && o->n_files == 0 && o->basis < BASIS_LAMPS) {
     return message_usage("ellipse needs --at COLOUR or a FILE; `evenfield "
                          "ellipse demo:signal-colours` shows what it does");
   }

@@ -65,8 +65,8 @@ static const command_entry table[] = {
      "how far can a colour move in each direction before it is noticed?",
      {"Discrimination ellipses and ellipsoids around any colours, in x, y, in "
       "u', v', in a*, b*, in MacLeod-Boynton coordinates or in cone contrasts: "
-      "from any formula, from MacAdam's experiment, or the steps of the "
-      "lighting trade. One ellipse is one just-noticeable difference unless "
+      "from any formula, from MacAdam's and other experiments, or the steps of "
+      "the lighting trade. One ellipse is one just-noticeable difference unless "
       "--steps or --size says otherwise.",
       "A FILE is CSV as for describe: spectra, or colours as L,a,b or X,Y,Z or "
       "x,y,Y. A colour without an ellipse (black) is listed with the reason."},

@@ -43,8 +43,23 @@ static ef_status set_size(ellipse_scene *s, const ef_notes *notes,
   return EF_OK;
 }
 
-/* The experiments and the steps of the trade are in CIE 1931 coordinates. */
+/* Surface colours of experiments were seen by large fields in daylight. */
+static ef_status check_experiment(const ellipse_scene *s, ef_error *error) {
+  if (strcmp(ef_observer_name(s->observer), "cie-1964") == 0 &&
+      strcmp(ef_illuminant_name(s->illuminant), "D65") == 0) {
+    return EF_OK;
+  }
+  return message_fail(error, EF_UNKNOWN_NAME,
+                      "--basis: the colours of %.60s are those of D65 and "
+                      "observer cie-1964; leave --observer and --illuminant "
+                      "out",
+                      ef_experiment_title(s->experiment));
+}
+
+/* MacAdam's and the steps of the trade are in CIE 1931 coordinates. */
 static ef_status check_observer(const ellipse_scene *s, ef_error *error) {
+  if (s->experiment != NULL)
+    return check_experiment(s, error);
   if (ef_observer_dimensions(s->observer) < 3) {
     return message_fail(error, EF_NO_ANSWER,
                         "to observer %.100s the colours of one luminance lie "
@@ -96,7 +111,15 @@ ef_status ellipse_scene_load(ellipse_scene *s, const command_options *options,
   ef_status status = set_size(s, notes, error);
   if (status != EF_OK)
     return status;
-  s->observer = source_observer(o, notes, error);
+  if (s->from >= BASIS_LUO_RIGG) {
+    s->experiment = ef_experiment_new(
+        ef_experiment_name_at((size_t)(s->from - BASIS_LUO_RIGG)), error);
+    if (s->experiment == NULL)
+      return error->status;
+  }
+  s->observer = s->experiment != NULL && o->observer == NULL
+                    ? ef_observer_new("cie-1964", error)
+                    : source_observer(o, notes, error);
   if (s->observer == NULL)
     return error->status;
   s->illuminant = source_illuminant(
@@ -115,6 +138,7 @@ ef_status ellipse_scene_load(ellipse_scene *s, const command_options *options,
 }
 
 void ellipse_scene_free(ellipse_scene *s) {
+  ef_experiment_free(s->experiment);
   ef_illuminant_free(s->illuminant);
   ef_observer_free(s->observer);
   ef_metric_free(s->metric);
@@ -196,16 +220,22 @@ static ef_status from_chromaticity(const ellipse_scene *s, ellipse_row *row,
   return status;
 }
 
-static ef_status from_formula(const ellipse_scene *s, ellipse_row *row,
-                              ef_error *error) {
+/* From a formula or an experiment, which give a solid. */
+static ef_status from_solid(const ellipse_scene *s, ellipse_row *row,
+                            ef_error *error) {
   if (!row->at.has_luminance) {
     return message_fail(error, EF_NO_ANSWER,
-                        "its luminance is not known, and a formula needs it");
+                        "its luminance is not known, and %s needs it",
+                        s->metric != NULL ? "a formula" : "a surface colour");
   }
   ef_ellipsoid solid;
   const ef_status status =
-      ef_metric_ellipsoid(s->metric, row->at.xyz, &s->conditions, &s->frame,
-                          s->size, &solid, error);
+      s->metric != NULL
+          ? ef_metric_ellipsoid(s->metric, row->at.xyz, &s->conditions,
+                                &s->frame, s->size, &solid, error)
+          : ef_experiment_ellipsoid(s->experiment, row->at.xyz, &s->conditions,
+                                    &s->frame, s->steps, &solid, &row->nearest,
+                                    error);
   if (status != EF_OK)
     return status;
   row->ellipse = ef_ellipsoid_figure(&solid, s->figure == FIGURE_PROJECTION
@@ -223,8 +253,8 @@ static ellipse_row answer(const ellipse_scene *s, const char *name, point at,
   ellipse_row row = {.name = name, .at = at, .between = true, .third = none};
   row.ellipse = ef_ellipse_of_form((double[2]){none, none}, none, none, none);
   ef_error error = {0};
-  const ef_status status = s->from == BASIS_FORMULA
-                               ? from_formula(s, &row, &error)
+  const ef_status status = s->metric != NULL || s->experiment != NULL
+                               ? from_solid(s, &row, &error)
                                : from_chromaticity(s, &row, lamp, &error);
   row.found = status == EF_OK && !isnan(row.ellipse.semi_minor);
   if (status != EF_OK) {
@@ -279,6 +309,23 @@ static ef_status add_lamps(const ellipse_scene *s, progress *p,
   return status;
 }
 
+/* All of an experiment where nothing else was asked for. */
+static ef_status add_centers(const ellipse_scene *s, progress *p,
+                             ef_error *error) {
+  ef_status status = EF_OK;
+  ef_lab lab;
+  const char *name;
+  for (size_t i = 0;
+       status == EF_OK &&
+       (name = ef_experiment_center(s->experiment, i, &lab)) != NULL;
+       ++i) {
+    const point at = point_of_xyz(ef_lab_to_xyz(lab, s->basis.white), true);
+    const ellipse_row row = answer(s, name, at, NULL);
+    status = hand_on(s, p, 1, &row, error);
+  }
+  return status;
+}
+
 static ef_status add_points(const ellipse_scene *s, progress *p,
                             const ef_notes *notes, ef_error *error) {
   const text_list *texts = &s->options->at;
@@ -307,15 +354,21 @@ static ef_status luminance_scale(const ellipse_scene *s,
     return EF_OK;
   *scale = head->absolute && s->has_luminance ? 100.0 / s->options->white_cd_m2
                                               : (double)NAN;
-  if (!isnan(*scale) || s->from != BASIS_FORMULA)
+  if (!isnan(*scale) || (s->metric == NULL && s->experiment == NULL))
     return EF_OK;
-  message_fail(error, EF_NO_ANSWER,
-               head->absolute
-                   ? "the colours are in cd/m2, and a formula needs to know "
-                     "the white's: give --white-luminance"
-                   : "these are lights in a relative unit, and a formula needs "
-                     "to know how bright they are beside the white; X,Y,Z with "
-                     "Y = 100 for the white would do");
+  const char *who = s->metric != NULL ? "a formula" : "a surface colour";
+  if (head->absolute) {
+    message_fail(error, EF_NO_ANSWER,
+                 "the colours are in cd/m2, and %s needs to know the white's: "
+                 "give --white-luminance",
+                 who);
+  } else {
+    message_fail(error, EF_NO_ANSWER,
+                 "these are lights in a relative unit, and %s needs to know "
+                 "how bright they are beside the white; X,Y,Z with Y = 100 for "
+                 "the white would do",
+                 who);
+  }
   return message_place(error, head->file);
 }
 
@@ -391,8 +444,11 @@ ef_status ellipse_stream(ellipse_scene *s, const ef_notes *notes,
                          ef_error *error) {
   *count = (ellipse_count){0};
   progress p = {.sink = sink, .count = count};
+  const bool is_asked = s->options->at.n > 0 || s->options->n_files > 0;
   ef_status status = s->from == BASIS_LAMPS ? add_lamps(s, &p, error)
-                                            : add_points(s, &p, notes, error);
+                     : s->experiment != NULL && !is_asked
+                         ? add_centers(s, &p, error)
+                         : add_points(s, &p, notes, error);
   for (size_t i = 0; i < s->options->n_files && status == EF_OK; ++i) {
     status = add_file(s, s->options->files[i], &p, notes, error);
   }

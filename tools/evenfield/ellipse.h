@@ -22,7 +22,10 @@ typedef enum ellipse_basis {
   BASIS_FORMULA,
   BASIS_MACADAM,
   BASIS_STEPS,
-  BASIS_LAMPS
+  BASIS_LAMPS,
+  BASIS_LUO_RIGG, /**< from here on experiments of the library */
+  BASIS_RIT_DUPONT,
+  BASIS_HUANG
 } ellipse_basis;
 
 /** Everything the answers rest on. */
@@ -32,8 +35,10 @@ typedef struct ellipse_scene {
   ellipse_figure figure;
   ef_metric *metric; /**< owned; NULL unless from a formula */
   jnd jnd;
-  double steps; /**< JND, standard deviations or steps; NaN: a size */
-  double size;  /**< in units of the metric */
+  ef_experiment *experiment; /**< owned; NULL unless from one */
+  /** JND, standard deviations, steps or published sizes; NaN: a size. */
+  double steps;
+  double size; /**< in units of the metric */
   ef_observer *observer;
   ef_illuminant *illuminant;
   colour_basis basis;
@@ -56,8 +61,9 @@ typedef struct ellipse_row {
   bool found;
   ef_ellipse ellipse;
   double third; /**< the coordinate beside the plane's; NaN when not known */
-  ef_ellipsoid solid; /**< with FIGURE_ELLIPSOID */
-  bool between;       /**< within MacAdam's centres; true for others */
+  ef_ellipsoid solid;        /**< with FIGURE_ELLIPSOID */
+  bool between;              /**< within MacAdam's centres; true for others */
+  ef_nearest_center nearest; /**< of an experiment */
   char reason[ELLIPSE_REASON_ROOM]; /**< why none was found, "" else */
 } ellipse_row;
 

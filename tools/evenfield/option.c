@@ -47,8 +47,9 @@ static const char *const patterns[] = {"uniform", "disc",  "annulus",
 static const char *const time_courses[] = {"steady", "sinusoid", "square",
                                            NULL};
 static const char *const dithers[] = {"none", "ordered", NULL};
-static const char *const bases[] = {"formula", "macadam-1942", "n-step",
-                                    "lamp-colours", NULL};
+static const char *const bases[] = {
+    "formula",       "macadam-1942",    "n-step",     "lamp-colours",
+    "luo-rigg-1986", "rit-dupont-1997", "huang-2012", NULL};
 
 /* Every whole number up to this is a double. */
 #define LARGEST_SEED 9007199254740991.0
@@ -198,11 +199,15 @@ static const option_row table[] = {
     {"basis", "BASIS", COMMAND_ELLIPSE, TYPE_CHOICE, FIELD(basis), 0, 0, bases,
      "where the ellipses come from: formula (see --metric), macadam-1942 (the "
      "matching experiment, interpolated between its 25 centres), n-step (the "
-     "circles of CIE TN 001) or lamp-colours (the standard colours of "
-     "fluorescent lamps, --at F4000); default formula"},
+     "circles of CIE TN 001), lamp-colours (the standard colours of "
+     "fluorescent lamps, --at F4000), or experiments on surface colours, "
+     "interpolated between their centres, which are all listed without --at "
+     "and FILE: luo-rigg-1986, rit-dupont-1997 (ellipsoids) and huang-2012; "
+     "default formula"},
     {"steps", "N", COMMAND_ELLIPSE, TYPE_NUMBER, FIELD(steps), 1e-6, 1e6, NULL,
-     "how many just-noticeable differences, standard deviations (macadam-1942) "
-     "or steps the ellipses are large; default 1"},
+     "how many just-noticeable differences, standard deviations "
+     "(macadam-1942), steps or published sizes the ellipses are large; default "
+     "1"},
     {"size", "VALUE", COMMAND_ELLIPSE, TYPE_NUMBER, FIELD(size), 1e-9, 1e6,
      NULL, "the size of the ellipses in units of the metric, instead of a JND"},
     {"contrast-from", "COLOUR", COMMAND_ELLIPSE, TYPE_TEXT,

@@ -60,6 +60,12 @@ static void record_row(record *r, const ellipse_scene *s,
   record_number(r, "y", row->at.xy.y);
   if (s->from == BASIS_MACADAM)
     record_boolean(r, "between_centres", row->between);
+  if (s->experiment != NULL) {
+    record_text(r, "nearest_centre", row->nearest.name);
+    record_number(r, "nearest_centre_cielab",
+                  row->nearest.name != NULL ? row->nearest.difference
+                                            : (double)NAN);
+  }
   record_text(r, "reason", row->reason);
   record_end(r);
 }
@@ -70,6 +76,8 @@ static void write_basis(ef_json *j, const ellipse_scene *s) {
   char size[ELLIPSE_SIZE_ROOM];
   ellipse_size_words(s, size);
   ef_json_text(j, "source", ellipse_source_words(s));
+  if (s->experiment != NULL)
+    ef_json_text(j, "remark", ef_experiment_remark(s->experiment));
   ef_json_text(j, "size", size);
   if (s->metric != NULL) {
     ef_json_text(j, "metric", ef_metric_name(s->metric));

@@ -28,6 +28,7 @@ struct ellipse_text {
   size_t n_rows, n_found;
   ef_ellipse only;   /* of the last one found */
   bool some_outside; /* of MacAdam's centres */
+  bool some_between; /* the centres of an experiment */
   extreme smallest, largest;
 };
 
@@ -45,6 +46,7 @@ static void count(ellipse_text *t, const ellipse_row *row) {
   ++t->n_found;
   t->only = row->ellipse;
   t->some_outside = t->some_outside || !row->between;
+  t->some_between = t->some_between || row->nearest.difference > 0.05;
   const double area = row->ellipse.semi_major * row->ellipse.semi_minor;
   if (!t->smallest.found || area < t->smallest.area)
     set_extreme(&t->smallest, row, area);
@@ -80,10 +82,17 @@ void ellipse_size_words(const ellipse_scene *s, char words[ELLIPSE_SIZE_ROOM]) {
              ef_metric_symbol(s->metric));
     return;
   }
-  static const char *const one[] = {"one JND", "one standard deviation",
-                                    "one step", "one step"};
-  static const char *const many[] = {"JND", "standard deviations", "steps",
-                                     "steps"};
+  static const char *const one[] = {
+      "one JND",           "one standard deviation", "one step",
+      "one step",          "the published size",     "the published size",
+      "the published size"};
+  static const char *const many[] = {"JND",
+                                     "standard deviations",
+                                     "steps",
+                                     "steps",
+                                     "times the published size",
+                                     "times the published size",
+                                     "times the published size"};
   ef_number_format(s->steps, number);
   if (s->steps == 1.0) {
     snprintf(words, ELLIPSE_SIZE_ROOM, "%s", one[s->from]);
@@ -127,8 +136,10 @@ const char *ellipse_source_words(const ellipse_scene *s) {
   case BASIS_LAMPS:
     return "standard colours of lamps (IEC 60081, ANSI C78.376); the "
            "coefficients are from memory, not from a printed copy";
-  default:
+  case BASIS_FORMULA:
     return "the local metric of the formula, exact for small steps";
+  default:
+    return ef_experiment_source(s->experiment);
   }
 }
 
@@ -231,6 +242,10 @@ static void add_table(text *out, const ellipse_text *t,
   table_column(&a, "Angle", "deg", false);
   if (t->some_outside)
     table_column(&a, "Between", "centres", true);
+  if (t->some_between) {
+    table_column(&a, "Nearest centre", "CIELAB", false);
+    table_column(&a, NULL, "", true);
+  }
   for (size_t i = 0; i < t->n_rows; ++i) {
     const ellipse_row *row = &t->row[i];
     if (!row->found)
@@ -243,6 +258,10 @@ static void add_table(text *out, const ellipse_text *t,
     table_number(&a, row->ellipse.angle_deg, 1);
     if (t->some_outside)
       table_cell(&a, row->between ? "yes" : "no");
+    if (t->some_between) {
+      table_number(&a, row->nearest.difference, 1);
+      table_cell(&a, row->nearest.name);
+    }
   }
   text_add(out, "\n");
   table_finish(&a, out);
@@ -349,6 +368,14 @@ static void add_basis(text *out, const ellipse_scene *s) {
     text_add(&line, ellipse_source_words(s));
     text_label(out, "Source", &line);
   }
+  if (s->experiment != NULL) {
+    text_add(&line, ef_experiment_remark(s->experiment));
+    text_label(out, "Size", &line);
+    text_add(&line, "the logarithms of the forms in CIELAB are averaged with "
+                    "weights of 1 / difference^4; far from all centres that "
+                    "is little more than a guess");
+    text_label(out, "Between", &line);
+  }
   text_add(&line, ellipse_figure_words(s));
   text_label(out, "Figure", &line);
   text_format(&line,
@@ -360,7 +387,7 @@ static void add_basis(text *out, const ellipse_scene *s) {
   text_format(&line, "%s: %s", ef_observer_name(s->observer),
               ef_observer_about(s->observer));
   text_label(out, "Observer", &line);
-  if (s->from == BASIS_FORMULA || space == EF_SPACE_LAB) {
+  if (s->metric != NULL || s->experiment != NULL || space == EF_SPACE_LAB) {
     text_format(&line, "%s, Y = 100", ef_illuminant_name(s->illuminant));
     text_label(out, "White", &line);
   }
