@@ -14,7 +14,7 @@ LC_ALL=C
 export LC_ALL
 number=0
 failed=0
-echo "1..10"
+echo "1..12"
 
 # ef_check NAME FOUND EXPECTED
 ef_check() {
@@ -76,4 +76,18 @@ for format in csv json; do
   ef_check "nor in the order of many rows, $format" \
     "$(cmp 1.$format 3.$format && echo same)" same
 done
+
+# The points of the boundary: none farther than the worst case, some nearly so.
+"$evenfield" compare demo:seats-standard demo:seats-deliveries --quiet \
+  --illuminant D65 --illuminant FL11 --boundary points.csv --format json \
+  --output boundary.json || exit 1
+ef_check "642 points under each other look" "$(awk -F, '
+  NR > 1 { ++n[$1 "," $2] } END { for (i in n) print i, n[i] }' points.csv |
+  sort | tr '\n' ';')" "D65,cie-1964 642;FL11,cie-1931 642;"
+worst=$(awk '/"worst_case"/ { on = 1 } on && /"difference"/ {
+  gsub(/[^0-9.]/, ""); print; exit }' boundary.json)
+ef_check "none farther than the worst case" "$(awk -F, -v worst="$worst" '
+  $1 == "FL11" && $NF > most { most = $NF }
+  END { print (most <= worst * 1.000001 && most > 0.9 * worst) }
+  ' points.csv)" 1
 [ "$failed" = 0 ]

@@ -1,6 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include <math.h>
 
+#include "boundary.h"
 #include "command.h"
 #include "compare.h"
 #include "message.h"
@@ -78,6 +79,8 @@ exit_code command_compare(const command_options *options) {
                  ? run_text(&scene, output, &count, &error)
                  : run_data(&scene, output, &count, &error);
   }
+  if (status == EF_OK)
+    status = boundary_write(&scene, &error);
   code = result_close(output, status, &error);
   compare_scene_free(&scene);
   if (code == EXIT_DONE && options->check && count.n_within < count.n)

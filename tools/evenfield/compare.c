@@ -213,13 +213,34 @@ static ef_status check_content(compare_scene *s, const ef_notes *notes,
   return EF_OK;
 }
 
-static ef_status check_worst_case(const compare_scene *s, ef_error *error) {
-  if (!s->options->worst_case || s->has_spectra)
+/* As ISO/CIE 23603 has it. */
+static ef_status check_simulators(const compare_scene *s, ef_error *error) {
+  if (!s->options->grade_simulators)
     return EF_OK;
-  return message_fail(
-      error, EF_NO_ANSWER,
-      "--worst-case: colours belong to one light; what samples "
-      "that match there do in others follows from spectra only");
+  if (!s->has_spectra || s->looks.n < 2) {
+    return message_fail(error, EF_UNKNOWN_NAME,
+                        "--grade-simulators: needs spectra of pairs, and with "
+                        "--illuminant the light they match in and those to be "
+                        "graded");
+  }
+  if (strcmp(ef_metric_name(s->metric), "cielab") == 0 &&
+      s->looks.n_observers == 1 &&
+      strcmp(ef_observer_name(s->looks.at[0].observer), "cie-1964") == 0) {
+    return EF_OK;
+  }
+  return message_fail(error, EF_UNKNOWN_NAME,
+                      "--grade-simulators: the grades of ISO/CIE 23603 are for "
+                      "--metric cielab and --observer cie-1964");
+}
+
+static ef_status check_worst_case(const compare_scene *s, ef_error *error) {
+  const command_options *o = s->options;
+  if ((!o->worst_case && o->boundary == NULL) || s->has_spectra)
+    return EF_OK;
+  return message_fail(error, EF_NO_ANSWER,
+                      "--%s: colours belong to one light; what samples "
+                      "that match there do in others follows from spectra only",
+                      o->worst_case ? "worst-case" : "boundary");
 }
 
 /* Whoever stands before the first observer's looks, seeing both sides on the
@@ -290,6 +311,8 @@ ef_status compare_scene_load(compare_scene *s, const command_options *options,
   if (status == EF_OK)
     status = check_worst_case(s, error);
   if (status == EF_OK)
+    status = check_simulators(s, error);
+  if (status == EF_OK)
     status = finish_file_look(s->standard, &s->looks, notes, error);
   if (status == EF_OK && s->batch != NULL)
     status = finish_file_look(s->batch, &s->looks, notes, error);
@@ -304,7 +327,8 @@ void compare_scene_free(compare_scene *s) {
   for (size_t k = 0; k < LOOKS_MOST; ++k)
     ef_crowd_free(s->crowd[k]);
   people_free(&s->people);
-  free(s->worst_case);
+  free(s->worst_case_of);
+  worst_case_free(s->worst_case, s->n_worst_cases);
   finish_file_free(s->batch);
   finish_file_free(s->standard);
   looks_free(&s->looks);
@@ -346,6 +370,13 @@ static void count_pair(receiver *r, const compared *c) {
     return;
   }
   ++n->n_computed;
+  for (size_t i = 0; i < c->n_angles * r->scene->looks.n; ++i) {
+    const double difference = c->outcome[i].difference;
+    if (isnan(difference))
+      continue;
+    n->difference[i % r->scene->looks.n] += difference;
+    ++n->n_differences[i % r->scene->looks.n];
+  }
   n->has_repeats = n->has_repeats || c->n_readings[0] > c->n_angles ||
                    c->n_readings[1] > c->n_angles;
   n->has_angles = n->has_angles || !isnan(c->angle_deg[0]);
@@ -354,21 +385,26 @@ static void count_pair(receiver *r, const compared *c) {
 /* Once, when the standard is known. */
 static ef_status find_worst_cases(compare_scene *s, const pair *first,
                                   ef_error *error) {
-  if (!s->options->worst_case || s->n_worst_cases > 0 ||
+  const command_options *o = s->options;
+  if ((!o->worst_case && o->boundary == NULL) || s->n_worst_cases > 0 ||
       first->standard == NULL)
     return EF_OK;
   if (s->pairing != PAIR_ONE) {
     return message_fail(error, EF_NO_ANSWER,
-                        "--worst-case is told of one standard, and there are "
-                        "several here");
+                        "--%s is told of one standard, and there are several "
+                        "here",
+                        o->worst_case ? "worst-case" : "boundary");
   }
   const size_t n = worst_case_count(&s->looks, first->standard);
-  s->worst_case = malloc(n * sizeof *s->worst_case);
+  s->worst_case = calloc(n, sizeof *s->worst_case);
   if (s->worst_case == NULL)
     return message_fail(error, EF_NO_MEMORY, "out of memory for metamers");
   s->n_worst_cases = n;
+  s->worst_case_of = strdup(first->standard_name);
+  if (s->worst_case_of == NULL)
+    return message_fail(error, EF_NO_MEMORY, "out of memory for metamers");
   return worst_case_find(&s->looks, first->standard, s->metric,
-                         s->options->jobs, s->worst_case, error);
+                         o->boundary != NULL, o->jobs, s->worst_case, error);
 }
 
 static ef_status receive(void *self, size_t n, const pair *pairs,

@@ -44,6 +44,7 @@ typedef struct compare_scene {
   ef_crowd *crowd[LOOKS_MOST];
   worst_case *worst_case; /**< of --worst-case, with one standard; owned */
   size_t n_worst_cases;
+  char *worst_case_of; /**< name of the standard; owned */
   const ef_notes *notes;
 } compare_scene;
 
@@ -58,6 +59,7 @@ typedef struct outcome {
   ef_xyz standard, sample;
   double difference;
   ef_components components; /**< sample minus standard */
+  double cielab;            /**< difference in CIE 1976 L*a*b* */
   double sd;                /**< standard uncertainty of measurement */
   double noise_alone;       /**< difference that this scatter alone makes */
   double metamerism;        /**< special index against the first look */
@@ -96,6 +98,9 @@ typedef struct compare_count {
   size_t n, n_computed, n_within, n_beyond, n_skipped;
   bool has_repeats; /**< repeated readings */
   bool has_angles;
+  /** Sums of the differences under each look, and how many. */
+  double difference[LOOKS_MOST];
+  size_t n_differences[LOOKS_MOST];
 } compare_count;
 
 /** Receives pairs in blocks; a function that fails ends the run. */

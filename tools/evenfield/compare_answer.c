@@ -3,6 +3,7 @@
 
 #include <math.h>
 
+#include "grades.h"
 #include "words.h"
 
 /* ---- The answer -------------------------------------------------------- */
@@ -84,6 +85,53 @@ static void add_plain_answer(text *out, const compare_scene *s,
   text_format(out, " %s", s->looks.at[other].words);
 }
 
+/* "booth.csv is a daylight simulator of grade B for D65: mean difference 0.37
+ * CIELAB over 5 pairs." */
+static void add_simulator(text *out, const compare_scene *s,
+                          const compare_count *n, size_t k) {
+  const simulator_grade g = grade_simulator(s, n, k);
+  const char *light = ef_illuminant_name(s->looks.at[k].illuminant);
+  const char *stands_for = ef_illuminant_name(s->looks.at[0].illuminant);
+  char mean[EF_NUMBER_TEXT], distance[EF_NUMBER_TEXT], pairs[WORDS_ROOM];
+  text line = {0};
+  words_count(n->n_differences[k], "pair", "pairs", pairs);
+  ef_number_format_fixed(g.mean_difference, 2, mean);
+  ef_number_format_fixed(g.distance, 4, distance);
+  if (g.grade != NULL) {
+    text_format(&line,
+                "%s as a simulator of %s has grade %s: mean difference %s "
+                "CIELAB over %s, %s from it in u', v'.",
+                light, stands_for, g.grade, mean, pairs, distance);
+  } else {
+    text_format(&line,
+                "%s as a simulator of %s has no grade: it is %s from it in u', "
+                "v', more than 0.015 (mean difference %s CIELAB over "
+                "%s).",
+                light, stands_for, distance, mean, pairs);
+  }
+  text_paragraph(out, &line, 0);
+}
+
+/* Virtual metamers match in the light that is stood for. */
+static void add_simulators(text *out, const compare_scene *s,
+                           const compare_count *n) {
+  const double mean = n->difference[0] / (double)n->n_differences[0];
+  char amount[EF_NUMBER_TEXT];
+  if (!s->options->grade_simulators)
+    return;
+  for (size_t k = 1; k < s->looks.n; ++k)
+    add_simulator(out, s, n, k);
+  if (mean < 0.05)
+    return;
+  words_amount(mean, amount);
+  text line = {0};
+  text_format(&line,
+              "But the pairs differ by %s CIELAB on average under %s itself: "
+              "those of the standard match there.",
+              amount, ef_illuminant_name(s->looks.at[0].illuminant));
+  text_paragraph(out, &line, 0);
+}
+
 static void add_first_line(text *out, const compared *c, const compare_scene *s,
                            const compare_count *n) {
   compare_add_names(out, s, c);
@@ -147,6 +195,7 @@ static void add_second_lines(text *out, const compare_scene *s,
 
 void compare_add_answer(text *out, const compared *worst,
                         const compare_scene *s, const compare_count *n) {
+  add_simulators(out, s, n);
   add_first_line(out, worst, s, n);
   add_second_lines(out, s, n);
 }

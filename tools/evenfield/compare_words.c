@@ -3,6 +3,7 @@
 
 #include <math.h>
 
+#include "grades.h"
 #include "words.h"
 
 enum { MOST_READINGS = 12 };
@@ -153,6 +154,19 @@ static void add_finish(text *out, const compare_scene *s, const compared *c) {
               total, ef_metric_symbol(s->metric), s->looks.at[k].words);
 }
 
+/* In the first light; for no finish of several angles. */
+static void add_contrast(text *out, const compare_scene *s, const compared *c) {
+  const char *step = grade_contrast(&s->looks.at[0], &c->outcome[0]);
+  char cielab[EF_NUMBER_TEXT];
+  if (step == NULL || c->n_angles > 1)
+    return;
+  words_amount(c->outcome[0].cielab, cielab);
+  text_format(out,
+              ". Its contrast %s, %s CIELAB, is nearest to step %s of the "
+              "grey scale for change in colour",
+              s->looks.at[0].words, cielab, step);
+}
+
 static void add_people(text *out, const compare_scene *s, const outcome *o) {
   if (s->people.population == NULL)
     return;
@@ -179,6 +193,7 @@ static void add_reading(text *out, const compare_scene *s, const compared *c) {
     add_told(&line, &c->outcome[at]);
   add_people(&line, s, &c->outcome[at]);
   add_finish(&line, s, c);
+  add_contrast(&line, s, c);
   add_metamerism(&line, s, c);
   text_add(&line, ".");
   text_add(out, "  ");

@@ -152,6 +152,7 @@ static void gather(work *w, size_t under) {
  * differences of all are there. */
 static void set_outcomes(void *context, size_t begin, size_t end) {
   const work *w = context;
+  const ef_xyz white = w->s->looks.at[w->under].basis.white;
   for (size_t i = begin; i < end; ++i) {
     outcome *o = work_outcome(w, i, w->under);
     o->standard = xyz_of(w->xyz[0] + 3 * i);
@@ -159,6 +160,8 @@ static void set_outcomes(void *context, size_t begin, size_t end) {
     o->difference = w->difference[i];
     ef_metric_components(w->s->metric, w->at[0] + 3 * i, w->at[1] + 3 * i,
                          &o->components);
+    o->cielab = ef_delta_e_cielab(ef_xyz_to_lab(o->standard, white),
+                                  ef_xyz_to_lab(o->sample, white));
     o->population_mean = o->population_p95 = NONE;
     o->metamerism = o->inconstancy_standard = o->inconstancy_sample = NONE;
     set_uncertainty(w, i);

@@ -347,6 +347,16 @@ static const option_row table[] = {
      NULL,
      "also tells how far any surface that matches the standard in the first "
      "light may part from it in the others; text and json only"},
+    {"boundary", "PATH", COMMAND_COMPARE, TYPE_TEXT, FIELD(boundary), 0, 0,
+     NULL,
+     "--worst-case, with points all over the boundary of the colours that such "
+     "surfaces take in each other light: a file of X, Y, Z and L*, a*, b* as "
+     "csv, or as json with the triangles between them if PATH ends in .json"},
+    {"grade-simulators", NULL, COMMAND_COMPARE, TYPE_FLAG,
+     FIELD(grade_simulators), 0, 0, NULL,
+     "the pairs are the virtual metamers of ISO/CIE 23603 for the first light: "
+     "grades the others as simulators of it; needs --metric cielab and "
+     "--observer cie-1964"},
     {"angle-weights", "LIST", COMMAND_COMPARE, TYPE_TEXT, FIELD(angle_weights),
      0, 0, NULL,
      "weights of measuring angles in the total of a finish, such as "

@@ -79,7 +79,9 @@ typedef struct command_options {
   int bits;       /**< of isolate */
   int match_bits; /**< of match and swatch; -1: what the device has */
   int swatch_bits, jobs, categories;
-  bool skip_bad, check, worst_case, robust, force, quiet, help, version;
+  const char *boundary; /**< where its points go */
+  bool skip_bad, check, worst_case, grade_simulators, robust, force, quiet;
+  bool help, version;
   text_list at, lights, observers;
   size_t n_files;
   const char **files; /**< owned; the texts are those of argv */

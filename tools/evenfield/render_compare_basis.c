@@ -4,6 +4,7 @@
 #include <math.h>
 #include <string.h>
 
+#include "grades.h"
 #include "text.h"
 #include "viewing.h"
 #include "words.h"
@@ -145,6 +146,25 @@ static void add_tolerance(text *out, const compare_scene *s) {
   text_label(out, "Tolerance", &line);
 }
 
+static void add_grades(text *out, const compare_scene *s) {
+  text line = {0};
+  const outcome alike = {.cielab = 0.0};
+  if (grade_contrast(&s->looks.at[0], &alike) != NULL) {
+    text_add(&line, "ISO 105-A02:1993: the step whose pair is nearest in "
+                    "CIELAB; the standard itself has eyes compare them");
+    text_label(out, "Grey scale", &line);
+  }
+  if (!s->options->grade_simulators)
+    return;
+  text_add(&line, "ISO/CIE 23603 (limits from memory, that of B confirmed): "
+                  "mean CIELAB difference over the virtual metamers, which the "
+                  "pairs are taken to be; none beyond 0.015 in u', v' from the "
+                  "light stood for. The ultraviolet is not graded; where a "
+                  "certificate hangs on it, let an accredited laboratory "
+                  "measure with the pairs of the standard");
+  text_label(out, "Simulators", &line);
+}
+
 static void add_metamerism(text *out, const compare_scene *s) {
   static const char *const words[] = {
       [EF_CORRECT_MULTIPLICATIVE] =
@@ -176,5 +196,6 @@ void compare_basis(text *out, const compare_scene *s,
   add_jnd(out, s);
   add_uncertainty(out, s, count);
   add_tolerance(out, s);
+  add_grades(out, s);
   add_metamerism(out, s);
 }

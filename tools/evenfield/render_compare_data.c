@@ -5,6 +5,7 @@
 #include <stdlib.h>
 
 #include "document.h"
+#include "grades.h"
 #include "message.h"
 #include "viewing.h"
 #include "words.h"
@@ -67,6 +68,11 @@ static void record_condition(record *r, const compare_scene *s, const look *l,
   record_number(r, "jnds", o->difference / s->jnd.record.value);
   record_number(r, "standard_uncertainty", o->sd);
   record_number(r, "noise_alone", o->noise_alone);
+  record_end(r);
+  record_begin(r, "grey_scale");
+  record_number(r, "cielab", o->cielab);
+  const char *step = grade_contrast(l, o);
+  record_text(r, "step", step != NULL ? step : "");
   record_end(r);
   record_begin(r, "components");
   record_number(r, "lightness", o->components.lightness);
@@ -207,6 +213,7 @@ static void record_row(record *r, const compare_scene *s, const compared *c,
                                 .sample = {NONE, NONE, NONE},
                                 .difference = NONE,
                                 .components = {NONE, NONE, NONE},
+                                .cielab = NONE,
                                 .sd = NONE,
                                 .noise_alone = NONE,
                                 .metamerism = NONE,
@@ -360,6 +367,28 @@ static void write_worst_cases(ef_json *j, const compare_scene *s) {
   ef_json_end_array(j);
 }
 
+static void write_simulators(ef_json *j, const compare_scene *s,
+                             const compare_count *n) {
+  if (!s->options->grade_simulators)
+    return;
+  ef_json_begin_array(j, "simulators");
+  for (size_t k = 1; k < s->looks.n; ++k) {
+    const simulator_grade g = grade_simulator(s, n, k);
+    ef_json_begin_object(j, NULL);
+    ef_json_text(j, "illuminant",
+                 ef_illuminant_name(s->looks.at[k].illuminant));
+    ef_json_text(j, "stands_for",
+                 ef_illuminant_name(s->looks.at[0].illuminant));
+    ef_json_number(j, "mean_difference", g.mean_difference);
+    ef_json_number(j, "reference_mean_difference",
+                   n->difference[0] / (double)n->n_differences[0]);
+    ef_json_number(j, "uv_distance", g.distance);
+    ef_json_text(j, "grade", g.grade);
+    ef_json_end_object(j);
+  }
+  ef_json_end_array(j);
+}
+
 static void write_summary(ef_json *j, const compare_scene *s,
                           const compare_count *n) {
   const bool has_tolerance = !isnan(s->tolerance);
@@ -379,6 +408,7 @@ ef_status compare_data_finish(compare_data *d, const compare_scene *s,
   document_end_rows(&d->out);
   if (d->out.json != NULL) {
     write_worst_cases(d->out.json, s);
+    write_simulators(d->out.json, s, count);
     write_summary(d->out.json, s, count);
   }
   return document_close(&d->out, error);

@@ -27,15 +27,25 @@ exit_code result_check_usage(const command_options *options,
   return EXIT_DONE;
 }
 
-ef_output *result_open(const command_options *options, ef_error *error) {
-  ef_output *output = ef_output_open(options->output, options->force, error);
+static ef_output *open_output(const char *path, bool overwrite,
+                              const char *advice, ef_error *error) {
+  ef_output *output = ef_output_open(path, overwrite, error);
   if (output == NULL && error->status == EF_EXISTS) {
     message_fail(error, EF_EXISTS,
                  "is there already; --force overwrites it, or name another "
-                 "file with --output");
-    message_place(error, options->output);
+                 "file%s",
+                 advice);
+    message_place(error, path);
   }
   return output;
+}
+
+ef_output *result_open(const command_options *options, ef_error *error) {
+  return open_output(options->output, options->force, " with --output", error);
+}
+
+ef_output *result_open_at(const char *path, bool overwrite, ef_error *error) {
+  return open_output(path, overwrite, "", error);
 }
 
 exit_code result_close(ef_output *output, ef_status status, ef_error *error) {
