@@ -241,6 +241,56 @@ static void orientation_is_counterclockwise(void **state) {
   invented_free(&i);
 }
 
+/* Every pixel of discs far from the middle of a near screen, by the angle at
+ * the eye; nothing is left out where the disc is looked for. */
+static void discs_far_from_the_middle(void **state) {
+  (void)state;
+  static const double cases[][4] = {/* centre, size, edge */
+                                    {0, 0, 3, 0.5},
+                                    {25, -18, 6, 1},
+                                    {-38, 20, 10, 4},
+                                    {60, 0, 50, 2}};
+  const double deg = 3.14159265358979323846 / 180;
+  invented i = invented_new(3, "cie-2015-2");
+  const ef_isolation way = s_cone(&i, EF_SYMMETRIC);
+  for (size_t k = 0; k < sizeof cases / sizeof cases[0]; k++) {
+    ef_frame_settings s = ef_frame_settings_default();
+    s.width_px = 150;
+    s.height_px = 110;
+    s.distance_mm = 50;
+    s.pixels_per_mm = 1;
+    s.centre_x_deg = cases[k][0];
+    s.centre_y_deg = cases[k][1];
+    s.size_deg = cases[k][2];
+    s.edge_deg = cases[k][3];
+    ef_frames *frames = ef_frames_new(i.stimulator, &way, &s, NULL, NULL);
+    assert_non_null(frames);
+    const double c[3] = {50 * tan(s.centre_x_deg * deg),
+                         50 * tan(s.centre_y_deg * deg), 50};
+    const double length = sqrt(c[0] * c[0] + c[1] * c[1] + c[2] * c[2]);
+    double level[150];
+    size_t n_inside = 0;
+    for (size_t y = 0; y < s.height_px; y++) {
+      ef_frames_levels(frames, 0, y, level);
+      for (size_t x = 0; x < s.width_px; x++) {
+        const double a[3] = {(double)x - 74.5, 54.5 - (double)y, 50};
+        const double cosine = (a[0] * c[0] + a[1] * c[1] + a[2] * c[2]) /
+                              length /
+                              sqrt(a[0] * a[0] + a[1] * a[1] + a[2] * a[2]);
+        const double beyond =
+            acos(fmin(1, cosine)) / deg - s.size_deg / 2 + s.edge_deg / 2;
+        const double part = fmax(0, fmin(1, beyond / s.edge_deg));
+        const double window = (1 + cos(part * 180 * deg)) / 2;
+        assert_near(level[x], window, 1e-5);
+        n_inside += window > 0;
+      }
+    }
+    assert_true(n_inside >= 4);
+    ef_frames_free(frames);
+  }
+  invented_free(&i);
+}
+
 static void drift_moves_in_its_direction(void **state) {
   (void)state;
   invented i = invented_new(3, "cie-2015-2");
@@ -476,6 +526,7 @@ int main(void) {
       cmocka_unit_test(areas_of_disc_and_frame),
       cmocka_unit_test(patterns_by_hand),
       cmocka_unit_test(orientation_is_counterclockwise),
+      cmocka_unit_test(discs_far_from_the_middle),
       cmocka_unit_test(drift_moves_in_its_direction),
       cmocka_unit_test(samples_of_codes),
       cmocka_unit_test(bad_screens_are_refused),

@@ -42,6 +42,19 @@ static double angle_of(double u, double distance_mm) {
   return atan(u / distance_mm) / DEGREE;
 }
 
+/* No place farther than this from the centre, on the screen, lies in the disc:
+ * its rim is an ellipse, whose end away from the middle of the screen is the
+ * farthest. */
+static double reach_of(const ef_frame_settings *s, const double centre[3]) {
+  const double rounding = 1e-9, most_deg = 89;
+  const double off_deg = angle_of(hypot(centre[0], centre[1]), centre[2]);
+  const double end_deg = off_deg + (s->size_deg + s->edge_deg) / 2;
+  if (!(s->size_deg > 0) || end_deg > most_deg)
+    return HUGE_VAL;
+  return s->distance_mm *
+         (tan(end_deg * DEGREE) - tan(off_deg * DEGREE)) * (1 + rounding);
+}
+
 ef__view ef__view_of(const ef_frame_settings *s) {
   const double turn = s->orientation_deg * DEGREE;
   ef__view view = {.pixel_mm = 1 / s->pixels_per_mm,
@@ -55,6 +68,7 @@ ef__view ef__view_of(const ef_frame_settings *s) {
   view.centre_angle_deg = angle_of(view.direction[0] * view.centre[0] +
                                        view.direction[1] * view.centre[1],
                                    s->distance_mm);
+  view.reach_mm = reach_of(s, view.centre);
   return view;
 }
 
@@ -106,6 +120,10 @@ double ef__pattern_window(const ef_frame_settings *s, const ef__view *view,
   if (s->pattern == EF_PATTERN_UNIFORM)
     return 1;
   place_of(view, x, y, place);
+  const double right = place[0] - view->centre[0];
+  const double up = place[1] - view->centre[1];
+  if (right * right + up * up > view->reach_mm * view->reach_mm)
+    return 0;
   const double distance = distance_deg(view, place);
   double window = 1;
   if (s->size_deg > 0)

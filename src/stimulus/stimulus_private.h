@@ -217,6 +217,7 @@ typedef struct ef__view {
   double middle_x, middle_y; /**< of the frame, in pixels from its corner */
   double centre[3];          /**< of the pattern, mm; the screen is at z = 0 and
                                   the eye at -distance */
+  double reach_mm;           /**< beyond it, on the screen, there is nothing */
   double direction[2];       /**< of the grating */
   double centre_angle_deg;   /**< of the pattern, along the direction */
 } ef__view;

@@ -191,6 +191,24 @@ static void set_field(const isolate_scene *s, isolate_result *r) {
       is_whole ? disc_deg(r->show.area.frame_solid_angle_sr) : s->size_deg;
 }
 
+/* CIE 015: the 2 degree functions for fields up to 4 degrees, the 10 degree
+ * ones beyond. Said where a size was asked for. */
+static void tell_field(const isolate_scene *s, const isolate_result *r,
+                       const ef_notes *notes) {
+  const double border_deg = 4.0;
+  const double eye_deg = ef_observer_field_deg(s->observer);
+  if (isnan(s->options->size_deg) && r->show.frames == NULL)
+    return;
+  if ((r->field_deg > border_deg) == (eye_deg > border_deg))
+    return;
+  message_note(notes,
+               "what changes is %.3g degrees wide, and the cones of %s are "
+               "those of %g degrees: --observer %s or model:field=DEG fits "
+               "better",
+               r->field_deg, ef_observer_name(s->observer), eye_deg,
+               r->field_deg > border_deg ? "cie-2015-10" : "cie-2015-2");
+}
+
 /* The whole frame has the background's light; without one only the disc is
  * known. */
 static double adapting_deg2(const isolate_result *r) {
@@ -243,6 +261,7 @@ ef_status isolate_compute(const isolate_scene *s, const ef_notes *notes,
   if (status != EF_OK)
     return status;
   set_field(s, out);
+  tell_field(s, out, notes);
   status = look(s, notes, out, error);
   if (status == EF_OK) {
     out->n_cautions =

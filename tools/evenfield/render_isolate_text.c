@@ -203,7 +203,18 @@ static void add_people_answer(text *out, const isolate_scene *s,
 static void add_codes_answer(text *out, const isolate_result *r) {
   const ef_coded *c = &r->coded;
   text t = {0};
-  if (c->below_resolution && !isnan(c->smallest_contrast)) {
+  const isolate_show *show = &r->show;
+  if (show->has_dither && count_role(&r->way, EF_RECEPTOR_SILENT) > 0) {
+    text_format(&t,
+                "Dithered in %d-bit codes, what should be silent gets at most ",
+                c->bits);
+    isolate_add_size(&t, show->dither.residual);
+    text_add(&t, " on average over 8 x 8 pixels and 16 frames.");
+    text_paragraph(out, &t, 0);
+    return;
+  }
+  if (c->below_resolution && !show->has_dither &&
+      !isnan(c->smallest_contrast)) {
     text_format(&t,
                 "%d-bit codes cannot show that contrast: the smallest step "
                 "along the direction is ",
@@ -338,6 +349,18 @@ static void add_limits(text *t, const isolate_scene *s,
   }
 }
 
+/* "L by +39.7 % and M by -91.8 %". */
+static void add_unit(text *t, const ef_isolation *way) {
+  const size_t n = count_role(way, EF_RECEPTOR_CHANGED);
+  size_t i = 0;
+  for (size_t k = 0; k < EF_N_RECEPTORS; ++k) {
+    if (way->role[k] != EF_RECEPTOR_CHANGED)
+      continue;
+    text_format(t, "%s%s by ", between(i++, n), isolate_receptor_words(k));
+    add_percent(t, way->direction[k]);
+  }
+}
+
 static void add_reach(text *out, const isolate_scene *s,
                       const isolate_result *r) {
   const ef_isolation *way = &r->way;
@@ -348,6 +371,8 @@ static void add_reach(text *out, const isolate_scene *s,
     text_add(&t, ", held by ");
     add_limits(&t, s, way);
   }
+  text_add(&t, "; 1 along it changes ");
+  add_unit(&t, way);
   text_label(out, "Largest", &t);
   isolate_add_size(&t, way->pooled_contrast);
   text_add(&t, ", the root of the summed squares of the contrasts of L, M "
@@ -385,6 +410,14 @@ static void add_steps(text *out, const isolate_scene *s,
   text_label(out, "Least step", &t);
 }
 
+/* What the rods get may be seen: it is not nothing, and they are not
+ * saturated. */
+static bool rods_take_part(const isolate_result *r) {
+  const double saturated_td = 5000.0, nothing = 1e-3;
+  return r->eye.scotopic_td < saturated_td &&
+         fabs(r->way.contrast[EF_ROD]) > nothing;
+}
+
 static void add_eye(text *out, const isolate_scene *s,
                     const isolate_result *r) {
   text t = {0};
@@ -405,6 +438,10 @@ static void add_eye(text *out, const isolate_scene *s,
   text_add(&t, " photopic and ");
   add_figure(&t, e->scotopic_td, 4);
   text_add(&t, " scotopic trolands");
+  if (rods_take_part(r)) {
+    text_add(&t, ". Rods still take part here: they saturate at 2000 to "
+                 "5000 (Aguilar & Stiles 1954, from memory)");
+  }
   text_label(out, "Background", &t);
   for (size_t k = 0; k < EF_N_RECEPTORS; ++k) {
     text_format(&t, "%s%s ", k == 0 ? "" : ", ",
