@@ -90,6 +90,30 @@ static void fields_that_are_wrong(void **state) {
   ef_fields_free(fields);
 }
 
+/* The caller's own checks are placed like the reader's. */
+static void faults_of_the_caller(void **state) {
+  (void)state;
+  ef_error error = {0};
+  const char *const *text;
+  ef_fields *fields = open_text("# unit: Delta E*00\nSample,Reference\na,b\n", 2,
+                                NULL, &error);
+  assert_string_equal(ef_fields_unit(fields), "Delta E*00");
+  assert_true(ef_fields_has(fields, 0) && ef_fields_has(fields, 1));
+  assert_false(ef_fields_has(fields, 2));
+  assert_false(ef_fields_has(fields, 3));
+  assert_int_equal(ef_fields_next(fields, &text, NULL, &error), EF_OK);
+  assert_int_equal(ef_fields_fault(fields, 0, &error, "found '%s'", text[0]),
+                   EF_MALFORMED);
+  assert_error(&error, EF_MALFORMED, "found 'b'");
+  assert_int_equal(error.line, 3);
+  assert_int_equal(error.column, 2);
+  assert_string_equal(error.field, "Reference");
+  ef_fields_free(fields);
+  fields = open_text("reference,sample\n", 2, NULL, &error);
+  assert_string_equal(ef_fields_unit(fields), "");
+  ef_fields_free(fields);
+}
+
 static bool read_in_short_memory(void *context) {
   const char *const path = context;
   ef_error error = {0};
@@ -117,6 +141,7 @@ int main(void) {
       cmocka_unit_test(columns_in_any_order),
       cmocka_unit_test(columns_that_are_missing),
       cmocka_unit_test(fields_that_are_wrong),
+      cmocka_unit_test(faults_of_the_caller),
       cmocka_unit_test(memory_may_run_out),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);

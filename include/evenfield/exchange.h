@@ -190,6 +190,15 @@ EF_API ef_status ef_fields_next(ef_fields *fields, const char *const **text,
  * field. */
 EF_API ef_status ef_fields_number(ef_fields *fields, size_t i, double *value,
                                   ef_error *error);
+/** True when the file has column `i` of the names asked for. */
+EF_API bool ef_fields_has(const ef_fields *fields, size_t i);
+/** Text of the `# unit:` line, "" if none; borrowed. */
+EF_API const char *ef_fields_unit(const ef_fields *fields);
+/** A fault that the caller found in field `i` of the current row: EF_MALFORMED
+ * with file, line and field. */
+EF_API ef_status ef_fields_fault(const ef_fields *fields, size_t i,
+                                 ef_error *error, const char *format, ...)
+    EF_PRINTF(4, 5);
 
 /** All bytes of a text, with a terminator behind them, without a byte-order
  * mark. Path as for ef_reader_open. EF_MALFORMED for more than `most_bytes`,

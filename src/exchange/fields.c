@@ -2,6 +2,8 @@
 /* Rows whose fields are texts, by the names of their columns. */
 #include "exchange/exchange_private.h"
 
+#include <stdarg.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -169,4 +171,30 @@ ef_status ef_fields_number(ef_fields *fields, size_t i, double *value,
                          "column %zu was not asked for or is not there", i);
   }
   return ef__table_number(&fields->table, fields->place[i], value, error);
+}
+
+/* ---- For the caller's own checks --------------------------------------- */
+
+bool ef_fields_has(const ef_fields *fields, size_t i) {
+  return i < fields->n && fields->place[i] != SIZE_MAX;
+}
+
+const char *ef_fields_unit(const ef_fields *fields) {
+  return fields->table.remarks.unit;
+}
+
+ef_status ef_fields_fault(const ef_fields *fields, size_t i, ef_error *error,
+                          const char *format, ...) {
+  char message[480];
+  va_list arguments;
+  va_start(arguments, format);
+  vsnprintf(message, sizeof message, format, arguments);
+  va_end(arguments);
+  const ef__table *const table = &fields->table;
+  const bool has_column = ef_fields_has(fields, i);
+  ef__error_set(error, EF_MALFORMED, "%s", message);
+  ef__error_place(error, table->records.input->name, table->records.line,
+                  has_column ? fields->place[i] + 1 : 0,
+                  has_column ? table->column[fields->place[i]] : NULL);
+  return EF_MALFORMED;
 }

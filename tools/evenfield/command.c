@@ -110,6 +110,26 @@ static const command_entry table[] = {
      {"evenfield observer list",
       "evenfield observer build model:age=70,field=4",
       "evenfield observer build --categories 3 --population 1000"}},
+    {"panel",
+     COMMAND_PANEL,
+     "fit [RESPONSES] | calibrate [RESPONSES [SAMPLES]]",
+     "what a panel's answers say: thresholds, JND, points of equality",
+     {"`evenfield panel fit RESPONSES` fits a curve to the answers of each "
+      "observer and condition and to all together: threshold, point of "
+      "equality, JND, slope and lapses with 95 % intervals, how well the curve "
+      "fits, and how people differ. `evenfield panel calibrate RESPONSES "
+      "--pairs PAIRS` gives the panel's JND in a colour-difference formula, "
+      "which `evenfield compare --jnd FILE` reads, and how well each formula "
+      "orders the pairs. Without RESPONSES both work on answers of the demo.",
+      "RESPONSES is CSV with the column level, and for each trial answer (yes, "
+      "no; right, wrong; same, different; greater, less; or 1 and 0), or "
+      "counts n (shown) and k (of them positive); calibrate also takes "
+      "a column pair in the place of level. The columns observer, "
+      "condition, place (first or second: where the difference was) and task "
+      "may be there. Trials at level 0 show no difference."},
+     command_panel,
+     {"evenfield panel fit", "evenfield panel calibrate",
+      "evenfield panel calibrate --metric cie94 --format csv"}},
     {"swatch",
      COMMAND_SWATCH,
      "[TARGETS | LEFT RIGHT]",

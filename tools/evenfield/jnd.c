@@ -292,3 +292,20 @@ void jnd_write(ef_json *json, const jnd *j) {
   ef_json_text(json, "source", r->source);
   ef_json_end_object(json);
 }
+
+void jnd_write_csv(ef_csv *csv, const ef_jnd_record *record,
+                   const char *criterion) {
+  for (size_t i = 0; i < N_FIELDS; ++i)
+    ef_csv_text(csv, columns[i]);
+  ef_csv_end_row(csv);
+  ef_csv_text(csv, record->metric);
+  ef_csv_number(csv, record->value);
+  ef_csv_text(csv, criterion);
+  ef_csv_number(csv, record->exponent);
+  ef_csv_number(csv, record->observer_log_sd);
+  ef_csv_number(csv, record->low);
+  ef_csv_number(csv, record->high);
+  ef_csv_number(csv, (double)record->n_observers);
+  ef_csv_text(csv, record->source);
+  ef_csv_end_row(csv);
+}

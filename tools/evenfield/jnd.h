@@ -41,6 +41,10 @@ void jnd_note(const jnd *j, const ef_metric *metric, const ef_notes *notes);
 /** "0.8 Delta E*00: 50 % of observers see it (...)": value, criterion and
  * source. */
 void jnd_add(text *out, const jnd *j, const ef_metric *metric);
+/** A record as the table that --jnd reads; `criterion` in the words of
+ * ef_criterion_find. */
+void jnd_write_csv(ef_csv *csv, const ef_jnd_record *record,
+                   const char *criterion);
 /** The same as an object of the document. */
 void jnd_write(ef_json *json, const jnd *j);
 

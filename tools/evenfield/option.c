@@ -51,6 +51,11 @@ static const char *const bases[] = {
     "formula",       "macadam-1942",    "n-step",     "lamp-colours",
     "luo-rigg-1986", "rit-dupont-1997", "huang-2012", NULL};
 
+static const char *const models[] = {"gaussian", "logistic", "weibull",
+                                     "detection", NULL};
+static const char *const axes[] = {"linear", "log", NULL};
+static const char *const interval_methods[] = {"profile", "bootstrap", NULL};
+
 /* Every whole number up to this is a double. */
 #define LARGEST_SEED 9007199254740991.0
 
@@ -64,7 +69,9 @@ static const char *const bases[] = {
 #define READING (SEEING | COMMAND_COMPARE)
 #define PEOPLE                                                                 \
   (COMMAND_MATCH | COMMAND_OBSERVER | COMMAND_COMPARE | COMMAND_ISOLATE)
-#define EVERY (READING | COMMAND_TABLES | COMMAND_OBSERVER | COMMAND_ISOLATE)
+#define EVERY                                                                  \
+  (READING | COMMAND_TABLES | COMMAND_OBSERVER | COMMAND_ISOLATE |             \
+   COMMAND_PANEL)
 
 static const option_row table[] = {
     {"change", "DIRECTION", COMMAND_ISOLATE, TYPE_TEXT, FIELD(change), 0, 0,
@@ -425,6 +432,60 @@ static const option_row table[] = {
      "the plane of the chart: u', v'; x, y; a*, b*; or C*, L*; default uv"},
     {"device-max", "VALUE", SHOWING, TYPE_NUMBER, FIELD(device_max), 1e-6, 1e9,
      NULL, "device value of full drive in the files; default: what they say"},
+    {"task", "TASK", COMMAND_PANEL, TYPE_TEXT, FIELD(task), 0, 0, NULL,
+     "what observers are asked: yes-no, 2ifc (in which of two is it?), "
+     "same-different, triangle (which of three is odd?) or greater-less; "
+     "default: the column task of the answers"},
+    {"model", "MODEL", COMMAND_PANEL, TYPE_CHOICE, FIELD(model), 0, 0, models,
+     "the curve: gaussian, logistic, weibull, or detection, in which d' grows "
+     "with a power of the level; default weibull for 2ifc and triangle, "
+     "detection for yes-no and same-different with trials at level 0, else "
+     "gaussian"},
+    {"axis", "linear|log", COMMAND_PANEL, TYPE_CHOICE, FIELD(axis), 0, 0, axes,
+     "whether the curve is one of the level or of its logarithm; a level of 0 "
+     "on a logarithmic axis shows nothing; default log for weibull and "
+     "detection, else linear"},
+    {"lapse", "SHARE", COMMAND_PANEL, TYPE_NUMBER, FIELD(lapse), 0, 0.5, NULL,
+     "fixes the share of answers given without looking, 0 for none; default: "
+     "estimated, up to 0.06"},
+    {"criterion", "SHARE", COMMAND_PANEL, TYPE_TEXT, FIELD(criterion), 0, 0,
+     NULL,
+     "fit: where the threshold is taken, as a share of positive answers (75%, "
+     "0.84) or d-prime:N; default: the JND, or half of the way"},
+    {"intervals", "profile|bootstrap", COMMAND_PANEL, TYPE_CHOICE,
+     FIELD(intervals), 0, 0, interval_methods,
+     "fit: intervals by profile likelihood or by refitting simulated answers; "
+     "default profile"},
+    {"samples", "N", COMMAND_PANEL, TYPE_WHOLE, FIELD(samples), 0, 1e7, NULL,
+     "fit: simulated experiments behind p and the bootstrap, 0 for the "
+     "chi-square distribution; default 2000"},
+    {"seed", "N", COMMAND_PANEL, TYPE_WHOLE, FIELD(seed), 0, LARGEST_SEED, NULL,
+     "of all simulated answers; the same N gives the same; default 1"},
+    {"exponent", "BETA|fitted", COMMAND_PANEL, TYPE_TEXT, FIELD(exponent_text),
+     0, 0, NULL,
+     "calibrate: the power of the difference that d' grows with; default 1"},
+    {"save", "FILE", COMMAND_PANEL, TYPE_TEXT, FIELD(save), 0, 0, NULL,
+     "calibrate: also writes the panel's JND where `evenfield compare --jnd "
+     "FILE` finds it"},
+    {"pairs", "FILE", COMMAND_PANEL, TYPE_TEXT, FIELD(pairs), 0, 0, NULL,
+     "calibrate: the pairs that answers name: CSV with the column pair and the "
+     "colours reference_L, reference_a, reference_b, sample_L, sample_a, "
+     "sample_b (or X, Y, Z likewise), or with reference and sample, names of "
+     "rows of SAMPLES"},
+    {"metric", "NAME", COMMAND_PANEL, TYPE_TEXT, FIELD(metric), 0, 0, NULL,
+     "calibrate: how differences are measured, a name from `evenfield tables "
+     "metrics`, with parameters as in ciede2000:kl=2; default ciede2000"},
+    {"observer", "OBSERVER", COMMAND_PANEL, TYPE_TEXT, FIELD(observer), 0, 0,
+     NULL,
+     "calibrate: for spectra, the colour-matching functions, a name from "
+     "`evenfield observer list` or a file; default cie-1931"},
+    {"illuminant", "LIGHT", COMMAND_PANEL, TYPE_TEXT, FIELD(illuminant), 0, 0,
+     NULL,
+     "calibrate: the light on the samples and the white of their colours, a "
+     "name from `evenfield tables illuminants`, daylight:K, planck:K, FILE or "
+     "FILE:COLUMN; default D65"},
+    {"jobs", "N", COMMAND_PANEL, TYPE_INTEGER, FIELD(jobs), 0, 4096, NULL,
+     "threads to use; default 0, one for each core; changes no result"},
     {"skip-bad", NULL, READING, TYPE_FLAG, FIELD(skip_bad), 0, 0, NULL,
      "leave out rows that are at fault, and count them"},
     {"jobs", "N", READING | COMMAND_OBSERVER | COMMAND_ISOLATE, TYPE_INTEGER,
@@ -489,6 +550,10 @@ static void set_defaults(command_options *o) {
                          .most_gb = not_given,
                          .pattern = -1,
                          .time_course = -1,
+                         .lapse = not_given,
+                         .model = -1,
+                         .axis = -1,
+                         .intervals = -1,
                          .kind = -1,
                          .seen_by = -1,
                          .plane = -1,

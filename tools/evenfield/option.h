@@ -21,6 +21,7 @@ typedef enum command_bit {
   COMMAND_ELLIPSE = 16,
   COMMAND_OBSERVER = 32,
   COMMAND_COMPARE = 64,
+  COMMAND_PANEL = 128,
   COMMAND_ISOLATE = 256
 } command_bit;
 
@@ -64,6 +65,11 @@ typedef struct command_options {
   double ambient_lux, reflectance, luminance_cd_m2, jnd, tolerance, device_max;
   double size, steps, white_cd_m2, background_Y;
   double exponent, spread, batch_sd, samples;
+  const char *exponent_text, *save; /**< of panel, as what follows */
+  double lapse;
+  int model;                          /**< an ef_shape, -1 not given */
+  int axis;                           /**< an ef_axis */
+  int intervals;                      /**< an ef_interval_method */
   double population, seed, field_deg; /**< the first two are whole */
   int kind;                           /**< 0 surface, 1 light, -1 not given */
   int figure;                         /**< of enum ellipse_figure */

@@ -80,6 +80,15 @@ int words_decimals(double value, int digits) {
   return decimals < 0 ? 0 : decimals > 9 ? 9 : decimals;
 }
 
+void words_chance(double p, char text[WORDS_ROOM]) {
+  char number[EF_NUMBER_TEXT];
+  ef_number_format_fixed(p, p < 0.01 ? 4 : p < 0.1 ? 3 : 2, number);
+  if (p < 0.0001)
+    snprintf(text, WORDS_ROOM, "p < 0.0001");
+  else
+    snprintf(text, WORDS_ROOM, "p = %s", number);
+}
+
 void words_count(size_t n, const char *one, const char *many,
                  char text[WORDS_ROOM]) {
   snprintf(text, WORDS_ROOM, "%zu %s", n, n == 1 ? one : many);

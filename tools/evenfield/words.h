@@ -21,6 +21,8 @@ void words_direction(ef_components components, double h_deg,
 void words_amount(double value, char text[EF_NUMBER_TEXT]);
 /** How many decimals show `digits` significant digits of `value`: 0 to 9. */
 int words_decimals(double value, int digits);
+/** "p = 0.04", "p < 0.0001". */
+void words_chance(double p, char text[WORDS_ROOM]);
 /** "1 target", "3 targets". */
 void words_count(size_t n, const char *one, const char *many,
                  char text[WORDS_ROOM]);

@@ -59,12 +59,14 @@ void write_band_names(FILE *out, int first_nm, int last_nm);
 
 /* ---- Files ------------------------------------------------------------- */
 
+void write_colour_pairs(FILE *out);
 void write_kiosk_measurements(FILE *out);
 void write_kiosk_primaries(FILE *out);
 void write_lab_display(FILE *out);
 void write_leaflet_press(FILE *out);
 void write_livery(FILE *out);
 void write_livery_colourants(FILE *out);
+void write_pair_answers(FILE *out);
 void write_panel_responses(FILE *out);
 void write_seats_deliveries(FILE *out);
 void write_seats_standard(FILE *out);

@@ -23,12 +23,14 @@ static const struct demo_file {
   const char *name;
   void (*write)(FILE *out);
 } demo_files[] = {
+  {"colour-pairs.csv", write_colour_pairs},
   {"kiosk-measurements.csv", write_kiosk_measurements},
   {"kiosk-primaries.csv", write_kiosk_primaries},
   {"lab-display.csv", write_lab_display},
   {"leaflet-press.csv", write_leaflet_press},
   {"livery-colourants.csv", write_livery_colourants},
   {"livery.csv", write_livery},
+  {"pair-answers.csv", write_pair_answers},
   {"panel-responses.csv", write_panel_responses},
   {"seats-deliveries.csv", write_seats_deliveries},
   {"seats-standard.csv", write_seats_standard},

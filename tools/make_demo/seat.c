@@ -95,7 +95,7 @@ void write_panel_responses(FILE *out) {
   write_header(out, "answers of the seat panel, two-interval forced choice",
                "per observer and level: trials n and correct answers k; level "
                "is the CIEDE2000 difference from the standard under D65",
-               NULL,
+               "Delta E*00",
                "twelve passengers said which of two intervals held a pair of "
                "unlike seats; simulated with 75 % correct at a difference "
                "that varies between people around 0.9");
