@@ -325,6 +325,65 @@ static void every_target_and_place_gives_the_same_bits(void **state) {
   for (size_t f = 0; f < 4; ++f) check_places(kernel[f], n, factor[f]);
 }
 
+/* ---- Spectra ----------------------------------------------------------- */
+
+enum { MOST_SAMPLES = 700, MOST_CHANNELS = 20, MOST_SPECTRA = 40 };
+
+static double weight[MOST_CHANNELS * MOST_SAMPLES];
+static double spectrum[MOST_SPECTRA * MOST_SAMPLES];
+static float narrow[MOST_SPECTRA * MOST_SAMPLES];
+static double value[MOST_SPECTRA * MOST_CHANNELS];
+static double other[MOST_SPECTRA * MOST_CHANNELS];
+
+/* The sum in the order that kernels.h gives. */
+static double eight_parts(size_t n, const double *w, const double *x) {
+  double p[8] = {0};
+  for (size_t i = 0; i < n; ++i) p[i % 8] += w[i] * x[i];
+  return ((p[0] + p[4]) + (p[1] + p[5])) + ((p[2] + p[6]) + (p[3] + p[7]));
+}
+
+static void check_spectra(const ef__kernel_table *k, size_t n_samples,
+                          size_t n_channels, size_t n) {
+  /* Beside the outputs nothing is written, beside the inputs nothing counts. */
+  const size_t n_out = n * n_channels;
+  for (size_t i = 0; i < MOST_SPECTRA * MOST_CHANNELS; ++i)
+    value[i] = other[i] = -7;
+  k->apply(n_samples, n_channels, weight, n, spectrum, value);
+  k->apply_float(n_samples, n_channels, weight, n, narrow, other);
+  for (size_t i = 0; i < n; ++i) {
+    for (size_t c = 0; c < n_channels; ++c) {
+      const double sum = eight_parts(n_samples, weight + c * n_samples,
+                                     spectrum + i * n_samples);
+      assert_same_bits(value + i * n_channels + c, &sum, 1);
+    }
+  }
+  assert_same_bits(other, value, n_out); /* samples are floats */
+  for (size_t i = n_out; i < MOST_SPECTRA * MOST_CHANNELS; ++i)
+    assert_true(value[i] == -7 && other[i] == -7);
+}
+
+static void spectra_are_summed_in_one_order(void **state) {
+  (void)state;
+  gen g = gen_new(8);
+  gen_fill(&g, MOST_CHANNELS * MOST_SAMPLES, -1, 2, weight);
+  for (size_t i = 0; i < MOST_SPECTRA * MOST_SAMPLES; ++i) {
+    narrow[i] = (float)gen_unit(&g);
+    spectrum[i] = (double)narrow[i];
+  }
+  const ef__kernel_table *k;
+  for (size_t t = 0; (k = ef__kernels_at(t)) != NULL; ++t) {
+    for (size_t n_samples = 1; n_samples <= 26; ++n_samples) {
+      for (size_t n = 1; n < 12; ++n) check_spectra(k, n_samples, 3, n);
+    }
+    for (size_t n_channels = 1; n_channels <= MOST_CHANNELS; ++n_channels) {
+      check_spectra(k, 31, n_channels, 1);
+      check_spectra(k, 81, n_channels, 9);
+      check_spectra(k, 401, n_channels, MOST_SPECTRA);
+      check_spectra(k, MOST_SAMPLES, n_channels, 10); /* too long to pack */
+    }
+  }
+}
+
 int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(cube_roots),
@@ -336,6 +395,7 @@ int main(void) {
       cmocka_unit_test(nothing_becomes_a_number),
       cmocka_unit_test(differences_are_the_plain_formulas),
       cmocka_unit_test(every_target_and_place_gives_the_same_bits),
+      cmocka_unit_test(spectra_are_summed_in_one_order),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
   return cmocka_run_group_tests(tests, NULL, NULL);

@@ -456,6 +456,14 @@ static void applying_by_hand(void **state) {
   assert_int_equal(ef_weights_apply(w, 0, NULL, 0, NULL, NULL), EF_OK);
   ef_error error;
   assert_int_equal(ef_weights_apply(w, 2, sample, -1, out, &error), EF_INVALID);
+  float narrow[sizeof sample / sizeof *sample];
+  for (size_t i = 0; i < sizeof sample / sizeof *sample; ++i)
+    narrow[i] = (float)sample[i];
+  double same[sizeof out / sizeof *out];
+  assert_int_equal(ef_weights_apply_float(w, 2, narrow, 1, same, NULL), EF_OK);
+  assert_same_bits(same, out, sizeof out / sizeof *out);
+  assert_int_equal(ef_weights_apply_float(w, 2, narrow, -1, same, &error),
+                   EF_INVALID);
   assert_error(&error, EF_INVALID, "-1 jobs");
   ef_weights_free(w);
 }

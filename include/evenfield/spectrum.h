@@ -206,6 +206,11 @@ EF_API const ef_grid *ef_weights_grid(const ef_weights *weights);
 EF_API ef_status ef_weights_apply(const ef_weights *weights, size_t n,
                                   const double *sample, int jobs, double *out,
                                   ef_error *error);
+/** The same of samples kept as floats (spectral images, which they halve);
+ * products and sums are those of the same values as doubles. */
+EF_API ef_status ef_weights_apply_float(const ef_weights *weights, size_t n,
+                                        const float *sample, int jobs,
+                                        double *out, ef_error *error);
 
 #ifdef __cplusplus
 }

@@ -20,6 +20,13 @@
   X(power, (size_t n, const double *x, double y, double *out))                 \
   X(sin_cos, (size_t n, const double *x, double *sine, double *cosine))        \
   X(atan2, (size_t n, const double *y, const double *x, double *out))          \
+  /* spectra.c: out[i][c] = sum over j of matrix[c][j] sample[i][j], n spectra, \
+   * as eight partial sums p0 ... p7 over j = 0, 8, 16 ..., 1, 9, 17 ... and so  \
+   * on, ((p0 + p4) + (p1 + p5)) + ((p2 + p6) + (p3 + p7)). */                 \
+  X(apply, (size_t n_samples, size_t n_channels, const double *matrix,         \
+            size_t n, const double *sample, double *out))                      \
+  X(apply_float, (size_t n_samples, size_t n_channels, const double *matrix,   \
+                  size_t n, const float *sample, double *out))                 \
   /* cielab.c, cie94.c, cmc.c, ciede2000.c: differences of n pairs. */         \
   X(ciede2000, (size_t n, const double *reference, const double *sample,       \
                 const double factor[3], double *out))                          \

@@ -31,6 +31,13 @@ typedef uint64_t v_uint __attribute__((vector_size(8 * EF__LANES)));
 /** Blocks that must become part of the loop around them. */
 #define EF__INLINE static inline __attribute__((always_inline))
 
+/** Before a short loop over registers: its body as often as it runs. */
+#if defined(__clang__)
+#define EF__UNROLL _Pragma("clang loop unroll(full)")
+#else
+#define EF__UNROLL _Pragma("GCC unroll 8")
+#endif
+
 EF__INLINE v_double v_all(double x) {
 #if EF__LANES == 4
   return (v_double){x, x, x, x};
@@ -99,6 +106,117 @@ EF__INLINE v_double v_abs(v_double x) {
 /** The size of one and the sign of the other. */
 EF__INLINE v_double v_copysign(v_double size, v_double sign) {
   return (v_double)(((v_int)size & INT64_MAX) | ((v_int)sign & INT64_MIN));
+}
+
+/** Eight doubles on every target, for sums of eight parts. */
+enum { V_PARTS = 8 / EF__LANES };
+typedef struct v_eight {
+  v_double part[V_PARTS];
+} v_eight;
+
+EF__INLINE v_eight v_eight_zero(void) {
+  v_eight q;
+  EF__UNROLL for (int i = 0; i < V_PARTS; ++i) q.part[i] = v_all(0);
+  return q;
+}
+
+EF__INLINE v_eight v_eight_load(const double *from) {
+  v_eight q;
+  EF__UNROLL for (int i = 0; i < V_PARTS; ++i) {
+    q.part[i] = v_load(from + i * EF__LANES);
+  }
+  return q;
+}
+
+/** As many lanes of a vector as there are of n numbers, then zeros; reads no
+ * further. */
+EF__INLINE v_double v_load_some(const double *from, size_t n) {
+#if defined(__AVX2__)
+  static const int64_t mask[8] = {-1, -1, -1, -1, 0, 0, 0, 0};
+  const __m256i lanes =
+      _mm256_loadu_si256((const void *)(mask + 4 - (n < 4 ? n : 4)));
+  return (v_double)_mm256_maskload_pd(from, lanes);
+#else
+  if (n >= EF__LANES) return v_load(from);
+  return n > 0 ? (v_double){from[0], 0} : v_all(0);
+#endif
+}
+
+EF__INLINE v_eight v_eight_load_some(const double *from, size_t n) {
+  v_eight q;
+  EF__UNROLL for (int i = 0; i < V_PARTS; ++i) {
+    const size_t done = (size_t)i * EF__LANES;
+    q.part[i] = v_load_some(from + done, n > done ? n - done : 0);
+  }
+  return q;
+}
+
+EF__INLINE v_eight v_eight_load_float(const float *from) {
+  v_eight q;
+  EF__UNROLL for (int i = 0; i < V_PARTS; ++i) {
+    const float *const at = from + i * EF__LANES;
+#if defined(__AVX2__)
+    q.part[i] = (v_double)_mm256_cvtps_pd(_mm_loadu_ps(at));
+#else
+    q.part[i] = (v_double){(double)at[0], (double)at[1]};
+#endif
+  }
+  return q;
+}
+
+EF__INLINE v_eight v_eight_load_some_float(const float *from, size_t n) {
+  v_eight q;
+  EF__UNROLL for (int i = 0; i < V_PARTS; ++i) {
+    const size_t done = (size_t)i * EF__LANES;
+    const size_t left = n > done ? n - done : 0;
+    const float *const at = from + done;
+#if defined(__AVX2__)
+    static const int32_t mask[8] = {-1, -1, -1, -1, 0, 0, 0, 0};
+    const __m128i lanes =
+        _mm_loadu_si128((const void *)(mask + 4 - (left < 4 ? left : 4)));
+    q.part[i] = (v_double)_mm256_cvtps_pd(_mm_maskload_ps(at, lanes));
+#else
+    q.part[i] = (v_double){left > 0 ? (double)at[0] : 0,
+                           left > 1 ? (double)at[1] : 0};
+#endif
+  }
+  return q;
+}
+
+/** sum + a b, each rounded. */
+EF__INLINE v_eight v_eight_add_product(v_eight sum, v_eight a, v_eight b) {
+  EF__UNROLL for (int i = 0; i < V_PARTS; ++i) {
+    sum.part[i] += a.part[i] * b.part[i];
+  }
+  return sum;
+}
+
+/** ((p0 + p4) + (p1 + p5)) + ((p2 + p6) + (p3 + p7)) of each of four, to memory.
+ */
+EF__INLINE void v_eight_store_totals(double *to, v_eight a, v_eight b,
+                                     v_eight c, v_eight d) {
+#if EF__LANES == 4
+  const v_double p = a.part[0] + a.part[1], q = b.part[0] + b.part[1];
+  const v_double r = c.part[0] + c.part[1], s = d.part[0] + d.part[1];
+  /* p0 + p1, q0 + q1, p2 + p3, q2 + q3 */
+  const v_double pq = __builtin_shufflevector(p, q, 0, 4, 2, 6) +
+                      __builtin_shufflevector(p, q, 1, 5, 3, 7);
+  const v_double rs = __builtin_shufflevector(r, s, 0, 4, 2, 6) +
+                      __builtin_shufflevector(r, s, 1, 5, 3, 7);
+  v_store(to, __builtin_shufflevector(pq, rs, 0, 1, 4, 5) +
+                  __builtin_shufflevector(pq, rs, 2, 3, 6, 7));
+#else
+  const v_eight all[4] = {a, b, c, d};
+  EF__UNROLL for (int k = 0; k < 4; k += 2) {
+    const v_eight p = all[k], q = all[k + 1];
+    const v_double p0 = p.part[0] + p.part[2], p1 = p.part[1] + p.part[3];
+    const v_double q0 = q.part[0] + q.part[2], q1 = q.part[1] + q.part[3];
+    v_store(to + k, (__builtin_shufflevector(p0, q0, 0, 2) +
+                     __builtin_shufflevector(p0, q0, 1, 3)) +
+                        (__builtin_shufflevector(p1, q1, 0, 2) +
+                         __builtin_shufflevector(p1, q1, 1, 3)));
+  }
+#endif
 }
 
 /** EF__LANES triplets that follow each other in memory, and back. */

@@ -37,7 +37,7 @@ void bench_row(const char *what, const char *peer_title,
                const bench_entry *ours, const bench_entry *peer,
                double wanted);
 
-/** Wall and processor time now, s. */
+/** Wall time, and processor time of this thread, now, s. */
 double bench_wall_s(void);
 double bench_busy_s(void);
 
