@@ -49,6 +49,12 @@ awk 'BEGIN {
   }
 }' > ramp.csv
 
+# The same with what editors leave in files.
+{ printf '\357\273\277'; sed 's/$/\r/' five.csv; } > editor.csv
+printf '# who came\tto the laboratory\nage,share\n25,0.25\n60,0.75\n' > ages.csv
+"$evenfield" observer build model:age=40,field=4 --quiet --output eyes.csv ||
+  exit 1
+
 small="--frame-size 48x36 --pixels-per-mm 1 --distance-mm 400 --quiet"
 
 # replay NAME OPTION...: the record of NAME in an empty folder, without the
@@ -78,6 +84,10 @@ check "five primaries from a file, 10 bits" \
 check "16 bits, a ramp from a file, a file of ages, people" \
   replay sixteen --display demo:lab-display --tone ramp.csv --bits 16 \
   --population 20 --ages 30 --robust --contrast 0.3 --modulation pulse
+check "files of ages, eyes and room light, with marks of editors" \
+  replay editor --display editor.csv --population 9 --ages ages.csv \
+  --observer eyes.csv --ambient 50 --reflectance 0.05 \
+  --ambient-illuminant five.csv:amber --change "isoluminant:200"
 check "dithering with a seed" \
   replay dither --dither ordered --seed 7 --contrast 0.01 --duration 0.1
 

@@ -6,6 +6,7 @@
 
 #include "command.h"
 #include "isolate.h"
+#include "isolate_chart.h"
 #include "message.h"
 #include "render_isolate.h"
 #include "result.h"
@@ -79,6 +80,8 @@ static exit_code run(const command_options *options,
     if (output == NULL)
       status = error.status;
   }
+  if (status == EF_OK && options->chart != NULL)
+    status = isolate_chart_write(&scene, &result, &notes, &error);
   if (status == EF_OK && options->frames != NULL) {
     status = isolate_show_write(&result.show, &scene, &result, options->frames,
                                 &error);
@@ -97,7 +100,7 @@ static exit_code run(const command_options *options,
 
 static exit_code check_replay_usage(const command_options *o) {
   static const char *const allowed[] = {"replay", "frames", "format", "output",
-                                        "force",  "quiet",  "jobs"};
+                                        "force",  "quiet",  "jobs",   "chart"};
   if (o->n_files > 0)
     return result_check_usage(o, 0);
   for (size_t i = 0; i < o->given.n; ++i) {
@@ -191,6 +194,7 @@ static exit_code replay_with(const command_options *asked,
     o.force = asked->force;
     o.quiet = asked->quiet;
     o.jobs = asked->jobs;
+    o.chart = asked->chart;
     o.kept = kept;
     code = run(&o, document, asked->replay);
     if (code == EXIT_USAGE)

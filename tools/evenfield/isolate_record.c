@@ -12,8 +12,8 @@
 
 /* Where the answer goes and how is no part of the stimulus. */
 static bool belongs(const char *option) {
-  static const char *const others[] = {"frames", "format", "output",
-                                       "force",  "quiet",  "jobs"};
+  static const char *const others[] = {"frames", "format", "output", "force",
+                                       "quiet",  "jobs",   "chart"};
   for (size_t i = 0; i < sizeof others / sizeof others[0]; ++i) {
     if (strcmp(option, others[i]) == 0)
       return false;

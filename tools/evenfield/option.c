@@ -424,6 +424,9 @@ static const option_row table[] = {
      "the folder for a split field of every target and a sheet of all (PNG)"},
     {"swatch-bits", "8|16", MATCHING, TYPE_INTEGER, FIELD(swatch_bits), 8, 16,
      NULL, "bits per channel of the pictures; default 8"},
+    {"chart", "FILE", COMMAND_ISOLATE, TYPE_TEXT, FIELD(chart), 0, 0, NULL,
+     "draws the spectra of the background and of the extremes, as the codes "
+     "show them: FILE.svg, FILE.pdf or FILE.png"},
     {"chart", "FILE", COMMAND_MATCH, TYPE_TEXT, FIELD(chart), 0, 0, NULL,
      "draws the targets and what is shown for them, with the gamut: FILE ends "
      "in .svg, .pdf or .png"},
