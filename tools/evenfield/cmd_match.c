@@ -67,6 +67,8 @@ exit_code command_match(const command_options *options) {
   if (code == EXIT_DONE)
     code = device_check_usage(options);
   if (code == EXIT_DONE)
+    code = recipes_check_usage(options);
+  if (code == EXIT_DONE)
     code = people_check_usage(options, "population", seen_is_asked(options));
   if (code == EXIT_DONE)
     code = diagram_check_usage(options);

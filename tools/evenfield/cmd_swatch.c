@@ -164,8 +164,7 @@ static ef_status draw_pairs(const command_options *options,
   ef_illuminant *illuminant =
       observer == NULL
           ? NULL
-          : source_illuminant(o, "illuminant",
-                              o->illuminant != NULL ? o->illuminant : "D65",
+          : source_illuminant(o, "illuminant", source_first_light(o, "D65"),
                               notes, error);
   colour_basis basis;
   ef_status status = illuminant == NULL ? error->status

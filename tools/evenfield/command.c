@@ -24,11 +24,13 @@ static const command_entry table[] = {
     {"match",
      COMMAND_MATCH,
      "[TARGETS]",
-     "can this display or press show these colours, and how well?",
-     {"Matches every target with a display of three primaries (--display) or a "
-      "press of three inks (--inks): amounts, code values or ink values, in or "
-      "out of gamut and which limit is in the way, the nearest colour there is "
-      "and how visible the miss is.",
+     "can this display, press or paint show these colours, how well?",
+     {"Matches every target with a display of three primaries (--display), a "
+      "press of three inks (--inks) or three colourants and a base "
+      "(--colourants): amounts, code values, ink values or recipes, in or out "
+      "of gamut and which limit is in the way, the nearest colour there is and "
+      "how visible the miss is; for prints and recipes also what other lights "
+      "do to the match.",
       "TARGETS is CSV: colours as L,a,b or X,Y,Z or x,y,Y, reflectance spectra "
       "of surfaces, or for displays spectra of lights in the unit of the "
       "display's own spectra. Without it the ferry's painted colours are the "
@@ -38,7 +40,9 @@ static const command_entry table[] = {
      command_match,
      {"evenfield match",
       "evenfield match --display p3-d65 --bits 10 demo:livery",
-      "evenfield match --population 1000 --ages 20-70 --seed 7"}},
+      "evenfield match --population 1000 --ages 20-70 --seed 7",
+      "evenfield match --inks demo:leaflet-press",
+      "evenfield match --colourants demo:livery-colourants --batch-g 1000"}},
     {"compare",
      COMMAND_COMPARE,
      "[STANDARD BATCH]",
@@ -57,7 +61,8 @@ static const command_entry table[] = {
       "pairs. Without files the seats of the demo are compared."},
      command_compare,
      {"evenfield compare",
-      "evenfield compare --tolerance 1 --check demo:seats-standard demo:seats-deliveries",
+      "evenfield compare --tolerance 1 --check demo:seats-standard "
+      "demo:seats-deliveries",
       "evenfield compare --population 500 --format csv"}},
     {"ellipse",
      COMMAND_ELLIPSE,
@@ -156,8 +161,7 @@ static const command_entry table[] = {
       "lists of what --observer, --illuminant, --metric, --display and file "
       "arguments take."},
      command_tables,
-     {"evenfield tables",
-      "evenfield tables observers",
+     {"evenfield tables", "evenfield tables observers",
       "evenfield tables demo:livery"}},
 };
 enum { N_COMMANDS = sizeof table / sizeof table[0] };

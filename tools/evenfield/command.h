@@ -14,7 +14,7 @@ typedef struct command_entry {
   const char *summary;  /**< one line of the first screen */
   const char *about[2]; /**< paragraphs of --help above the options */
   exit_code (*run)(const command_options *options);
-  const char *examples[4]; /**< command lines that need no files, then NULL */
+  const char *examples[6]; /**< command lines that need no files, then NULL */
 } command_entry;
 
 exit_code command_describe(const command_options *options);

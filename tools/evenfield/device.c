@@ -8,12 +8,15 @@
 
 /* ---- Choosing ---------------------------------------------------------- */
 
-static const device_kind *const kinds[] = {&device_display, &device_inks};
+static const device_kind *const kinds[] = {&device_display, &device_inks,
+                                           &device_colourants};
 enum { N_KINDS = sizeof kinds / sizeof kinds[0] };
 
 /* What --OPTION of a kind names; NULL when it is not given. */
 static const char *named(const command_options *o, const device_kind *kind) {
-  return kind == &device_inks ? o->inks : o->display;
+  return kind == &device_inks         ? o->inks
+         : kind == &device_colourants ? o->colourants
+                                      : o->display;
 }
 
 const device_kind *device_kind_of(const command_options *options) {
@@ -47,8 +50,11 @@ static exit_code check_own_options(const command_options *o,
       {"luminance",
        !isnan(o->luminance_cd_m2),
        {&device_display},
-       "luminance of a display's white"},
-      {"step", !isnan(o->step_percent), {&device_inks}, "steps of ink values"},
+       "the luminance of a display's white"},
+      {"step",
+       !isnan(o->step_percent),
+       {&device_inks},
+       "the step of ink values"},
       {"yule-nielsen",
        !isnan(o->yule_nielsen),
        {&device_inks},
@@ -57,6 +63,41 @@ static exit_code check_own_options(const command_options *o,
        !isnan(o->black_percent),
        {&device_inks},
        "a fourth ink that stays fixed"},
+      {"weighed",
+       o->weighed != NULL,
+       {&device_colourants},
+       "the composition of drawdowns"},
+      {"base", o->base != NULL, {&device_colourants}, "one of the colourants"},
+      {"use", o->use != NULL, {&device_colourants}, "a choice of colourants"},
+      {"total-loading",
+       !isnan(o->total_loading),
+       {&device_colourants},
+       "a limit of mixtures"},
+      {"film",
+       !isnan(o->film),
+       {&device_colourants},
+       "the thickness of a mixture"},
+      {"substrate",
+       o->substrate != NULL,
+       {&device_colourants},
+       "what a film lies on"},
+      {"refractive-index",
+       !isnan(o->refractive_index),
+       {&device_colourants},
+       "a property of the binder"},
+      {"aim", o->aim != 0, {&device_colourants}, "a choice of recipes"},
+      {"batch-g",
+       !isnan(o->batch_g),
+       {&device_colourants},
+       "the weight of a batch"},
+      {"step-g",
+       !isnan(o->step_g),
+       {&device_colourants},
+       "the step of the scales"},
+      {"bits",
+       o->match_bits >= 0,
+       {&device_display, &device_inks},
+       "the depth of code values"},
   };
   for (size_t i = 0; i < sizeof own / sizeof own[0]; ++i) {
     const own_option *w = &own[i];
@@ -66,6 +107,17 @@ static exit_code check_own_options(const command_options *o,
                          w->kind[0]->option, w->kind[1] != NULL ? " or --" : "",
                          w->kind[1] != NULL ? w->kind[1]->option : "", w->why);
   }
+  if (isnan(o->film) != (o->substrate == NULL))
+    return message_usage("--film and --substrate go together: how thick the "
+                         "film is, and what it lies on");
+  if (o->specular == 0 && isnan(o->refractive_index))
+    return message_usage("--specular goes with --refractive-index");
+  if (o->single_constant && o->weighed == NULL)
+    return message_usage("--single-constant is for a fit to drawdowns: "
+                         "--weighed says of what they were mixed");
+  if (kind == &device_display && o->lights.n > 1)
+    return message_usage("--illuminant is given more than once, which goes "
+                         "with --inks and --colourants");
   if (!isnan(o->step_percent) && o->match_bits >= 0)
     return message_usage("--step and --bits exclude each other: drives are "
                          "multiples of one or the other");
@@ -119,5 +171,5 @@ void device_free(chosen_device *d) {
 }
 
 bool device_is_quantised(const chosen_device *d) {
-  return d->bits > 0 || d->n_steps > 0;
+  return d->bits > 0 || d->step[0] != '\0';
 }

@@ -66,14 +66,14 @@ struct chosen_device {
   /** Drives at zero are its lightest colour (paper), at full its darkest; else
    * the other way round. */
   bool is_subtractive;
-  /** Drives are multiples of 1/n_steps (0: code values of `bits`), and what a
-   * step is called: "1 %". */
+  /** Drives are code values of `bits`, or where there are none multiples of
+   * 1/n_steps; 0 and 0: any. What a step is called: "1 %", "0.5 g". */
   int bits, n_steps;
   char step[24];
   void *own; /**< what the kind knows beside */
 };
 
-extern const device_kind device_display, device_inks;
+extern const device_kind device_display, device_inks, device_colourants;
 
 /** Which kind the options name; the display when they name none. */
 const device_kind *device_kind_of(const command_options *options);

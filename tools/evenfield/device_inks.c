@@ -161,7 +161,8 @@ static void set_steps(const command_options *o, chosen_device *out) {
   ef_number_format(step, number);
   out->bits = o->match_bits >= 0 ? o->match_bits : 0;
   out->n_steps = o->match_bits >= 0 ? 0 : (int)round(100.0 / step);
-  snprintf(out->step, sizeof out->step, "%.16s %%", number);
+  if (out->n_steps > 0)
+    snprintf(out->step, sizeof out->step, "%.16s %%", number);
 }
 
 static ef_status load(const device_basis *b, chosen_device *out,

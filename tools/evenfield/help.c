@@ -56,7 +56,7 @@ void help_command(FILE *out, const command_entry *command) {
   fputs("\nOptions:\n", out);
   options_help(out, command->bit);
   fputs("\nTo try, without files of your own:\n", out);
-  for (size_t i = 0; i < 4 && command->examples[i] != NULL; ++i) {
+  for (size_t i = 0; command->examples[i] != NULL; ++i) {
     fprintf(out, "  %s\n", command->examples[i]);
   }
 }

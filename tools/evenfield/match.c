@@ -10,7 +10,7 @@
 #include "source.h"
 
 /* Rows matched at a time: enough to keep all cores busy, some 7 MB. */
-enum { BLOCK_ROWS = 8192 };
+enum { BLOCK_ROWS = 8192, BLOCK_RECIPES = 256 };
 
 static const char default_targets[] = "demo:livery";
 
@@ -45,8 +45,7 @@ static ef_status set_light(match_scene *s, const ef_notes *notes,
   s->observer = source_observer(o, notes, error);
   if (s->observer == NULL)
     return error->status;
-  const char *name =
-      o->illuminant != NULL ? o->illuminant : device_kind_of(o)->illuminant;
+  const char *name = source_first_light(o, device_kind_of(o)->illuminant);
   s->illuminant = source_illuminant(o, "illuminant", name, notes, error);
   if (s->illuminant == NULL)
     return error->status;
@@ -79,6 +78,12 @@ static ef_status set_device(match_scene *s, const ef_notes *notes,
                           notes, error);
   if (s->setup == NULL)
     return message_place(error, s->device.source);
+  if (ef_device_reflects(device)) {
+    const ef_status lit =
+        lights_init(&s->lights, o, s->illuminant, notes, error);
+    if (lit != EF_OK)
+      return lit;
+  }
   s->settings.bits = s->device.bits;
   s->settings.n_steps = s->device.n_steps;
   s->luminance_cd_m2 = isnan(o->luminance_cd_m2)
@@ -97,6 +102,34 @@ static ef_status set_targets(match_scene *s, const ef_notes *notes,
     return error->status;
   return targets_init(&s->targets, o, s->setup, &s->basis,
                       ef_reader_get_head(s->reader), notes, error);
+}
+
+/* Targets and matches in other lights, where both have spectra. */
+static ef_status set_views(match_scene *s, const ef_notes *notes,
+                           ef_error *error) {
+  const ef_reader_head *head = ef_reader_get_head(s->reader);
+  const ef_device *device = s->device.device;
+  ef_status status =
+      recipes_init(&s->recipes, s->options, device, s->observer, s->metric,
+                   s->jnd.value, &s->lights, head, error);
+  if (status != EF_OK || s->lights.n == 0)
+    return status;
+  const bool has_device = ef_device_has_spectra(device);
+  const bool has_spectra = has_device && head->content == EF_CONTENT_SPECTRA &&
+                           head->kind == EF_SURFACE;
+  s->has_views = has_spectra && s->lights.n > 1;
+  if (!has_spectra && lights_are_asked(s->options)) {
+    message_fail(error, EF_NO_ANSWER,
+                 "what other lights do follows from spectra only, and %s known "
+                 "without: give one --illuminant",
+                 has_device ? "the targets are" : "this press is");
+    return message_place(error,
+                         has_device ? s->target_source : s->device.source);
+  }
+  if (!s->has_views || s->recipes.device != NULL)
+    return EF_OK;
+  return lights_view_init(&s->print, &s->lights, device, s->observer, s->metric,
+                          head, notes, error);
 }
 
 static ef_status set_companion(match_scene *s, ef_error *error) {
@@ -129,6 +162,8 @@ ef_status match_scene_load(match_scene *s, const command_options *options,
   if (status == EF_OK)
     status = set_targets(s, notes, error);
   if (status == EF_OK)
+    status = set_views(s, notes, error);
+  if (status == EF_OK)
     status = set_companion(s, error);
   if (status == EF_OK)
     status = set_people(s, notes, error);
@@ -139,6 +174,8 @@ void match_scene_free(match_scene *s) {
   seen_free(&s->seen);
   companion_free(&s->companion);
   targets_free(&s->targets);
+  lights_view_free(&s->print);
+  lights_free(&s->lights);
   ef_reader_free(s->reader);
   ef_setup_free(s->setup);
   device_free(&s->device);
@@ -158,7 +195,9 @@ ef_status match_measure_gamut(match_scene *s, ef_error *error) {
 /* ---- Answers ----------------------------------------------------------- */
 
 const ef_shown *match_achieved(const match_scene *s, const ef_match *m) {
-  return device_is_quantised(&s->device) ? &m->coded : &m->nearest;
+  const bool is_coded =
+      device_is_quantised(&s->device) || s->recipes.device != NULL;
+  return is_coded ? &m->coded : &m->nearest;
 }
 
 /* Adds one more to the mean of n - 1. */
@@ -223,10 +262,45 @@ void match_summary_add(match_summary *sum, const match_scene *s,
 /* ---- Streaming --------------------------------------------------------- */
 
 typedef struct workspace {
+  size_t n_rows;
   double *xyz;
   ef_match *match;
-  ef_spread *spread; /* NULL without a population */
+  ef_spread *spread;    /* NULL without a population */
+  ef_recipe_view *view; /* NULL where nothing is told of other lights */
+  ef_recipes *recipe;   /* NULL for what does not mix */
 } workspace;
+
+static void workspace_free(workspace *w) {
+  free(w->xyz);
+  free(w->match);
+  free(w->spread);
+  free(w->view);
+  free(w->recipe);
+}
+
+static ef_status workspace_init(workspace *w, const match_scene *s,
+                                ef_error *error) {
+  const bool has_people = s->seen.people.population != NULL;
+  const bool mixes = s->recipes.device != NULL;
+  const size_t n_rows = mixes ? BLOCK_RECIPES : BLOCK_ROWS;
+  *w = (workspace){.n_rows = n_rows};
+  w->xyz = malloc(3 * n_rows * sizeof *w->xyz);
+  w->match = malloc(n_rows * sizeof *w->match);
+  w->spread = has_people ? malloc(n_rows * sizeof *w->spread) : NULL;
+  w->view =
+      s->has_views ? malloc(n_rows * s->lights.n * sizeof *w->view) : NULL;
+  w->recipe = mixes ? malloc(n_rows * sizeof *w->recipe) : NULL;
+  if (w->xyz != NULL && w->match != NULL &&
+      (w->spread != NULL || !has_people) &&
+      (w->view != NULL || !s->has_views) && (w->recipe != NULL || !mixes))
+    return EF_OK;
+  return message_fail(error, EF_NO_MEMORY, "out of memory for the matches");
+}
+
+/* Values of one target. */
+static size_t block_width(const match_scene *s) {
+  return ef_reader_get_head(s->reader)->width;
+}
 
 static ef_status match_block(match_scene *s, const ef_block *block,
                              const workspace *w, ef_error *error) {
@@ -264,14 +338,54 @@ static ef_status look(match_scene *s, const ef_block *block, const workspace *w,
   return status;
 }
 
+/* Recipes of the block's targets; what they show goes to `coded`. */
+static ef_status mix_block(match_scene *s, const ef_block *block,
+                           const workspace *w, ef_error *error) {
+  const size_t n_lights = s->lights.n;
+  ef_status status = EF_OK;
+  for (size_t i = 0; i < block->n && w->recipe != NULL && status == EF_OK;
+       ++i) {
+    const double *xyz = w->xyz + 3 * i;
+    status = recipes_find(&s->recipes, block->value + i * block_width(s),
+                          (ef_xyz){xyz[0], xyz[1], xyz[2]}, &w->recipe[i],
+                          &w->match[i].coded, error);
+    w->match[i].rounded_difference = (double)NAN;
+    if (status == EF_OK && w->view != NULL) {
+      memcpy(w->view + i * n_lights,
+             recipes_asked(&s->recipes, &w->recipe[i])->view,
+             n_lights * sizeof *w->view);
+    }
+  }
+  return status;
+}
+
+/* The same of prints, which have no recipe. */
+static ef_status light_block(match_scene *s, const ef_block *block,
+                             const workspace *w, ef_error *error) {
+  ef_status status = EF_OK;
+  if (w->view == NULL || w->recipe != NULL)
+    return EF_OK;
+  for (size_t i = 0; i < block->n && status == EF_OK; ++i) {
+    const ef_shown *shown = match_achieved(s, &w->match[i]);
+    status = lights_view_of(&s->print, block->value + i * block_width(s),
+                            shown->drive, w->view + i * s->lights.n, error);
+  }
+  return status;
+}
+
 static ef_status one_block(match_scene *s, const ef_block *block,
                            const workspace *w, size_t n_sinks,
                            const match_sink *const *sinks, match_summary *sum,
                            ef_error *error) {
   ef_status status = match_block(s, block, w, error);
   if (status == EF_OK)
+    status = mix_block(s, block, w, error);
+  if (status == EF_OK)
+    status = light_block(s, block, w, error);
+  if (status == EF_OK)
     status = look(s, block, w, error);
-  const match_rows rows = {block->n, block->name, w->match, w->spread};
+  const match_rows rows = {block->n,  block->name, w->match,
+                           w->spread, w->view,     w->recipe};
   for (size_t i = 0; i < block->n && status == EF_OK; ++i) {
     match_summary_add(sum, s, &rows, i);
   }
@@ -288,7 +402,7 @@ static ef_status all_blocks(match_scene *s, const workspace *w, size_t n_sinks,
   ef_status status = EF_OK;
   while (status == EF_OK) {
     ef_block block;
-    status = ef_reader_next(s->reader, BLOCK_ROWS, &block, error);
+    status = ef_reader_next(s->reader, w->n_rows, &block, error);
     if (status != EF_OK || block.n == 0)
       break;
     status = one_block(s, &block, w, n_sinks, sinks, sum, error);
@@ -303,15 +417,8 @@ ef_status match_stream(match_scene *s, size_t n_sinks,
                        const match_sink *const *sinks, match_summary *sum,
                        ef_error *error) {
   *sum = (match_summary){0};
-  const bool has_people = s->seen.people.population != NULL;
-  const workspace w = {malloc(3 * BLOCK_ROWS * sizeof *w.xyz),
-                       malloc(BLOCK_ROWS * sizeof *w.match),
-                       has_people ? malloc(BLOCK_ROWS * sizeof *w.spread)
-                                  : NULL};
-  ef_status status = EF_OK;
-  if (w.xyz == NULL || w.match == NULL || (has_people && w.spread == NULL)) {
-    status = message_fail(error, EF_NO_MEMORY, "out of memory for the matches");
-  }
+  workspace w;
+  ef_status status = workspace_init(&w, s, error);
   for (size_t k = 0; k < n_sinks && status == EF_OK; ++k) {
     status = sinks[k]->begin(sinks[k]->self, s, error);
   }
@@ -331,8 +438,6 @@ ef_status match_stream(match_scene *s, size_t n_sinks,
   for (size_t k = 0; k < n_sinks && status == EF_OK; ++k) {
     status = sinks[k]->end(sinks[k]->self, s, sum, error);
   }
-  free(w.xyz);
-  free(w.match);
-  free(w.spread);
+  workspace_free(&w);
   return status;
 }

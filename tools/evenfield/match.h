@@ -8,6 +8,8 @@
 
 #include "companion.h"
 #include "device.h"
+#include "lights.h"
+#include "recipes.h"
 #include "seen.h"
 #include "targets.h"
 
@@ -22,6 +24,10 @@ struct match_scene {
   ef_illuminant *illuminant;
   chosen_device device;
   ef_setup *setup;
+  lights lights;     /**< none for displays */
+  lights_view print; /**< of prints with spectra: has lights */
+  recipes recipes;   /**< of colourants */
+  bool has_views;    /**< targets and matches are told in all lights */
   colour_basis basis;
   ef_match_settings settings;
   double luminance_cd_m2; /**< of a display's white; NaN when not known */
@@ -74,6 +80,10 @@ typedef struct match_rows {
   const char *const *name;
   const ef_match *match;
   const ef_spread *spread; /**< NULL without --population */
+  /** Target and match in each of the scene's lights, n x lights.n; NULL where
+   * there are none. */
+  const ef_recipe_view *view;
+  const ef_recipes *recipe; /**< NULL for devices that do not mix */
 } match_rows;
 
 void match_summary_add(match_summary *sum, const match_scene *s,

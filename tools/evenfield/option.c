@@ -38,6 +38,8 @@ static const char *const units[] = {"energy", "quantal", NULL};
 static const char *const dichromats[] = {"protanope", "deuteranope",
                                          "tritanope", NULL};
 static const char *const planes[] = {"uv", "xy", "ab", "lc", NULL};
+static const char *const aims[] = {"colour", "spectrum", "lights", NULL};
+static const char *const specular[] = {"included", "excluded", NULL};
 static const char *const formats[] = {"text", "csv", "json", NULL};
 static const char *const figures[] = {"section", "projection", "ellipsoid",
                                       NULL};
@@ -237,6 +239,49 @@ static const option_row table[] = {
      "a three-ink press in the place of a display: its characterisation, rows "
      "of C,M,Y and X,Y,Z, L,a,b or a spectrum, with the eight full overprints "
      "and a ramp of each ink among them; demo:leaflet-press is one"},
+    {"colourants", "FILE", MATCHING, TYPE_TEXT, FIELD(colourants), 0, 0, NULL,
+     "colourants to mix in the place of a display: spectra of their absorption "
+     "and scattering, NAME_k and NAME_s (or NAME_ks, of single-constant "
+     "theory), or with --weighed the reflectances of drawdowns; "
+     "demo:livery-colourants is one"},
+    {"weighed", "FILE", MATCHING, TYPE_TEXT, FIELD(weighed), 0, 0, NULL,
+     "of what the drawdowns of --colourants were mixed: a line for each "
+     "colourant in each sample with the columns sample, colourant and parts, "
+     "and for films thickness and over, the sample that lies under it"},
+    {"single-constant", NULL, MATCHING, TYPE_FLAG, FIELD(single_constant), 0, 0,
+     NULL, "fits one constant, K/S, to the drawdowns of each colourant"},
+    {"base", "NAME", MATCHING, TYPE_TEXT, FIELD(base), 0, 0, NULL,
+     "the colourant that is the rest of every mixture, or none; default the "
+     "first of the file"},
+    {"use", "NAMES", MATCHING, TYPE_TEXT, FIELD(use), 0, 0, NULL,
+     "the colourants to mix with the base, such as red,yellow,blue; default "
+     "all of the file"},
+    {"total-loading", "PERCENT", MATCHING, TYPE_NUMBER, FIELD(total_loading),
+     0.01, 1e6, NULL,
+     "the most that all but the base may be of a mixture; default 100"},
+    {"film", "THICKNESS", MATCHING, TYPE_NUMBER, FIELD(film), 1e-9, 1e9, NULL,
+     "thickness of the film, in the unit of the drawdowns or of absorption and "
+     "scattering; goes with --substrate; default opaque"},
+    {"substrate", "FILE", MATCHING, TYPE_TEXT, FIELD(substrate), 0, 0, NULL,
+     "reflectance of what the film lies on: FILE, or FILE:SAMPLE of several"},
+    {"refractive-index", "N", MATCHING, TYPE_NUMBER, FIELD(refractive_index), 1,
+     3, NULL,
+     "of the binder: what its surface reflects is then taken into account "
+     "(Saunderson); default: no surface"},
+    {"specular", "included|excluded", MATCHING, TYPE_CHOICE, FIELD(specular), 0,
+     0, specular,
+     "whether the instrument sees what the surface reflects; goes with "
+     "--refractive-index; default excluded"},
+    {"aim", "colour|spectrum|lights", MATCHING, TYPE_CHOICE, FIELD(aim), 0, 0,
+     aims,
+     "what a recipe makes least: the difference in the first light, that of "
+     "the reflectances, or the differences in all lights alike; default "
+     "colour"},
+    {"batch-g", "GRAMS", MATCHING, TYPE_NUMBER, FIELD(batch_g), 1e-6, 1e12,
+     NULL, "weight of the batch: recipes are told in grams"},
+    {"step-g", "GRAMS", MATCHING, TYPE_NUMBER, FIELD(step_g), 1e-9, 1e12, NULL,
+     "what the scales tell apart: the best recipe of whole steps is sought; "
+     "goes with --batch-g"},
     {"bits", "N", COMMAND_ISOLATE, TYPE_INTEGER, FIELD(bits), 1, 16, NULL,
      "bits of a code value, 1 to 16; default 8"},
     {"bits", "N", MATCHING, TYPE_INTEGER, FIELD(match_bits), 1, 16, NULL,
@@ -276,10 +321,12 @@ static const option_row table[] = {
      "the light on surfaces and the white of colours: a name from `evenfield "
      "tables illuminants`, daylight:K, planck:K, FILE or FILE:COLUMN; default "
      "D65"},
-    {"illuminant", "LIGHT", MATCHING, TYPE_TEXT, FIELD(illuminant), 0, 0, NULL,
+    {"illuminant", "LIGHT", MATCHING, TYPE_TEXTS, FIELD(lights), 0, 0, NULL,
      "the light on surfaces and the white of colours: a name from `evenfield "
      "tables illuminants`, daylight:K, planck:K, FILE or FILE:COLUMN; default "
-     "D65, with --inks D50"},
+     "D65, with --inks D50. For --inks and --colourants it may be given more "
+     "than once: the match is made in the first, and told in the others, A, "
+     "FL11 and LED-B3 unless it is given"},
     {"illuminant", "LIGHT", COMMAND_COMPARE, TYPE_TEXTS, FIELD(lights), 0, 0,
      NULL,
      "a light on the samples: a name from `evenfield tables illuminants`, "
@@ -562,6 +609,12 @@ static void set_defaults(command_options *o) {
                          .plane = -1,
                          .format = -1,
                          .step_percent = not_given,
+                         .total_loading = not_given,
+                         .film = not_given,
+                         .refractive_index = not_given,
+                         .batch_g = not_given,
+                         .step_g = not_given,
+                         .specular = 1,
                          .yule_nielsen = not_given,
                          .black_percent = not_given,
                          .bits = 8,

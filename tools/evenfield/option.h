@@ -62,6 +62,12 @@ typedef struct command_options {
   double phase_deg, drift_hz, distance_mm, pixels_per_mm, frame_rate_hz;
   double frequency_hz, time_phase_deg, duty, duration_s, ramp_s, most_gb;
   double step_percent, yule_nielsen, black_percent; /**< of inks */
+  const char *colourants, *weighed, *base, *use, *substrate;
+  double total_loading, film, refractive_index; /**< of colourants */
+  double batch_g, step_g;
+  int aim;      /**< a recipe_aim */
+  int specular; /**< 0 included, 1 excluded */
+  bool single_constant;
   double ambient_lux, reflectance, luminance_cd_m2, jnd, tolerance, device_max;
   double size, steps, white_cd_m2, background_Y;
   double exponent, spread, batch_sd, samples;

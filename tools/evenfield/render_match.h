@@ -5,6 +5,7 @@
 #define COMMAND_RENDER_MATCH_H
 
 #include "match.h"
+#include "record.h"
 #include "text.h"
 
 /** Keeps what a person can read and writes it at the end. */
@@ -19,8 +20,10 @@ typedef struct kept_row {
   char *name;
   size_t order; /**< in the file */
   ef_match match;
-  ef_spread spread;  /**< with a population */
-  double difference; /**< rows of a long list are kept by this */
+  ef_spread spread;     /**< with a population */
+  double difference;    /**< rows of a long list are kept by this */
+  ef_recipe_view *view; /**< owned; as of match_rows */
+  ef_recipes *recipe;   /**< owned; as of match_rows */
 } kept_row;
 
 /** With a population the sentence that says what it sees, and a table of the
@@ -30,6 +33,21 @@ void render_match_people_answer(text *out, const match_scene *s,
 void render_match_people(text *out, const match_scene *s,
                          const match_summary *sum, size_t n_rows,
                          const kept_row *row);
+
+/** True where the answers are recipes. */
+bool render_match_mixes(const match_scene *s);
+/** Columns of a recipe, and the cells of the one asked for. */
+void render_match_recipe_columns(text_table *t, const match_scene *s);
+void render_match_recipe_cells(text_table *t, const match_scene *s,
+                               const kept_row *row);
+/** Tables of other lights, of the other recipe, and of how exact weighing must
+ * be; nothing for displays. */
+void render_match_lights(text *out, const match_scene *s, size_t n_rows,
+                         const kept_row *row);
+/** The same of one target as data; either may be NULL. */
+void render_match_record_recipes(record *r, const match_scene *s,
+                                 const ef_recipe_view *view,
+                                 const ef_recipes *recipe);
 
 /** What the answers rest on, and the gamut: the lower part of the text. */
 void render_match_basis(text *out, const match_scene *s,

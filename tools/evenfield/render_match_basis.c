@@ -149,16 +149,17 @@ static void add_luminances(text *t, const match_scene *s) {
   const double unit = absolute ? s->luminance_cd_m2 / 100.0 : 1.0;
   char number[EF_NUMBER_TEXT];
   ef_xyz xyz;
+  const bool has_all = s->device.kind->words.all != NULL;
   for (size_t i = 0; i < n; ++i) {
     const char *name = corner(s, i, &xyz);
     words_amount(unit * xyz.Y, number);
     text_format(t, "%s %s, ", name, number);
   }
-  for (size_t k = 0; k < 2; ++k) {
+  for (size_t k = 0; k < (has_all ? 2 : 1); ++k) {
     const bool all = (k == 0) != s->device.is_subtractive;
     const char *name = corner(s, all ? n + 1 : n, &xyz);
     words_amount(unit * xyz.Y, number);
-    text_format(t, "%s %s%s", name, number, k == 0 ? ", " : "");
+    text_format(t, "%s %s%s", name, number, k == 0 && has_all ? ", " : "");
   }
   text_add(t, absolute ? " cd/m2"
               : ef_device_reflects(s->device.device)
@@ -217,9 +218,15 @@ static void add_gamut(text *out, const match_scene *s,
     text_add(&t, "not known: the black is taken as no light at all");
   } else {
     ef_number_format_fixed(g->contrast, g->contrast < 100 ? 1 : 0, number);
-    text_format(&t, "%s has %s times the luminance of %s",
-                s->device.is_subtractive ? words->none : words->all, number,
-                s->device.is_subtractive ? words->all : words->none);
+    if (words->all == NULL)
+      text_format(&t,
+                  "the lightest of these has %s times the luminance of the "
+                  "darkest",
+                  number);
+    else
+      text_format(&t, "%s has %s times the luminance of %s",
+                  s->device.is_subtractive ? words->none : words->all, number,
+                  s->device.is_subtractive ? words->all : words->none);
   }
   text_label(out, "Contrast", &t);
   ef_number_format_fixed(100.0 * (double)sum->n_in_gamut / (double)sum->n, 1,

@@ -45,6 +45,32 @@ static size_t limits_of(const ef_device *device, const ef_match *m,
   return n;
 }
 
+/* Amounts of a display or press; of what mixes the concentrations, which say
+ * more than the drives that they come from. */
+static void record_amounts(record *r, const match_scene *s,
+                           const double *amount) {
+  const ef_device *device = s->device.device;
+  const size_t n = ef_device_n_drives(device);
+  const size_t n_mixed = ef_mixture_count(device);
+  const char *names[EF_MAX_RECIPE];
+  double drive[EF_MAX_DRIVES], share[EF_MAX_RECIPE];
+  if (n_mixed == 0) {
+    names_of_drives(device, names);
+    record_numbers(r, "amounts", n, names, amount);
+    return;
+  }
+  for (size_t i = 0; i < n; ++i)
+    drive[i] = ef_device_drive(device, i, amount[i]);
+  for (size_t i = 0; i < n_mixed; ++i) {
+    names[i] = ef_mixture_name(device, i);
+    share[i] = (double)NAN;
+  }
+  ef_error ignored;
+  if (!isnan(amount[0]))
+    ef_mixture_concentrations(device, drive, share, &ignored);
+  record_numbers(r, "concentrations", n_mixed, names, share);
+}
+
 static void record_shown(record *r, const char *key, const match_scene *s,
                          const ef_shown *shown) {
   const double none = (double)NAN;
@@ -62,7 +88,7 @@ static void record_shown(record *r, const char *key, const match_scene *s,
   }
   record_begin(r, key);
   record_boolean(r, "found", x.found);
-  record_numbers(r, "amounts", n, names, x.amount);
+  record_amounts(r, s, x.amount);
   record_xyz(r, x.xyz);
   record_number(r, "difference", x.difference);
   record_number(r, "jnds", x.jnds);
@@ -78,9 +104,16 @@ static void record_spread(record *r, const ef_spread *spread) {
   record_number(r, "share_of_observers", spread->share_of_observers);
 }
 
-/* `spread` NULL without a population. */
+/* What some scenes tell beside the match; NULL where they do not. */
+typedef struct match_more {
+  const ef_spread *spread;
+  const ef_recipe_view *view; /* in each light */
+  const ef_recipes *recipe;
+} match_more;
+
 static void record_match(record *r, const match_scene *s, const char *name,
-                         const ef_match *m, const ef_spread *spread) {
+                         const ef_match *m, const match_more *more) {
+  const ef_spread *spread = more->spread;
   const ef_device *device = s->device.device;
   const size_t n = ef_device_n_drives(device);
   const char *names[EF_MAX_DRIVES], *limits[2 * EF_MAX_DRIVES];
@@ -94,10 +127,12 @@ static void record_match(record *r, const match_scene *s, const char *name,
   record_text(r, "name", name);
   record_boolean(r, "in_gamut", m->in_gamut);
   record_colour(r, "target", m->target, white);
-  record_numbers(r, "amounts", n, names, m->amount);
+  record_amounts(r, s, m->amount);
   record_texts(r, "limits", limits_of(device, m, limits), limits);
-  record_numbers(r, "drive", n, names, achieved->drive);
-  record_numbers(r, "codes", n, names, codes);
+  if (more->recipe == NULL) {
+    record_numbers(r, "drive", n, names, achieved->drive);
+    record_numbers(r, "codes", n, names, codes);
+  }
   record_colour(r, "achieved", achieved->xyz, white);
   record_begin(r, "difference");
   record_text(r, "metric", ef_metric_name(s->metric));
@@ -112,6 +147,7 @@ static void record_match(record *r, const match_scene *s, const char *name,
     record_spread(r, spread);
     record_end(r);
   }
+  render_match_record_recipes(r, s, more->view, more->recipe);
   record_end(r);
 }
 
@@ -201,16 +237,20 @@ static void write_summary(ef_json *j, const match_scene *s,
 
 static ef_status begin(void *self, const match_scene *s, ef_error *error) {
   match_data *d = self;
-  const ef_status status =
-      document_open(&d->out, d->output, d->is_csv, error);
+  const ef_status status = document_open(&d->out, d->output, d->is_csv, error);
   if (status != EF_OK)
     return status;
   if (d->is_csv) {
     record r = document_header(&d->out);
     const ef_match none = {0};
     const ef_spread no_spread = {0};
-    record_match(&r, s, "", &none,
-                 s->seen.people.population != NULL ? &no_spread : NULL);
+    const ef_recipe_view no_view[EF_MAX_LIGHTS] = {0};
+    const ef_recipes no_recipe = {0};
+    const match_more more = {
+        .spread = s->seen.people.population != NULL ? &no_spread : NULL,
+        .view = s->has_views ? no_view : NULL,
+        .recipe = s->recipes.device != NULL ? &no_recipe : NULL};
+    record_match(&r, s, "", &none, &more);
     return EF_OK;
   }
   ef_json_boolean(d->out.json, "demo", s->device.is_demo && s->demo_targets);
@@ -227,8 +267,11 @@ static ef_status rows(void *self, const match_scene *s, const match_rows *rows,
   match_data *d = self;
   for (size_t i = 0; i < rows->n; ++i) {
     record r = document_row(&d->out);
-    record_match(&r, s, rows->name[i], &rows->match[i],
-                 rows->spread != NULL ? &rows->spread[i] : NULL);
+    const match_more more = {
+        .spread = rows->spread != NULL ? &rows->spread[i] : NULL,
+        .view = rows->view != NULL ? rows->view + i * s->lights.n : NULL,
+        .recipe = rows->recipe != NULL ? &rows->recipe[i] : NULL};
+    record_match(&r, s, rows->name[i], &rows->match[i], &more);
   }
   return EF_OK;
 }

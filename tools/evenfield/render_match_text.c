@@ -41,12 +41,37 @@ static int by_miss(const void *a, const void *b) {
   return (p->order > q->order) - (p->order < q->order);
 }
 
+static void kept_row_free(kept_row *row) {
+  free(row->name);
+  free(row->view);
+  free(row->recipe);
+}
+
 /* Keeps the worst once there are more than a person reads. */
 static void thin(match_text *t) {
   t->worst_only = true;
   qsort(t->row, t->n_rows, sizeof *t->row, by_difference);
   while (t->n_rows > WORST_ROWS)
-    free(t->row[--t->n_rows].name);
+    kept_row_free(&t->row[--t->n_rows]);
+}
+
+/* Views and recipes of row `i`, as far as there are any. */
+static bool copy_more(kept_row *row, const match_scene *s,
+                      const match_rows *rows, size_t i) {
+  const size_t n = s->lights.n;
+  if (rows->view != NULL) {
+    row->view = malloc(n * sizeof *row->view);
+    if (row->view == NULL)
+      return false;
+    memcpy(row->view, rows->view + i * n, n * sizeof *row->view);
+  }
+  if (rows->recipe != NULL) {
+    row->recipe = malloc(sizeof *row->recipe);
+    if (row->recipe == NULL)
+      return false;
+    *row->recipe = rows->recipe[i];
+  }
+  return true;
 }
 
 static ef_status keep(void *self, const match_scene *s, const match_rows *rows,
@@ -64,11 +89,14 @@ static ef_status keep(void *self, const match_scene *s, const match_rows *rows,
         difference <= t->row[WORST_ROWS - 1].difference) {
       continue;
     }
-    char *name = strdup(rows->name[i]);
-    if (name == NULL) {
-      return message_fail(error, EF_NO_MEMORY, "out of memory for names");
-    }
-    t->row[t->n_rows++] = (kept_row){name, order, *match, spread, difference};
+    kept_row *row = &t->row[t->n_rows++];
+    *row = (kept_row){.name = strdup(rows->name[i]),
+                      .order = order,
+                      .match = *match,
+                      .spread = spread,
+                      .difference = difference};
+    if (row->name == NULL || !copy_more(row, s, rows, i))
+      return message_fail(error, EF_NO_MEMORY, "out of memory for the rows");
     if (t->n_rows > MOST_ROWS)
       thin(t);
   }
@@ -240,7 +268,9 @@ static void start_table(text_table *t, const match_scene *s,
   const size_t n = ef_device_n_drives(device);
   table_column(t, "Target", "", true);
   table_column(t, "In", "gamut", true);
-  for (size_t i = 0; i < n; ++i) {
+  if (render_match_mixes(s))
+    render_match_recipe_columns(t, s);
+  for (size_t i = 0; i < n && !render_match_mixes(s); ++i) {
     table_column(t, i == 0 ? words_of(s)->amounts : NULL,
                  ef_device_drive_name(device, i), false);
   }
@@ -289,7 +319,9 @@ static void add_table(text *out, const match_text *m, const match_scene *s) {
     const ef_shown *shown = match_achieved(s, match);
     table_cell(&t, m->row[k].name);
     table_cell(&t, in_gamut_word(s, match));
-    for (size_t i = 0; i < n; ++i) {
+    if (render_match_mixes(s))
+      render_match_recipe_cells(&t, s, &m->row[k]);
+    for (size_t i = 0; i < n && !render_match_mixes(s); ++i) {
       table_number(&t, amount_of(s, shown, i), decimals);
     }
     for (size_t i = 0; i < n && s->device.bits > 0; ++i) {
@@ -514,6 +546,7 @@ static ef_status end(void *self, const match_scene *s, const match_summary *sum,
   add_second_lines(&out, s, sum);
   add_table(&out, m, s);
   render_match_people(&out, s, sum, m->n_rows, m->row);
+  render_match_lights(&out, s, m->n_rows, m->row);
   add_misses(&out, m, s, sum);
   add_pictures(&out, s);
   render_match_basis(&out, s, sum);
@@ -541,7 +574,7 @@ void match_text_free(match_text *t) {
   if (t == NULL)
     return;
   for (size_t i = 0; i < t->n_rows; ++i)
-    free(t->row[i].name);
+    kept_row_free(&t->row[i]);
   free(t->row);
   free(t);
 }

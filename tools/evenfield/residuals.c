@@ -1,6 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "residuals.h"
 
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -47,6 +48,10 @@ ef_status residuals_of(residuals *out, const ef_metric *metric, size_t n,
       continue;
     out->worst = difference[i];
     out->worst_line = r->line[x->row];
+    if (r->n_device == 0)
+      snprintf(out->worst_name, sizeof out->worst_name, "%s", r->name[x->row]);
+    if (r->n_device == 0)
+      continue;
     memcpy(out->worst_drive, r->device + x->row * r->n_device,
            r->n_device * sizeof *r->device);
   }
@@ -65,8 +70,12 @@ void residuals_add(text *t, const residuals *r, const ef_metric *metric) {
   words_amount(r->worst, worst);
   text_format(t,
               "by %s %s on average, 95 %% of them by less than %s, at worst by "
-              "%s (line %zu, drive",
-              mean, ef_metric_symbol(metric), p95, worst, r->worst_line);
+              "%s (",
+              mean, ef_metric_symbol(metric), p95, worst);
+  if (r->n_drives == 0)
+    text_format(t, "%s", r->worst_name);
+  else
+    text_format(t, "line %zu, drive", r->worst_line);
   for (size_t i = 0; i < r->n_drives; ++i) {
     char drive[EF_NUMBER_TEXT];
     ef_number_format_fixed(100.0 * r->worst_drive[i], 0, drive);

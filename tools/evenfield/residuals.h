@@ -17,6 +17,7 @@ typedef struct residuals {
   size_t n; /**< 0: nothing to compare with */
   double mean, p95, worst;
   size_t worst_line;
+  char worst_name[64]; /**< of rows without drives; "" else */
   size_t n_drives;
   double worst_drive[EF_MAX_DRIVES];
 } residuals;

@@ -218,3 +218,47 @@ ef_illuminant *source_illuminant(const command_options *options,
   message_option(error, option, no_file);
   return NULL;
 }
+
+const char *source_first_light(const command_options *options,
+                               const char *otherwise) {
+  if (options->lights.n > 0)
+    return options->lights.text[0];
+  return options->illuminant != NULL ? options->illuminant : otherwise;
+}
+
+/* ---- Surfaces ---------------------------------------------------------- */
+
+ef_status source_surface(const command_options *options, const char *option,
+                         const char *name, const ef_notes *notes,
+                         ef_spectra **spectra, size_t *at, ef_error *error) {
+  char path[4096];
+  snprintf(path, sizeof path, "%s", name);
+  char *colon = strrchr(path, ':');
+  const bool is_demo = strncmp(path, "demo:", 5) == 0 && colon == path + 4;
+  const char *sample = NULL;
+  if (colon != NULL && !is_demo && access(name, F_OK) != 0) {
+    *colon = '\0';
+    sample = colon + 1;
+  }
+  *at = 0;
+  *spectra = read_spectra(options, path, EF_KIND_AUTO, notes, error);
+  if (*spectra == NULL)
+    return error->status;
+  ef_status status = EF_OK;
+  if (ef_spectra_kind(*spectra) != EF_SURFACE) {
+    status = message_fail(error, EF_MALFORMED,
+                          "reflectances of surfaces are needed here, and these "
+                          "are lights");
+  } else if (sample != NULL) {
+    status = ef_spectra_find(*spectra, sample, at, error);
+  } else if (ef_spectra_count(*spectra) > 1) {
+    ask_for_column(*spectra, option, path, error);
+    status = error->status;
+  }
+  if (status == EF_OK)
+    return EF_OK;
+  message_place(error, path);
+  ef_spectra_free(*spectra);
+  *spectra = NULL;
+  return status;
+}

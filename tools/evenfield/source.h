@@ -26,6 +26,14 @@ ef_observer *source_observer(const command_options *options,
 ef_observer *source_observer_named(const command_options *options,
                                    const char *name, const char *what,
                                    const ef_notes *notes, ef_error *error);
+/** One surface of a file, FILE or FILE:SAMPLE; free *spectra with
+ * ef_spectra_free. */
+ef_status source_surface(const command_options *options, const char *option,
+                         const char *name, const ef_notes *notes,
+                         ef_spectra **spectra, size_t *at, ef_error *error);
+/** First of --illuminant, or `otherwise`. */
+const char *source_first_light(const command_options *options,
+                               const char *otherwise);
 /** A light by name, FILE or FILE:COLUMN; `option` names the option in
  * messages. */
 ef_illuminant *source_illuminant(const command_options *options,
