@@ -5,6 +5,7 @@
 #include <string.h>
 
 #include "command.h"
+#include "diagram.h"
 #include "isolate.h"
 #include "isolate_chart.h"
 #include "message.h"
@@ -231,9 +232,12 @@ static exit_code replay(const command_options *options) {
 }
 
 exit_code command_isolate(const command_options *options) {
+  exit_code code = diagram_check_usage(options);
+  if (code != EXIT_DONE)
+    return code;
   if (options->replay != NULL)
     return replay(options);
-  exit_code code = check_usage(options);
+  code = check_usage(options);
   if (code != EXIT_DONE)
     return code;
   kept_files kept = {0};

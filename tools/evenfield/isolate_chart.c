@@ -6,6 +6,7 @@
 
 #include <evenfield/picture.h>
 
+#include "diagram.h"
 #include "message.h"
 #include "text.h"
 
@@ -67,16 +68,10 @@ static ef_status draw(const isolate_scene *s, const isolate_result *r,
   ef_chart *chart = ef_chart_new(settings, error);
   if (chart == NULL)
     return error->status;
-  ef_chart_report report;
+  const diagram d = {.chart = chart};
   ef_status status = add_states(chart, s, r, error);
   if (status == EF_OK)
-    status = ef_chart_write(chart, s->options->chart, &report, error);
-  if (status == EF_OK && !report.has_text) {
-    message_note(notes,
-                 "%s has no text: it needs libcairo.so.2 and a font, and one "
-                 "of them is missing",
-                 s->options->chart);
-  }
+    status = diagram_write(&d, s->options->chart, notes, error);
   ef_chart_free(chart);
   return status;
 }
