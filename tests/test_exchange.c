@@ -241,7 +241,7 @@ static void unused_columns_are_noted(void **state) {
   (void)state;
   heard h;
   ef_reader *const reader =
-      open_heard("id,L,a,b,X,Y,Z,x,y,checked by\n"
+      open_heard("no,L,a,b,X,Y,Z,x,y,checked by\n"
                  "7,52.5,-3.25,17.75,20.25,21.5,8.125,0.4,0.4,nobody\n",
                  &h);
   assert_int_equal(ef_reader_get_head(reader)->content, EF_CONTENT_XYZ);
@@ -250,7 +250,7 @@ static void unused_columns_are_noted(void **state) {
   assert_near(block.value[0], 20.25, 0);
   assert_string_equal(block.name[0], "row 1");
   assert_string_equal(h.text,
-                      "t.csv:1: X,Y,Z taken; 7 columns are not used: 'id', "
+                      "t.csv:1: X,Y,Z taken; 7 columns are not used: 'no', "
                       "'L', 'a', 'b', 'x', 'y', 'checked by'\n");
   ef_reader_free(reader);
 }
@@ -498,8 +498,8 @@ static void kind_rule(void **state) {
   check_kind(
       "wavelength_nm,d\n400,37.25\n410,1.5\n", EF_KIND_AUTO, EF_LIGHT,
       "t.csv: read as lights: no '# quantity:' line says what the values "
-      "are, and those of its rows lie in 1.5 to 37.25; reflectances in "
-      "percent must be divided by 100\n");
+      "are, and those of its rows lie in 1.5 to 37.25; for reflectances in "
+      "percent add '# quantity: reflectance' and '# unit: percent'\n");
   check_kind("name,400,410\nd,0.5,0.25\n", EF_KIND_LIGHT, EF_LIGHT, "");
   check_kind("# quantity: light\nname,400,410\nd,0.5,0.25\n", EF_KIND_SURFACE,
              EF_SURFACE,
@@ -514,6 +514,59 @@ static void kind_rule(void **state) {
              EF_KIND_AUTO, EF_LIGHT,
              "t.csv: values are relative: the unit 'counts' is not W sr^-1 "
              "m^-2 nm^-1\n");
+}
+
+/* Where the file says so: wide, long, with a decimal comma. */
+static void percent_becomes_ratios(void **state) {
+  (void)state;
+  static const char *const texts[] = {
+      "# quantity: reflectance\n# unit: percent\nname,400,410\nd,23.1,0.75\n",
+      "# unit: reflectance in percent\nname,400,410\nd,23.1,0.75\n",
+      "# quantity: radiance factor\n# unit: %\nname;400;410\nd;23,1;0,75\n",
+      "# quantity: reflectance\n# unit: %\nwavelength_nm,d\n400,23.1\n"
+      "410,0.75\n"};
+  for (size_t i = 0; i < sizeof texts / sizeof *texts; ++i) {
+    ef_reader *const reader = open_with(texts[i], NULL);
+    assert_int_equal(ef_reader_get_head(reader)->kind, EF_SURFACE);
+    const ef_block block = next(reader, 5);
+    assert_int_equal(block.n, 1);
+    assert_near(block.value[0], 0.231, 0);
+    assert_near(block.value[1], 0.0075, 0);
+    ef_reader_free(reader);
+  }
+  /* Not of lights, and not of colours; a quantity may speak of other columns. */
+  ef_reader *reader = open_with(
+      "# quantity: light\n# unit: %\nname,400,410\nd,23.1,100\n", NULL);
+  assert_near(next(reader, 5).value[1], 100, 0);
+  ef_reader_free(reader);
+  reader = open_with("# quantity: inks in percent and reflectance\n"
+                     "# device_max: 100\nC,M,Y,400,410\n10,0,0,0.75,1\n",
+                     NULL);
+  assert_near(next(reader, 5).value[0], 0.75, 0);
+  ef_reader_free(reader);
+  reader = open_with("# unit: percent\nname,X,Y,Z\nd,23.1,25,20\n", NULL);
+  assert_near(next(reader, 5).value[1], 25, 0);
+  ef_reader_free(reader);
+}
+
+/* What instruments write for a name and for CIELAB. */
+static void other_words_for_columns(void **state) {
+  (void)state;
+  static const char *const texts[] = {
+      "Sample,L*,a*,b*\nrun 1,52.5,-8.25,-20.5\n",
+      "ID;L;a;b\nrun 1;52,5;-8,25;-20,5\n",
+      "sample name,L*,a*,b*\nrun 1,52.5,-8.25,-20.5\n",
+      "name,id,L,a,b\nrun 1,77,52.5,-8.25,-20.5\n"};
+  for (size_t i = 0; i < sizeof texts / sizeof *texts; ++i) {
+    ef_reader *const reader = open_with(texts[i], NULL);
+    assert_int_equal(ef_reader_get_head(reader)->content, EF_CONTENT_LAB);
+    assert_true(ef_reader_get_head(reader)->has_names);
+    const ef_block block = next(reader, 5);
+    assert_string_equal(block.name[0], "run 1");
+    assert_near(block.value[0], 52.5, 0);
+    assert_near(block.value[2], -20.5, 0);
+    ef_reader_free(reader);
+  }
 }
 
 /* Nothing is assumed about colours: of lights where somebody says so. */
@@ -551,6 +604,8 @@ int main(void) {
       cmocka_unit_test(lights_may_be_noisy),
       cmocka_unit_test(functions_have_any_sign),
       cmocka_unit_test(kind_of_colours),
+      cmocka_unit_test(percent_becomes_ratios),
+      cmocka_unit_test(other_words_for_columns),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
   return cmocka_run_group_tests(tests, NULL, NULL);

@@ -82,8 +82,8 @@ typedef struct ef_reader ef_reader;
  * light otherwise, with a note. Values of lights may fall below zero by 0.1 %
  * of the largest value of their row (of their file for long spectra): that is
  * the noise of an instrument, and it is kept. Refused: lower values of lights,
- * values of surfaces below -0.02 or above 2 (percent: the message says so), Y or L
- * below zero, chromaticities without y, device values below zero or above full
+ * values of surfaces below -0.02 or above 2 (percent is read where a line
+ * `# unit: percent` says so, and becomes ratios), Y or L below zero, chromaticities without y, device values below zero or above full
  * drive, text in a number, nan, inf, wavelengths that are duplicate, unsorted
  * or outside 100 to 10000 nm, repeated column names, ragged rows, lines above
  * 4 MiB, quoted fields above 64 KiB, more than 16384 columns. */

@@ -73,16 +73,12 @@ static void decide_colour_kind(ef_reader *reader) {
           : EF_SURFACE;
 }
 
-/* Dark samples in percent would pass for ratios. */
-static ef_status check_unit(const ef_reader *reader, ef_error *error) {
-  if (reader->limits.kind != EF_SURFACE) return EF_OK;
-  if (!ef__unit_is_percent(reader->table.remarks.unit)) return EF_OK;
-  ef__error_set(error, EF_MALFORMED,
-                "the '# unit:' line says percent, expected ratios where 1 is "
-                "the perfect reflecting diffuser; divide the values by 100 and "
-                "remove the line");
-  ef__error_place(error, file_name(reader), 0, 0, NULL);
-  return EF_MALFORMED;
+/* Only where the unit line says so: dark samples in percent would pass for
+ * ratios, bright ones for lights, and a quantity line may speak of inks. */
+static void decide_percent(ef_reader *reader) {
+  reader->limits.is_percent =
+      reader->limits.kind == EF_SURFACE &&
+      ef__unit_is_percent(reader->table.remarks.unit);
 }
 
 ef_status ef__decide_from_remarks(ef_reader *reader, ef_error *error) {
@@ -90,8 +86,7 @@ ef_status ef__decide_from_remarks(ef_reader *reader, ef_error *error) {
   const ef_content content = reader->layout.content;
   if (content == EF_CONTENT_SPECTRA) {
     decide_kind(reader);
-    const ef_status status = check_unit(reader, error);
-    if (status != EF_OK) return status;
+    decide_percent(reader);
   }
   if (content == EF_CONTENT_XYZ || content == EF_CONTENT_XYY) {
     decide_colour_kind(reader);
@@ -133,8 +128,8 @@ static void assume_kind(ef_reader *reader, ef__range value) {
   }
   ef__note(reader->settings.notes,
            "%s: read as lights: no '# quantity:' line says what the values "
-           "are, and those of %s lie in %s to %s; reflectances in percent must "
-           "be divided by 100",
+           "are, and those of %s lie in %s to %s; for reflectances in percent "
+           "add '# quantity: reflectance' and '# unit: percent'",
            file_name(reader), rows_text(reader), low, high);
 }
 

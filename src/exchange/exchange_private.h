@@ -227,6 +227,7 @@ ef_status ef__row_read(ef__table *table, const ef__layout *layout,
 typedef struct ef__limits {
   ef_kind kind;
   bool kind_is_assumed;
+  bool is_percent;     /**< surfaces: values become ratios as they are read */
   bool any_sign;       /**< functions: no limits at all */
   double largest_light; /**< long spectra: of the file; 0: take the row's */
   double device_max;

@@ -25,6 +25,7 @@ static const column_set colour_sets[] = {
     {{"X", "Y", "Z"}, EF_CONTENT_XYZ},
     {{"x", "y", "Y"}, EF_CONTENT_XYY},
     {{"L", "a", "b"}, EF_CONTENT_LAB},
+    {{"L*", "a*", "b*"}, EF_CONTENT_LAB},
 };
 enum { N_COLOUR_SETS = sizeof colour_sets / sizeof *colour_sets };
 
@@ -329,20 +330,32 @@ static void note_unused(const ef__table *table, const ef__layout *layout) {
            n_unused == 1 ? " is" : "s are", list);
 }
 
-static ef_status find_name_column(const ef__table *table, ef__layout *layout,
-                                  ef_error *error) {
+static ef_status find_called(const ef__table *table, const char *word,
+                             ef__layout *layout, ef_error *error) {
   for (size_t i = 0; i < table->n_columns; ++i) {
-    if (!ef__name_equal(table->column[i], "name")) continue;
+    if (!ef__name_equal(table->column[i], word)) continue;
     if (layout->name_column != SIZE_MAX) {
       return ef__header_error(table, i, error,
-                              "columns %zu and %zu are both called name; "
+                              "columns %zu and %zu are both called %s; "
                               "rename one of them",
-                              layout->name_column + 1, i + 1);
+                              layout->name_column + 1, i + 1, word);
     }
     layout->name_column = i;
     layout->slot[i] = EF__SLOT_NAME;
   }
   return EF_OK;
+}
+
+/* name, or in its place what instruments write. */
+static ef_status find_name_column(const ef__table *table, ef__layout *layout,
+                                  ef_error *error) {
+  static const char *const words[] = {"name", "sample", "sample name", "id"};
+  ef_status status = EF_OK;
+  for (size_t i = 0; i < sizeof words / sizeof *words; ++i) {
+    if (status != EF_OK || layout->name_column != SIZE_MAX) break;
+    status = find_called(table, words[i], layout, error);
+  }
+  return status;
 }
 
 /* The measuring angle of rows that are one sample. */

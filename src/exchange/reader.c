@@ -48,6 +48,14 @@ ef_status ef__reader_fault(ef_reader *reader, const ef_error *fault,
   return EF_OK;
 }
 
+/* Of a long table the first value is the wavelength. */
+static void to_ratios(const ef_reader *reader, double *value) {
+  const ef__layout *const layout = &reader->layout;
+  for (size_t i = layout->is_long ? 1 : 0; i < layout->n_values; ++i) {
+    value[i] /= 100;
+  }
+}
+
 ef_status ef__reader_row(ef_reader *reader, bool with_limits, double *value,
                          double *device, ef__label *label, bool *has_row,
                          ef_error *error) {
@@ -58,6 +66,7 @@ ef_status ef__reader_row(ef_reader *reader, bool with_limits, double *value,
     ++reader->n_rows_seen;
     status = ef__row_read(&reader->table, &reader->layout, value, device, label,
                           &fault);
+    if (status == EF_OK && reader->limits.is_percent) to_ratios(reader, value);
     if (status == EF_OK && with_limits) {
       status = ef__row_check(&reader->table, &reader->layout, &reader->limits,
                              reader->table.records.line, value, device, &fault);

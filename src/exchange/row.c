@@ -90,14 +90,24 @@ static ef_status place_fault(const ef__table *table, const ef__layout *layout,
   return EF_MALFORMED;
 }
 
-static ef_status refuse_surface(double value, bool is_assumed,
+static ef_status refuse_surface(double value, const ef__limits *limits,
                                 ef_error *error) {
   char number[EF_NUMBER_TEXT];
-  ef_number_format(value, number);
+  /* As it stands in the file, but for the last digits. */
+  ef_number_format(limits->is_percent ? round(value * 1e8) / 1e6 : value,
+                   number);
   const char *const assumed =
-      is_assumed ? " (assumed from the first rows; if these are lights, add "
-                   "'# quantity: light')"
-                 : "";
+      limits->kind_is_assumed
+          ? " (assumed from the first rows; if these are lights, add "
+            "'# quantity: light')"
+          : "";
+  if (limits->is_percent) {
+    return ef__error_set(error, EF_MALFORMED,
+                         "found %s %% for a surface%s, expected -2 to 200 %%, "
+                         "100 being the perfect reflecting diffuser; for "
+                         "ratios remove the word percent above the header",
+                         number, assumed);
+  }
   if (value < lowest_surface) {
     return ef__error_set(error, EF_MALFORMED,
                          "found %s for a surface%s, expected a ratio of -0.02 "
@@ -106,8 +116,8 @@ static ef_status refuse_surface(double value, bool is_assumed,
   }
   return ef__error_set(error, EF_MALFORMED,
                        "found %s for a surface%s, expected a ratio up to 2 "
-                       "where 1 is the perfect reflecting diffuser; divide "
-                       "percent by 100",
+                       "where 1 is the perfect reflecting diffuser; for "
+                       "percent add the line '# unit: percent'",
                        number, assumed);
 }
 
@@ -148,7 +158,7 @@ static ef_status check_spectrum(const ef__limits *limits, size_t n,
     if (value[i] < low || (is_surface && value[i] > highest_surface)) break;
   }
   return is_surface
-             ? refuse_surface(value[*fault], limits->kind_is_assumed, error)
+             ? refuse_surface(value[*fault], limits, error)
              : refuse_light(value[*fault], limits->kind_is_assumed, error);
 }
 

@@ -154,8 +154,11 @@ static void add_tolerance(text *out, const compare_scene *s,
   text line = {0};
   compare_tolerance_words(s, tolerance);
   text_format(&line, "%zu of %zu %s within %s %s%s%s; ", n->n_within, n->n,
-              n->n == 1 ? "pair is" : "pairs are", tolerance,
-              ef_metric_symbol(s->metric), s->own_tolerance ? "" : " (one JND)",
+              n->n == 1          ? "pair is"
+              : n->n_within == 1 ? "pairs is"
+                                 : "pairs are",
+              tolerance, ef_metric_symbol(s->metric),
+              s->own_tolerance ? "" : " (one JND)",
               s->looks.n > 1 ? " in every light" : "");
   if (n->n_beyond == 0) {
     text_add(&line, "none is beyond it");
