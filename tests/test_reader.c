@@ -530,6 +530,39 @@ static void memory_may_run_out(void **state) {
   free(rows);
 }
 
+/* ---- Files of bytes ------------------------------------------------------ */
+
+static void whole_files_of_bytes(void **state) {
+  (void)state;
+  enum { N = 200001 };
+  static unsigned char bytes[N];
+  char path[SCRATCH_PATH];
+  unsigned char *read = NULL;
+  size_t length = 0;
+  ef_error error = {0};
+  for (size_t i = 0; i < N; ++i) bytes[i] = (unsigned char)(i * 37 % 251);
+  scratch_write("b.bin", bytes, N);
+  scratch_path("b.bin", path);
+  assert_int_equal(ef_bytes_read(path, N, &read, &length, &error), EF_OK);
+  assert_int_equal(length, N);
+  assert_memory_equal(read, bytes, N);
+  free(read);
+  assert_int_equal(ef_bytes_read(path, N - 1, &read, &length, &error),
+                   EF_MALFORMED);
+  assert_string_equal(error.message, "has more than 200000 bytes");
+  scratch_write("b.bin", bytes, 0);
+  assert_int_equal(ef_bytes_read(path, N, &read, &length, &error),
+                   EF_MALFORMED);
+  assert_string_equal(error.message, "is an empty file");
+  unlink(path);
+  assert_int_equal(ef_bytes_read(path, N, &read, &length, &error),
+                   EF_UNREADABLE);
+  assert_string_equal(error.message,
+                      "there is no such file; check the path");
+  assert_int_equal(ef_bytes_read("/", N, &read, &length, NULL), EF_UNREADABLE);
+  assert_int_equal(ef_bytes_read(NULL, N, &read, &length, NULL), EF_INVALID);
+}
+
 int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(faulty_rows_are_left_out),
@@ -549,6 +582,7 @@ int main(void) {
       cmocka_unit_test(bad_arguments),
       cmocka_unit_test(an_error_ends_the_rows),
       cmocka_unit_test(memory_may_run_out),
+      cmocka_unit_test(whole_files_of_bytes),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
   return cmocka_run_group_tests(tests, scratch_make, scratch_remove);

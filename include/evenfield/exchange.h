@@ -229,6 +229,13 @@ EF_API size_t ef_demo_count(void);
 EF_API const char *ef_demo_name(size_t i);
 EF_API const char *ef_demo_text(size_t i, size_t *length);
 
+/** The bytes of a whole file that is no text, such as an ICC profile; "-" is
+ * standard input. EF_MALFORMED when there are more than `max_bytes` or none.
+ * Free with free(). */
+EF_API ef_status ef_bytes_read(const char *path, size_t max_bytes,
+                               unsigned char **bytes, size_t *length,
+                               ef_error *error);
+
 /* ---- Writing ----------------------------------------------------------- */
 
 /** An output that appears whole or not at all: written beside its place,

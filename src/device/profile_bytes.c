@@ -145,7 +145,27 @@ static ef_status check_elements(const tag *t, ef_error *error) {
   return EF_OK;
 }
 
+/* curveType (10.6) and parametricCurveType (10.18). */
+static ef_status check_curve(const tag *t, ef_error *error) {
+  if (t->size < 12 || !fits(t, 12, u32(t->bytes + 8), 2))
+    return refuse(t, "the curve says it is longer than its tag", error);
+  return EF_OK;
+}
+
+static ef_status check_formula(const tag *t, ef_error *error) {
+  static const size_t n_parameters[] = {1, 3, 4, 5, 7};
+  if (t->size < 12 || u16(t->bytes + 8) > 4)
+    return refuse(t, "the curve is of no function type that ICC.1 has", error);
+  if (!fits(t, 12, n_parameters[u16(t->bytes + 8)], 4))
+    return refuse(t, "the curve has fewer parameters than its function", error);
+  return EF_OK;
+}
+
 static ef_status check_tag(const tag *t, ef_error *error) {
+  if (is_signature(t->bytes, "curv"))
+    return check_curve(t, error);
+  if (is_signature(t->bytes, "para"))
+    return check_formula(t, error);
   if (is_signature(t->bytes, "mft1"))
     return check_lut(t, false, error);
   if (is_signature(t->bytes, "mft2"))

@@ -74,6 +74,8 @@ typedef struct ef__input {
   bool at_end;   /**< the source has no more */
 } ef__input;
 
+/** Opens a file for reading; -1 and the reason in words else. */
+int ef__open_file(const char *path, ef_error *error);
 ef__input *ef__input_open(const char *path, ef_error *error);
 ef__input *ef__input_from_text(const char *name, const char *text,
                                size_t length, ef_error *error);

@@ -55,7 +55,7 @@ static void refuse_open(const char *path, int reason, ef_error *error) {
   ef__error_place(error, path, 0, 0, NULL);
 }
 
-static int open_file(const char *path, ef_error *error) {
+int ef__open_file(const char *path, ef_error *error) {
   int descriptor;
   do {
     descriptor = open(path, O_RDONLY | O_CLOEXEC | O_NOCTTY);
@@ -77,7 +77,7 @@ static int open_file(const char *path, ef_error *error) {
 
 ef__input *ef__input_open(const char *path, ef_error *error) {
   const bool is_standard = strcmp(path, "-") == 0;
-  const int descriptor = is_standard ? STDIN_FILENO : open_file(path, error);
+  const int descriptor = is_standard ? STDIN_FILENO : ef__open_file(path, error);
   if (descriptor < 0) return NULL;
   ef__input *input =
       input_new(is_standard ? "standard input" : path, error);

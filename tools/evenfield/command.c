@@ -135,6 +135,25 @@ static const command_entry table[] = {
      command_panel,
      {"evenfield panel fit", "evenfield panel calibrate",
       "evenfield panel calibrate --metric cie94 --format csv"}},
+    {"profile",
+     COMMAND_PROFILE,
+     "make PROFILE | check PROFILE [MEASUREMENTS] | convert COLOURS",
+     "ICC profiles: make one of a display, judge one, convert colours",
+     {"`evenfield profile make PROFILE --display FILE` writes a display profile "
+      "(ICC version 4, three curves and a matrix) from measured primaries and "
+      "ramps. `evenfield profile check PROFILE MEASUREMENTS` says how well a "
+      "profile describes measured rows (R,G,B or inks beside X,Y,Z, x,y,Y, "
+      "L,a,b or a spectrum); without them, whether it can be read and holds "
+      "the tags it must have.",
+      "`evenfield profile convert COLOURS --from A --to B` converts a list of "
+      "colours: device values of the profile A, or without --from the colours "
+      "of the file, to device values of the profile B, to xyz or to lab. What "
+      "comes out is judged by the profile's own way back."},
+     command_profile,
+     {"evenfield profile make kiosk.icc --display demo:kiosk-measurements",
+      "evenfield profile convert --to p3-d65 demo:livery",
+      "evenfield profile convert --from srgb --to lab "
+      "demo:kiosk-measurements"}},
     {"swatch",
      COMMAND_SWATCH,
      "[TARGETS | LEFT RIGHT]",

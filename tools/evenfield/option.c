@@ -73,7 +73,9 @@ static const char *const interval_methods[] = {"profile", "bootstrap", NULL};
   (COMMAND_MATCH | COMMAND_OBSERVER | COMMAND_COMPARE | COMMAND_ISOLATE)
 #define EVERY                                                                  \
   (READING | COMMAND_TABLES | COMMAND_OBSERVER | COMMAND_ISOLATE |             \
-   COMMAND_PANEL)
+   COMMAND_PANEL |             \
+   COMMAND_PROFILE)
+#define LIT (SHOWING | COMMAND_PROFILE) /* a display and the light on it */
 
 static const option_row table[] = {
     {"change", "DIRECTION", COMMAND_ISOLATE, TYPE_TEXT, FIELD(change), 0, 0,
@@ -223,6 +225,40 @@ static const option_row table[] = {
      FIELD(contrast_from), 0, 0, NULL,
      "the background that cone contrasts are taken from, written like --at; "
      "default the white"},
+    {"from", "PROFILE", COMMAND_PROFILE, TYPE_TEXT, FIELD(from), 0, 0, NULL,
+     "convert: the profile that the device values belong to, a file or a "
+     "published encoding such as srgb; default: the file holds colours"},
+    {"to", "PROFILE|xyz|lab", COMMAND_PROFILE, TYPE_TEXT, FIELD(to), 0, 0, NULL,
+     "convert: the profile to convert to, a file or a published encoding, or "
+     "X, Y, Z or L*, a*, b* under D50"},
+    {"intent", "INTENT", COMMAND_PROFILE, TYPE_TEXT, FIELD(intent), 0, 0, NULL,
+     "check, convert: perceptual, relative, saturation or absolute; default "
+     "relative"},
+    {"scale-black", NULL, COMMAND_PROFILE, TYPE_FLAG, FIELD(scale_black), 0, 0,
+     NULL,
+     "check, convert: scale lightness so that the darkest colour of one side "
+     "goes to that of the other (black point compensation)"},
+    {"description", "TEXT", COMMAND_PROFILE, TYPE_TEXT, FIELD(description), 0,
+     0, NULL,
+     "make: what the profile calls itself; default: the title of the "
+     "display's file"},
+    {"display", "DISPLAY", COMMAND_PROFILE, TYPE_TEXT, FIELD(display), 0, 0,
+     NULL,
+     "make: a file with the spectra of the primaries at full drive or with "
+     "measured rows (R,G,B and X,Y,Z or a spectrum), a published encoding such "
+     "as bt709, or demo:NAME"},
+    {"illuminant", "LIGHT", COMMAND_PROFILE, TYPE_TEXT, FIELD(illuminant), 0, 0,
+     NULL,
+     "convert: the white of the file's colours and the light on its surfaces, "
+     "a name from `evenfield tables illuminants`, daylight:K, planck:K, FILE "
+     "or FILE:COLUMN; default D50"},
+    {"adaptation", "NAME", COMMAND_PROFILE, TYPE_TEXT, FIELD(adaptation), 0, 0,
+     NULL,
+     "convert: from that white to D50: cat16, bradford or none; default "
+     "bradford"},
+    {"check", NULL, COMMAND_PROFILE, TYPE_FLAG, FIELD(check), 0, 0, NULL,
+     "exit with status 1 when a colour is off by more than the tolerance, or "
+     "the profile lacks a required tag"},
     {"display", "DISPLAY", MATCHING, TYPE_TEXT, FIELD(display), 0, 0, NULL,
      "a file with the spectra of the primaries at full drive or with measured "
      "rows (R,G,B and X,Y,Z or a spectrum), a published encoding such as "
@@ -232,7 +268,7 @@ static const option_row table[] = {
      "a file with the spectra of 3 to 8 primaries at full drive, or with "
      "measured rows (R,G,B and a spectrum), or demo:NAME; default "
      "demo:lab-display"},
-    {"tone", "CURVE", SHOWING, TYPE_TEXT, FIELD(tone), 0, 0, NULL,
+    {"tone", "CURVE", LIT, TYPE_TEXT, FIELD(tone), 0, 0, NULL,
      "from drive to light: linear, power:G, iec61966-2-1, or a file with "
      "measured ramps; default: what the display's file or encoding says"},
     {"inks", "FILE", MATCHING, TYPE_TEXT, FIELD(inks), 0, 0, NULL,
@@ -297,11 +333,11 @@ static const option_row table[] = {
      NULL,
      "the black of a print with four inks, which stays fixed; default 0, and "
      "rows with black are left out"},
-    {"ambient", "LUX", SHOWING, TYPE_NUMBER, FIELD(ambient_lux), 0, 1e6, NULL,
+    {"ambient", "LUX", LIT, TYPE_NUMBER, FIELD(ambient_lux), 0, 1e6, NULL,
      "illuminance on the screen; default 0, a dark room"},
-    {"reflectance", "R", SHOWING, TYPE_NUMBER, FIELD(reflectance), 0, 1, NULL,
+    {"reflectance", "R", LIT, TYPE_NUMBER, FIELD(reflectance), 0, 1, NULL,
      "diffuse reflectance of the screen, 0 to 1; goes with --ambient"},
-    {"ambient-illuminant", "LIGHT", SHOWING, TYPE_TEXT,
+    {"ambient-illuminant", "LIGHT", LIT, TYPE_TEXT,
      FIELD(ambient_illuminant), 0, 0, NULL,
      "what falls on the screen, named like --illuminant; default D65"},
     {"luminance", "CD", MATCHING, TYPE_NUMBER, FIELD(luminance_cd_m2), 1e-6,
@@ -338,7 +374,7 @@ static const option_row table[] = {
      "who looks: a name from `evenfield observer list`, with settings as in "
      "model:age=45,field=4, or a file with three colour-matching functions; "
      "may be given more than once; default cie-1931"},
-    {"kind", "surface|light", READING, TYPE_CHOICE, FIELD(kind), 0, 0, kinds,
+    {"kind", "surface|light", READING | COMMAND_PROFILE, TYPE_CHOICE, FIELD(kind), 0, 0, kinds,
      "what the spectra in the files are; default: what the file says"},
     {"adaptation", "NAME", COMMAND_COMPARE, TYPE_TEXT, FIELD(adaptation), 0, 0,
      NULL,
@@ -347,7 +383,7 @@ static const option_row table[] = {
     {"adaptation", "NAME", MATCHING, TYPE_TEXT, FIELD(adaptation), 0, 0, NULL,
      "from the targets' white to the display's: cat16, bradford or none; "
      "default cat16, none for lights and for targets in cd/m2"},
-    {"metric", "NAME", DIFFERING, TYPE_TEXT, FIELD(metric), 0, 0, NULL,
+    {"metric", "NAME", DIFFERING | COMMAND_PROFILE, TYPE_TEXT, FIELD(metric), 0, 0, NULL,
      "how differences are measured, a name from `evenfield tables metrics`, "
      "with parameters as in ciede2000:kl=2; default ciede2000"},
     {"jnd", "VALUE|FILE", THRESHOLDS, TYPE_TEXT, FIELD(jnd_text), 0, 0, NULL,
@@ -367,7 +403,7 @@ static const option_row table[] = {
     {"spread", "SD", COMMAND_COMPARE, TYPE_NUMBER, FIELD(spread), 0, 3, NULL,
      "how JNDs differ from person to person: the standard deviation of their "
      "natural logarithm; default 0.28, or what the file of the JND says"},
-    {"jnd", "VALUE", MATCHING, TYPE_NUMBER, FIELD(jnd), 1e-6, 1e6, NULL,
+    {"jnd", "VALUE", MATCHING | COMMAND_PROFILE, TYPE_NUMBER, FIELD(jnd), 1e-6, 1e6, NULL,
      "the difference that is just noticed, in units of the metric; default: "
      "the published one of the metric"},
     {"white-luminance", "CD", THRESHOLDS, TYPE_NUMBER, FIELD(white_cd_m2), 1e-6,
@@ -424,7 +460,7 @@ static const option_row table[] = {
      "FORMULA:VALUE; default one JND"},
     {"check", NULL, COMMAND_MATCH, TYPE_FLAG, FIELD(check), 0, 0, NULL,
      "exit with status 1 when a target's difference exceeds the tolerance"},
-    {"tolerance", "VALUE", COMMAND_MATCH, TYPE_NUMBER, FIELD(tolerance), 0, 1e6,
+    {"tolerance", "VALUE", COMMAND_MATCH | COMMAND_PROFILE, TYPE_NUMBER, FIELD(tolerance), 0, 1e6,
      NULL, "for --check, in units of the metric; default one JND"},
     {"population", "N", COMMAND_OBSERVER, TYPE_WHOLE, FIELD(population), 1,
      EF_POPULATION_MOST, NULL,
@@ -480,7 +516,7 @@ static const option_row table[] = {
     {"plane", "uv|xy|ab|lc", COMMAND_MATCH, TYPE_CHOICE, FIELD(plane), 0, 0,
      planes,
      "the plane of the chart: u', v'; x, y; a*, b*; or C*, L*; default uv"},
-    {"device-max", "VALUE", SHOWING, TYPE_NUMBER, FIELD(device_max), 1e-6, 1e9,
+    {"device-max", "VALUE", LIT, TYPE_NUMBER, FIELD(device_max), 1e-6, 1e9,
      NULL, "device value of full drive in the files; default: what they say"},
     {"task", "TASK", COMMAND_PANEL, TYPE_TEXT, FIELD(task), 0, 0, NULL,
      "what observers are asked: yes-no, 2ifc (in which of two is it?), "
@@ -536,9 +572,9 @@ static const option_row table[] = {
      "FILE:COLUMN; default D65"},
     {"jobs", "N", COMMAND_PANEL, TYPE_INTEGER, FIELD(jobs), 0, 4096, NULL,
      "threads to use; default 0, one for each core; changes no result"},
-    {"skip-bad", NULL, READING, TYPE_FLAG, FIELD(skip_bad), 0, 0, NULL,
+    {"skip-bad", NULL, READING | COMMAND_PROFILE, TYPE_FLAG, FIELD(skip_bad), 0, 0, NULL,
      "leave out rows that are at fault, and count them"},
-    {"jobs", "N", READING | COMMAND_OBSERVER | COMMAND_ISOLATE, TYPE_INTEGER,
+    {"jobs", "N", READING | COMMAND_OBSERVER | COMMAND_ISOLATE | COMMAND_PROFILE, TYPE_INTEGER,
      FIELD(jobs), 0, 4096, NULL,
      "threads to use; default 0, one for each core; changes no result"},
     {"format", "text|csv|json", COMMAND_OBSERVER, TYPE_CHOICE, FIELD(format), 0,

@@ -22,7 +22,8 @@ typedef enum command_bit {
   COMMAND_OBSERVER = 32,
   COMMAND_COMPARE = 64,
   COMMAND_PANEL = 128,
-  COMMAND_ISOLATE = 256
+  COMMAND_ISOLATE = 256,
+  COMMAND_PROFILE = 4096
 } command_bit;
 
 typedef enum output_format {
@@ -68,6 +69,8 @@ typedef struct command_options {
   int aim;      /**< a recipe_aim */
   int specular; /**< 0 included, 1 excluded */
   bool single_constant;
+  const char *from, *to, *intent, *description; /**< of profile */
+  bool scale_black;                             /**< likewise */
   double ambient_lux, reflectance, luminance_cd_m2, jnd, tolerance, device_max;
   double size, steps, white_cd_m2, background_Y;
   double exponent, spread, batch_sd, samples;
