@@ -20,10 +20,7 @@ void isolate_record(record *out, const isolate_scene *s,
 
 /** "L", "M", "S", "rods", "melanopsin". */
 const char *isolate_receptor_words(size_t receptor);
-/** A contrast in percent, with three significant digits or as many decimals as
- * 1e-6 takes, and a sign unless it is zero: "+12.3", "-0.042", "0". */
-void isolate_percent(double contrast, char out[EF_NUMBER_TEXT]);
-/** "12.3 %". */
+/** "12.3 %", of a contrast or its size. */
 void isolate_add_size(text *t, double size);
 /** What is shown. */
 void render_isolate_frames(text *out, const isolate_scene *s,

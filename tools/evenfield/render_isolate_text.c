@@ -2,6 +2,7 @@
 #include "render_isolate.h"
 
 #include <math.h>
+#include <stdio.h>
 #include <string.h>
 
 #include "words.h"
@@ -12,47 +13,40 @@ const char *isolate_receptor_words(size_t receptor) {
   return words[receptor];
 }
 
-/* Digits that are read, and contrasts below which nothing is there. */
-static void add_digits(double percent, const char *plus,
-                       char out[EF_NUMBER_TEXT]) {
-  const double nothing_percent = 5e-7;
-  if (isnan(percent)) {
-    out[0] = '-';
-    out[1] = '\0';
-    return;
-  }
-  if (fabs(percent) < nothing_percent) {
-    out[0] = '0';
-    out[1] = '\0';
-    return;
-  }
-  int decimals = words_decimals(percent, 3);
-  /* 99.96 has two decimals more than 100, which it is rounded to. */
-  const double scale = pow(10.0, decimals);
-  if (decimals > 0 && round(fabs(percent) * scale) >= 1000.0)
-    --decimals;
-  if (decimals > 6)
-    decimals = 6;
-  char digits[EF_NUMBER_TEXT];
-  ef_number_format_fixed(percent, decimals, digits);
-  out[0] = '\0';
-  strncat(out, percent > 0.0 ? plus : "", EF_NUMBER_TEXT - 1);
-  strncat(out, digits, EF_NUMBER_TEXT - 1 - strlen(out));
-}
+/* A sign and a number. */
+enum { PERCENT_ROOM = EF_NUMBER_TEXT + 1 };
 
-void isolate_percent(double contrast, char out[EF_NUMBER_TEXT]) {
-  add_digits(100.0 * contrast, "+", out);
+/* Three digits of a contrast in percent, as many decimals as 1e-6 takes at
+ * most; `sign` 1 for a plus before what is above zero, else 0. */
+static void write_percent(double contrast, size_t sign,
+                          char out[PERCENT_ROOM]) {
+  const double percent = 100.0 * contrast, nothing = 5e-7;
+  int decimals = words_decimals(percent, 3);
+  /* 99.96 is rounded to 100, which has three digits before its point. */
+  if (decimals > 0 && round(fabs(percent) * pow(10.0, decimals)) >= 1000.0)
+    --decimals;
+  const bool is_there = fabs(percent) >= nothing;
+  char digits[EF_NUMBER_TEXT] = "";
+  if (isnan(percent))
+    snprintf(digits, sizeof digits, "-");
+  else if (!is_there)
+    snprintf(digits, sizeof digits, "0");
+  else
+    ef_number_format_fixed(percent, decimals > 6 ? 6 : decimals, digits);
+  const size_t before = is_there && percent > 0.0 ? sign : 0;
+  out[0] = '+';
+  memcpy(out + before, digits, sizeof digits);
 }
 
 static void add_percent(text *t, double contrast) {
-  char number[EF_NUMBER_TEXT];
-  isolate_percent(contrast, number);
+  char number[PERCENT_ROOM];
+  write_percent(contrast, 1, number);
   text_format(t, "%s %%", number);
 }
 
 void isolate_add_size(text *t, double size) {
-  char number[EF_NUMBER_TEXT];
-  add_digits(100.0 * size, "", number);
+  char number[PERCENT_ROOM];
+  write_percent(size, 0, number);
   text_format(t, "%s %%", number);
 }
 
@@ -286,14 +280,14 @@ static void add_primaries(text *out, const isolate_scene *s,
 }
 
 static void percent_cell(text_table *t, double contrast) {
-  char number[EF_NUMBER_TEXT];
-  isolate_percent(contrast, number);
+  char number[PERCENT_ROOM];
+  write_percent(contrast, 1, number);
   table_cell(t, number);
 }
 
 static void size_cell(text_table *t, double size) {
-  char number[EF_NUMBER_TEXT];
-  add_digits(100.0 * size, "", number);
+  char number[PERCENT_ROOM];
+  write_percent(size, 0, number);
   table_cell(t, number);
 }
 
