@@ -33,42 +33,12 @@ static ef__polar_weights weights(const ef_metric *self,
                              self->parameter[FACTOR_C].value * s_c, s_h};
 }
 
-static double components(const ef_metric *self, const double reference[3],
-                         const double sample[3], ef_components *part) {
-  const ef__polar_weights w = weights(self, reference);
-  return ef__polar_components(&w, reference, sample, part);
-}
-
-static double difference(const ef_metric *self, const double reference[3],
-                         const double sample[3]) {
-  ef_components part;
-  return components(self, reference, sample, &part);
-}
-
 static void differences(const ef_metric *self, size_t n,
                         const double *reference, const double *sample,
                         double *difference) {
   double factor[2];
   for (size_t i = 0; i < 2; ++i) factor[i] = self->parameter[i].value;
   ef__kernels()->cmc(n, reference, sample, factor, difference);
-}
-
-static void tensor(const ef_metric *self, const double coordinate[3],
-                   double g[9]) {
-  const ef__polar_weights w = weights(self, coordinate);
-  ef__polar_tensor(&w, coordinate, g);
-}
-
-static void expand(const ef_metric *self, const double reference[3],
-                   const double sample[3], ef__expansion *out) {
-  const ef__polar_weights w = weights(self, reference);
-  ef__polar_expand(&w, reference, sample, out);
-}
-
-static double least(const ef_metric *self, const double reference[3],
-                    const double low[3], const double high[3]) {
-  const ef__polar_weights w = weights(self, reference);
-  return ef__polar_least(&w, reference, low, high);
 }
 
 /* 2:1 is what ISO 105-J03 gives for the acceptability of textiles. */
@@ -89,12 +59,13 @@ const ef_metric ef__metric_cmc = {
     .coordinates = ef__lab_coordinates,
     .inverse = ef__lab_inverse,
     .jacobian = ef__lab_jacobian,
-    .difference = difference,
+    .weights = weights,
+    .difference = ef__polar_difference,
     .differences = differences,
-    .components = components,
-    .tensor = tensor,
-    .expand = expand,
+    .components = ef__polar_components,
+    .tensor = ef__polar_tensor,
+    .expand = ef__polar_expand,
     .carry = ef__lab_carry,
-    .least = least,
+    .least = ef__polar_least,
     .kinked_axis = true,
 };

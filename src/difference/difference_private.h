@@ -37,6 +37,17 @@ typedef enum ef__base_model {
   EF__ON_CAM16
 } ef__base_model;
 
+/** Divisors of the lightness and of the chromatic plane of a difference that is
+ * Euclidean but for them. */
+typedef struct ef__scale {
+  double lightness, chromatic;
+} ef__scale;
+
+/** What lightness, chroma and hue of a difference in CIELAB are divided by. */
+typedef struct ef__polar_weights {
+  double lightness, chroma, hue;
+} ef__polar_weights;
+
 /** A formula. Coordinate 0 is lightness, 1 and 2 span the chromatic plane with
  * the neutral axis at 0. Functions marked optional may be NULL; the wrappers
  * below then do without. Every function gets the formula itself, for its
@@ -72,6 +83,11 @@ struct ef_metric {
   void (*chord)(const ef_metric *self, ef_xyz xyz,
                 const ef_conditions *conditions, double size,
                 double jacobian[9]);
+  /** Optional, for the functions of tensor.c: without it 1 and 1. */
+  ef__scale (*scale)(const ef_metric *self);
+  /** For the functions of polar.c: those at the reference. */
+  ef__polar_weights (*weights)(const ef_metric *self,
+                               const double reference[3]);
   double (*difference)(const ef_metric *self, const double reference[3],
                        const double sample[3]);
   /** Optional: the differences of n pairs, n x 3 each, to rounding those of
@@ -178,7 +194,8 @@ double ef__ciede2000_least(const ef_metric *self, const double reference[3],
 
 /* ---- Tools for formulas (tensor.c) ------------------------------------- */
 
-/** For formulas that are the Euclidean distance of their coordinates. */
+/** For formulas that are the Euclidean distance of their coordinates, but for a
+ * `scale` where they have one. */
 double ef__euclidean_difference(const ef_metric *self,
                                 const double reference[3],
                                 const double sample[3]);
@@ -197,34 +214,18 @@ void ef__euclidean_expand(const ef_metric *self, const double reference[3],
 double ef__euclidean_least(const ef_metric *self, const double reference[3],
                            const double low[3], const double high[3]);
 
-/** For formulas that are so up to divisors of the lightness and of the
- * chromatic plane. */
-typedef struct ef__scale {
-  double lightness, chromatic;
-} ef__scale;
-double ef__scaled_difference(ef__scale scale, const double reference[3],
-                             const double sample[3]);
-void ef__scaled_differences(ef__scale scale, size_t n, const double *reference,
-                            const double *sample, double *difference);
-double ef__scaled_components(ef__scale scale, const double reference[3],
-                             const double sample[3], ef_components *components);
-void ef__scaled_tensor(ef__scale scale, double tensor[9]);
-void ef__scaled_expand(ef__scale scale, const double reference[3],
-                       const double sample[3], ef__expansion *out);
+/* ---- Shared by formulas on CIELAB with weights (polar.c) --------------- */
 
-/** For formulas on CIELAB that divide lightness, chroma and hue by weights of
- * the reference (polar.c). */
-typedef struct ef__polar_weights {
-  double lightness, chroma, hue;
-} ef__polar_weights;
-double ef__polar_components(const ef__polar_weights *w,
-                            const double reference[3], const double sample[3],
-                            ef_components *components);
-void ef__polar_tensor(const ef__polar_weights *w, const double coordinate[3],
+/** For formulas that fill `weights`: each takes those of the reference. */
+double ef__polar_difference(const ef_metric *self, const double reference[3],
+                            const double sample[3]);
+double ef__polar_components(const ef_metric *self, const double reference[3],
+                            const double sample[3], ef_components *components);
+void ef__polar_tensor(const ef_metric *self, const double coordinate[3],
                       double tensor[9]);
-void ef__polar_expand(const ef__polar_weights *w, const double reference[3],
+void ef__polar_expand(const ef_metric *self, const double reference[3],
                       const double sample[3], ef__expansion *out);
-double ef__polar_least(const ef__polar_weights *w, const double reference[3],
+double ef__polar_least(const ef_metric *self, const double reference[3],
                        const double low[3], const double high[3]);
 
 /** Local tensor from second differences of the formula: for formulas without a

@@ -88,33 +88,6 @@ static ef__scale scale(const ef_metric *self) {
   return (ef__scale){k_e, k_e * self->parameter[K_CH].value};
 }
 
-static double difference(const ef_metric *self, const double reference[3],
-                         const double sample[3]) {
-  return ef__scaled_difference(scale(self), reference, sample);
-}
-
-static void differences(const ef_metric *self, size_t n,
-                        const double *reference, const double *sample,
-                        double *difference) {
-  ef__scaled_differences(scale(self), n, reference, sample, difference);
-}
-
-static double components(const ef_metric *self, const double reference[3],
-                         const double sample[3], ef_components *part) {
-  return ef__scaled_components(scale(self), reference, sample, part);
-}
-
-static void tensor(const ef_metric *self, const double coordinate[3],
-                   double g[9]) {
-  (void)coordinate;
-  ef__scaled_tensor(scale(self), g);
-}
-
-static void expand(const ef_metric *self, const double reference[3],
-                   const double sample[3], ef__expansion *out) {
-  ef__scaled_expand(scale(self), reference, sample, out);
-}
-
 const ef_metric ef__metric_din99o = {
     .name = "din99o",
     .title = "DIN99o",
@@ -126,9 +99,10 @@ const ef_metric ef__metric_din99o = {
     .coordinates = coordinates,
     .inverse = inverse,
     .jacobian = jacobian,
-    .difference = difference,
-    .differences = differences,
-    .components = components,
-    .tensor = tensor,
-    .expand = expand,
+    .scale = scale,
+    .difference = ef__euclidean_difference,
+    .differences = ef__euclidean_differences,
+    .components = ef__euclidean_components,
+    .tensor = ef__euclidean_tensor,
+    .expand = ef__euclidean_expand,
 };

@@ -8,23 +8,33 @@
 #include "difference/range.h"
 #include "kernel/kernels.h"
 
-double ef__scaled_difference(ef__scale scale, const double reference[3],
-                             const double sample[3]) {
+static ef__scale scale_of(const ef_metric *self) {
+  return self->scale != NULL ? self->scale(self) : (ef__scale){1, 1};
+}
+
+double ef__euclidean_difference(const ef_metric *self,
+                                const double reference[3],
+                                const double sample[3]) {
+  const ef__scale scale = scale_of(self);
   const double d0 = (sample[0] - reference[0]) / scale.lightness;
   const double d1 = (sample[1] - reference[1]) / scale.chromatic;
   const double d2 = (sample[2] - reference[2]) / scale.chromatic;
   return sqrt(d0 * d0 + d1 * d1 + d2 * d2);
 }
 
-void ef__scaled_differences(ef__scale scale, size_t n, const double *reference,
-                            const double *sample, double *difference) {
+void ef__euclidean_differences(const ef_metric *self, size_t n,
+                               const double *reference, const double *sample,
+                               double *difference) {
+  const ef__scale scale = scale_of(self);
   const double factor[2] = {scale.lightness, scale.chromatic};
   ef__kernels()->distance(n, reference, sample, factor, difference);
 }
 
-double ef__scaled_components(ef__scale scale, const double reference[3],
-                             const double sample[3],
-                             ef_components *components) {
+double ef__euclidean_components(const ef_metric *self,
+                                const double reference[3],
+                                const double sample[3],
+                                ef_components *components) {
+  const ef__scale scale = scale_of(self);
   const double c1 =
       sqrt(reference[1] * reference[1] + reference[2] * reference[2]);
   const double c2 = sqrt(sample[1] * sample[1] + sample[2] * sample[2]);
@@ -33,19 +43,22 @@ double ef__scaled_components(ef__scale scale, const double reference[3],
   components->hue = ef__delta_hue(reference[1], reference[2], sample[1],
                                   sample[2], c1 * c2) /
                     scale.chromatic;
-  return ef__scaled_difference(scale, reference, sample);
+  return ef__euclidean_difference(self, reference, sample);
 }
 
-void ef__scaled_tensor(ef__scale scale, double tensor[9]) {
+void ef__euclidean_tensor(const ef_metric *self, const double coordinate[3],
+                          double tensor[9]) {
+  const ef__scale scale = scale_of(self);
+  (void)coordinate;
   for (int i = 1; i < 8; ++i) tensor[i] = 0;
   tensor[0] = 1 / (scale.lightness * scale.lightness);
   tensor[4] = tensor[8] = 1 / (scale.chromatic * scale.chromatic);
 }
 
-void ef__scaled_expand(ef__scale scale, const double reference[3],
-                       const double sample[3], ef__expansion *out) {
+void ef__euclidean_expand(const ef_metric *self, const double reference[3],
+                          const double sample[3], ef__expansion *out) {
   double tensor[9];
-  ef__scaled_tensor(scale, tensor);
+  ef__euclidean_tensor(self, reference, tensor);
   out->square = 0;
   for (int i = 0; i < 3; ++i) {
     const double d = sample[i] - reference[i], weight = tensor[4 * i];
@@ -53,43 +66,6 @@ void ef__scaled_expand(ef__scale scale, const double reference[3],
     out->gradient[i] = 2 * weight * d;
   }
   for (int i = 0; i < 9; ++i) out->hessian[i] = 2 * tensor[i];
-}
-
-static const ef__scale plain = {1, 1};
-
-double ef__euclidean_difference(const ef_metric *self,
-                                const double reference[3],
-                                const double sample[3]) {
-  (void)self;
-  return ef__scaled_difference(plain, reference, sample);
-}
-
-void ef__euclidean_differences(const ef_metric *self, size_t n,
-                               const double *reference, const double *sample,
-                               double *difference) {
-  (void)self;
-  ef__scaled_differences(plain, n, reference, sample, difference);
-}
-
-double ef__euclidean_components(const ef_metric *self,
-                                const double reference[3],
-                                const double sample[3],
-                                ef_components *components) {
-  (void)self;
-  return ef__scaled_components(plain, reference, sample, components);
-}
-
-void ef__euclidean_tensor(const ef_metric *self, const double coordinate[3],
-                          double tensor[9]) {
-  (void)self;
-  (void)coordinate;
-  ef__scaled_tensor(plain, tensor);
-}
-
-void ef__euclidean_expand(const ef_metric *self, const double reference[3],
-                          const double sample[3], ef__expansion *out) {
-  (void)self;
-  ef__scaled_expand(plain, reference, sample, out);
 }
 
 double ef__euclidean_least(const ef_metric *self, const double reference[3],

@@ -93,33 +93,6 @@ static ef__scale scale(const ef_metric *self) {
   return (ef__scale){self->parameter[K_L].value, 1};
 }
 
-static double difference(const ef_metric *self, const double reference[3],
-                         const double sample[3]) {
-  return ef__scaled_difference(scale(self), reference, sample);
-}
-
-static void differences(const ef_metric *self, size_t n,
-                        const double *reference, const double *sample,
-                        double *difference) {
-  ef__scaled_differences(scale(self), n, reference, sample, difference);
-}
-
-static double components(const ef_metric *self, const double reference[3],
-                         const double sample[3], ef_components *part) {
-  return ef__scaled_components(scale(self), reference, sample, part);
-}
-
-static void tensor(const ef_metric *self, const double coordinate[3],
-                   double g[9]) {
-  (void)coordinate;
-  ef__scaled_tensor(scale(self), g);
-}
-
-static void expand(const ef_metric *self, const double reference[3],
-                   const double sample[3], ef__expansion *out) {
-  ef__scaled_expand(scale(self), reference, sample, out);
-}
-
 /* For large and small differences, and the compromise that is the default
  * (Luo, Cui & Li 2006, table II). */
 static const ef__parameter_set sets[] = {{"lcd", {0.77, 0.007, 0.0053}},
@@ -135,8 +108,10 @@ static const ef__parameter_set sets[] = {{"lcd", {0.77, 0.007, 0.0053}},
   .parameter_set = sets, .coordinates = coordinates,                           \
   .coordinates_of_many = coordinates_of_many, .inverse = inverse,              \
   .jacobian = jacobian, .chord = chord, .kinked_axis = true,                   \
-  .difference = difference, .differences = differences,                        \
-  .components = components, .tensor = tensor, .expand = expand
+  .scale = scale, .difference = ef__euclidean_difference,                      \
+  .differences = ef__euclidean_differences,                                    \
+  .components = ef__euclidean_components, .tensor = ef__euclidean_tensor,      \
+  .expand = ef__euclidean_expand
 
 const ef_metric ef__metric_cam02_ucs = {
     .name = "cam02-ucs",
