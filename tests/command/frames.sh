@@ -91,6 +91,14 @@ check "files of ages, eyes and room light, with marks of editors" \
 check "dithering with a seed" \
   replay dither --dither ordered --seed 7 --contrast 0.01 --duration 0.1
 
+told() {
+  "$evenfield" isolate --replay five/stimulus.json --frames told \
+    > /dev/null 2> said || return 1
+  grep -q 'every picture (2) is as recorded in five/stimulus.json' said ||
+    { cat said; return 1; }
+}
+check "a replay tells that all is as recorded" told
+
 from_standard_input() {
   # shellcheck disable=SC2086
   "$evenfield" isolate $small --frames piped --display - < five.csv \

@@ -55,7 +55,7 @@ static exit_code run(const command_options *options, const replay *again) {
     status = isolate_show_write(&result.show, &scene, &result, options->frames,
                                 &error);
     if (status == EF_OK && again != NULL)
-      check = replay_check_pictures(again, &result.show);
+      check = replay_check_pictures(again, &result.show, &notes);
   }
   if (status == EF_OK)
     status = write_result(&scene, &result, output, &error);

@@ -113,7 +113,8 @@ static bool is_as_recorded(const replay *r, const isolate_show *show,
   return recorded != NULL && strcmp(recorded, crc) == 0;
 }
 
-exit_code replay_check_pictures(const replay *r, const isolate_show *show) {
+exit_code replay_check_pictures(const replay *r, const isolate_show *show,
+                                const ef_notes *notes) {
   for (size_t k = 0; k < show->n_pictures; ++k) {
     if (is_as_recorded(r, show, k))
       continue;
@@ -124,5 +125,7 @@ exit_code replay_check_pictures(const replay *r, const isolate_show *show) {
                   version != NULL ? version : "(none)", ef_version());
     return EXIT_CHECK_FAILED;
   }
+  message_note(notes, "every picture (%zu) is as recorded in %s",
+               show->n_pictures, r->name);
   return EXIT_DONE;
 }

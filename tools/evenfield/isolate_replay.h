@@ -24,7 +24,9 @@ exit_code replay_check_usage(const command_options *options);
 /** Free with replay_free in every case. */
 ef_status replay_open(replay *r, const char *path, ef_error *error);
 void replay_free(replay *r);
-/** EXIT_CHECK_FAILED with its message when a picture is not as recorded. */
-exit_code replay_check_pictures(const replay *r, const isolate_show *show);
+/** EXIT_CHECK_FAILED with its message when a picture is not as recorded, else a
+ * note. */
+exit_code replay_check_pictures(const replay *r, const isolate_show *show,
+                                const ef_notes *notes);
 
 #endif
