@@ -286,12 +286,12 @@ static void test_labels_never_collide(void **state) {
     enum { N = 40 };
     const ef__area field = {0.0, 0.0, gen_between(&g, 150.0, 800.0),
                             gen_between(&g, 150.0, 600.0)};
-    ef__label label[N] = {{0}};
+    ef__chart_label label[N] = {{0}};
     ef__area block[N];
     for (size_t i = 0; i < N; ++i) {
       const ef__point at = {gen_between(&g, 0.0, field.right),
                             gen_between(&g, 0.0, field.bottom)};
-      label[i] = (ef__label){.text = "name",
+      label[i] = (ef__chart_label){.text = "name",
                              .at = at,
                              .outward = {gen_normal(&g), gen_normal(&g)},
                              .gap_px = 5.0,
@@ -319,7 +319,7 @@ static void test_labels_never_collide(void **state) {
 static void test_labels_keep_off_lines(void **state) {
   (void)state;
   const ef__area field = {0, 0, 400, 300};
-  ef__label label = {.text = "name",
+  ef__chart_label label = {.text = "name",
                      .at = {200, 150},
                      .outward = {1, 0},
                      .gap_px = 5,

@@ -236,6 +236,13 @@ EF_API ef_status ef_bytes_read(const char *path, size_t max_bytes,
                                unsigned char **bytes, size_t *length,
                                ef_error *error);
 
+/** Room for a digest as hexadecimal text. */
+#define EF_DIGEST_TEXT 65
+/** SHA-256 (FIPS 180-4) of a file or of "demo:NAME", as 64 lower-case
+ * hexadecimal digits. */
+EF_API ef_status ef_digest_file(const char *path, char text[EF_DIGEST_TEXT],
+                                ef_error *error);
+
 /* ---- Writing ----------------------------------------------------------- */
 
 /** An output that appears whole or not at all: written beside its place,

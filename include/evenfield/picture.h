@@ -151,6 +151,61 @@ EF_API bool ef_chart_knows(const char *path);
 EF_API ef_status ef_chart_write(const ef_chart *chart, const char *path,
                                 ef_chart_report *report, ef_error *error);
 
+/* ---- Reports ----------------------------------------------------------- */
+
+/** One self-contained HTML file: no scripts, nothing fetched. Readable on a
+ * telephone, on paper, in dark surroundings and by a screen reader. Parts are
+ * written in the order they are given; the file appears whole, at
+ * ef_report_close, or not at all. Errors are kept and told there. Texts are
+ * plain: markup in them is escaped. */
+typedef struct ef_report ef_report;
+
+/** `title` of the document: what was asked. Free with ef_report_close or
+ * ef_report_discard. */
+EF_API ef_report *ef_report_open(const char *path, const char *title,
+                                 bool overwrite, ef_error *error);
+/** The heading of the page: one sentence, wherever among the parts it is
+ * given. */
+EF_API void ef_report_answer(ef_report *report, const char *text);
+/** Begins the next section. */
+EF_API void ef_report_section(ef_report *report, const char *title);
+EF_API void ef_report_paragraph(ef_report *report, const char *text);
+/** Something to be careful about, set apart. */
+EF_API void ef_report_caution(ef_report *report, const char *text);
+/** "what it is: this"; those that follow each other make one list. An empty
+ * term goes on with the one before. */
+EF_API void ef_report_term(ef_report *report, const char *term,
+                           const char *text);
+/** The same with text that is to be copied: a command, a digest. */
+EF_API void ef_report_term_code(ef_report *report, const char *term,
+                                const char *text);
+
+/** A column: two lines of head, of which the first may be NULL where that of
+ * the column before stands over this one too. */
+typedef struct ef_report_column {
+  const char *head, *unit;
+  bool is_text;
+} ef_report_column;
+
+/** `cell` row by row, n_rows x n_columns. `caption` is what the table shows. A
+ * first column of text names its rows. Wide tables scroll by themselves. */
+EF_API void ef_report_table(ef_report *report, const char *caption,
+                            size_t n_columns, const ef_report_column *column,
+                            size_t n_rows, const char *const *cell);
+/** As SVG with its text as text; title and description of the chart are its
+ * text alternative. Draw them some 400 px wide. */
+EF_API void ef_report_chart(ef_report *report, const ef_chart *chart);
+/** One figure for each pair with its name and difference, as tagged PNG. Colours
+ * outside the pictures' encoding are counted in `n_clipped` (may be NULL). */
+EF_API void ef_report_swatches(ef_report *report, size_t n,
+                               const ef_swatch *swatch,
+                               const ef_swatch_settings *settings,
+                               size_t *n_clipped);
+/** Finishes and frees; on failure nothing is left behind. */
+EF_API ef_status ef_report_close(ef_report *report, ef_error *error);
+/** Drops what was written and frees; NULL is fine. */
+EF_API void ef_report_discard(ef_report *report);
+
 #ifdef __cplusplus
 }
 #endif

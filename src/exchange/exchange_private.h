@@ -314,4 +314,11 @@ ef_status ef__decide_from_remarks(ef_reader *reader, ef_error *error);
 void ef__decide_from_values(ef_reader *reader, size_t n_rows, ef__range value,
                             ef__range device);
 
+/* ---- Pictures (png.c) ------------------------------------------------- */
+
+/** Like ef_png_write_rows, into an output that goes on. */
+ef_status ef__png_write_to(ef_output *output, size_t width, size_t height,
+                           int bits, const ef_png_rows *rows,
+                           const ef_png_tags *tags, ef_error *error);
+
 #endif

@@ -172,12 +172,28 @@ static ef_status write_to(picture *p, const char *path, size_t width,
   if (p->png != NULL) p->info = png_create_info_struct(p->png);
   p->row = ef__allocate(width * CHANNELS, (size_t)bits / 8);
   p->sample = ef__allocate(width * CHANNELS, sizeof *p->sample);
+  ef_status status;
   if (p->png == NULL || p->info == NULL || p->row == NULL ||
       p->sample == NULL) {
-    return ef__error_memory(error, "a picture");
+    status = ef__error_memory(error, "a picture");
+  } else if (write_picture(p, width, height, bits, rows, tags)) {
+    status = EF_OK;
+  } else {
+    status = refuse(p, path, error);
   }
-  if (write_picture(p, width, height, bits, rows, tags)) return EF_OK;
-  return refuse(p, path, error);
+  png_destroy_write_struct(&p->png, &p->info);
+  free(p->sample);
+  free(p->row);
+  return status;
+}
+
+ef_status ef__png_write_to(ef_output *output, size_t width, size_t height,
+                           int bits, const ef_png_rows *rows,
+                           const ef_png_tags *tags, ef_error *error) {
+  const ef_status status = check(width, height, bits, tags, error);
+  if (status != EF_OK) return status;
+  picture p = {.output = output};
+  return write_to(&p, NULL, width, height, bits, rows, tags, error);
 }
 
 ef_status ef_png_write_rows(const char *path, bool overwrite, size_t width,
@@ -192,9 +208,6 @@ ef_status ef_png_write_rows(const char *path, bool overwrite, size_t width,
     return opening.status;
   }
   status = write_to(&p, path, width, height, bits, rows, tags, error);
-  png_destroy_write_struct(&p.png, &p.info);
-  free(p.sample);
-  free(p.row);
   if (status == EF_OK) return ef_output_commit(p.output, error);
   ef_output_discard(p.output);
   return status;

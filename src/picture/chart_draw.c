@@ -176,7 +176,7 @@ static double between(double value, double low, double high) {
   return fmin(fmax(value, low), high);
 }
 
-static void draw_leader(const ef__sheet *s, const ef__label *label) {
+static void draw_leader(const ef__sheet *s, const ef__chart_label *label) {
   const ef__point to = {
       between(label->at.x, label->box.left + 2.0, label->box.right - 2.0),
       between(label->at.y, label->box.top + 2.0, label->box.bottom - 2.0)};
@@ -193,7 +193,7 @@ static void draw_leader(const ef__sheet *s, const ef__label *label) {
 }
 
 static int frame_last(const void *a, const void *b) {
-  const ef__label *left = a, *right = b;
+  const ef__chart_label *left = a, *right = b;
   if (left->ink != right->ink)
     return left->ink == EF__INK_SOFT ? 1 : -1;
   return 0;
@@ -202,7 +202,7 @@ static int frame_last(const void *a, const void *b) {
 /* What the data are comes before what they are set in; stable. */
 static void sort_labels(ef__sheet *s) {
   for (size_t i = 1; i < s->n_labels; ++i) {
-    const ef__label label = s->label[i];
+    const ef__chart_label label = s->label[i];
     size_t k = i;
     for (; k > 0 && frame_last(&s->label[k - 1], &label) > 0; --k)
       s->label[k] = s->label[k - 1];
@@ -217,7 +217,7 @@ static void draw_labels(ef__sheet *s) {
             s->n_segments, s->segment);
   ef__page_group(s->page, "labels");
   for (size_t i = 0; i < s->n_labels; ++i) {
-    const ef__label *label = &s->label[i];
+    const ef__chart_label *label = &s->label[i];
     if (!label->placed)
       continue;
     ++s->report->n_labelled;

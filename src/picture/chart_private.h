@@ -46,7 +46,7 @@ size_t ef__thin(size_t n, const ef__point *point, ef__area area,
 
 /* ---- Labels (place.c) -------------------------------------------------- */
 
-typedef struct ef__label {
+typedef struct ef__chart_label {
   const char *text;
   ef__point at;      /**< what it is a label of */
   ef__point outward; /**< the direction it should rather stand in */
@@ -57,7 +57,7 @@ typedef struct ef__label {
   bool placed;
   ef__area box;
   bool needs_leader; /**< stands too far off to be seen as the mark's */
-} ef__label;
+} ef__chart_label;
 
 typedef struct ef__segment {
   ef__point from, to;
@@ -65,7 +65,7 @@ typedef struct ef__segment {
 
 /** Finds places inside `field`, in the order given, that touch none of the
  * blocks and no other label and cross as few segments as may be. */
-void ef__place(size_t n, ef__label *label, double height_px, ef__area field,
+void ef__place(size_t n, ef__chart_label *label, double height_px, ef__area field,
                size_t n_blocks, const ef__area *block, size_t n_segments,
                const ef__segment *segment);
 
@@ -86,7 +86,7 @@ typedef struct ef__sheet {
   ef__axis x, y;
   /* Labels to be placed, and what they must keep clear of. */
   size_t n_labels, label_room;
-  ef__label *label;
+  ef__chart_label *label;
   size_t n_blocks, block_room;
   ef__area *block;
   size_t n_segments, segment_room;

@@ -102,7 +102,7 @@ static bool add_labels(ef__sheet *sheet, const ef_series *s,
       continue;
     if (sheet->n_labels == sheet->label_room) {
       const size_t room = 2 * sheet->label_room + 32;
-      ef__label *grown = ef__reallocate(sheet->label, room, sizeof *grown);
+      ef__chart_label *grown = ef__reallocate(sheet->label, room, sizeof *grown);
       if (grown == NULL)
         return false;
       sheet->label = grown;
@@ -110,7 +110,7 @@ static bool add_labels(ef__sheet *sheet, const ef_series *s,
     }
     const bool is_frame = s->look == EF_LOOK_FRAME;
     sheet->label[sheet->n_labels++] =
-        (ef__label){.text = s->label[i],
+        (ef__chart_label){.text = s->label[i],
                     .at = at,
                     .outward = {at.x - middle.x, at.y - middle.y},
                     .gap_px = is_frame ? 2.5 : MARK_PX + 1.5,

@@ -210,33 +210,36 @@ static void put_act(writer *w, const ef__page *page, const ef__act *act) {
   }
 }
 
-static void put_head(writer *w, const ef__page *page) {
-  if (w->id == NULL)
-    put(w, "<?xml version=\"1.0\" encoding=\"UTF-8\"?>\n");
-  put(w, "<svg xmlns=\"http://www.w3.org/2000/svg\"");
-  if (w->id == NULL) {
-    put(w, " version=\"1.1\"");
-    put_attribute(w, "width", page->width_px);
-    put_attribute(w, "height", page->height_px);
-  }
+static void put_size(writer *w, const ef__page *page) {
   put(w, " viewBox=\"0 0 ");
   put_number(w, page->width_px);
   put(w, " ");
   put_number(w, page->height_px);
-  put(w, "\" role=\"img\" aria-labelledby=\"");
-  put_id(w, "title", 1);
-  put(w, " ");
-  put_id(w, "about", 1);
-  put(w, "\" font-family=\"sans-serif\" stroke-linecap=\"round\" "
-         "stroke-linejoin=\"round\">\n<title id=\"");
-  put_id(w, "title", 1);
-  put(w, "\">");
+  put(w, "\" role=\"img\" style=\"font-family:sans-serif;"
+         "stroke-linecap:round;stroke-linejoin:round\"");
+}
+
+static void put_head(writer *w, const ef__page *page) {
+  put(w, "<?xml version=\"1.0\" encoding=\"UTF-8\"?>\n"
+         "<svg xmlns=\"http://www.w3.org/2000/svg\" version=\"1.1\"");
+  put_attribute(w, "width", page->width_px);
+  put_attribute(w, "height", page->height_px);
+  put_size(w, page);
+  put(w, " aria-labelledby=\"evenfield-title evenfield-about\">\n"
+         "<title id=\"evenfield-title\">");
   put_escaped(w, page->title);
-  put(w, "</title>\n<desc id=\"");
-  put_id(w, "about", 1);
-  put(w, "\">");
+  put(w, "</title>\n<desc id=\"evenfield-about\">");
   put_escaped(w, page->description);
   put(w, "</desc>\n");
+}
+
+/* The description stands beside it in the page. */
+static void put_inline_head(writer *w, const ef__page *page) {
+  put(w, "<svg xmlns=\"http://www.w3.org/2000/svg\"");
+  put_size(w, page);
+  put(w, " aria-label=\"");
+  put_escaped(w, page->title);
+  put(w, "\">\n");
 }
 
 ef_status ef__page_svg(const ef__page *page, const char *inline_id,
@@ -244,7 +247,10 @@ ef_status ef__page_svg(const ef__page *page, const char *inline_id,
   if (page->failed)
     return ef__error_memory(error, "a drawing");
   writer w = {.output = output, .error = error, .id = inline_id};
-  put_head(&w, page);
+  if (inline_id == NULL)
+    put_head(&w, page);
+  else
+    put_inline_head(&w, page);
   for (size_t i = 0; i < page->n_acts; ++i)
     put_act(&w, page, &page->act[i]);
   put(&w, "</svg>\n");

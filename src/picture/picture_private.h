@@ -5,6 +5,7 @@
 #ifndef EVENFIELD_PICTURE_PRIVATE_H
 #define EVENFIELD_PICTURE_PRIVATE_H
 
+#include <evenfield/exchange.h>
 #include <evenfield/picture.h>
 
 /* ---- Colours as pixels (raster.c) -------------------------------------- */
@@ -53,6 +54,17 @@ void ef__raster_blend(ef__raster *raster, ef__box box,
 /** As PNG with its colour tags. */
 ef_status ef__raster_write(const ef__raster *raster, const char *path,
                            bool overwrite, int bits, ef_error *error);
+
+/** The same into an output that goes on. */
+ef_status ef__raster_write_to(ef__raster *raster, ef_output *output, int bits,
+                              ef_error *error);
+
+/* ---- Swatches (swatch.c) ----------------------------------------------- */
+
+/** The picture of ef_swatch_write into an output that goes on. */
+ef_status ef__swatch_write_to(ef_output *output, const ef_swatch *swatch,
+                              const ef_swatch_settings *settings,
+                              ef_swatch_report *report, ef_error *error);
 
 /* ---- Labels (text.c) --------------------------------------------------- */
 

@@ -19,7 +19,7 @@ static bool overlap(ef__area a, ef__area b) {
 
 /* The nearest box of the label's size that lies in direction (c, s) and whose
  * edge is `reach` away from the point. */
-static ef__area box_at(const ef__label *label, double height, double c,
+static ef__area box_at(const ef__chart_label *label, double height, double c,
                        double s, double reach) {
   const double half_w = label->width_px / 2.0, half_h = height / 2.0;
   /* Of a box that is seen from the point in this direction. */
@@ -59,7 +59,7 @@ typedef struct surroundings {
   size_t n_segments;
   const ef__segment *segment;
   size_t n_labels; /* placed before */
-  const ef__label *label;
+  const ef__chart_label *label;
 } surroundings;
 
 static bool is_free(const surroundings *s, ef__area box) {
@@ -86,7 +86,7 @@ static double crossing_cost(const surroundings *s, ef__area box) {
   return fmin(cost, 4.0 * CROSSING);
 }
 
-static void place_one(ef__label *label, double height,
+static void place_one(ef__chart_label *label, double height,
                       const surroundings *around) {
   double least = (double)INFINITY;
   const double length = hypot(label->outward.x, label->outward.y);
@@ -113,7 +113,7 @@ static void place_one(ef__label *label, double height,
   }
 }
 
-void ef__place(size_t n, ef__label *label, double height_px, ef__area field,
+void ef__place(size_t n, ef__chart_label *label, double height_px, ef__area field,
                size_t n_blocks, const ef__area *block, size_t n_segments,
                const ef__segment *segment) {
   surroundings around = {field, n_blocks, block, n_segments, segment, 0, label};

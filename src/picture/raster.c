@@ -3,11 +3,13 @@
 
 #include <math.h>
 #include <stdlib.h>
+#include <string.h>
 
 #include <evenfield/device.h>
 #include <evenfield/exchange.h>
 
 #include "base/base_private.h"
+#include "exchange/exchange_private.h"
 
 /* Largest code of the 16-bit range. */
 #define TOP 65535.0
@@ -154,24 +156,53 @@ void ef__raster_blend(ef__raster *raster, ef__box box,
   }
 }
 
-ef_status ef__raster_write(const ef__raster *raster, const char *path,
-                           bool overwrite, int bits, ef_error *error) {
+/* The tags of our own encoding; *profile is released with free(). */
+static ef_status make_tags(ef_png_tags *tags, unsigned char **profile,
+                           ef_error *error) {
   const ef_encoding *primaries = ef_encoding_find(primaries_name, error);
   if (primaries == NULL)
     return EF_UNKNOWN_NAME;
   ef_encoding own = *primaries;
   own.tone = curve_name;
-  ef_png_tags tags = {.primaries = PRIMARIES_CODE,
-                      .transfer = TRANSFER_CODE,
-                      .profile_name = "BT.2020 primaries, IEC 61966-2-1 curve"};
+  *tags =
+      (ef_png_tags){.primaries = PRIMARIES_CODE,
+                    .transfer = TRANSFER_CODE,
+                    .profile_name = "BT.2020 primaries, IEC 61966-2-1 curve"};
+  const ef_status status = ef_profile_make_matrix(
+      tags->profile_name, &own, profile, &tags->profile_length, error);
+  tags->profile = *profile;
+  return status;
+}
+
+ef_status ef__raster_write(const ef__raster *raster, const char *path,
+                           bool overwrite, int bits, ef_error *error) {
+  ef_png_tags tags;
   unsigned char *profile = NULL;
-  ef_status status = ef_profile_make_matrix(tags.profile_name, &own, &profile,
-                                            &tags.profile_length, error);
-  if (status != EF_OK)
-    return status;
-  tags.profile = profile;
-  status = ef_png_write(path, overwrite, raster->width, raster->height, bits,
-                        raster->sample, &tags, error);
+  ef_status status = make_tags(&tags, &profile, error);
+  if (status == EF_OK) {
+    status = ef_png_write(path, overwrite, raster->width, raster->height, bits,
+                          raster->sample, &tags, error);
+  }
+  free(profile);
+  return status;
+}
+
+static void copy_row(void *cookie, size_t y, uint16_t *sample) {
+  const ef__raster *raster = cookie;
+  const size_t n = 3 * raster->width;
+  memcpy(sample, raster->sample + y * n, n * sizeof *sample);
+}
+
+ef_status ef__raster_write_to(ef__raster *raster, ef_output *output, int bits,
+                              ef_error *error) {
+  ef_png_tags tags;
+  unsigned char *profile = NULL;
+  ef_status status = make_tags(&tags, &profile, error);
+  if (status == EF_OK) {
+    const ef_png_rows rows = {copy_row, raster};
+    status = ef__png_write_to(output, raster->width, raster->height, bits,
+                              &rows, &tags, error);
+  }
   free(profile);
   return status;
 }

@@ -93,9 +93,11 @@ static ef_status check_swatch(const ef_swatch *swatch, ef_error *error) {
                        swatch->name != NULL ? swatch->name : "without a name");
 }
 
-ef_status ef_swatch_write(const char *path, const ef_swatch *swatch,
-                          const ef_swatch_settings *settings,
-                          ef_swatch_report *report, ef_error *error) {
+/* Its raster, drawn; sample is released with free(). */
+static ef_status draw_swatch(const ef_swatch *swatch,
+                             const ef_swatch_settings *settings,
+                             ef__raster *raster, ef_swatch_report *report,
+                             ef_error *error) {
   *report = (ef_swatch_report){0};
   brushes brush;
   ef_status status = brushes_init(&brush, settings, error);
@@ -103,14 +105,33 @@ ef_status ef_swatch_write(const char *path, const ef_swatch *swatch,
     status = check_swatch(swatch, error);
   if (status != EF_OK)
     return status;
-  ef__raster raster;
   const size_t width = settings->width, height = width / 2;
-  status = ef__raster_init(&raster, width, height, brush.ground, error);
-  if (status != EF_OK)
-    return status;
-  draw_pair(&brush, &raster, (ef__box){0, 0, width, height}, swatch, report);
-  status = ef__raster_write(&raster, path, settings->overwrite, settings->bits,
-                            error);
+  status = ef__raster_init(raster, width, height, brush.ground, error);
+  if (status == EF_OK)
+    draw_pair(&brush, raster, (ef__box){0, 0, width, height}, swatch, report);
+  return status;
+}
+
+ef_status ef_swatch_write(const char *path, const ef_swatch *swatch,
+                          const ef_swatch_settings *settings,
+                          ef_swatch_report *report, ef_error *error) {
+  ef__raster raster = {.sample = NULL};
+  ef_status status = draw_swatch(swatch, settings, &raster, report, error);
+  if (status == EF_OK) {
+    status = ef__raster_write(&raster, path, settings->overwrite,
+                              settings->bits, error);
+  }
+  free(raster.sample);
+  return status;
+}
+
+ef_status ef__swatch_write_to(ef_output *output, const ef_swatch *swatch,
+                              const ef_swatch_settings *settings,
+                              ef_swatch_report *report, ef_error *error) {
+  ef__raster raster = {.sample = NULL};
+  ef_status status = draw_swatch(swatch, settings, &raster, report, error);
+  if (status == EF_OK)
+    status = ef__raster_write_to(&raster, output, settings->bits, error);
   free(raster.sample);
   return status;
 }

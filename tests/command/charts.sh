@@ -88,6 +88,48 @@ ef_check "no folder: status" $? 5
 ef_check "no folder: message" "$(cat message)" \
   "evenfield: none/a.svg: its folder does not exist; create it or name another"
 
+# Reports: an HTML validator, the same bytes twice, a full disk, a file that is
+# there.
+# ef_report NAME ARGUMENT...
+ef_report() {
+  name=$1
+  shift
+  "$evenfield" "$@" --quiet --report $name.html >out 2>message
+  ef_check "report of $name: status" "$? $(cat message)" "0 "
+  "$evenfield" "$@" --quiet --report $name.html --force >/dev/null
+  cp $name.html $name.second
+  "$evenfield" "$@" --quiet --report $name.html --force >/dev/null
+  cmp -s $name.html $name.second
+  ef_check "report of $name: the same bytes" $? 0
+  if has tidy; then
+    ef_check "report of $name: HTML" "$(tidy -q -e $name.html 2>&1)" ""
+  else
+    ef_skip "report of $name: HTML" tidy
+  fi
+  grep -q "<h1>$(head -n 1 out | cut -c 1-30 | sed 's/&/\&amp;/g')" $name.html
+  ef_check "report of $name: begins with the answer" $? 0
+  if [ -c /dev/full ]; then
+    ln -sf /dev/full full.html
+    "$evenfield" "$@" --quiet --report full.html >out 2>message
+    ef_check "report of $name, full disk" "$? $(cat out message)" \
+      "5 evenfield: full.html: no space is left to write it; free some or name another place"
+  else
+    ef_skip "report of $name, full disk" /dev/full
+  fi
+  echo mine >there.html
+  "$evenfield" "$@" --quiet --report there.html >out 2>message
+  ef_check "report of $name, there already" "$? $(cat out message there.html)" \
+    "5 evenfield: there.html: is there already; --force overwrites it, or name another file with --report
+mine"
+}
+ef_report match match t.csv
+ef_report people match --population 20 --seed 3
+ef_check "report: input and digest" \
+  "$(sed -n 's/.*t.csv, SHA-256 \([0-9a-f]*\).*/\1/p' match.html)" \
+  "$(sha256sum t.csv | cut -d ' ' -f 1)"
+grep -q '<dt>Seed</dt>' people.html
+ef_check "report: seed" $? 0
+
 # Very many targets: the chart says what it leaves out.
 awk 'BEGIN { print "name,L,a,b"; for (i = 0; i < 20000; ++i)
   print "t" i "," 40 + i % 40 "," i % 97 - 48 "," i % 89 - 44 }' >many.csv

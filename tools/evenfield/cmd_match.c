@@ -3,16 +3,18 @@
 
 #include "match.h"
 #include "match_chart.h"
+#include "match_report.h"
 #include "message.h"
 #include "pictures.h"
 #include "render_match.h"
 #include "result.h"
 
-/* Who receives the matches. Pictures and chart come first, so that nothing is
- * said about what could not be written. */
+/* Who receives the matches. Pictures, chart and report come first, so that
+ * nothing is said about what could not be written. */
 typedef struct receivers {
   pictures pictures;
-  match_chart *chart; /* NULL: none */
+  match_chart *chart;   /* NULL: none */
+  match_report *report; /* NULL: none */
   match_text *text;
   match_data *data;
 } receivers;
@@ -28,8 +30,11 @@ static ef_status open_receivers(receivers *r, const command_options *options,
   }
   if (options->chart != NULL)
     r->chart = match_chart_new(options->chart, notes);
+  if (options->report != NULL)
+    r->report = match_report_new(notes);
   if ((r->text != NULL || r->data != NULL) &&
-      (r->chart != NULL || options->chart == NULL))
+      (r->chart != NULL || options->chart == NULL) &&
+      (r->report != NULL || options->report == NULL))
     return EF_OK;
   return message_fail(error, EF_NO_MEMORY, "out of memory for the result");
 }
@@ -38,12 +43,13 @@ static void close_receivers(receivers *r) {
   match_text_free(r->text);
   match_data_free(r->data);
   match_chart_free(r->chart);
+  match_report_free(r->report);
   pictures_free(&r->pictures);
 }
 
 static ef_status run(match_scene *s, receivers *r, match_summary *sum,
                      ef_error *error) {
-  if (s->options->format != FORMAT_CSV) {
+  if (s->options->format != FORMAT_CSV || s->options->report != NULL) {
     const ef_status status = match_measure_gamut(s, error);
     if (status != EF_OK)
       return status;
@@ -52,12 +58,15 @@ static ef_status run(match_scene *s, receivers *r, match_summary *sum,
   const match_sink chart = match_chart_sink(r->chart);
   const match_sink result =
       r->text != NULL ? match_text_sink(r->text) : match_data_sink(r->data);
-  const match_sink *sinks[3];
+  const match_sink report = match_report_sink(r->report);
+  const match_sink *sinks[4];
   size_t n = 0;
   if (s->options->pictures != NULL)
     sinks[n++] = &drawing;
   if (r->chart != NULL)
     sinks[n++] = &chart;
+  if (r->report != NULL)
+    sinks[n++] = &report;
   sinks[n++] = &result;
   return match_stream(s, n, sinks, sum, error);
 }

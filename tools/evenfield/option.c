@@ -510,6 +510,9 @@ static const option_row table[] = {
     {"chart", "FILE", COMMAND_ISOLATE, TYPE_TEXT, FIELD(chart), 0, 0, NULL,
      "draws the spectra of the background and of the extremes, as the codes "
      "show them: FILE.svg, FILE.pdf or FILE.png"},
+    {"report", "FILE.html", COMMAND_MATCH, TYPE_TEXT, FIELD(report), 0, 0, NULL,
+     "writes the answer with swatches, charts, tables and all it rests on as "
+     "one page for a browser or for paper"},
     {"chart", "FILE", COMMAND_MATCH, TYPE_TEXT, FIELD(chart), 0, 0, NULL,
      "draws the targets and what is shown for them, with the gamut: FILE ends "
      "in .svg, .pdf or .png"},
@@ -853,6 +856,10 @@ exit_code options_parse(command_options *options, const char *command,
     message_usage("out of memory");
     return EXIT_NO_ANSWER;
   }
+  options->command = command;
+  options->bit = bit;
+  options->n_arguments = (size_t)argc;
+  options->arguments = argv;
   parser p = {.options = options, .command = command, .bit = bit};
   bool only_files = false;
   for (int i = 0; i < argc;) {
@@ -886,6 +893,40 @@ void options_free(command_options *options) {
   options->given = (given_options){0};
   options->files = options->at.text = NULL;
   options->lights.text = options->observers.text = NULL;
+}
+
+/* ---- Inputs ------------------------------------------------------------ */
+
+static bool is_output(const option_row *o) {
+  static const char *const outputs[] = {"output", "report", "chart",
+                                        "pictures", "frames"};
+  for (size_t i = 0; i < sizeof outputs / sizeof *outputs; ++i) {
+    if (strcmp(o->name, outputs[i]) == 0)
+      return true;
+  }
+  return false;
+}
+
+void options_each_input(const command_options *options,
+                        void (*take)(void *cookie, const char *value),
+                        void *cookie) {
+  for (size_t i = 0; i < options->n_files; ++i)
+    take(cookie, options->files[i]);
+  for (size_t i = 0; i < N_OPTIONS; ++i) {
+    const option_row *o = &table[i];
+    if (!(o->commands & options->bit) || is_output(o))
+      continue;
+    const void *field = (const char *)options + o->offset;
+    if (o->type == TYPE_TEXT) {
+      const char *const *value = field;
+      if (*value != NULL)
+        take(cookie, *value);
+    } else if (o->type == TYPE_TEXTS) {
+      const text_list *list = field;
+      for (size_t k = 0; k < list->n; ++k)
+        take(cookie, list->text[k]);
+    }
+  }
 }
 
 /* ---- Help -------------------------------------------------------------- */

@@ -50,7 +50,7 @@ typedef struct given_options {
 typedef struct command_options {
   const char *display, *inks, *tone, *observer, *illuminant, *metric,
       *adaptation;
-  const char *ambient_illuminant, *pictures, *output, *ages, *chart;
+  const char *ambient_illuminant, *pictures, *output, *ages, *chart, *report;
   const char *space, *contrast_from, *surround;
   const char *jnd_text, *criterion, *tolerance_text; /**< of compare, ellipse */
   const char *pairs, *task, *correction, *angle_weights;
@@ -98,6 +98,10 @@ typedef struct command_options {
   bool skip_bad, check, worst_case, grade_simulators, robust, force, quiet;
   bool help, version;
   text_list at, lights, observers;
+  const char *command; /**< its name */
+  command_bit bit;
+  size_t n_arguments;
+  char *const *arguments; /**< what followed the name */
   size_t n_files;
   const char **files; /**< owned; the texts are those of argv */
   given_options given;
@@ -109,6 +113,11 @@ typedef struct command_options {
 exit_code options_parse(command_options *options, const char *command,
                         command_bit bit, int argc, char *const *argv);
 void options_free(command_options *options);
+/** Calls `take` with every argument that may name a file to be read: operands,
+ * and values of options that are texts and name no output. */
+void options_each_input(const command_options *options,
+                        void (*take)(void *cookie, const char *value),
+                        void *cookie);
 /** The options a command knows, one a line with its meaning. */
 void options_help(FILE *out, command_bit bit);
 

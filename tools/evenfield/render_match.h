@@ -26,6 +26,15 @@ typedef struct kept_row {
   ef_recipes *recipe;   /**< owned; as of match_rows */
 } kept_row;
 
+/** The first lines, and all that follows; the first is to be asked for
+ * first. */
+void match_text_answer(match_text *t, text *out, const match_scene *s,
+                       const match_summary *sum);
+void match_text_rest(match_text *t, text *out, const match_scene *s,
+                     const match_summary *sum);
+/** The rows that are kept, borrowed. */
+size_t match_text_rows(const match_text *t, const kept_row **row);
+
 /** With a population the sentence that says what it sees, and a table of the
  * rows, the worst first; nothing without. */
 void render_match_people_answer(text *out, const match_scene *s,

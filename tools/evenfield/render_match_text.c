@@ -535,23 +535,40 @@ static ef_status begin(void *self, const match_scene *s, ef_error *error) {
   return EF_OK;
 }
 
+void match_text_answer(match_text *m, text *out, const match_scene *s,
+                       const match_summary *sum) {
+  if (m->worst_only)
+    thin(m);
+  add_answer(out, s, sum);
+  render_match_people_answer(out, s, sum);
+  add_second_lines(out, s, sum);
+}
+
+void match_text_rest(match_text *m, text *out, const match_scene *s,
+                     const match_summary *sum) {
+  text_section(out, "Targets and what is shown");
+  add_table(out, m, s);
+  render_match_people(out, s, sum, m->n_rows, m->row);
+  render_match_lights(out, s, m->n_rows, m->row);
+  add_misses(out, m, s, sum);
+  add_pictures(out, s);
+  render_match_basis(out, s, sum);
+  text_add(out, "\n");
+  text_section(out, "What to keep in mind");
+  text_wrap(out, closing, 0);
+}
+
+size_t match_text_rows(const match_text *m, const kept_row **row) {
+  *row = m->row;
+  return m->n_rows;
+}
+
 static ef_status end(void *self, const match_scene *s, const match_summary *sum,
                      ef_error *error) {
   match_text *m = self;
-  if (m->worst_only)
-    thin(m);
   text out = {0};
-  add_answer(&out, s, sum);
-  render_match_people_answer(&out, s, sum);
-  add_second_lines(&out, s, sum);
-  add_table(&out, m, s);
-  render_match_people(&out, s, sum, m->n_rows, m->row);
-  render_match_lights(&out, s, m->n_rows, m->row);
-  add_misses(&out, m, s, sum);
-  add_pictures(&out, s);
-  render_match_basis(&out, s, sum);
-  text_add(&out, "\n");
-  text_wrap(&out, closing, 0);
+  match_text_answer(m, &out, s, sum);
+  match_text_rest(m, &out, s, sum);
   const ef_status status = text_write(&out, m->output, error);
   text_free(&out);
   return status;

@@ -72,6 +72,82 @@ static void add_blanks(text *t, size_t n) {
     add_bytes(t, " ", 1);
 }
 
+/* ---- Reports ----------------------------------------------------------- */
+
+static void report_paragraph(text *t, const char *content) {
+  content += strspn(content, " ");
+  if (content[0] == '\0')
+    return;
+  if (t->has_answer)
+    ef_report_paragraph(t->report, content);
+  else
+    ef_report_answer(t->report, content);
+  t->has_answer = true;
+}
+
+void text_section(text *t, const char *title) {
+  if (t->report == NULL)
+    return;
+  text_flush(t, NULL);
+  snprintf(t->heading, sizeof t->heading, "%s", title);
+  ef_report_section(t->report, title);
+}
+
+/* One line of what was added: a heading, or a piece of the paragraph that is
+ * being put together, which a full stop ends. */
+static void report_line(text *t, text *paragraph, const char *line,
+                        size_t length) {
+  while (length > 0 && line[length - 1] == ' ')
+    --length;
+  const bool is_heading = length > 1 && line[length - 1] == ':' &&
+                          line[0] != ' ' && paragraph->length == 0 &&
+                          length < sizeof t->heading;
+  if (is_heading) {
+    snprintf(t->heading, sizeof t->heading, "%.*s", (int)length - 1, line);
+    ef_report_section(t->report, t->heading);
+    return;
+  }
+  const size_t blanks = strspn(line, " ");
+  if (length > blanks) {
+    if (paragraph->length > 0)
+      text_add(paragraph, " ");
+    add_bytes(paragraph, line + blanks, length - blanks);
+  }
+  const bool ends = length <= blanks || line[length - 1] == '.';
+  if (ends && paragraph->length > 0) {
+    report_paragraph(t, paragraph->bytes);
+    paragraph->length = 0;
+    paragraph->bytes[0] = '\0';
+  }
+}
+
+/* Hands on the whole lines that were added. What stands behind the last line
+ * end stays, as the beginning of what comes next. */
+static void report_lines(text *t) {
+  text paragraph = {0};
+  const char *line = t->bytes != NULL ? t->bytes : "";
+  for (const char *end; (end = strchr(line, '\n')) != NULL; line = end + 1)
+    report_line(t, &paragraph, line, (size_t)(end - line));
+  if (paragraph.length > 0)
+    report_paragraph(t, paragraph.bytes);
+  t->failed = t->failed || paragraph.failed;
+  text_free(&paragraph);
+  if (t->bytes != NULL) {
+    t->length = strlen(line);
+    memmove(t->bytes, line, t->length + 1);
+  }
+}
+
+ef_status text_flush(text *t, ef_error *error) {
+  if (t->report != NULL) {
+    text_add(t, "\n");
+    report_lines(t);
+  }
+  if (t->failed)
+    return message_fail(error, EF_NO_MEMORY, "out of memory for the text");
+  return EF_OK;
+}
+
 /* The column at which the buffer's last line ends. */
 static size_t current_column(const text *t) {
   if (t->length == 0)
@@ -100,7 +176,19 @@ static size_t piece_length(const char *sentence) {
   return length;
 }
 
+static void report_sentence(text *t, const char *sentence) {
+  report_lines(t);
+  text_add(t, sentence);
+  if (!t->failed)
+    report_paragraph(t, t->bytes);
+  t->length = 0;
+}
+
 void text_wrap(text *t, const char *sentence, size_t indent) {
+  if (t->report != NULL) {
+    report_sentence(t, sentence);
+    return;
+  }
   const size_t last = 79;
   size_t column = current_column(t);
   bool is_first = true;
@@ -136,8 +224,14 @@ void text_paragraph(text *t, text *content, size_t indent) {
 
 void text_label(text *t, const char *label, text *content) {
   enum { LABEL_WIDTH = 15 };
-  text_format(t, "  %-*s", LABEL_WIDTH - 2, label);
-  text_wrap(t, content->bytes != NULL ? content->bytes : "", LABEL_WIDTH);
+  const char *bytes = content->bytes != NULL ? content->bytes : "";
+  if (t->report != NULL) {
+    report_lines(t);
+    ef_report_term(t->report, label, bytes);
+  } else {
+    text_format(t, "  %-*s", LABEL_WIDTH - 2, label);
+    text_wrap(t, bytes, LABEL_WIDTH);
+  }
   t->failed = t->failed || content->failed;
   text_free(content);
 }
@@ -262,9 +356,38 @@ static void add_heads(const text_table *t, text *out) {
   end_line(out);
 }
 
+/* A blank line between tables stays out of a report. */
+static void report_table(const text_table *t, text *out) {
+  ef_report_column column[TABLE_MOST_COLUMNS];
+  const char **cell = malloc((t->n_cells + 1) * sizeof *cell);
+  if (cell == NULL) {
+    out->failed = true;
+    return;
+  }
+  for (size_t c = 0; c < t->n_columns; ++c) {
+    column[c] = (ef_report_column){t->column[c].head[0], t->column[c].head[1],
+                                   t->column[c].is_left};
+  }
+  const char *at = t->cells.bytes;
+  for (size_t i = 0; i < t->n_cells; ++i) {
+    cell[i] = at;
+    at += strlen(at) + 1;
+  }
+  report_lines(out);
+  ef_report_table(out->report, out->heading, t->n_columns, column,
+                  t->n_cells / t->n_columns, cell);
+  free(cell);
+}
+
 void table_finish(text_table *t, text *out) {
   if (t->cells.failed)
     out->failed = true;
+  if (out->report != NULL) {
+    if (!out->failed)
+      report_table(t, out);
+    text_free(&t->cells);
+    return;
+  }
   widen_for_heads(t);
   add_heads(t, out);
   const char *cell = t->cells.bytes;

@@ -5,11 +5,18 @@
 #define COMMAND_TEXT_H
 
 #include <evenfield/exchange.h>
+#include <evenfield/picture.h>
 
+/** Text that grows. With a report its parts go there instead: headings (lines
+ * that end in a colon), paragraphs, labels and tables; the first paragraph is
+ * the answer. */
 typedef struct text {
   char *bytes; /**< NULL while empty; always ends in a terminator */
   size_t length, room;
-  bool failed; /**< out of memory: what follows is dropped */
+  bool failed;       /**< out of memory: what follows is dropped */
+  ef_report *report; /**< borrowed; NULL: plain text */
+  bool has_answer;
+  char heading[120]; /**< of the report's section, which its tables show */
 } text;
 
 void text_add(text *t, const char *piece);
@@ -19,6 +26,11 @@ void text_format(text *t, const char *format, ...) EF_PRINTF(2, 3);
 /** Writes all of it; EF_NO_MEMORY when something was dropped. */
 ef_status text_write(const text *t, ef_output *output, ef_error *error);
 void text_free(text *t);
+/** Begins a section where there is a report; nothing else. */
+void text_section(text *t, const char *title);
+/** Hands on to the report what text_add left; EF_NO_MEMORY when something was
+ * dropped. */
+ef_status text_flush(text *t, ef_error *error);
 /** Adds `sentence` broken at blanks before column 79, `indent` blanks before
  * each line but the first, and a line end. */
 void text_wrap(text *t, const char *sentence, size_t indent);
