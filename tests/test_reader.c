@@ -396,7 +396,7 @@ static void standard_input(void **state) {
 
 static void demo_files_open(void **state) {
   (void)state;
-  assert_int_equal(ef_demo_count(), 11);
+  assert_true(ef_demo_count() >= 11);
   for (size_t i = 0; i < ef_demo_count(); ++i) {
     size_t length;
     const char *const text = ef_demo_text(i, &length);
@@ -406,8 +406,10 @@ static void demo_files_open(void **state) {
     snprintf(path, sizeof path, "demo:%s", ef_demo_name(i));
     ef_error error = {0};
     ef_reader *const reader = ef_reader_open(path, NULL, &error);
-    /* Answers of a panel are no colours; all other files are read. */
-    if (strcmp(ef_demo_name(i), "panel-responses") == 0) {
+    /* Answers of a panel and its pairs are no colours; all others are read. */
+    if (strstr(ef_demo_name(i), "-responses") != NULL ||
+        strstr(ef_demo_name(i), "-answers") != NULL ||
+        strstr(ef_demo_name(i), "-pairs") != NULL) {
       assert_null(reader);
       assert_error(&error, EF_MALFORMED, "no known set of columns");
       continue;
