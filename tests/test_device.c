@@ -488,6 +488,71 @@ static void displays_survive_lack_of_memory(void **state) {
   ef_spectra_free(spectra);
 }
 
+/* Every encoding, codes and floats, beside the curve, the matrix and the Lab of
+ * one pixel. */
+static void pixels_are_decoded(void **state) {
+  (void)state;
+  enum { PIXELS = 40000 };
+  uint8_t *const code = malloc(3 * PIXELS);
+  float *const rgb = malloc(3 * PIXELS * sizeof *rgb);
+  double *const lab = malloc(3 * PIXELS * sizeof *lab);
+  double *const xyz = malloc(3 * PIXELS * sizeof *xyz);
+  assert_true(code != NULL && rgb != NULL && lab != NULL && xyz != NULL);
+  gen g = gen_new(31);
+  for (size_t i = 0; i < 3 * PIXELS; ++i) {
+    code[i] = (uint8_t)gen_below(&g, 256);
+    rgb[i] = (float)code[i] / 255;
+  }
+  rgb[0] = -0.5f; /* clamped */
+  rgb[1] = 1.5f;
+  code[0] = 0;
+  code[1] = 255;
+  for (size_t e = 0; e < ef_encoding_count(); ++e) {
+    const ef_encoding *const encoding = ef_encoding_at(e);
+    double matrix[9];
+    ef_tone_curve *const curve = ef_tone_curve_new(encoding->tone, NULL);
+    assert_non_null(curve);
+    assert_int_equal(ef_encoding_matrix(encoding, matrix, NULL), EF_OK);
+    assert_int_equal(
+        ef_encoding_codes_to_lab(encoding, PIXELS, code, 2, lab, NULL), EF_OK);
+    assert_int_equal(ef_encoding_rgb_to_xyz(encoding, PIXELS, rgb, 2, xyz, NULL),
+                     EF_OK);
+    const ef_xyz one = {1, 1, 1};
+    const ef_xyz white = ef_xyz_transform(matrix, one);
+    for (size_t i = 0; i < 1000; ++i) {
+      double a[3], b[3];
+      for (size_t c = 0; c < 3; ++c) {
+        a[c] = ef_tone_curve_amount(curve, code[3 * i + c] / 255.0, NULL);
+        b[c] = ef_tone_curve_amount(curve, (double)rgb[3 * i + c], NULL);
+      }
+      const ef_lab expected = ef_xyz_to_lab(
+          ef_xyz_transform(matrix, (ef_xyz){a[0], a[1], a[2]}), white);
+      assert_near(lab[3 * i], expected.L_star, 1e-11);
+      assert_near(lab[3 * i + 1], expected.a_star, 1e-11);
+      assert_near(lab[3 * i + 2], expected.b_star, 1e-11);
+      const ef_xyz v = ef_xyz_transform(matrix, (ef_xyz){b[0], b[1], b[2]});
+      assert_near(xyz[3 * i], 100 * v.X, 1e-11);
+      assert_near(xyz[3 * i + 1], 100 * v.Y, 1e-11);
+      assert_near(xyz[3 * i + 2], 100 * v.Z, 1e-11);
+    }
+    /* Whatever the batch and the threads. */
+    double few[15];
+    assert_int_equal(ef_encoding_codes_to_lab(encoding, 5, code + 3 * 30001, 1,
+                                              few, NULL),
+                     EF_OK);
+    assert_same_bits(few, lab + 3 * 30001, 15);
+    assert_int_equal(
+        ef_encoding_rgb_to_xyz(encoding, 5, rgb + 3 * 30001, 1, few, NULL),
+        EF_OK);
+    assert_same_bits(few, xyz + 3 * 30001, 15);
+    ef_tone_curve_free(curve);
+  }
+  free(code);
+  free(rgb);
+  free(lab);
+  free(xyz);
+}
+
 int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(names_and_limits),
@@ -504,6 +569,7 @@ int main(void) {
       cmocka_unit_test(additivity_against_a_measured_white),
       cmocka_unit_test(additivity_without_a_white),
       cmocka_unit_test(encodings_become_displays),
+      cmocka_unit_test(pixels_are_decoded),
       cmocka_unit_test(curves_of_settings_replace_an_encodings_own),
       cmocka_unit_test(encodings_at_fault),
       cmocka_unit_test(displays_survive_lack_of_memory),

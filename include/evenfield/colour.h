@@ -55,7 +55,8 @@ EF_API ef_lab ef_lch_to_lab(ef_lch lch);
 EF_API ef_lch ef_luv_to_lch(ef_luv luv);
 /** d(L*, a*, b*) / d(X, Y, Z), row-major 3 x 3. */
 EF_API void ef_lab_jacobian(ef_xyz xyz, ef_xyz white, double jacobian[9]);
-/** Batch forms over n x 3 plain arrays; `out` may be `in`. */
+/** Batch form over n x 3 plain arrays, by the batch kernels: to 1e-12 of each
+ * alone, and the same bits whatever n. `lab` may be `xyz`. */
 EF_API void ef_xyz_to_lab_batch(size_t n, const double *xyz, ef_xyz white,
                                 double *lab);
 
@@ -169,6 +170,11 @@ typedef struct ef_ucs_shape {
 /** CAM02-UCS, and with CAM16 CAM16-UCS: c1 0.007, c2 0.0228. */
 EF_API ef_ucs_shape ef_ucs_shape_default(void);
 EF_API ef_ucs ef_cam_to_ucs(ef_cam cam, ef_ucs_shape shape);
+/** n colours, n x 3 each, by the batch kernels: to 1e-10 of ef_cam_to_ucs of
+ * ef_xyz_to_cam, and the same bits whatever n. `ucs` may be `xyz`. */
+EF_API void ef_xyz_to_ucs_batch(size_t n, const double *xyz,
+                                const ef_cam_model *model, ef_ucs_shape shape,
+                                double *ucs);
 EF_API ef_cam ef_ucs_to_cam(ef_ucs ucs, ef_ucs_shape shape,
                             const ef_cam_model *model);
 /** d(J', a', b') / d(X, Y, Z), row-major, in closed form. M grows as the 0.9th

@@ -150,6 +150,19 @@ EF_API const ef_encoding *ef_encoding_find(const char *name, ef_error *error);
 EF_API ef_status ef_encoding_matrix(const ef_encoding *encoding,
                                     double matrix[9], ef_error *error);
 
+/** n pixels of 8-bit codes, red, green and blue each, to CIELAB (n x 3) relative
+ * to the encoding's white, as its reference display shows them; by the batch
+ * kernels, over up to `jobs` threads (0: all cores): the same bits whatever n
+ * and `jobs`. */
+EF_API ef_status ef_encoding_codes_to_lab(const ef_encoding *encoding, size_t n,
+                                          const uint8_t *rgb, int jobs,
+                                          double *lab, ef_error *error);
+/** The same of drives as floats (clamped to [0, 1]), to XYZ with Y = 100 for the
+ * encoding's white. */
+EF_API ef_status ef_encoding_rgb_to_xyz(const ef_encoding *encoding, size_t n,
+                                        const float *rgb, int jobs, double *xyz,
+                                        ef_error *error);
+
 /** Measured rows of a device: its values and what was measured for them. */
 typedef struct ef_measurements {
   size_t n_rows;

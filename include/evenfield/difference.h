@@ -106,9 +106,9 @@ EF_API bool ef_metric_symmetric(const ef_metric *metric);
 EF_API void ef_metric_coordinates(const ef_metric *metric, ef_xyz xyz,
                                   const ef_conditions *conditions,
                                   double coordinate[3]);
-/** n colours, n x 3 each, over up to `jobs` threads (0: all cores); the same
- * digits as single calls, and faster for the appearance models. `coordinate`
- * may be `xyz`. */
+/** n colours, n x 3 each, over up to `jobs` threads (0: all cores): a colour's
+ * result does not depend on `jobs`, `n` or its place, bit for bit, and is that of
+ * ef_metric_coordinates to 1e-10. `coordinate` may be `xyz`. */
 EF_API void ef_metric_coordinates_batch(const ef_metric *metric, size_t n,
                                         const double *xyz,
                                         const ef_conditions *conditions,

@@ -8,6 +8,7 @@
 
 #include "base/base_private.h"
 #include "colour/cam_private.h"
+#include "kernel/kernels.h"
 
 static const double radian = 0.017453292519943295; /* pi / 180 */
 
@@ -20,6 +21,19 @@ ef_ucs ef_cam_to_ucs(ef_cam cam, ef_ucs_shape shape) {
   const double h_rad = cam.h_deg * radian;
   return (ef_ucs){(1 + 100 * shape.c1) * cam.J / (1 + shape.c1 * fabs(cam.J)),
                   m * cos(h_rad), m * sin(h_rad)};
+}
+
+void ef_xyz_to_ucs_batch(size_t n, const double *xyz, const ef_cam_model *model,
+                         ef_ucs_shape shape, double *ucs) {
+  double constant[EF__UCS_CONSTANTS];
+  for (int i = 0; i < 9; ++i) constant[i] = model->response[i];
+  constant[EF__UCS_SHARE] = model->N_bb / model->A_w;
+  constant[EF__UCS_POWER] = model->c * model->z;
+  constant[EF__UCS_CHROMA] = pow(model->F_L, 0.25) * model->chroma_factor *
+                             pow(50000.0 / 13 * model->N_c * model->N_bb, 0.9);
+  constant[EF__UCS_C1] = shape.c1;
+  constant[EF__UCS_C2] = shape.c2;
+  ef__kernels()->xyz_to_ucs(n, xyz, constant, ucs);
 }
 
 ef_cam ef_ucs_to_cam(ef_ucs ucs, ef_ucs_shape shape,

@@ -5,6 +5,8 @@
 
 #include <math.h>
 
+#include "kernel/kernels.h"
+
 static const double join = 24.0 / 116;   /* f at the end of the straight part */
 static const double slope = 841.0 / 108; /* of the straight part */
 static const double offset = 16.0 / 116; /* f of 0 */
@@ -52,12 +54,11 @@ ef_xyz ef_lab_to_xyz(ef_lab lab, ef_xyz white) {
 
 void ef_xyz_to_lab_batch(size_t n, const double *xyz, ef_xyz white,
                          double *lab) {
-  for (size_t i = 0; i < n; ++i) {
-    const ef_lab one = ef_xyz_to_lab(
-        (ef_xyz){xyz[3 * i], xyz[3 * i + 1], xyz[3 * i + 2]}, white);
-    lab[3 * i] = one.L_star;
-    lab[3 * i + 1] = one.a_star;
-    lab[3 * i + 2] = one.b_star;
+  if (is_white(white)) {
+    const double w[3] = {white.X, white.Y, white.Z};
+    ef__kernels()->xyz_to_lab(n, xyz, w, lab);
+  } else {
+    for (size_t i = 0; i < 3 * n; ++i) lab[i] = not_a_number;
   }
 }
 

@@ -45,6 +45,7 @@ const ef_metric ef__metric_cie94 = {
                   {"k2", 0.015, "growth of the hue weight with chroma"}},
     .parameter_set = sets,
     .coordinates = ef__lab_coordinates,
+    .coordinates_of_many = ef__lab_coordinates_of_many,
     .inverse = ef__lab_inverse,
     .jacobian = ef__lab_jacobian,
     .weights = weights,

@@ -219,6 +219,7 @@ const ef_metric ef__metric_ciede2000 = {
             "ISO/TR 28642:2016; Paravina et al., J. Esthet. Restor. Dent. 27 "
             "Suppl. 1 (2015) S1-S9"},
     .coordinates = ef__lab_coordinates,
+    .coordinates_of_many = ef__lab_coordinates_of_many,
     .inverse = ef__lab_inverse,
     .jacobian = ef__lab_jacobian,
     .difference = difference,

@@ -57,6 +57,7 @@ const ef_metric ef__metric_cmc = {
                   {"c", 1, "divides the chroma difference"}},
     .parameter_set = sets,
     .coordinates = ef__lab_coordinates,
+    .coordinates_of_many = ef__lab_coordinates_of_many,
     .inverse = ef__lab_inverse,
     .jacobian = ef__lab_jacobian,
     .weights = weights,

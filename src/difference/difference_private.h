@@ -146,6 +146,10 @@ double ef__adapting_luminance_cd_m2(const ef_conditions *conditions);
 
 void ef__lab_coordinates(const ef_metric *self, ef_xyz xyz,
                          const ef_conditions *conditions, double coordinate[3]);
+void ef__lab_coordinates_of_many(const ef_metric *self, size_t n,
+                                 const double *xyz,
+                                 const ef_conditions *conditions,
+                                 double *coordinate);
 ef_xyz ef__lab_inverse(const ef_metric *self, const double coordinate[3],
                        const ef_conditions *conditions);
 void ef__lab_jacobian(const ef_metric *self, ef_xyz xyz,

@@ -33,6 +33,14 @@ void ef__lab_coordinates(const ef_metric *self, ef_xyz xyz,
   coordinate[2] = lab.b_star;
 }
 
+void ef__lab_coordinates_of_many(const ef_metric *self, size_t n,
+                                 const double *xyz,
+                                 const ef_conditions *conditions,
+                                 double *coordinate) {
+  (void)self;
+  ef_xyz_to_lab_batch(n, xyz, conditions->white, coordinate);
+}
+
 ef_xyz ef__lab_inverse(const ef_metric *self, const double coordinate[3],
                        const ef_conditions *conditions) {
   (void)self;
@@ -112,6 +120,7 @@ const ef_metric ef__metric_cielab = {
             "Mahy, Van Eycken, Oosterlinck, Color Res. Appl. 19 (1994) "
             "105-121"},
     .coordinates = ef__lab_coordinates,
+    .coordinates_of_many = ef__lab_coordinates_of_many,
     .inverse = ef__lab_inverse,
     .jacobian = ef__lab_jacobian,
     .difference = ef__euclidean_difference,

@@ -40,24 +40,26 @@ static void coordinates_of_many(const ef_metric *self, size_t n,
                                 double *coordinate) {
   ef_cam_model model;
   const bool is_set = set_model(self, conditions, &model);
-  const double factor = unit(conditions);
-  for (size_t i = 0; i < 3 * n; i += 3) {
-    ef_ucs ucs = {(double)NAN, (double)NAN, (double)NAN};
-    if (is_set) {
-      const ef_xyz one = {xyz[i], xyz[i + 1], xyz[i + 2]};
-      ucs = ef_cam_to_ucs(ef_xyz_to_cam(scaled(one, factor), &model),
-                          shape(self));
-    }
-    coordinate[i] = ucs.J_prime;
-    coordinate[i + 1] = ucs.a_prime;
-    coordinate[i + 2] = ucs.b_prime;
+  if (!is_set) {
+    for (size_t i = 0; i < 3 * n; ++i) coordinate[i] = (double)NAN;
+    return;
   }
+  /* The scale of the models goes into the responses. */
+  for (int i = 0; i < 9; ++i) model.response[i] *= unit(conditions);
+  ef_xyz_to_ucs_batch(n, xyz, &model, shape(self), coordinate);
 }
 
 static void coordinates(const ef_metric *self, ef_xyz xyz,
                         const ef_conditions *conditions, double coordinate[3]) {
-  const double one[3] = {xyz.X, xyz.Y, xyz.Z};
-  coordinates_of_many(self, 1, one, conditions, coordinate);
+  ef_cam_model model;
+  ef_ucs ucs = {(double)NAN, (double)NAN, (double)NAN};
+  if (set_model(self, conditions, &model)) {
+    const ef_cam cam = ef_xyz_to_cam(scaled(xyz, unit(conditions)), &model);
+    ucs = ef_cam_to_ucs(cam, shape(self));
+  }
+  coordinate[0] = ucs.J_prime;
+  coordinate[1] = ucs.a_prime;
+  coordinate[2] = ucs.b_prime;
 }
 
 static ef_xyz inverse(const ef_metric *self, const double coordinate[3],

@@ -10,6 +10,18 @@
 #define EVENFIELD_KERNEL_KERNELS_H
 
 #include <stddef.h>
+#include <stdint.h>
+
+/** What xyz_to_ucs takes: first the nine coefficients from XYZ to responses
+ * before compression. */
+enum {
+  EF__UCS_SHARE = 9, /**< N_bb / A_w */
+  EF__UCS_POWER,     /**< c z */
+  EF__UCS_CHROMA,    /**< M of sqrt(J / 100) (e_t r / u)^0.9 */
+  EF__UCS_C1,
+  EF__UCS_C2,
+  EF__UCS_CONSTANTS
+};
 
 /** X(name, arguments) of every kernel. Pairs are n x 3 each. */
 #define EF__KERNEL_LIST(X)                                                     \
@@ -27,6 +39,17 @@
             size_t n, const double *sample, double *out))                      \
   X(apply_float, (size_t n_samples, size_t n_channels, const double *matrix,   \
                   size_t n, const float *sample, double *out))                 \
+  /* colours.c, appearance.c: n colours, n x 3 each. `matrix` leads from levels \
+   * to X / Xn, Y / Yn, Z / Zn or to XYZ; `tone` is gamma, offset, slope, joint \
+   * of a tone curve in closed form. */                                        \
+  X(xyz_to_lab, (size_t n, const double *xyz, const double white[3],           \
+                 double *lab))                                                 \
+  X(codes_to_lab, (size_t n, const uint8_t *rgb, const double level[256],      \
+                   const double matrix[9], double *lab))                       \
+  X(rgb_to_xyz, (size_t n, const float *rgb, const double tone[4],             \
+                 const double matrix[9], double *xyz))                         \
+  X(xyz_to_ucs, (size_t n, const double *xyz, const double *constant,          \
+                 double *ucs))                                                 \
   /* cielab.c, cie94.c, cmc.c, ciede2000.c: differences of n pairs. */         \
   X(ciede2000, (size_t n, const double *reference, const double *sample,       \
                 const double factor[3], double *out))                          \

@@ -37,7 +37,7 @@ void EF__KERNEL(log)(size_t n, const double *x, double *out) {
 
 void EF__KERNEL(power)(size_t n, const double *x, double y, double *out) {
   for (size_t i = 0; i < n; i += EF__LANES) {
-    store_some(out + i, n - i, v_power(load_some(x + i, n - i), v_all(y)));
+    store_some(out + i, n - i, v_exp(v_power_log(load_some(x + i, n - i), v_all(y))));
   }
 }
 

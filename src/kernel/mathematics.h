@@ -100,10 +100,12 @@ EF__INLINE v_double v_log(v_double x) {
          ((half - (s * (half + rest) + n * 1.90821492927058770002e-10)) - f);
 }
 
-/** x^y for x >= 0, normal or zero, y > 0. */
-EF__INLINE v_double v_power(v_double x, v_double y) {
+/** y ln x, of which v_exp makes x^y, for x >= 0, normal or zero, y > 0. In two
+ * steps so that many powers can be taken in two passes: one alone is a chain of
+ * so many operations that a processor does not see the next one behind it. */
+EF__INLINE v_double v_power_log(v_double x, v_double y) {
   const v_int zero = x == 0;
-  return v_keep(~zero, v_exp(y * v_log(v_select(zero, v_all(1), x))));
+  return v_select(zero, v_all(-1000), y * v_log(v_select(zero, v_all(1), x)));
 }
 
 /** Sine and cosine of r, |r| <= pi / 4. */

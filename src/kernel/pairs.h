@@ -70,21 +70,22 @@ EF__INLINE void v_each_block(size_t n, const double *reference,
   memcpy(out + i, d, (n - i) * sizeof *d);
 }
 
-/** Colours to colours, one vector at a time. */
-typedef v_point v_change(v_point colour, const double *constant);
+/* ---- Colours ------------------------------------------------------------ */
 
-EF__INLINE void v_each_colour(size_t n, const double *from, v_change *change,
-                              const double *constant, double *to) {
-  size_t i = 0;
-  for (; i + EF__LANES <= n; i += EF__LANES) {
-    const v_point p = change(v_load_point(from + 3 * i), constant);
-    v_store_triplets(to + 3 * i, p.x, p.y, p.z);
-  }
-  if (i == n) return;
-  const v_point p = change(v_load_last(from + 3 * i, n - i), constant);
-  double whole[3 * EF__LANES];
-  v_store_triplets(whole, p.x, p.y, p.z);
-  memcpy(to + 3 * i, whole, 3 * (n - i) * sizeof *to);
+/** The most colours that pass a stage together, and their numbers. */
+enum { V_COLOURS = V_BLOCK * EF__LANES, V_NUMBERS = 3 * V_COLOURS };
+
+/** The first n colours of `from`, and zeros up to a whole vector. Returns how
+ * many vectors of colours that makes. */
+EF__INLINE size_t v_take_colours(size_t n, const double *from, double *block) {
+  const size_t vectors = (n + EF__LANES - 1) / EF__LANES;
+  memcpy(block, from, 3 * n * sizeof *block);
+  for (size_t i = 3 * n; i < 3 * EF__LANES * vectors; ++i) block[i] = 0;
+  return vectors;
+}
+
+EF__INLINE size_t v_block_size(size_t n, size_t done) {
+  return n - done < V_COLOURS ? n - done : (size_t)V_COLOURS;
 }
 
 #endif

@@ -84,6 +84,11 @@ EF__INLINE v_double v_select(v_int mask, v_double yes, v_double no) {
 #endif
 }
 
+/** All lanes true, or none. */
+EF__INLINE v_int v_truth(int is_true) {
+  return v_all_int(is_true ? -1 : 0);
+}
+
 /** `x` where `mask` is true, else 0. */
 EF__INLINE v_double v_keep(v_int mask, v_double x) {
   return (v_double)(mask & (v_int)x);

@@ -195,7 +195,7 @@ static void lab_slopes_are_central_differences(void **state) {
   assert_true(largest <= 1);
 }
 
-static void batch_is_one_by_one(void **state) {
+static void batches_are_one_by_one(void **state) {
   (void)state;
   gen g = gen_new(8);
   enum { MANY = 1000 };
@@ -206,8 +206,30 @@ static void batch_is_one_by_one(void **state) {
   for (size_t i = 0; i < MANY; ++i) {
     const ef_lab one = ef_xyz_to_lab(
         (ef_xyz){xyz[3 * i], xyz[3 * i + 1], xyz[3 * i + 2]}, white);
-    const double expected[3] = {one.L_star, one.a_star, one.b_star};
-    assert_same_bits(lab + 3 * i, expected, 3);
+    assert_near(lab[3 * i], one.L_star, 1e-12);
+    assert_near(lab[3 * i + 1], one.a_star, 1e-12);
+    assert_near(lab[3 * i + 2], one.b_star, 1e-12);
+    double alone[3];
+    ef_xyz_to_lab_batch(1, xyz + 3 * i, white, alone);
+    assert_same_bits(lab + 3 * i, alone, 3);
+  }
+  ef_cam_model model;
+  const ef_cam_viewing viewing = ef_cam_viewing_default(white);
+  assert_int_equal(ef_cam_model_set(EF_CAM_16, &viewing, &model, NULL), EF_OK);
+  const ef_ucs_shape shape = ef_ucs_shape_default();
+  double ucs[3 * MANY];
+  ef_xyz_to_ucs_batch(MANY, xyz, &model, shape, ucs);
+  for (size_t i = 0; i < MANY; ++i) {
+    const ef_xyz v = {xyz[3 * i], xyz[3 * i + 1], xyz[3 * i + 2]};
+    const ef_ucs one = ef_cam_to_ucs(ef_xyz_to_cam(v, &model), shape);
+    const double expected[3] = {one.J_prime, one.a_prime, one.b_prime};
+    for (int c = 0; c < 3; ++c) {
+      if (isnan(expected[c])) assert_true(isnan(ucs[3 * i + (size_t)c]));
+      else assert_near(ucs[3 * i + (size_t)c], expected[c], 1e-10);
+    }
+    double alone[3];
+    ef_xyz_to_ucs_batch(1, xyz + 3 * i, &model, shape, alone);
+    assert_same_bits(ucs + 3 * i, alone, 3);
   }
 }
 
@@ -537,7 +559,7 @@ int main(void) {
       cmocka_unit_test(lch_and_back),
       cmocka_unit_test(macleod_boynton_and_back),
       cmocka_unit_test(lab_slopes_are_central_differences),
-      cmocka_unit_test(batch_is_one_by_one),
+      cmocka_unit_test(batches_are_one_by_one),
       cmocka_unit_test(adaptation_of_whites_and_inverse),
       cmocka_unit_test(weights_are_additive),
       cmocka_unit_test(temperature_of_radiators),

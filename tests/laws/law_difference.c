@@ -256,7 +256,7 @@ static void batches_do_not_depend_on_size_or_threads(void **state) {
   free(many);
 }
 
-static void coordinates_in_batches_equal_single_calls(void **state) {
+static void coordinates_do_not_depend_on_the_batch(void **state) {
   (void)state;
   enum { N = 10007 };
   const ef_conditions conditions = {.white = {95.047, 100, 108.883}};
@@ -270,8 +270,12 @@ static void coordinates_in_batches_equal_single_calls(void **state) {
     const ef_metric *const metric = every_metric(m);
     for (size_t i = 0; i < N; ++i) {
       const double *const v = xyz + 3 * i;
+      double single[3];
       ef_metric_coordinates(metric, (ef_xyz){v[0], v[1], v[2]}, &conditions,
-                            one + 3 * i);
+                            single);
+      ef_metric_coordinates_batch(metric, 1, v, &conditions, 1, one + 3 * i);
+      for (size_t c = 0; c < 3; ++c)
+        assert_near(one[3 * i + c], single[c], 1e-10);
     }
     for (int jobs = 0; jobs < 4; ++jobs) {
       memset(many, 0, 3 * N * sizeof *many);
@@ -323,7 +327,7 @@ int main(void) {
       cmocka_unit_test(tensors_measure_small_steps),
       cmocka_unit_test(closed_tensors_equal_numeric_ones),
       cmocka_unit_test(batches_do_not_depend_on_size_or_threads),
-      cmocka_unit_test(coordinates_in_batches_equal_single_calls),
+      cmocka_unit_test(coordinates_do_not_depend_on_the_batch),
       cmocka_unit_test(agrees_with_little_cms),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
