@@ -4,6 +4,7 @@
 #include "difference/difference_private.h"
 
 #include <math.h>
+#include <string.h>
 
 #include "kernel/kernels.h"
 
@@ -176,34 +177,27 @@ static void tensor(const ef_metric *self, const double coordinate[3],
   g[8] = s * s * cc + c * c * hh + 2 * c * s * ch;
 }
 
-/* Blue to red colours of some chroma have a second minimum: near the axis, at
- * the hue that puts the mean hue at 275 degrees, where the rotation term is
- * strongest and takes half of the difference away; the same holds the other way
- * round for blues near the axis. The places are fitted by eye to a map of the
- * formula. Where the hue would lie beyond the opposite one, the minimum is at
- * the jump there. The difference is above 9 at all of them. */
-#define DECOY_DIFFERENCE 7.0
-
+/* Colours of some chroma have a second minimum near the axis, about opposite to
+ * them, narrow for the rotation term and the root in dH' (eq. 11): the best of
+ * a few points there leads into it. */
 static size_t decoys(const ef_metric *self, const double reference[3],
                      double place[EF__MAX_DECOYS][3]) {
-  (void)self; /* the places hardly move with the parametric factors */
-  const double a = reference[1], b = reference[2];
-  const double chroma = sqrt(a * a + b * b);
-  double from_275 = atan2(b, a) * DEGREES_PER_RADIAN + 85;
-  if (from_275 > 180) from_275 -= 360;
-  double turn = -2 * from_275;
-  if (!(fabs(turn) < 300) || chroma < 3) return 0;
-  turn = turn > 179 ? 179 : turn < -179 ? -179 : turn;
-  double far = 65;
-  if (chroma > 17) {
-    const double half = sin(turn / 2 / DEGREES_PER_RADIAN);
-    far = 3.7 / (half * half + 0.15);
+  static const double chromas[] = {3.5, 8};
+  enum { HUES = 12, N = 2 * HUES };
+  double pair[N][3], sample[N][3], difference[N];
+  for (int i = 0; i < N; ++i) {
+    const double h = (360.0 / HUES) * (i % HUES) / DEGREES_PER_RADIAN;
+    memcpy(pair[i], reference, sizeof pair[i]);
+    sample[i][0] = reference[0];
+    sample[i][1] = chromas[i / HUES] * cos(h);
+    sample[i][2] = chromas[i / HUES] * sin(h);
   }
-  const double c = cos(turn / DEGREES_PER_RADIAN);
-  const double s = sin(turn / DEGREES_PER_RADIAN);
-  place[0][0] = reference[0];
-  place[0][1] = far * (c * a - s * b) / chroma;
-  place[0][2] = far * (s * a + c * b) / chroma;
+  differences(self, N, pair[0], sample[0], difference);
+  int best = 0;
+  for (int i = 1; i < N; ++i) {
+    if (difference[i] < difference[best]) best = i;
+  }
+  memcpy(place[0], sample[best], sizeof sample[best]);
   return 1;
 }
 
@@ -230,7 +224,6 @@ const ef_metric ef__metric_ciede2000 = {
     .carry = ef__lab_carry,
     .least = ef__ciede2000_least,
     .decoys = decoys,
-    .decoy_difference = DECOY_DIFFERENCE,
     .kinked_axis = true,
     .jumps_at_opposite_hue = true,
 };

@@ -116,8 +116,6 @@ struct ef_metric {
    * it has local minima in the chromatic plane; returns how many. */
   size_t (*decoys)(const ef_metric *self, const double reference[3],
                    double place[EF__MAX_DECOYS][3]);
-  /** A minimum may be this close to the reference without decoys mattering. */
-  double decoy_difference;
   /** The difference has a kink where the sample is neutral. */
   bool kinked_axis;
   /** The difference jumps where the sample's hue is opposite. */

@@ -251,7 +251,7 @@ ef_status ef_match_batch(const ef_setup *setup, size_t n, const double *xyz,
   ef_status status = ef__batch_start(&j, setup, n, xyz, settings, jobs, out,
                                      &block, error);
   if (status == EF_OK) status = ef__mixing_from_setup(setup, &j.mixing, error);
-  if (status == EF_OK && !j.mixing.affine) {
+  if (status == EF_OK) {
     scout = ef__scout_new(&j.mixing, settings->metric, error);
     if (scout == NULL) status = EF_NO_MEMORY;
     j.mixing.scout = scout;

@@ -25,7 +25,7 @@ typedef struct ef__mixing {
   ef_xyz (*xyz)(const void *context, const double *amount, double *jacobian);
   const void *context; /**< borrowed */
   double resolution;   /**< see ef_setup_resolution */
-  const ef__scout *scout; /**< borrowed; NULL for affine setups */
+  const ef__scout *scout; /**< borrowed; what ef__nearest needs */
 } ef__mixing;
 
 /** From a setup, which it borrows. EF_INVALID unless there are three drives,
@@ -87,17 +87,22 @@ bool ef__descend_edge(ef__search *search, ef__place *place);
 /* ---- Starts all over the gamut (scout.c) ------------------------------- */
 
 /** Most starts that a look over the gamut gives. */
-enum { EF__MAX_SCOUTED = 4 };
+enum { EF__MAX_SCOUTED = 6 };
 
 /** Colours of a grid of amounts, for one metric. Free with ef__scout_free. */
 ef__scout *ef__scout_new(const ef__mixing *mixing, const ef_metric *metric,
                          ef_error *error);
 void ef__scout_free(ef__scout *scout);
-/** Amounts of the grid that are nearer to the target (in the metric's
+/** A point of the grid. */
+typedef struct ef__start {
+  double amount[3];
+  double difference; /**< to the target */
+} ef__start;
+/** The points of the grid that are nearer to the target (in the metric's
  * coordinates) than all their neighbours, the nearest first. */
 size_t ef__scout_starts(const ef__scout *scout, const ef_metric *metric,
                         const double target[3],
-                        double place[EF__MAX_SCOUTED][3]);
+                        ef__start start[EF__MAX_SCOUTED]);
 
 /* ---- Nearest colour (nearest.c) ---------------------------------------- */
 

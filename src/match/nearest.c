@@ -8,6 +8,12 @@
 #include <stdlib.h>
 #include <string.h>
 
+/* How far a basin may lead down from the point of the look over the gamut that
+ * lies in it, and from a point near the neutral axis, where basins are narrow.
+ * With 4 instead of 8, 26 of 4000 far targets miss the nearest colour (srgb). */
+#define DEPTH 8.0
+#define DEPTH_NEAR_AXIS 16.0
+
 /* Descents that meet end closer to each other than this. */
 static bool is_same(const double a[3], const double b[3]) {
   const double near = 1e-5;
@@ -126,9 +132,48 @@ static void leave_box(const ef__search *search, const double exact[3],
   }
 }
 
+/* True when the difference only falls on the straight way to the least minimum
+ * found: a descent would most likely lead there. */
+static bool leads_to_least(ef__search *search, const double amount[3],
+                           double square, const ef__minima *minima) {
+  static const double shares[] = {0.3, 0.65};
+  const double *const to = minima->at[0].amount;
+  double before = square;
+  for (int s = 0; s < 2; ++s) {
+    double at[3];
+    for (int i = 0; i < 3; ++i) {
+      at[i] = amount[i] + shares[s] * (to[i] - amount[i]);
+    }
+    const double here = ef__search_value(search, at);
+    if (!(here < before)) return false;
+    before = here;
+  }
+  return minima->at[0].square < before;
+}
+
+/* From the low points of a look over the gamut that promise something; where
+ * colours do not add the gamut may be folded, and all are tried. */
+static void search_scouted(ef__search *search, ef__minima *out) {
+  ef__start start[EF__MAX_SCOUTED];
+  const size_t n = ef__scout_starts(search->mixing->scout, search->metric,
+                                    search->target, start);
+  for (size_t i = 0; i < n; ++i) {
+    const double difference = start[i].difference;
+    if (search->mixing->affine) {
+      if (difference > sqrt(out->at[0].square) + DEPTH) return;
+      if (leads_to_least(search, start[i].amount, difference * difference,
+                         out)) {
+        continue;
+      }
+    }
+    descend_from(search, start[i].amount, out);
+  }
+}
+
 static void search_decoys(ef__search *search, ef__minima *out) {
   double start[EF__MAX_DECOYS][3], amount[3];
-  const size_t n = search->metric->decoys(search->metric, search->target, start);
+  const size_t n =
+      search->metric->decoys(search->metric, search->target, start);
   for (size_t i = 0; i < n; ++i) {
     /* Near black and white there is no room for chroma. */
     start[i][0] = ef__clamp(start[i][0], 5, 96);
@@ -136,55 +181,26 @@ static void search_decoys(ef__search *search, ef__minima *out) {
         search->mixing,
         ef_metric_xyz(search->metric, start[i], &search->mixing->conditions),
         amount);
+    for (int k = 0; k < 3; ++k) amount[k] = ef__clamp(amount[k], 0, 1);
+    const double difference = sqrt(ef__search_value(search, amount));
+    if (difference > sqrt(out->at[0].square) + DEPTH_NEAR_AXIS) continue;
     descend_from(search, amount, out);
   }
-}
-
-/* Where colours do not add: from the low points of a look over the gamut. */
-static void search_scouted(ef__search *search, ef__minima *out) {
-  double start[EF__MAX_SCOUTED][3];
-  const size_t n = ef__scout_starts(search->mixing->scout, search->metric,
-                                    search->target, start);
-  for (size_t i = 0; i < n; ++i) descend_from(search, start[i], out);
-}
-
-/* The two best of the 27 points with amounts 0, 1/2 and 1: where the target is
- * far away, the basin of the least difference need not be the one that either
- * of the usual starts lies in. */
-static void search_lattice(ef__search *search, ef__minima *out) {
-  enum { N_STARTS = 2 };
-  double start[N_STARTS][3] = {{0}};
-  double least[N_STARTS] = {(double)INFINITY, (double)INFINITY};
-  for (int code = 0; code < 27; ++code) {
-    const double at[3] = {code % 3 / 2.0, code / 3 % 3 / 2.0, code / 9 / 2.0};
-    const double square = ef__search_value(search, at);
-    const int place = square < least[0] ? 0 : square < least[1] ? 1 : N_STARTS;
-    if (place == N_STARTS) continue;
-    if (place == 0) {
-      least[1] = least[0];
-      memcpy(start[1], start[0], sizeof start[0]);
-    }
-    least[place] = square;
-    memcpy(start[place], at, sizeof at);
-  }
-  for (int i = 0; i < N_STARTS; ++i) descend_from(search, start[i], out);
 }
 
 void ef__nearest(ef__search *search, const double exact[3], ef__minima *out) {
   double left[3], clipped[3];
   for (int i = 0; i < 3; ++i) clipped[i] = ef__clamp(exact[i], 0, 1);
   leave_box(search, exact, left);
-  const bool left_first =
+  const bool left_is_better =
       ef__search_value(search, left) < ef__search_value(search, clipped);
   out->n = 0;
-  if (search->mixing->scout != NULL) search_scouted(search, out);
-  descend_from(search, left_first ? left : clipped, out);
+  descend_from(search, left_is_better ? left : clipped, out);
   /* The law test finds other basins only beyond some such difference. */
-  if (out->at[0].square < 49) return;
-  descend_from(search, left_first ? clipped : left, out);
-  const double least = search->metric->decoy_difference;
-  if (search->metric->decoys != NULL && out->at[0].square > least * least) {
-    search_decoys(search, out);
+  if (search->mixing->affine && out->at[0].square < 49) return;
+  if (!search->mixing->affine) {
+    descend_from(search, left_is_better ? clipped : left, out);
   }
-  search_lattice(search, out);
+  search_scouted(search, out);
+  if (search->metric->decoys != NULL) search_decoys(search, out);
 }

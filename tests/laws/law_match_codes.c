@@ -241,7 +241,15 @@ static void few_bits_are_the_best_of_all(void **state) {
         const double least = least_of_all(s, &search, (size_t[3]){0, 0, 0},
                                           (size_t[3]){last, last, last});
         const ef_match m = match_of(s, metric, BITS, target);
-        assert_near(m.coded.difference, least, 1e-9 * (1 + least));
+        if (!(m.coded.difference <= least + 1e-9 * (1 + least))) {
+          fail_msg("%s, %s, target %.6f %.6f %.6f: %.9g for codes %u %u %u, "
+                   "best of all %.9g; nearest %.9g at %g %g %g",
+                   s->name, ef_metric_name(metric), search.target[0],
+                   search.target[1], search.target[2], m.coded.difference,
+                   m.code[0], m.code[1], m.code[2], least, m.nearest.difference,
+                   m.nearest.amount[0], m.nearest.amount[1],
+                   m.nearest.amount[2]);
+        }
         n++;
         if (!has_bound(s, metric))
           continue;
@@ -320,36 +328,59 @@ static void an_impossible_blue(void **state) {
 
 /* ---- Against every code of eight bits ----------------------------------- */
 
-enum { MOST_TARGETS = 200 };
+enum { N_CODES = 256, MOST_TARGETS = 88 };
 typedef struct trial {
   const scene *scene;
   const ef_metric *metric;
   size_t n;
-  ef_xyz target[MOST_TARGETS];
   double coordinate[MOST_TARGETS][3];
+  double reference[MOST_TARGETS][N_CODES][3]; /* the same for each code */
   double ours[MOST_TARGETS];
-  double least[256][MOST_TARGETS]; /* by the first code */
+  double least[N_CODES][MOST_TARGETS]; /* by the first code */
 } trial;
 
-/* Colours are computed once for all targets. */
+/* Colours are computed once for all targets, 256 at a time. */
 static void try_slices(void *context, size_t begin, size_t end) {
   trial *const t = context;
   const scene *const s = t->scene;
   for (size_t i = begin; i < end; i++) {
-    for (size_t k = 0; k < t->n; k++)
-      t->least[i][k] = t->ours[k];
-    for (size_t jk = 0; jk < 65536; jk++) {
-      double c[3];
-      const double amount[3] = {s->amount[0][i], s->amount[1][jk / 256],
-                                s->amount[2][jk % 256]};
-      ef_metric_coordinates(t->metric, ef__mixing_xyz(&s->mixing, amount, NULL),
-                            &s->mixing.conditions, c);
-      for (size_t k = 0; k < t->n; k++) {
-        const double d = ef_metric_difference(t->metric, t->coordinate[k], c);
-        if (d < t->least[i][k])
-          t->least[i][k] = d;
+    for (size_t q = 0; q < t->n; q++)
+      t->least[i][q] = INFINITE;
+    for (size_t j = 0; j < N_CODES; j++) {
+      double colour[N_CODES][3], difference[N_CODES];
+      for (size_t k = 0; k < N_CODES; k++) {
+        const double amount[3] = {s->amount[0][i], s->amount[1][j],
+                                  s->amount[2][k]};
+        const ef_xyz xyz = ef__mixing_xyz(&s->mixing, amount, NULL);
+        memcpy(colour[k], &xyz, sizeof colour[k]);
+      }
+      ef_metric_coordinates_batch(t->metric, N_CODES, colour[0],
+                                  &s->mixing.conditions, 1, colour[0]);
+      for (size_t q = 0; q < t->n; q++) {
+        ef_metric_difference_batch(t->metric, N_CODES, t->reference[q][0],
+                                   colour[0], 1, difference);
+        for (size_t k = 0; k < N_CODES; k++) {
+          if (difference[k] < t->least[i][q])
+            t->least[i][q] = difference[k];
+        }
       }
     }
+  }
+}
+
+static void set_targets(trial *t, size_t n_a_target_kind) {
+  const scene *const s = t->scene;
+  gen g = gen_new(50);
+  while (t->n < N_KINDS * n_a_target_kind) {
+    const ef_xyz target = random_target(&g, s, (int)(t->n % N_KINDS));
+    const ef__search search = search_for(s, t->metric, target);
+    if (!isfinite(search.target[0] + search.target[1] + search.target[2]))
+      continue;
+    memcpy(t->coordinate[t->n], search.target, sizeof search.target);
+    for (size_t k = 0; k < N_CODES; k++)
+      memcpy(t->reference[t->n][k], search.target, sizeof search.target);
+    t->ours[t->n] = match_of(s, t->metric, 8, target).coded.difference;
+    t->n++;
   }
 }
 
@@ -359,31 +390,21 @@ static void try_every_code(const scene *s, const ef_metric *metric,
   assert_non_null(t);
   t->scene = s;
   t->metric = metric;
-  gen g = gen_new(50);
-  while (t->n < N_KINDS * n_a_target_kind) {
-    const ef_xyz target = random_target(&g, s, (int)(t->n % N_KINDS));
-    const ef__search search = search_for(s, metric, target);
-    if (!isfinite(search.target[0] + search.target[1] + search.target[2]))
-      continue;
-    memcpy(t->coordinate[t->n], search.target, sizeof search.target);
-    t->target[t->n] = target;
-    t->ours[t->n] = match_of(s, metric, 8, target).coded.difference;
-    t->n++;
-  }
-  ef__parallel_for(256, 4, 0, try_slices, t);
+  set_targets(t, n_a_target_kind);
+  ef__parallel_for(N_CODES, 4, 0, try_slices, t);
   size_t n_missed = 0;
   double worst = 0;
-  for (size_t k = 0; k < t->n; k++) {
+  for (size_t q = 0; q < t->n; q++) {
     double least = INFINITE;
-    for (size_t i = 0; i < 256; i++)
-      least = fmin(least, t->least[i][k]);
-    if (t->ours[k] <= least + 1e-9)
+    for (size_t i = 0; i < N_CODES; i++)
+      least = fmin(least, t->least[i][q]);
+    if (t->ours[q] <= least + 1e-9)
       continue;
     n_missed++;
-    worst = fmax(worst, t->ours[k] - least);
+    worst = fmax(worst, t->ours[q] - least);
     print_error("target %.6f %.6f %.6f: %.9g, best of all %.9g\n",
-                t->coordinate[k][0], t->coordinate[k][1], t->coordinate[k][2],
-                t->ours[k], least);
+                t->coordinate[q][0], t->coordinate[q][1], t->coordinate[q][2],
+                t->ours[q], least);
   }
   printf("# %s, %s: %zu of %zu targets missed, by up to %.3g\n", s->name,
          ef_metric_name(metric), n_missed, t->n, worst);
@@ -398,8 +419,11 @@ static void each_of_the_codes_is_worse(void **state) {
     set_bits(s, 8);
     for (size_t i = 0; i < ef_metric_count(); i++) {
       const ef_metric *const metric = ef_metric_at(i);
-      const bool main_one = strcmp(ef_metric_name(metric), "ciede2000") == 0;
-      try_every_code(s, metric, main_one ? 24 : 5);
+      if (strcmp(ef_metric_name(metric), "ciede2000") == 0) {
+        try_every_code(s, metric, MOST_TARGETS / N_KINDS);
+      } else if (d == SRGB) {
+        try_every_code(s, metric, 5);
+      }
     }
     scene_free(s);
   }
@@ -418,7 +442,7 @@ int main(int argc, char **argv) {
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
   if (argc > 1 && strcmp(argv[1], "every") == 0) {
-    n_a_kind = 500;
+    n_a_kind = 100;
     return cmocka_run_group_tests(slow_tests, NULL, NULL);
   }
   return cmocka_run_group_tests(tests, NULL, NULL);

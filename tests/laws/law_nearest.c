@@ -20,6 +20,7 @@ typedef struct scene {
   ef_device *device;
   ef_setup *setup;
   ef__mixing mixing;
+  ef__scout *scout;
 } scene;
 
 static scene scene_of(const char *name, ef_device *device, bool reflects) {
@@ -51,7 +52,16 @@ static scene scene_at(size_t i) {
 }
 enum { N_SCENES = 3 };
 
+/* What the solver needs of the scene for this formula. */
+static void scene_look(scene *s, const ef_metric *metric) {
+  ef__scout_free(s->scout);
+  s->scout = ef__scout_new(&s->mixing, metric, NULL);
+  assert_non_null(s->scout);
+  s->mixing.scout = s->scout;
+}
+
 static void scene_free(scene *s) {
+  ef__scout_free(s->scout);
   ef_setup_free(s->setup);
   ef_device_free(s->device);
   ef_illuminant_free(s->illuminant);
@@ -170,6 +180,7 @@ static target *random_targets(uint64_t seed, int first_kind, int n_kinds,
 static void compare_scene(size_t i, const char *metric_name) {
   scene s = scene_at(i);
   const ef_metric *const metric = ef_metric_find(metric_name, NULL);
+  scene_look(&s, metric);
   grid_search grid = grid_search_new(&s.mixing, metric, 64);
   target *const targets =
       random_targets(10 + i, ANYWHERE, N_KINDS, &s.mixing, metric, n_targets);
@@ -196,6 +207,7 @@ static void other_formulas_are_never_worse_than_the_grid(void **state) {
   for (size_t i = 0; i < N_SCENES; ++i) {
     scene s = scene_at(i);
     for (size_t m = 0; m < ef_metric_count(); ++m) {
+      scene_look(&s, ef_metric_at(m));
       grid_search grid = grid_search_new(&s.mixing, ef_metric_at(m), 24);
       target *const targets =
           random_targets(20 + m, BEYOND, 1, &s.mixing, grid.metric, n);
@@ -217,6 +229,7 @@ static void the_answer_is_stationary(void **state) {
   const ef_metric *const metric = ef_metric_find("cielab", NULL);
   for (size_t i = 0; i < N_SCENES; ++i) {
     scene s = scene_at(i);
+    scene_look(&s, metric);
     ef__search search = {.mixing = &s.mixing, .metric = metric};
     gen g = gen_new(40);
     for (int n = 0; n < 3000; ++n) {
@@ -248,6 +261,7 @@ static void minima_are_sorted_and_repeatable(void **state) {
   (void)state;
   const ef_metric *const metric = ef_metric_find("ciede2000", NULL);
   scene s = scene_at(0);
+  scene_look(&s, metric);
   gen g = gen_new(50);
   for (int n = 0; n < 500; ++n) {
     const target t = random_target(&g, n % N_KINDS, &s.mixing, metric);
