@@ -1,6 +1,6 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /* Broken files and what is said about them: broken/csv-DEFECT/ holds input.csv
- * (left out: there is no such file), the expected message in `error`, and
+ * (left out: there is no such file), broken/cgats-DEFECT/ input.txt; the expected message in `error`, and
  * sometimes words in `settings`: surface, light, skip-bad. */
 #include <dirent.h>
 #include <stdlib.h>
@@ -36,7 +36,9 @@ static ef_reader_settings read_settings(void) {
 /* The first error on the way through the file; EF_OK at its end. */
 static ef_status read_all(const ef_reader_settings *settings,
                           ef_error *error) {
-  ef_reader *const reader = ef_reader_open("input.csv", settings, error);
+  const char *const file =
+      access("input.txt", F_OK) == 0 ? "input.txt" : "input.csv";
+  ef_reader *const reader = ef_reader_open(file, settings, error);
   if (reader == NULL) return error->status;
   ef_status status;
   ef_block block;
@@ -65,7 +67,8 @@ static void broken_file_is_refused(void **state) {
 }
 
 static int is_case(const struct dirent *entry) {
-  return strncmp(entry->d_name, "csv-", 4) == 0;
+  return strncmp(entry->d_name, "csv-", 4) == 0 ||
+         strncmp(entry->d_name, "cgats-", 6) == 0;
 }
 
 int main(void) {

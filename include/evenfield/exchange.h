@@ -76,6 +76,16 @@ typedef struct ef_reader ef_reader;
  * L,a,b; columns that are not used are noted. Comment lines above the header
  * `# title:`, `# quantity:`, `# unit:`, `# device_max:` are understood.
  *
+ * Also the text form of CGATS.17 and ISO 28178, known by its first word or by a
+ * BEGIN_DATA_FORMAT among the first bytes, and held whole (at most 256 MiB): the
+ * first table of the file. Fields CMYK_C, CMY_C, RGB_R, XYZ_X, XYY_X, LAB_L and
+ * their like, SAMPLE_NAME (else SAMPLE_ID), spectra as SPECTRAL_NM400 or NM_400
+ * or 400 and their like, or as pairs SPECTRAL_NM with SPECTRAL_PCT or
+ * SPECTRAL_DEC. Inks are percent; spectra are reflectances (of R,G,B files what
+ * their values tell), and percent where a value is above 2, with a note; full
+ * drive of R,G,B is 1, 100 or 255, whichever the largest value reaches, with a
+ * note. NUMBER_OF_FIELDS and NUMBER_OF_SETS must be right where they are there.
+ *
  * Kind rule: the settings; else a quantity line that says reflectance,
  * radiance factor, transmittance (surface) or radiance, power, light
  * (light); else surface when every value of the first rows lies in -0.02 to 2,
@@ -286,6 +296,27 @@ EF_API void ef_csv_end_row(ef_csv *csv);
 /** Whole rows that another writer made, as they are. */
 EF_API void ef_csv_rows(ef_csv *csv, const char *bytes, size_t length);
 EF_API ef_status ef_csv_finish(ef_csv *csv, ef_error *error);
+
+/** One table in the text form of CGATS.17 and ISO 28178, whose rows are held
+ * until ef_cgats_finish, as their number stands before them. First keywords
+ * (ORIGINATOR, FILE_DESCRIPTOR, CREATED are wanted by the standard) and fields,
+ * in their order, then the items of every row. Names of fields with a wavelength
+ * (SPECTRAL_NM380) are announced by a KEYWORD line. Texts stand in quotes; a
+ * quote in them becomes an apostrophe, a control character a blank. Errors are
+ * kept and reported by ef_cgats_finish: numbers that are not finite and rows
+ * with more or fewer items than fields are EF_INVALID. The output stays the
+ * caller's. */
+typedef struct ef_cgats ef_cgats;
+EF_API ef_cgats *ef_cgats_new(ef_output *output, ef_error *error);
+EF_API void ef_cgats_keyword(ef_cgats *cgats, const char *keyword,
+                             const char *value);
+EF_API void ef_cgats_field(ef_cgats *cgats, const char *name);
+EF_API void ef_cgats_text(ef_cgats *cgats, const char *text);
+EF_API void ef_cgats_number(ef_cgats *cgats, double value);
+EF_API void ef_cgats_end_row(ef_cgats *cgats);
+EF_API ef_status ef_cgats_finish(ef_cgats *cgats, ef_error *error);
+/** Frees without writing; NULL is fine. */
+EF_API void ef_cgats_discard(ef_cgats *cgats);
 
 /** One JSON document, written as it comes (RFC 8259, UTF-8): NaN and
  * infinities and a NULL text as null, invalid UTF-8 as U+FFFD, nesting up to

@@ -20,6 +20,7 @@ ef_status ef__records_new(ef__input *input, ef__records *records,
 
 void ef__records_clear(ef__records *records) {
   ef__input_free(records->input);
+  ef__cgats_free(records->cgats);
   free(records->field);
   *records = (ef__records){0};
 }
@@ -235,6 +236,7 @@ static void take_comment(ef__records *records, size_t length) {
 
 ef_status ef__records_next(ef__records *records, ef__record_kind *kind,
                            ef_error *error) {
+  if (records->cgats != NULL) return ef__cgats_next(records, kind, error);
   for (;;) {
     records->line += records->n_lines;
     records->n_lines = 1;

@@ -95,6 +95,9 @@ typedef enum ef__demo_search {
 ef__demo_search ef__demo_find(const char *path, ef__span *text,
                               ef_error *error);
 
+/** Data of a file in the text form of CGATS.17 (cgats.c). */
+typedef struct ef__cgats ef__cgats;
+
 /* ---- Records (csv.c) --------------------------------------------------- */
 
 typedef enum ef__record_kind {
@@ -118,6 +121,7 @@ typedef struct ef__records {
   size_t n_fields; /**< of all, also those without room in `field` */
   ef__span *field;
   size_t field_room;
+  ef__cgats *cgats; /**< owned; NULL: the file is CSV */
 } ef__records;
 
 /** Takes the input over, also when it fails. */
@@ -172,6 +176,18 @@ ef_status ef__table_number(ef__table *table, size_t column, double *value,
 #define ef__table_error(table, at, error, ...)                                 \
   ef__records_error(&(table)->records, (at), (table)->column[at], (error),     \
                     __VA_ARGS__)
+/* ---- CGATS.17 and ISO 28178 (cgats.c) ----------------------------------- */
+
+/** True when what has been read of a file is the text form of CGATS.17. */
+bool ef__cgats_is_one(const ef__input *input);
+/** Reads the whole file, checks it and fills the table's remarks and columns,
+ * under our names. */
+ef_status ef__cgats_open(ef__table *table, ef_error *error);
+/** The next row of such a file, already split. */
+ef_status ef__cgats_next(ef__records *records, ef__record_kind *kind,
+                         ef_error *error);
+void ef__cgats_free(ef__cgats *cgats);
+
 /** An error at a column of the header row. */
 ef_status ef__header_error(const ef__table *table, size_t column,
                            ef_error *error, const char *format, ...)

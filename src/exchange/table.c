@@ -253,11 +253,28 @@ static ef_status read_top(ef__table *table, ef_error *error) {
   return status == EF_OK ? read_header(table, error) : status;
 }
 
+/* The first bytes tell the format. */
+static ef_status look_at_start(ef__input *input, bool *is_cgats,
+                               ef_error *error) {
+  const ef_status status = ef__input_more(input, error);
+  *is_cgats = status == EF_OK && ef__cgats_is_one(input);
+  return status;
+}
+
+static ef_status open_cgats(ef__table *table, ef_error *error) {
+  const ef_status status = ef__cgats_open(table, error);
+  return status == EF_OK ? check_names(table, error) : status;
+}
+
 ef_status ef__table_open(ef__input *input, const ef_notes *notes,
                          ef__table *table, ef_error *error) {
   *table = (ef__table){.notes = notes};
+  bool is_cgats = false;
   ef_status status = ef__records_new(input, &table->records, error);
-  if (status == EF_OK) status = read_top(table, error);
+  if (status == EF_OK) status = look_at_start(input, &is_cgats, error);
+  if (status == EF_OK) {
+    status = is_cgats ? open_cgats(table, error) : read_top(table, error);
+  }
   if (status != EF_OK) {
     ef__table_clear(table);
     return status;
@@ -343,6 +360,11 @@ static ef_status refuse_mark(const ef__table *table, size_t column,
                            "found %s, expected a number with a decimal point; "
                            "decimal commas need semicolons or tabs between the "
                            "fields",
+                           found);
+  }
+  if (table->records.cgats != NULL) {
+    return ef__table_error(table, column, error,
+                           "found %s, expected a number with a decimal point",
                            found);
   }
   return ef__table_error(table, column, error,

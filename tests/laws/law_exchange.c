@@ -37,7 +37,8 @@ static void check_scan(const char *text) {
 }
 
 static size_t put_digits(gen *g, size_t n, char *text) {
-  for (size_t i = 0; i < n; ++i) text[i] = (char)('0' + gen_below(g, 10));
+  for (size_t i = 0; i < n; ++i)
+    text[i] = (char)('0' + gen_below(g, 10));
   text[n] = '\0';
   return n;
 }
@@ -45,11 +46,14 @@ static size_t put_digits(gen *g, size_t n, char *text) {
 /* Up to 24 digits with a point somewhere and, sometimes, an exponent. */
 static void random_decimal(gen *g, char text[96]) {
   size_t n = 0;
-  if (gen_below(g, 4) == 0) text[n++] = gen_below(g, 2) == 0 ? '-' : '+';
+  if (gen_below(g, 4) == 0)
+    text[n++] = gen_below(g, 2) == 0 ? '-' : '+';
   n += put_digits(g, gen_below(g, 5), text + n);
-  if (gen_below(g, 4) != 0) text[n++] = '.';
+  if (gen_below(g, 4) != 0)
+    text[n++] = '.';
   if (gen_below(g, 3) == 0) {
-    for (size_t zeros = gen_below(g, 30); zeros > 0; --zeros) text[n++] = '0';
+    for (size_t zeros = gen_below(g, 30); zeros > 0; --zeros)
+      text[n++] = '0';
   }
   n += put_digits(g, gen_below(g, 21), text + n);
   if (gen_below(g, 3) == 0) {
@@ -82,7 +86,8 @@ static void scanning_rounds_ties(void **state) {
     const uint64_t rest = odd - (whole << k);
     /* rest / 2^k as decimal: k digits, exactly. */
     uint64_t fraction = rest;
-    for (int j = 0; j < k; ++j) fraction *= 5;
+    for (int j = 0; j < k; ++j)
+      fraction *= 5;
     int n = snprintf(text, sizeof text, "%llu", (unsigned long long)whole);
     if (k > 0) {
       n += snprintf(text + n, sizeof text - (size_t)n, ".%0*llu", k,
@@ -109,13 +114,38 @@ static void scanning_shortest_texts(void **state) {
 static void scanning_odd_texts(void **state) {
   (void)state;
   static const char *const texts[] = {
-      "",      "-",     ".",      "+.",    "1.",    ".5",   "-.5e1",
-      "1e",    "1e+",   "1e+5",   "e5",    "0",     "-0",   "0e99999999999",
-      "00000000000000000000000012.5",      "1e999", "-1e999", "1e-999",
-      "0x10",  "1 ",    " 1",     "1.2.3", "--1",   "1-",   "nan",
-      "inf",   "9007199254740993",         "18446744073709551615",
-      "18446744073709551616",              "4.9e-324",
-      "2.4703282292062327e-324",           "1.7976931348623159e308",
+      "",
+      "-",
+      ".",
+      "+.",
+      "1.",
+      ".5",
+      "-.5e1",
+      "1e",
+      "1e+",
+      "1e+5",
+      "e5",
+      "0",
+      "-0",
+      "0e99999999999",
+      "00000000000000000000000012.5",
+      "1e999",
+      "-1e999",
+      "1e-999",
+      "0x10",
+      "1 ",
+      " 1",
+      "1.2.3",
+      "--1",
+      "1-",
+      "nan",
+      "inf",
+      "9007199254740993",
+      "18446744073709551615",
+      "18446744073709551616",
+      "4.9e-324",
+      "2.4703282292062327e-324",
+      "1.7976931348623159e308",
       "0.00000000000000000000000000000000000000000000000000000000123"};
   for (size_t i = 0; i < sizeof texts / sizeof *texts; ++i) {
     check_scan(texts[i]);
@@ -129,9 +159,8 @@ static void random_name(gen *g, char name[32]) {
   static const char special[] = ",;\t\"\n\r# '";
   const size_t n = 1 + gen_below(g, 12);
   for (size_t i = 0; i < n; ++i) {
-    name[i] = gen_below(g, 2) == 0
-                  ? special[gen_below(g, sizeof special - 1)]
-                  : (char)(1 + gen_below(g, 255));
+    name[i] = gen_below(g, 2) == 0 ? special[gen_below(g, sizeof special - 1)]
+                                   : (char)(1 + gen_below(g, 255));
   }
   name[n] = '\0';
 }
@@ -157,7 +186,8 @@ static void csv_reads_back(void **state) {
     ef_csv_text(csv, name[i]);
     for (int k = 0; k < 3; ++k) {
       value[i][k] = gen_any_double(&g);
-      if (k == 1) value[i][k] = fabs(value[i][k]);
+      if (k == 1)
+        value[i][k] = fabs(value[i][k]);
       ef_csv_number(csv, value[i][k]);
     }
     ef_csv_end_row(csv);
@@ -166,13 +196,15 @@ static void csv_reads_back(void **state) {
   assert_int_equal(ef_output_commit(output, NULL), EF_OK);
   ef_error error = {0};
   ef_reader *const reader = ef_reader_open(path, NULL, &error);
-  if (reader == NULL) fail_msg("%zu: %s", error.line, error.message);
+  if (reader == NULL)
+    fail_msg("%zu: %s", error.line, error.message);
   assert_string_equal(ef_reader_get_head(reader)->title, "random");
   size_t n = 0;
   for (;;) {
     ef_block block;
     assert_int_equal(ef_reader_next(reader, 333, &block, &error), EF_OK);
-    if (block.n == 0) break;
+    if (block.n == 0)
+      break;
     assert_true(n + block.n <= N_ROWS);
     assert_same_bits(block.value, value[n], 3 * block.n);
     for (size_t i = 0; i < block.n; ++i) {
@@ -185,14 +217,114 @@ static void csv_reads_back(void **state) {
   assert_int_equal(unlink(path), 0);
 }
 
+/* A name as the form can hold it: no quote and no control character. */
+static void random_plain_name(gen *g, char name[32]) {
+  random_name(g, name);
+  for (char *at = name; *at != '\0'; ++at) {
+    if (*at == '"' || (unsigned char)*at < 0x20 || *at == 0x7f)
+      *at = '#';
+  }
+}
+
+static void write_cgats(gen *g, size_t n_rows, size_t n_samples, double *ink,
+                        double *value, char (*name)[32], const char *path) {
+  static const char *const inks[] = {"CMYK_C", "CMYK_M", "CMYK_Y", "CMYK_K"};
+  ef_output *const output = ef_output_open(path, true, NULL);
+  ef_cgats *const cgats = ef_cgats_new(output, NULL);
+  ef_cgats_keyword(cgats, "FILE_DESCRIPTOR", "random");
+  ef_cgats_field(cgats, "SAMPLE_NAME");
+  for (int i = 0; i < 4; ++i)
+    ef_cgats_field(cgats, inks[i]);
+  for (size_t k = 0; k < n_samples; ++k) {
+    char field[32];
+    snprintf(field, sizeof field, "SPECTRAL_NM%zu", 400 + 10 * k);
+    ef_cgats_field(cgats, field);
+  }
+  for (size_t i = 0; i < n_rows; ++i) {
+    random_plain_name(g, name[i]);
+    ef_cgats_text(cgats, name[i]);
+    for (size_t k = 0; k < 4; ++k) {
+      ink[4 * i + k] = 100 * (double)gen_below(g, 257) / 256;
+      ef_cgats_number(cgats, ink[4 * i + k]);
+    }
+    gen_smooth(g, n_samples, value + i * n_samples);
+    for (size_t k = 0; k < n_samples; ++k)
+      ef_cgats_number(cgats, value[i * n_samples + k]);
+    ef_cgats_end_row(cgats);
+  }
+  assert_int_equal(ef_cgats_finish(cgats, NULL), EF_OK);
+  assert_int_equal(ef_output_commit(output, NULL), EF_OK);
+}
+
+static void cgats_reads_back(void **state) {
+  (void)state;
+  enum { N_ROWS = 500, N_SAMPLES = 31 };
+  static double ink[N_ROWS * 4], value[N_ROWS * N_SAMPLES];
+  static char name[N_ROWS][32];
+  char path[SCRATCH_PATH];
+  gen g = gen_new(75);
+  scratch_path("t.txt", path);
+  write_cgats(&g, N_ROWS, N_SAMPLES, ink, value, name, path);
+  ef_error error = {0};
+  ef_reader *const reader = ef_reader_open(path, NULL, &error);
+  if (reader == NULL)
+    fail_msg("%zu: %s", error.line, error.message);
+  const ef_reader_head *const head = ef_reader_get_head(reader);
+  assert_string_equal(head->title, "random");
+  assert_int_equal(head->n_device, 4);
+  assert_int_equal(head->kind, EF_SURFACE);
+  assert_int_equal(head->grid.count, N_SAMPLES);
+  size_t n = 0;
+  for (;;) {
+    ef_block block;
+    assert_int_equal(ef_reader_next(reader, 77, &block, &error), EF_OK);
+    if (block.n == 0)
+      break;
+    assert_same_bits(block.value, value + n * N_SAMPLES, N_SAMPLES * block.n);
+    for (size_t i = 0; i < block.n; ++i, ++n) {
+      assert_string_equal(block.name[i], name[n]);
+      for (size_t k = 0; k < 4; ++k)
+        assert_true(block.device[4 * i + k] == ink[4 * n + k] / 100);
+    }
+  }
+  assert_int_equal(n, N_ROWS);
+  ef_reader_free(reader);
+  assert_int_equal(unlink(path), 0);
+}
+
+static void cgats_refuses_what_it_cannot_hold(void **state) {
+  (void)state;
+  for (int i = 0; i < 2; ++i) {
+    char path[SCRATCH_PATH];
+    ef_error error = {0};
+    scratch_path("t.txt", path);
+    ef_output *const output = ef_output_open(path, true, NULL);
+    ef_cgats *const cgats = ef_cgats_new(output, NULL);
+    ef_cgats_field(cgats, "LAB_L");
+    ef_cgats_number(cgats, i == 0 ? (double)NAN : 1);
+    if (i == 1)
+      ef_cgats_number(cgats, 2);
+    ef_cgats_end_row(cgats);
+    assert_int_equal(ef_cgats_finish(cgats, &error), EF_INVALID);
+    assert_string_equal(error.message,
+                        i == 0 ? "item 1 of row 1 is no finite number, and "
+                                 "this form has no empty items"
+                               : "row 1 has 2 items for 1 fields");
+    ef_output_discard(output);
+  }
+}
+
 /* The same rows with every separator, mark and line end. */
 static void dialects_read_alike(void **state) {
   (void)state;
   static const struct {
     char separator, mark;
     const char *line_end;
-  } dialects[] = {{',', '.', "\n"},   {';', ',', "\r\n"}, {';', '.', "\n"},
-                  {'\t', ',', "\n"}, {'\t', '.', "\r\n"}};
+  } dialects[] = {{',', '.', "\n"},
+                  {';', ',', "\r\n"},
+                  {';', '.', "\n"},
+                  {'\t', ',', "\n"},
+                  {'\t', '.', "\r\n"}};
   for (size_t d = 0; d < sizeof dialects / sizeof *dialects; ++d) {
     gen g = gen_new(75);
     char *const text = malloc(500 * 128);
@@ -200,22 +332,22 @@ static void dialects_read_alike(void **state) {
     assert_non_null(text);
     assert_non_null(value);
     const char c = dialects[d].separator;
-    size_t used = (size_t)sprintf(text, "L%ca%cb%s", c, c,
-                                  dialects[d].line_end);
+    size_t used =
+        (size_t)sprintf(text, "L%ca%cb%s", c, c, dialects[d].line_end);
     for (int i = 0; i < 500; ++i) {
       for (int k = 0; k < 3; ++k) {
         char number[EF_NUMBER_TEXT];
         value[3 * i + k] = gen_between(&g, k == 0 ? 0 : -100, 100);
         ef_number_format(value[3 * i + k], number);
         char *const point = strchr(number, '.');
-        if (point != NULL) *point = dialects[d].mark;
-        used += (size_t)sprintf(text + used, "%s%s", number,
-                                k < 2 ? (char[]){c, '\0'}
-                                      : dialects[d].line_end);
+        if (point != NULL)
+          *point = dialects[d].mark;
+        used +=
+            (size_t)sprintf(text + used, "%s%s", number,
+                            k < 2 ? (char[]){c, '\0'} : dialects[d].line_end);
       }
     }
-    ef_reader *const reader =
-        ef_reader_from_text("t", text, used, NULL, NULL);
+    ef_reader *const reader = ef_reader_from_text("t", text, used, NULL, NULL);
     assert_non_null(reader);
     ef_block block;
     size_t n = 0;
@@ -244,7 +376,8 @@ static size_t random_character(gen *g, char *to) {
     return 1;
   }
   const size_t n = c < 0x800 ? 2 : c < 0x10000 ? 3 : 4;
-  for (size_t i = n; i-- > 1; c >>= 6) to[i] = (char)(0x80 | (c & 0x3F));
+  for (size_t i = n; i-- > 1; c >>= 6)
+    to[i] = (char)(0x80 | (c & 0x3F));
   to[0] = (char)((n == 2 ? 0xC0 : n == 3 ? 0xE0 : 0xF0) | c);
   return n;
 }
@@ -263,7 +396,8 @@ static void json_reads_back(void **state) {
   for (int i = 0; i < N; ++i) {
     value[i] = i < 3 ? -0.0 * i : gen_any_double(&g);
     size_t used = 0;
-    while (used < 16) used += random_character(&g, text[i] + used);
+    while (used < 16)
+      used += random_character(&g, text[i] + used);
     text[i][used] = '\0';
     ef_json_begin_object(json, NULL);
     ef_json_number(json, "value", value[i]);
@@ -275,7 +409,8 @@ static void json_reads_back(void **state) {
   assert_int_equal(ef_output_commit(output, NULL), EF_OK);
   json_error_t error;
   json_t *const parsed = json_load_file(path, JSON_REJECT_DUPLICATES, &error);
-  if (parsed == NULL) fail_msg("%d: %s", error.line, error.text);
+  if (parsed == NULL)
+    fail_msg("%d: %s", error.line, error.text);
   assert_int_equal(json_array_size(parsed), N);
   for (size_t i = 0; i < N; ++i) {
     const json_t *const at = json_array_get(parsed, i);
@@ -312,7 +447,8 @@ static void json_is_always_valid(void **state) {
   assert_int_equal(ef_output_commit(output, NULL), EF_OK);
   json_error_t error;
   json_t *const parsed = json_load_file(path, 0, &error);
-  if (parsed == NULL) fail_msg("%d: %s", error.line, error.text);
+  if (parsed == NULL)
+    fail_msg("%d: %s", error.line, error.text);
   json_decref(parsed);
   assert_int_equal(unlink(path), 0);
 }
@@ -324,6 +460,8 @@ int main(void) {
       cmocka_unit_test(scanning_shortest_texts),
       cmocka_unit_test(scanning_odd_texts),
       cmocka_unit_test(csv_reads_back),
+      cmocka_unit_test(cgats_reads_back),
+      cmocka_unit_test(cgats_refuses_what_it_cannot_hold),
       cmocka_unit_test(dialects_read_alike),
       cmocka_unit_test(json_reads_back),
       cmocka_unit_test(json_is_always_valid),

@@ -17,6 +17,7 @@ typedef struct receivers {
   match_report *report; /* NULL: none */
   match_text *text;
   match_data *data;
+  match_list *list;
 } receivers;
 
 static ef_status open_receivers(receivers *r, const command_options *options,
@@ -25,6 +26,8 @@ static ef_status open_receivers(receivers *r, const command_options *options,
   *r = (receivers){.pictures = pictures_new(options->pictures, notes)};
   if (options->format == FORMAT_TEXT) {
     r->text = match_text_new(output);
+  } else if (options->format == FORMAT_CGATS) {
+    r->list = match_list_new(output);
   } else {
     r->data = match_data_new(output, options->format == FORMAT_CSV);
   }
@@ -32,7 +35,7 @@ static ef_status open_receivers(receivers *r, const command_options *options,
     r->chart = match_chart_new(options->chart, notes);
   if (options->report != NULL)
     r->report = match_report_new(notes);
-  if ((r->text != NULL || r->data != NULL) &&
+  if ((r->text != NULL || r->data != NULL || r->list != NULL) &&
       (r->chart != NULL || options->chart == NULL) &&
       (r->report != NULL || options->report == NULL))
     return EF_OK;
@@ -42,6 +45,7 @@ static ef_status open_receivers(receivers *r, const command_options *options,
 static void close_receivers(receivers *r) {
   match_text_free(r->text);
   match_data_free(r->data);
+  match_list_free(r->list);
   match_chart_free(r->chart);
   match_report_free(r->report);
   pictures_free(&r->pictures);
@@ -49,15 +53,18 @@ static void close_receivers(receivers *r) {
 
 static ef_status run(match_scene *s, receivers *r, match_summary *sum,
                      ef_error *error) {
-  if (s->options->format != FORMAT_CSV || s->options->report != NULL) {
+  const int format = s->options->format;
+  if (format == FORMAT_TEXT || format == FORMAT_JSON ||
+      s->options->report != NULL) {
     const ef_status status = match_measure_gamut(s, error);
     if (status != EF_OK)
       return status;
   }
   const match_sink drawing = pictures_sink(&r->pictures);
   const match_sink chart = match_chart_sink(r->chart);
-  const match_sink result =
-      r->text != NULL ? match_text_sink(r->text) : match_data_sink(r->data);
+  const match_sink result = r->text != NULL   ? match_text_sink(r->text)
+                            : r->list != NULL ? match_list_sink(r->list)
+                                              : match_data_sink(r->data);
   const match_sink report = match_report_sink(r->report);
   const match_sink *sinks[4];
   size_t n = 0;

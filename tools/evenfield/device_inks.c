@@ -243,8 +243,10 @@ static void add_quality(text *out, const match_scene *s) {
     text_add(&t, "no mixture of inks beside the primaries was measured, so "
                  "nothing tests the model");
   } else {
-    text_format(&t, "%zu mixtures that had no part in the fit differ ",
-                own->test.n);
+    char count[WORDS_ROOM];
+    words_count(own->test.n, "mixture", "mixtures", count);
+    text_format(&t, "%s that had no part in the fit %s ", count,
+                own->test.n == 1 ? "differs" : "differ");
     residuals_add(&t, &own->test, s->metric);
   }
   text_label(out, "Test", &t);

@@ -40,6 +40,8 @@ static const char *const dichromats[] = {"protanope", "deuteranope",
 static const char *const planes[] = {"uv", "xy", "ab", "lc", NULL};
 static const char *const aims[] = {"colour", "spectrum", "lights", NULL};
 static const char *const specular[] = {"included", "excluded", NULL};
+static const char *const match_formats[] = {"text", "csv", "json", "cgats",
+                                            NULL};
 static const char *const formats[] = {"text", "csv", "json", NULL};
 static const char *const figures[] = {"section", "projection", "ellipsoid",
                                       NULL};
@@ -584,8 +586,14 @@ static const option_row table[] = {
      0, formats,
      "text for people, csv and json for programs; default csv of build, text "
      "of list"},
-    {"format", "text|csv|json", EVERY & ~(unsigned)COMMAND_OBSERVER,
-     TYPE_CHOICE, FIELD(format), 0, 0, formats,
+    {"format", "text|csv|json|cgats", COMMAND_MATCH, TYPE_CHOICE, FIELD(format),
+     0, 0, match_formats,
+     "text for people, csv and json for programs; cgats: the values to show or "
+     "print and their colours in the text form of CGATS.17 (ISO 28178); "
+     "default text"},
+    {"format", "text|csv|json",
+     EVERY & ~(unsigned)(COMMAND_OBSERVER | COMMAND_MATCH), TYPE_CHOICE,
+     FIELD(format), 0, 0, formats,
      "text for people, csv and json for programs; default text"},
     {"output", "PATH", EVERY, TYPE_TEXT, FIELD(output), 0, 0, NULL,
      "the file for the result; default standard output"},

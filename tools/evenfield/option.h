@@ -29,7 +29,8 @@ typedef enum command_bit {
 typedef enum output_format {
   FORMAT_TEXT,
   FORMAT_CSV,
-  FORMAT_JSON
+  FORMAT_JSON,
+  FORMAT_CGATS /**< of match */
 } output_format;
 
 /** Values of an option that may be given more than once. */

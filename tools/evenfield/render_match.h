@@ -62,6 +62,12 @@ void render_match_record_recipes(record *r, const match_scene *s,
 void render_match_basis(text *out, const match_scene *s,
                         const match_summary *sum);
 
+/** Writes a list in the text form of CGATS.17. */
+typedef struct match_list match_list;
+match_list *match_list_new(ef_output *output);
+void match_list_free(match_list *l);
+match_sink match_list_sink(match_list *l);
+
 /** Writes every row as it comes. */
 typedef struct match_data match_data;
 match_data *match_data_new(ef_output *output, bool is_csv);

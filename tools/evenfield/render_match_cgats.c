@@ -1,0 +1,107 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/* The values to show or print, and the colours they give, in the text form of
+ * CGATS.17: what a press or a measuring program takes. */
+#include "render_match.h"
+
+#include <stdio.h>
+#include <stdlib.h>
+
+#include "message.h"
+
+struct match_list {
+  ef_output *output;
+  ef_cgats *cgats;
+  size_t n;
+};
+
+static ef_status begin(void *self, const match_scene *s, ef_error *error) {
+  static const char *const rgb[] = {"RGB_R", "RGB_G", "RGB_B"};
+  static const char *const cmy[] = {"CMY_C", "CMY_M", "CMY_Y"};
+  static const char *const colour[] = {"XYZ_X", "XYZ_Y", "XYZ_Z",
+                                       "LAB_L", "LAB_A", "LAB_B"};
+  match_list *l = self;
+  if (s->recipes.device != NULL) {
+    return message_fail(error, EF_UNKNOWN_NAME,
+                        "--format cgats has no fields for recipes: it goes "
+                        "with --display and --inks");
+  }
+  l->cgats = ef_cgats_new(l->output, error);
+  if (l->cgats == NULL)
+    return error->status;
+  ef_cgats_keyword(l->cgats, "ORIGINATOR", "evenfield match");
+  ef_cgats_keyword(l->cgats, "FILE_DESCRIPTOR",
+                   ef_device_name(s->device.device));
+  /* The same targets give the same file. */
+  ef_cgats_keyword(l->cgats, "CREATED", "date not recorded");
+  char light[120];
+  if (ef_device_reflects(s->device.device)) {
+    snprintf(light, sizeof light, "ILLUMINANT, %.100s",
+             ef_illuminant_name(s->illuminant));
+    ef_cgats_keyword(l->cgats, "WEIGHTING_FUNCTION", light);
+  }
+  ef_cgats_field(l->cgats, "SAMPLE_ID");
+  ef_cgats_field(l->cgats, "SAMPLE_NAME");
+  for (size_t i = 0; i < 3; ++i)
+    ef_cgats_field(l->cgats, s->device.is_subtractive ? cmy[i] : rgb[i]);
+  for (size_t i = 0; i < 6; ++i)
+    ef_cgats_field(l->cgats, colour[i]);
+  return EF_OK;
+}
+
+/* Percent of ink; of lights the code, as far as there are codes. */
+static double value_of(const match_scene *s, const ef_match *m, size_t i) {
+  const ef_shown *shown = match_achieved(s, m);
+  if (s->device.is_subtractive)
+    return 100.0 * shown->drive[i];
+  return s->device.bits > 0 ? (double)m->code[i] : 255.0 * shown->drive[i];
+}
+
+static ef_status add_rows(void *self, const match_scene *s,
+                          const match_rows *rows, ef_error *error) {
+  (void)error; /* the writer keeps its errors until it is finished */
+  match_list *l = self;
+  const ef_xyz white = ef_setup_white(s->setup);
+  for (size_t k = 0; k < rows->n; ++k) {
+    const ef_match *m = &rows->match[k];
+    const ef_xyz xyz = match_achieved(s, m)->xyz;
+    const ef_lab lab = ef_xyz_to_lab(xyz, white);
+    const double colour[] = {xyz.X,      xyz.Y,      xyz.Z,
+                             lab.L_star, lab.a_star, lab.b_star};
+    ef_cgats_number(l->cgats, (double)++l->n);
+    ef_cgats_text(l->cgats, rows->name[k]);
+    for (size_t i = 0; i < 3; ++i)
+      ef_cgats_number(l->cgats, value_of(s, m, i));
+    for (size_t i = 0; i < 6; ++i)
+      ef_cgats_number(l->cgats, colour[i]);
+    ef_cgats_end_row(l->cgats);
+  }
+  return EF_OK;
+}
+
+static ef_status end(void *self, const match_scene *s, const match_summary *sum,
+                     ef_error *error) {
+  (void)s;
+  (void)sum;
+  match_list *l = self;
+  ef_cgats *cgats = l->cgats;
+  l->cgats = NULL;
+  return ef_cgats_finish(cgats, error);
+}
+
+match_list *match_list_new(ef_output *output) {
+  match_list *l = calloc(1, sizeof *l);
+  if (l != NULL)
+    l->output = output;
+  return l;
+}
+
+void match_list_free(match_list *l) {
+  if (l == NULL)
+    return;
+  ef_cgats_discard(l->cgats);
+  free(l);
+}
+
+match_sink match_list_sink(match_list *l) {
+  return (match_sink){.self = l, .begin = begin, .rows = add_rows, .end = end};
+}
