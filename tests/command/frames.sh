@@ -159,7 +159,7 @@ check "more than is allowed" \
   refused 3 "bytes; at most" --frames big --hz 5 --duration 3600
 check "more than the disk holds" \
   refused 5 "the disk has" --frames big --hz 5 --duration 3600 \
-  --frame-size 32768x32768 --most-gb 1e6
+  --frame-size 8192x4096 --most-gb 1e6
 check "above half of the frame rate" \
   refused 3 "31 Hz cannot be shown with 60 frames a second" --frames fast \
   --hz 31

@@ -48,7 +48,8 @@ void help_wrap(FILE *out, const char *text, size_t indent) {
 }
 
 void help_command(FILE *out, const command_entry *command) {
-  fprintf(out, "evenfield %s [OPTIONS] %s\n", command->name, command->operands);
+  fprintf(out, "evenfield %s [OPTIONS]%s%s\n", command->name,
+          command->operands[0] != '\0' ? " " : "", command->operands);
   for (size_t i = 0; i < 2 && command->about[i] != NULL; ++i) {
     fputc('\n', out);
     help_wrap(out, command->about[i], 0);
