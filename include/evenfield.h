@@ -15,6 +15,7 @@
 #include <evenfield/stimulus.h>
 #include <evenfield/panel.h>
 #include <evenfield/exchange.h>
+#include <evenfield/image.h>
 #include <evenfield/picture.h>
 
 #endif

@@ -6,6 +6,7 @@
 #define EVENFIELD_EXCHANGE_H
 
 #include <evenfield/base.h>
+#include <evenfield/colour.h>
 #include <evenfield/spectrum.h>
 
 #ifdef __cplusplus
@@ -370,6 +371,9 @@ typedef struct ef_png_rows {
   /** Fills row `y`, width x 3 samples in 16-bit range. */
   void (*fill)(void *cookie, size_t y, uint16_t *sample);
   void *cookie;
+  /** The same where that can fail, used unless NULL: then nothing is written,
+   * and the error is that of the call. */
+  ef_status (*give)(void *cookie, size_t y, uint16_t *sample, ef_error *error);
 } ef_png_rows;
 
 /** Like ef_png_write, holding one row at a time. */
@@ -377,6 +381,73 @@ EF_API ef_status ef_png_write_rows(const char *path, bool overwrite,
                                    size_t width, size_t height, int bits,
                                    const ef_png_rows *rows,
                                    const ef_png_tags *tags, ef_error *error);
+
+/** What is read of pictures. */
+typedef struct ef_png_settings {
+  size_t max_pixels; /**< width x height: what a small file may claim */
+  size_t max_bytes;  /**< of an interlaced picture, which is held whole */
+  const ef_notes *notes;
+} ef_png_settings;
+/** 400 million pixels, 1 GiB, no notes. */
+EF_API ef_png_settings ef_png_settings_default(void);
+
+/** What a picture says of itself: its size, and every colour tag that is there,
+ * whichever counts. */
+typedef struct ef_png_head {
+  const char *file;
+  size_t width, height;
+  int bits;           /**< of a sample in the file: 1, 2, 4, 8 or 16 */
+  const char *layout; /**< "RGB", "grey", "palette", "RGB with alpha", "grey
+                           with alpha" */
+  bool is_grey;       /**< a row has each sample three times */
+  bool has_alpha;
+  bool has_cicp;      /**< code points of ITU-T H.273 */
+  int primaries, transfer, matrix;
+  bool is_full_range;
+  bool has_iccp;
+  const char *profile_name;
+  const unsigned char *profile;
+  size_t profile_length;
+  bool has_srgb;
+  int srgb_intent;
+  bool has_gamma;
+  double gamma;       /**< as the chunk has it: 0.45455 for a power of 2.2 */
+  bool has_chromaticities;
+  ef_xy white, red, green, blue;
+} ef_png_head;
+
+/** The tag that counts, in the order of PNG third edition, 4.3. */
+typedef enum ef_png_source {
+  EF_PNG_UNTAGGED,
+  EF_PNG_CICP,
+  EF_PNG_ICCP,
+  EF_PNG_SRGB,
+  EF_PNG_GAMA /**< gAMA and cHRM, or one of them */
+} ef_png_source;
+EF_API ef_png_source ef_png_get_source(const ef_png_head *head);
+
+/** An open picture, read row by row; memory does not grow with its height
+ * unless it is interlaced. */
+typedef struct ef_png ef_png;
+
+/** Any colour type and depth; "-" is standard input. EF_MALFORMED for what is no
+ * PNG, is cut off or damaged, says it is larger than the settings allow, or
+ * unpacks to more than 64 MiB in one chunk beside the pixels. A chunk that
+ * libpng leaves out as damaged is noted. Free with ef_png_free. */
+EF_API ef_png *ef_png_open(const char *path, const ef_png_settings *settings,
+                           ef_error *error);
+/** The same from bytes that must outlive it. */
+EF_API ef_png *ef_png_from_bytes(const char *name, const void *bytes,
+                                 size_t length, const ef_png_settings *settings,
+                                 ef_error *error);
+EF_API void ef_png_free(ef_png *png);
+/** Borrowed until freed. */
+EF_API const ef_png_head *ef_png_get_head(const ef_png *png);
+/** The next row, width x 3 samples in 16-bit range (8-bit ones times 257);
+ * has_row false behind the last one. A pixel that is not opaque is EF_MALFORMED:
+ * its colour depends on what lies behind. After an error nothing more comes. */
+EF_API ef_status ef_png_next_row(ef_png *png, uint16_t *sample, bool *has_row,
+                                 ef_error *error);
 
 #ifdef __cplusplus
 }

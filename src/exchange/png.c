@@ -101,6 +101,13 @@ static void fill_row(png_byte *row, size_t n, int bits,
   }
 }
 
+static bool give_row(picture *p, const ef_png_rows *rows, size_t y) {
+  if (rows->give != NULL)
+    return rows->give(rows->cookie, y, p->sample, &p->error) == EF_OK;
+  rows->fill(rows->cookie, y, p->sample);
+  return true;
+}
+
 /* Everything that may jump; false when it did. */
 static bool write_picture(picture *p, size_t width, size_t height, int bits,
                           const ef_png_rows *rows, const ef_png_tags *tags) {
@@ -109,7 +116,7 @@ static bool write_picture(picture *p, size_t width, size_t height, int bits,
   png_set_write_fn(p->png, p, write_bytes, flush_nothing);
   write_head(p, width, height, bits, tags);
   for (size_t y = 0; y < height; ++y) {
-    rows->fill(rows->cookie, y, p->sample);
+    if (!give_row(p, rows, y)) return false;
     fill_row(p->row, n, bits, p->sample);
     png_write_row(p->png, p->row);
   }
@@ -229,7 +236,7 @@ ef_status ef_png_write(const char *path, bool overwrite, size_t width,
                        size_t height, int bits, const uint16_t *sample,
                        const ef_png_tags *tags, ef_error *error) {
   whole w = {sample, width * CHANNELS};
-  const ef_png_rows rows = {copy_row, &w};
+  const ef_png_rows rows = {.fill = copy_row, .cookie = &w};
   return ef_png_write_rows(path, overwrite, width, height, bits, &rows, tags,
                            error);
 }

@@ -247,7 +247,7 @@ ef_status ef__page_png(const ef__page *page, const char *path, bool overwrite,
   if (p.data != NULL && c->cairo_status(b.context) == CAIRO_STATUS_SUCCESS) {
     const ef_png_tags tags = {.primaries = PRIMARIES_CODE,
                               .transfer = TRANSFER_CODE};
-    const ef_png_rows rows = {fill_row, &p};
+    const ef_png_rows rows = {.fill = fill_row, .cookie = &p};
     status = ef_png_write_rows(path, overwrite, (size_t)width, (size_t)height,
                                8, &rows, &tags, error);
   }

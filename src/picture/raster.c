@@ -199,7 +199,7 @@ ef_status ef__raster_write_to(ef__raster *raster, ef_output *output, int bits,
   unsigned char *profile = NULL;
   ef_status status = make_tags(&tags, &profile, error);
   if (status == EF_OK) {
-    const ef_png_rows rows = {copy_row, raster};
+    const ef_png_rows rows = {.fill = copy_row, .cookie = raster};
     status = ef__png_write_to(output, raster->width, raster->height, bits,
                               &rows, &tags, error);
   }

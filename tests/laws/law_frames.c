@@ -377,7 +377,7 @@ static void check_written(int bits) {
   ef_frames *frames = make(&i, &way, &s);
   painter p = {frames, calloc(s.width_px * 3, sizeof(uint16_t)), s.width_px, 3,
                bits};
-  const ef_png_rows rows = {paint, &p};
+  const ef_png_rows rows = {.fill = paint, .cookie = &p};
   ef_error error;
   scratch_path("frame.png", path);
   if (ef_png_write_rows(path, true, s.width_px, s.height_px, bits == 8 ? 8 : 16,

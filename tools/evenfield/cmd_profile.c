@@ -5,6 +5,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "convert_picture.h"
 #include "message.h"
 #include "profile_fit.h"
 #include "render_convert.h"
@@ -109,7 +110,40 @@ static exit_code check_convert(const command_options *o) {
   return result_check_usage(o, 2);
 }
 
+static exit_code check_picture(const command_options *o) {
+  if (o->n_files < 3) {
+    return message_usage("profile convert of a picture needs the picture to "
+                         "write, as in `evenfield profile convert --to p3-d65 "
+                         "in.png out.png`");
+  }
+  if (strcmp(o->to, "xyz") == 0 || strcmp(o->to, "lab") == 0)
+    return message_usage("--to of a picture is an RGB profile, not %s", o->to);
+  if (o->illuminant != NULL || o->adaptation != NULL) {
+    return message_usage("--illuminant and --adaptation are for lists of "
+                         "colours; a picture has the white of its profile");
+  }
+  return result_check_usage(o, 3);
+}
+
+static exit_code convert_one_picture(const command_options *o,
+                                     const ef_notes *notes) {
+  exit_code code = check_picture(o);
+  if (code != EXIT_DONE)
+    return code;
+  ef_error error = {0};
+  size_t n_beyond = 0;
+  ef_output *output = result_open(o, &error);
+  const ef_status status =
+      output != NULL ? convert_picture(o, output, notes, &n_beyond, &error)
+                     : error.status;
+  code = result_close(output, status, &error);
+  return code == EXIT_DONE && o->check && n_beyond > 0 ? EXIT_CHECK_FAILED
+                                                       : code;
+}
+
 static exit_code convert(const command_options *o, const ef_notes *notes) {
+  if (o->n_files > 1 && o->to != NULL && convert_is_picture(o->files[1]))
+    return convert_one_picture(o, notes);
   exit_code code = check_convert(o);
   if (code != EXIT_DONE)
     return code;

@@ -137,7 +137,8 @@ static const command_entry table[] = {
       "evenfield panel calibrate --metric cie94 --format csv"}},
     {"profile",
      COMMAND_PROFILE,
-     "make PROFILE | check PROFILE [MEASUREMENTS] | convert COLOURS",
+     "make PROFILE | check PROFILE [MEASUREMENTS] | convert COLOURS | convert "
+     "PICTURE.png OUT.png",
      "ICC profiles: make one of a display, judge one, convert colours",
      {"`evenfield profile make PROFILE --display FILE` writes a display profile "
       "(ICC version 4, three curves and a matrix) from measured primaries and "
@@ -148,7 +149,9 @@ static const command_entry table[] = {
       "`evenfield profile convert COLOURS --from A --to B` converts a list of "
       "colours: device values of the profile A, or without --from the colours "
       "of the file, to device values of the profile B, to xyz or to lab. What "
-      "comes out is judged by the profile's own way back."},
+      "comes out is judged by the profile's own way back. A PICTURE has the "
+      "colours that its tags say, or --from, and is written to OUT with the "
+      "profile B in it."},
      command_profile,
      {"evenfield profile make kiosk.icc --display demo:kiosk-measurements",
       "evenfield profile convert --to p3-d65 demo:livery",

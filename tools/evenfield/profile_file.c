@@ -13,21 +13,14 @@
 /* No profile of three or four channels comes near it. */
 #define MOST_BYTES ((size_t)256 << 20)
 
-static ef_profile *from_encoding(const char *name, const char *option,
-                                 ef_error *error) {
+static ef_status encoding_bytes(const char *name, const char *option,
+                                unsigned char **bytes, size_t *length,
+                                ef_error *error) {
   const ef_encoding *encoding = ef_encoding_find(name, error);
-  if (encoding == NULL) {
-    message_option(error, option, "; and there is no such file");
-    return NULL;
-  }
-  unsigned char *bytes = NULL;
-  size_t length = 0;
-  ef_profile *profile = NULL;
-  if (ef_profile_make_matrix(encoding->standard, encoding, &bytes, &length,
-                             error) == EF_OK)
-    profile = ef_profile_new(name, bytes, length, error);
-  free(bytes);
-  return profile;
+  if (encoding == NULL)
+    return message_option(error, option, "; and there is no such file");
+  return ef_profile_make_matrix(encoding->standard, encoding, bytes, length,
+                                error);
 }
 
 static bool ends_with(const char *name, const char *end) {
@@ -41,13 +34,19 @@ static bool is_file(const char *name) {
          access(name, F_OK) == 0;
 }
 
+ef_status profile_file_bytes(const char *name, const char *option,
+                             unsigned char **bytes, size_t *length,
+                             ef_error *error) {
+  return option != NULL && !is_file(name)
+             ? encoding_bytes(name, option, bytes, length, error)
+             : ef_bytes_read(name, MOST_BYTES, bytes, length, error);
+}
+
 ef_profile *profile_file_load(const char *name, const char *option,
                               ef_error *error) {
-  if (option != NULL && !is_file(name))
-    return from_encoding(name, option, error);
   unsigned char *bytes = NULL;
   size_t length = 0;
-  if (ef_bytes_read(name, MOST_BYTES, &bytes, &length, error) != EF_OK)
+  if (profile_file_bytes(name, option, &bytes, &length, error) != EF_OK)
     return NULL;
   ef_profile *profile = ef_profile_new(name, bytes, length, error);
   free(bytes);

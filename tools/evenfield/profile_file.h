@@ -14,6 +14,10 @@
  * operand, which is a file. */
 ef_profile *profile_file_load(const char *name, const char *option,
                               ef_error *error);
+/** The bytes of the same; free with free(). */
+ef_status profile_file_bytes(const char *name, const char *option,
+                             unsigned char **bytes, size_t *length,
+                             ef_error *error);
 /** "RGB display profile of version 4.4, three curves and a matrix". */
 void profile_file_words(const ef_profile_info *info, text *out);
 /** What an intent does to white and black, for people. */

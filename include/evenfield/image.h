@@ -1,0 +1,140 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** \file
+ * Pictures whose colours are known, and spectral images: read, judged,
+ * converted and rendered row by row. */
+#ifndef EVENFIELD_IMAGE_H
+#define EVENFIELD_IMAGE_H
+
+#include <evenfield/base.h>
+#include <evenfield/colour.h>
+#include <evenfield/device.h>
+#include <evenfield/difference.h>
+#include <evenfield/exchange.h>
+#include <evenfield/observer.h>
+
+#ifdef __cplusplus
+extern "C" {
+#endif
+
+/* ---- Pictures with colours --------------------------------------------- */
+
+/** What the tags of a picture say of its colours. */
+typedef struct ef_picture_colours {
+  ef_png_source source; /**< the tag that counts; EF_PNG_UNTAGGED: `assumed` */
+  bool is_assumed;      /**< the settings' profile stands for the tags */
+  char about[240];      /**< in words: "chunk sRGB: IEC 61966-2-1" ... */
+} ef_picture_colours;
+
+typedef struct ef_picture_settings {
+  /** Taken in the place of the picture's own tags; NULL: the tags. Must outlive
+   * the picture. */
+  const ef_profile *assumed;
+  ef_png_settings png;
+} ef_picture_settings;
+/** The picture's own tags. */
+EF_API ef_picture_settings ef_picture_settings_default(void);
+
+/** An open picture whose samples have a profile. */
+typedef struct ef_picture ef_picture;
+
+/** Opens a PNG picture and takes its colours from its tags in the order of PNG
+ * third edition, 4.3: cICP, iCCP, sRGB, gAMA with cHRM; one that cannot be
+ * followed (a curve that is not relative to a white, narrow range, a damaged
+ * profile) gives way to the next, with a note. gAMA alone means the primaries
+ * of ITU-R BT.709, cHRM alone the curve of IEC 61966-2-1, with a note. The video
+ * curves of ITU-T H.273 (codes 1, 6, 14, 15) are shown per ITU-R BT.1886, as a
+ * power of 2.4. EF_NO_ANSWER for a picture without tags, or with none that can
+ * be followed: nothing is guessed. Free with ef_picture_free. */
+EF_API ef_picture *ef_picture_open(const char *path,
+                                   const ef_picture_settings *settings,
+                                   ef_error *error);
+EF_API ef_picture *ef_picture_from_bytes(const char *name, const void *bytes,
+                                         size_t length,
+                                         const ef_picture_settings *settings,
+                                         ef_error *error);
+EF_API void ef_picture_free(ef_picture *picture);
+EF_API const ef_png_head *ef_picture_get_head(const ef_picture *picture);
+EF_API const ef_picture_colours *
+ef_picture_get_colours(const ef_picture *picture);
+/** Borrowed. Its device values are the samples; of a grey profile there is one,
+ * and a row has it three times. */
+EF_API const ef_profile *ef_picture_get_profile(const ef_picture *picture);
+/** ef_png_next_row. */
+EF_API ef_status ef_picture_next_row(ef_picture *picture, uint16_t *sample,
+                                     bool *has_row, ef_error *error);
+
+/* ---- How many of which colour ------------------------------------------ */
+
+/** The distinct colours of a picture, each with its count and its first pixel.
+ * A picture with more than `most` of them is taken with fewer bits, from the
+ * most significant, until there are no more than that. */
+typedef struct ef_distinct ef_distinct;
+
+/** The most colours that are told apart unless `most` says otherwise. */
+enum { EF_DISTINCT_MOST = 1 << 21 };
+
+/** Reads the picture to its end. `most` 0: EF_DISTINCT_MOST; at
+ * least 8. Free with
+ * ef_distinct_free. */
+EF_API ef_distinct *ef_distinct_of(ef_picture *picture, size_t most,
+                                   ef_error *error);
+EF_API void ef_distinct_free(ef_distinct *distinct);
+EF_API size_t ef_distinct_count(const ef_distinct *distinct);
+EF_API size_t ef_distinct_pixels(const ef_distinct *distinct);
+/** Bits of a sample that count, at most those of the picture. */
+EF_API int ef_distinct_bits(const ef_distinct *distinct);
+/** Colour i: its samples (0 to 1), how many pixels have it, and the first of
+ * them. */
+EF_API void ef_distinct_at(const ef_distinct *distinct, size_t i,
+                           double sample[3], size_t *n_pixels, size_t *x,
+                           size_t *y);
+/** Index of the colour of a pixel of the picture; SIZE_MAX when no pixel had
+ * it. */
+EF_API size_t ef_distinct_find(const ef_distinct *distinct,
+                               const uint16_t sample[3]);
+
+/* ---- Conversion --------------------------------------------------------- */
+
+typedef struct ef_picture_conversion {
+  ef_intent intent;
+  bool black_point_compensation;
+  int bits; /**< 8 or 16 of the picture written; 0: 16 where the picture read
+                 has 16, else 8 */
+  int jobs;
+  bool overwrite;
+  const char *profile_name;      /**< for the iCCP chunk */
+  const unsigned char *profile;  /**< bytes of the profile `to`, for iCCP */
+  size_t profile_length;
+} ef_picture_conversion;
+
+/** Converts the rest of the picture to the RGB profile `to` and writes it as PNG
+ * with that profile in its iCCP chunk. EF_NO_ANSWER for profiles of other
+ * spaces: PNG holds RGB. Nothing is left behind on failure. */
+EF_API ef_status ef_picture_convert(ef_picture *picture, const ef_profile *to,
+                                    const char *path,
+                                    const ef_picture_conversion *settings,
+                                    ef_error *error);
+
+/* ---- Maps of where ------------------------------------------------------ */
+
+/** How far a pixel is off, in four classes by multiples of a unit. A map shows
+ * the picture in pale grey, with lines over it that get denser from class to
+ * class: none, one pixel in eight, in four, in two. It is read without colour
+ * vision. */
+enum { EF_MAP_CLASSES = 4 };
+/** Class 0 to 3 of a size in units: up to 1, up to `EF_MAP_SECOND`, up to
+ * `EF_MAP_THIRD`, above. */
+enum { EF_MAP_SECOND = 3, EF_MAP_THIRD = 6 };
+EF_API int ef_map_class(double units);
+/** "no mark" "lines one pixel in eight" ... Static. */
+EF_API const char *ef_map_class_text(int map_class);
+/** Grey sample in 16-bit range of pixel x, y with lightness L* of the
+ * picture. */
+EF_API uint16_t ef_map_sample(int map_class, double L_star, size_t x,
+                              size_t y);
+
+#ifdef __cplusplus
+}
+#endif
+
+#endif
