@@ -67,13 +67,8 @@ exit_code command_compare(const command_options *options) {
   ef_error error = {0};
   compare_scene scene;
   compare_count count = {0};
-  ef_output *output = NULL;
   ef_status status = compare_scene_load(&scene, options, &notes, &error);
-  if (status == EF_OK) {
-    output = result_open(options, &error);
-    if (output == NULL)
-      status = error.status;
-  }
+  ef_output *output = result_begin(options, &status, &error);
   if (status == EF_OK) {
     status = options->format == FORMAT_TEXT
                  ? run_text(&scene, output, &count, &error)

@@ -45,13 +45,8 @@ exit_code command_describe(const command_options *options) {
   const ef_notes notes = message_notes(&sink);
   ef_error error = {0};
   describe_scene scene;
-  ef_output *output = NULL;
   ef_status status = describe_scene_load(&scene, options, &notes, &error);
-  if (status == EF_OK) {
-    output = result_open(options, &error);
-    if (output == NULL)
-      status = error.status;
-  }
+  ef_output *output = result_begin(options, &status, &error);
   if (status == EF_OK) {
     status = options->format == FORMAT_TEXT
                  ? run_text(&scene, &notes, output, &error)

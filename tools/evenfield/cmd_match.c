@@ -100,13 +100,8 @@ exit_code command_match(const command_options *options) {
   match_scene scene;
   match_summary sum = {0};
   receivers to = {0};
-  ef_output *output = NULL;
   ef_status status = match_scene_load(&scene, options, &notes, &error);
-  if (status == EF_OK) {
-    output = result_open(options, &error);
-    if (output == NULL)
-      status = error.status;
-  }
+  ef_output *output = result_begin(options, &status, &error);
   if (status == EF_OK) {
     status = open_receivers(&to, options, &notes, output, &error);
   }

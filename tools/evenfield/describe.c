@@ -10,6 +10,10 @@
 
 enum { BLOCK_ROWS = 8192 };
 
+/* Those of ISO/CIE 23603 (CIE S 012). */
+static const char *const daylights[] = {"D50", "D55", "D65", "D75"};
+enum { N_DAYLIGHTS = sizeof daylights / sizeof daylights[0] };
+
 /* ---- Loading ----------------------------------------------------------- */
 
 static ef_status set_equal_energy(describe_scene *s, ef_error *error) {
@@ -67,11 +71,14 @@ typedef struct file_work {
   ef_weights *receptors; /* of spectra */
   ef_weights *xyz_1931;  /* of lights, when the observer is another */
   ef_weights *alpha;     /* of spectra of lights */
+  ef_weights *xyz_1964;  /* the same */
+  ef_uv daylight[N_DAYLIGHTS];
   bool has_white;
   ef_xyz white;         /* Y = 100 */
   double white_level;   /* Y of the white in the unit of the rows */
   double *xyz, *xyz_31; /* BLOCK_ROWS x 3 each */
   double *excitation;   /* BLOCK_ROWS x EF_N_RECEPTORS */
+  double *xyz_64;       /* of spectra of lights, BLOCK_ROWS x 3 */
   double *sums;         /* BLOCK_ROWS x EF_ALPHA_OPIC_CHANNELS */
   description *out;
 } file_work;
@@ -81,11 +88,40 @@ static void work_free(file_work *w) {
   ef_weights_free(w->receptors);
   ef_weights_free(w->xyz_1931);
   ef_weights_free(w->alpha);
+  ef_weights_free(w->xyz_1964);
+  free(w->xyz_64);
   free(w->xyz);
   free(w->xyz_31);
   free(w->excitation);
   free(w->sums);
   free(w->out);
+}
+
+/* The daylights, and what tells lights from them. */
+static ef_status fold_daylights(file_work *w, const ef_viewing *viewing,
+                                ef_error *error) {
+  ef_observer *observer = ef_observer_new("cie-1964", error);
+  if (observer == NULL)
+    return error->status;
+  ef_status status = EF_OK;
+  for (size_t i = 0; i < N_DAYLIGHTS && status == EF_OK; ++i) {
+    const ef_grid working = ef_grid_standard();
+    double white[3];
+    ef_illuminant *light = ef_illuminant_new(daylights[i], error);
+    status = light == NULL ? error->status
+                           : ef_observer_white(observer, EF_TRISTIMULUS, light,
+                                               &working, white, error);
+    ef_illuminant_free(light);
+    if (status == EF_OK)
+      w->daylight[i] = ef_xyz_to_uv((ef_xyz){white[0], white[1], white[2]});
+  }
+  w->xyz_1964 = ef_observer_weights(observer, EF_TRISTIMULUS, &w->head->grid,
+                                    viewing, NULL, error);
+  ef_observer_free(observer);
+  w->xyz_64 = malloc(3 * BLOCK_ROWS * sizeof *w->xyz_64);
+  if (w->xyz_64 == NULL)
+    return message_fail(error, EF_NO_MEMORY, "out of memory for the rows");
+  return status == EF_OK && w->xyz_1964 == NULL ? error->status : status;
 }
 
 static ef_status fold_more(file_work *w, const describe_scene *s,
@@ -101,6 +137,9 @@ static ef_status fold_more(file_work *w, const describe_scene *s,
   w->alpha = ef_alpha_opic_weights(&w->head->grid, &viewing, NULL, error);
   if (w->alpha == NULL)
     return error->status;
+  const ef_status status = fold_daylights(w, &viewing, error);
+  if (status != EF_OK)
+    return status;
   if (s->observer_1931 == NULL)
     return EF_OK;
   w->xyz_1931 = ef_observer_weights(s->observer_1931, EF_TRISTIMULUS,
@@ -145,6 +184,10 @@ static ef_status integrate(file_work *w, const ef_block *block, int jobs,
   if (status == EF_OK && w->alpha != NULL) {
     status = ef_weights_apply(w->alpha, block->n, block->value, jobs, w->sums,
                               error);
+  }
+  if (status == EF_OK && w->xyz_1964 != NULL) {
+    status = ef_weights_apply(w->xyz_1964, block->n, block->value, jobs,
+                              w->xyz_64, error);
   }
   if (status == EF_OK && w->xyz_1931 != NULL) {
     status = ef_weights_apply(w->xyz_1931, block->n, block->value, jobs,
@@ -253,6 +296,23 @@ static void add_whiteness(description *d, const describe_scene *s,
     d->whiteness = ef_whiteness_of(d->xyz, s->white_scale);
 }
 
+static void add_daylight(description *d, const file_work *w, size_t i) {
+  d->daylight = NULL;
+  d->daylight_distance = (double)NAN;
+  if (w->xyz_1964 == NULL)
+    return;
+  const double *v = w->xyz_64 + 3 * i;
+  const ef_uv at = ef_xyz_to_uv((ef_xyz){v[0], v[1], v[2]});
+  for (size_t k = 0; k < N_DAYLIGHTS && !isnan(at.u_prime); ++k) {
+    const double distance = hypot(at.u_prime - w->daylight[k].u_prime,
+                                  at.v_prime - w->daylight[k].v_prime);
+    if (distance >= d->daylight_distance)
+      continue;
+    d->daylight = daylights[k];
+    d->daylight_distance = distance;
+  }
+}
+
 static void add_rendering(description *d, const file_work *w,
                           const double *value) {
   d->Ra = (double)NAN;
@@ -284,6 +344,7 @@ static description describe(const describe_scene *s, const file_work *w,
   add_temperature(&d, w, i);
   add_dominant(&d, s, w);
   add_whiteness(&d, s, w);
+  add_daylight(&d, w, i);
   add_rendering(&d, w, block->value + i * w->head->width);
   return d;
 }

@@ -29,7 +29,14 @@ typedef struct description {
   double Ra;
   bool Ra_tolerable; /**< near enough to its reference for Ra to mean much */
   ef_whiteness whiteness; /**< of surfaces and colours */
+  /** Of spectra of lights: the nearest of the daylights that ISO/CIE 23603
+   * grades simulators of, and how far in CIE 1964 u', v'; NULL: no spectrum. */
+  const char *daylight;
+  double daylight_distance;
 } description;
+
+/** No simulator farther than this from its daylight has a grade. */
+#define DESCRIBE_SIMULATOR_REACH 0.015
 
 /** Everything the answers rest on. */
 typedef struct describe_scene {

@@ -73,6 +73,14 @@ static void record_description(record *r, const describe_scene *s,
   record_number(r, "tint", d->whiteness.tint);
   record_boolean(r, "is_white", d->whiteness.is_white);
   record_number(r, "yellowness", d->whiteness.yellowness);
+  const bool is_known = d->daylight != NULL;
+  record_begin(r, "daylight");
+  record_text(r, "nearest", is_known ? d->daylight : "");
+  record_number(r, "uv_distance",
+                is_known ? d->daylight_distance : (double)NAN);
+  record_boolean(r, "may_be_graded",
+                 is_known && d->daylight_distance <= DESCRIBE_SIMULATOR_REACH);
+  record_end(r);
   record_alpha(r, d);
   record_end(r);
 }

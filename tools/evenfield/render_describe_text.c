@@ -23,11 +23,14 @@ typedef struct range {
 } range;
 
 struct describe_text {
-  description *row;
-  char **name; /* of the rows, owned */
+  description row[MOST_ROWS];
+  char *name[MOST_ROWS]; /* of the rows, owned */
   size_t n_rows;
   size_t n_lights, n_surfaces, n_colours;
   bool has_cones, has_alpha;
+  size_t n_spectral_lights, n_daylights; /* near one of the CIE's */
+  const char *daylight_of;               /* the last of these */
+  double daylight_distance;
   range lightness, chroma, temperature, rendering;
 };
 
@@ -54,6 +57,14 @@ static bool is_light(const description *d) {
 static void count(describe_text *t, const description *d) {
   t->has_cones = t->has_cones || !isnan(d->lms.cone_l);
   t->has_alpha = t->has_alpha || d->has_alpha;
+  if (d->daylight != NULL) {
+    ++t->n_spectral_lights;
+    if (d->daylight_distance <= DESCRIBE_SIMULATOR_REACH) {
+      ++t->n_daylights;
+      t->daylight_of = d->daylight;
+      t->daylight_distance = d->daylight_distance;
+    }
+  }
   if (is_light(d)) {
     ++t->n_lights;
     extend(&t->temperature, d->cct.cct_k, d->name);
@@ -421,6 +432,35 @@ static void add_whiteness_basis(text *out, const describe_scene *s) {
   text_label(out, "Whiteness", &line);
 }
 
+/* What stands between a light and a grade as a simulator. */
+static void add_daylight(text *out, const describe_text *t) {
+  text line = {0};
+  char distance[EF_NUMBER_TEXT];
+  if (t->n_spectral_lights == 0)
+    return;
+  ef_number_format_fixed(t->daylight_distance, 4, distance);
+  if (t->n_daylights == 0) {
+    text_add(&line, "none of the lights lies within 0.015 of D50, D55, D65 or "
+                    "D75 in CIE 1964 u', v': as daylight simulators they have "
+                    "no grade (ISO/CIE 23603)");
+  } else if (t->n_spectral_lights == 1) {
+    text_format(&line,
+                "it lies %s from %s in CIE 1964 u', v', within the 0.015 that "
+                "ISO/CIE 23603 asks of simulators; `evenfield compare "
+                "--grade-simulators` grades it over the pairs of the standard",
+                distance, t->daylight_of);
+  } else {
+    text_format(&line,
+                "%zu of %zu lights %s within 0.015 of D50, D55, D65 or D75 in "
+                "CIE 1964 u', v', as ISO/CIE 23603 asks of simulators; "
+                "`evenfield compare --grade-simulators` grades them over the "
+                "pairs of the standard",
+                t->n_daylights, t->n_spectral_lights,
+                t->n_daylights == 1 ? "lies" : "lie");
+  }
+  text_label(out, "Daylight", &line);
+}
+
 static void add_basis(text *out, const describe_text *t,
                       const describe_scene *s) {
   text line = {0};
@@ -457,6 +497,7 @@ static void add_basis(text *out, const describe_text *t,
            "nearest Planckian radiator in CIE 1960 u, v for the CIE 1931 "
            "observer, none beyond 0.05 (CIE 015:2018)");
   text_label(out, "CCT, Duv", &line);
+  add_daylight(out, t);
   if (t->rendering.n == 0)
     return;
   text_add(&line, "CIE 13.3-1995; in brackets where the light is so far from "
@@ -465,24 +506,12 @@ static void add_basis(text *out, const describe_text *t,
 }
 
 describe_text *describe_text_new(void) {
-  describe_text *t = calloc(1, sizeof *t);
-  if (t == NULL)
-    return NULL;
-  t->row = malloc(MOST_ROWS * sizeof *t->row);
-  t->name = malloc(MOST_ROWS * sizeof *t->name);
-  if (t->row != NULL && t->name != NULL)
-    return t;
-  describe_text_free(t);
-  return NULL;
+  return calloc(1, sizeof(struct describe_text));
 }
 
 void describe_text_free(describe_text *t) {
-  if (t == NULL)
-    return;
-  for (size_t i = 0; i < t->n_rows; ++i)
+  for (size_t i = 0; t != NULL && i < t->n_rows; ++i)
     free(t->name[i]);
-  free(t->name);
-  free(t->row);
   free(t);
 }
 

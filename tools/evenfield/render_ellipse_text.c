@@ -23,8 +23,8 @@ typedef struct extreme {
 } extreme;
 
 struct ellipse_text {
-  ellipse_row *row;
-  char **name; /* of the rows, owned */
+  ellipse_row row[MOST_ROWS];
+  char *name[MOST_ROWS]; /* of the rows, owned */
   size_t n_rows, n_found;
   ef_ellipse only;   /* of the last one found */
   bool some_outside; /* of MacAdam's centres */
@@ -412,24 +412,12 @@ static const char people[] =
     "directions and proportions, and let eyes decide where its size matters.";
 
 ellipse_text *ellipse_text_new(void) {
-  ellipse_text *t = calloc(1, sizeof *t);
-  if (t == NULL)
-    return NULL;
-  t->row = malloc(MOST_ROWS * sizeof *t->row);
-  t->name = malloc(MOST_ROWS * sizeof *t->name);
-  if (t->row != NULL && t->name != NULL)
-    return t;
-  ellipse_text_free(t);
-  return NULL;
+  return calloc(1, sizeof(struct ellipse_text));
 }
 
 void ellipse_text_free(ellipse_text *t) {
-  if (t == NULL)
-    return;
-  for (size_t i = 0; i < t->n_rows; ++i)
+  for (size_t i = 0; t != NULL && i < t->n_rows; ++i)
     free(t->name[i]);
-  free(t->name);
-  free(t->row);
   free(t);
 }
 

@@ -44,6 +44,16 @@ ef_output *result_open(const command_options *options, ef_error *error) {
   return open_output(options->output, options->force, " with --output", error);
 }
 
+ef_output *result_begin(const command_options *options, ef_status *status,
+                        ef_error *error) {
+  if (*status != EF_OK)
+    return NULL;
+  ef_output *output = result_open(options, error);
+  if (output == NULL)
+    *status = error->status;
+  return output;
+}
+
 ef_output *result_open_at(const char *path, bool overwrite, ef_error *error) {
   return open_output(path, overwrite, "", error);
 }

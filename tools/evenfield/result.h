@@ -15,6 +15,9 @@
 exit_code result_check_usage(const command_options *options, size_t most_files);
 /** --output. */
 ef_output *result_open(const command_options *options, ef_error *error);
+/** The same where all went well so far; a failure goes to `status`. */
+ef_output *result_begin(const command_options *options, ef_status *status,
+                        ef_error *error);
 /** A further file, which an option or operand names. */
 ef_output *result_open_at(const char *path, bool overwrite, ef_error *error);
 /** Commits the output when `status` is EF_OK, drops it else. Returns the exit
