@@ -73,6 +73,8 @@ static void test_digest_laws(void **state) {
 
 /* ---- Pages ------------------------------------------------------------- */
 
+static const ef_report_halves halves = {"target", "what is shown", "no match"};
+
 static ef_chart *small_chart(void) {
   static const double x[] = {1.0, 2.0}, y[] = {1.0, 3.0};
   static const char *const label[] = {"<one>", "two"};
@@ -116,7 +118,7 @@ static ef_status write_page(const char *path, ef_error *error) {
   ef_report_term(r, "Display", "a kiosk");
   ef_report_term(r, "", "and more of it");
   ef_report_term_code(r, "Command", "evenfield 'x'");
-  ef_report_swatches(r, 1, &swatch, &settings, NULL);
+  ef_report_swatches(r, 1, &swatch, &settings, &halves, NULL);
   ef_chart *chart = small_chart();
   if (chart == NULL) {
     ef_report_discard(r);
@@ -128,6 +130,7 @@ static ef_status write_page(const char *path, ef_error *error) {
   ef_report_section(r, "Second");
   ef_report_table(r, "Second", 3, column, 2, cell);
   ef_report_caution(r, "Care is taken.");
+  ef_report_front(r, "In front");
   return ef_report_close(r, error);
 }
 
@@ -230,6 +233,10 @@ static void test_parts_say_what_they_are(void **state) {
                                "mast</th><td>98</td><td>3</td></tr>"));
   assert_non_null(strstr(html, "<dt>Display</dt>\n<dd>a kiosk<br>\nand more of "
                                "it</dd>\n<dt>Command</dt>"));
+  const char *front = strstr(html, ">In front</h2>");
+  assert_true(front != NULL && front < strstr(html, ">First</h2>"));
+  assert_non_null(strstr(html, "&gt;: target left, what is shown right; no "
+                               "match\""));
   assert_non_null(strstr(html, "<br>1.23 Delta E*00</figcaption>"));
   assert_non_null(strstr(html, "<figcaption>what &amp; where</figcaption>"));
   assert_int_equal(count(html, "<svg "), 2);
@@ -297,7 +304,7 @@ static void test_nothing_is_left_behind(void **state) {
   assert_non_null(r);
   const ef_swatch swatch = {.name = "bad", .target = {NOT_A_NUMBER, 1.0, 1.0}};
   const ef_swatch_settings settings = ef_swatch_settings_default();
-  ef_report_swatches(r, 1, &swatch, &settings, NULL);
+  ef_report_swatches(r, 1, &swatch, &settings, &halves, NULL);
   ef_report_paragraph(r, "after it");
   assert_int_equal(ef_report_close(r, &error), EF_INVALID);
   assert_error(&error, EF_INVALID, "the pair bad has a tristimulus value");

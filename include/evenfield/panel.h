@@ -246,6 +246,12 @@ EF_API ef_status ef_fit_responses(const ef_responses *responses,
                                   const ef_fit_settings *settings, ef_fit *out,
                                   ef_error *error);
 
+/** Share of `positive` of `shown` answers and its 95 % score interval (Wilson,
+ * J. Am. Stat. Assoc. 22 (1927) 209-212), which never leaves 0 to 1; its
+ * standard error is that of the share. NaN for none shown or more positive than
+ * shown. */
+EF_API ef_estimate ef_share_estimate(size_t shown, size_t positive);
+
 /* ---- Intervals and goodness of fit ------------------------------------- */
 
 typedef enum ef_interval_method {

@@ -169,6 +169,9 @@ EF_API ef_report *ef_report_open(const char *path, const char *title,
 EF_API void ef_report_answer(ef_report *report, const char *text);
 /** Begins the next section. */
 EF_API void ef_report_section(ef_report *report, const char *title);
+/** Begins a section that stands before those of ef_report_section, whenever it
+ * is given: pictures, mostly. */
+EF_API void ef_report_front(ef_report *report, const char *title);
 EF_API void ef_report_paragraph(ef_report *report, const char *text);
 /** Something to be careful about, set apart. */
 EF_API void ef_report_caution(ef_report *report, const char *text);
@@ -195,11 +198,17 @@ EF_API void ef_report_table(ef_report *report, const char *caption,
 /** As SVG with its text as text; title and description of the chart are its
  * text alternative. Draw them some 400 px wide. */
 EF_API void ef_report_chart(ef_report *report, const ef_chart *chart);
+/** What the halves of a swatch are, and what its striped corner says. */
+typedef struct ef_report_halves {
+  const char *left, *right, *mark;
+} ef_report_halves;
+
 /** One figure for each pair with its name and difference, as tagged PNG. Colours
  * outside the pictures' encoding are counted in `n_clipped` (may be NULL). */
 EF_API void ef_report_swatches(ef_report *report, size_t n,
                                const ef_swatch *swatch,
                                const ef_swatch_settings *settings,
+                               const ef_report_halves *halves,
                                size_t *n_clipped);
 /** Finishes and frees; on failure nothing is left behind. */
 EF_API ef_status ef_report_close(ef_report *report, ef_error *error);

@@ -19,7 +19,7 @@
 #define TICK_LENGTH 5.0
 /* Least distance of ticks. */
 #define X_TICKS_PX 64.0
-#define Y_TICKS_PX 44.0
+#define Y_TICKS_PX 32.0
 /* Height of the field over its width where scales differ, and its bounds where
  * they are equal. */
 #define ASPECT 0.62

@@ -18,11 +18,12 @@ typedef enum open_part { PART_NONE, PART_TERMS, PART_CHARTS } open_part;
 struct ef_report {
   ef__report_writer to;   /* the file */
   ef__report_writer lead; /* what stands before the first section */
+  ef__report_writer front; /* sections before the others */
   ef__report_writer body; /* the sections, kept until all are known */
-  ef__report_writer *at;  /* one of the two */
+  ef__report_writer *at;  /* one of the three */
   open_part part;
   size_t n_sections, n_charts, n_tables;
-  ef__report_writer contents; /* links to the sections */
+  ef__report_writer contents, front_contents; /* links to the sections */
   char *title, *answer;
   char *section; /* title of the one being written */
 };
@@ -99,11 +100,14 @@ ef_report *ef_report_open(const char *path, const char *title, bool overwrite,
   }
   r->title = ef__copy_text(title, strlen(title));
   r->lead = keeper();
+  r->front = keeper();
   r->body = keeper();
   r->at = &r->lead;
   r->contents = keeper();
+  r->front_contents = keeper();
   if (r->title == NULL || r->lead.status != EF_OK || r->body.status != EF_OK ||
-      r->contents.status != EF_OK) {
+      r->front.status != EF_OK || r->contents.status != EF_OK ||
+      r->front_contents.status != EF_OK) {
     ef__error_memory(error, "a report");
     ef_report_discard(r);
     return NULL;
@@ -128,7 +132,9 @@ void ef_report_discard(ef_report *r) {
   ef_output_discard(r->to.output);
   ef_output_discard(r->lead.output);
   ef_output_discard(r->body.output);
+  ef_output_discard(r->front.output);
   ef_output_discard(r->contents.output);
+  ef_output_discard(r->front_contents.output);
   free(r->title);
   free(r->answer);
   free(r->section);
@@ -139,28 +145,37 @@ void ef_report_discard(ef_report *r) {
 
 static void end_section(ef_report *r) {
   open_for(r, PART_NONE);
-  if (r->n_sections > 0)
+  if (r->at != &r->lead)
     ef__report_put(r->at, "</section>\n");
 }
 
-void ef_report_section(ef_report *r, const char *title) {
+static void begin_section(ef_report *r, const char *title,
+                          ef__report_writer *at, ef__report_writer *contents) {
   end_section(r);
-  r->at = &r->body;
+  r->at = at;
   ++r->n_sections;
   free(r->section);
   r->section = ef__copy_text(title, strlen(title));
-  ef__report_put(r->at, "<section aria-labelledby=\"s");
-  put_count(r->at, r->n_sections);
-  ef__report_put(r->at, "\">\n<h2 id=\"s");
-  put_count(r->at, r->n_sections);
-  ef__report_put(r->at, "\">");
-  put_text(r->at, title);
-  ef__report_put(r->at, "</h2>\n");
-  ef__report_put(&r->contents, "<li><a href=\"#s");
-  put_count(&r->contents, r->n_sections);
-  ef__report_put(&r->contents, "\">");
-  put_text(&r->contents, title);
-  ef__report_put(&r->contents, "</a></li>\n");
+  ef__report_put(at, "<section aria-labelledby=\"s");
+  put_count(at, r->n_sections);
+  ef__report_put(at, "\">\n<h2 id=\"s");
+  put_count(at, r->n_sections);
+  ef__report_put(at, "\">");
+  put_text(at, title);
+  ef__report_put(at, "</h2>\n");
+  ef__report_put(contents, "<li><a href=\"#s");
+  put_count(contents, r->n_sections);
+  ef__report_put(contents, "\">");
+  put_text(contents, title);
+  ef__report_put(contents, "</a></li>\n");
+}
+
+void ef_report_section(ef_report *r, const char *title) {
+  begin_section(r, title, &r->body, &r->contents);
+}
+
+void ef_report_front(ef_report *r, const char *title) {
+  begin_section(r, title, &r->front, &r->front_contents);
 }
 
 void ef_report_paragraph(ef_report *r, const char *text) {
@@ -340,7 +355,8 @@ static void put_base64(ef__report_writer *w, const unsigned char *byte,
 }
 
 static void put_swatch(ef_report *r, const ef_swatch *s,
-                       const ef_swatch_settings *settings, size_t *n_clipped) {
+                       const ef_swatch_settings *settings,
+                       const ef_report_halves *halves, size_t *n_clipped) {
   ef__report_writer picture = keeper();
   ef_swatch_report report = {0};
   if (picture.status == EF_OK) {
@@ -360,9 +376,12 @@ static void put_swatch(ef_report *r, const ef_swatch *s,
   ef_number_format_fixed(s->difference, 2, difference);
   ef__report_put(r->at, "<li><figure><img alt=\"");
   put_text(r->at, s->name);
-  ef__report_put(r->at, s->shown ? ": target left, what is shown right"
-                                 : ": target left, what is shown right; no "
-                                   "exact match");
+  ef__report_put(r->at, ": ");
+  put_text(r->at, halves->left);
+  ef__report_put(r->at, " left, ");
+  put_text(r->at, halves->right);
+  ef__report_put(r->at, s->shown ? " right" : " right; ");
+  put_text(r->at, s->shown ? "" : halves->mark);
   ef__report_put(r->at, "\" width=\"");
   put_count(r->at, settings->width);
   ef__report_put(r->at, "\" height=\"");
@@ -383,12 +402,13 @@ static void put_swatch(ef_report *r, const ef_swatch *s,
 }
 
 void ef_report_swatches(ef_report *r, size_t n, const ef_swatch *swatch,
-                        const ef_swatch_settings *settings, size_t *n_clipped) {
+                        const ef_swatch_settings *settings,
+                        const ef_report_halves *halves, size_t *n_clipped) {
   size_t clipped = 0;
   open_for(r, PART_NONE);
   ef__report_put(r->at, "<ul class=\"swatches\">\n");
   for (size_t i = 0; i < n; ++i)
-    put_swatch(r, &swatch[i], settings, &clipped);
+    put_swatch(r, &swatch[i], settings, halves, &clipped);
   ef__report_put(r->at, "</ul>\n");
   if (n_clipped != NULL)
     *n_clipped = clipped;
@@ -434,11 +454,13 @@ static void put_document(ef_report *r) {
   ef__report_put(w, "</header>\n");
   if (r->n_sections > 1) {
     ef__report_put(w, "<nav aria-label=\"Contents\">\n<ul>\n");
+    pass_on(w, &r->front_contents);
     pass_on(w, &r->contents);
     ef__report_put(w, "</ul>\n</nav>\n");
   }
   ef__report_put(w, "<main>\n");
-  pass_on(w, &r->body);
+  pass_on(w, &r->front);
+    pass_on(w, &r->body);
   ef__report_put(w, "</main>\n<footer>\n<p>Made by Evenfield ");
   put_text(w, ef_version());
   ef__report_put(w, ". This page needs no network and runs no script.</p>\n"

@@ -62,6 +62,33 @@ for plane in uv xy ab lc; do
   fi
 done
 
+# Every other chart there is.
+ef_chart() {
+  name=$1
+  shift
+  "$evenfield" "$@" --quiet --chart $name.svg >/dev/null 2>message
+  ef_check "chart of $name: status" "$? $(cat message)" "0 "
+  if has xmllint; then
+    ef_check "chart of $name is XML" "$(xmllint --noout $name.svg 2>&1)" ""
+  else
+    ef_skip "chart of $name is XML" xmllint
+  fi
+}
+ef_chart compare compare
+ef_chart compare-lc compare --plane lc --format csv
+for space in xy uv lab mb cone cone-lm; do
+  ef_chart ellipse-$space ellipse demo:signal-colours --space $space
+done
+grep -q 'drawn 12.5 times as large' ellipse-xy.svg
+ef_check "ellipses as large as chosen" $? 1
+ef_chart ellipse-times ellipse demo:signal-colours --magnification 12.5
+grep -q 'drawn 12.5 times as large' ellipse-times.svg
+ef_check "ellipses as large as asked" $? 0
+ef_chart spectra isolate
+ef_chart lm isolate --plane lm
+ef_chart opponent isolate --plane opponent --format json
+ef_chart panel panel fit
+
 # The same command makes the same bytes.
 for kind in svg pdf png; do
   "$evenfield" match t.csv --quiet --chart one.$kind >/dev/null
@@ -124,6 +151,11 @@ mine"
 }
 ef_report match match t.csv
 ef_report people match --population 20 --seed 3
+ef_report compare compare
+ef_report ellipse ellipse demo:signal-colours
+ef_report one-ellipse ellipse --at lab:60,10,20 --space cone
+ef_report isolate isolate
+ef_report panel panel fit
 ef_check "report: input and digest" \
   "$(sed -n 's/.*t.csv, SHA-256 \([0-9a-f]*\).*/\1/p' match.html)" \
   "$(sha256sum t.csv | cut -d ' ' -f 1)"

@@ -4,10 +4,23 @@
 #include "boundary.h"
 #include "command.h"
 #include "compare.h"
+#include "compare_chart.h"
 #include "message.h"
 #include "people.h"
 #include "render_compare.h"
 #include "result.h"
+
+/* Pages come before the text, so that nothing is said about what could not be
+ * written. */
+static ef_status write_pages(compare_text *t, const compare_scene *s,
+                             const compare_count *count, ef_error *error) {
+  ef_status status = EF_OK;
+  if (s->options->chart != NULL)
+    status = compare_chart_write(t, s, error);
+  if (status == EF_OK && s->options->report != NULL)
+    status = compare_report_write(t, s, count, error);
+  return status;
+}
 
 static ef_status run_text(compare_scene *s, ef_output *output,
                           compare_count *count, ef_error *error) {
@@ -17,9 +30,24 @@ static ef_status run_text(compare_scene *s, ef_output *output,
   const compare_sink sink = compare_text_sink(t);
   ef_status status = compare_stream(s, &sink, count, error);
   if (status == EF_OK)
+    status = write_pages(t, s, count, error);
+  if (status == EF_OK)
     status = compare_text_finish(t, s, count, output, error);
   compare_text_free(t);
   return status;
+}
+
+/* Both receive each block. */
+typedef struct two_sinks {
+  compare_sink data, kept;
+} two_sinks;
+
+static ef_status pass_to_both(void *self, const compare_scene *s, size_t n,
+                              const compared *pairs, ef_error *error) {
+  const two_sinks *two = self;
+  const ef_status status = two->data.rows(two->data.self, s, n, pairs, error);
+  return status == EF_OK ? two->kept.rows(two->kept.self, s, n, pairs, error)
+                         : status;
 }
 
 static ef_status run_data(compare_scene *s, ef_output *output,
@@ -28,10 +56,22 @@ static ef_status run_data(compare_scene *s, ef_output *output,
       compare_data_new(s, output, s->options->format == FORMAT_CSV, error);
   if (d == NULL)
     return error->status;
-  const compare_sink sink = compare_data_sink(d);
-  ef_status status = compare_stream(s, &sink, count, error);
+  compare_text *t = compare_text_new();
+  ef_status status = EF_OK;
+  if (t == NULL)
+    status = message_fail(error, EF_NO_MEMORY, "out of memory for the result");
+  if (status == EF_OK) {
+    two_sinks two = {compare_data_sink(d), compare_text_sink(t)};
+    const compare_sink sink = {.self = &two, .rows = pass_to_both};
+    const bool has_pages =
+        s->options->chart != NULL || s->options->report != NULL;
+    status = compare_stream(s, has_pages ? &sink : &two.data, count, error);
+    if (status == EF_OK && has_pages)
+      status = write_pages(t, s, count, error);
+  }
   if (status == EF_OK)
     status = compare_data_finish(d, s, count, error);
+  compare_text_free(t);
   compare_data_free(d);
   return status;
 }
@@ -60,6 +100,8 @@ static exit_code check_usage(const command_options *o) {
 
 exit_code command_compare(const command_options *options) {
   exit_code code = check_usage(options);
+  if (code == EXIT_DONE)
+    code = diagram_check_usage(options);
   if (code != EXIT_DONE)
     return code;
   message_sink sink = {.quiet = options->quiet};

@@ -4,9 +4,23 @@
 
 #include "command.h"
 #include "ellipse.h"
+#include "ellipse_chart.h"
 #include "message.h"
 #include "render_ellipse.h"
 #include "result.h"
+
+/* Pages come before the text, so that nothing is said about what could not be
+ * written. */
+static ef_status write_pages(ellipse_text *t, const ellipse_scene *s,
+                             const ellipse_count *n, const ef_notes *notes,
+                             ef_error *error) {
+  ef_status status = EF_OK;
+  if (s->options->chart != NULL)
+    status = ellipse_chart_write(t, s, n, notes, error);
+  if (status == EF_OK && s->options->report != NULL)
+    status = ellipse_report_write(t, s, n, notes, error);
+  return status;
+}
 
 static ef_status run_text(ellipse_scene *s, const ef_notes *notes,
                           ef_output *output, ef_error *error) {
@@ -17,9 +31,24 @@ static ef_status run_text(ellipse_scene *s, const ef_notes *notes,
   ellipse_count count;
   ef_status status = ellipse_stream(s, notes, &sink, &count, error);
   if (status == EF_OK)
+    status = write_pages(t, s, &count, notes, error);
+  if (status == EF_OK)
     status = ellipse_text_finish(t, s, &count, output, error);
   ellipse_text_free(t);
   return status;
+}
+
+/* Both receive each block. */
+typedef struct two_sinks {
+  ellipse_sink data, kept;
+} two_sinks;
+
+static ef_status pass_to_both(void *self, const ellipse_scene *s, size_t n,
+                              const ellipse_row *rows, ef_error *error) {
+  const two_sinks *two = self;
+  const ef_status status = two->data.rows(two->data.self, s, n, rows, error);
+  return status == EF_OK ? two->kept.rows(two->kept.self, s, n, rows, error)
+                         : status;
 }
 
 static ef_status run_data(ellipse_scene *s, const ef_notes *notes,
@@ -28,11 +57,21 @@ static ef_status run_data(ellipse_scene *s, const ef_notes *notes,
       ellipse_data_new(s, output, s->options->format == FORMAT_CSV, error);
   if (d == NULL)
     return error->status;
-  const ellipse_sink sink = ellipse_data_sink(d);
-  ellipse_count count;
-  ef_status status = ellipse_stream(s, notes, &sink, &count, error);
+  ellipse_text *t = ellipse_text_new();
+  ellipse_count count = {0};
+  ef_status status = EF_OK;
+  if (t == NULL)
+    status = message_fail(error, EF_NO_MEMORY, "out of memory for the result");
+  if (status == EF_OK) {
+    two_sinks two = {ellipse_data_sink(d), ellipse_text_sink(t)};
+    const ellipse_sink sink = {.self = &two, .rows = pass_to_both};
+    status = ellipse_stream(s, notes, &sink, &count, error);
+  }
+  if (status == EF_OK)
+    status = write_pages(t, s, &count, notes, error);
   if (status == EF_OK)
     status = ellipse_data_finish(d, &count, error);
+  ellipse_text_free(t);
   ellipse_data_free(d);
   return status;
 }
@@ -75,7 +114,9 @@ static exit_code check_usage(const command_options *o) {
 }
 
 exit_code command_ellipse(const command_options *options) {
-  const exit_code code = check_usage(options);
+  exit_code code = check_usage(options);
+  if (code == EXIT_DONE)
+    code = diagram_check_usage(options);
   if (code != EXIT_DONE)
     return code;
   message_sink sink = {.quiet = options->quiet};

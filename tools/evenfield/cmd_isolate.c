@@ -51,6 +51,8 @@ static exit_code run(const command_options *options, const replay *again) {
   }
   if (status == EF_OK && options->chart != NULL)
     status = isolate_chart_write(&scene, &result, &notes, &error);
+  if (status == EF_OK && options->report != NULL)
+    status = isolate_report_write(&scene, &result, &notes, &error);
   if (status == EF_OK && options->frames != NULL) {
     status = isolate_show_write(&result.show, &scene, &result, options->frames,
                                 &error);
@@ -86,6 +88,7 @@ static exit_code run_again(const command_options *asked, replay *r) {
     o.quiet = asked->quiet;
     o.jobs = asked->jobs;
     o.chart = asked->chart;
+    o.report = asked->report;
     o.kept = &r->kept;
     code = run(&o, r);
   }

@@ -4,8 +4,10 @@
 #include <math.h>
 #include <string.h>
 
+#include "diagram.h"
 #include "message.h"
 #include "panel_calibrate.h"
+#include "panel_chart.h"
 #include "panel_fit.h"
 #include "render_panel_calibrate.h"
 #include "render_panel_fit.h"
@@ -37,6 +39,8 @@ static exit_code check_options(const command_options *o, const char *name,
                                verb v) {
   const use uses[] = {
       {"criterion", o->criterion != NULL, VERB_FIT},
+      {"chart", o->chart != NULL, VERB_FIT},
+      {"report", o->report != NULL, VERB_FIT},
       {"model", o->model >= 0, VERB_FIT},
       {"axis", o->axis >= 0, VERB_FIT},
       {"pairs", o->pairs != NULL, VERB_CALIBRATE},
@@ -53,6 +57,9 @@ static exit_code check_options(const command_options *o, const char *name,
 /* ---- panel fit --------------------------------------------------------- */
 
 static exit_code run_fit(const command_options *o) {
+  const exit_code code = diagram_check_usage(o);
+  if (code != EXIT_DONE)
+    return code;
   message_sink sink = {.quiet = o->quiet};
   const ef_notes notes = message_notes(&sink);
   ef_error error = {0};
@@ -64,6 +71,10 @@ static exit_code run_fit(const command_options *o) {
     if (output == NULL)
       status = error.status;
   }
+  if (status == EF_OK && o->chart != NULL)
+    status = panel_chart_write(&p, &notes, &error);
+  if (status == EF_OK && o->report != NULL)
+    status = panel_report_write(&p, &notes, &error);
   if (status == EF_OK) {
     status = o->format == FORMAT_TEXT
                  ? render_panel_fit_text(&p, output, &error)

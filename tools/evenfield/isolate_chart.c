@@ -7,6 +7,7 @@
 #include <evenfield/picture.h>
 
 #include "diagram.h"
+#include "isolate_contrast.h"
 #include "message.h"
 #include "text.h"
 
@@ -62,23 +63,22 @@ static ef_status add_states(ef_chart *chart, const isolate_scene *s,
   return status;
 }
 
-static ef_status draw(const isolate_scene *s, const isolate_result *r,
-                      const ef_chart_settings *settings, const ef_notes *notes,
-                      ef_error *error) {
-  ef_chart *chart = ef_chart_new(settings, error);
-  if (chart == NULL)
-    return error->status;
-  const diagram d = {.chart = chart};
-  ef_status status = add_states(chart, s, r, error);
-  if (status == EF_OK)
-    status = diagram_write(&d, s->options->chart, notes, error);
-  ef_chart_free(chart);
-  return status;
+ef_status isolate_spectra_draw(const isolate_scene *s, const isolate_result *r,
+                               ef_chart_settings settings, ef_chart **out,
+                               ef_error *error) {
+  settings.x_title = "wavelength, nm";
+  settings.y_title = ef_device_absolute(s->display.device)
+                         ? "spectral radiance, W sr\u207b\u00b9 "
+                           "m\u207b\u00b2 nm\u207b\u00b9"
+                         : "spectral radiance, relative";
+  settings.y_from = 0.0;
+  *out = ef_chart_new(&settings, error);
+  return *out != NULL ? add_states(*out, s, r, error) : error->status;
 }
 
 ef_status isolate_chart_write(const isolate_scene *s, const isolate_result *r,
                               const ef_notes *notes, ef_error *error) {
-  const bool is_absolute = ef_device_absolute(s->display.device);
+  const int plane = s->options->plane;
   ef_chart_settings settings = ef_chart_settings_default();
   text title = {0}, subtitle = {0};
   text_format(&title, "What changes along %s", s->direction_text);
@@ -87,16 +87,19 @@ ef_status isolate_chart_write(const isolate_scene *s, const isolate_result *r,
               r->coded.bits);
   settings.title = title.bytes;
   settings.subtitle = subtitle.bytes;
-  settings.x_title = "wavelength, nm";
-  settings.y_title = is_absolute ? "spectral radiance, W sr\u207b\u00b9 "
-                                   "m\u207b\u00b2 nm\u207b\u00b9"
-                                 : "spectral radiance, relative";
-  settings.y_from = 0.0;
   settings.overwrite = s->options->force;
-  const ef_status status =
-      title.failed || subtitle.failed
-          ? message_fail(error, EF_NO_MEMORY, "out of memory for the chart")
-          : draw(s, r, &settings, notes, error);
+  diagram d = {0};
+  ef_status status = EF_OK;
+  if (title.failed || subtitle.failed)
+    status = message_fail(error, EF_NO_MEMORY, "out of memory for the chart");
+  else if (plane >= 0)
+    status = isolate_contrast_draw(s, r, (contrast_plane)plane, settings,
+                                   &d.chart, error);
+  else
+    status = isolate_spectra_draw(s, r, settings, &d.chart, error);
+  if (status == EF_OK)
+    status = diagram_write(&d, s->options->chart, notes, error);
+  diagram_free(&d);
   text_free(&title);
   text_free(&subtitle);
   return status;

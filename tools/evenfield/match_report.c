@@ -10,8 +10,6 @@
 #include "render_match.h"
 #include "report.h"
 
-/* Pairs and their width, px; charts and theirs. */
-enum { MOST_SWATCHES = 48, SWATCH_PX = 160, CHART_PX = 400 };
 
 struct match_report {
   const ef_notes *notes;
@@ -64,7 +62,7 @@ static ef_status add_swatches(const match_report *r, const match_scene *s,
                               const report *page, ef_error *error) {
   const kept_row *row;
   const size_t n_rows = match_text_rows(r->text, &row);
-  const size_t n = n_rows < MOST_SWATCHES ? n_rows : MOST_SWATCHES;
+  const size_t n = n_rows < REPORT_MOST_SWATCHES ? n_rows : REPORT_MOST_SWATCHES;
   ef_swatch *swatch = malloc((n + 1) * sizeof *swatch);
   if (swatch == NULL)
     return message_fail(error, EF_NO_MEMORY, "out of memory for the report");
@@ -79,9 +77,8 @@ static ef_status add_swatches(const match_report *r, const match_scene *s,
   }
   ef_swatch_settings settings = ef_swatch_settings_default();
   settings.white = ef_setup_white(s->setup);
-  settings.width = SWATCH_PX;
+  settings.width = REPORT_SWATCH_PX;
   settings.difference_symbol = ef_metric_symbol(s->metric);
-  size_t n_clipped;
   ef_report_section(page->page, "Side by side");
   char words[400];
   snprintf(words, sizeof words,
@@ -91,19 +88,10 @@ static ef_status add_swatches(const match_report *r, const match_scene *s,
            "shows them and its profile.",
            s->device.kind->words.shown);
   ef_report_paragraph(page->page, words);
-  ef_report_swatches(page->page, n, swatch, &settings, &n_clipped);
-  text t = {0};
-  if (n < n_rows)
-    text_format(&t, "Pictures are shown of %zu of %zu rows.", n, n_rows);
-  if (n_clipped > 0) {
-    text_format(&t,
-                "%s%zu of the %zu halves lie outside the pictures' own BT.2020 "
-                "encoding and are clipped to it.",
-                t.length > 0 ? " " : "", n_clipped, 2 * n);
-  }
-  if (t.bytes != NULL)
-    ef_report_paragraph(page->page, t.bytes);
-  text_free(&t);
+  char right[60];
+  snprintf(right, sizeof right, "what is %s", s->device.kind->words.shown);
+  const ef_report_halves halves = {"target", right, "no exact match"};
+  report_swatches(page, n, n_rows, swatch, &settings, &halves);
   free(swatch);
   return EF_OK;
 }
@@ -113,7 +101,7 @@ static ef_status add_chart(const match_report *r, const match_scene *s,
                            const char *title, const char *about,
                            ef_error *error) {
   ef_chart_settings settings = diagram_settings(plane);
-  settings.width_px = CHART_PX;
+  settings.width_px = REPORT_CHART_PX;
   settings.title = title;
   settings.description = about;
   diagram d = {0};

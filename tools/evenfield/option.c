@@ -42,6 +42,8 @@ static const char *const aims[] = {"colour", "spectrum", "lights", NULL};
 static const char *const specular[] = {"included", "excluded", NULL};
 static const char *const match_formats[] = {"text", "csv", "json", "cgats",
                                             NULL};
+static const char *const difference_planes[] = {"ab", "lc", NULL};
+static const char *const contrast_planes[] = {"lm", "opponent", NULL};
 static const char *const formats[] = {"text", "csv", "json", NULL};
 static const char *const figures[] = {"section", "projection", "ellipsoid",
                                       NULL};
@@ -66,6 +68,9 @@ static const char *const interval_methods[] = {"profile", "bootstrap", NULL};
 #define FIELD(name) offsetof(command_options, name)
 #define SEEING                                                                 \
   (COMMAND_DESCRIBE | COMMAND_MATCH | COMMAND_SWATCH | COMMAND_ELLIPSE)
+#define REPORTING                                                              \
+  (COMMAND_MATCH | COMMAND_COMPARE | COMMAND_ELLIPSE | COMMAND_ISOLATE |       \
+   COMMAND_PANEL)
 #define MATCHING (COMMAND_MATCH | COMMAND_SWATCH)
 #define SHOWING (MATCHING | COMMAND_ISOLATE)
 #define DIFFERING (MATCHING | THRESHOLDS)
@@ -509,18 +514,36 @@ static const option_row table[] = {
      "the folder for a split field of every target and a sheet of all (PNG)"},
     {"swatch-bits", "8|16", MATCHING, TYPE_INTEGER, FIELD(swatch_bits), 8, 16,
      NULL, "bits per channel of the pictures; default 8"},
+    {"report", "FILE.html", REPORTING, TYPE_TEXT, FIELD(report), 0, 0, NULL,
+     "writes the answer with pictures, charts, tables and all it rests on as "
+     "one page for a browser or for paper"},
     {"chart", "FILE", COMMAND_ISOLATE, TYPE_TEXT, FIELD(chart), 0, 0, NULL,
      "draws the spectra of the background and of the extremes, as the codes "
-     "show them: FILE.svg, FILE.pdf or FILE.png"},
-    {"report", "FILE.html", COMMAND_MATCH, TYPE_TEXT, FIELD(report), 0, 0, NULL,
-     "writes the answer with swatches, charts, tables and all it rests on as "
-     "one page for a browser or for paper"},
+     "show them, or with --plane the contrasts: FILE.svg, FILE.pdf or FILE.png"},
     {"chart", "FILE", COMMAND_MATCH, TYPE_TEXT, FIELD(chart), 0, 0, NULL,
      "draws the targets and what is shown for them, with the gamut: FILE ends "
      "in .svg, .pdf or .png"},
+    {"chart", "FILE", COMMAND_COMPARE, TYPE_TEXT, FIELD(chart), 0, 0, NULL,
+     "draws how the samples differ from their standard in each light: FILE "
+     "ends in .svg, .pdf or .png"},
+    {"chart", "FILE", COMMAND_ELLIPSE, TYPE_TEXT, FIELD(chart), 0, 0, NULL,
+     "draws the ellipses in their plane: FILE ends in .svg, .pdf or .png"},
+    {"chart", "FILE", COMMAND_PANEL, TYPE_TEXT, FIELD(chart), 0, 0, NULL,
+     "of fit: draws the answers and the curve of all observers: FILE ends in "
+     ".svg, .pdf or .png"},
     {"plane", "uv|xy|ab|lc", COMMAND_MATCH, TYPE_CHOICE, FIELD(plane), 0, 0,
      planes,
      "the plane of the chart: u', v'; x, y; a*, b*; or C*, L*; default uv"},
+    {"plane", "ab|lc", COMMAND_COMPARE, TYPE_CHOICE, FIELD(plane), 0, 0,
+     difference_planes, "the plane of the chart: a*, b* or C*, L*; default ab"},
+    {"plane", "lm|opponent", COMMAND_ISOLATE, TYPE_CHOICE, FIELD(plane), 0, 0,
+     contrast_planes,
+     "draws contrasts instead of spectra: of L and M, or those that red-green "
+     "and tritan mechanisms get"},
+    {"magnification", "N", COMMAND_ELLIPSE, TYPE_NUMBER, FIELD(magnification),
+     1e-6, 1e6, NULL,
+     "how many times as large the chart draws the ellipses; default 1 of one "
+     "alone, else as it takes to see them"},
     {"device-max", "VALUE", LIT, TYPE_NUMBER, FIELD(device_max), 1e-6, 1e9,
      NULL, "device value of full drive in the files; default: what they say"},
     {"task", "TASK", COMMAND_PANEL, TYPE_TEXT, FIELD(task), 0, 0, NULL,
@@ -617,6 +640,7 @@ static void set_defaults(command_options *o) {
                          .device_max = not_given,
                          .size = not_given,
                          .steps = not_given,
+                         .magnification = not_given,
                          .white_cd_m2 = not_given,
                          .background_Y = not_given,
                          .exponent = not_given,

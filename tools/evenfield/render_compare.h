@@ -7,6 +7,7 @@
 #include <evenfield/exchange.h>
 
 #include "compare.h"
+#include "text.h"
 
 /** Expected share of right answers in the task that --task names. */
 const ef_estimate *compare_correct(const compare_scene *s,
@@ -18,6 +19,9 @@ typedef struct compare_text compare_text;
 compare_text *compare_text_new(void);
 void compare_text_free(compare_text *t);
 compare_sink compare_text_sink(compare_text *t);
+/** All of the text; the kept pairs are then sorted, the worst first. */
+void compare_text_add(compare_text *t, text *out, const compare_scene *s,
+                      const compare_count *count);
 ef_status compare_text_finish(compare_text *t, const compare_scene *s,
                               const compare_count *count, ef_output *output,
                               ef_error *error);

@@ -160,23 +160,28 @@ compare_sink compare_text_sink(compare_text *t) {
   return (compare_sink){.self = t, .rows = keep};
 }
 
+void compare_text_add(compare_text *t, text *out, const compare_scene *s,
+                      const compare_count *count) {
+  if (t->worst_only)
+    thin(t);
+  compare_add_answer(out, worst_pair(t), s, count);
+  if (!t->worst_only)
+    qsort(t->row, t->n_rows, sizeof *t->row, by_order);
+  compare_add_tables(out, t, s, count);
+  qsort(t->row, t->n_rows, sizeof *t->row, by_difference);
+  compare_add_readings(out, t, s, count);
+  compare_add_worst_cases(out, s);
+  add_reasons(out, t);
+  compare_basis(out, s, count);
+  text_add(out, "\n");
+  text_wrap(out, people_words, 0);
+}
+
 ef_status compare_text_finish(compare_text *t, const compare_scene *s,
                               const compare_count *count, ef_output *output,
                               ef_error *error) {
   text out = {0};
-  if (t->worst_only)
-    thin(t);
-  compare_add_answer(&out, worst_pair(t), s, count);
-  if (!t->worst_only)
-    qsort(t->row, t->n_rows, sizeof *t->row, by_order);
-  compare_add_tables(&out, t, s, count);
-  qsort(t->row, t->n_rows, sizeof *t->row, by_difference);
-  compare_add_readings(&out, t, s, count);
-  compare_add_worst_cases(&out, s);
-  add_reasons(&out, t);
-  compare_basis(&out, s, count);
-  text_add(&out, "\n");
-  text_wrap(&out, people_words, 0);
+  compare_text_add(t, &out, s, count);
   const ef_status status = text_write(&out, output, error);
   text_free(&out);
   return status;

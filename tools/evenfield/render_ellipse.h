@@ -7,6 +7,7 @@
 #include <evenfield/exchange.h>
 
 #include "ellipse.h"
+#include "text.h"
 
 #define ELLIPSE_SIZE_ROOM 100
 
@@ -25,6 +26,11 @@ typedef struct ellipse_text ellipse_text;
 ellipse_text *ellipse_text_new(void);
 void ellipse_text_free(ellipse_text *t);
 ellipse_sink ellipse_text_sink(ellipse_text *t);
+/** All of the text. */
+void ellipse_text_add(const ellipse_text *t, text *out, const ellipse_scene *s,
+                      const ellipse_count *n);
+/** The rows that are kept, borrowed. */
+size_t ellipse_text_rows(const ellipse_text *t, const ellipse_row **row);
 ef_status ellipse_text_finish(ellipse_text *t, const ellipse_scene *s,
                               const ellipse_count *count, ef_output *output,
                               ef_error *error);

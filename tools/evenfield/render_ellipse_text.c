@@ -425,36 +425,46 @@ ellipse_sink ellipse_text_sink(ellipse_text *t) {
   return (ellipse_sink){.self = t, .rows = keep};
 }
 
+void ellipse_text_add(const ellipse_text *t, text *out, const ellipse_scene *s,
+                      const ellipse_count *n) {
+  if (n->n_found == 1) {
+    add_one(out, t, s);
+  } else {
+    add_many(out, t, s);
+  }
+  if (n->n_found < n->n) {
+    text_format(out, "%zu of %zu colours have none, for the reasons below.\n",
+                n->n - n->n_found, n->n);
+  }
+  if (n->n_skipped > 0) {
+    text_format(out, "%zu rows were at fault and are left out.\n",
+                n->n_skipped);
+  }
+  if (n->n > t->n_rows) {
+    text_format(out, "The first %zu of %zu follow (--format csv gives all).\n",
+                t->n_rows, n->n);
+  }
+  add_table(out, t, s);
+  add_forms(out, t);
+  if (s->figure == FIGURE_ELLIPSOID)
+    add_solids(out, t, s);
+  add_missing(out, t, n);
+  add_basis(out, s);
+  text_add(out, "\n");
+  text_wrap(out, people, 0);
+}
+
 ef_status ellipse_text_finish(ellipse_text *t, const ellipse_scene *s,
                               const ellipse_count *n, ef_output *output,
                               ef_error *error) {
   text out = {0};
-  if (n->n_found == 1) {
-    add_one(&out, t, s);
-  } else {
-    add_many(&out, t, s);
-  }
-  if (n->n_found < n->n) {
-    text_format(&out, "%zu of %zu colours have none, for the reasons below.\n",
-                n->n - n->n_found, n->n);
-  }
-  if (n->n_skipped > 0) {
-    text_format(&out, "%zu rows were at fault and are left out.\n",
-                n->n_skipped);
-  }
-  if (n->n > t->n_rows) {
-    text_format(&out, "The first %zu of %zu follow (--format csv gives all).\n",
-                t->n_rows, n->n);
-  }
-  add_table(&out, t, s);
-  add_forms(&out, t);
-  if (s->figure == FIGURE_ELLIPSOID)
-    add_solids(&out, t, s);
-  add_missing(&out, t, n);
-  add_basis(&out, s);
-  text_add(&out, "\n");
-  text_wrap(&out, people, 0);
+  ellipse_text_add(t, &out, s, n);
   const ef_status status = text_write(&out, output, error);
   text_free(&out);
   return status;
+}
+
+size_t ellipse_text_rows(const ellipse_text *t, const ellipse_row **row) {
+  *row = t->row;
+  return t->n_rows;
 }

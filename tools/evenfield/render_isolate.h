@@ -10,6 +10,9 @@
 #include "record.h"
 #include "text.h"
 
+/** All of the text. */
+void isolate_text_add(text *out, const isolate_scene *s,
+                      const isolate_result *r);
 ef_status isolate_text_write(const isolate_scene *s, const isolate_result *r,
                              ef_output *output, ef_error *error);
 ef_status isolate_data_write(const isolate_scene *s, const isolate_result *r,

@@ -465,29 +465,34 @@ static void add_cautions(text *out, const isolate_result *r) {
   }
 }
 
-ef_status isolate_text_write(const isolate_scene *s, const isolate_result *r,
-                             ef_output *output, ef_error *error) {
-  text out = {0};
-  add_answer(&out, s, r);
-  add_codes_answer(&out, r);
-  add_people_answer(&out, s, r);
+void isolate_text_add(text *out, const isolate_scene *s,
+                      const isolate_result *r) {
+  add_answer(out, s, r);
+  add_codes_answer(out, r);
+  add_people_answer(out, s, r);
   if (s->demo_display) {
-    text_wrap(&out,
+    text_wrap(out,
               "No display was named, so this is the built-in demo: the vision "
               "laboratory's stimulator (demo:lab-display).",
               0);
   }
-  add_primaries(&out, s, r);
-  add_receptors(&out, s, r);
-  text_add(&out, "\nHow far and how finely:\n");
-  add_reach(&out, s, r);
-  add_steps(&out, s, r);
+  add_primaries(out, s, r);
+  add_receptors(out, s, r);
+  text_add(out, "\nHow far and how finely:\n");
+  add_reach(out, s, r);
+  add_steps(out, s, r);
   if (r->show.frames != NULL)
-    render_isolate_frames(&out, s, r);
-  text_add(&out, "\nAt the eye:\n");
-  add_eye(&out, s, r);
-  add_cautions(&out, r);
-  render_isolate_basis(&out, s, r);
+    render_isolate_frames(out, s, r);
+  text_add(out, "\nAt the eye:\n");
+  add_eye(out, s, r);
+  add_cautions(out, r);
+  render_isolate_basis(out, s, r);
+}
+
+ef_status isolate_text_write(const isolate_scene *s, const isolate_result *r,
+                             ef_output *output, ef_error *error) {
+  text out = {0};
+  isolate_text_add(&out, s, r);
   const ef_status status = text_write(&out, output, error);
   text_free(&out);
   return status;

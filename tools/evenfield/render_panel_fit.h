@@ -7,6 +7,8 @@
 #include "panel_fit.h"
 #include "text.h"
 
+/** All of the text. */
+void panel_fit_add(text *out, const panel_fits *p);
 ef_status render_panel_fit_text(const panel_fits *p, ef_output *output,
                                 ef_error *error);
 /** CSV: a row for each curve and group. JSON: with points and groups. */

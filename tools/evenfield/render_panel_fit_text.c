@@ -712,26 +712,30 @@ static void add_basis(text *out, const panel_fits *p) {
   }
 }
 
-ef_status render_panel_fit_text(const panel_fits *p, ef_output *output,
-                                ef_error *error) {
-  text out = {0};
+void panel_fit_add(text *out, const panel_fits *p) {
   for (size_t c = 0; c < p->n_summaries; ++c)
-    add_answer(&out, p, c);
+    add_answer(out, p, c);
   if (p->is_demo) {
-    text_wrap(&out,
+    text_wrap(out,
               "No file was named, so this is the built-in demo: twelve "
               "passengers said which of two intervals held a pair of unlike "
               "seats (demo:panel-responses).",
               0);
   }
-  add_curves(&out, p);
-  add_groups(&out, p);
-  add_conversions(&out, p);
-  add_aside(&out, p);
-  add_remarks(&out, p);
-  add_basis(&out, p);
-  text_add(&out, "\n");
-  text_wrap(&out, panel_caution, 0);
+  add_curves(out, p);
+  add_groups(out, p);
+  add_conversions(out, p);
+  add_aside(out, p);
+  add_remarks(out, p);
+  add_basis(out, p);
+  text_add(out, "\n");
+  text_wrap(out, panel_caution, 0);
+}
+
+ef_status render_panel_fit_text(const panel_fits *p, ef_output *output,
+                                ef_error *error) {
+  text out = {0};
+  panel_fit_add(&out, p);
   const ef_status status = text_write(&out, output, error);
   text_free(&out);
   return status;

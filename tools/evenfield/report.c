@@ -85,6 +85,27 @@ text report_text(const report *r) {
   return (text){.report = r->page};
 }
 
+void report_swatches(const report *r, size_t n, size_t n_all,
+                     const ef_swatch *swatch,
+                     const ef_swatch_settings *settings,
+                     const ef_report_halves *halves) {
+  size_t n_clipped;
+  ef_report_swatches(r->page, n, swatch, settings, halves, &n_clipped);
+  char words[200];
+  if (n < n_all) {
+    snprintf(words, sizeof words, "Pictures are shown of %zu of %zu pairs.", n,
+             n_all);
+    ef_report_paragraph(r->page, words);
+  }
+  if (n_clipped > 0) {
+    snprintf(words, sizeof words,
+             "%zu of the %zu halves lie outside the pictures' own BT.2020 "
+             "encoding and are clipped to it.",
+             n_clipped, 2 * n);
+    ef_report_paragraph(r->page, words);
+  }
+}
+
 /* ---- How it was made --------------------------------------------------- */
 
 /* As a shell takes it: what is not plainly a word stands between quotes. */

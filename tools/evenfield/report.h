@@ -11,6 +11,8 @@
 
 /** Files that an answer rests on. */
 enum { REPORT_MOST_INPUTS = 32 };
+/** Width of a pair and of a chart, px. */
+enum { REPORT_SWATCH_PX = 160, REPORT_CHART_PX = 400, REPORT_MOST_SWATCHES = 48 };
 
 typedef struct report {
   const command_options *options;
@@ -33,6 +35,11 @@ void report_free(report *r);
 void report_input(report *r, const char *path);
 /** Text whose parts go to the page. */
 text report_text(const report *r);
+/** Pairs, of which there are `n_all`, and what could not be shown of them. */
+void report_swatches(const report *r, size_t n, size_t n_all,
+                     const ef_swatch *swatch,
+                     const ef_swatch_settings *settings,
+                     const ef_report_halves *halves);
 /** Adds how it was made (command line, version, inputs with their digests,
  * seed) and gives the page its name. */
 ef_status report_end(report *r, ef_error *error);

@@ -78,10 +78,12 @@ static void report_paragraph(text *t, const char *content) {
   content += strspn(content, " ");
   if (content[0] == '\0')
     return;
-  if (t->has_answer)
-    ef_report_paragraph(t->report, content);
-  else
+  if (!t->has_answer)
     ef_report_answer(t->report, content);
+  else if (strcmp(t->heading, "Cautions") == 0)
+    ef_report_caution(t->report, content);
+  else
+    ef_report_paragraph(t->report, content);
   t->has_answer = true;
 }
 
@@ -179,9 +181,11 @@ static size_t piece_length(const char *sentence) {
 static void report_sentence(text *t, const char *sentence) {
   report_lines(t);
   text_add(t, sentence);
-  if (!t->failed)
-    report_paragraph(t, t->bytes);
+  if (t->failed || t->bytes == NULL)
+    return;
+  report_paragraph(t, t->bytes);
   t->length = 0;
+  t->bytes[0] = '\0';
 }
 
 void text_wrap(text *t, const char *sentence, size_t indent) {
@@ -374,6 +378,8 @@ static void report_table(const text_table *t, text *out) {
     at += strlen(at) + 1;
   }
   report_lines(out);
+  if (out->heading[0] == '\0')
+    text_section(out, "In figures");
   ef_report_table(out->report, out->heading, t->n_columns, column,
                   t->n_cells / t->n_columns, cell);
   free(cell);
