@@ -9,13 +9,15 @@
 /* ---- Choosing ---------------------------------------------------------- */
 
 static const device_kind *const kinds[] = {&device_display, &device_inks,
-                                           &device_colourants};
+                                           &device_colourants,
+                                           &device_profile};
 enum { N_KINDS = sizeof kinds / sizeof kinds[0] };
 
 /* What --OPTION of a kind names; NULL when it is not given. */
 static const char *named(const command_options *o, const device_kind *kind) {
   return kind == &device_inks         ? o->inks
          : kind == &device_colourants ? o->colourants
+         : kind == &device_profile    ? o->profile
                                       : o->display;
 }
 
@@ -35,7 +37,7 @@ bool device_is_named(const command_options *options) {
 typedef struct own_option {
   const char *name;
   bool given;
-  const device_kind *kind[2]; /* which do */
+  const device_kind *kind[3]; /* which do */
   const char *why;            /* what it says, which others have not */
 } own_option;
 
@@ -53,7 +55,7 @@ static exit_code check_own_options(const command_options *o,
        "the luminance of a display's white"},
       {"step",
        !isnan(o->step_percent),
-       {&device_inks},
+       {&device_inks, &device_profile},
        "the step of ink values"},
       {"yule-nielsen",
        !isnan(o->yule_nielsen),
@@ -61,7 +63,7 @@ static exit_code check_own_options(const command_options *o,
        "a factor of halftone prints"},
       {"black",
        !isnan(o->black_percent),
-       {&device_inks},
+       {&device_inks, &device_profile},
        "a fourth ink that stays fixed"},
       {"weighed",
        o->weighed != NULL,
@@ -94,18 +96,23 @@ static exit_code check_own_options(const command_options *o,
        !isnan(o->step_g),
        {&device_colourants},
        "the step of the scales"},
+      {"intent", o->intent != NULL, {&device_profile}, "a choice of profiles"},
+      {"scale-black", o->scale_black, {&device_profile}, "a choice of profiles"},
       {"bits",
        o->match_bits >= 0,
-       {&device_display, &device_inks},
+       {&device_display, &device_inks, &device_profile},
        "the depth of code values"},
   };
   for (size_t i = 0; i < sizeof own / sizeof own[0]; ++i) {
     const own_option *w = &own[i];
-    if (!w->given || w->kind[0] == kind || w->kind[1] == kind)
+    if (!w->given || w->kind[0] == kind || w->kind[1] == kind ||
+        w->kind[2] == kind)
       continue;
-    return message_usage("--%s goes with --%s%s%s: it is %s", w->name,
+    return message_usage("--%s goes with --%s%s%s%s%s: it is %s", w->name,
                          w->kind[0]->option, w->kind[1] != NULL ? " or --" : "",
-                         w->kind[1] != NULL ? w->kind[1]->option : "", w->why);
+                         w->kind[1] != NULL ? w->kind[1]->option : "",
+                         w->kind[2] != NULL ? " or --" : "",
+                         w->kind[2] != NULL ? w->kind[2]->option : "", w->why);
   }
   if (isnan(o->film) != (o->substrate == NULL))
     return message_usage("--film and --substrate go together: how thick the "

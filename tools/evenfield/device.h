@@ -73,7 +73,8 @@ struct chosen_device {
   void *own; /**< what the kind knows beside */
 };
 
-extern const device_kind device_display, device_inks, device_colourants;
+extern const device_kind device_display, device_inks, device_colourants,
+    device_profile;
 
 /** Which kind the options name; the display when they name none. */
 const device_kind *device_kind_of(const command_options *options);

@@ -278,6 +278,15 @@ static const option_row table[] = {
     {"tone", "CURVE", LIT, TYPE_TEXT, FIELD(tone), 0, 0, NULL,
      "from drive to light: linear, power:G, iec61966-2-1, or a file with "
      "measured ramps; default: what the display's file or encoding says"},
+    {"profile", "PROFILE", MATCHING, TYPE_TEXT, FIELD(profile), 0, 0, NULL,
+     "any device in the place of a display, as its ICC profile describes it: an "
+     "RGB, CMY or CMYK profile, a file or a published encoding"},
+    {"intent", "INTENT", MATCHING, TYPE_TEXT, FIELD(intent), 0, 0, NULL,
+     "of --profile: perceptual, relative, saturation or absolute; default "
+     "relative"},
+    {"scale-black", NULL, MATCHING, TYPE_FLAG, FIELD(scale_black), 0, 0, NULL,
+     "of --profile: scale lightness so that its darkest colour counts as black "
+     "(black point compensation)"},
     {"inks", "FILE", MATCHING, TYPE_TEXT, FIELD(inks), 0, 0, NULL,
      "a three-ink press in the place of a display: its characterisation, rows "
      "of C,M,Y and X,Y,Z, L,a,b or a spectrum, with the eight full overprints "
@@ -338,8 +347,8 @@ static const option_row table[] = {
      "Yule-Nielsen factor of the print, 1 to 10; default: fitted to the ramps"},
     {"black", "PERCENT", MATCHING, TYPE_NUMBER, FIELD(black_percent), 0, 100,
      NULL,
-     "the black of a print with four inks, which stays fixed; default 0, and "
-     "rows with black are left out"},
+     "the black of --inks with four inks or of a CMYK --profile, which stays "
+     "fixed; default 0, and rows with black are left out"},
     {"ambient", "LUX", LIT, TYPE_NUMBER, FIELD(ambient_lux), 0, 1e6, NULL,
      "illuminance on the screen; default 0, a dark room"},
     {"reflectance", "R", LIT, TYPE_NUMBER, FIELD(reflectance), 0, 1, NULL,

@@ -70,6 +70,7 @@ typedef struct command_options {
   int aim;      /**< a recipe_aim */
   int specular; /**< 0 included, 1 excluded */
   bool single_constant;
+  const char *profile; /**< of match and swatch */
   const char *from, *to, *intent, *description; /**< of profile */
   bool scale_black;                             /**< likewise */
   double ambient_lux, reflectance, luminance_cd_m2, jnd, tolerance, device_max;
