@@ -12,6 +12,7 @@
 
 #include <evenfield/device.h>
 #include <evenfield/difference.h>
+#include <evenfield/exchange.h>
 
 #include "figures.h"
 #include "near.h"
@@ -222,6 +223,63 @@ static void tone_values_of_ramps(void **state) {
   free(fogra);
 }
 
+/* ---- As they are published ---------------------------------------------- */
+
+/* The form in which such data sets are published: 1617 sets of fields. */
+static char *as_cgats(const press *p, size_t *length) {
+  const size_t room = 256 + 200 * p->n_rows;
+  char *text = malloc(room);
+  assert_non_null(text);
+  size_t n = (size_t)snprintf(
+      text, room,
+      "ISO28178\nORIGINATOR \"test\"\nFILE_DESCRIPTOR \"offset\"\n"
+      "NUMBER_OF_FIELDS 8\nBEGIN_DATA_FORMAT\nSAMPLE_ID CMYK_C CMYK_M CMYK_Y\n"
+      "CMYK_K XYZ_X XYZ_Y XYZ_Z\nEND_DATA_FORMAT\nNUMBER_OF_SETS %zu\n"
+      "BEGIN_DATA\n",
+      p->n_rows);
+  for (size_t r = 0; r < p->n_rows; r++) {
+    const double *d = p->drive + 4 * r, *x = p->xyz + 3 * r;
+    n += (size_t)snprintf(text + n, room - n,
+                          "%zu\t%.2f %.2f %.2f %.2f\r\n%.2f %.2f %.2f\r\n",
+                          r + 1, 100 * d[0], 100 * d[1], 100 * d[2],
+                          100 * d[3], x[0], x[1], x[2]);
+  }
+  n += (size_t)snprintf(text + n, room - n, "END_DATA\n");
+  assert_true(n < room);
+  *length = n;
+  return text;
+}
+
+static void read_as_published(void **state) {
+  (void)state;
+  press *p = read_press("print_characterization_fogra39l.csv");
+  size_t length, n = 0;
+  char *text = as_cgats(p, &length);
+  ef_error error = {0};
+  ef_reader *reader =
+      ef_reader_from_text("offset.txt", text, length, NULL, &error);
+  if (reader == NULL)
+    fail_msg("line %zu: %s", error.line, error.message);
+  assert_int_equal(ef_reader_get_head(reader)->content, EF_CONTENT_XYZ);
+  assert_int_equal(ef_reader_get_head(reader)->n_device, 4);
+  for (;;) {
+    ef_block block;
+    assert_int_equal(ef_reader_next(reader, 100, &block, &error), EF_OK);
+    if (block.n == 0)
+      break;
+    for (size_t i = 0; i < block.n; i++, n++) {
+      for (size_t k = 0; k < 4; k++)
+        assert_near(block.device[4 * i + k], p->drive[4 * n + k], 1e-15);
+      for (size_t k = 0; k < 3; k++)
+        assert_near(block.value[3 * i + k], p->xyz[3 * n + k], 0);
+    }
+  }
+  assert_int_equal(n, 1617);
+  ef_reader_free(reader);
+  free(text);
+  free(p);
+}
+
 int main(void) {
   if (figures_no_reference("measured prints"))
     return 0;
@@ -231,6 +289,7 @@ int main(void) {
       cmocka_unit_test(three_inks_over_black),
       cmocka_unit_test(agrees_with_second_implementation),
       cmocka_unit_test(tone_values_of_ramps),
+      cmocka_unit_test(read_as_published),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
   return cmocka_run_group_tests(tests, NULL, NULL);
