@@ -186,6 +186,41 @@ static void assert_refused(const ef_plan_settings *s, ef_procedure procedure,
   assert_string_equal(error.message, message);
 }
 
+/* A one-sample t-test of an effect of half a standard deviation needs 34
+ * observers for a power of 80 % (Cohen, Statistical Power Analysis, 2nd ed.
+ * 1988, after his tables; from memory); without an effect it errs in 5 %. */
+static void power_of_a_group(void **state) {
+  (void)state;
+  const double half = exp(0.5 * 0.3);
+  assert_true(ef_plan_power(0.3, 0, 34, half) >= 0.8);
+  assert_true(ef_plan_power(0.3, 0, 33, half) < 0.8);
+  /* t tables: 0.807 at 34 */
+  assert_near(ef_plan_power(0.3, 0, 34, half), 0.807, 2e-3);
+  assert_near(ef_plan_power(0.3, 0.1, 12, 1), 0.05, 1e-4);
+  assert_near(ef_plan_power(0.3, 0.1, 12, 1.2),
+              ef_plan_power(0.3, 0.1, 12, 1 / 1.2), 1e-12);
+  assert_true(isnan(ef_plan_power(0.3, 0.1, 1, 1.2)));
+  assert_true(isnan(ef_plan_power(0.3, 0.1, 5, 0)));
+}
+
+static void levels_of_a_plan(void **state) {
+  (void)state;
+  double level[3];
+  ef_plan_settings s = ef_plan_settings_default(EF_TASK_2IFC, 2);
+  s.lowest = 0.5;
+  s.highest = 2;
+  ef_plan_levels(&s, 3, level);
+  assert_near(level[0], 1, 1e-15);
+  assert_near(level[1], 2, 1e-15);
+  assert_near(level[2], 4, 1e-15);
+  s = ef_plan_settings_default(EF_TASK_GREATER_LESS, 2);
+  s.equality = 10;
+  ef_plan_levels(&s, 3, level);
+  assert_near(level[0], 5, 1e-14);
+  assert_near(level[1], 10, 1e-14);
+  assert_near(level[2], 15, 1e-14);
+}
+
 static void refused(void **state) {
   (void)state;
   const ef_plan_settings good = ef_plan_settings_default(EF_TASK_2IFC, 1);
@@ -270,6 +305,8 @@ int main(void) {
       cmocka_unit_test(power),
       cmocka_unit_test(fewest_trials),
       cmocka_unit_test(observers_needed),
+      cmocka_unit_test(power_of_a_group),
+      cmocka_unit_test(levels_of_a_plan),
       cmocka_unit_test(refused),
       cmocka_unit_test(names),
       cmocka_unit_test(without_memory),

@@ -428,7 +428,8 @@ typedef struct ef_plan_settings {
   double jnd;          /**< expected */
   double equality;     /**< greater-less: expected point of equality */
   double exponent;     /**< of d' (detection, Weibull) */
-  double lapse;        /**< of the observers; the fit allows up to 0.06 */
+  double lapse;        /**< of the observers; a fit allows up to 0.06, an
+                            adaptive choice up to twice the rate */
   double false_alarms; /**< of yes-no and same-different */
   double uncertainty;  /**< standard deviation of ln JND before the experiment:
                             where the levels are set in relation to the truth */
@@ -484,6 +485,15 @@ EF_API ef_status ef_plan_search(const ef_plan_settings *settings,
  * t(n - 1) sqrt((spread^2 + sd_ln^2) / n) <= ln(1 + precision). 0 above 100000.
  */
 EF_API size_t ef_plan_observers(double spread, double sd_ln, double precision);
+/** Power of such a group to tell its JND from another, `ratio` times as large
+ * or small: of the two-sided t-test of ln JND at 5 % with n - 1 degrees of
+ * freedom. NaN below two observers. */
+EF_API double ef_plan_power(double spread, double sd_ln, size_t n_observers,
+                            double ratio);
+/** The `n` levels (at least 2) that a plan shows: rising, equally spread on the
+ * axis between the settings' lowest and highest. */
+EF_API void ef_plan_levels(const ef_plan_settings *settings, size_t n,
+                           double *level);
 
 /* ---- The panel's JND in a difference formula ---------------------------- */
 

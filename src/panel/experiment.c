@@ -46,7 +46,7 @@ static size_t blanks_of(const ef_plan_settings *s, size_t n_trials) {
   return has_alarms ? n_trials / 4 : 0;
 }
 
-static double level_of(const ef_plan_settings *s, size_t n, size_t i) {
+double ef__plan_level(const ef_plan_settings *s, size_t n, size_t i) {
   const double place = (double)i / (double)(n - 1);
   if (s->task == EF_TASK_GREATER_LESS) {
     return s->equality +
@@ -71,7 +71,7 @@ static void lay_out(ef__design *d) {
   }
   for (size_t i = 0; i < n; ++i) {
     const bool has_more = i >= first && i < first + rest;
-    d->level[from + i] = level_of(d->settings, n, i);
+    d->level[from + i] = ef__plan_level(d->settings, n, i);
     data->shown[from + i] = (double)(each + (has_more ? 1 : 0));
     data->t[from + i] = ef__axis_value(d->settings->axis, d->level[from + i]);
   }
@@ -112,7 +112,10 @@ static ef_status make_posterior(ef__design *d, void **block, ef_error *error) {
     p->guess = ef__model_guess(&p->model, s->false_alarms);
   p->grid.n_thresholds = is_range ? 21 : 41;
   p->grid.n_widths = 11;
-  p->grid.n_lapses = 2;
+  /* Lapses are known about as well as the JND is: a mean that is too large
+   * makes thresholds too small. */
+  const double lapse_max = fmin(2 * s->lapse, 0.06);
+  p->grid.n_lapses = lapse_max > 0 ? 2 : 1;
   const double centre = expected.location + expected.width * p->eta;
   const double reach =
       is_range ? s->jnd : fmax(4 * s->uncertainty, log(s->highest)) / LN_10;
@@ -120,7 +123,7 @@ static ef_status make_posterior(ef__design *d, void **block, ef_error *error) {
   const double width[2] = {expected.width / 3, expected.width * 3};
   const size_t from = d->has_blanks ? 1 : 0;
   const ef_status status = ef__posterior_new(p, d->n_levels - from, threshold,
-                                             width, 0.06, block, error);
+                                             width, lapse_max, block, error);
   for (size_t i = 0; status == EF_OK && i < p->n_levels; ++i) {
     ef__posterior_share(p, ef__axis_value(s->axis, d->level[from + i]), false,
                         p->share + i * p->n_places);

@@ -327,6 +327,8 @@ typedef struct ef__design {
   double *weight;          /**< scratch: n_places for each chunk */
 } ef__design;
 
+/** Level `i` of `n` (at least 2) between the settings' lowest and highest. */
+double ef__plan_level(const ef_plan_settings *settings, size_t n, size_t i);
 /** The observer whose JND is `factor` times the expected one. */
 ef_psychometric ef__plan_observer(const ef_plan_settings *settings,
                                   double factor);

@@ -9,11 +9,19 @@
 #include "panel_calibrate.h"
 #include "panel_chart.h"
 #include "panel_fit.h"
+#include "panel_next.h"
+#include "panel_plan.h"
 #include "render_panel_calibrate.h"
 #include "render_panel_fit.h"
 #include "result.h"
 
-typedef enum verb { VERB_FIT = 1, VERB_CALIBRATE = 2 } verb;
+typedef enum verb {
+  VERB_FIT = 1,
+  VERB_CALIBRATE = 2,
+  VERB_NEXT = 4,
+  VERB_PLAN = 8,
+  VERB_ANY = 15
+} verb;
 
 /* ---- Which options belong to which verb -------------------------------- */
 
@@ -38,11 +46,21 @@ static exit_code check_uses(const char *name, verb v, size_t n,
 static exit_code check_options(const command_options *o, const char *name,
                                verb v) {
   const use uses[] = {
-      {"criterion", o->criterion != NULL, VERB_FIT},
+      {"criterion", o->criterion != NULL, VERB_FIT | VERB_NEXT},
       {"chart", o->chart != NULL, VERB_FIT},
       {"report", o->report != NULL, VERB_FIT},
-      {"model", o->model >= 0, VERB_FIT},
-      {"axis", o->axis >= 0, VERB_FIT},
+      {"model", o->model >= 0, VERB_FIT | VERB_NEXT},
+      {"axis", o->axis >= 0, VERB_FIT | VERB_NEXT},
+      {"lapse", !isnan(o->lapse), VERB_ANY},
+      {"seed", !isnan(o->seed), VERB_FIT | VERB_CALIBRATE | VERB_PLAN},
+      {"samples", !isnan(o->samples), VERB_FIT | VERB_CALIBRATE | VERB_PLAN},
+      {"levels", o->levels != NULL, VERB_NEXT | VERB_PLAN},
+      {"precision", !isnan(o->precision), VERB_NEXT | VERB_PLAN},
+      {"most", !isnan(o->most), VERB_NEXT},
+      {"false-alarms", !isnan(o->false_alarms), VERB_NEXT | VERB_PLAN},
+      {"expected-jnd", !isnan(o->expected_jnd), VERB_PLAN},
+      {"other-jnd", !isnan(o->other_jnd), VERB_PLAN},
+      {"spread", !isnan(o->spread), VERB_PLAN},
       {"pairs", o->pairs != NULL, VERB_CALIBRATE},
       {"metric", o->metric != NULL, VERB_CALIBRATE},
       {"exponent", o->exponent_text != NULL, VERB_CALIBRATE},
@@ -140,6 +158,53 @@ static exit_code run_calibrate(const command_options *o) {
   return result_close(output, status, &error);
 }
 
+/* ---- panel next -------------------------------------------------------- */
+
+static exit_code run_next(const command_options *o) {
+  if (o->n_files < 2) {
+    return message_usage("panel next needs the file with the answers so far; "
+                         "its header alone will do where --levels names the "
+                         "levels in hand");
+  }
+  message_sink sink = {.quiet = o->quiet};
+  const ef_notes notes = message_notes(&sink);
+  ef_error error = {0};
+  panel_next p;
+  ef_output *output = NULL;
+  ef_status status = panel_next_load(&p, o, &notes, &error);
+  if (status == EF_OK) {
+    output = result_open(o, &error);
+    if (output == NULL)
+      status = error.status;
+  }
+  if (status == EF_OK)
+    status = render_panel_next(&p, output, &error);
+  panel_next_free(&p);
+  return result_close(output, status, &error);
+}
+
+/* ---- panel plan -------------------------------------------------------- */
+
+static exit_code run_plan(const command_options *o) {
+  if (isnan(o->expected_jnd)) {
+    return message_usage("panel plan needs --expected-jnd, the JND to expect: "
+                         "a published one (evenfield tables metrics), or that "
+                         "of a pilot panel");
+  }
+  ef_error error = {0};
+  panel_plan p;
+  ef_output *output = NULL;
+  ef_status status = panel_plan_make(&p, o, &error);
+  if (status == EF_OK) {
+    output = result_open(o, &error);
+    if (output == NULL)
+      status = error.status;
+  }
+  if (status == EF_OK)
+    status = render_panel_plan(&p, output, &error);
+  return result_close(output, status, &error);
+}
+
 /* ---- Which verb -------------------------------------------------------- */
 
 static const struct {
@@ -150,6 +215,8 @@ static const struct {
 } verbs[] = {
     {"fit", VERB_FIT, 1, run_fit},
     {"calibrate", VERB_CALIBRATE, 2, run_calibrate},
+    {"next", VERB_NEXT, 1, run_next},
+    {"plan", VERB_PLAN, 0, run_plan},
 };
 enum { N_VERBS = sizeof verbs / sizeof verbs[0] };
 
@@ -170,6 +237,6 @@ exit_code command_panel(const command_options *options) {
     const exit_code code = check_options(o, verbs[i].name, verbs[i].verb);
     return code == EXIT_DONE ? verbs[i].run(o) : code;
   }
-  return message_usage("panel does not know \"%.100s\": it is fit or "
-                       "calibrate", o->files[0]);
+  return message_usage("panel does not know \"%.100s\": it is fit, "
+                       "calibrate, next or plan", o->files[0]);
 }

@@ -117,7 +117,8 @@ static const command_entry table[] = {
       "evenfield observer build --categories 3 --population 1000"}},
     {"panel",
      COMMAND_PANEL,
-     "fit [RESPONSES] | calibrate [RESPONSES [SAMPLES]]",
+     "fit [RESPONSES] | calibrate [RESPONSES [SAMPLES]] | next RESPONSES | "
+     "plan",
      "what a panel's answers say: thresholds, JND, points of equality",
      {"`evenfield panel fit RESPONSES` fits a curve to the answers of each "
       "observer and condition and to all together: threshold, point of "
@@ -125,7 +126,11 @@ static const command_entry table[] = {
       "fits, and how people differ. `evenfield panel calibrate RESPONSES "
       "--pairs PAIRS` gives the panel's JND in a colour-difference formula, "
       "which `evenfield compare --jnd FILE` reads, and how well each formula "
-      "orders the pairs. Without RESPONSES both work on answers of the demo.",
+      "orders the pairs. Without RESPONSES both work on answers of the demo. "
+      "`evenfield panel next RESPONSES --levels LEVELS` says which of the "
+      "levels in hand to show next, from the answers so far; `evenfield panel "
+      "plan --expected-jnd 0.9` how many observers, levels and trials a panel "
+      "takes.",
       "RESPONSES is CSV with the column level, and for each trial answer (yes, "
       "no; right, wrong; same, different; greater, less; or 1 and 0), or "
       "counts n (shown) and k (of them positive); calibrate also takes "
@@ -134,7 +139,8 @@ static const command_entry table[] = {
       "may be there. Trials at level 0 show no difference."},
      command_panel,
      {"evenfield panel fit", "evenfield panel calibrate",
-      "evenfield panel calibrate --metric cie94 --format csv"}},
+      "evenfield panel next demo:panel-responses --task 2ifc",
+      "evenfield panel plan --expected-jnd 0.9 --samples 100"}},
     {"profile",
      COMMAND_PROFILE,
      "make PROFILE | check PROFILE [MEASUREMENTS] | convert COLOURS | convert "

@@ -570,10 +570,12 @@ static const option_row table[] = {
      "detection, else linear"},
     {"lapse", "SHARE", COMMAND_PANEL, TYPE_NUMBER, FIELD(lapse), 0, 0.5, NULL,
      "fixes the share of answers given without looking, 0 for none; default: "
-     "estimated, up to 0.06"},
+     "estimated, up to 0.06. next: up to twice that is held possible; "
+     "default 0.03. plan: that of the simulated observers, up to 0.06; "
+     "default 0.01"},
     {"criterion", "SHARE", COMMAND_PANEL, TYPE_TEXT, FIELD(criterion), 0, 0,
      NULL,
-     "fit: where the threshold is taken, as a share of positive answers (75%, "
+     "fit, next: where the threshold is taken, as a share of positive answers (75%, "
      "0.84) or d-prime:N; default: the JND, or half of the way"},
     {"intervals", "profile|bootstrap", COMMAND_PANEL, TYPE_CHOICE,
      FIELD(intervals), 0, 0, interval_methods,
@@ -581,12 +583,34 @@ static const option_row table[] = {
      "default profile"},
     {"samples", "N", COMMAND_PANEL, TYPE_WHOLE, FIELD(samples), 0, 1e7, NULL,
      "fit: simulated experiments behind p and the bootstrap, 0 for the "
-     "chi-square distribution; default 2000"},
+     "chi-square distribution; default 2000. plan: experiments behind each "
+     "row; default 400"},
     {"seed", "N", COMMAND_PANEL, TYPE_WHOLE, FIELD(seed), 0, LARGEST_SEED, NULL,
      "of all simulated answers; the same N gives the same; default 1"},
     {"exponent", "BETA|fitted", COMMAND_PANEL, TYPE_TEXT, FIELD(exponent_text),
      0, 0, NULL,
      "calibrate: the power of the difference that d' grows with; default 1"},
+    {"levels", "N|FILE", COMMAND_PANEL, TYPE_TEXT, FIELD(levels), 0, 0, NULL,
+     "next: the levels in hand, CSV with the columns level and, where pairs "
+     "have names, name; default those of the answers. plan: how many constant "
+     "levels are shown; default 7"},
+    {"precision", "SHARE", COMMAND_PANEL, TYPE_NUMBER, FIELD(precision), 0.001,
+     2, NULL,
+     "next, plan: half of the 95 % interval that is wanted, as a share of the "
+     "JND; default 0.1"},
+    {"most", "N", COMMAND_PANEL, TYPE_WHOLE, FIELD(most), 1, 1e9, NULL,
+     "next: an observer is done after N trials in any case"},
+    {"expected-jnd", "VALUE", COMMAND_PANEL, TYPE_NUMBER, FIELD(expected_jnd),
+     1e-9, 1e9, NULL, "plan: the JND to expect"},
+    {"other-jnd", "VALUE", COMMAND_PANEL, TYPE_NUMBER, FIELD(other_jnd), 1e-9,
+     1e9, NULL, "plan: a JND that is to be told from it, for the power"},
+    {"spread", "SD", COMMAND_PANEL, TYPE_NUMBER, FIELD(spread), 0, 3, NULL,
+     "plan: how JNDs differ from person to person, the standard deviation of "
+     "their natural logarithm; default 0.3"},
+    {"false-alarms", "SHARE", COMMAND_PANEL, TYPE_NUMBER, FIELD(false_alarms),
+     0.001, 0.89, NULL,
+     "next, plan: share of \"yes\" or \"different\" where there is nothing; "
+     "default: next: that of the answers to level 0; plan: 0.1"},
     {"save", "FILE", COMMAND_PANEL, TYPE_TEXT, FIELD(save), 0, 0, NULL,
      "calibrate: also writes the panel's JND where `evenfield compare --jnd "
      "FILE` finds it"},
@@ -681,6 +705,11 @@ static void set_defaults(command_options *o) {
                          .pattern = -1,
                          .time_course = -1,
                          .lapse = not_given,
+                         .expected_jnd = not_given,
+                         .other_jnd = not_given,
+                         .precision = not_given,
+                         .false_alarms = not_given,
+                         .most = not_given,
                          .model = -1,
                          .axis = -1,
                          .intervals = -1,

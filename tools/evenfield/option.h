@@ -78,7 +78,8 @@ typedef struct command_options {
   double size, steps, white_cd_m2, background_Y;
   double exponent, spread, batch_sd, samples;
   const char *exponent_text, *save; /**< of panel, as what follows */
-  double lapse;
+  const char *levels;               /**< how many, or a file */
+  double lapse, expected_jnd, other_jnd, precision, false_alarms, most;
   int model;                          /**< an ef_shape, -1 not given */
   int axis;                           /**< an ef_axis */
   int intervals;                      /**< an ef_interval_method */

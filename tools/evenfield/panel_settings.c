@@ -16,19 +16,24 @@ static bool has_blanks(const answers *a) {
   return has_zero && !has_negative;
 }
 
-ef_shape panel_shape(const command_options *options, const answers *a) {
+ef_shape panel_shape_for(const command_options *options, ef_task task,
+                         bool has_blanks_too) {
   if (options->model >= 0)
     return (ef_shape)options->model;
-  switch (a->task) {
+  switch (task) {
   case EF_TASK_2IFC:
   case EF_TASK_TRIANGLE:
     return EF_SHAPE_WEIBULL;
   case EF_TASK_YES_NO:
   case EF_TASK_SAME_DIFFERENT:
-    return has_blanks(a) ? EF_SHAPE_DETECTION : EF_SHAPE_GAUSSIAN;
+    return has_blanks_too ? EF_SHAPE_DETECTION : EF_SHAPE_GAUSSIAN;
   default:
     return EF_SHAPE_GAUSSIAN;
   }
+}
+
+ef_shape panel_shape(const command_options *options, const answers *a) {
+  return panel_shape_for(options, a->task, has_blanks(a));
 }
 
 ef_axis panel_axis(const command_options *options, ef_shape shape) {

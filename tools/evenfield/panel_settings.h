@@ -11,6 +11,9 @@
  * nothing to see at level 0; detection for yes-no and same-different with
  * trials at level 0, which give d'; else the Gaussian. */
 ef_shape panel_shape(const command_options *options, const answers *a);
+/** The same for a task of which it is known whether blanks are shown. */
+ef_shape panel_shape_for(const command_options *options, ef_task task,
+                         bool has_blanks);
 /** --axis, or the one that the shape is made for. */
 ef_axis panel_axis(const command_options *options, ef_shape shape);
 /** Levels below 0 have no place on a logarithmic axis: names the row. */
