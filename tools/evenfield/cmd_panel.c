@@ -9,6 +9,7 @@
 #include "panel_calibrate.h"
 #include "panel_chart.h"
 #include "panel_fit.h"
+#include "panel_flicker.h"
 #include "panel_next.h"
 #include "panel_plan.h"
 #include "render_panel_calibrate.h"
@@ -20,7 +21,8 @@ typedef enum verb {
   VERB_CALIBRATE = 2,
   VERB_NEXT = 4,
   VERB_PLAN = 8,
-  VERB_ANY = 15
+  VERB_FLICKER = 16,
+  VERB_ANSWERS = 15 /* all that are about answers */
 } verb;
 
 /* ---- Which options belong to which verb -------------------------------- */
@@ -51,7 +53,7 @@ static exit_code check_options(const command_options *o, const char *name,
       {"report", o->report != NULL, VERB_FIT},
       {"model", o->model >= 0, VERB_FIT | VERB_NEXT},
       {"axis", o->axis >= 0, VERB_FIT | VERB_NEXT},
-      {"lapse", !isnan(o->lapse), VERB_ANY},
+      {"lapse", !isnan(o->lapse), VERB_ANSWERS},
       {"seed", !isnan(o->seed), VERB_FIT | VERB_CALIBRATE | VERB_PLAN},
       {"samples", !isnan(o->samples), VERB_FIT | VERB_CALIBRATE | VERB_PLAN},
       {"levels", o->levels != NULL, VERB_NEXT | VERB_PLAN},
@@ -65,7 +67,8 @@ static exit_code check_options(const command_options *o, const char *name,
       {"metric", o->metric != NULL, VERB_CALIBRATE},
       {"exponent", o->exponent_text != NULL, VERB_CALIBRATE},
       {"save", o->save != NULL, VERB_CALIBRATE},
-      {"observer", o->observer != NULL, VERB_CALIBRATE},
+      {"observer", o->observer != NULL, VERB_CALIBRATE | VERB_FLICKER},
+      {"task", o->task != NULL, VERB_ANSWERS},
       {"illuminant", o->illuminant != NULL, VERB_CALIBRATE},
       {"intervals", o->intervals >= 0, VERB_FIT},
   };
@@ -205,6 +208,31 @@ static exit_code run_plan(const command_options *o) {
   return result_close(output, status, &error);
 }
 
+/* ---- panel flicker ----------------------------------------------------- */
+
+static exit_code run_flicker(const command_options *o) {
+  if (o->n_files < 2) {
+    return message_usage("panel flicker needs the file with the settings: "
+                         "columns first, first_amount, second and "
+                         "second_amount");
+  }
+  message_sink sink = {.quiet = o->quiet};
+  const ef_notes notes = message_notes(&sink);
+  ef_error error = {0};
+  panel_flicker p;
+  ef_output *output = NULL;
+  ef_status status = panel_flicker_load(&p, o, &notes, &error);
+  if (status == EF_OK) {
+    output = result_open(o, &error);
+    if (output == NULL)
+      status = error.status;
+  }
+  if (status == EF_OK)
+    status = render_panel_flicker(&p, output, &error);
+  panel_flicker_free(&p);
+  return result_close(output, status, &error);
+}
+
 /* ---- Which verb -------------------------------------------------------- */
 
 static const struct {
@@ -217,6 +245,7 @@ static const struct {
     {"calibrate", VERB_CALIBRATE, 2, run_calibrate},
     {"next", VERB_NEXT, 1, run_next},
     {"plan", VERB_PLAN, 0, run_plan},
+    {"flicker", VERB_FLICKER, 2, run_flicker},
 };
 enum { N_VERBS = sizeof verbs / sizeof verbs[0] };
 
@@ -238,5 +267,5 @@ exit_code command_panel(const command_options *options) {
     return code == EXIT_DONE ? verbs[i].run(o) : code;
   }
   return message_usage("panel does not know \"%.100s\": it is fit, "
-                       "calibrate, next or plan", o->files[0]);
+                       "calibrate, next, plan or flicker", o->files[0]);
 }

@@ -118,7 +118,7 @@ static const command_entry table[] = {
     {"panel",
      COMMAND_PANEL,
      "fit [RESPONSES] | calibrate [RESPONSES [SAMPLES]] | next RESPONSES | "
-     "plan",
+     "plan | flicker SETTINGS [LIGHTS]",
      "what a panel's answers say: thresholds, JND, points of equality",
      {"`evenfield panel fit RESPONSES` fits a curve to the answers of each "
       "observer and condition and to all together: threshold, point of "
@@ -130,7 +130,9 @@ static const command_entry table[] = {
       "`evenfield panel next RESPONSES --levels LEVELS` says which of the "
       "levels in hand to show next, from the answers so far; `evenfield panel "
       "plan --expected-jnd 0.9` how many observers, levels and trials a panel "
-      "takes.",
+      "takes. `evenfield panel flicker SETTINGS LIGHTS` turns settings of least "
+      "flicker (columns first, first_amount, second, second_amount: lights and "
+      "shares of their full drive) into luminance weights for isolate.",
       "RESPONSES is CSV with the column level, and for each trial answer (yes, "
       "no; right, wrong; same, different; greater, less; or 1 and 0), or "
       "counts n (shown) and k (of them positive); calibrate also takes "

@@ -624,8 +624,9 @@ static const option_row table[] = {
      "metrics`, with parameters as in ciede2000:kl=2; default ciede2000"},
     {"observer", "OBSERVER", COMMAND_PANEL, TYPE_TEXT, FIELD(observer), 0, 0,
      NULL,
-     "calibrate: for spectra, the colour-matching functions, a name from "
-     "`evenfield observer list` or a file; default cie-1931"},
+     "calibrate: for spectra, the colour-matching functions; flicker: the cone "
+     "fundamentals; a name from `evenfield observer list` or a file; default "
+     "cie-1931, and cie-2015-2 for flicker"},
     {"illuminant", "LIGHT", COMMAND_PANEL, TYPE_TEXT, FIELD(illuminant), 0, 0,
      NULL,
      "calibrate: the light on the samples and the white of their colours, a "
