@@ -102,20 +102,21 @@ static bool add_labels(ef__sheet *sheet, const ef_series *s,
       continue;
     if (sheet->n_labels == sheet->label_room) {
       const size_t room = 2 * sheet->label_room + 32;
-      ef__chart_label *grown = ef__reallocate(sheet->label, room, sizeof *grown);
+      ef__chart_label *grown =
+          ef__reallocate(sheet->label, room, sizeof *grown);
       if (grown == NULL)
         return false;
       sheet->label = grown;
       sheet->label_room = room;
     }
     const bool is_frame = s->look == EF_LOOK_FRAME;
-    sheet->label[sheet->n_labels++] =
-        (ef__chart_label){.text = s->label[i],
-                    .at = at,
-                    .outward = {at.x - middle.x, at.y - middle.y},
-                    .gap_px = is_frame ? 2.5 : MARK_PX + 1.5,
-                    .width_px = ef__text_width(s->label[i], LABEL_PX, false),
-                    .ink = is_frame ? EF__INK_SOFT : EF__INK_TEXT};
+    sheet->label[sheet->n_labels++] = (ef__chart_label){
+        .text = s->label[i],
+        .at = at,
+        .outward = {at.x - middle.x, at.y - middle.y},
+        .gap_px = is_frame ? 2.5 : MARK_PX + 1.5,
+        .width_px = ef__text_width(s->label[i], LABEL_PX, false) + 5.0,
+        .ink = is_frame ? EF__INK_SOFT : EF__INK_TEXT};
   }
   return true;
 }

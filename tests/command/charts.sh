@@ -88,6 +88,10 @@ ef_chart spectra isolate
 ef_chart lm isolate --plane lm
 ef_chart opponent isolate --plane opponent --format json
 ef_chart panel panel fit
+for plane in uv xy ab lc; do
+  ef_chart describe-$plane describe demo:livery --plane $plane
+done
+ef_chart lamp describe demo:lab-display
 
 # The same command makes the same bytes.
 for kind in svg pdf png; do

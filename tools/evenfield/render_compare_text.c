@@ -174,6 +174,7 @@ void compare_text_add(compare_text *t, text *out, const compare_scene *s,
   add_reasons(out, t);
   compare_basis(out, s, count);
   text_add(out, "\n");
+  text_section(out, "What to keep in mind");
   text_wrap(out, people_words, 0);
 }
 

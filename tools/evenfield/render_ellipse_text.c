@@ -451,6 +451,7 @@ void ellipse_text_add(const ellipse_text *t, text *out, const ellipse_scene *s,
   add_missing(out, t, n);
   add_basis(out, s);
   text_add(out, "\n");
+  text_section(out, "What to keep in mind");
   text_wrap(out, people, 0);
 }
 

@@ -729,6 +729,7 @@ void panel_fit_add(text *out, const panel_fits *p) {
   add_remarks(out, p);
   add_basis(out, p);
   text_add(out, "\n");
+  text_section(out, "What to keep in mind");
   text_wrap(out, panel_caution, 0);
 }
 
