@@ -93,7 +93,10 @@ check "dithering with a seed" \
 
 told() {
   "$evenfield" isolate --replay five/stimulus.json --frames told \
-    > /dev/null 2> said || return 1
+    --report told.html --chart told.svg --plane lm > /dev/null 2> said ||
+    { cat said; return 1; }
+  [ -s told.html ] && [ -s told.svg ] || return 1
+  diff five/stimulus.json told/stimulus.json || return 1
   grep -q 'every picture (2) is as recorded in five/stimulus.json' said ||
     { cat said; return 1; }
 }

@@ -88,6 +88,7 @@ static exit_code run_again(const command_options *asked, replay *r) {
     o.quiet = asked->quiet;
     o.jobs = asked->jobs;
     o.chart = asked->chart;
+    o.plane = asked->plane;
     o.report = asked->report;
     o.kept = &r->kept;
     code = run(&o, r);

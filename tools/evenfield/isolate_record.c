@@ -12,8 +12,9 @@
 
 /* Where the answer goes and how is no part of the stimulus. */
 static bool belongs(const char *option) {
-  static const char *const others[] = {"frames", "format", "output", "force",
-                                       "quiet",  "jobs",   "chart"};
+  static const char *const others[] = {"frames", "format", "output",
+                                       "force",  "quiet",  "jobs",
+                                       "chart",  "plane",  "report"};
   for (size_t i = 0; i < sizeof others / sizeof others[0]; ++i) {
     if (strcmp(option, others[i]) == 0)
       return false;

@@ -10,7 +10,8 @@
 
 exit_code replay_check_usage(const command_options *o) {
   static const char *const allowed[] = {"replay", "frames", "format", "output",
-                                        "force",  "quiet",  "jobs",   "chart"};
+                                        "force",  "quiet",  "jobs",   "chart",
+                                        "plane",  "report"};
   if (o->n_files > 0)
     return result_check_usage(o, 0);
   for (size_t i = 0; i < o->given.n; ++i) {

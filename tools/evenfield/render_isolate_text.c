@@ -460,6 +460,13 @@ static void add_cautions(text *out, const isolate_result *r) {
     const bool is_small = first >= 'a' && first <= 'z';
     text_format(&t, "%c%s.", is_small ? first - 'a' + 'A' : first,
                 r->caution[i] + 1);
+    if (out->report != NULL && !t.failed) {
+      ef_error ignored; /* `failed` remembers it */
+      text_flush(out, &ignored);
+      ef_report_caution(out->report, t.bytes);
+      text_free(&t);
+      continue;
+    }
     text_add(out, "  ");
     text_paragraph(out, &t, 4);
   }
