@@ -76,13 +76,13 @@ EF__INLINE v_double v_exp(v_double x) {
 EF__INLINE v_double v_log(v_double x) {
   /* x = 2^n m, m in [sqrt(1/2), sqrt(2)). */
   const int64_t root_half = 0x3FE6A09E667F3BCD;
-  const v_int bits = (v_int)x - root_half;
+  const v_uint bits = (v_uint)x - (uint64_t)root_half;
   /* Shifted as an unsigned number; below 1 it is negative. */
   const v_int biased =
-      (v_int)((v_uint)(bits + INT64_C(0x4000000000000000)) >> 52);
+      (v_int)((bits + UINT64_C(0x4000000000000000)) >> 52);
   const v_double n = v_from_int(biased - 1024) + (x - x); /* NaN of NaN */
   const v_double m =
-      (v_double)((bits & INT64_C(0x000FFFFFFFFFFFFF)) + root_half);
+      (v_double)((bits & UINT64_C(0x000FFFFFFFFFFFFF)) + (uint64_t)root_half);
   const v_double f = m - 1;
   const v_double s = f / (2 + f);
   const v_double u = s * s, w = u * u;

@@ -73,6 +73,15 @@ EF__INLINE void packed_tile(int channels, int is_float, size_t n,
   EF__UNROLL for (int k = 0; k < MOST_TOTALS; ++k) sum[k] = v_eight_zero();
   const double *at = w->w;
   size_t i = 0;
+  for (; i + 32 <= n; i += 32, at += 32 * channels) { /* four at a time */
+    EF__UNROLL for (int u = 0; u < 4; ++u) {
+      const v_eight samples = load_samples(x, i + 8 * (size_t)u, is_float);
+      EF__UNROLL for (int c = 0; c < channels; ++c) {
+        sum[c] = v_eight_add_product(
+            sum[c], v_eight_load(at + 8 * (u * channels + c)), samples);
+      }
+    }
+  }
   for (; i + 8 <= n; i += 8, at += 8 * channels) {
     const v_eight samples = load_samples(x, i, is_float);
     EF__UNROLL for (int c = 0; c < channels; ++c) {
