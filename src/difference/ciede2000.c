@@ -72,9 +72,11 @@ double ef__ciede2000_hue_weight(double c, double s, double derivative[2]) {
  * [0, 360) as published: the term has a step of 1e-5 at 0 degrees. */
 static double rotation(ef__ciede2000 *t) {
   t->mean_h_deg = 0;
-  if (t->sin_h >= 0 && t->cos_h > -0.57) return 0;
+  if (t->sin_h >= 0 && t->cos_h > -0.57)
+    return 0;
   t->mean_h_deg = atan2(t->sin_h, t->cos_h) * DEGREES_PER_RADIAN;
-  if (t->mean_h_deg < 0) t->mean_h_deg += 360;
+  if (t->mean_h_deg < 0)
+    t->mean_h_deg += 360;
   const double u = (t->mean_h_deg - 275) / 25;
   const double angle_deg = 30 * exp(-u * u);
   return -sin(2 * angle_deg / DEGREES_PER_RADIAN) * 2 *
@@ -135,7 +137,8 @@ static void differences(const ef_metric *self, size_t n,
                         const double *reference, const double *sample,
                         double *difference) {
   double factor[3];
-  for (size_t i = 0; i < 3; ++i) factor[i] = self->parameter[i].value;
+  for (size_t i = 0; i < 3; ++i)
+    factor[i] = self->parameter[i].value;
   ef__kernels()->ciede2000(n, reference, sample, factor, difference);
 }
 
@@ -165,7 +168,8 @@ static void tensor(const ef_metric *self, const double coordinate[3],
   t.s_l *= self->parameter[0].value;
   t.s_c *= self->parameter[1].value;
   t.s_h *= self->parameter[2].value;
-  if (t.chroma1 == 0) t.s_h = t.s_c;
+  if (t.chroma1 == 0)
+    t.s_h = t.s_c;
   const double cc = 1 / (t.s_c * t.s_c), hh = 1 / (t.s_h * t.s_h);
   const double ch = t.r_t / (2 * t.s_c * t.s_h);
   const double c = t.cos_h, s = t.sin_h, scale = t.one_plus_g;
@@ -177,28 +181,49 @@ static void tensor(const ef_metric *self, const double coordinate[3],
   g[8] = s * s * cc + c * c * hh + 2 * c * s * ch;
 }
 
+/* The best of points around the axis at some chromas. */
+enum { HUES = 12, MOST_RINGS = 2 };
+static void best_around(const ef_metric *self, const double reference[3],
+                        double lightness, int n_rings, const double *chroma,
+                        double best[3]) {
+  /* Every 30 degrees. */
+  static const double circle[HUES][2] = {
+      {1, 0},          {COS_30, 0.5},  {0.5, COS_30},  {0, 1},
+      {-0.5, COS_30},  {-COS_30, 0.5}, {-1, 0},        {-COS_30, -0.5},
+      {-0.5, -COS_30}, {0, -1},        {0.5, -COS_30}, {COS_30, -0.5}};
+  double pair[MOST_RINGS * HUES][3], sample[MOST_RINGS * HUES][3];
+  double difference[MOST_RINGS * HUES];
+  const int n = n_rings * HUES;
+  for (int i = 0; i < n; ++i) {
+    memcpy(pair[i], reference, sizeof pair[i]);
+    sample[i][0] = lightness;
+    sample[i][1] = chroma[i / HUES] * circle[i % HUES][0];
+    sample[i][2] = chroma[i / HUES] * circle[i % HUES][1];
+  }
+  differences(self, (size_t)n, pair[0], sample[0], difference);
+  int least = 0;
+  for (int i = 1; i < n; ++i) {
+    if (difference[i] < difference[least])
+      least = i;
+  }
+  memcpy(best, sample[least], sizeof sample[least]);
+}
+
 /* Colours of some chroma have a second minimum near the axis, about opposite to
  * them, narrow for the rotation term and the root in dH' (eq. 11): the best of
- * a few points there leads into it. */
+ * a few points there leads into it. Near black and white there is no room for
+ * chroma; for references darker than black the minimum lies close to the axis
+ * at the lightness below which there is none. */
 static size_t decoys(const ef_metric *self, const double reference[3],
                      double place[EF__MAX_DECOYS][3]) {
-  static const double chromas[] = {3.5, 8};
-  enum { HUES = 12, N = 2 * HUES };
-  double pair[N][3], sample[N][3], difference[N];
-  for (int i = 0; i < N; ++i) {
-    const double h = (360.0 / HUES) * (i % HUES) / DEGREES_PER_RADIAN;
-    memcpy(pair[i], reference, sizeof pair[i]);
-    sample[i][0] = reference[0];
-    sample[i][1] = chromas[i / HUES] * cos(h);
-    sample[i][2] = chromas[i / HUES] * sin(h);
-  }
-  differences(self, N, pair[0], sample[0], difference);
-  int best = 0;
-  for (int i = 1; i < N; ++i) {
-    if (difference[i] < difference[best]) best = i;
-  }
-  memcpy(place[0], sample[best], sizeof sample[best]);
-  return 1;
+  static const double rings[MOST_RINGS] = {3.5, 8}, dark_ring = 0.4;
+  const double L_star = reference[0];
+  const double lightness = L_star < 5 ? 5 : L_star > 96 ? 96 : L_star;
+  best_around(self, reference, lightness, 2, rings, place[0]);
+  if (L_star >= 5)
+    return 1;
+  best_around(self, reference, 4, 1, &dark_ring, place[1]);
+  return 2;
 }
 
 const ef_metric ef__metric_ciede2000 = {

@@ -114,6 +114,18 @@ static bool is_reached(const ef__batch *job, ef_match *m, ef__minima *minima) {
   return true;
 }
 
+/* The codes, and where these show less than the nearest colour known, which the
+ * search for it has missed, the colour to which they lead. */
+static void quantise(const ef__batch *job, ef__search *search,
+                     ef__minima *minima, uint32_t code[3]) {
+  double square, amount[3];
+  ef__quantise(search, &job->lattice, minima, code, &square);
+  if (!(square < minima->at[0].square * (1 - 1e-9))) return;
+  for (int c = 0; c < 3; ++c) amount[c] = job->lattice.amount[c][code[c]];
+  ef__nearest_from(search, amount, minima);
+  ef__quantise(search, &job->lattice, minima, code, &square);
+}
+
 static void match_one(const ef__batch *job, ef_xyz target, ef_match *m) {
   ef__search search = {.mixing = &job->mixing, .metric = job->settings->metric};
   ef__minima minima;
@@ -132,7 +144,10 @@ static void match_one(const ef__batch *job, ef_xyz target, ef_match *m) {
   } else {
     ef__nearest(&search, amount, &minima);
   }
-  if (!m->in_gamut && !job->mixing.affine && is_reached(job, m, &minima)) {
+  const bool reached =
+      !m->in_gamut && !job->mixing.affine && is_reached(job, m, &minima);
+  if (job->max_code > 0) quantise(job, &search, &minima, m->code);
+  if (reached) {
     memcpy(amount, m->amount, sizeof amount);
     ef__fill_exact(job, amount, target, &m->nearest);
     if (job->settings->hue_kept) m->hue_kept = m->nearest;
@@ -144,11 +159,7 @@ static void match_one(const ef__batch *job, ef_xyz target, ef_match *m) {
     }
   }
   ef__fill_held(m);
-  if (job->max_code > 0) {
-    double square;
-    ef__quantise(&search, &job->lattice, &minima, m->code, &square);
-    ef__fill_coded(job, &search, m);
-  }
+  if (job->max_code > 0) ef__fill_coded(job, &search, m);
 }
 
 static void match_range(void *context, size_t begin, size_t end) {

@@ -99,9 +99,10 @@ typedef struct ef__start {
   double difference; /**< to the target */
 } ef__start;
 /** The points of the grid that are nearer to the target (in the metric's
- * coordinates) than all their neighbours, the nearest first. */
+ * coordinates) than all their neighbours, the nearest first; none that differ
+ * by more than `limit`. */
 size_t ef__scout_starts(const ef__scout *scout, const ef_metric *metric,
-                        const double target[3],
+                        const double target[3], double limit,
                         ef__start start[EF__MAX_SCOUTED]);
 
 /* ---- Nearest colour (nearest.c) ---------------------------------------- */
@@ -120,6 +121,9 @@ typedef struct ef__minima {
  * `exact` are amounts outside the box that match, or any point to start from
  * (clamped). */
 void ef__nearest(ef__search *search, const double exact[3], ef__minima *out);
+/** Down from `amount`; what is found joins the minima. */
+void ef__nearest_from(ef__search *search, const double amount[3],
+                      ef__minima *minima);
 
 /* ---- Hue and lightness kept (hue_kept.c) ------------------------------- */
 

@@ -10,7 +10,8 @@
 
 /* How far a basin may lead down from the point of the look over the gamut that
  * lies in it, and from a point near the neutral axis, where basins are narrow.
- * With 4 instead of 8, 26 of 4000 far targets miss the nearest colour (srgb). */
+ * With 4 instead of 8, 26 of 4000 far targets miss the nearest colour (srgb).
+ */
 #define DEPTH 8.0
 #define DEPTH_NEAR_AXIS 16.0
 
@@ -24,14 +25,18 @@ static bool is_same(const double a[3], const double b[3]) {
 static void keep(ef__minima *minima, const ef__place *place) {
   size_t i = minima->n;
   for (size_t k = 0; k < minima->n; ++k) {
-    if (!is_same(minima->at[k].amount, place->amount)) continue;
-    if (!(place->square < minima->at[k].square)) return;
+    if (!is_same(minima->at[k].amount, place->amount))
+      continue;
+    if (!(place->square < minima->at[k].square))
+      return;
     /* Makes way for the better one. */
-    for (i = --minima->n; k < i; ++k) minima->at[k] = minima->at[k + 1];
+    for (i = --minima->n; k < i; ++k)
+      minima->at[k] = minima->at[k + 1];
     break;
   }
   if (minima->n == EF__MAX_MINIMA) {
-    if (!(place->square < minima->at[i - 1].square)) return;
+    if (!(place->square < minima->at[i - 1].square))
+      return;
     --i;
   } else {
     ++minima->n;
@@ -65,14 +70,17 @@ static bool look_around(ef__search *search, double reach, ef__place *place) {
       inside = inside && to[i] >= 0 && to[i] <= 1;
       long_enough = long_enough || abs(digit[i]) == 2;
     }
-    if (!inside || !long_enough) continue;
+    if (!inside || !long_enough)
+      continue;
     const double square = ef__search_value(search, to);
-    if (!(square < least)) continue;
+    if (!(square < least))
+      continue;
     least = square;
     memcpy(best, to, sizeof best);
     found = true;
   }
-  if (found) memcpy(place->amount, best, sizeof best);
+  if (found)
+    memcpy(place->amount, best, sizeof best);
   return found;
 }
 
@@ -81,8 +89,7 @@ static bool nudge(ef__search *search, ef__place *place) {
   return look_around(search, 1e-5, place) || look_around(search, 1e-7, place);
 }
 
-static bool on_neutral_axis(const ef__search *search,
-                            const double amount[3]) {
+static bool on_neutral_axis(const ef__search *search, const double amount[3]) {
   double c[3];
   coordinates_at(search, amount, c);
   return c[1] * c[1] + c[2] * c[2] < 1e-6;
@@ -92,7 +99,8 @@ static void descend_from(ef__search *search, const double amount[3],
                          ef__minima *minima) {
   enum { MOST_NUDGES = 4 };
   ef__place place;
-  for (int i = 0; i < 3; ++i) place.amount[i] = ef__clamp(amount[i], 0, 1);
+  for (int i = 0; i < 3; ++i)
+    place.amount[i] = ef__clamp(amount[i], 0, 1);
   bool smooth = ef__descend(search, &place);
   if (!smooth && search->metric->jumps_at_opposite_hue) {
     smooth = ef__descend_edge(search, &place);
@@ -103,9 +111,11 @@ static void descend_from(ef__search *search, const double amount[3],
       break;
     }
     ef__place next = place;
-    if (!nudge(search, &next)) break;
+    if (!nudge(search, &next))
+      break;
     smooth = ef__descend(search, &next);
-    if (!(next.square < place.square)) break;
+    if (!(next.square < place.square))
+      break;
     place = next;
   }
   keep(minima, &place);
@@ -117,57 +127,33 @@ static void leave_box(const ef__search *search, const double exact[3],
                       double amount[3]) {
   const double grey[3] = {ef__clamp(search->target[0], 1, 99), 0, 0};
   double from[3];
-  ef__exact(
-      search->mixing,
-      ef_metric_xyz(search->metric, grey, &search->mixing->conditions), from);
+  ef__exact(search->mixing,
+            ef_metric_xyz(search->metric, grey, &search->mixing->conditions),
+            from);
   double share = 1;
   for (int i = 0; i < 3; ++i) {
     from[i] = ef__clamp(from[i], 0, 1);
     const double way = exact[i] - from[i];
     const double room = way > 0 ? 1 - from[i] : -from[i];
-    if (fabs(share * way) > fabs(room)) share = room / way;
+    if (fabs(share * way) > fabs(room))
+      share = room / way;
   }
   for (int i = 0; i < 3; ++i) {
     amount[i] = from[i] + share * (exact[i] - from[i]);
   }
 }
 
-/* True when the difference only falls on the straight way to the least minimum
- * found: a descent would most likely lead there. */
-static bool leads_to_least(ef__search *search, const double amount[3],
-                           double square, const ef__minima *minima) {
-  static const double shares[] = {0.3, 0.65};
-  const double *const to = minima->at[0].amount;
-  double before = square;
-  for (int s = 0; s < 2; ++s) {
-    double at[3];
-    for (int i = 0; i < 3; ++i) {
-      at[i] = amount[i] + shares[s] * (to[i] - amount[i]);
-    }
-    const double here = ef__search_value(search, at);
-    if (!(here < before)) return false;
-    before = here;
-  }
-  return minima->at[0].square < before;
-}
-
 /* From the low points of a look over the gamut that promise something; where
  * colours do not add the gamut may be folded, and all are tried. */
 static void search_scouted(ef__search *search, ef__minima *out) {
   ef__start start[EF__MAX_SCOUTED];
+  const bool affine = search->mixing->affine;
+  const double limit =
+      affine ? sqrt(out->at[0].square) + DEPTH : (double)INFINITY;
   const size_t n = ef__scout_starts(search->mixing->scout, search->metric,
-                                    search->target, start);
-  for (size_t i = 0; i < n; ++i) {
-    const double difference = start[i].difference;
-    if (search->mixing->affine) {
-      if (difference > sqrt(out->at[0].square) + DEPTH) return;
-      if (leads_to_least(search, start[i].amount, difference * difference,
-                         out)) {
-        continue;
-      }
-    }
+                                    search->target, limit, start);
+  for (size_t i = 0; i < n; ++i)
     descend_from(search, start[i].amount, out);
-  }
 }
 
 static void search_decoys(ef__search *search, ef__minima *out) {
@@ -175,32 +161,40 @@ static void search_decoys(ef__search *search, ef__minima *out) {
   const size_t n =
       search->metric->decoys(search->metric, search->target, start);
   for (size_t i = 0; i < n; ++i) {
-    /* Near black and white there is no room for chroma. */
-    start[i][0] = ef__clamp(start[i][0], 5, 96);
     ef__exact(
         search->mixing,
         ef_metric_xyz(search->metric, start[i], &search->mixing->conditions),
         amount);
-    for (int k = 0; k < 3; ++k) amount[k] = ef__clamp(amount[k], 0, 1);
+    for (int k = 0; k < 3; ++k)
+      amount[k] = ef__clamp(amount[k], 0, 1);
     const double difference = sqrt(ef__search_value(search, amount));
-    if (difference > sqrt(out->at[0].square) + DEPTH_NEAR_AXIS) continue;
+    if (difference > sqrt(out->at[0].square) + DEPTH_NEAR_AXIS)
+      continue;
     descend_from(search, amount, out);
   }
 }
 
 void ef__nearest(ef__search *search, const double exact[3], ef__minima *out) {
   double left[3], clipped[3];
-  for (int i = 0; i < 3; ++i) clipped[i] = ef__clamp(exact[i], 0, 1);
+  for (int i = 0; i < 3; ++i)
+    clipped[i] = ef__clamp(exact[i], 0, 1);
   leave_box(search, exact, left);
   const bool left_is_better =
       ef__search_value(search, left) < ef__search_value(search, clipped);
   out->n = 0;
   descend_from(search, left_is_better ? left : clipped, out);
   /* The law test finds other basins only beyond some such difference. */
-  if (search->mixing->affine && out->at[0].square < 49) return;
+  if (search->mixing->affine && out->at[0].square < 49)
+    return;
   if (!search->mixing->affine) {
     descend_from(search, left_is_better ? clipped : left, out);
   }
   search_scouted(search, out);
-  if (search->metric->decoys != NULL) search_decoys(search, out);
+  if (search->metric->decoys != NULL)
+    search_decoys(search, out);
+}
+
+void ef__nearest_from(ef__search *search, const double amount[3],
+                      ef__minima *minima) {
+  descend_from(search, amount, minima);
 }

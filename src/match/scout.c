@@ -89,7 +89,7 @@ static bool is_low(const ef__scout *scout, const double *difference,
 }
 
 size_t ef__scout_starts(const ef__scout *scout, const ef_metric *metric,
-                        const double target[3],
+                        const double target[3], double limit,
                         ef__start start[EF__MAX_SCOUTED]) {
   double reference[3 * MOST_POINTS], difference[MOST_POINTS];
   int low[EF__MAX_SCOUTED];
@@ -101,6 +101,7 @@ size_t ef__scout_starts(const ef__scout *scout, const ef_metric *metric,
   ef_metric_difference_batch(metric, (size_t)scout->n_points, reference,
                              scout->coordinate, 1, difference);
   for (int p = 0; p < scout->n_points; ++p) {
+    if (!(difference[p] <= limit)) continue;
     if (n == EF__MAX_SCOUTED && !(difference[p] < difference[low[n - 1]])) {
       continue;
     }
