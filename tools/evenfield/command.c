@@ -165,6 +165,17 @@ static const command_entry table[] = {
       "evenfield profile convert --to p3-d65 demo:livery",
       "evenfield profile convert --from srgb --to lab "
       "demo:kiosk-measurements"}},
+    {"image",
+     COMMAND_IMAGE,
+     "gamut PICTURE.png [MAP.png]",
+     "which pixels of a picture can a display not show, and where?",
+     {"Reads a PNG picture by its own colour tags (cICP, iCCP, sRGB, gAMA with "
+      "cHRM) and tells the share of its pixels that the display cannot show, "
+      "how far its nearest colours are off, and where: MAP shows the picture "
+      "in pale grey with lines over what is missed, the denser the more.",
+      "A picture without tags needs --assume: its colours are not guessed."},
+     command_image,
+     {NULL}},
     {"swatch",
      COMMAND_SWATCH,
      "[TARGETS | LEFT RIGHT]",

@@ -25,6 +25,7 @@ exit_code command_match(const command_options *options);
 exit_code command_observer(const command_options *options);
 exit_code command_panel(const command_options *options);
 exit_code command_profile(const command_options *options);
+exit_code command_image(const command_options *options);
 exit_code command_swatch(const command_options *options);
 exit_code command_tables(const command_options *options);
 

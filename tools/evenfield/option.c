@@ -81,8 +81,8 @@ static const char *const interval_methods[] = {"profile", "bootstrap", NULL};
 #define EVERY                                                                  \
   (READING | COMMAND_TABLES | COMMAND_OBSERVER | COMMAND_ISOLATE |             \
    COMMAND_PANEL |             \
-   COMMAND_PROFILE)
-#define LIT (SHOWING | COMMAND_PROFILE) /* a display and the light on it */
+   COMMAND_PROFILE | COMMAND_IMAGE)
+#define LIT (SHOWING | COMMAND_PROFILE | COMMAND_IMAGE) /* a display and the light on it */
 
 static const option_row table[] = {
     {"change", "DIRECTION", COMMAND_ISOLATE, TYPE_TEXT, FIELD(change), 0, 0,
@@ -232,6 +232,16 @@ static const option_row table[] = {
      FIELD(contrast_from), 0, 0, NULL,
      "the background that cone contrasts are taken from, written like --at; "
      "default the white"},
+    {"assume", "PROFILE", COMMAND_IMAGE, TYPE_TEXT, FIELD(assume), 0, 0, NULL,
+     "what the samples of a picture stand for, a profile or a published "
+     "encoding such as srgb; needed where it has no colour tags, and taken in "
+     "the place of those it has"},
+    {"check", NULL, COMMAND_IMAGE, TYPE_FLAG, FIELD(check), 0, 0, NULL,
+     "exit with status 1 when a pixel is off by more than the tolerance"},
+    {"display", "DISPLAY", COMMAND_IMAGE, TYPE_TEXT, FIELD(display), 0, 0, NULL,
+     "a file with the spectra of the primaries at full drive or with measured "
+     "rows (R,G,B and X,Y,Z or a spectrum), a published encoding such as "
+     "bt709, or demo:NAME"},
     {"from", "PROFILE", COMMAND_PROFILE, TYPE_TEXT, FIELD(from), 0, 0, NULL,
      "convert: the profile that the device values belong to, a file or a "
      "published encoding such as srgb; default: the file holds colours"},
@@ -399,7 +409,7 @@ static const option_row table[] = {
     {"adaptation", "NAME", MATCHING, TYPE_TEXT, FIELD(adaptation), 0, 0, NULL,
      "from the targets' white to the display's: cat16, bradford or none; "
      "default cat16, none for lights and for targets in cd/m2"},
-    {"metric", "NAME", DIFFERING | COMMAND_PROFILE, TYPE_TEXT, FIELD(metric), 0, 0, NULL,
+    {"metric", "NAME", DIFFERING | COMMAND_PROFILE | COMMAND_IMAGE, TYPE_TEXT, FIELD(metric), 0, 0, NULL,
      "how differences are measured, a name from `evenfield tables metrics`, "
      "with parameters as in ciede2000:kl=2; default ciede2000"},
     {"jnd", "VALUE|FILE", THRESHOLDS, TYPE_TEXT, FIELD(jnd_text), 0, 0, NULL,
@@ -419,7 +429,7 @@ static const option_row table[] = {
     {"spread", "SD", COMMAND_COMPARE, TYPE_NUMBER, FIELD(spread), 0, 3, NULL,
      "how JNDs differ from person to person: the standard deviation of their "
      "natural logarithm; default 0.28, or what the file of the JND says"},
-    {"jnd", "VALUE", MATCHING | COMMAND_PROFILE, TYPE_NUMBER, FIELD(jnd), 1e-6, 1e6, NULL,
+    {"jnd", "VALUE", MATCHING | COMMAND_PROFILE | COMMAND_IMAGE, TYPE_NUMBER, FIELD(jnd), 1e-6, 1e6, NULL,
      "the difference that is just noticed, in units of the metric; default: "
      "the published one of the metric"},
     {"white-luminance", "CD", THRESHOLDS, TYPE_NUMBER, FIELD(white_cd_m2), 1e-6,
@@ -476,7 +486,7 @@ static const option_row table[] = {
      "FORMULA:VALUE; default one JND"},
     {"check", NULL, COMMAND_MATCH, TYPE_FLAG, FIELD(check), 0, 0, NULL,
      "exit with status 1 when a target's difference exceeds the tolerance"},
-    {"tolerance", "VALUE", COMMAND_MATCH | COMMAND_PROFILE, TYPE_NUMBER, FIELD(tolerance), 0, 1e6,
+    {"tolerance", "VALUE", COMMAND_MATCH | COMMAND_PROFILE | COMMAND_IMAGE, TYPE_NUMBER, FIELD(tolerance), 0, 1e6,
      NULL, "for --check, in units of the metric; default one JND"},
     {"population", "N", COMMAND_OBSERVER, TYPE_WHOLE, FIELD(population), 1,
      EF_POPULATION_MOST, NULL,
@@ -638,7 +648,7 @@ static const option_row table[] = {
      "threads to use; default 0, one for each core; changes no result"},
     {"skip-bad", NULL, READING | COMMAND_PROFILE, TYPE_FLAG, FIELD(skip_bad), 0, 0, NULL,
      "leave out rows that are at fault, and count them"},
-    {"jobs", "N", READING | COMMAND_OBSERVER | COMMAND_ISOLATE | COMMAND_PROFILE, TYPE_INTEGER,
+    {"jobs", "N", READING | COMMAND_OBSERVER | COMMAND_ISOLATE | COMMAND_PROFILE | COMMAND_IMAGE, TYPE_INTEGER,
      FIELD(jobs), 0, 4096, NULL,
      "threads to use; default 0, one for each core; changes no result"},
     {"format", "text|csv|json", COMMAND_OBSERVER, TYPE_CHOICE, FIELD(format), 0,

@@ -23,7 +23,8 @@ typedef enum command_bit {
   COMMAND_COMPARE = 64,
   COMMAND_PANEL = 128,
   COMMAND_ISOLATE = 256,
-  COMMAND_PROFILE = 4096
+  COMMAND_PROFILE = 4096,
+  COMMAND_IMAGE = 8192
 } command_bit;
 
 typedef enum output_format {
@@ -71,6 +72,7 @@ typedef struct command_options {
   int specular; /**< 0 included, 1 excluded */
   bool single_constant;
   const char *profile; /**< of match and swatch */
+  const char *assume; /**< of image */
   const char *from, *to, *intent, *description; /**< of profile */
   bool scale_black;                             /**< likewise */
   double ambient_lux, reflectance, luminance_cd_m2, jnd, tolerance, device_max;
