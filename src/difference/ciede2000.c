@@ -212,18 +212,20 @@ static void best_around(const ef_metric *self, const double reference[3],
 /* Colours of some chroma have a second minimum near the axis, about opposite to
  * them, narrow for the rotation term and the root in dH' (eq. 11): the best of
  * a few points there leads into it. Near black and white there is no room for
- * chroma; for references darker than black the minimum lies close to the axis
- * at the lightness below which there is none. */
+ * chroma; for references darker than black the minimum lies close to the axis,
+ * where L* stops being straight or close to black. */
 static size_t decoys(const ef_metric *self, const double reference[3],
                      double place[EF__MAX_DECOYS][3]) {
-  static const double rings[MOST_RINGS] = {3.5, 8}, dark_ring = 0.4;
+  static const double rings[MOST_RINGS] = {3.5, 8};
+  static const double dark_ring = 0.4, darkest_ring = 0.8;
   const double L_star = reference[0];
   const double lightness = L_star < 5 ? 5 : L_star > 96 ? 96 : L_star;
   best_around(self, reference, lightness, 2, rings, place[0]);
   if (L_star >= 5)
     return 1;
   best_around(self, reference, 4, 1, &dark_ring, place[1]);
-  return 2;
+  best_around(self, reference, 0.7, 1, &darkest_ring, place[2]);
+  return 3;
 }
 
 const ef_metric ef__metric_ciede2000 = {

@@ -18,7 +18,7 @@ typedef struct ef__expansion {
 } ef__expansion;
 
 /** The most places that `decoys` names. */
-enum { EF__MAX_DECOYS = 2 };
+enum { EF__MAX_DECOYS = 3 };
 
 /** The most parameters that a formula has. */
 #define EF__MAX_PARAMETERS 5

@@ -190,7 +190,11 @@ void ef__quantise(ef__search *search, const ef__lattice *lattice,
       }
     }
   }
-  if (!whole && ef__boxes_apply(search->mixing, search->metric)) {
+  /* Of a target darker than black no start is sure to lead into the best of
+   * the narrow basins near the axis. */
+  const bool is_below_black = search->target[0] < 0;
+  if ((!whole || is_below_black) &&
+      ef__boxes_apply(search->mixing, search->metric)) {
     ef__search_boxes(search, lattice, w.least_code, &w.least);
   }
   memcpy(code, w.least_code, sizeof w.least_code);
