@@ -28,7 +28,7 @@ static void fill_row(void *cookie, size_t y, uint16_t *row) {
 
 static void run_ours(void *context) {
   (void)context;
-  const ef_png_rows rows = {fill_row, NULL};
+  const ef_png_rows rows = {.fill = fill_row};
   ef_error error;
   if (ef_png_write_rows(path, true, SIDE, SIDE, bits, &rows, NULL, &error) ==
       EF_OK)
