@@ -523,8 +523,7 @@ static void percent_becomes_ratios(void **state) {
       "# quantity: reflectance\n# unit: percent\nname,400,410\nd,23.1,0.75\n",
       "# unit: reflectance in percent\nname,400,410\nd,23.1,0.75\n",
       "# quantity: radiance factor\n# unit: %\nname;400;410\nd;23,1;0,75\n",
-      "# quantity: reflectance\n# unit: %\nwavelength_nm,d\n400,23.1\n"
-      "410,0.75\n"};
+      "# quantity: reflectance\n# unit: %\nwavelength_nm,d\n400,23.1\n410,0.75\n"};
   for (size_t i = 0; i < sizeof texts / sizeof *texts; ++i) {
     ef_reader *const reader = open_with(texts[i], NULL);
     assert_int_equal(ef_reader_get_head(reader)->kind, EF_SURFACE);

@@ -55,7 +55,7 @@ static void cube_roots(void **state) {
   for (size_t t = 0; (k = ef__kernels_at(t)) != NULL; ++t) {
     k->cube_root(N, x_of, out);
     ulps u = {0};
-    for (size_t i = 0; i < N; ++i) add(&u, out[i], cbrtl(x_of[i]), x_of[i]);
+    for (size_t i = 0; i < N; ++i) add(&u, out[i], cbrtl((long double)x_of[i]), x_of[i]);
     within(&u, 1, "cube root");
     const double zero = 0;
     k->cube_root(1, &zero, out);
@@ -74,7 +74,7 @@ static void exponentials(void **state) {
   for (size_t t = 0; (k = ef__kernels_at(t)) != NULL; ++t) {
     k->exp(N, x_of, out);
     ulps u = {0};
-    for (size_t i = 0; i < N; ++i) add(&u, out[i], expl(x_of[i]), x_of[i]);
+    for (size_t i = 0; i < N; ++i) add(&u, out[i], expl((long double)x_of[i]), x_of[i]);
     within(&u, 1, "exp");
     const double far[] = {-708.5, -1e6, -1e300};
     k->exp(3, far, out);
@@ -98,7 +98,7 @@ static void logarithms(void **state) {
     ulps u = {0};
     for (size_t i = 0; i < N; ++i) {
       if (x_of[i] == 1) assert_true(out[i] == 0);
-      else add(&u, out[i], logl(x_of[i]), x_of[i]);
+      else add(&u, out[i], logl((long double)x_of[i]), x_of[i]);
     }
     within(&u, 1, "log");
   }
@@ -120,8 +120,8 @@ static void powers(void **state) {
       k->power(N, x_of, y, out);
       ulps u = {0};
       for (size_t i = 0; i < N; ++i) {
-        const long double exact = powl(x_of[i], y);
-        const double off = (double)fabsl(out[i] / exact - 1) / DBL_EPSILON /
+        const long double exact = powl((long double)x_of[i], (long double)y);
+        const double off = (double)fabsl((long double)out[i] / exact - 1) / DBL_EPSILON /
                            (1 + fabs(y * log(x_of[i])));
         if (!(off <= u.largest)) u = (ulps){off, x_of[i]};
       }
@@ -150,8 +150,8 @@ static void sines_and_cosines(void **state) {
     k->sin_cos(N, x_of, out, second);
     ulps u = {0}, v = {0};
     for (size_t i = 0; i < N; ++i) {
-      add(&u, out[i], sinl(x_of[i]), x_of[i]);
-      add(&v, second[i], cosl(x_of[i]), x_of[i]);
+      add(&u, out[i], sinl((long double)x_of[i]), x_of[i]);
+      add(&v, second[i], cosl((long double)x_of[i]), x_of[i]);
     }
     within(&u, 2, "sin");
     within(&v, 2, "cos");
@@ -181,7 +181,7 @@ static void angles(void **state) {
     k->atan2(N, y_of, x_of, out);
     ulps u = {0};
     for (size_t i = 0; i < N; ++i) {
-      const long double exact = atan2l(y_of[i], x_of[i]);
+      const long double exact = atan2l((long double)y_of[i], (long double)x_of[i]);
       if (exact == 0) assert_true(out[i] == 0);
       else add(&u, out[i], exact, y_of[i] / x_of[i]);
     }

@@ -244,7 +244,7 @@ static void add_intents(const profile_fit *f, text *out) {
   size_t n = 0;
   for (int i = EF_INTENT_PERCEPTUAL; i <= EF_INTENT_ABSOLUTE; ++i) {
     if (f->info.has_intent[i])
-      text_format(&t, "%s%s", n++ == 0 ? "" : ", ", ef_intent_name(i));
+      text_format(&t, "%s%s", n++ == 0 ? "" : ", ", ef_intent_name((ef_intent)i));
   }
   text_add(&t, n > 0 ? "" : "none has a table of its own");
   text_label(out, "Intents", &t);
