@@ -53,6 +53,26 @@ static void codes_range(void *context, size_t begin, size_t end) {
                               w->out + 3 * begin);
 }
 
+static void rgb_range(void *context, size_t begin, size_t end) {
+  const work *const w = context;
+  ef__kernels()->rgb_to_xyz(end - begin, w->rgb + 3 * begin, w->decoder->tone,
+                            w->decoder->matrix, w->out + 3 * begin);
+}
+
+/* All pixels of `w`, whose decoder is made here. */
+static ef_status decode(const ef_encoding *encoding, const double factor[3],
+                        size_t n, int jobs,
+                        void (*range)(void *, size_t, size_t), work *w,
+                        ef_error *error) {
+  decoder d;
+  const ef_status status = decoder_set(encoding, factor, &d, error);
+  if (status != EF_OK)
+    return status;
+  w->decoder = &d;
+  ef__parallel_for(n, CHUNK, jobs, range, w);
+  return EF_OK;
+}
+
 ef_status ef_encoding_codes_to_lab(const ef_encoding *encoding, size_t n,
                                    const uint8_t *rgb, int jobs, double *lab,
                                    ef_error *error) {
@@ -60,30 +80,14 @@ ef_status ef_encoding_codes_to_lab(const ef_encoding *encoding, size_t n,
   /* The white has Y = 1; Lab is relative to it. */
   const double factor[3] = {white.y / white.x, 1,
                             white.y / (1 - white.x - white.y)};
-  decoder d;
-  const ef_status status = decoder_set(encoding, factor, &d, error);
-  if (status != EF_OK)
-    return status;
-  work w = {&d, rgb, NULL, lab};
-  ef__parallel_for(n, CHUNK, jobs, codes_range, &w);
-  return EF_OK;
-}
-
-static void rgb_range(void *context, size_t begin, size_t end) {
-  const work *const w = context;
-  ef__kernels()->rgb_to_xyz(end - begin, w->rgb + 3 * begin, w->decoder->tone,
-                            w->decoder->matrix, w->out + 3 * begin);
+  work w = {.code = rgb, .out = lab};
+  return decode(encoding, factor, n, jobs, codes_range, &w, error);
 }
 
 ef_status ef_encoding_rgb_to_xyz(const ef_encoding *encoding, size_t n,
                                  const float *rgb, int jobs, double *xyz,
                                  ef_error *error) {
   const double factor[3] = {100, 100, 100};
-  decoder d;
-  const ef_status status = decoder_set(encoding, factor, &d, error);
-  if (status != EF_OK)
-    return status;
-  work w = {&d, NULL, rgb, xyz};
-  ef__parallel_for(n, CHUNK, jobs, rgb_range, &w);
-  return EF_OK;
+  work w = {.rgb = rgb, .out = xyz};
+  return decode(encoding, factor, n, jobs, rgb_range, &w, error);
 }
