@@ -71,10 +71,10 @@ typedef struct ef_reader ef_reader;
  * (400, 400nm, nm400): wide spectra; L,a,b / X,Y,Z / x,y,Y; R,G,B / C,M,Y
  * (or red,green,blue / cyan,magenta,yellow) device values beside any of these
  * or alone, with inks a fourth K (black); where C,M,Y stand side by side and
- * another column is Y, theirs is yellow; `name` anywhere, and `angle_deg` (or `angle`) for one of several
- * angles at which a sample was measured (not in long spectra). Case counts: x
- * is not X. Where several sets are there, spectra come first, then X,Y,Z, x,y,Y,
- * L,a,b; columns that are not used are noted. Comment lines above the header
+ * another column is Y, theirs is yellow; `name` anywhere, and `angle_deg` (or
+ * `angle`) for one of several angles at which a sample was measured (not in
+ * long spectra). Case counts: x is not X. Where several sets are there, spectra
+ * come first, then X,Y,Z, x,y,Y, L,a,b; columns that are not used are noted. Comment lines above the header
  * `# title:`, `# quantity:`, `# unit:`, `# device_max:` are understood.
  *
  * Also the text form of CGATS.17 and ISO 28178, known by its first word or by a
@@ -94,8 +94,9 @@ typedef struct ef_reader ef_reader;
  * of the largest value of their row (of their file for long spectra): that is
  * the noise of an instrument, and it is kept. Refused: lower values of lights,
  * values of surfaces below -0.02 or above 2 (percent is read where a line
- * `# unit: percent` says so, and becomes ratios), Y or L below zero, chromaticities without y, device values below zero or above full
- * drive, text in a number, nan, inf, wavelengths that are duplicate, unsorted
+ * `# unit: percent` says so, and becomes ratios), Y or L below zero,
+ * chromaticities without y, device values below zero or above full drive, text
+ * in a number, nan, inf, wavelengths that are duplicate, unsorted
  * or outside 100 to 10000 nm, repeated column names, ragged rows, lines above
  * 4 MiB, quoted fields above 64 KiB, more than 16384 columns. */
 EF_API ef_reader *ef_reader_open(const char *path,
