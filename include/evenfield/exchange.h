@@ -74,8 +74,8 @@ typedef struct ef_reader ef_reader;
  * another column is Y, theirs is yellow; `name` anywhere, and `angle_deg` (or
  * `angle`) for one of several angles at which a sample was measured (not in
  * long spectra). Case counts: x is not X. Where several sets are there, spectra
- * come first, then X,Y,Z, x,y,Y, L,a,b; columns that are not used are noted. Comment lines above the header
- * `# title:`, `# quantity:`, `# unit:`, `# device_max:` are understood.
+ * come first, then X,Y,Z, x,y,Y, L,a,b; columns that are not used are noted.
+ * Comment lines above the header `# title:`, `# quantity:`, `# unit:`, `# device_max:` are understood.
  *
  * Also the text form of CGATS.17 and ISO 28178, known by its first word or by a
  * BEGIN_DATA_FORMAT among the first bytes, and held whole (at most 256 MiB): the
