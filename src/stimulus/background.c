@@ -161,7 +161,7 @@ static bool reaches(const question *q, double t) {
   p.high[s] = most_s(q, t);
   p.low[s] = -p.high[s];
   p.gain[s] = 1;
-  return ef__table_solve(&p, q->simplex, x, &value) == EF__SIMPLEX_BEST &&
+  return ef__table_solve_next(&p, q->simplex, x, &value) == EF__SIMPLEX_BEST &&
          value >= 0;
 }
 
@@ -177,7 +177,7 @@ static bool take_background(const question *q, double t, double *background) {
     background[i] = 0;
   for (size_t k = 0; k < n_ends; ++k) {
     p.gain[k / 2] = k % 2 == 0 ? 1 : -1;
-    if (ef__table_solve(&p, q->simplex, x, &value) != EF__SIMPLEX_BEST)
+    if (ef__table_solve_next(&p, q->simplex, x, &value) != EF__SIMPLEX_BEST)
       return false;
     p.gain[k / 2] = 0;
     for (size_t i = 0; i < n; ++i) {

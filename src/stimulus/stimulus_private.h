@@ -25,7 +25,7 @@ struct ef_stimulator {
                          without it */
 };
 
-/* ---- Linear programmes (table.c) ---------------------------------------- */
+/* ---- Linear programmes (table.c, tableau.c) ----------------------------- */
 
 enum {
   EF__TABLE_ROWS = 2 * EF_N_RECEPTORS + 1,
@@ -44,9 +44,16 @@ typedef struct ef__table {
 
 /** Fills `x`, within its limits and on the rows to rounding, and the gain
  * there, when the end is EF__SIMPLEX_BEST. `simplex` is one for tables of this
- * size and may hold the end of another. */
+ * size; what it ended with before does not matter. */
 ef__simplex_end ef__table_solve(const ef__table *table, ef__simplex *simplex,
                                 double *x, double *value);
+/** The same from where the last one ended, for a series that changes little. */
+ef__simplex_end ef__table_solve_next(const ef__table *table,
+                                     ef__simplex *simplex, double *x,
+                                     double *value);
+/** Fills `x` where it can be proved; false, and `x` untouched, when it cannot:
+ * without an answer, or where rows are all but dependent. */
+bool ef__tableau_solve(const ef__table *table, double *x);
 
 /** Moves x, within its limits, as close to the rows as rounding allows, and no
  * more than that takes; what stands at a limit stays there. */

@@ -1,7 +1,9 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-/* Linear programmes of this folder: the solver of src/base, and its answer
- * brought back onto the rows. The solver lets a variable be outside its limits
- * by a little and then puts it on them, which a silent receptor would hear. */
+/* Linear programmes of this folder. One by itself is solved on a tableau, with
+ * proof. One of a series, and what could not be proved, goes to the solver of
+ * src/base, whose answer is brought back onto the rows: it lets a variable be
+ * outside its limits by a little and then puts it on them, which a silent
+ * receptor would hear. */
 #include <float.h>
 #include <math.h>
 #include <string.h>
@@ -67,8 +69,15 @@ void ef__table_bring_onto_rows(const ef__table *t, double *x) {
   }
 }
 
-ef__simplex_end ef__table_solve(const ef__table *t, ef__simplex *simplex,
-                                double *x, double *value) {
+static double gain_of(const ef__table *t, const double *x) {
+  double sum = 0;
+  for (size_t j = 0; j < t->n_columns; ++j)
+    sum += t->gain[j] * x[j];
+  return sum;
+}
+
+ef__simplex_end ef__table_solve_next(const ef__table *t, ef__simplex *simplex,
+                                     double *x, double *value) {
   double column[EF__TABLE_ROWS * EF__TABLE_COLUMNS];
   for (size_t i = 0; i < t->n_rows; ++i) {
     for (size_t j = 0; j < t->n_columns; ++j)
@@ -86,8 +95,16 @@ ef__simplex_end ef__table_solve(const ef__table *t, ef__simplex *simplex,
   if (end != EF__SIMPLEX_BEST)
     return end;
   ef__table_bring_onto_rows(t, x);
-  *value = 0;
-  for (size_t j = 0; j < t->n_columns; ++j)
-    *value += t->gain[j] * x[j];
+  *value = gain_of(t, x);
   return end;
+}
+
+ef__simplex_end ef__table_solve(const ef__table *t, ef__simplex *simplex,
+                                double *x, double *value) {
+  if (ef__tableau_solve(t, x)) {
+    *value = gain_of(t, x);
+    return EF__SIMPLEX_BEST;
+  }
+  ef__simplex_restart(simplex);
+  return ef__table_solve_next(t, simplex, x, value);
 }

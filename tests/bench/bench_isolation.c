@@ -41,7 +41,6 @@ static void run_ours(void *context) {
   contest *const c = context;
   for (size_t k = 0; k < PROGRAMMES; ++k) {
     double x[EF_MAX_DRIVES + 1];
-    ef__simplex_restart(c->simplex);
     if (ef__table_solve(&c->table[k], c->simplex, x, &c->value[k]) !=
         EF__SIMPLEX_BEST) {
       c->value[k] = (double)NAN;

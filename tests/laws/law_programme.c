@@ -42,14 +42,6 @@ static void fill(gen *g, size_t m, size_t n, bool feasible, ef__table *p) {
   }
 }
 
-static ef__simplex_end solve(const ef__table *p, double *x, double *value) {
-  ef__simplex *simplex = ef__simplex_new(p->n_rows, p->n_columns);
-  assert_non_null(simplex);
-  const ef__simplex_end end = ef__table_solve(p, simplex, x, value);
-  ef__simplex_free(simplex);
-  return end;
-}
-
 static void rows_and_bounds_hold(const ef__table *p, const double *x) {
   const size_t m = p->n_rows, n = p->n_columns;
   for (size_t j = 0; j < n; j++) {
@@ -62,6 +54,22 @@ static void rows_and_bounds_hold(const ef__table *p, const double *x) {
       sum += p->row[i * n + j] * x[j];
     assert_near(sum, 0, 1e-12);
   }
+}
+
+/* By itself and as one of a series. */
+static ef__simplex_end solve(const ef__table *p, double *x, double *value) {
+  double y[EF__TABLE_COLUMNS], other;
+  ef__simplex *simplex = ef__simplex_new(p->n_rows, p->n_columns);
+  assert_non_null(simplex);
+  assert_int_equal(ef__table_solve_next(p, simplex, y, &other),
+                   ef__table_solve(p, simplex, x, value));
+  const ef__simplex_end end = ef__table_solve_next(p, simplex, y, &other);
+  ef__simplex_free(simplex);
+  if (end == EF__SIMPLEX_BEST) {
+    rows_and_bounds_hold(p, y);
+    assert_near(other, *value, 1e-11);
+  }
+  return end;
 }
 
 /* ---- All corners -------------------------------------------------------- */
