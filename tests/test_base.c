@@ -441,6 +441,47 @@ static void unknown_name_is_answered_with_near_ones(void **state) {
   assert_false(ef__name_equal("cie-d6", "cie-d65"));
 }
 
+/* ---- Quantiles ---------------------------------------------------------- */
+
+static int by_value(const void *a, const void *b) {
+  const double x = *(const double *)a, y = *(const double *)b;
+  return (x > y) - (x < y);
+}
+
+static void quantile_by_hand(void **state) {
+  (void)state;
+  double value[] = {7.0, 1.0, 3.0, 2.0};
+  assert_near(ef_quantile(4, value, 0.0), 1.0, 0.0);
+  assert_near(ef_quantile(4, value, 0.5), 2.5, 0.0);
+  assert_near(ef_quantile(4, value, 0.75), 4.0, 0.0);
+  assert_near(ef_quantile(4, value, 1.0), 7.0, 0.0);
+  double one = 37.23;
+  assert_near(ef_quantile(1, &one, 0.3), 37.23, 0.0);
+}
+
+/* The definition on sorted values, whatever the order and however many are
+ * equal. */
+static void quantile_is_that_of_sorted_values(void **state) {
+  (void)state;
+  gen g = gen_new(20261201);
+  for (int round = 0; round < 300; ++round) {
+    double value[40], sorted[40];
+    const size_t n = 1 + (size_t)(gen_unit(&g) * 39.99);
+    const double grain = gen_unit(&g) < 0.5 ? 4.0 : 1e6;
+    for (size_t i = 0; i < n; ++i)
+      value[i] = sorted[i] = floor(grain * gen_unit(&g));
+    qsort(sorted, n, sizeof *sorted, by_value);
+    const double p = gen_unit(&g);
+    const double at = p * (double)(n - 1);
+    const size_t k = (size_t)at;
+    const double next = k + 1 < n ? sorted[k + 1] : sorted[k];
+    assert_near(ef_quantile(n, value, p),
+                sorted[k] + (at - (double)k) * (next - sorted[k]), 0.0);
+    qsort(value, n, sizeof *value, by_value); /* none is lost */
+    assert_memory_equal(value, sorted, n * sizeof *value);
+  }
+}
+
 int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(status_texts_are_distinct),
@@ -460,6 +501,8 @@ int main(void) {
       cmocka_unit_test(solve_returns_the_solution),
       cmocka_unit_test(solve_refuses_singular_systems),
       cmocka_unit_test(condition_is_ratio_of_singular_values),
+      cmocka_unit_test(quantile_by_hand),
+      cmocka_unit_test(quantile_is_that_of_sorted_values),
       cmocka_unit_test(loop_visits_each_index_once_in_fixed_chunks),
       cmocka_unit_test(gsl_codes_become_ours),
       cmocka_unit_test(near_names_come_nearest_first),

@@ -98,6 +98,11 @@ EF_API bool ef_number_parse(const char *text, size_t length, char decimal_mark,
 EF_API size_t ef_nearest_names(const char *name, const char *const *known,
                                size_t n, size_t max, size_t *index);
 
+/** Quantile p (0 to 1) of n >= 1 finite values, linear between neighbouring
+ * ones: place p (n - 1) of the sorted values, counted from 0. Changes the order
+ * of `value`. */
+EF_API double ef_quantile(size_t n, double *value, double p);
+
 /** Calls `body` for the pieces [begin, end) of 0 .. n, each `chunk` long but
  * the last, on up to `jobs` threads (0: all cores), the caller's among them,
  * and returns when all are done. Pieces depend on n and `chunk` alone, so a

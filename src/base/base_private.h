@@ -199,13 +199,6 @@ double ef__phi(double x);            /**< density */
 double ef__normal(double x);         /**< distribution function */
 double ef__normal_inverse(double p); /**< infinite at 0 and 1 */
 
-/* ---- Quantiles (quantile.c) --------------------------------------------- */
-
-/** Quantile p (0 to 1) of n >= 1 finite values, linear between neighbouring
- * ones: place p (n - 1) of the sorted values, counted from 0. Changes the order
- * of `value`. */
-double ef__quantile(size_t n, double *value, double p);
-
 /* ---- GSL (gsl.c) ------------------------------------------------------- */
 
 /** Switches GSL's process-ending error handler off, once. To be called before

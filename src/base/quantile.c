@@ -35,7 +35,7 @@ static void select_place(size_t n, double *value, size_t k) {
   }
 }
 
-double ef__quantile(size_t n, double *value, double p) {
+double ef_quantile(size_t n, double *value, double p) {
   const double place = p * (double)(n - 1);
   const size_t k = (size_t)place;
   const double rest = place - (double)k;

@@ -259,8 +259,8 @@ static void monte_carlo(const work *w, const pair *p, double *value,
   draw_outcomes(w, p, value);
   double *const jnds = value + OUTCOMES * n;
   out->jnds.se = sd_of(n, jnds);
-  out->jnds.low = ef__quantile(n, jnds, 0.025);
-  out->jnds.high = ef__quantile(n, jnds, 0.975);
+  out->jnds.low = ef_quantile(n, jnds, 0.025);
+  out->jnds.high = ef_quantile(n, jnds, 0.975);
   out->d_prime.low = d_prime_of(w, out->jnds.low);
   out->d_prime.high = d_prime_of(w, out->jnds.high);
   for (size_t o = 0; o < OUTCOMES; ++o) {
@@ -271,8 +271,8 @@ static void monte_carlo(const work *w, const pair *p, double *value,
       e->high = outcome_at(w, o, log(out->jnds.high), NULL);
       continue;
     }
-    e->low = ef__quantile(n, value + o * n, 0.025);
-    e->high = ef__quantile(n, value + o * n, 0.975);
+    e->low = ef_quantile(n, value + o * n, 0.025);
+    e->high = ef_quantile(n, value + o * n, 0.975);
   }
   for (size_t i = 0; i < n; ++i)
     jnds[i] = d_prime_of(w, jnds[i]);

@@ -290,7 +290,7 @@ static ef_spread summarise_alike(const work *w, double *value) {
     n_above += value[i] > w->threshold;
   }
   return (ef_spread){.mean = sum / (double)n,
-                     .p95 = ef__quantile(n, value, 0.95),
+                     .p95 = ef_quantile(n, value, 0.95),
                      .share_of_observers = (double)n_above / (double)n};
 }
 

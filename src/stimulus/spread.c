@@ -28,20 +28,6 @@ static void see_members(void *context, size_t begin, size_t end) {
   }
 }
 
-static int compare(const void *a, const void *b) {
-  const double x = *(const double *)a, y = *(const double *)b;
-  return (x > y) - (x < y);
-}
-
-/* Of n values, which it sorts. */
-static double percentile_95(size_t n, double *value) {
-  qsort(value, n, sizeof *value, compare);
-  const double place = 0.95 * (double)(n - 1);
-  const size_t low = (size_t)place;
-  const size_t high = low + 1 < n ? low + 1 : low;
-  return value[low] + (place - (double)low) * (value[high] - value[low]);
-}
-
 static double intended_for(const ef_isolation *isolation, size_t r) {
   switch (isolation->role[r]) {
   case EF_RECEPTOR_SILENT:
@@ -70,7 +56,7 @@ static ef_receptor_spread spread_of(const ef_isolation *isolation, size_t r,
     }
   }
   out.rms = sqrt(squares / (double)count);
-  out.p95 = percentile_95(count, off);
+  out.p95 = ef_quantile(count, off, 0.95);
   return out;
 }
 

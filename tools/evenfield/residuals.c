@@ -18,20 +18,6 @@ double residuals_difference(const ef_metric *metric, ef_xyz white, ef_xyz a,
   return ef_metric_difference(metric, p, q);
 }
 
-static int by_value(const void *a, const void *b) {
-  const double x = *(const double *)a, y = *(const double *)b;
-  return (x > y) - (x < y);
-}
-
-/* The 95th percentile of sorted values, between neighbours. */
-static double percentile_95(size_t n, const double *sorted) {
-  const double at = 0.95 * (double)(n - 1);
-  const size_t i = (size_t)at;
-  if (i + 1 >= n)
-    return sorted[n - 1];
-  return sorted[i] + (at - (double)i) * (sorted[i + 1] - sorted[i]);
-}
-
 ef_status residuals_of(residuals *out, const ef_metric *metric, size_t n,
                        const ef_residual *residual, const rows *r,
                        ef_error *error) {
@@ -55,10 +41,8 @@ ef_status residuals_of(residuals *out, const ef_metric *metric, size_t n,
     memcpy(out->worst_drive, r->device + x->row * r->n_device,
            r->n_device * sizeof *r->device);
   }
-  if (n > 0) {
-    qsort(difference, n, sizeof *difference, by_value);
-    out->p95 = percentile_95(n, difference);
-  }
+  if (n > 0)
+    out->p95 = ef_quantile(n, difference, 0.95);
   free(difference);
   return EF_OK;
 }

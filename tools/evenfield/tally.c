@@ -2,13 +2,9 @@
 #include "tally.h"
 
 #include <math.h>
-#include <stdlib.h>
 #include <string.h>
 
-static int by_value(const void *a, const void *b) {
-  const double x = *(const double *)a, y = *(const double *)b;
-  return (x > y) - (x < y);
-}
+#include <evenfield/base.h>
 
 tally tally_of(size_t n, const double *value, double *scratch) {
   tally t = {
@@ -24,11 +20,6 @@ tally tally_of(size_t n, const double *value, double *scratch) {
   t.mean = sum / (double)n;
   t.worst = value[t.worst_at];
   memcpy(scratch, value, n * sizeof *scratch);
-  qsort(scratch, n, sizeof *scratch, by_value);
-  const double at = 0.95 * (double)(n - 1);
-  const size_t i = (size_t)at;
-  t.p95 = i + 1 < n
-              ? scratch[i] + (at - (double)i) * (scratch[i + 1] - scratch[i])
-              : scratch[n - 1];
+  t.p95 = ef_quantile(n, scratch, 0.95);
   return t;
 }
