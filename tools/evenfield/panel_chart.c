@@ -198,6 +198,8 @@ ef_status panel_report_write(const panel_fits *p, const ef_notes *notes,
   if (status == EF_OK) {
     text out = report_text(&page);
     report_input(&page, p->answers.file);
+    page.has_seed = p->intervals.n_samples > 0;
+    page.seed = (double)p->intervals.seed;
     panel_fit_add(&out, p);
     status = text_flush(&out, error);
     text_free(&out);

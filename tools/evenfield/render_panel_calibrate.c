@@ -7,7 +7,7 @@
 
 #include "jnd.h"
 #include "message.h"
-#include "render_panel_fit.h"
+#include "panel_words.h"
 #include "text.h"
 #include "words.h"
 
@@ -81,13 +81,6 @@ static void add_ranking(text *out, const panel_calibration *c) {
   text_paragraph(out, &line, 0);
 }
 
-static void limit_cell(text_table *t, double value, int decimals) {
-  if (isinf(value))
-    table_cell(t, "open");
-  else
-    table_number(t, value, decimals);
-}
-
 static void add_observers(text *out, const panel_calibration *c) {
   text_table t = table_new();
   double least = c->result.jnd.value;
@@ -107,8 +100,8 @@ static void add_observers(text *out, const panel_calibration *c) {
                                            : "all answers");
     table_format(&t, "%zu", e->n_trials);
     table_number(&t, e->jnd.value, decimals);
-    limit_cell(&t, e->jnd.low, decimals);
-    limit_cell(&t, e->jnd.high, decimals);
+    panel_limit_cell(&t, e->jnd.low, decimals);
+    panel_limit_cell(&t, e->jnd.high, decimals);
   }
   text_add(out, "\n");
   table_finish(&t, out);
@@ -161,6 +154,21 @@ static void add_saved(text *out, const panel_calibration *c) {
   text_paragraph(out, &line, 0);
 }
 
+/* How often a deviance as large is seen where the curve holds. */
+static void add_chance(text *out, const panel_calibration *c) {
+  const ef_goodness *g = &c->result.goodness;
+  const ef_interval_settings *s = &c->settings.intervals;
+  char chance[EF_NUMBER_TEXT];
+  if (isnan(g->p_value))
+    return;
+  ef_number_format_fixed(g->p_value, 3, chance);
+  text_format(out, ", p %s", chance);
+  if (s->n_samples > 0) {
+    text_format(out, " by %zu simulated experiments with seed %llu",
+                s->n_samples, (unsigned long long)s->seed);
+  }
+}
+
 static void add_basis(text *out, const panel_calibration *c) {
   const answers *a = &c->answers;
   const ef_calibration *r = &c->result;
@@ -193,6 +201,7 @@ static void add_basis(text *out, const panel_calibration *c) {
               number, isnan(c->settings.lapse) ? "" : ", fixed");
   add_number(&line, r->pooled.deviance);
   text_format(&line, " with %zu degrees of freedom", r->pooled.degrees);
+  add_chance(&line, c);
   text_label(out, "Curve", &line);
   if (!r->is_pooled) {
     text_add(&line, "geometric mean of the observers by restricted maximum "

@@ -23,11 +23,19 @@ size_t panel_fit_remarks(const panel_fits *p, const panel_fit *f, text *out);
 void panel_fit_name(const panel_fits *p, const panel_fit *f, char *name,
                     size_t room);
 
-/** "0.83 Delta E*00 (95 % interval 0.71 to 0.97)"; `unit` may be "". */
-void panel_add_estimate(text *out, ef_estimate e, const char *unit);
-/** Shares of answers at the criterion of JND in words: "75 % right in 2IFC". */
-void panel_add_jnd_words(text *out, ef_task task);
-/** Beneath every answer: what a threshold depends on. */
-extern const char panel_caution[];
+/* ---- Parts of the text ------------------------------------------------- */
+
+/** Groups, other criteria, sensitivity apart from the criterion, leaning. */
+void panel_fit_add_people(text *out, const panel_fits *p);
+/** What to look at again, and what the answer rests on. */
+void panel_fit_add_basis(text *out, const panel_fits *p);
+/** The figure that is told first of a condition. */
+panel_figure panel_fit_main(const panel_fits *p, size_t condition);
+/** Where the threshold is taken: "75 % \"right\", lapses left out". */
+void panel_fit_add_criterion(text *out, const panel_fits *p);
+/** True when a curve has that figure. */
+bool panel_fit_has(const panel_fits *p, panel_figure figure);
+/** True when the threshold is the JND, or the point of equality. */
+bool panel_fit_threshold_is_told(const panel_fits *p);
 
 #endif

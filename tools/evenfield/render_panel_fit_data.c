@@ -150,9 +150,9 @@ static void write_summary(ef_json *j, const panel_fits *p,
   ef_json_begin_object(j, NULL);
   ef_json_text(j, "condition", answers_condition(&p->answers, s->condition));
   ef_json_integer(j, "n_observers", (int64_t)s->n_observers);
-  static const char *const keys[] = {
-      [PANEL_THRESHOLD] = "threshold", [PANEL_JND] = "jnd",
-      [PANEL_EQUALITY] = "pse"};
+  static const char *const keys[] = {[PANEL_THRESHOLD] = "threshold",
+                                     [PANEL_JND] = "jnd",
+                                     [PANEL_EQUALITY] = "pse"};
   for (panel_figure f = PANEL_THRESHOLD; f <= PANEL_EQUALITY; ++f) {
     bool is_group;
     const ef_estimate e = panel_fits_value(p, s->condition, f, &is_group);
@@ -188,8 +188,7 @@ static ef_status write_json(const panel_fits *p, ef_output *output,
   ef_json_text(j, "task", ef_task_name(p->answers.task));
   ef_json_text(j, "positive", ef_task_positive(p->answers.task));
   ef_json_text(j, "model", ef_shape_name(p->settings.shape));
-  ef_json_text(j, "axis",
-               p->settings.axis == EF_AXIS_LOG ? "log" : "linear");
+  ef_json_text(j, "axis", p->settings.axis == EF_AXIS_LOG ? "log" : "linear");
   ef_json_text(j, "unit", p->answers.unit);
   ef_json_number(j, "lapse_fixed", p->settings.lapse);
   ef_json_number(j, "lapse_max", p->settings.lapse_max);
@@ -226,10 +225,10 @@ static void record_group(record *r, const panel_fits *p,
                    .guess = none,
                    .lapse = none};
   double *const unknown[] = {
-      &f.fit.criterion,       &f.fit.intercept,     &f.fit.se_intercept,
-      &f.fit.slope,           &f.fit.se_slope,      &f.fit.curve.location,
-      &f.fit.curve.width,     &f.fit.log_likelihood, &f.fit.deviance,
-      &f.fit.pearson,         &f.goodness.p_value,  &f.goodness.dispersion,
+      &f.fit.criterion,      &f.fit.intercept,      &f.fit.se_intercept,
+      &f.fit.slope,          &f.fit.se_slope,       &f.fit.curve.location,
+      &f.fit.curve.width,    &f.fit.log_likelihood, &f.fit.deviance,
+      &f.fit.pearson,        &f.goodness.p_value,   &f.goodness.dispersion,
       &f.goodness.widened_by};
   for (size_t i = 0; i < sizeof unknown / sizeof unknown[0]; ++i)
     *unknown[i] = (double)NAN;

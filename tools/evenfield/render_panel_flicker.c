@@ -5,7 +5,7 @@
 #include "message.h"
 #include "panel_flicker.h"
 #include "record.h"
-#include "render_panel_fit.h"
+#include "panel_words.h"
 #include "text.h"
 #include "words.h"
 
@@ -56,10 +56,7 @@ static void add_table(text *out, const panel_flicker *p) {
     table_format(&t, "%zu", w->n);
     table_number(&t, w->ratio.value, 2);
     table_number(&t, w->ratio.low, 2);
-    if (isinf(w->ratio.high))
-      table_cell(&t, "open");
-    else
-      table_number(&t, w->ratio.high, 2);
+    panel_limit_cell(&t, w->ratio.high, 2);
     table_number(&t, 100.0 * w->residual, 1);
   }
   text_add(out, "\n");

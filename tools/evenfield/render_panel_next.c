@@ -6,7 +6,7 @@
 
 #include "message.h"
 #include "record.h"
-#include "render_panel_fit.h"
+#include "panel_words.h"
 #include "text.h"
 #include "words.h"
 

@@ -6,6 +6,7 @@
 
 #include "listing.h"
 #include "message.h"
+#include "panel_words.h"
 #include "text.h"
 #include "words.h"
 
@@ -121,10 +122,7 @@ static void add_rows(text *out, const panel_plan *p) {
       table_number(&t, isfinite(c->row.median) ? c->row.median : (double)NAN,
                    2);
       table_number(&t, c->row.low > 0.0 ? c->row.low : (double)NAN, 2);
-      if (isinf(c->row.high))
-        table_cell(&t, "open");
-      else
-        table_number(&t, c->row.high, 2);
+      panel_limit_cell(&t, c->row.high, 2);
       table_number(&t,
                    100.0 * (double)c->row.n_failed /
                        (double)c->row.n_experiments,
