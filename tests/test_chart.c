@@ -519,6 +519,97 @@ static void test_bytes_are_the_same(void **state) {
   }
 }
 
+static uint32_t colour_at(const ef__png_palette *palette, size_t place) {
+  const unsigned char *rgb = palette->rgb[place];
+  return (uint32_t)rgb[0] << 16 | (uint32_t)rgb[1] << 8 | rgb[2];
+}
+
+static int colour_gap(uint32_t a, uint32_t b) {
+  int sum = 0;
+  for (unsigned shift = 0; shift <= 16; shift += 8) {
+    const int gap = (int)(a >> shift & 255u) - (int)(b >> shift & 255u);
+    sum += gap * gap;
+  }
+  return sum;
+}
+
+/* Gonzalez 1985: each colour chosen lies at least as far from those before it as
+ * any colour lies from its own, so that no choice of as many errs by less than
+ * half of that. Few colours stay exactly, and the commonest of many. */
+static void test_palettes(void **state) {
+  (void)state;
+  enum { N = 20000, FEW = 256, COMMON = 0xB4470A, EXACT = 32 };
+  gen g = gen_new(31);
+  uint32_t *pixel = malloc(N * sizeof *pixel);
+  unsigned char *index = malloc(N);
+  assert_true(pixel != NULL && index != NULL);
+  for (size_t n_colours = 1; n_colours <= 4096; n_colours *= 4) {
+    for (size_t i = 0; i < N; ++i) {
+      const uint32_t k = (uint32_t)(i % n_colours);
+      pixel[i] = i % 3 == 0 ? COMMON : 0xFF000000u | (k * 2654435761u) >> 8;
+    }
+    ef__png_palette palette;
+    assert_true(ef__palette_of(N, pixel, &palette, index));
+    assert_true(palette.n <= EF__PNG_COLOURS);
+    assert_int_equal(colour_at(&palette, index[0]), COMMON);
+    int worst = 0;
+    for (size_t i = 0; i < N; ++i) {
+      assert_true(index[i] < palette.n);
+      const int gap =
+          colour_gap(pixel[i] & 0xFFFFFF, colour_at(&palette, index[i]));
+      worst = gap > worst ? gap : worst;
+    }
+    if (n_colours < FEW)
+      assert_int_equal(worst, 0);
+    for (size_t k = EXACT; k < palette.n; ++k) {
+      for (size_t j = 0; j < k; ++j)
+        assert_true(colour_gap(colour_at(&palette, k),
+                               colour_at(&palette, j)) >= worst);
+    }
+  }
+  /* Too many to be a drawing. */
+  for (size_t i = 0; i < N; ++i)
+    pixel[i] = (uint32_t)(gen_unit(&g) * 0xFFFFFF);
+  ef__png_palette palette;
+  assert_false(ef__palette_of(N, pixel, &palette, index));
+  free(pixel);
+  free(index);
+}
+
+/* A chart as PNG has a palette, says its encoding, and its paper is white. */
+static void test_a_chart_as_pixels(void **state) {
+  (void)state;
+  char path[SCRATCH_PATH];
+  scratch_path("a.png", path);
+  ef_chart *chart = small_chart();
+  assert_int_equal(ef_chart_write(chart, path, NULL, NULL), EF_OK);
+  ef_chart_free(chart);
+  const ef_png_settings settings = ef_png_settings_default();
+  ef_png *png = ef_png_open(path, &settings, NULL);
+  assert_non_null(png);
+  const ef_png_head *head = ef_png_get_head(png);
+  assert_string_equal(head->layout, "palette");
+  assert_true(head->has_cicp && head->primaries == 1 && head->transfer == 13);
+  assert_int_equal(head->width, 1440);
+  uint16_t *row = malloc(head->width * 3 * sizeof *row);
+  bool has_row, has_ink = false;
+  const uint32_t ink = ef__ink_at(EF__INK_LOOK)->light;
+  size_t n = 0;
+  while (ef_png_next_row(png, row, &has_row, NULL) == EF_OK && has_row) {
+    assert_int_equal(row[0], 65535);
+    for (size_t i = 0; i < 3 * head->width; i += 3)
+      has_ink = has_ink || (row[i] == (ink >> 16 & 255u) * 257u &&
+                            row[i + 1] == (ink >> 8 & 255u) * 257u &&
+                            row[i + 2] == (ink & 255u) * 257u);
+    ++n;
+  }
+  assert_int_equal(n, head->height);
+  assert_true(has_ink);
+  free(row);
+  ef_png_free(png);
+  remove(path);
+}
+
 static void test_refusals(void **state) {
   (void)state;
   ef_error error = {0};
@@ -628,6 +719,8 @@ int main(void) {
       cmocka_unit_test(test_a_million_points_are_thinned),
       cmocka_unit_test(test_thinning_leaves_no_hole),
       cmocka_unit_test(test_bytes_are_the_same),
+      cmocka_unit_test(test_palettes),
+      cmocka_unit_test(test_a_chart_as_pixels),
       cmocka_unit_test(test_refusals),
       cmocka_unit_test(test_odd_ranges),
       cmocka_unit_test(test_without_memory),

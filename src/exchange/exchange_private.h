@@ -337,4 +337,18 @@ ef_status ef__png_write_to(ef_output *output, size_t width, size_t height,
                            int bits, const ef_png_rows *rows,
                            const ef_png_tags *tags, ef_error *error);
 
+/** Colours of 8 bits, in the encoding that the tags tell. */
+enum { EF__PNG_COLOURS = 256 };
+typedef struct ef__png_palette {
+  size_t n;
+  unsigned char rgb[EF__PNG_COLOURS][3];
+} ef__png_palette;
+
+/** A picture of few colours, whole or not at all: `index` holds height x width
+ * places in the palette. */
+ef_status ef__png_write_indexed(const char *path, bool overwrite, size_t width,
+                                size_t height, const unsigned char *index,
+                                const ef__png_palette *palette,
+                                const ef_png_tags *tags, ef_error *error);
+
 #endif

@@ -1,6 +1,6 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-/* RGB pictures through libpng. It leaves its calls by longjmp on failure: that
- * stays in this file. */
+/* RGB pictures through libpng, and those of few colours with a palette. It
+ * leaves its calls by longjmp on failure: that stays in this file. */
 #include "exchange/exchange_private.h"
 
 #include <setjmp.h>
@@ -24,6 +24,7 @@ typedef struct picture {
   png_infop info;
   png_byte *row;
   uint16_t *sample; /* of the row */
+  const ef__png_palette *palette; /* NULL: RGB */
   ef_error error; /* of the output, if it failed */
   char reason[160]; /* of libpng */
 } picture;
@@ -72,7 +73,12 @@ static void write_cicp(png_structp png, const ef_png_tags *tags) {
  * nearly as well as libpng's search for longer matches, several times as fast.
  * Measured on gratings, Gabor patches, discs and dithered frames of 8 and 16
  * bits: 3 to 10 times, in 0.97 to 1.7 of the size. */
-static void set_compression(png_structp png) {
+static void set_compression(png_structp png, bool is_indexed) {
+  if (is_indexed) { /* drawings: small, and repeated far away */
+    png_set_filter(png, PNG_FILTER_TYPE_BASE, PNG_FILTER_NONE);
+    png_set_compression_level(png, Z_BEST_COMPRESSION);
+    return;
+  }
   png_set_filter(png, PNG_FILTER_TYPE_BASE, PNG_FILTER_UP);
   png_set_compression_level(png, 1);
   png_set_compression_strategy(png, Z_RLE);
@@ -81,8 +87,18 @@ static void set_compression(png_structp png) {
 static void write_head(picture *p, size_t width, size_t height, int bits,
                        const ef_png_tags *tags) {
   png_set_IHDR(p->png, p->info, (png_uint_32)width, (png_uint_32)height, bits,
-               PNG_COLOR_TYPE_RGB, PNG_INTERLACE_NONE,
-               PNG_COMPRESSION_TYPE_BASE, PNG_FILTER_TYPE_BASE);
+               p->palette != NULL ? PNG_COLOR_TYPE_PALETTE
+                                  : PNG_COLOR_TYPE_RGB,
+               PNG_INTERLACE_NONE, PNG_COMPRESSION_TYPE_BASE,
+               PNG_FILTER_TYPE_BASE);
+  if (p->palette != NULL) {
+    png_color colour[EF__PNG_COLOURS];
+    for (size_t i = 0; i < p->palette->n; ++i) {
+      const unsigned char *rgb = p->palette->rgb[i];
+      colour[i] = (png_color){rgb[0], rgb[1], rgb[2]};
+    }
+    png_set_PLTE(p->png, p->info, colour, (int)p->palette->n);
+  }
   if (tags != NULL && tags->profile != NULL) {
     png_set_iCCP(p->png, p->info, tags->profile_name,
                  PNG_COMPRESSION_TYPE_BASE, tags->profile,
@@ -122,12 +138,24 @@ static bool give_row(picture *p, const ef_png_rows *rows, size_t y) {
 }
 
 /* Everything that may jump; false when it did. */
+static bool write_indexed(picture *p, size_t width, size_t height,
+                          const unsigned char *index, const ef_png_tags *tags) {
+  if (setjmp(png_jmpbuf(p->png)) != 0) return false;
+  png_set_write_fn(p->png, p, write_bytes, flush_nothing);
+  set_compression(p->png, true);
+  write_head(p, width, height, 8, tags);
+  for (size_t y = 0; y < height; ++y)
+    png_write_row(p->png, index + y * width);
+  png_write_end(p->png, p->info);
+  return true;
+}
+
 static bool write_picture(picture *p, size_t width, size_t height, int bits,
                           const ef_png_rows *rows, const ef_png_tags *tags) {
   const size_t n = width * CHANNELS;
   if (setjmp(png_jmpbuf(p->png)) != 0) return false;
   png_set_write_fn(p->png, p, write_bytes, flush_nothing);
-  set_compression(p->png);
+  set_compression(p->png, false);
   write_head(p, width, height, bits, tags);
   for (size_t y = 0; y < height; ++y) {
     if (!give_row(p, rows, y)) return false;
@@ -185,12 +213,16 @@ static ef_status refuse(const picture *p, const char *path, ef_error *error) {
   return EF_UNWRITABLE;
 }
 
-static ef_status write_to(picture *p, const char *path, size_t width,
-                          size_t height, int bits, const ef_png_rows *rows,
-                          const ef_png_tags *tags, ef_error *error) {
+static void create(picture *p) {
   p->png = png_create_write_struct(PNG_LIBPNG_VER_STRING, p, keep_reason,
                                    ignore_warning);
   if (p->png != NULL) p->info = png_create_info_struct(p->png);
+}
+
+static ef_status write_to(picture *p, const char *path, size_t width,
+                          size_t height, int bits, const ef_png_rows *rows,
+                          const ef_png_tags *tags, ef_error *error) {
+  create(p);
   p->row = ef__allocate(width * CHANNELS, (size_t)bits / 8);
   p->sample = ef__allocate(width * CHANNELS, sizeof *p->sample);
   ef_status status;
@@ -229,6 +261,31 @@ ef_status ef_png_write_rows(const char *path, bool overwrite, size_t width,
     return opening.status;
   }
   status = write_to(&p, path, width, height, bits, rows, tags, error);
+  if (status == EF_OK) return ef_output_commit(p.output, error);
+  ef_output_discard(p.output);
+  return status;
+}
+
+ef_status ef__png_write_indexed(const char *path, bool overwrite, size_t width,
+                                size_t height, const unsigned char *index,
+                                const ef__png_palette *palette,
+                                const ef_png_tags *tags, ef_error *error) {
+  ef_status status = check(width, height, 8, tags, error);
+  if (status != EF_OK) return status;
+  ef_error opening = {0};
+  picture p = {.output = ef_output_open(path, overwrite, &opening),
+               .palette = palette};
+  if (p.output == NULL) {
+    if (error != NULL) *error = opening;
+    return opening.status;
+  }
+  create(&p);
+  if (p.png == NULL || p.info == NULL) {
+    status = ef__error_memory(error, "a picture");
+  } else if (!write_indexed(&p, width, height, index, tags)) {
+    status = refuse(&p, path, error);
+  }
+  png_destroy_write_struct(&p.png, &p.info);
   if (status == EF_OK) return ef_output_commit(p.output, error);
   ef_output_discard(p.output);
   return status;

@@ -9,6 +9,8 @@
 #include <evenfield/exchange.h>
 #include <evenfield/picture.h>
 
+#include "exchange/exchange_private.h"
+
 typedef struct ef__point {
   double x, y;
 } ef__point;
@@ -152,5 +154,14 @@ ef_status ef__page_pdf(const ef__page *page, ef_output *output, bool *has_text,
                        ef_error *error);
 ef_status ef__page_png(const ef__page *page, const char *path, bool overwrite,
                        bool *has_text, ef_error *error);
+
+/* ---- Few colours (palette.c) ------------------------------------------- */
+
+/** Colours that stand for n pixels of 0xRRGGBB (what lies above is passed
+ * over), and the place of each pixel's in `index`: exactly where there are no
+ * more than the palette holds, else the commonest ones exactly and the others by
+ * one next to them. False where there are too many to count, or no memory. */
+bool ef__palette_of(size_t n, const uint32_t *pixel, ef__png_palette *palette,
+                    unsigned char *index);
 
 #endif

@@ -227,6 +227,29 @@ static void fill_row(void *cookie, size_t y, uint16_t *sample) {
  * its curve. */
 enum { PRIMARIES_CODE = 1, TRANSFER_CODE = 13 };
 
+/* With a palette, a fourth of the size; whole colours where that fails. */
+static ef_status write_pixels(pixels *p, size_t height, const char *path,
+                              bool overwrite, ef_error *error) {
+  const ef_png_tags tags = {.primaries = PRIMARIES_CODE,
+                            .transfer = TRANSFER_CODE};
+  const size_t n = p->width * height;
+  ef__png_palette palette;
+  unsigned char *index = ef__allocate(n, 1);
+  ef_status status;
+  if (index != NULL && p->stride == 4 * p->width &&
+      ef__palette_of(n, (const uint32_t *)(const void *)p->data, &palette,
+                     index)) {
+    status = ef__png_write_indexed(path, overwrite, p->width, height, index,
+                                   &palette, &tags, error);
+  } else {
+    const ef_png_rows rows = {.fill = fill_row, .cookie = p};
+    status = ef_png_write_rows(path, overwrite, p->width, height, 8, &rows,
+                               &tags, error);
+  }
+  free(index);
+  return status;
+}
+
 ef_status ef__page_png(const ef__page *page, const char *path, bool overwrite,
                        bool *has_text, ef_error *error) {
   brush b = {.context = NULL};
@@ -245,11 +268,7 @@ ef_status ef__page_png(const ef__page *page, const char *path, bool overwrite,
               .stride = (size_t)c->cairo_image_surface_get_stride(b.surface),
               .width = (size_t)width};
   if (p.data != NULL && c->cairo_status(b.context) == CAIRO_STATUS_SUCCESS) {
-    const ef_png_tags tags = {.primaries = PRIMARIES_CODE,
-                              .transfer = TRANSFER_CODE};
-    const ef_png_rows rows = {.fill = fill_row, .cookie = &p};
-    status = ef_png_write_rows(path, overwrite, (size_t)width, (size_t)height,
-                               8, &rows, &tags, error);
+    status = write_pixels(&p, (size_t)height, path, overwrite, error);
   }
   const ef_status drawn = end(&b, status == EF_OK ? error : NULL);
   return status != EF_OK ? status : drawn;
