@@ -4,7 +4,8 @@
 # what follows up to the next one must be what it prints; a line `...` stands
 # for any lines left out. A block whose lines begin with `evenfield` is run line
 # by line and must succeed. All in one folder, from top to bottom, so that
-# files made by one block serve the next.
+# files made by one block serve the next. Then the pictures: each has words that
+# stand for it and is there, all are small, and none lies there for nothing.
 #
 #   readme.sh EVENFIELD README
 set -u
@@ -81,5 +82,39 @@ for block in "$scratch"/blocks/*; do
     echo "not ok $number - $line"
   fi
 done
+# One line a picture: its file, a blank, its words.
+top=$(dirname "$readme")
+awk '{ text = text " " $0 }
+  END {
+    while (match(text, /!\[[^]]*\]\([^)]*\)/)) {
+      one = substr(text, RSTART + 2, RLENGTH - 3)
+      text = substr(text, RSTART + RLENGTH)
+      file = words = one
+      sub(/.*\]\(/, "", file)
+      sub(/\]\(.*/, "", words)
+      print file " " words
+    }
+  }' "$readme" >"$scratch/pictures"
+total=0
+while read -r file words; do
+  number=$((number + 1))
+  size=$(wc -c <"$top/$file") && [ ${#words} -ge 30 ] &&
+    [ "$(head -c 4 "$top/$file" | tail -c 3)" = PNG ] || size=none
+  if [ "$size" != none ]; then
+    echo "ok $number - $file, $size bytes"
+    total=$((total + size))
+  else
+    failed=$((failed + 1))
+    echo "not ok $number - $file is no PNG, or has no words"
+  fi
+done <"$scratch/pictures"
+number=$((number + 1))
+if [ "$(cut -d ' ' -f 1 "$scratch/pictures" | sort)" = \
+  "$(cd "$top" && ls tools/pictures/*.png)" ] && [ $total -lt 307200 ]; then
+  echo "ok $number - all pictures, $total bytes of 307200"
+else
+  failed=$((failed + 1))
+  echo "not ok $number - pictures that are not shown, or $total bytes of 307200"
+fi
 echo "1..$number"
 [ $failed = 0 ] && [ $number -gt 0 ]
