@@ -49,9 +49,18 @@ typedef struct ef_reader_settings {
                            1 (100 for C, M, Y), else 1, with a note */
   size_t max_bytes;   /**< of a file held in memory whole (long spectra,
                            ef_spectra_read) */
+  /** Only rows that begin in this range of the file's bytes, or rows 0 to n of
+   * a table held whole as if they were of one length; both 0: all. What the
+   * first rows of the file decide they decide for every range, and names of
+   * rows, lines and the decimal mark are those of the whole: ranges that meet
+   * give the rows of the file, each once. What stands before the range is
+   * passed over without being read. */
+  size_t first_byte, end_byte;
+  bool reads_others;  /**< rows outside the range come as well, and only what is
+                           said of rows at fault keeps to it */
   const ef_notes *notes;
 } ef_reader_settings;
-/** AUTO, no skipping, 1 GiB, no notes. */
+/** AUTO, no skipping, 1 GiB, all rows, no notes. */
 EF_API ef_reader_settings ef_reader_settings_default(void);
 
 /** An open table. Streams: memory does not grow with the number of rows,
@@ -134,6 +143,7 @@ typedef struct ef_block {
   size_t n;
   const char *const *name;  /**< "row 7" style names where the file has none */
   const size_t *line;       /**< line in the file (column number for long) */
+  const size_t *offset;     /**< the byte at which it begins, as of first_byte */
   const double *value;      /**< n x width */
   const double *device;     /**< n x n_device in [0, 1], NULL if none */
   const double *angle_deg;  /**< n measuring angles, NULL if none */
@@ -143,8 +153,14 @@ typedef struct ef_block {
  * nothing more comes. */
 EF_API ef_status ef_reader_next(ef_reader *reader, size_t max_rows,
                                 ef_block *block, ef_error *error);
-/** Rows left out so far because they were at fault (skip_bad). */
+/** Rows of the range left out so far because they were at fault (skip_bad). */
 EF_API size_t ef_reader_skipped(const ef_reader *reader);
+
+/** Bytes of a file that can be read again, or of "demo:NAME": what ranges are
+ * shares of. EF_UNREADABLE for what has no size of its own (standard input, a
+ * pipe). */
+EF_API ef_status ef_file_bytes(const char *path, size_t *n_bytes,
+                               ef_error *error);
 
 /** All spectra of a file. EF_MALFORMED when it holds something else. */
 EF_API ef_spectra *ef_spectra_read(const char *path,
@@ -202,6 +218,8 @@ EF_API ef_status ef_fields_next(ef_fields *fields, const char *const **text,
  * field. */
 EF_API ef_status ef_fields_number(ef_fields *fields, size_t i, double *value,
                                   ef_error *error);
+/** The byte at which the current row begins. */
+EF_API size_t ef_fields_offset(const ef_fields *fields);
 /** True when the file has column `i` of the names asked for. */
 EF_API bool ef_fields_has(const ef_fields *fields, size_t i);
 /** Text of the `# unit:` line, "" if none; borrowed. */

@@ -687,6 +687,7 @@ ef_status ef__cgats_next(ef__records *records, ef__record_kind *kind,
       if (status != EF_OK) return status;
     }
   }
+  records->offset = ef__byte_share(records->input->n_read, c->row, c->n_rows);
   c->at = s.at;
   c->line = s.line;
   ++c->row;

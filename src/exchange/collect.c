@@ -36,7 +36,7 @@ static ef_status append(ef__rows *rows, const ef_block *block,
       to[k] = block->value[i * rows->width + k];
     }
     const ef__label label = {.name = ef__span_of(block->name[i])};
-    status = ef__rows_add(rows, block->line[i], label, error);
+    status = ef__rows_add(rows, block->line[i], block->offset[i], label, error);
   }
   return status;
 }

@@ -207,6 +207,7 @@ static bool is_comment(const char *text, size_t length) {
 static void take_record(ef__records *records, size_t length) {
   ef__input *const input = records->input;
   records->text = input->buffer + input->begin;
+  records->offset = input->n_read - (input->end - input->begin);
   const bool has_feed = input->begin + length < input->end;
   input->begin += length + (has_feed ? 1 : 0);
   if (length > 0 && records->text[length - 1] == '\r') --length;

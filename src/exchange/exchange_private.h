@@ -74,6 +74,8 @@ typedef struct ef__input {
   bool at_end;   /**< the source has no more */
 } ef__input;
 
+/** Share `i` of `n` of some bytes, in whole bytes. */
+size_t ef__byte_share(size_t n_bytes, size_t i, size_t n);
 /** Opens a file for reading; -1 and the reason in words else. */
 int ef__open_file(const char *path, ef_error *error);
 ef__input *ef__input_open(const char *path, ef_error *error);
@@ -113,6 +115,8 @@ typedef struct ef__records {
   char separator;   /**< 0 until ef__records_detect */
   size_t line;      /**< first line of this record, 1-based */
   size_t n_lines;   /**< lines of this record */
+  size_t offset;    /**< of its first byte in the file; of a file held whole
+                         its share of the bytes */
   char *text;       /**< without the line end; text[length] is readable and no
                          part of a field */
   size_t length;
@@ -269,7 +273,7 @@ typedef struct ef__rows {
   double *value;     /**< room x width */
   double *device;    /**< room x n_device, NULL if none */
   double *angle_deg; /**< room, NULL if none */
-  size_t *line;
+  size_t *line, *offset;
   size_t *name_at;
   const char **name;
   char *texts;
@@ -278,9 +282,10 @@ typedef struct ef__rows {
 
 /** Room for `room` rows in all; what is there stays. */
 ef_status ef__rows_reserve(ef__rows *rows, size_t room, ef_error *error);
-/** Gives row `n` its line and label and counts it; its values are in place. */
-ef_status ef__rows_add(ef__rows *rows, size_t line, ef__label label,
-                       ef_error *error);
+/** Gives row `n` its line, offset and label and counts it; its values are in
+ * place. */
+ef_status ef__rows_add(ef__rows *rows, size_t line, size_t offset,
+                       ef__label label, ef_error *error);
 /** Moves row `from` to the lower place `to`. */
 void ef__rows_move(ef__rows *rows, size_t from, size_t to);
 /** Sets `name` from the offsets. */
@@ -306,15 +311,17 @@ struct ef_reader {
   double *wavelength_nm; /**< of long spectra */
   size_t next_row;       /**< of `rows`, the first not yet handed out */
   size_t n_rows_seen;    /**< data rows of the file so far, faulty ones too */
-  size_t n_skipped;
+  size_t n_skipped;      /**< of the range */
+  bool keeps_to_range;   /**< the first rows have decided what they do */
   bool at_end;
   bool end_is_noted;
 };
 
-/** A row at fault: with skip_bad it is noted and counted and EF_OK comes back,
- * else the fault goes to `error`. */
-ef_status ef__reader_fault(ef_reader *reader, const ef_error *fault,
-                           ef_error *error);
+/** A row at fault, which begins at `offset`: with skip_bad it is noted and
+ * counted, if it is of the range, and EF_OK comes back; else the fault goes to
+ * `error`. */
+ef_status ef__reader_fault(ef_reader *reader, size_t offset,
+                           const ef_error *fault, ef_error *error);
 /** Next row into value and device, passing over faulty ones as the settings
  * say; its range is checked when `with_limits`. */
 ef_status ef__reader_row(ef_reader *reader, bool with_limits, double *value,

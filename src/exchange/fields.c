@@ -173,6 +173,10 @@ ef_status ef_fields_number(ef_fields *fields, size_t i, double *value,
   return ef__table_number(&fields->table, fields->place[i], value, error);
 }
 
+size_t ef_fields_offset(const ef_fields *fields) {
+  return fields->table.records.offset;
+}
+
 /* ---- For the caller's own checks --------------------------------------- */
 
 bool ef_fields_has(const ef_fields *fields, size_t i) {

@@ -75,6 +75,43 @@ int ef__open_file(const char *path, ef_error *error) {
   return descriptor;
 }
 
+/* Without overflow. */
+size_t ef__byte_share(size_t n_bytes, size_t i, size_t n) {
+  return n_bytes / n * i + n_bytes % n * i / n;
+}
+
+static ef_status bytes_on_disk(const char *path, size_t *n_bytes,
+                               ef_error *error) {
+  const int descriptor = ef__open_file(path, error);
+  if (descriptor < 0) return error->status;
+  struct stat about;
+  const bool is_file =
+      fstat(descriptor, &about) == 0 && S_ISREG(about.st_mode);
+  close(descriptor);
+  *n_bytes = is_file ? (size_t)about.st_size : 0;
+  if (is_file) return EF_OK;
+  ef__error_set(error, EF_UNREADABLE,
+                "has no size of its own and can be read once only; save it in "
+                "a file");
+  return ef__error_place(error, path, 0, 0, NULL);
+}
+
+ef_status ef_file_bytes(const char *path, size_t *n_bytes, ef_error *error) {
+  ef_error ignored;
+  ef__span demo;
+  if (error == NULL) error = &ignored;
+  *n_bytes = 0;
+  switch (ef__demo_find(path, &demo, error)) {
+  case EF__DEMO_NONE: break;
+  case EF__DEMO_UNKNOWN: return error->status;
+  case EF__DEMO_FOUND: *n_bytes = demo.length; return EF_OK;
+  }
+  if (strcmp(path, "-") != 0) return bytes_on_disk(path, n_bytes, error);
+  ef__error_set(error, EF_UNREADABLE,
+                "can be read once only; save it in a file");
+  return ef__error_place(error, "standard input", 0, 0, NULL);
+}
+
 ef__input *ef__input_open(const char *path, ef_error *error) {
   const bool is_standard = strcmp(path, "-") == 0;
   const int descriptor = is_standard ? STDIN_FILENO : ef__open_file(path, error);

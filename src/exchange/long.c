@@ -98,7 +98,7 @@ static ef_status read_rows(ef_reader *reader, long_rows *rows,
       rows->line[rows->n++] = reader->table.records.line;
       continue;
     }
-    status = ef__reader_fault(reader, &fault, error);
+    status = ef__reader_fault(reader, 0, &fault, error);
     if (status != EF_OK) return status;
   }
 }
@@ -118,7 +118,7 @@ static ef_status check_rows(ef_reader *reader, long_rows *rows,
       rows->line[kept++] = rows->line[i];
       continue;
     }
-    status = ef__reader_fault(reader, &fault, error);
+    status = ef__reader_fault(reader, 0, &fault, error);
     if (status != EF_OK) return status;
   }
   rows->n = kept;
@@ -130,6 +130,7 @@ static ef_status turn(ef_reader *reader, const long_rows *from,
                       ef_error *error) {
   ef__rows *const rows = &reader->rows;
   const size_t n_spectra = from->width - 1;
+  const size_t n_bytes = reader->table.records.input->n_read;
   if (from->n == 0) return EF_OK; /* the caller names that */
   rows->width = from->n;
   ef_status status = ef__rows_reserve(rows, n_spectra, error);
@@ -147,7 +148,8 @@ static ef_status turn(ef_reader *reader, const long_rows *from,
   }
   for (size_t s = 0; s < n_spectra && status == EF_OK; ++s) {
     const ef__label label = {.name = ef__span_of(reader->table.column[s + 1])};
-    status = ef__rows_add(rows, s + 2, label, error);
+    status = ef__rows_add(rows, s + 2, ef__byte_share(n_bytes, s, n_spectra),
+                          label, error);
   }
   ef__rows_name_all(rows);
   return status;

@@ -37,12 +37,33 @@ static void note_fault(const ef_reader *reader, const ef_error *fault) {
   ef__note(reader->settings.notes, "%s; row left out", text);
 }
 
-ef_status ef__reader_fault(ef_reader *reader, const ef_error *fault,
-                           ef_error *error) {
+/* ---- The range --------------------------------------------------------- */
+
+static bool has_range(const ef_reader *reader) {
+  return reader->settings.end_byte > 0;
+}
+
+static bool is_before_range(const ef_reader *reader, size_t offset) {
+  return has_range(reader) && offset < reader->settings.first_byte;
+}
+
+static bool is_behind_range(const ef_reader *reader, size_t offset) {
+  return has_range(reader) && offset >= reader->settings.end_byte;
+}
+
+/* Rows of long spectra are wavelengths, which all ranges share. */
+static bool is_told_of(const ef_reader *reader, size_t offset) {
+  return reader->layout.is_long || (!is_before_range(reader, offset) &&
+                                    !is_behind_range(reader, offset));
+}
+
+ef_status ef__reader_fault(ef_reader *reader, size_t offset,
+                           const ef_error *fault, ef_error *error) {
   if (!reader->settings.skip_bad || fault->status != EF_MALFORMED) {
     if (error != NULL) *error = *fault;
     return fault->status;
   }
+  if (!is_told_of(reader, offset)) return EF_OK;
   ++reader->n_skipped;
   if (reader->n_skipped <= MOST_NOTED) note_fault(reader, fault);
   return EF_OK;
@@ -64,6 +85,19 @@ ef_status ef__reader_row(ef_reader *reader, bool with_limits, double *value,
     ef_status status = ef__table_next(&reader->table, has_row, error);
     if (status != EF_OK || !*has_row) return status;
     ++reader->n_rows_seen;
+    const size_t offset = reader->table.records.offset;
+    if (reader->keeps_to_range && is_behind_range(reader, offset)) {
+      *has_row = false;
+      return EF_OK;
+    }
+    if (reader->keeps_to_range && is_before_range(reader, offset)) {
+      /* As long as no number has shown the decimal mark, this one may. */
+      if (reader->table.mark == '\0') {
+        ef__row_read(&reader->table, &reader->layout, value, device, label,
+                     &fault);
+      }
+      continue;
+    }
     status = ef__row_read(&reader->table, &reader->layout, value, device, label,
                           &fault);
     if (status == EF_OK && reader->limits.is_percent) to_ratios(reader, value);
@@ -72,7 +106,7 @@ ef_status ef__reader_row(ef_reader *reader, bool with_limits, double *value,
                              reader->table.records.line, value, device, &fault);
     }
     if (status == EF_OK) return EF_OK;
-    status = ef__reader_fault(reader, &fault, error);
+    status = ef__reader_fault(reader, offset, &fault, error);
     if (status != EF_OK) return status;
   }
 }
@@ -121,7 +155,8 @@ static ef_status fill(ef_reader *reader, size_t n_wanted, bool with_limits,
       label.name = number_name(reader->n_rows_seen, number);
     }
     if (with_limits) scale_device(reader, rows->n);
-    status = ef__rows_add(rows, reader->table.records.line, label, error);
+    status = ef__rows_add(rows, reader->table.records.line,
+                          reader->table.records.offset, label, error);
   }
   ef__rows_name_all(rows);
   return status;
@@ -143,7 +178,7 @@ static ef_status check_first_rows(ef_reader *reader, ef_error *error) {
       scale_device(reader, kept++);
       continue;
     }
-    status = ef__reader_fault(reader, &fault, error);
+    status = ef__reader_fault(reader, rows->offset[i], &fault, error);
     if (status != EF_OK) return status;
   }
   rows->n = kept;
@@ -153,10 +188,10 @@ static ef_status check_first_rows(ef_reader *reader, ef_error *error) {
 
 static ef_status refuse_no_rows(const ef_reader *reader, ef_error *error) {
   const ef__table *const table = &reader->table;
-  if (reader->n_skipped > 0) {
+  if (reader->n_rows_seen > 0) {
     return ef__header_error(table, SIZE_MAX, error,
                             "all %zu rows are at fault; none is left to use",
-                            reader->n_skipped);
+                            reader->n_rows_seen);
   }
   return ef__header_error(table, SIZE_MAX, error,
                           "no row follows the header row; add at least one");
@@ -205,6 +240,23 @@ static void fill_head(ef_reader *reader) {
   head->grid = ef_grid_simplify(&listed);
 }
 
+/* The first rows, or all of a table held whole, have been read to decide: of
+ * those only what is in the range is handed out. */
+static void enter_range(ef_reader *reader) {
+  ef__rows *const rows = &reader->rows;
+  if (!has_range(reader) || reader->settings.reads_others) return;
+  reader->keeps_to_range = true;
+  while (reader->next_row < rows->n &&
+         is_before_range(reader, rows->offset[reader->next_row])) {
+    ++reader->next_row;
+  }
+  while (rows->n > reader->next_row &&
+         is_behind_range(reader, rows->offset[rows->n - 1])) {
+    --rows->n;
+    reader->at_end = true;
+  }
+}
+
 static ef_status read_head(ef_reader *reader, ef_error *error) {
   ef_status status = ef__layout_new(&reader->table, &reader->layout, error);
   if (status == EF_OK) status = ef__decide_from_remarks(reader, error);
@@ -214,6 +266,7 @@ static ef_status read_head(ef_reader *reader, ef_error *error) {
   if (status != EF_OK) return status;
   if (reader->rows.n == 0) return refuse_no_rows(reader, error);
   fill_head(reader);
+  enter_range(reader);
   return EF_OK;
 }
 
@@ -336,6 +389,7 @@ ef_status ef_reader_next(ef_reader *reader, size_t max_rows, ef_block *block,
   }
   block->name = rows->name + first;
   block->line = rows->line + first;
+  block->offset = rows->offset + first;
   block->value = rows->value + first * rows->width;
   if (rows->n_device > 0) block->device = rows->device + first * rows->n_device;
   if (rows->has_angles) block->angle_deg = rows->angle_deg + first;

@@ -30,6 +30,7 @@ ef_status ef__rows_reserve(ef__rows *rows, size_t room, ef_error *error) {
       (!rows->has_angles ||
        resize(&rows->angle_deg, room, 1, sizeof *rows->angle_deg)) &&
       resize(&rows->line, room, 1, sizeof *rows->line) &&
+      resize(&rows->offset, room, 1, sizeof *rows->offset) &&
       resize(&rows->name_at, room, 1, sizeof *rows->name_at) &&
       resize(&rows->name, room, 1, sizeof *rows->name);
   if (!has_room) return ef__error_memory(error, "rows of a table");
@@ -48,8 +49,8 @@ static ef_status reserve_text(ef__rows *rows, size_t length, ef_error *error) {
   return EF_OK;
 }
 
-ef_status ef__rows_add(ef__rows *rows, size_t line, ef__label label,
-                       ef_error *error) {
+ef_status ef__rows_add(ef__rows *rows, size_t line, size_t offset,
+                       ef__label label, ef_error *error) {
   const ef__span name = label.name;
   const ef_status status = reserve_text(rows, name.length + 1, error);
   if (status != EF_OK) return status;
@@ -58,6 +59,7 @@ ef_status ef__rows_add(ef__rows *rows, size_t line, ef__label label,
   to[name.length] = '\0';
   rows->name_at[rows->n] = rows->texts_used;
   rows->line[rows->n] = line;
+  rows->offset[rows->n] = offset;
   if (rows->has_angles) rows->angle_deg[rows->n] = label.angle_deg;
   rows->texts_used += name.length + 1;
   ++rows->n;
@@ -77,6 +79,7 @@ void ef__rows_move(ef__rows *rows, size_t from, size_t to) {
   }
   if (rows->has_angles) rows->angle_deg[to] = rows->angle_deg[from];
   rows->line[to] = rows->line[from];
+  rows->offset[to] = rows->offset[from];
   rows->name_at[to] = rows->name_at[from];
 }
 
@@ -91,6 +94,7 @@ void ef__rows_clear(ef__rows *rows) {
   free(rows->device);
   free(rows->angle_deg);
   free(rows->line);
+  free(rows->offset);
   free(rows->name_at);
   free(rows->name);
   free(rows->texts);

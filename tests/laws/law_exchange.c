@@ -453,6 +453,111 @@ static void json_is_always_valid(void **state) {
   assert_int_equal(unlink(path), 0);
 }
 
+/* ---- Ranges ------------------------------------------------------------ */
+
+/* A row of a random table: three numbers, and in front of them a name, often
+ * one that needs quotes and holds a separator, a quote or a line end. */
+static size_t put_row(gen *g, size_t i, bool has_name, bool is_whole, char sep,
+                      char *to) {
+  static const char *const names[] = {"s%zu", "\"row, %zu\"", "\"a;\tb %zu\"",
+                                      "\"two\nlines %zu\"", "\"say \"\"%zu\"\"\"",
+                                      "\"# %zu\""};
+  static const char *const marks[] = {".", ","};
+  const size_t kind = gen_below(g, 3) == 0 ? gen_below(g, 6) : 0;
+  size_t n = has_name ? (size_t)sprintf(to, names[kind], i) : 0;
+  for (int k = 0; k < 3; ++k) {
+    if (n > 0)
+      to[n++] = sep;
+    n += (size_t)sprintf(to + n, "%zu", 1 + gen_below(g, 90));
+    /* Between semicolons a decimal comma, which a late row may be the first to
+     * show. */
+    if (!is_whole)
+      n += (size_t)sprintf(to + n, "%s%zu", marks[sep == ';'], gen_below(g, 99));
+  }
+  return n;
+}
+
+/* A table with what may stand between rows; the last line may have no end. */
+static size_t random_table(gen *g, size_t n_rows, char *text) {
+  static const char seps[] = {',', ';', '\t'};
+  static const char *const ends[] = {"\n", "\r\n"};
+  static const char *const between[] = {"# \"say\" what", "", "  ", ",,,"};
+  const char sep = seps[gen_below(g, 3)];
+  const char *const end = ends[gen_below(g, 2)];
+  const bool has_names = gen_below(g, 3) > 0;
+  const size_t first_fraction = gen_below(g, 2) * gen_below(g, n_rows + 1);
+  size_t n = 0;
+  if (gen_below(g, 2) == 0)
+    n += (size_t)sprintf(text, "# title: a \"table\"%s", end);
+  if (has_names)
+    n += (size_t)sprintf(text + n, "name%c", sep);
+  n += (size_t)sprintf(text + n, "L%ca%cb%s", sep, sep, end);
+  for (size_t i = 0; i < n_rows; ++i) {
+    const size_t kind = gen_below(g, 12);
+    if (kind < (sep == ',' ? 4u : 3u))
+      n += (size_t)sprintf(text + n, "%s%s", between[kind], end);
+    n += put_row(g, i, has_names, i < first_fraction, sep, text + n);
+    if (i + 1 < n_rows || gen_below(g, 2) == 0)
+      n += (size_t)sprintf(text + n, "%s", end);
+  }
+  return n;
+}
+
+/* All rows of a range, one after the other, as text: line, offset, name and
+ * values to the bit. */
+static size_t rows_as_text(const char *text, size_t length, size_t first,
+                           size_t end, char *out) {
+  ef_error error;
+  ef_reader_settings settings = ef_reader_settings_default();
+  settings.first_byte = first;
+  settings.end_byte = end;
+  ef_reader *const reader =
+      ef_reader_from_text("table", text, length, &settings, &error);
+  if (reader == NULL)
+    fail_msg("%s", error.message);
+  size_t n = 0;
+  for (;;) {
+    ef_block block;
+    assert_int_equal(ef_reader_next(reader, 37, &block, &error), EF_OK);
+    for (size_t i = 0; i < block.n; ++i) {
+      const double *const v = block.value + 3 * i;
+      n += (size_t)sprintf(out + n, "%zu %zu %s %a %a %a\n", block.line[i],
+                           block.offset[i], block.name[i], v[0], v[1], v[2]);
+    }
+    if (block.n == 0)
+      break;
+  }
+  ef_reader_free(reader);
+  return n;
+}
+
+/* Ranges that meet give each row once, as the whole gives it: with its name,
+ * its line and its decimal mark. */
+static void ranges_join(void **state) {
+  (void)state;
+  enum { MOST_ROWS = 260, ROW_BYTES = 160 };
+  gen g = gen_new(81);
+  char *const text = malloc(MOST_ROWS * ROW_BYTES);
+  char *const whole = malloc(MOST_ROWS * ROW_BYTES);
+  char *const joined = malloc(MOST_ROWS * ROW_BYTES);
+  for (int round = 0; round < 60; ++round) {
+    const size_t length = random_table(&g, 1 + gen_below(&g, MOST_ROWS), text);
+    const size_t n = rows_as_text(text, length, 0, 0, whole);
+    const size_t n_parts = 1 + gen_below(&g, round % 4 == 0 ? length : 9);
+    size_t used = 0;
+    for (size_t k = 0; k < n_parts; ++k) {
+      const size_t end = ef__byte_share(length, k + 1, n_parts);
+      used += rows_as_text(text, length, ef__byte_share(length, k, n_parts),
+                           end > 0 ? end : 1, joined + used);
+    }
+    if (used != n || memcmp(joined, whole, n) != 0)
+      fail_msg("round %d: %zu parts do not join", round, n_parts);
+  }
+  free(joined);
+  free(whole);
+  free(text);
+}
+
 int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(scanning_is_parsing),
@@ -463,6 +568,7 @@ int main(void) {
       cmocka_unit_test(cgats_reads_back),
       cmocka_unit_test(cgats_refuses_what_it_cannot_hold),
       cmocka_unit_test(dialects_read_alike),
+      cmocka_unit_test(ranges_join),
       cmocka_unit_test(json_reads_back),
       cmocka_unit_test(json_is_always_valid),
   };
