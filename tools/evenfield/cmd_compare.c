@@ -6,6 +6,7 @@
 #include "compare.h"
 #include "compare_chart.h"
 #include "message.h"
+#include "part.h"
 #include "people.h"
 #include "render_compare.h"
 #include "result.h"
@@ -100,6 +101,8 @@ static exit_code check_usage(const command_options *o) {
 
 exit_code command_compare(const command_options *options) {
   exit_code code = check_usage(options);
+  if (code == EXIT_DONE)
+    code = part_check_usage(options);
   if (code == EXIT_DONE)
     code = diagram_check_usage(options);
   if (code != EXIT_DONE)

@@ -4,6 +4,7 @@
 #include "describe_chart.h"
 #include "diagram.h"
 #include "message.h"
+#include "part.h"
 #include "render_describe.h"
 #include "result.h"
 
@@ -61,7 +62,9 @@ exit_code command_describe(const command_options *options) {
     return message_usage("describe needs at least one FILE; "
                          "`evenfield describe demo:livery` shows what it does");
   }
-  const exit_code code = diagram_check_usage(options);
+  exit_code code = part_check_usage(options);
+  if (code == EXIT_DONE)
+    code = diagram_check_usage(options);
   if (code != EXIT_DONE)
     return code;
   message_sink sink = {.quiet = options->quiet};

@@ -5,6 +5,7 @@
 #include "match_chart.h"
 #include "match_report.h"
 #include "message.h"
+#include "part.h"
 #include "pictures.h"
 #include "render_match.h"
 #include "result.h"
@@ -80,6 +81,8 @@ static ef_status run(match_scene *s, receivers *r, match_summary *sum,
 
 exit_code command_match(const command_options *options) {
   exit_code code = result_check_usage(options, 1);
+  if (code == EXIT_DONE)
+    code = part_check_usage(options);
   if (code == EXIT_DONE)
     code = device_check_usage(options);
   if (code == EXIT_DONE)

@@ -144,12 +144,23 @@ static ef_status open_files(compare_scene *s, const ef_notes *notes,
                                      : o->files[0];
   s->pairing = o->pairs != NULL ? PAIR_LIST : PAIR_ONE;
   const size_t held = o->pairs != NULL ? SIZE_MAX : HELD_ROWS;
-  s->standard = finish_file_open(o, s->standard_source, held, notes, error);
+  const char *shared = o->pairs != NULL ? o->pairs : s->batch_source;
+  const ef_status status = part_of_file(o, shared, &s->part, error);
+  if (status != EF_OK)
+    return status;
+  /* What is to be said of rows that all parts need, the first one says. */
+  const bool is_first = part_has_header(o);
+  const part_range common = {is_first ? 0 : SIZE_MAX,
+                             is_first ? 0 : SIZE_MAX, false, true};
+  s->standard =
+      finish_file_open(o, s->standard_source, &common, held, notes, error);
   if (s->standard == NULL)
     return error->status;
   if (o->n_files == 1)
     return EF_OK;
-  s->batch = finish_file_open(o, s->batch_source, held, notes, error);
+  s->batch =
+      finish_file_open(o, s->batch_source, o->pairs != NULL ? &common : &s->part,
+                       held, notes, error);
   return s->batch != NULL ? EF_OK : error->status;
 }
 
@@ -436,7 +447,7 @@ ef_status compare_stream(compare_scene *s, const compare_sink *sink,
   message_progress_end(&r.progress);
   count->n_skipped = finish_file_skipped(s->standard) +
                      (s->batch != NULL ? finish_file_skipped(s->batch) : 0);
-  if (status == EF_OK && count->n_computed == 0) {
+  if (status == EF_OK && count->n_computed == 0 && s->options->part == NULL) {
     return message_fail(error, EF_NO_ANSWER,
                         "none of %zu pairs could be compared; the first, %s",
                         count->n, r.reason);

@@ -36,6 +36,7 @@ typedef struct compare_scene {
   const char *standard_source, *batch_source;
   bool is_demo;
   compare_pairing pairing;
+  part_range part; /**< of the batch, or of the list of pairs */
   finish_file *standard, *batch; /**< one file: `batch` NULL */
   bool has_spectra;              /**< both sides */
   bool same_grid;

@@ -196,7 +196,8 @@ static ef_status integrate(file_work *w, const ef_block *block, int jobs,
   return status;
 }
 
-/* A light named white is what the others of its file are seen against. */
+/* A light named white is what the others of its file are seen against. It is
+ * looked for among the first rows. */
 static void find_white(file_work *w, describe_scene *s, const ef_block *block,
                        const ef_notes *notes) {
   for (size_t i = 0; i < block->n && w->is_light && !w->has_white; ++i) {
@@ -213,6 +214,26 @@ static void find_white(file_work *w, describe_scene *s, const ef_block *block,
                  "white",
                  w->head->file);
   }
+}
+
+/* Of a part the first rows of the file may not be, and they say which light is
+ * the white. */
+static ef_status find_white_of_file(file_work *w, describe_scene *s,
+                                    const ef_notes *notes, ef_error *error) {
+  const part_range all = {0};
+  if (!w->is_light)
+    return EF_OK;
+  ef_reader *reader = source_rows(s->options, w->head->file, &all, NULL, error);
+  if (reader == NULL)
+    return error->status;
+  ef_block block;
+  ef_status status = ef_reader_next(reader, BLOCK_ROWS, &block, error);
+  if (status == EF_OK)
+    status = integrate(w, &block, s->options->jobs, error);
+  if (status == EF_OK)
+    find_white(w, s, &block, notes);
+  ef_reader_free(reader);
+  return status;
 }
 
 /* ---- One row ----------------------------------------------------------- */
@@ -356,8 +377,10 @@ static ef_status describe_file(describe_scene *s, ef_reader *reader,
                                const describe_sink *sink, size_t *n,
                                ef_error *error) {
   message_progress progress = message_progress_start(s->options->quiet);
-  ef_status status = EF_OK;
-  bool is_first = true;
+  const bool is_part = s->options->part != NULL;
+  ef_status status =
+      is_part ? find_white_of_file(w, s, notes, error) : EF_OK;
+  bool is_first = !is_part;
   size_t n_here = 0;
   while (status == EF_OK) {
     ef_block block;
@@ -379,7 +402,7 @@ static ef_status describe_file(describe_scene *s, ef_reader *reader,
   }
   message_progress_end(&progress);
   *n += n_here;
-  if (status == EF_OK && n_here == 0) {
+  if (status == EF_OK && n_here == 0 && !is_part) {
     message_fail(error, EF_MALFORMED,
                  ef_reader_skipped(reader) > 0
                      ? "no row is left: every one was at fault"
@@ -392,11 +415,16 @@ static ef_status describe_file(describe_scene *s, ef_reader *reader,
 ef_status describe_stream(describe_scene *s, const ef_notes *notes,
                           const describe_sink *sink, size_t *n,
                           size_t *n_skipped, ef_error *error) {
+  const command_options *o = s->options;
+  part_walk walk;
   *n = *n_skipped = 0;
-  ef_status status = EF_OK;
-  for (size_t f = 0; f < s->options->n_files && status == EF_OK; ++f) {
-    ef_reader *reader = source_reader(s->options, s->options->files[f],
-                                      source_kind(s->options), notes, error);
+  ef_status status = part_begin(&walk, o, o->n_files, o->files, error);
+  for (size_t f = 0; f < o->n_files && status == EF_OK; ++f) {
+    part_range range;
+    status = part_next(&walk, o->files[f], &range, error);
+    if (status != EF_OK || range.is_empty)
+      continue;
+    ef_reader *reader = source_rows(o, o->files[f], &range, notes, error);
     if (reader == NULL)
       return error->status;
     file_work w;

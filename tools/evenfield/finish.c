@@ -19,7 +19,7 @@ typedef struct row_buffer {
   size_t n, room, width;
   double *value;
   double *angle_deg;
-  size_t *line;
+  size_t *line, *offset;
   size_t *name_at; /* into `names` */
   char *names;
   size_t names_used, names_room;
@@ -136,8 +136,8 @@ static ef_status check_known(finish_file *f, finish_list *list,
 /* ---- Opening ----------------------------------------------------------- */
 
 finish_file *finish_file_open(const command_options *options, const char *path,
-                              size_t most_rows, const ef_notes *notes,
-                              ef_error *error) {
+                              const part_range *range, size_t most_rows,
+                              const ef_notes *notes, ef_error *error) {
   finish_file *f = calloc(1, sizeof *f);
   if (f == NULL) {
     message_fail(error, EF_NO_MEMORY, "out of memory for samples");
@@ -146,7 +146,9 @@ finish_file *finish_file_open(const command_options *options, const char *path,
   f->options = options;
   f->path = path;
   f->most_rows = most_rows;
-  f->reader = source_reader(options, path, source_kind(options), notes, error);
+  part_range told_of = *range;
+  told_of.reads_others = true;
+  f->reader = source_rows(options, path, &told_of, notes, error);
   if (f->reader == NULL) {
     free(f);
     return NULL;
@@ -159,6 +161,7 @@ static void buffer_free(row_buffer *b) {
   free(b->value);
   free(b->angle_deg);
   free(b->line);
+  free(b->offset);
   free(b->name_at);
   free(b->names);
 }
@@ -213,6 +216,7 @@ static bool reserve(row_buffer *b, size_t n, size_t n_bytes) {
     if (!grow(&b->value, room * b->width, sizeof *b->value) ||
         !grow(&b->angle_deg, room, sizeof *b->angle_deg) ||
         !grow(&b->line, room, sizeof *b->line) ||
+        !grow(&b->offset, room, sizeof *b->offset) ||
         !grow(&b->name_at, room, sizeof *b->name_at)) {
       return false;
     }
@@ -243,6 +247,7 @@ static bool append(row_buffer *b, const ef_block *block) {
     b->name_at[b->n] = b->names_used;
     b->names_used += length;
     b->line[b->n] = block->line[i];
+    b->offset[b->n] = block->offset[i];
     b->angle_deg[b->n] =
         block->angle_deg != NULL ? block->angle_deg[i] : (double)NAN;
     ++b->n;
@@ -302,6 +307,7 @@ static void keep_rest(row_buffer *b, size_t n_taken) {
           n * b->width * sizeof *b->value);
   memmove(b->angle_deg, b->angle_deg + n_taken, n * sizeof *b->angle_deg);
   memmove(b->line, b->line + n_taken, n * sizeof *b->line);
+  memmove(b->offset, b->offset + n_taken, n * sizeof *b->offset);
   for (size_t i = 0; i < n; ++i)
     b->name_at[i] = b->name_at[n_taken + i] - bytes;
   memmove(b->names, b->names + bytes, b->names_used - bytes);
@@ -392,7 +398,8 @@ static void chain_rows(grouping *g, size_t *head) {
     size_t *slot = slot_of(list, name);
     if (*slot == SIZE_MAX) {
       *slot = list->n++;
-      list->item[*slot] = (finish){.name = name, .line = b->line[row]};
+      list->item[*slot] = (finish){
+          .name = name, .line = b->line[row], .offset = b->offset[row]};
       head[*slot] = SIZE_MAX;
     }
     size_t s = find_specimen(g, head[*slot], b->angle_deg[row]);

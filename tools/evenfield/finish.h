@@ -8,6 +8,7 @@
 #include <evenfield/exchange.h>
 
 #include "looks.h"
+#include "part.h"
 
 /** A sample at one angle: the mean of its readings. */
 typedef struct specimen {
@@ -22,8 +23,8 @@ typedef struct specimen {
 /** A sample. Borrowed from its list. */
 typedef struct finish {
   const char *name;
-  size_t line;
-  size_t n; /**< angles */
+  size_t line, offset; /**< of its first reading in the file */
+  size_t n;            /**< angles */
   const specimen *at;
   /** Where an earlier part of the file has readings of the same name, which are
    * not in the mean: line, else 0. */
@@ -49,12 +50,12 @@ finish *finish_list_find(const finish_list *list, const char *name);
 /** A file of samples, read part by part. */
 typedef struct finish_file finish_file;
 
-/** `most_rows`: of the first part, within which readings of a name may stand
- * anywhere; in later parts they must follow each other. NULL and the error
- * else. Free with finish_file_free. */
+/** All rows are read, whatever the range. `most_rows`: of the first part, within
+ * which readings of a name may stand anywhere; in later parts they must follow
+ * each other. NULL and the error else. Free with finish_file_free. */
 finish_file *finish_file_open(const command_options *options, const char *path,
-                              size_t most_rows, const ef_notes *notes,
-                              ef_error *error);
+                              const part_range *range, size_t most_rows,
+                              const ef_notes *notes, ef_error *error);
 void finish_file_free(finish_file *file);
 const ef_reader_head *finish_file_head(const finish_file *file);
 size_t finish_file_skipped(const finish_file *file);

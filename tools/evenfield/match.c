@@ -97,7 +97,11 @@ static ef_status set_targets(match_scene *s, const ef_notes *notes,
   const command_options *o = s->options;
   s->demo_targets = o->n_files == 0;
   s->target_source = s->demo_targets ? default_targets : o->files[0];
-  s->reader = source_reader(o, s->target_source, source_kind(o), notes, error);
+  part_range range;
+  const ef_status status = part_of_file(o, s->target_source, &range, error);
+  if (status != EF_OK)
+    return status;
+  s->reader = source_rows(o, s->target_source, &range, notes, error);
   if (s->reader == NULL)
     return error->status;
   return targets_init(&s->targets, o, s->setup, &s->basis,
@@ -429,7 +433,7 @@ ef_status match_stream(match_scene *s, size_t n_sinks,
     const double none = (double)NAN;
     sum->in_gamut = (ef_spread){none, none, none};
   }
-  if (status == EF_OK && sum->n == 0) {
+  if (status == EF_OK && sum->n == 0 && s->options->part == NULL) {
     message_fail(error, EF_MALFORMED,
                  sum->n_skipped > 0 ? "no row is left: every one was at fault"
                                     : "there is a header and no row to read");

@@ -100,6 +100,7 @@ typedef struct command_options {
   int bits;       /**< of isolate */
   int match_bits; /**< of match and swatch; -1: what the device has */
   int swatch_bits, jobs, categories;
+  const char *part;     /**< K/N; of describe, match, compare */
   const char *boundary; /**< where its points go */
   bool skip_bad, check, worst_case, grade_simulators, robust, force, quiet;
   bool help, version;

@@ -622,6 +622,10 @@ static const option_row table[] = {
      "threads to use; default 0, one for each core; changes no result"},
     {"skip-bad", NULL, READING | COMMAND_PROFILE, TYPE_FLAG, FIELD(skip_bad), 0, 0, NULL,
      "leave out rows that are at fault, and count them"},
+    {"part", "K/N", COMMAND_DESCRIBE | COMMAND_MATCH | COMMAND_COMPARE,
+     TYPE_TEXT, FIELD(part), 0, 0, NULL,
+     "answer the rows of part K of N only, with --format csv: joined in their "
+     "order the parts are the whole answer, byte by byte"},
     {"jobs", "N", READING | COMMAND_OBSERVER | COMMAND_ISOLATE | COMMAND_PROFILE | COMMAND_IMAGE, TYPE_INTEGER,
      FIELD(jobs), 0, 4096, NULL,
      "threads to use; default 0, one for each core; changes no result"},

@@ -24,6 +24,7 @@ typedef struct maker {
   finish_list batch;
   pair *pending;
   size_t n_pending;
+  size_t offset; /* of the latest sample in the batch, or pair in the list */
 } maker;
 
 /* ---- Blocks ------------------------------------------------------------ */
@@ -34,7 +35,11 @@ static ef_status flush(maker *m, ef_error *error) {
   return n == 0 ? EF_OK : m->sink->block(m->sink->self, n, m->pending, error);
 }
 
+/* Pairs of other parts are left out here, so that whatever part is asked for
+ * all are made in one way. */
 static ef_status push(maker *m, const pair *p, ef_error *error) {
+  if (!part_holds(&m->scene->part, m->offset))
+    return EF_OK;
   m->pending[m->n_pending++] = *p;
   return m->n_pending < BLOCK_PAIRS ? EF_OK : flush(m, error);
 }
@@ -106,6 +111,7 @@ static bool is_torn(const finish *f, const char *source, pair *p) {
 
 static ef_status pair_sample(maker *m, finish *sample, ef_error *error) {
   compare_scene *s = m->scene;
+  m->offset = sample->offset;
   pair p = {.sample = sample,
             .sample_name = sample->name,
             .standard_name = "",
@@ -249,7 +255,9 @@ static ef_status read_list(maker *m, ef_error *error) {
     if (status != EF_OK || texts == NULL)
       break;
     ++n;
-    status = push_listed(m, &names, texts, line, error);
+    m->offset = ef_fields_offset(fields);
+    if (part_holds(&s->part, m->offset))
+      status = push_listed(m, &names, texts, line, error);
   } while (status == EF_OK);
   if (status == EF_OK)
     status = flush(m, error);

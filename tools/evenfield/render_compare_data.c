@@ -7,6 +7,7 @@
 #include "document.h"
 #include "grades.h"
 #include "message.h"
+#include "part.h"
 #include "viewing.h"
 #include "words.h"
 
@@ -309,6 +310,8 @@ compare_data *compare_data_new(const compare_scene *s, ef_output *output,
     compare_data_free(d);
     return NULL;
   }
+  if (is_csv && !part_has_header(s->options))
+    return d;
   if (is_csv) {
     static const compared none = {.standard = "", .sample = ""};
     record r = document_header(&d->out);

@@ -6,6 +6,7 @@
 
 #include "document.h"
 #include "message.h"
+#include "part.h"
 
 struct describe_data {
   document out;
@@ -96,6 +97,8 @@ describe_data *describe_data_new(const describe_scene *s, ef_output *output,
     describe_data_free(d);
     return NULL;
   }
+  if (is_csv && !part_has_header(s->options))
+    return d;
   if (is_csv) {
     const description none = {.name = "", .file = "", .kind = ""};
     record r = document_header(&d->out);

@@ -7,6 +7,7 @@
 
 #include "document.h"
 #include "message.h"
+#include "part.h"
 
 struct match_data {
   ef_output *output;
@@ -240,6 +241,8 @@ static ef_status begin(void *self, const match_scene *s, ef_error *error) {
   const ef_status status = document_open(&d->out, d->output, d->is_csv, error);
   if (status != EF_OK)
     return status;
+  if (d->is_csv && !part_has_header(s->options))
+    return EF_OK;
   if (d->is_csv) {
     record r = document_header(&d->out);
     const ef_match none = {0};

@@ -35,15 +35,33 @@ ef_kind_choice source_kind(const command_options *options) {
   return options->kind == 0 ? EF_KIND_SURFACE : EF_KIND_LIGHT;
 }
 
-ef_reader *source_reader(const command_options *options, const char *path,
-                         ef_kind_choice kind, const ef_notes *notes,
-                         ef_error *error) {
+static ef_reader_settings reader_settings(const command_options *options,
+                                          ef_kind_choice kind,
+                                          const ef_notes *notes) {
   ef_reader_settings settings = ef_reader_settings_default();
   settings.kind = kind;
   settings.skip_bad = options->skip_bad;
   if (!isnan(options->device_max))
     settings.device_max = options->device_max;
   settings.notes = notes;
+  return settings;
+}
+
+ef_reader *source_rows(const command_options *options, const char *path,
+                       const part_range *range, const ef_notes *notes,
+                       ef_error *error) {
+  ef_reader_settings settings =
+      reader_settings(options, source_kind(options), notes);
+  settings.first_byte = range->first_byte;
+  settings.end_byte = range->end_byte;
+  settings.reads_others = range->reads_others;
+  return ef_reader_open(path, &settings, error);
+}
+
+ef_reader *source_reader(const command_options *options, const char *path,
+                         ef_kind_choice kind, const ef_notes *notes,
+                         ef_error *error) {
+  const ef_reader_settings settings = reader_settings(options, kind, notes);
   if (options->kept == NULL)
     return ef_reader_open(path, &settings, error);
   const char *text;

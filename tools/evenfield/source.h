@@ -8,6 +8,7 @@
 #include <evenfield/observer.h>
 
 #include "option.h"
+#include "part.h"
 
 /** True when `name` is meant as a file: it exists, or it has the look of a
  * path. */
@@ -19,6 +20,11 @@ ef_kind_choice source_kind(const command_options *options);
 ef_reader *source_reader(const command_options *options, const char *path,
                          ef_kind_choice kind, const ef_notes *notes,
                          ef_error *error);
+/** The rows of a large file, or those of a part of it; --kind when the file is
+ * silent. */
+ef_reader *source_rows(const command_options *options, const char *path,
+                       const part_range *range, const ef_notes *notes,
+                       ef_error *error);
 /** --observer: a name or a file. */
 ef_observer *source_observer(const command_options *options,
                              const ef_notes *notes, ef_error *error);
