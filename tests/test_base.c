@@ -1,7 +1,10 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include <float.h>
+#include <pthread.h>
 #include <stdatomic.h>
 #include <stdlib.h>
+#include <sys/wait.h>
+#include <unistd.h>
 
 #include <gsl/gsl_errno.h>
 
@@ -381,6 +384,59 @@ static void loop_visits_each_index_once_in_fixed_chunks(void **state) {
   ef_parallel_for(0, 4, 0, record_range, NULL); /* nothing to call */
 }
 
+enum { OUTER = 40, INNER = 50 };
+
+static void count_inner(void *ctx, size_t begin, size_t end) {
+  atomic_fetch_add((atomic_size_t *)ctx, end - begin);
+}
+
+static void run_inner(void *ctx, size_t begin, size_t end) {
+  for (size_t i = begin; i < end; ++i)
+    ef_parallel_for(INNER, 3, 3, count_inner, ctx);
+}
+
+static void *run_outer(void *cookie) {
+  for (int i = 0; i < 20; ++i)
+    ef_parallel_for(OUTER, 1, 4, run_inner, cookie);
+  return NULL;
+}
+
+/* Each waits for its own pieces and for no other's. */
+static void loops_run_within_and_beside_each_other(void **state) {
+  (void)state;
+  enum { CALLERS = 5 };
+  pthread_t caller[CALLERS];
+  atomic_size_t visits[CALLERS];
+  for (int i = 0; i < CALLERS; ++i) {
+    atomic_init(&visits[i], 0);
+    assert_int_equal(pthread_create(&caller[i], NULL, run_outer, &visits[i]),
+                     0);
+  }
+  for (int i = 0; i < CALLERS; ++i) {
+    pthread_join(caller[i], NULL);
+    assert_int_equal(visits[i], 20 * OUTER * INNER);
+  }
+}
+
+/* A copy of the process has none of its parked threads, and starts its own. */
+static void loops_run_in_a_copy_of_the_process(void **state) {
+  (void)state;
+  atomic_size_t visits;
+  atomic_init(&visits, 0);
+  run_outer(&visits);
+  const pid_t copy = fork();
+  assert_true(copy >= 0);
+  if (copy == 0) {
+    run_outer(&visits);
+    if (atomic_load(&visits) != 40 * OUTER * INNER) _exit(1);
+    execlp("true", "true", NULL); /* ends without a look for lost memory */
+    _exit(2);
+  }
+  int status = -1;
+  assert_int_equal(waitpid(copy, &status, 0), copy);
+  assert_int_equal(status, 0);
+}
+
 /* ---- GSL --------------------------------------------------------------- */
 
 static void gsl_codes_become_ours(void **state) {
@@ -504,6 +560,8 @@ int main(void) {
       cmocka_unit_test(quantile_by_hand),
       cmocka_unit_test(quantile_is_that_of_sorted_values),
       cmocka_unit_test(loop_visits_each_index_once_in_fixed_chunks),
+      cmocka_unit_test(loops_run_within_and_beside_each_other),
+      cmocka_unit_test(loops_run_in_a_copy_of_the_process),
       cmocka_unit_test(gsl_codes_become_ours),
       cmocka_unit_test(near_names_come_nearest_first),
       cmocka_unit_test(unknown_name_is_answered_with_near_ones),

@@ -104,10 +104,12 @@ EF_API size_t ef_nearest_names(const char *name, const char *const *known,
 EF_API double ef_quantile(size_t n, double *value, double p);
 
 /** Calls `body` for the pieces [begin, end) of 0 .. n, each `chunk` long but
- * the last, on up to `jobs` threads (0: all cores), the caller's among them,
- * and returns when all are done. Pieces depend on n and `chunk` alone, so a
- * body that writes only to its own range gives the same result with any number
- * of threads. `chunk` 0 counts as 1. */
+ * the last, on up to `jobs` threads (0: as many as the process may use cores),
+ * the caller's among them, and returns when all are done. Pieces depend on n and
+ * `chunk` alone, so a body that writes only to its own range gives the same
+ * result with any number of threads. `chunk` 0 counts as 1. A body may call this
+ * again, and several threads may at once. The threads stay, parked, until the
+ * process ends; one made by fork starts its own. */
 EF_API void ef_parallel_for(size_t n, size_t chunk, int jobs,
                             void (*body)(void *ctx, size_t begin, size_t end),
                             void *ctx);

@@ -167,7 +167,8 @@ int ef__shortest_digits(double value, char digit[EF__SHORTEST_DIGITS]);
 
 /** ef_parallel_for under the name that the library calls it by. A single chunk
  * runs on the calling thread; threads that cannot be started are done without.
- */
+ * Threads stay, parked, for the next loop. To wake one and be done with it takes
+ * some tens of microseconds: chunks should be worth a hundred or more. */
 void ef__parallel_for(size_t n, size_t chunk, int jobs,
                       void (*body)(void *ctx, size_t begin, size_t end),
                       void *ctx);
