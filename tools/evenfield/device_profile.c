@@ -107,6 +107,11 @@ static void describe(text *out, const match_scene *s) {
                "used. How true the profile is to its device, `evenfield profile "
                "check` tells");
   text_label(out, "Matched by", &t);
+  if (!is_ink(own))
+    return;
+  text_add(&t, "D50 only: what others do follows from spectra, and a profile "
+               "has none");
+  text_label(out, "Lights", &t);
 }
 
 /* ---- As data ------------------------------------------------------------- */

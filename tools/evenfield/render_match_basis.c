@@ -32,6 +32,22 @@ static void add_targets(text *out, const match_scene *s) {
   text_label(out, "Targets", &t);
 }
 
+/* Why no other lights are told of, where they could have been. */
+static void add_other_lights(text *out, const match_scene *s) {
+  if (s->has_views || s->lights.n < 2)
+    return;
+  text t = {0};
+  text_format(&t, "%s only: what others do follows from spectra, and ",
+              ef_illuminant_name(s->illuminant));
+  if (ef_device_has_spectra(s->device.device)) {
+    const ef_reader_head *head = ef_reader_get_head(s->reader);
+    text_format(&t, "the targets are %s", ef_content_text(head->content));
+  } else {
+    text_format(&t, "this %s is known without", s->device.kind->words.noun);
+  }
+  text_label(out, "Lights", &t);
+}
+
 static void add_observer(text *out, const match_scene *s) {
   text t = {0};
   text_format(&t, "%s: %s", ef_observer_name(s->observer),
@@ -105,6 +121,7 @@ static void add_basis(text *out, const match_scene *s) {
   text_add(out, "\nWhat this rests on:\n");
   s->device.kind->describe(out, s);
   add_targets(out, s);
+  add_other_lights(out, s);
   add_observer(out, s);
   add_people(out, s);
   add_metric(out, s);
