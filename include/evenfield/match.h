@@ -297,6 +297,13 @@ typedef struct ef_recipe {
   /** Of the reflectances, over the samples of the colourants; NaN without a
    * spectrum. */
   double spectral_rms;
+  /** The difference to be expected (root of the mean square) in a light that is
+   * not known: one of the lights (each counts the same), its power at every
+   * wavelength off by chance by as much as it is itself, in peaks of 10 nm, the
+   * white with it. It holds what errors of reflectance do to the eye, together
+   * and each alone, to second order around the standard; NaN without a
+   * spectrum. */
+  double unknown_light;
   ef_recipe_view view[EF_MAX_LIGHTS];
   /** How far the mixture's colour in the first light moves, in the metric, when
    * 1 % more of colourant i is weighed in and all else stays. */
@@ -305,8 +312,10 @@ typedef struct ef_recipe {
 
 typedef struct ef_recipes {
   ef_recipe colour;   /**< the least `difference` */
-  ef_recipe spectral; /**< the least `spectral_rms`: what differs least in any
-                           other light, as far as these colourants can */
+  /** The least `unknown_light`: the least metameric. A plain sum of squared
+   * errors of reflectance knows nothing of the eye; its least has left colours
+   * off by several JND. Only for standards with a spectrum. */
+  ef_recipe spectral;
   /** The least `difference` that was found with whole steps: among all
    * roundings up and down of `colour`, then by moves of one step in one or two
    * colourants. Of the total loading whole steps count as well. */

@@ -33,6 +33,8 @@ static void tell_views(ef__recipe_search *p, ef_recipe *out) {
   out->difference = sqrt(sum);
   out->spectral_rms =
       p->has_spectrum ? sqrt(ef__recipe_mean_square(p)) : nan("");
+  out->unknown_light =
+      p->has_spectrum ? sqrt(ef__recipe_expected_square(p)) : nan("");
 }
 
 /* The batch with 1 % more of colourant i: what is weighed in is kept, and the
@@ -237,6 +239,42 @@ static ef_status prepare_light(ef__recipe_search *p,
   return status;
 }
 
+/* Width of the peaks by which a light that is not known departs from those that
+ * are: as wide as the lines and phosphors of lamps are, a choice of ours. */
+static const double ripple_nm = 10.0;
+
+/* Samples to a peak of a light that is not known. */
+static double samples_of_ripple(const ef_grid *grid) {
+  if (grid->count < 2)
+    return 1.0;
+  const size_t last = grid->count - 1;
+  return ripple_nm * (double)last /
+         (ef_grid_wavelength(grid, last) - ef_grid_wavelength(grid, 0));
+}
+
+/* A light that is not known: one of those that are, its power at every
+ * wavelength off by chance by as much as it is itself, in peaks of `ripple_nm`.
+ * Prepares what an error of reflectance then does to the difference, to second
+ * order around the standard. */
+static void expect_ripple(ef__recipe_search *p) {
+  const double share = samples_of_ripple(ef_device_grid(p->device));
+  memcpy(p->reflectance, p->standard, p->count * sizeof *p->standard);
+  for (size_t k = 0; k < p->n_lights; k++) {
+    ef__look *light = &p->light[k];
+    double tensor[9], jacobian[9];
+    const ef_xyz xyz = ef__recipe_colour(p, light);
+    ef_metric_coordinates(p->metric, xyz, &light->conditions, light->sampled);
+    ef_metric_tensor(p->metric, light->sampled, tensor);
+    ef_metric_jacobian(p->metric, xyz, &light->conditions, jacobian);
+    for (size_t r = 0; r < 9; r++) {
+      light->ripple[r] = 0.0;
+      for (size_t q = 0; q < 9; q++)
+        light->ripple[r] += share * tensor[q] * jacobian[q / 3 * 3 + r / 3] *
+                            jacobian[q % 3 * 3 + r % 3];
+    }
+  }
+}
+
 static ef_status prepare(ef__recipe_search *p, const ef_standard *standard,
                          const ef_recipe_settings *settings, void **block,
                          ef_error *error) {
@@ -256,6 +294,7 @@ static ef_status prepare(ef__recipe_search *p, const ef_standard *standard,
 static void find_all(ef__recipe_search *p, double step, ef_recipes *out) {
   double c[EF_MAX_DRIVES], stepped[EF_MAX_DRIVES];
   if (p->has_spectrum) {
+    expect_ripple(p);
     ef__recipe_least(p, EF__GOAL_SPECTRUM, NULL, c);
     tell(p, c, &out->spectral);
   }

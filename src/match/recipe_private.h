@@ -13,6 +13,11 @@ typedef struct ef__look {
   ef_conditions conditions;
   ef_xyz standard;
   double target[3]; /**< in the metric's coordinates */
+  /** The same of the standard at the samples of the colourants. */
+  double sampled[3];
+  /** Squared difference of a small move in X, Y, Z around that, times the share
+   * of a sample in a peak of a light that is not known. */
+  double ripple[9];
   double weight;    /**< of all that count 1 in sum */
 } ef__look;
 
@@ -34,7 +39,7 @@ typedef struct ef__recipe_search {
 } ef__recipe_search;
 
 /** What is made small: the weighted mean of the squared differences in the
- * lights, or the mean squared error of the reflectances. */
+ * lights, or what the squared difference is expected to be in any light. */
 typedef enum ef__recipe_goal {
   EF__GOAL_COLOUR,
   EF__GOAL_SPECTRUM
@@ -51,6 +56,8 @@ ef_xyz ef__recipe_colour(const ef__recipe_search *search,
                          const ef__look *light);
 /** Mean squared error of `reflectance`. */
 double ef__recipe_mean_square(const ef__recipe_search *search);
+/** Squared difference of `reflectance` to be expected in any light. */
+double ef__recipe_expected_square(const ef__recipe_search *search);
 
 /** The unknowns with the least goal of what several starts end at; from
  * `known` as well, unless NULL. */

@@ -71,36 +71,115 @@ double ef__recipe_mean_square(const ef__recipe_search *p) {
   return sum / (double)p->count;
 }
 
-static double square_in(const ef__recipe_search *p, const ef__look *light) {
+/* Error of reflectance at sample s for i = n, else its slope with unknown i. */
+static double error_at(const ef__recipe_search *p, size_t s, size_t i) {
+  return i < p->n ? slope_of(p, s, i) : p->reflectance[s] - p->standard[s];
+}
+
+/* Its mean by the weights of each channel: what the white takes along when the
+ * light changes. */
+static void mean_error(const ef__recipe_search *p, const ef__look *light,
+                       size_t i, double mean[3]) {
+  const double *weight = ef_weights_matrix(light->weights);
+  for (size_t c = 0; c < 3; c++) {
+    double sum = 0.0, white = 0.0;
+    for (size_t s = 0; s < p->count; s++) {
+      sum += weight[c * p->count + s] * error_at(p, s, i);
+      white += weight[c * p->count + s];
+    }
+    mean[c] = sum / white;
+  }
+}
+
+/* How far it moves X, Y, Z, against the white, when the light has twice its
+ * power at sample s. */
+static void move_at(const ef__recipe_search *p, const ef__look *light, size_t s,
+                    size_t i, const double mean[3], double move[3]) {
+  const double *weight = ef_weights_matrix(light->weights);
+  for (size_t c = 0; c < 3; c++)
+    move[c] = weight[c * p->count + s] * (error_at(p, s, i) - mean[c]);
+}
+
+static double product(const double matrix[9], const double a[3],
+                      const double b[3]) {
+  double sum = 0.0;
+  for (size_t r = 0; r < 9; r++)
+    sum += matrix[r] * a[r / 3] * b[r % 3];
+  return sum;
+}
+
+/* What the peaks of the light add to the squared difference. */
+static double ripple_square(const ef__recipe_search *p, const ef__look *light) {
+  double mean[3], move[3], sum = 0.0;
+  mean_error(p, light, p->n, mean);
+  for (size_t s = 0; s < p->count; s++) {
+    move_at(p, light, s, p->n, mean, move);
+    sum += product(light->ripple, move, move);
+  }
+  return sum;
+}
+
+/* How much a light counts, all of them 1 in sum. */
+static double weight_of(const ef__recipe_search *p, ef__recipe_goal g,
+                        size_t k) {
+  return g == EF__GOAL_SPECTRUM ? 1.0 / (double)p->n_lights
+                                : p->light[k].weight;
+}
+
+static const double *target_of(const ef__look *light, ef__recipe_goal g) {
+  return g == EF__GOAL_SPECTRUM ? light->sampled : light->target;
+}
+
+static double square_in(const ef__recipe_search *p, const ef__look *light,
+                        ef__recipe_goal g) {
   double at[3];
   ef_metric_coordinates(p->metric, ef__recipe_colour(p, light),
                         &light->conditions, at);
-  const double d = ef_metric_difference(p->metric, light->target, at);
+  const double d = ef_metric_difference(p->metric, target_of(light, g), at);
   return d * d;
+}
+
+/* Of what was mixed last. */
+static double goal_value(const ef__recipe_search *p, ef__recipe_goal g) {
+  double sum = 0.0;
+  for (size_t k = 0; k < p->n_lights; k++) {
+    const ef__look *light = &p->light[k];
+    const double weight = weight_of(p, g, k);
+    if (weight > 0.0)
+      sum += weight * square_in(p, light, g);
+    if (g == EF__GOAL_SPECTRUM)
+      sum += weight * ripple_square(p, light);
+  }
+  return sum;
+}
+
+double ef__recipe_expected_square(const ef__recipe_search *p) {
+  return goal_value(p, EF__GOAL_SPECTRUM);
 }
 
 static double value_of(ef__recipe_search *p, ef__recipe_goal g,
                        const double *c) {
   mix(p, c, false);
-  if (g == EF__GOAL_SPECTRUM)
-    return ef__recipe_mean_square(p);
-  double sum = 0.0;
-  for (size_t k = 0; k < p->n_lights; k++)
-    if (p->light[k].weight > 0.0)
-      sum += p->light[k].weight * square_in(p, &p->light[k]);
-  return sum;
+  return goal_value(p, g);
 }
 
-static void expand_spectrum(const ef__recipe_search *p, place *at) {
-  const double unit = 2.0 / (double)p->count;
-  at->value = ef__recipe_mean_square(p);
+/* Its value, slopes and the curvature of a sum of squares. */
+static void expand_ripple(const ef__recipe_search *p, const ef__look *light,
+                          double weight, place *at) {
+  double mean[MOST + 1][3], move[MOST + 1][3];
+  const size_t n = p->n;
+  for (size_t i = 0; i <= n; i++)
+    mean_error(p, light, i, mean[i]);
   for (size_t s = 0; s < p->count; s++) {
-    const double off = p->reflectance[s] - p->standard[s];
-    for (size_t i = 0; i < p->n; i++) {
-      const double slope = slope_of(p, s, i);
-      at->gradient[i] += unit * off * slope;
-      for (size_t j = 0; j < p->n; j++)
-        at->hessian[i * p->n + j] += unit * slope * slope_of(p, s, j);
+    for (size_t i = 0; i <= n; i++)
+      move_at(p, light, s, i, mean[i], move[i]);
+    at->value += weight * product(light->ripple, move[n], move[n]);
+    for (size_t i = 0; i < n; i++) {
+      at->gradient[i] +=
+          weight * 2.0 * product(light->ripple, move[n], move[i]);
+      for (size_t j = 0; j < n; j++)
+        at->hessian[i * n + j] +=
+            weight * 2.0 * product(light->ripple, move[i], move[j]);
     }
   }
 }
@@ -128,23 +207,23 @@ static void coordinate_slopes(const ef__recipe_search *p, const ef__look *light,
 /* The formula's own gradient, and for the curvature its local tensor half way
  * between standard and mixture, which is positive definite. */
 static void expand_colour(const ef__recipe_search *p, const ef__look *light,
-                          place *at) {
+                          const double target[3], double weight, place *at) {
   double here[3], middle[3], tensor[9], m[3 * MOST];
   ef__expansion own;
   const ef_xyz xyz = ef__recipe_colour(p, light);
   ef_metric_coordinates(p->metric, xyz, &light->conditions, here);
-  ef__metric_expand(p->metric, light->target, here, &own);
+  ef__metric_expand(p->metric, target, here, &own);
   for (size_t r = 0; r < 3; r++)
-    middle[r] = 0.5 * (here[r] + light->target[r]);
+    middle[r] = 0.5 * (here[r] + target[r]);
   ef_metric_tensor(p->metric, middle, tensor);
   coordinate_slopes(p, light, xyz, m);
-  at->value += light->weight * own.square;
+  at->value += weight * own.square;
   for (size_t i = 0; i < p->n; i++) {
     for (size_t r = 0; r < 3; r++)
-      at->gradient[i] += light->weight * own.gradient[r] * m[r * p->n + i];
+      at->gradient[i] += weight * own.gradient[r] * m[r * p->n + i];
     for (size_t j = 0; j < p->n; j++)
       for (size_t r = 0; r < 9; r++)
-        at->hessian[i * p->n + j] += light->weight * 2.0 * tensor[r] *
+        at->hessian[i * p->n + j] += weight * 2.0 * tensor[r] *
                                      m[r / 3 * p->n + i] * m[r % 3 * p->n + j];
   }
 }
@@ -154,13 +233,14 @@ static void expand(ef__recipe_search *p, ef__recipe_goal g, place *at) {
   at->value = 0.0;
   memset(at->gradient, 0, sizeof at->gradient);
   memset(at->hessian, 0, sizeof at->hessian);
-  if (g == EF__GOAL_SPECTRUM) {
-    expand_spectrum(p, at);
-    return;
+  for (size_t k = 0; k < p->n_lights; k++) {
+    const ef__look *light = &p->light[k];
+    const double weight = weight_of(p, g, k);
+    if (weight > 0.0)
+      expand_colour(p, light, target_of(light, g), weight, at);
+    if (g == EF__GOAL_SPECTRUM)
+      expand_ripple(p, light, weight, at);
   }
-  for (size_t k = 0; k < p->n_lights; k++)
-    if (p->light[k].weight > 0.0)
-      expand_colour(p, &p->light[k], at);
 }
 
 /* ---- Descent within the limits ------------------------------------------ */

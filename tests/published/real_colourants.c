@@ -12,6 +12,8 @@
 
 #include <evenfield/device.h>
 #include <evenfield/difference.h>
+#include <evenfield/exchange.h>
+#include <evenfield/match.h>
 
 #include "figures.h"
 #include "near.h"
@@ -274,6 +276,152 @@ static void mixtures_of_watercolours(void **state) {
   ef_colourants_free(all);
 }
 
+/* ---- Recipes in lights they were not made for --------------------------- */
+
+enum { CHIP_SAMPLES = 36, MOST_LIGHTS = 64 };
+
+typedef struct lamp {
+  ef_illuminant *light;
+  ef_weights *of_chip, *of_paint;
+  ef_xyz white;
+} lamp;
+
+static lamp lamp_new(const char *name, const ef_observer *observer,
+                     const ef_grid *chip, const ef_grid *paint) {
+  double w[3];
+  ef_error error;
+  lamp l = {.light = ef_illuminant_new(name, &error)};
+  if (l.light == NULL)
+    fail_msg("%s", error.message);
+  const ef_viewing viewing = ef_viewing_default(l.light);
+  l.of_chip =
+      ef_observer_weights(observer, EF_TRISTIMULUS, chip, &viewing, NULL, NULL);
+  l.of_paint = ef_observer_weights(observer, EF_TRISTIMULUS, paint, &viewing,
+                                   NULL, NULL);
+  ef_observer_white(observer, EF_TRISTIMULUS, l.light, NULL, w, NULL);
+  l.white = (ef_xyz){w[0], w[1], w[2]};
+  return l;
+}
+
+/* The published lights of daylight, lamps and LEDs: none of high-pressure
+ * sodium, under which colours are few. */
+static size_t all_lamps(const ef_observer *observer, const ef_grid *chip,
+                        const ef_grid *paint, lamp *out) {
+  static const char *const others[] = {
+      "A",      "C",       "D50",      "D55",    "D65",
+      "D75",    "LED-B1",  "LED-B2",   "LED-B3", "LED-B4",
+      "LED-B5", "LED-BH1", "LED-RGB1", "LED-V1", "LED-V2"};
+  char name[16];
+  size_t n = 0;
+  for (size_t i = 0; i < sizeof others / sizeof *others; i++)
+    out[n++] = lamp_new(others[i], observer, chip, paint);
+  for (int i = 1; i <= 12 + 15; i++) {
+    snprintf(name, sizeof name, i <= 12 ? "FL%d" : "FL3.%d",
+             i <= 12 ? i : i - 12);
+    out[n++] = lamp_new(name, observer, chip, paint);
+  }
+  return n;
+}
+
+static double off_in(const lamp *l, const double *chip, const double *paint) {
+  double a[3], b[3];
+  ef_weights_apply(l->of_chip, 1, chip, 1, a, NULL);
+  ef_weights_apply(l->of_paint, 1, paint, 1, b, NULL);
+  return ciede2000(ef_xyz_to_lab((ef_xyz){a[0], a[1], a[2]}, l->white),
+                   ef_xyz_to_lab((ef_xyz){b[0], b[1], b[2]}, l->white));
+}
+
+static void demo_colourants(ef_device **device) {
+  ef_error error;
+  ef_reader_settings reading = ef_reader_settings_default();
+  reading.kind = EF_KIND_FUNCTION;
+  ef_spectra *pastes =
+      ef_spectra_read("demo:livery-colourants", &reading, &error);
+  if (pastes == NULL)
+    fail_msg("%s", error.message);
+  ef_colourants *set = ef_colourants_from_spectra(pastes, &error);
+  ef_mixture_settings settings = ef_mixture_settings_default();
+  settings.base = 0;
+  *device = ef_mixture_new("pastes", set, &settings, &error);
+  if (*device == NULL)
+    fail_msg("%s", error.message);
+  ef_colourants_free(set);
+  ef_spectra_free(pastes);
+}
+
+/* Chips of the Munsell Book of Color (P. Centore 2012) that invented pastes
+ * can match under D65, seen under 42 illuminants of CIE 015 of which the
+ * search knows four. The recipe for any light has to be better than the
+ * colorimetric one where both were not asked for; how much stands in the
+ * bounds, a little above what was measured. The recipe of the least plain
+ * error of reflectance was off by some 5.3 in the mean and 7.2 in the worst. */
+static void chips_in_many_lights(void **state) {
+  (void)state;
+  static const char *const named[] = {"D65", "A", "FL11", "LED-B3"};
+  const ef_grid grid = {CHIP_SAMPLES, 380, 10, NULL};
+  ef_observer *observer = ef_observer_new("cie-1931", NULL);
+  ef_device *device;
+  demo_colourants(&device);
+  static lamp lamps[MOST_LIGHTS];
+  const size_t n_lamps =
+      all_lamps(observer, &grid, ef_device_grid(device), lamps);
+  ef_illuminant *light[4];
+  for (size_t k = 0; k < 4; k++)
+    light[k] = ef_illuminant_new(named[k], NULL);
+  ef_recipe_settings settings = ef_recipe_settings_default();
+  settings.observer = observer;
+  settings.n_lights = 4;
+  settings.light = (const ef_illuminant *const *)light;
+  figures f = figures_reference("reflectance_munsell_glossy_2007.csv");
+  size_t n = 0;
+  double mean[2] = {0}, worst[2] = {0}, daylight = 0;
+  for (size_t r = 0; r < f.n_rows; r += 15) {
+    double chip[CHIP_SAMPLES], paint[100];
+    for (size_t s = 0; s < CHIP_SAMPLES; s++)
+      chip[s] = figures_number(&f, r, 1 + s);
+    const ef_standard standard = {.grid = &grid, .spectrum = chip};
+    ef_recipes found;
+    assert_int_equal(ef_recipe_find(device, &standard, &settings, &found, NULL),
+                     EF_OK);
+    if (found.colour.view[0].difference > 0.5)
+      continue;
+    n++;
+    daylight += found.spectral.view[0].difference;
+    for (int k = 0; k < 2; k++) {
+      const ef_recipe *recipe = k == 0 ? &found.colour : &found.spectral;
+      double most = 0;
+      ef_mixture_spectrum(device, recipe->concentration, paint, NULL, NULL);
+      for (size_t i = 0; i < n_lamps; i++) {
+        const double off = off_in(&lamps[i], chip, paint);
+        mean[k] += off / (double)n_lamps;
+        most = fmax(most, off);
+      }
+      worst[k] += most;
+    }
+  }
+  for (int k = 0; k < 2; k++) {
+    mean[k] /= (double)n;
+    worst[k] /= (double)n;
+  }
+  printf("# %zu chips in %zu lights, CIEDE2000: by colour %.3f, in the worst "
+         "light %.3f; for any light %.3f, %.3f, and %.3f in D65\n",
+         n, n_lamps, mean[0], worst[0], mean[1], worst[1],
+         daylight / (double)n);
+  assert_true(n > 25);
+  assert_true(mean[1] < mean[0] && worst[1] < worst[0]);
+  assert_true(mean[1] < 0.9 && worst[1] < 2.1 && daylight / (double)n < 0.75);
+  for (size_t i = 0; i < n_lamps; i++) {
+    ef_weights_free(lamps[i].of_chip);
+    ef_weights_free(lamps[i].of_paint);
+    ef_illuminant_free(lamps[i].light);
+  }
+  for (size_t k = 0; k < 4; k++)
+    ef_illuminant_free(light[k]);
+  figures_free(&f);
+  ef_device_free(device);
+  ef_observer_free(observer);
+}
+
 int main(void) {
   if (figures_no_reference("measured and published colourants"))
     return 0;
@@ -282,6 +430,7 @@ int main(void) {
       cmocka_unit_test(fresnel_constants),
       cmocka_unit_test(published_pigments),
       cmocka_unit_test(mixtures_of_watercolours),
+      cmocka_unit_test(chips_in_many_lights),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
   return cmocka_run_group_tests(tests, NULL, NULL);

@@ -436,6 +436,13 @@ static void describe(text *out, const match_scene *s) {
              100.0 * own->settings.total_loading, 1, " %");
   text_label(out, "Colourants", &t);
   add_theory(out, s);
+  if (s->recipes.grid.count > 0) {
+    text_add(&t, "what is to be expected (root of the mean square) in a light "
+                 "that is not known: one of those above, its power at every "
+                 "wavelength off by chance by as much as it is itself, in peaks "
+                 "of 10 nm");
+    text_label(out, "Any light", &t);
+  }
   if (own->n_drawdowns == 0)
     return;
   add_number(&t, "the drawdowns differ from what was fitted to them by ",

@@ -310,9 +310,9 @@ static const option_row table[] = {
      "--refractive-index; default excluded"},
     {"aim", "colour|spectrum|lights", MATCHING, TYPE_CHOICE, FIELD(aim), 0, 0,
      aims,
-     "what a recipe makes least: the difference in the first light, that of "
-     "the reflectances, or the differences in all lights alike; default "
-     "colour"},
+     "what a recipe makes least: the difference in the first light, what is to "
+     "be expected in any light by the spectra, or the differences in all lights "
+     "alike; default colour"},
     {"batch-g", "GRAMS", MATCHING, TYPE_NUMBER, FIELD(batch_g), 1e-6, 1e12,
      NULL, "weight of the batch: recipes are told in grams"},
     {"step-g", "GRAMS", MATCHING, TYPE_NUMBER, FIELD(step_g), 1e-9, 1e12, NULL,

@@ -70,12 +70,18 @@ static void add_light_columns(text_table *t, const match_scene *s,
     table_column(t, k == 0 ? head : NULL,
                  ef_illuminant_name(s->lights.light[k]), false);
   }
+  if (render_match_mixes(s) && s->recipes.grid.count > 0)
+    table_column(t, NULL, "any", false);
 }
 
+/* `recipe` NULL: of prints. */
 static void add_differences(text_table *t, const match_scene *s,
-                            const ef_recipe_view *view) {
+                            const ef_recipe_view *view,
+                            const ef_recipe *recipe) {
   for (size_t k = 0; k < s->lights.n; ++k)
     table_number(t, view[k].difference, 2);
+  if (recipe != NULL && s->recipes.grid.count > 0)
+    table_number(t, recipe->unknown_light, 2);
 }
 
 static void add_lights_table(text *out, const match_scene *s, size_t n_rows,
@@ -88,12 +94,13 @@ static void add_lights_table(text *out, const match_scene *s, size_t n_rows,
   if (render_match_mixes(s))
     table_column(&t, "Reflectance off", "by (rms), %", false);
   for (size_t i = 0; i < n_rows; ++i) {
+    const ef_recipe *recipe = render_match_mixes(s)
+                                  ? recipes_asked(&s->recipes, row[i].recipe)
+                                  : NULL;
     table_cell(&t, row[i].name);
-    add_differences(&t, s, row[i].view);
-    if (render_match_mixes(s)) {
-      const ef_recipe *recipe = recipes_asked(&s->recipes, row[i].recipe);
+    add_differences(&t, s, row[i].view, recipe);
+    if (recipe != NULL)
       table_number(&t, 100.0 * recipe->spectral_rms, 2);
-    }
   }
   table_finish(&t, out);
 }
@@ -112,7 +119,7 @@ static void add_other_table(text *out, const match_scene *s, size_t n_rows,
     const ef_recipe *recipe = &row[i].recipe->spectral;
     table_cell(&t, row[i].name);
     add_concentrations(&t, s, recipe);
-    add_differences(&t, s, recipe->view);
+    add_differences(&t, s, recipe->view, recipe);
   }
   table_finish(&t, out);
 }
@@ -146,8 +153,8 @@ void render_match_lights(text *out, const match_scene *s, size_t n_rows,
   if (!render_match_mixes(s))
     return;
   if (recipes_have_other(&s->recipes)) {
-    text_add(out, "\nThe recipes whose reflectances come nearest, for the "
-                  "least change from light to light:\n");
+    text_add(out, "\nThe recipes that are expected to be least off in any "
+                  "light, whatever it is:\n");
     add_other_table(out, s, n_rows, row);
   }
   text_format(out,
@@ -205,6 +212,7 @@ static void record_recipe(record *r, const match_scene *s, const char *key,
   record_boolean(r, "at_total_loading", recipe->at_total_loading);
   record_number(r, "difference", recipe->difference);
   record_number(r, "spectral_rms", recipe->spectral_rms);
+  record_number(r, "difference_in_any_light", recipe->unknown_light);
   record_views(r, s, recipe->view);
   record_begin(r, "sensitivity");
   for (size_t i = 0; i < n; ++i)
