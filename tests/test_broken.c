@@ -3,7 +3,7 @@
  * (left out: there is no such file), broken/cgats-DEFECT/ input.txt; the
  * expected message in `error`, and sometimes words in `settings`: surface,
  * light, skip-bad. png-DEFECT/ holds input.png, read as a picture whose colours
- * are to be known. */
+ * are to be known; cube-DEFECT/ input.hdr, the header of a spectral image. */
 #include <dirent.h>
 #include <stdlib.h>
 #include <unistd.h>
@@ -65,6 +65,13 @@ static ef_status read_picture(ef_error *error) {
   return status;
 }
 
+static ef_status read_cube(ef_error *error) {
+  ef_cube *cube = ef_cube_open("input.hdr", NULL, error);
+  if (cube == NULL) return error->status;
+  ef_cube_free(cube);
+  return EF_OK;
+}
+
 static bool starts_with(const char *name, const char *start) {
   return strncmp(name, start, strlen(start)) == 0;
 }
@@ -78,8 +85,9 @@ static void broken_file_is_refused(void **state) {
   assert_int_equal(chdir(*state), 0);
   read_text("error", expected);
   const ef_reader_settings settings = read_settings();
-  const ef_status status = starts_with(*state, "png-")
-                               ? read_picture(&error)
+  const ef_status status = starts_with(*state, "png-") ? read_picture(&error)
+                           : starts_with(*state, "cube-")
+                               ? read_cube(&error)
                                : read_all(&settings, &error);
   assert_int_equal(chdir(home), 0);
   ef_error_describe(&error, said, sizeof said);
@@ -92,7 +100,8 @@ static void broken_file_is_refused(void **state) {
 static int is_case(const struct dirent *entry) {
   return starts_with(entry->d_name, "csv-") ||
          starts_with(entry->d_name, "cgats-") ||
-         starts_with(entry->d_name, "png-");
+         starts_with(entry->d_name, "png-") ||
+         starts_with(entry->d_name, "cube-");
 }
 
 int main(void) {

@@ -468,6 +468,139 @@ EF_API const ef_png_head *ef_png_get_head(const ef_png *png);
 EF_API ef_status ef_png_next_row(ef_png *png, uint16_t *sample, bool *has_row,
                                  ef_error *error);
 
+/* ---- Spectral images ---------------------------------------------------- */
+
+/** How the values of a spectral image follow each other. */
+typedef enum ef_interleave {
+  EF_BSQ, /**< band after band, each line after line */
+  EF_BIL, /**< line after line, each band after band */
+  EF_BIP  /**< pixel after pixel, each with all bands */
+} ef_interleave;
+/** "bsq", "bil", "bip". Static. */
+EF_API const char *ef_interleave_text(ef_interleave interleave);
+
+/** What the values are, with the codes that headers have for it. */
+typedef enum ef_sample_type {
+  EF_UINT8 = 1,
+  EF_INT16 = 2,
+  EF_INT32 = 3,
+  EF_FLOAT32 = 4,
+  EF_FLOAT64 = 5,
+  EF_UINT16 = 12,
+  EF_UINT32 = 13
+} ef_sample_type;
+/** "8-bit unsigned integers" ... Static. */
+EF_API const char *ef_sample_type_text(ef_sample_type type);
+/** Bytes of a value. */
+EF_API size_t ef_sample_type_bytes(ef_sample_type type);
+
+typedef struct ef_cube_settings {
+  const char *data; /**< the file with the values; NULL: the one that stands
+                         beside the header */
+  const ef_notes *notes;
+} ef_cube_settings;
+/** The one beside the header, no notes. */
+EF_API ef_cube_settings ef_cube_settings_default(void);
+
+/** What the header of a spectral image says. */
+typedef struct ef_cube_head {
+  const char *file;      /**< the header */
+  const char *data_file; /**< the values */
+  const char *description; /**< "" if none */
+  size_t width, height, n_bands; /**< samples, lines, bands */
+  size_t offset_bytes;
+  ef_sample_type type;
+  ef_interleave interleave;
+  bool is_big_endian;
+  /** Bands that can be used, by wavelength: `band[i]` counts from 0 in the file
+   * and stands for grid's wavelength i; value = gain[i] * stored + offset[i]. */
+  size_t n_used;
+  const size_t *band;
+  const double *gain, *offset;
+  ef_grid grid;
+  bool has_ignored; /**< the stored value `ignored` means no data */
+  double ignored;
+  /** What the header says of the values: EF_KIND_SURFACE for a reflectance scale
+   * factor or a description with a word such as reflectance, EF_KIND_LIGHT for
+   * one such as radiance, else EF_KIND_AUTO. */
+  ef_kind_choice kind;
+  size_t n_marked_bad; /**< bands left out, as the header's bbl says */
+  size_t n_repeated;   /**< bands left out, of a wavelength that came before */
+  bool is_sorted;      /**< wavelengths rise in the file */
+} ef_cube_head;
+
+/** A spectral image whose header has been read; nothing of its values is held.
+ * May be read by several threads at once, each with a window of its own. */
+typedef struct ef_cube ef_cube;
+
+/** `path`: an ENVI-style header, a text that starts with the line ENVI and goes
+ * on with lines `key = value`; values in braces may go on over lines, lines that
+ * start with a semicolon are passed over. Needed are samples, lines, bands, data
+ * type (ef_sample_type), interleave and wavelength; understood are header
+ * offset, byte order, wavelength units (nm or micrometres; without them
+ * wavelengths that are all below 100 are taken as micrometres, else as nm, with
+ * a note), reflectance scale factor (values are divided by it), data gain values
+ * and data offset values (of each band), data ignore value, bbl (0: a bad band)
+ * and description. File types other than ENVI Standard, compressed files and
+ * frames with gaps are refused; other keys are passed over. Of bands of one
+ * wavelength the first is used, and they are sorted; both are noted.
+ *
+ * The values are read from `settings->data`, else from the file called as the
+ * header without .hdr, or that name with .img, .dat, .raw, .bsq, .bil or .bip;
+ * EF_MALFORMED where more than one of them is there. A data file shorter than
+ * the header says is EF_MALFORMED, a longer one is noted. Free with
+ * ef_cube_free, after its windows. */
+EF_API ef_cube *ef_cube_open(const char *path, const ef_cube_settings *settings,
+                             ef_error *error);
+EF_API void ef_cube_free(ef_cube *cube);
+/** Borrowed until freed. */
+EF_API const ef_cube_head *ef_cube_get_head(const ef_cube *cube);
+
+/** Some pixels of a cube, in some of its bands. */
+typedef struct ef_cube_window ef_cube_window;
+
+/** For the bands of the file band[0 .. n_bands), which come out in this order.
+ * It holds what is read at a time: up to 1 MiB of the file, 8 MiB of bsq, or one
+ * pixel where that is more. Free with ef_cube_window_free. */
+EF_API ef_cube_window *ef_cube_window_new(const ef_cube *cube, size_t n_bands,
+                                          const size_t *band, ef_error *error);
+EF_API void ef_cube_window_free(ef_cube_window *window);
+/** Pixels that are read at a time, at most. */
+EF_API size_t ef_cube_window_pixels(const ef_cube_window *window);
+/** Bytes that it holds. */
+EF_API size_t ef_cube_window_bytes(const ef_cube_window *window);
+/** Reads pixels first .. first + n - 1, counted along the lines. */
+EF_API ef_status ef_cube_window_read(ef_cube_window *window, size_t first,
+                                     size_t n, ef_error *error);
+/** Stored values of n pixels from pixel i of what was read on, n x n_bands;
+ * `room` or values of the window, borrowed until the next read. Types of 8 and
+ * 16 bits and EF_FLOAT32 are floats exactly; others are rounded. */
+EF_API const float *ef_cube_window_floats(const ef_cube_window *window,
+                                          size_t i, size_t n, float *room);
+/** The same as doubles, which hold every type exactly. */
+EF_API const double *ef_cube_window_doubles(const ef_cube_window *window,
+                                            size_t i, size_t n, double *room);
+
+/** Where a spectral image of floats is written: the header at `path`, which ends
+ * in .hdr, the values beside it, interleaved by pixel, in the file of the same
+ * name that ends in .bip. */
+typedef struct ef_cube_out ef_cube_out;
+
+/** EF_INVALID when `path` does not end in .hdr or a size is 0. Bands are named
+ * and have no wavelength. Finish with ef_cube_out_commit. */
+EF_API ef_cube_out *ef_cube_out_open(const char *path, bool overwrite,
+                                     size_t width, size_t height,
+                                     size_t n_bands,
+                                     const char *const *band_name,
+                                     const char *description, ef_error *error);
+/** The next n pixels, n x n_bands, rounded to floats. */
+EF_API ef_status ef_cube_out_write(ef_cube_out *out, size_t n,
+                                   const double *value, ef_error *error);
+/** Gives both files their names and frees; on failure neither is there. */
+EF_API ef_status ef_cube_out_commit(ef_cube_out *out, ef_error *error);
+/** Drops what was written and frees; NULL is fine. */
+EF_API void ef_cube_out_discard(ef_cube_out *out);
+
 #ifdef __cplusplus
 }
 #endif

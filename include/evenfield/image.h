@@ -133,6 +133,95 @@ EF_API const char *ef_map_class_text(int map_class);
 EF_API uint16_t ef_map_sample(int map_class, double L_star, size_t x,
                               size_t y);
 
+/* ---- Spectral images ----------------------------------------------------- */
+
+/** What the values of a cube are: `choice` unless that is EF_KIND_AUTO, else
+ * what the header says, else, with a note, surfaces when the values of a line in
+ * its middle lie in -0.02 to 2 and lights otherwise. */
+EF_API ef_status ef_cube_find_kind(const ef_cube *cube, ef_kind_choice choice,
+                                   const ef_notes *notes, ef_kind *kind,
+                                   ef_error *error);
+
+typedef struct ef_render_settings {
+  ef_channel_role role; /**< EF_TRISTIMULUS or EF_CONES */
+  ef_viewing viewing;
+  int jobs; /**< threads, 0: all cores; results do not depend on it */
+  const ef_notes *notes;
+} ef_render_settings;
+/** Tristimulus values; ef_viewing_default(illuminant). */
+EF_API ef_render_settings
+ef_render_settings_default(const ef_illuminant *illuminant);
+
+/** Channel values of a spectral image, pixel after pixel along the lines. */
+typedef struct ef_render ef_render;
+
+/** Folds the observer's weights for the bands of the cube and gets ready to
+ * read. Bands of which no channel gets more than 1e-12 of its weight (those
+ * beyond what eyes see) are left out, with a note. The next pixels are read
+ * while those before are in use, by a thread of its own unless `jobs` is 1.
+ * The memory held does not depend on the size of the image
+ * (ef_render_get_info). The cube must outlive it. Free with ef_render_free. */
+EF_API ef_render *ef_render_new(const ef_cube *cube,
+                                const ef_observer *observer,
+                                const ef_render_settings *settings,
+                                ef_error *error);
+EF_API void ef_render_free(ef_render *render);
+EF_API size_t ef_render_channels(const ef_render *render);
+
+/** The next pixels, n x channels, borrowed until the next call; n = 0 at the
+ * end. A pixel without data has NaN in all channels: one with the value that the
+ * header says to ignore, or one that is not a number, in any band used. After an
+ * error nothing more comes. */
+EF_API ef_status ef_render_next(ef_render *render, size_t *n,
+                                const double **value, ef_error *error);
+
+typedef struct ef_render_info {
+  size_t n_bands;          /**< that are used */
+  double shortest_nm, longest_nm; /**< of those */
+  size_t n_without_weight; /**< bands left out as no channel needs them */
+  size_t bytes;            /**< that it holds for pixels */
+  /* Of the pixels handed out so far: */
+  size_t n_pixels;
+  size_t n_ignored;        /**< with the ignored value */
+  size_t n_not_numbers;    /**< NaN or infinite */
+} ef_render_info;
+EF_API ef_render_info ef_render_get_info(const ef_render *render);
+
+/** Colours to codes of a published encoding. */
+typedef struct ef_encoder ef_encoder;
+
+/** `white` (Y > 0) becomes the encoding's white, by `adaptation`; `bits` 8 or
+ * 16. Free with ef_encoder_free. */
+EF_API ef_encoder *ef_encoder_new(const ef_encoding *encoding, ef_xyz white,
+                                  ef_adaptation adaptation, int bits,
+                                  ef_error *error);
+EF_API void ef_encoder_free(ef_encoder *encoder);
+
+/** How many colours lie outside an encoding. */
+typedef struct ef_clipped {
+  size_t n;        /**< by more than half a code in any channel */
+  size_t n_bright; /**< of those, with a channel above full */
+} ef_clipped;
+
+/** n colours to n x 3 samples in 16-bit range (of 8 bits: codes times 257), each
+ * the nearest code; what lies outside is clipped channel by channel, and
+ * counted; NaN becomes black. `clipped` is added to. */
+EF_API void ef_encoder_apply(const ef_encoder *encoder, size_t n,
+                             const double *xyz, uint16_t *sample,
+                             ef_clipped *clipped);
+
+/** Renders what is left to a PNG picture in the encoder's encoding, tagged with
+ * a matrix profile of it (iCCP) and, where ITU-T H.273 has code points for
+ * primaries and curve, cICP. The picture is there whole or not at all. */
+EF_API ef_status ef_render_write_png(ef_render *render,
+                                     const ef_encoder *encoder,
+                                     const char *path, bool overwrite,
+                                     ef_clipped *clipped, ef_error *error);
+/** The same as a cube of floats, a band each channel (ef_cube_out_open). */
+EF_API ef_status ef_render_write_cube(ef_render *render, const char *path,
+                                      bool overwrite, const char *description,
+                                      ef_error *error);
+
 #ifdef __cplusplus
 }
 #endif

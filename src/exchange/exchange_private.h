@@ -358,4 +358,22 @@ ef_status ef__png_write_indexed(const char *path, bool overwrite, size_t width,
                                 const ef__png_palette *palette,
                                 const ef_png_tags *tags, ef_error *error);
 
+/* ---- Headers of spectral images (cube_header.c) ------------------------ */
+
+/** A header, read and checked; owns what `head` points to, but for the names of
+ * the files. */
+typedef struct ef__cube_header {
+  ef_cube_head head;
+  char *description;
+  void *block; /**< band, gain, offset and wavelengths */
+} ef__cube_header;
+
+/** Reads the text of a header, called `name` in messages. Clear in every case. */
+ef_status ef__cube_header_read(const char *name, const char *text,
+                               size_t length, const ef_notes *notes,
+                               ef__cube_header *header, ef_error *error);
+void ef__cube_header_clear(ef__cube_header *header);
+/** Bytes of the values of all bands. */
+size_t ef__cube_header_bytes(const ef_cube_head *head);
+
 #endif

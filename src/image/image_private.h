@@ -14,4 +14,11 @@ ef_profile *ef__tags_profile(const ef_png_head *head, const ef_notes *notes,
 ef_status ef__tags_check(const ef_png_head *head, const ef_profile *profile,
                          ef_error *error);
 
+/* ---- Spectral images ----------------------------------------------------- */
+
+const ef_cube_head *ef__render_head(const ef_render *render);
+ef_channel_role ef__render_role(const ef_render *render);
+const ef_encoding *ef__encoder_encoding(const ef_encoder *encoder);
+int ef__encoder_bits(const ef_encoder *encoder);
+
 #endif

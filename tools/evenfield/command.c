@@ -167,13 +167,24 @@ static const command_entry table[] = {
       "demo:kiosk-measurements"}},
     {"image",
      COMMAND_IMAGE,
-     "gamut PICTURE.png [MAP.png]",
-     "which pixels of a picture can a display not show, and where?",
-     {"Reads a PNG picture by its own colour tags (cICP, iCCP, sRGB, gAMA with "
-      "cHRM) and tells the share of its pixels that the display cannot show, "
-      "how far its nearest colours are off, and where: MAP shows the picture "
-      "in pale grey with lines over what is missed, the denser the more.",
-      "A picture without tags needs --assume: its colours are not guessed."},
+     "gamut PICTURE.png [MAP.png] | render CUBE.hdr OUT",
+     "which pixels can a display not show; what a spectral image looks like",
+     {"`evenfield image gamut` reads a PNG picture by its own colour tags "
+      "(cICP, iCCP, sRGB, gAMA with cHRM) and tells the share of its pixels "
+      "that the display cannot show, how far its nearest colours are off, and "
+      "where: MAP shows the picture in pale grey with lines over what is "
+      "missed, the denser the more. A picture without tags needs --assume: its "
+      "colours are not guessed.",
+      "`evenfield image render` takes a spectral image, as surfaces under a "
+      "light or as lights, to OUT: FILE.png, a tagged picture, and how much of "
+      "it was clipped; FILE.hdr with FILE.bip, X, Y, Z or cone excitations as "
+      "a spectral image of 32-bit floating-point numbers; or FILE.csv, a row a "
+      "pixel. CUBE.hdr is an ENVI-style header (bsq, bil or bip; data type 1, "
+      "2, 3, 4, 5, 12 or 13; wavelengths in nm or micrometres), with the values "
+      "in the file beside it: of any size, as some 16 MB a thread are held at "
+      "a time. Bands marked as bad, of a wavelength that came before, or where "
+      "eyes see nothing are left out, pixels without data are empty (in a "
+      "picture black), and notes count them."},
      command_image,
      {"evenfield swatch",
       "evenfield image gamut --display bt709 swatches/sheet.png"}},

@@ -60,6 +60,7 @@ static void set_defaults(command_options *o) {
                          .precision = not_given,
                          .false_alarms = not_given,
                          .most = not_given,
+                         .white_level = not_given,
                          .model = -1,
                          .axis = -1,
                          .intervals = -1,

@@ -72,7 +72,8 @@ typedef struct command_options {
   int specular; /**< 0 included, 1 excluded */
   bool single_constant;
   const char *profile; /**< of match and swatch */
-  const char *assume; /**< of image */
+  const char *assume, *data; /**< of image */
+  double white_level;        /**< likewise */
   const char *from, *to, *intent, *description; /**< of profile */
   bool scale_black;                             /**< likewise */
   double ambient_lux, reflectance, luminance_cd_m2, jnd, tolerance, device_max;

@@ -216,6 +216,31 @@ static const option_row table[] = {
      "a file with the spectra of the primaries at full drive or with measured "
      "rows (R,G,B and X,Y,Z or a spectrum), a published encoding such as "
      "bt709, or demo:NAME"},
+    {"to", "ENCODING|xyz|lms", COMMAND_IMAGE, TYPE_TEXT, FIELD(to), 0, 0, NULL,
+     "render: the published encoding of a picture, xyz, or lms, the "
+     "observer's cone excitations; default srgb for pictures, else xyz"},
+    {"data", "FILE", COMMAND_IMAGE, TYPE_TEXT, FIELD(data), 0, 0, NULL,
+     "render: the file with the values of the spectral image; default: the one "
+     "beside its header"},
+    {"observer", "OBSERVER", COMMAND_IMAGE, TYPE_TEXT, FIELD(observer), 0, 0,
+     NULL,
+     "render: who looks: a name from `evenfield observer list`, with settings "
+     "as in model:age=45,field=4, or a file with three colour-matching "
+     "functions; default cie-1931"},
+    {"illuminant", "LIGHT", COMMAND_IMAGE, TYPE_TEXT, FIELD(illuminant), 0, 0,
+     NULL,
+     "render: the light on surfaces: a name from `evenfield tables "
+     "illuminants`, daylight:K, planck:K, FILE or FILE:COLUMN; default D65"},
+    {"adaptation", "NAME", COMMAND_IMAGE, TYPE_TEXT, FIELD(adaptation), 0, 0,
+     NULL,
+     "render: from that light to the white of the encoding: cat16, bradford or "
+     "none; default cat16"},
+    {"white-level", "Y", COMMAND_IMAGE, TYPE_NUMBER, FIELD(white_level), 1e-12,
+     1e12, NULL,
+     "render: the Y that a picture shows as its white; default 100 for "
+     "surfaces, the largest of all pixels for lights"},
+    {"bits", "8|16", COMMAND_IMAGE, TYPE_INTEGER, FIELD(swatch_bits), 8, 16,
+     NULL, "render: bits per channel of a picture; default 8"},
     {"from", "PROFILE", COMMAND_PROFILE, TYPE_TEXT, FIELD(from), 0, 0, NULL,
      "convert: the profile that the device values belong to, a file or a "
      "published encoding such as srgb; default: the file holds colours"},
@@ -374,7 +399,7 @@ static const option_row table[] = {
      "who looks: a name from `evenfield observer list`, with settings as in "
      "model:age=45,field=4, or a file with three colour-matching functions; "
      "may be given more than once; default cie-1931"},
-    {"kind", "surface|light", READING | COMMAND_PROFILE, TYPE_CHOICE, FIELD(kind), 0, 0, kinds,
+    {"kind", "surface|light", READING | COMMAND_PROFILE | COMMAND_IMAGE, TYPE_CHOICE, FIELD(kind), 0, 0, kinds,
      "what the spectra in the files are; default: what the file says"},
     {"adaptation", "NAME", COMMAND_COMPARE, TYPE_TEXT, FIELD(adaptation), 0, 0,
      NULL,

@@ -22,7 +22,9 @@ exit_code result_check_usage(const command_options *options,
     return message_usage("--tolerance is for --check");
   }
   if (o->swatch_bits != 8 && o->swatch_bits != 16) {
-    return message_usage("--swatch-bits is 8 or 16, not %d", o->swatch_bits);
+    return message_usage("--%s is 8 or 16, not %d",
+                         o->bit == COMMAND_IMAGE ? "bits" : "swatch-bits",
+                         o->swatch_bits);
   }
   return EXIT_DONE;
 }
