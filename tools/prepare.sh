@@ -5,6 +5,8 @@
 EF_PACKAGES="gcc libc6-dev meson ninja-build pkg-config libgsl-dev
   liblcms2-dev libpng-dev libjansson-dev libcairo2-dev"
 EF_TEST_PACKAGES="g++ libcmocka-dev libglpk-dev"
+# ICC profiles of displays and presses, 0.4 MB: tests do without them.
+EF_PROFILE_PACKAGES="icc-profiles-free libgs-common"
 # Contestants in the benches.
 EF_BENCH_PACKAGES="libopenblas-dev libnlopt-dev"
 # Labels on the sheet of swatches need cairo at run time and any font.

@@ -25,6 +25,7 @@ typedef struct ef__mixing {
   ef_xyz (*xyz)(const void *context, const double *amount, double *jacobian);
   const void *context; /**< borrowed */
   double resolution;   /**< see ef_setup_resolution */
+  bool has_kinks;      /**< a table, with bends at its points */
   const ef__scout *scout; /**< borrowed; what ef__nearest needs */
 } ef__mixing;
 
@@ -104,6 +105,12 @@ typedef struct ef__start {
 size_t ef__scout_starts(const ef__scout *scout, const ef_metric *metric,
                         const double target[3], double limit,
                         ef__start start[EF__MAX_SCOUTED]);
+
+/** The `most` points of the grid that are nearest to the target, the nearest
+ * first; how many there are. */
+size_t ef__scout_nearest(const ef__scout *scout, const ef_metric *metric,
+                         const double target[3], size_t most,
+                         ef__start *start);
 
 /* ---- Nearest colour (nearest.c) ---------------------------------------- */
 

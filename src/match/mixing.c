@@ -64,6 +64,8 @@ ef_status ef__mixing_copy(const ef_setup *setup, ef__mixing *out,
   out->xyz = setup_xyz;
   out->context = setup;
   out->resolution = ef_setup_resolution(setup);
+  /* What is worked out, not looked up, resolves far more. */
+  out->has_kinks = !ef_setup_affine(setup) && out->resolution > 1e-6;
   const double zero[EF_MAX_DRIVES] = {0};
   const ef_xyz black = ef_setup_xyz(setup, zero, out->vector);
   out->black[0] = black.X;

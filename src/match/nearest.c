@@ -174,6 +174,28 @@ static void search_decoys(ef__search *search, ef__minima *out) {
   }
 }
 
+/* A table bends at each of its points, and its slopes, taken over some way,
+ * lead nowhere there; between its points it is nearly straight. So the exact
+ * amounts are sought from each of the nearest points of the look over the
+ * gamut. */
+static void search_table(ef__search *search, ef__minima *minima) {
+  enum { MOST = 16 };
+  ef__start start[MOST];
+  const ef_xyz target = ef_metric_xyz(search->metric, search->target,
+                                      &search->mixing->conditions);
+  const size_t n = ef__scout_nearest(search->mixing->scout, search->metric,
+                                     search->target, MOST, start);
+  for (size_t i = 0; i < n; ++i) {
+    ef__place place;
+    memcpy(place.amount, start[i].amount, sizeof place.amount);
+    const bool found = ef__exact_from(search->mixing, target, place.amount);
+    place.square = ef__search_value(search, place.amount);
+    keep(minima, &place);
+    if (found)
+      return;
+  }
+}
+
 void ef__nearest(ef__search *search, const double exact[3], ef__minima *out) {
   double left[3], clipped[3];
   for (int i = 0; i < 3; ++i)
@@ -192,6 +214,8 @@ void ef__nearest(ef__search *search, const double exact[3], ef__minima *out) {
   search_scouted(search, out);
   if (search->metric->decoys != NULL)
     search_decoys(search, out);
+  if (search->mixing->has_kinks)
+    search_table(search, out);
 }
 
 void ef__nearest_from(ef__search *search, const double amount[3],

@@ -88,20 +88,45 @@ static bool is_low(const ef__scout *scout, const double *difference,
   return true;
 }
 
-size_t ef__scout_starts(const ef__scout *scout, const ef_metric *metric,
-                        const double target[3], double limit,
-                        ef__start start[EF__MAX_SCOUTED]) {
-  double reference[3 * MOST_POINTS], difference[MOST_POINTS];
-  int low[EF__MAX_SCOUTED];
-  size_t n = 0;
+static void all_differences(const ef__scout *scout, const ef_metric *metric,
+                            const double target[3], double *difference) {
+  double reference[3 * MOST_POINTS];
   for (int p = 0; p < scout->n_points; ++p) {
     for (int i = 0; i < 3; ++i)
       reference[3 * p + i] = target[i];
   }
   ef_metric_difference_batch(metric, (size_t)scout->n_points, reference,
                              scout->coordinate, 1, difference);
+}
+
+size_t ef__scout_nearest(const ef__scout *scout, const ef_metric *metric,
+                         const double target[3], size_t most,
+                         ef__start *start) {
+  double difference[MOST_POINTS];
+  size_t n = 0;
+  all_differences(scout, metric, target, difference);
   for (int p = 0; p < scout->n_points; ++p) {
-    if (!(difference[p] <= limit)) continue;
+    if (n == most && !(difference[p] < start[n - 1].difference))
+      continue;
+    size_t i = n < most ? n++ : n - 1;
+    for (; i > 0 && start[i - 1].difference > difference[p]; --i)
+      start[i] = start[i - 1];
+    start[i].difference = difference[p];
+    point_amounts(scout, p, start[i].amount);
+  }
+  return n;
+}
+
+size_t ef__scout_starts(const ef__scout *scout, const ef_metric *metric,
+                        const double target[3], double limit,
+                        ef__start start[EF__MAX_SCOUTED]) {
+  double difference[MOST_POINTS];
+  int low[EF__MAX_SCOUTED];
+  size_t n = 0;
+  all_differences(scout, metric, target, difference);
+  for (int p = 0; p < scout->n_points; ++p) {
+    if (!(difference[p] <= limit))
+      continue;
     if (n == EF__MAX_SCOUTED && !(difference[p] < difference[low[n - 1]])) {
       continue;
     }
