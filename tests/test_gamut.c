@@ -405,6 +405,110 @@ static void survives_a_lack_of_memory(void **state) {
   plain_setup_free(&p);
 }
 
+/* ---- Sections ---------------------------------------------------------- */
+
+static double section_area(const ef_setup *setup, double L_star,
+                           size_t *n_loops) {
+  ef_gamut_section section;
+  assert_int_equal(ef_gamut_section_new(setup, L_star, &section, NULL), EF_OK);
+  double area = 0;
+  const ef_lab *p = section.point;
+  for (size_t k = 0; k < section.n_loops; p += section.n[k++]) {
+    double twice = 0;
+    for (size_t i = 0; i < section.n[k]; ++i) {
+      const ef_lab *q = &p[(i + 1) % section.n[k]];
+      twice += p[i].a_star * q->b_star - q->a_star * p[i].b_star;
+      assert_near(p[i].L_star, L_star, 1e-9);
+    }
+    area += fabs(twice) / 2;
+  }
+  *n_loops = section.n_loops;
+  ef_gamut_section_free(&section);
+  return area;
+}
+
+/* Cut into slices, a gamut has the volume that is found without slices: by the
+ * middle of each, which is off by the square of its thickness. */
+static void slices_make_the_volume(void **state) {
+  (void)state;
+  enum { SLICES = 100 };
+  plain_setup p[2] = {plain_setup_named("srgb"),
+                      plain_setup_of(invented_display(true))};
+  for (size_t k = 0; k < 2; ++k) {
+    const double volume = measure(p[k].setup).volume_lab;
+    double sum = 0;
+    for (size_t i = 0; i < SLICES; ++i) {
+      size_t n_loops;
+      sum += section_area(p[k].setup, 100.0 * ((double)i + 0.5) / SLICES,
+                          &n_loops);
+      assert_true(n_loops <= 1);
+    }
+    print_message("# 100 slices over the volume: %.5f\n", sum / volume);
+    assert_near(sum / volume, 1, 2e-4);
+    plain_setup_free(&p[k]);
+  }
+}
+
+/* Every corner has an amount at 0 or 1 and none beyond, the section holds the
+ * neutral, and there is none beyond black and white. */
+static void sections_are_the_boundary(void **state) {
+  (void)state;
+  plain_setup p = plain_setup_of(invented_display(true));
+  const ef_match_settings settings = ef_match_settings_default();
+  for (double L = 15; L < 100; L += 14) {
+    ef_gamut_section section;
+    assert_int_equal(ef_gamut_section_new(p.setup, L, &section, NULL), EF_OK);
+    assert_int_equal(section.n_loops, 1);
+    double turn = 0;
+    for (size_t i = 0; i < section.n[0]; ++i) {
+      const ef_lab a = section.point[i];
+      const ef_lab b = section.point[(i + 1) % section.n[0]];
+      turn += atan2(a.a_star * b.b_star - a.b_star * b.a_star,
+                    a.a_star * b.a_star + a.b_star * b.b_star);
+      ef_match m;
+      const ef_xyz xyz = ef_lab_to_xyz(a, ef_setup_white(p.setup));
+      const double target[3] = {xyz.X, xyz.Y, xyz.Z};
+      assert_int_equal(
+          ef_match_batch(p.setup, 1, target, &settings, 1, &m, NULL), EF_OK);
+      double least = INFINITE, most = -INFINITE;
+      for (size_t k = 0; k < 3; ++k) {
+        least = fmin(least, fmin(m.amount[k], 1 - m.amount[k]));
+        most = fmax(most, fmax(-m.amount[k], m.amount[k] - 1));
+      }
+      assert_near(least, 0, 1e-9);
+      assert_true(most < 1e-9);
+    }
+    assert_near(fabs(turn), 2 * acos(-1.0), 1e-9);
+    ef_gamut_section_free(&section);
+  }
+  size_t n_loops;
+  assert_near(section_area(p.setup, 100.001, &n_loops), 0, 0);
+  assert_int_equal(n_loops, 0);
+  assert_near(section_area(p.setup, 0, &n_loops), 0, 0);
+  assert_int_equal(n_loops, 0);
+  ef_gamut_section none;
+  ef_error error;
+  ef_gamut_section_new(p.setup, NOT_A_NUMBER, &none, &error);
+  assert_error(&error, EF_INVALID, "at a lightness that is a number");
+  plain_setup_free(&p);
+}
+
+static bool try_section(void *context) {
+  const attempt *const a = context;
+  ef_gamut_section section;
+  const ef_status status = ef_gamut_section_new(a->setup, 50, &section, NULL);
+  ef_gamut_section_free(&section);
+  return status == EF_OK;
+}
+
+static void sections_survive_a_lack_of_memory(void **state) {
+  (void)state;
+  plain_setup p = plain_setup_named("srgb");
+  attempt a = {.setup = p.setup};
+  assert_true(fail_alloc_each(try_section, &a) >= 4);
+  plain_setup_free(&p);
+}
+
 int main(void) {
   cmocka_set_message_output(CM_OUTPUT_TAP);
   const struct CMUnitTest tests[] = {
@@ -419,6 +523,9 @@ int main(void) {
       cmocka_unit_test(rectangular_spectra_are_the_boundary),
       cmocka_unit_test(errors_say_what_is_missing),
       cmocka_unit_test(survives_a_lack_of_memory),
+      cmocka_unit_test(slices_make_the_volume),
+      cmocka_unit_test(sections_are_the_boundary),
+      cmocka_unit_test(sections_survive_a_lack_of_memory),
   };
   return cmocka_run_group_tests(tests, NULL, NULL);
 }

@@ -504,6 +504,59 @@ static void spread_survives_a_lack_of_memory(void **state) {
   pairs_free(p);
 }
 
+/* ---- Where they see the pairs ------------------------------------------ */
+
+/* The colours of everybody differ by what everybody sees; a crowd that was asked
+ * for colours tells differences as before. */
+static void colours_are_those_that_differ(void **state) {
+  (void)state;
+  enum { N = 150 };
+  pairs *const p = pairs_new(77);
+  ef_population *const population = make_many(N, 5);
+  const ef_spread_settings settings = ef_spread_settings_default();
+  static double difference[2][N_PAIRS * N];
+  static ef_xyz seen[2][N_PAIRS * N], white[N];
+  ef_spread spread[N_PAIRS];
+  ef_crowd *const crowd = ef_crowd_new(population, &p->target, &p->match,
+                                       &settings, NULL, NULL);
+  assert_non_null(crowd);
+  assert_int_equal(ef_crowd_colours(crowd, N_PAIRS, p->surface, p->light, 2,
+                                    seen[0], seen[1], white, NULL),
+                   EF_OK);
+  for (size_t k = 0; k < 2; ++k) {
+    assert_int_equal(k == 0 ? ef_crowd_spread(crowd, N_PAIRS, p->surface,
+                                              p->light, 1, spread,
+                                              difference[0], NULL)
+                            : ef_population_spread(population, N_PAIRS,
+                                                   &p->target, &p->match,
+                                                   &settings, 1, spread,
+                                                   difference[1], NULL, NULL),
+                     EF_OK);
+  }
+  assert_same_bits(difference[0], difference[1], N_PAIRS * N);
+  for (size_t k = 0; k < N_PAIRS; ++k) {
+    for (size_t i = 0; i < N; ++i) {
+      double at[2][3];
+      const ef_conditions conditions = ef_conditions_default(white[i]);
+      assert_near(white[i].Y, 100, 1e-10);
+      for (size_t side = 0; side < 2; ++side) {
+        ef_metric_coordinates(settings.metric, seen[side][k * N + i],
+                              &conditions, at[side]);
+      }
+      assert_near_relative(ef_metric_difference(settings.metric, at[0], at[1]),
+                           difference[0][k * N + i], 1e-9);
+    }
+  }
+  p->light[3] = NOT_A_NUMBER;
+  ef_error error;
+  ef_crowd_colours(crowd, N_PAIRS, p->surface, p->light, 1, seen[0], seen[1],
+                   white, &error);
+  assert_error(&error, EF_INVALID, "is not a finite number");
+  ef_crowd_free(crowd);
+  ef_population_free(population);
+  pairs_free(p);
+}
+
 int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(equals_a_loop_over_observers),
@@ -518,6 +571,7 @@ int main(void) {
       cmocka_unit_test(inputs_are_checked),
       cmocka_unit_test(notes_come_once),
       cmocka_unit_test(spread_survives_a_lack_of_memory),
+      cmocka_unit_test(colours_are_those_that_differ),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
   return cmocka_run_group_tests(tests, NULL, NULL);

@@ -142,6 +142,22 @@ EF_API ef_status ef_gamut_measure(const ef_setup *setup,
                                   ef_adaptation adaptation, int jobs,
                                   ef_gamut *out, ef_error *error);
 
+/** The gamut at one lightness: its outlines, corner after corner, in CIELAB
+ * relative to the setup's white. One for most devices and lightnesses. */
+typedef struct ef_gamut_section {
+  size_t n_loops;  /**< 0: the setup shows nothing that light or dark */
+  size_t *n;       /**< corners of each; owned */
+  ef_lab *point;   /**< of one after the other, each to be closed; owned */
+} ef_gamut_section;
+
+/** Cuts the surface that the mixtures with one amount at 0 or 1 make: the
+ * gamut's own where colours add, and nearly so where they do not. Corners lie
+ * at L_star to 1e-9; slices of a display have its volume to 0.01 %. EF_INVALID unless there are three drives.
+ * Release with ef_gamut_section_free in every case. */
+EF_API ef_status ef_gamut_section_new(const ef_setup *setup, double L_star,
+                                      ef_gamut_section *out, ef_error *error);
+EF_API void ef_gamut_section_free(ef_gamut_section *section);
+
 /** CIELAB volume of the object-colour solid (optimal colours) of an illuminant
  * for an observer, 380 to 780 nm at 1 nm, relative to the illuminant. The
  * boundary are the rectangular spectra. EF_NO_ANSWER for an observer whose
@@ -232,6 +248,15 @@ EF_API ef_status ef_crowd_spread(ef_crowd *crowd, size_t n,
                                  const double *target, const double *match,
                                  int jobs, ef_spread *out, double *difference,
                                  ef_error *error);
+
+/** Where each of them sees n pairs: n x count colours of both sides, on the
+ * match's white, which is `white` (count, Y = 100) for each of them. Each
+ * colour is one of the observer's own functions. */
+EF_API ef_status ef_crowd_colours(ef_crowd *crowd, size_t n,
+                                  const double *target, const double *match,
+                                  int jobs, ef_xyz *seen_target,
+                                  ef_xyz *seen_match, ef_xyz *white,
+                                  ef_error *error);
 
 /** A whole setup by its pairs. */
 typedef struct ef_spread_index {

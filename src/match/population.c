@@ -63,6 +63,8 @@ struct ef_crowd {
   size_t first_pair; /* of the pairs kept, first in xyz */
   double *kept;      /* n_kept x n_observers */
   ef_spread *out;    /* of the first pair kept */
+  ef_xyz *seen[2];   /* n x n_observers where colours are asked for, else NULL */
+  size_t pair;       /* of n, that is the first in xyz */
 };
 typedef ef_crowd work;
 
@@ -229,28 +231,47 @@ static ef_status open_eyes(work *w, size_t first, int jobs, ef_error *error) {
 
 /* ---- Differences ------------------------------------------------------- */
 
+/* Both sides as observer i of the block sees them, of pair p in xyz, on the
+ * white of the match. */
+static inline void see(const work *w, size_t p, size_t i, ef_xyz seen[2]) {
+  const eyes *const block = w->open;
+  const double *const t = w->xyz[TARGET] + (p * block->count + i) * 3;
+  const double *const m = w->xyz[MATCH] + (p * block->count + i) * 3;
+  const double *const to = block->own[i].target;
+  const double factor = block->own[i].match;
+  const ef_xyz target = {t[0], t[1], t[2]};
+  seen[TARGET] = block->own[i].is_scale
+                     ? (ef_xyz){to[0] * t[0], to[0] * t[1], to[0] * t[2]}
+                     : ef_xyz_transform(to, target);
+  seen[MATCH] = (ef_xyz){factor * m[0], factor * m[1], factor * m[2]};
+}
+
 /* Pairs [begin, end) of the block in xyz, for the block of observers. */
+static void keep_colours(void *context, size_t begin, size_t end) {
+  const work *const w = context;
+  for (size_t p = begin; p < end; ++p) {
+    const size_t row = (w->pair + p) * w->n_observers + w->open->first;
+    for (size_t i = 0; i < w->open->count; ++i) {
+      ef_xyz seen[2];
+      see(w, p, i, seen);
+      w->seen[TARGET][row + i] = seen[TARGET];
+      w->seen[MATCH][row + i] = seen[MATCH];
+    }
+  }
+}
+
 static void compare(void *context, size_t begin, size_t end) {
   const work *const w = context;
   const eyes *const block = w->open;
   const ef_metric *const metric = w->settings.metric;
   double reference[3 * OBSERVERS], sample[3 * OBSERVERS];
   for (size_t p = begin; p < end; ++p) {
-    const double *const target = w->xyz[TARGET] + p * 3 * block->count;
-    const double *const match = w->xyz[MATCH] + p * 3 * block->count;
     for (size_t i = 0; i < block->count; ++i) {
-      const double *const t = target + 3 * i, *const m = match + 3 * i;
-      const double *const to = block->own[i].target;
-      const double factor = block->own[i].match;
-      const ef_xyz seen = {t[0], t[1], t[2]};
-      const ef_xyz carried =
-          block->own[i].is_scale
-              ? (ef_xyz){to[0] * t[0], to[0] * t[1], to[0] * t[2]}
-              : ef_xyz_transform(to, seen);
-      const ef_xyz shown = {factor * m[0], factor * m[1], factor * m[2]};
-      ef_metric_coordinates(metric, carried, &block->own[i].conditions,
+      ef_xyz seen[2];
+      see(w, p, i, seen);
+      ef_metric_coordinates(metric, seen[TARGET], &block->own[i].conditions,
                             reference + 3 * i);
-      ef_metric_coordinates(metric, shown, &block->own[i].conditions,
+      ef_metric_coordinates(metric, seen[MATCH], &block->own[i].conditions,
                             sample + 3 * i);
     }
     ef_metric_difference_batch(
@@ -273,7 +294,9 @@ static ef_status see_pairs(work *w, size_t pair, size_t n_kept, int jobs,
       if (status != EF_OK) return status;
     }
     w->first_pair = first;
-    ef__parallel_for(n, CHUNK, jobs, compare, w);
+    w->pair = pair + first;
+    ef__parallel_for(n, CHUNK, jobs,
+                     w->seen[TARGET] != NULL ? keep_colours : compare, w);
   }
   return EF_OK;
 }
@@ -373,12 +396,8 @@ static ef_status allocate_call(work *w, size_t n, size_t *n_kept, void **block,
   return EF_OK;
 }
 
-ef_status ef_crowd_spread(ef_crowd *crowd, size_t n, const double *target,
-                          const double *match, int jobs, ef_spread *out,
-                          double *difference, ef_error *error) {
-  work *const w = crowd;
-  size_t n_kept;
-  void *block = NULL;
+static ef_status check_samples(work *w, size_t n, const double *target,
+                               const double *match, ef_error *error) {
   ef_status status = EF_OK;
   w->sample[TARGET] = target;
   w->sample[MATCH] = match;
@@ -386,6 +405,16 @@ ef_status ef_crowd_spread(ef_crowd *crowd, size_t n, const double *target,
     const size_t count = w->side[s].grid.count;
     status = check_finite(n * count, w->sample[s], count, side_names[s], error);
   }
+  return status;
+}
+
+ef_status ef_crowd_spread(ef_crowd *crowd, size_t n, const double *target,
+                          const double *match, int jobs, ef_spread *out,
+                          double *difference, ef_error *error) {
+  work *const w = crowd;
+  size_t n_kept;
+  void *block = NULL;
+  ef_status status = check_samples(w, n, target, match, error);
   if (status == EF_OK) status = allocate_call(w, n, &n_kept, &block, error);
   if (status != EF_OK) return status;
   for (size_t pair = 0; pair < n && status == EF_OK; pair += n_kept) {
@@ -399,6 +428,32 @@ ef_status ef_crowd_spread(ef_crowd *crowd, size_t n, const double *target,
     w->out = out + pair;
     ef__parallel_for(n_here, CHUNK, jobs, summarise, w);
   }
+  free(block);
+  return status;
+}
+
+static void collect_whites(work *w, ef_xyz *white) {
+  for (size_t i = 0; i < w->open->count; ++i)
+    white[w->open->first + i] = w->open->own[i].conditions.white;
+}
+
+ef_status ef_crowd_colours(ef_crowd *crowd, size_t n, const double *target,
+                           const double *match, int jobs, ef_xyz *seen_target,
+                           ef_xyz *seen_match, ef_xyz *white, ef_error *error) {
+  work *const w = crowd;
+  size_t n_kept;
+  void *block = NULL;
+  ef_status status = check_samples(w, n, target, match, error);
+  if (status == EF_OK) status = allocate_call(w, n, &n_kept, &block, error);
+  w->seen[TARGET] = seen_target;
+  w->seen[MATCH] = seen_match;
+  for (size_t o = 0; o < w->n_observers && status == EF_OK; o += OBSERVERS) {
+    status = open_eyes(w, o, jobs, error);
+    if (status == EF_OK) collect_whites(w, white);
+    for (size_t i = 0; i < n && status == EF_OK; i += n_kept)
+      status = see_pairs(w, i, least(n - i, n_kept), jobs, error);
+  }
+  w->seen[TARGET] = w->seen[MATCH] = NULL;
   free(block);
   return status;
 }
