@@ -46,7 +46,8 @@
   CALL(cairo_surface_finish)                                                   \
   CALL(cairo_surface_flush)                                                    \
   CALL(cairo_surface_status)                                                   \
-  CALL(cairo_text_extents)
+  CALL(cairo_text_extents)                                                     \
+  CALL(cairo_text_path)
 
 typedef struct ef__cairo {
 #define EF__CAIRO_FIELD(name) __typeof__(&(name)) name;

@@ -27,13 +27,13 @@
 #define HIGHEST 1.25
 
 static const ef__lettering title_text = {EF__INK_TEXT, TITLE_PX, true,
-                                         EF__ANCHOR_LEFT};
+                                         EF__ANCHOR_LEFT, false};
 static const ef__lettering body_text = {EF__INK_TEXT, BODY_PX, false,
-                                        EF__ANCHOR_LEFT};
+                                        EF__ANCHOR_LEFT, false};
 static const ef__lettering soft_text = {EF__INK_SOFT, BODY_PX, false,
-                                        EF__ANCHOR_LEFT};
+                                        EF__ANCHOR_LEFT, false};
 static const ef__lettering axis_text = {EF__INK_TEXT, BODY_PX, true,
-                                        EF__ANCHOR_LEFT};
+                                        EF__ANCHOR_LEFT, false};
 
 ef__point ef__sheet_scale(const ef__sheet *s) {
   return (ef__point){(s->field.right - s->field.left) / (s->x.to - s->x.from),
@@ -133,7 +133,7 @@ static const ef__style axis_style = {
 
 static void draw_x_axis(const ef__sheet *s) {
   const ef__lettering lettering = {EF__INK_TEXT, TICK_PX, false,
-                                   EF__ANCHOR_MIDDLE};
+                                   EF__ANCHOR_MIDDLE, false};
   const double y = s->field.bottom;
   ef__page_group(s->page, "x axis");
   ef__page_move(s->page, s->field.left, y);
@@ -152,7 +152,7 @@ static void draw_x_axis(const ef__sheet *s) {
 
 static void draw_y_axis(const ef__sheet *s) {
   const ef__lettering lettering = {EF__INK_TEXT, TICK_PX, false,
-                                   EF__ANCHOR_RIGHT};
+                                   EF__ANCHOR_RIGHT, false};
   const double x = s->field.left;
   ef__page_group(s->page, "y axis");
   ef__page_move(s->page, x, s->field.top);
@@ -227,7 +227,7 @@ static void draw_labels(ef__sheet *s) {
     const double y = label->box.bottom - 0.28 * LABEL_PX;
     ef__page_text(
         s->page, x, y,
-        (ef__lettering){label->ink, LABEL_PX, false, EF__ANCHOR_MIDDLE},
+        (ef__lettering){label->ink, LABEL_PX, false, EF__ANCHOR_MIDDLE, true},
         label->text);
   }
   ef__page_ungroup(s->page);

@@ -10,10 +10,12 @@ enum {
   MOST_MARKS = 1500, /* and pairs */
   MOST_DOTS = 6000,
   MOST_LABELS = 200,
-  MOST_SEGMENTS = 4000 /* that labels are kept clear of */
+  MOST_SEGMENTS = 4000,     /* that labels are kept clear of */
+  MOST_DOTS_AVOIDED = 2000 /* of them */
 };
 #define MARK_PX 4.2
 #define DOT_PX 1.7
+#define DASH_PX 2.2
 #define LABEL_PX 12.0
 /* Points of a line nearer than this to the one before are left out. */
 #define NEAREST_PX 0.05
@@ -177,18 +179,41 @@ static bool draw_ellipses(ef__sheet *sheet, const ef_series *s) {
 
 /* ---- Marks ------------------------------------------------------------- */
 
-static void draw_dots(ef__sheet *sheet, const ef_series *s, const ef__point *at,
+/* Clouds differ by shape too: dots, dashes lying and standing, crosses. A dot is
+ * a line that ends where it begins, drawn with a round end. */
+static void put_dot(ef__page *page, int look, ef__point at) {
+  const int shape = look == EF_LOOK_FRAME ? 0 : look % 4;
+  const double across = shape == 1 || shape == 3 ? DASH_PX : 0.0;
+  const double down = shape == 2 || shape == 3 ? DASH_PX : 0.0;
+  if (across > 0.0 || shape == 0) {
+    ef__page_move(page, at.x - across, at.y);
+    ef__page_line(page, at.x + across, at.y);
+  }
+  if (down > 0.0) {
+    ef__page_move(page, at.x, at.y - down);
+    ef__page_line(page, at.x, at.y + down);
+  }
+}
+
+static ef__style dot_style(const ef_series *s) {
+  const bool is_round = s->look == EF_LOOK_FRAME || s->look % 4 == 0;
+  return (ef__style){.stroke = ink_of(s),
+                     .width_px = is_round ? 2.0 * DOT_PX : 1.2,
+                     .fill = EF__INK_NONE};
+}
+
+static bool draw_dots(ef__sheet *sheet, const ef_series *s, const ef__point *at,
                       const bool *stays) {
-  /* A line that ends where it begins, drawn with a round end: a dot. */
-  for (size_t i = 0; i < s->n; ++i) {
+  bool complete = true;
+  for (size_t i = 0; i < s->n && complete; ++i) {
     if (!stays[i])
       continue;
-    ef__page_move(sheet->page, at[i].x, at[i].y);
-    ef__page_line(sheet->page, at[i].x, at[i].y);
+    put_dot(sheet->page, s->look, at[i]);
+    if (sheet->n_segments < MOST_DOTS_AVOIDED)
+      complete = add_segment(sheet, at[i], at[i]);
   }
-  ef__page_paint(sheet->page, (ef__style){.stroke = ink_of(s),
-                                          .width_px = 2.0 * DOT_PX,
-                                          .fill = EF__INK_NONE});
+  ef__page_paint(sheet->page, dot_style(s));
+  return complete;
 }
 
 static bool draw_pair(ef__sheet *sheet, const ef_series *s, size_t i,
@@ -258,7 +283,7 @@ static bool draw_points(ef__sheet *sheet, const ef_series *s) {
     }
   }
   if (complete && is_cloud) {
-    draw_dots(sheet, s, at, stays);
+    complete = draw_dots(sheet, s, at, stays);
   } else if (complete) {
     for (size_t i = 0; i < s->n && complete; ++i) {
       if (stays[i])
@@ -312,12 +337,9 @@ void ef__series_sample(ef__page *page, const ef_series *s, double x, double y) {
   case EF_SERIES_CLOUD:
     for (int i = -1; i <= 1; ++i) {
       const double dx = 7.0 * i, dy = i == 0 ? -2.0 : 2.0;
-      ef__page_move(page, x + dx, y + dy);
-      ef__page_line(page, x + dx, y + dy);
+      put_dot(page, s->look, (ef__point){x + dx, y + dy});
     }
-    ef__page_paint(page, (ef__style){.stroke = ink_of(s),
-                                     .width_px = 2.0 * DOT_PX,
-                                     .fill = EF__INK_NONE});
+    ef__page_paint(page, dot_style(s));
     return;
   case EF_SERIES_PAIRS:
     ef__page_move(page, x - half + 4.0, y);

@@ -82,7 +82,11 @@ typedef struct ef__lettering {
   double size_px;
   bool bold;
   ef__anchor anchor;
+  bool has_edge; /**< of paper, so that it can be read over what lies below */
 } ef__lettering;
+
+/** Width of the line drawn round letters with an edge. */
+#define EF__TEXT_EDGE_PX 3.0
 
 typedef enum ef__act_kind {
   EF__ACT_PATH,

@@ -93,10 +93,18 @@ static void draw_text(const brush *b, const ef__page *page,
   const double share = act->lettering.anchor == EF__ANCHOR_LEFT     ? 0.0
                        : act->lettering.anchor == EF__ANCHOR_MIDDLE ? 0.5
                                                                     : 1.0;
-  set_ink(b, act->lettering.ink, 1.0);
+  const double x = act->at.x - share * extents.x_advance;
   c->cairo_new_path(b->context);
-  c->cairo_move_to(b->context, act->at.x - share * extents.x_advance,
-                   act->at.y);
+  c->cairo_move_to(b->context, x, act->at.y);
+  if (act->lettering.has_edge) {
+    set_ink(b, EF__INK_PAPER, 1.0);
+    c->cairo_set_line_width(b->context, EF__TEXT_EDGE_PX);
+    c->cairo_set_dash(b->context, NULL, 0, 0.0);
+    c->cairo_text_path(b->context, text);
+    c->cairo_stroke(b->context);
+    c->cairo_move_to(b->context, x, act->at.y);
+  }
+  set_ink(b, act->lettering.ink, 1.0);
   c->cairo_show_text(b->context, text);
 }
 

@@ -159,7 +159,14 @@ static void put_text(writer *w, const ef__page *page, const ef__act *act) {
   if (act->lettering.bold)
     put(w, " font-weight=\"bold\"");
   put(w, anchor[act->lettering.anchor]);
-  put_ink(w, "fill", act->lettering.ink);
+  if (act->lettering.has_edge) {
+    put_inks(w, &(ef__style){.fill = act->lettering.ink,
+                             .stroke = EF__INK_PAPER});
+    put_attribute(w, "stroke-width", EF__TEXT_EDGE_PX);
+    put(w, " paint-order=\"stroke\"");
+  } else {
+    put_ink(w, "fill", act->lettering.ink);
+  }
   put(w, ">");
   put_escaped(w, page->text + act->text);
   put(w, "</text>\n");

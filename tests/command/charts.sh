@@ -74,6 +74,23 @@ ef_chart() {
     ef_skip "chart of $name is XML" xmllint
   fi
 }
+ef_chart people match --population 30 --plane people
+ef_chart people-ab match --population 30 --plane ab
+for device in '--display demo:kiosk-measurements' '--inks demo:leaflet-press' \
+  '--colourants demo:livery-colourants --plane ab'; do
+  # shellcheck disable=SC2086
+  ef_chart section match $device --lightness 40 --force
+  ef_check "one outline a section" \
+    "$(grep -c '<title>gamut at L\* 40.0</title>' section.svg)" 1
+done
+ef_chart compare-people compare --population 30
+ef_check "clouds of people" "$(grep -c 'people</title>' compare-people.svg)" 3
+for wrong in '--lightness 40' '--lightness 40 --plane uv --chart a.svg' \
+  '--plane people --chart a.svg'; do
+  # shellcheck disable=SC2086
+  "$evenfield" match $wrong --quiet >out 2>message
+  ef_check "match $wrong: $(cat message)" "$? $(wc -l <message)" "2 1"
+done
 ef_chart compare compare
 ef_chart compare-lc compare --plane lc --format csv
 for space in xy uv lab mb cone cone-lm; do

@@ -274,6 +274,15 @@ static ef_status gather_people(compare_scene *s, ef_error *error) {
   return EF_OK;
 }
 
+static ef_status make_clouds(compare_scene *s, ef_error *error) {
+  if (s->options->chart == NULL && s->options->report == NULL)
+    return EF_OK;
+  s->clouds = calloc(1, sizeof *s->clouds);
+  return s->clouds != NULL
+             ? EF_OK
+             : message_fail(error, EF_NO_MEMORY, "out of memory for the chart");
+}
+
 static ef_status set_people(compare_scene *s, const ef_notes *notes,
                             ef_error *error) {
   const command_options *o = s->options;
@@ -284,9 +293,11 @@ static ef_status set_people(compare_scene *s, const ef_notes *notes,
                         "--population: what other people see follows from "
                         "spectra only, and these are colours");
   }
-  const ef_status status =
+  ef_status status =
       people_load(&s->people, o, 1000, s->looks.at[0].observer, notes, error);
-  return status == EF_OK ? gather_people(s, error) : status;
+  if (status == EF_OK)
+    status = gather_people(s, error);
+  return status == EF_OK ? make_clouds(s, error) : status;
 }
 
 /* ---- The scene --------------------------------------------------------- */
@@ -337,6 +348,9 @@ ef_status compare_scene_load(compare_scene *s, const command_options *options,
 void compare_scene_free(compare_scene *s) {
   for (size_t k = 0; k < LOOKS_MOST; ++k)
     ef_crowd_free(s->crowd[k]);
+  if (s->clouds != NULL)
+    clouds_free(s->clouds);
+  free(s->clouds);
   people_free(&s->people);
   free(s->worst_case_of);
   worst_case_free(s->worst_case, s->n_worst_cases);

@@ -6,6 +6,7 @@
 
 #include <evenfield/match.h>
 
+#include "cloud.h"
 #include "finish.h"
 #include "jnd.h"
 #include "people.h"
@@ -43,6 +44,7 @@ typedef struct compare_scene {
   people people; /**< population NULL: none asked for */
   /** They before each look of the first observer; NULL for the others. */
   ef_crowd *crowd[LOOKS_MOST];
+  clouds *clouds; /**< what a chart shows of them; NULL: nothing. Owned */
   worst_case *worst_case; /**< of --worst-case, with one standard; owned */
   size_t n_worst_cases;
   char *worst_case_of; /**< name of the standard; owned */

@@ -92,28 +92,24 @@ static ef_status add_tolerance(diagram *d, const compare_text *t,
   return ef_chart_add(d->chart, &ellipse, error);
 }
 
-static ef_status add_standard(diagram *d, ef_error *error) {
-  const double middle = 0.0;
-  const char *const label = "standard";
-  ef_series mark = ef_series_default(EF_SERIES_MARKS);
-  mark.look = EF_LOOK_FRAME;
-  mark.n = 1;
-  mark.x = mark.y = &middle;
-  mark.label = &label;
-  return ef_chart_add(d->chart, &mark, error);
+/* More clouds than these hide each other; their looks are those that few lights
+ * have. */
+enum { MOST_CLOUDS = 3, FIRST_LOOK = EF_LOOKS - MOST_CLOUDS };
+
+static ef_status add_people(diagram *d, const compare_scene *s,
+                            ef_error *error) {
+  if (s->clouds == NULL || s->clouds->n_pairs == 0 || d->plane != PLANE_AB)
+    return EF_OK;
+  clouds_sort(s->clouds);
+  for (size_t i = 0; i < s->clouds->n_pairs; ++i)
+    s->clouds->pair[i].look = FIRST_LOOK + (int)(i % MOST_CLOUDS);
+  return clouds_add_gaps(d, s->clouds, MOST_CLOUDS, false, error);
 }
 
 ef_status compare_chart_draw(const compare_text *t, const compare_scene *s,
                              ef_chart_settings settings, diagram_plane plane,
                              diagram *out, ef_error *error) {
-  settings.x_title = plane == PLANE_AB ? "\xCE\x94"
-                                         "a*"
-                                       : "\xCE\x94"
-                                         "C*";
-  settings.y_title = plane == PLANE_AB ? "\xCE\x94"
-                                         "b*"
-                                       : "\xCE\x94"
-                                         "L*";
+  diagram_set_differences(&settings, plane);
   ef_status status =
       diagram_init(out, &settings, plane, s->looks.at[0].basis.white, error);
   const size_t n = count_points(t) + 1;
@@ -124,7 +120,9 @@ ef_status compare_chart_draw(const compare_text *t, const compare_scene *s,
   if (status == EF_OK)
     status = add_tolerance(out, t, s, error);
   if (status == EF_OK)
-    status = add_standard(out, error);
+    status = add_people(out, s, error);
+  if (status == EF_OK)
+    status = diagram_add_origin(out, "standard", error);
   for (size_t i = 0; i < s->looks.n && i < EF_LOOKS && status == EF_OK; ++i)
     status = add_look(out, t, s, i, x, x + n, label, error);
   free(x);
@@ -132,11 +130,28 @@ ef_status compare_chart_draw(const compare_text *t, const compare_scene *s,
   return status;
 }
 
+void compare_chart_people_words(text *about, const compare_scene *s) {
+  const size_t n = s->clouds->n_pairs;
+  text_add(about, "The dots and dashes are ");
+  people_add_who(about, &s->people);
+  if (s->clouds->n_people < s->clouds->n_all)
+    text_format(about, ", the first %zu of them", s->clouds->n_people);
+  text_format(about,
+              ", one by one: what each sees of %s, in the light in which they "
+              "see most of it.",
+              n > MOST_CLOUDS ? "the 3 samples that differ most for them"
+                              : "a sample");
+}
+
 static void describe(text *about, const compare_text *t,
-                     const compare_scene *s) {
+                     const compare_scene *s, diagram_plane plane) {
   text_format(about, "Each mark is a sample, as it differs from its standard "
                      "(in the middle) in one light; its name stands where it "
                      "differs most.");
+  if (plane == PLANE_AB && s->clouds != NULL) {
+    text_add(about, " ");
+    compare_chart_people_words(about, s);
+  }
   if (s->looks.n > EF_LOOKS)
     text_format(about, " Of %zu lights and observers the first %d are drawn.",
                 s->looks.n, EF_LOOKS);
@@ -150,7 +165,7 @@ ef_status compare_chart_write(const compare_text *t, const compare_scene *s,
   const diagram_plane plane = s->options->plane == 1 ? PLANE_LC : PLANE_AB;
   ef_chart_settings settings = diagram_settings(plane);
   text subtitle = {0};
-  describe(&subtitle, t, s);
+  describe(&subtitle, t, s, plane);
   settings.title = "Samples against their standard";
   settings.subtitle = subtitle.bytes;
   settings.overwrite = s->options->force;

@@ -12,6 +12,8 @@
 ef_status compare_chart_draw(const compare_text *t, const compare_scene *s,
                              ef_chart_settings settings, diagram_plane plane,
                              diagram *out, ef_error *error);
+/** What the clouds of people in the plane of a*, b* are; where there are some. */
+void compare_chart_people_words(text *about, const compare_scene *s);
 /** To the file of --chart. */
 ef_status compare_chart_write(const compare_text *t, const compare_scene *s,
                               ef_error *error);

@@ -96,14 +96,19 @@ static ef_status put_all(compare_text *t, const compare_scene *s,
   if (status == EF_OK)
     status = add_swatches(t, s, page, error);
   if (status == EF_OK) {
+    text about = {0};
+    text_add(&about,
+             "Each mark is a sample in one light, as it differs from its "
+             "standard in the middle: right is redder, left greener, up "
+             "yellower, down bluer. A sample whose marks lie far apart from "
+             "light to light is metameric to the standard. Its name stands "
+             "where it differs most. ");
+    if (s->clouds != NULL)
+      compare_chart_people_words(&about, s);
     ef_report_front(page->page, "How the samples differ");
-    status = add_chart(
-        t, s, page, PLANE_AB, "Colour, lightness apart",
-        "Each mark is a sample in one light, as it differs from its standard "
-        "in the middle: right is redder, left greener, up yellower, down "
-        "bluer. A sample whose marks lie far apart from light to light is "
-        "metameric to the standard. Its name stands where it differs most.",
-        error);
+    status = add_chart(t, s, page, PLANE_AB, "Colour, lightness apart",
+                       about.bytes, error);
+    text_free(&about);
   }
   if (status == EF_OK) {
     status = add_chart(t, s, page, PLANE_LC, "Chroma and lightness",

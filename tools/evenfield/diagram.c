@@ -2,7 +2,11 @@
 #include "diagram.h"
 
 #include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
 #include <string.h>
+
+#include <evenfield/match.h>
 
 #include "message.h"
 
@@ -17,7 +21,8 @@ static const plane_row planes[] = {
     {"u', v'", "u\xE2\x80\xB2", "v\xE2\x80\xB2", true, true},
     {"x, y", "x", "y", true, true},
     {"a*, b*", "a*", "b*", true, false},
-    {"C*, L*", "C*", "L*", true, false}};
+    {"C*, L*", "C*", "L*", true, false},
+    {"differences of a*, b*", "", "", true, false}};
 
 ef_chart_settings diagram_settings(diagram_plane plane) {
   ef_chart_settings settings = ef_chart_settings_default();
@@ -25,6 +30,14 @@ ef_chart_settings diagram_settings(diagram_plane plane) {
   settings.y_title = planes[plane].y_title;
   settings.equal_scales = planes[plane].equal_scales;
   return settings;
+}
+
+/* U+0394: a difference. */
+void diagram_set_differences(ef_chart_settings *settings, diagram_plane plane) {
+  const bool is_ab = plane != PLANE_LC;
+  settings->equal_scales = true;
+  settings->x_title = is_ab ? "\xCE\x94" "a*" : "\xCE\x94" "C*";
+  settings->y_title = is_ab ? "\xCE\x94" "b*" : "\xCE\x94" "L*";
 }
 
 const char *diagram_plane_name(diagram_plane plane) {
@@ -45,6 +58,7 @@ ef_xy diagram_point(diagram_plane plane, ef_xyz xyz, ef_xyz white) {
     const ef_uv at = ef_xyz_to_uv(xyz);
     return (ef_xy){at.u_prime, at.v_prime};
   }
+  case PLANE_PEOPLE:
   case PLANE_AB: {
     const ef_lab at = ef_xyz_to_lab(xyz, white);
     return (ef_xy){at.a_star, at.b_star};
@@ -250,6 +264,46 @@ ef_status diagram_add_gamut(diagram *d, const ef_setup *setup,
              : add_outline(d, setup, error);
 }
 
+ef_status diagram_add_section(diagram *d, const ef_setup *setup, double L_star,
+                              ef_error *error) {
+  if (ef_device_n_drives(ef_setup_device(setup)) != 3)
+    return EF_OK;
+  ef_gamut_section section;
+  ef_status status = ef_gamut_section_new(setup, L_star, &section, error);
+  size_t first = 0, n_points = 0;
+  d->has_empty_section = status == EF_OK && section.n_loops == 0;
+  for (size_t k = 0; k < section.n_loops; ++k)
+    n_points += section.n[k];
+  double *x = malloc((2 * n_points + 1) * sizeof *x);
+  if (status == EF_OK && x == NULL)
+    status = message_fail(error, EF_NO_MEMORY, "out of memory for the chart");
+  for (size_t i = 0; i < n_points && status == EF_OK; ++i) {
+    x[i] = section.point[i].a_star;
+    x[n_points + i] = section.point[i].b_star;
+  }
+  char name[80], lightness[EF_NUMBER_TEXT];
+  ef_number_format_fixed(L_star, 1, lightness);
+  snprintf(name, sizeof name, "gamut at L* %s", lightness);
+  for (size_t k = 0; k < section.n_loops && status == EF_OK; ++k) {
+    status = add_region(d, k == 0 ? name : NULL, section.n[k], x + first,
+                        x + n_points + first, NULL, error);
+    first += section.n[k];
+  }
+  free(x);
+  ef_gamut_section_free(&section);
+  return status;
+}
+
+ef_status diagram_add_origin(diagram *d, const char *name, ef_error *error) {
+  const double middle = 0.0;
+  ef_series mark = ef_series_default(EF_SERIES_MARKS);
+  mark.look = EF_LOOK_FRAME;
+  mark.n = 1;
+  mark.x = mark.y = &middle;
+  mark.label = &name;
+  return ef_chart_add(d->chart, &mark, error);
+}
+
 ef_status diagram_add_white(diagram *d, const char *name, ef_error *error) {
   const ef_xy at = diagram_point(d->plane, d->white, d->white);
   const char *const label[] = {name};
@@ -273,6 +327,16 @@ exit_code diagram_check_usage(const command_options *options) {
   }
   if (path == NULL && options->plane >= 0)
     return message_usage("--plane is for charts: --chart names their file");
+  if (path == NULL && !isnan(options->lightness))
+    return message_usage("--lightness is for charts: --chart names their file");
+  if (!isnan(options->lightness) && options->plane >= 0 &&
+      options->plane != PLANE_AB)
+    return message_usage("--lightness cuts the gamut in the plane of a*, b*: "
+                         "--plane ab, or none");
+  if (options->plane == PLANE_PEOPLE && isnan(options->population) &&
+      options->categories == 0)
+    return message_usage("--plane people shows what people see: --population "
+                         "says how many");
   return EXIT_DONE;
 }
 

@@ -14,12 +14,15 @@
 typedef enum diagram_plane {
   PLANE_UV, /**< u', v' */
   PLANE_XY,
-  PLANE_AB, /**< a*, b* */
-  PLANE_LC  /**< C*, L* */
+  PLANE_AB,    /**< a*, b* */
+  PLANE_LC,    /**< C*, L* */
+  PLANE_PEOPLE /**< differences of a*, b*, as people see them; of match */
 } diagram_plane;
 
 /** Titles of the axes and equal scales where the plane has them. */
 ef_chart_settings diagram_settings(diagram_plane plane);
+/** Titles of the axes for differences in a*, b* or in C*, L*. */
+void diagram_set_differences(ef_chart_settings *settings, diagram_plane plane);
 /** "u', v'" ... Static. */
 const char *diagram_plane_name(diagram_plane plane);
 bool diagram_is_chromaticity(diagram_plane plane);
@@ -31,6 +34,7 @@ typedef struct diagram {
   ef_chart *chart; /**< owned */
   diagram_plane plane;
   ef_xyz white;
+  bool has_empty_section; /**< nothing lies at the lightness asked for */
 } diagram;
 
 /** Free with diagram_free in every case. */
@@ -45,6 +49,12 @@ ef_status diagram_add_locus(diagram *d, const ef_observer *observer,
  * planes of chromaticity where colours add, else the outline of all it can show
  * as seen from its white; nothing in the plane of L* and C*. */
 ef_status diagram_add_gamut(diagram *d, const ef_setup *setup, ef_error *error);
+/** What a setup of three drives can show at one lightness, in the plane of a*,
+ * b*. */
+ef_status diagram_add_section(diagram *d, const ef_setup *setup, double L_star,
+                              ef_error *error);
+/** A mark in the middle of differences. */
+ef_status diagram_add_origin(diagram *d, const char *name, ef_error *error);
 /** The white. */
 ef_status diagram_add_white(diagram *d, const char *name, ef_error *error);
 /** To the file of --chart, with notes about what it could not show. */

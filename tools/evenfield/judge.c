@@ -460,7 +460,7 @@ static ef_status compare_sights(work *w, judged *j, ef_error *error) {
 
 ef_status judge_pairs(const compare_scene *s, size_t n, const pair *pairs,
                       judged *out, ef_error *error) {
-  work w = {.s = s, .n_looks = s->looks.n};
+  work w = {.s = s, .pairs = pairs, .n_looks = s->looks.n};
   ef_status status = allocate(&w, out, n, most_sights(n, pairs), error);
   if (status == EF_OK) {
     find_sights(&w, n, pairs, out->pair);

@@ -2,6 +2,7 @@
 /* Who tells pairs apart: observers who differ in their JND, and people who also
  * differ in what they see. */
 #include <math.h>
+#include <stdio.h>
 #include <stdlib.h>
 
 #include "judge_work.h"
@@ -127,6 +128,25 @@ void judge_nothing(work *w) {
 
 /* ---- People ------------------------------------------------------------ */
 
+/* For a chart: where they see sight `i` under one light. */
+static ef_status keep_cloud(const work *w, size_t under, size_t i,
+                            const ef_spread *spread, ef_error *error) {
+  const compare_scene *s = w->s;
+  const pair *of = &w->pairs[w->sight[i].pair];
+  const size_t width = finish_file_head(s->standard)->grid.count;
+  if (s->clouds == NULL)
+    return EF_OK;
+  cloud_pair kept = {.id = of->line,
+                     .p95 = spread->p95,
+                     .named = {NONE, NONE}};
+  snprintf(kept.name, sizeof kept.name, "%.50s, %.50s, people",
+           of->sample_name, ef_illuminant_name(s->looks.at[under].illuminant));
+  return clouds_offer(s->clouds, s->crowd[under],
+                      ef_population_count(s->people.population), &kept,
+                      w->spectrum[0] + i * width, w->spectrum[1] + i * width,
+                      s->options->jobs, error);
+}
+
 /* The sights first .. first + n under one light, as the people see them. */
 static ef_status see(work *w, size_t under, size_t first, size_t n,
                      told_group *g, ef_spread *spread, ef_error *error) {
@@ -141,6 +161,7 @@ static ef_status see(work *w, size_t under, size_t first, size_t n,
     o->population_mean = spread[i].mean;
     o->population_p95 = spread[i].p95;
     group_add(g, w, (first + i) * w->n_looks + under);
+    status = keep_cloud(w, under, first + i, &spread[i], error);
   }
   if (status != EF_OK || !s->jnd.is_known)
     return status;

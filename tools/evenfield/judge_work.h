@@ -14,6 +14,7 @@ typedef struct sight {
 
 typedef struct work {
   const compare_scene *s;
+  const pair *pairs; /**< of the block */
   size_t n_looks, n; /**< sights */
   sight *sight;
   outcome *outcome; /**< n x n_looks */

@@ -96,47 +96,102 @@ static ef_status add_swatches(const match_report *r, const match_scene *s,
   return EF_OK;
 }
 
-static ef_status add_chart(const match_report *r, const match_scene *s,
-                           const report *page, diagram_plane plane,
-                           const char *title, const char *about,
-                           ef_error *error) {
+static ef_chart_settings chart_settings(diagram_plane plane, const char *title,
+                                        const char *about) {
   ef_chart_settings settings = diagram_settings(plane);
   settings.width_px = REPORT_CHART_PX;
   settings.title = title;
   settings.description = about;
+  return settings;
+}
+
+static ef_status add_chart(const match_report *r, const match_scene *s,
+                           const report *page, match_view view,
+                           const char *title, const char *about,
+                           ef_error *error) {
+  const ef_chart_settings settings = chart_settings(view.plane, title, about);
   diagram d = {0};
   const ef_status status =
-      match_chart_draw(r->chart, s, &settings, plane, &d, error);
+      match_chart_draw(r->chart, s, &settings, view, &d, error);
   if (status == EF_OK)
     ef_report_chart(page->page, d.chart);
   diagram_free(&d);
   return status;
 }
 
-static ef_status add_charts(const match_report *r, const match_scene *s,
+static match_view all_in(diagram_plane plane) {
+  return (match_view){plane, (double)NAN, false};
+}
+
+/* The gamut where it fails most. */
+static ef_status add_section(const match_report *r, const match_scene *s,
+                             const match_summary *sum, const report *page,
+                             ef_error *error) {
+  if (sum->n_in_gamut == sum->n)
+    return EF_OK;
+  const double L_star =
+      ef_xyz_to_lab(sum->worst_miss_target, ef_setup_white(s->setup)).L_star;
+  char lightness[EF_NUMBER_TEXT], title[200], about[400];
+  ef_number_format_fixed(L_star, 1, lightness);
+  snprintf(title, sizeof title, "At the lightness of %.100s",
+           sum->worst_miss_name);
+  snprintf(about, sizeof about,
+           "The gamut cut at L* %s, and the targets within 5 of that "
+           "lightness: what lies outside is out of gamut at its own lightness, "
+           "whatever other lightnesses could show.",
+           lightness);
+  return add_chart(r, s, page, (match_view){PLANE_AB, L_star, false}, title,
+                   about, error);
+}
+
+static ef_status add_people(const match_report *r, const match_scene *s,
                             const report *page, ef_error *error) {
+  if (s->seen.people.population == NULL)
+    return EF_OK;
+  text about = {0};
+  match_chart_people_words(&about);
+  const ef_chart_settings settings = chart_settings(
+      PLANE_PEOPLE, "Shown minus target, person by person", about.bytes);
+  diagram d = {0};
+  ef_status status =
+      match_chart_draw_people(r->chart, s, &settings, &d, error);
+  if (status == EF_OK)
+    ef_report_chart(page->page, d.chart);
+  diagram_free(&d);
+  text_free(&about);
+  return status;
+}
+
+static ef_status add_charts(const match_report *r, const match_scene *s,
+                            const match_summary *sum, const report *page,
+                            ef_error *error) {
   ef_report_section(page->page, "Where the targets lie");
   ef_status status = add_chart(
-      r, s, page, PLANE_UV, "Chromaticity u\xE2\x80\xB2, v\xE2\x80\xB2",
+      r, s, page, all_in(PLANE_UV),
+      "Chromaticity u\xE2\x80\xB2, v\xE2\x80\xB2",
       "Each target (open mark), joined to the colour shown for it (filled "
       "mark), with the gamut of this setup inside the spectrum locus. Equal "
       "distances are about equally visible, apart from lightness.",
       error);
   if (status == EF_OK) {
     status = add_chart(
-        r, s, page, PLANE_AB, "CIELAB a*, b*",
+        r, s, page, all_in(PLANE_AB), "CIELAB a*, b*",
         "The same in CIELAB as seen beside this setup's white: distance from "
         "the middle is chroma, direction is hue. The outline is the most "
         "chroma the setup has at each hue, at whatever lightness it has it; a "
         "target inside may still be out of gamut at its own lightness.",
         error);
   }
+  if (status == EF_OK)
+    status = add_section(r, s, sum, page, error);
   if (status == EF_OK) {
-    status = add_chart(r, s, page, PLANE_LC, "CIELAB C*, L*",
+    status = add_chart(r, s, page, all_in(PLANE_LC), "CIELAB C*, L*",
                        "Chroma and lightness of the same colours, whatever "
                        "their hue.",
                        error);
   }
+  if (status == EF_OK)
+    status = add_people(r, s, page, error);
   return status;
 }
 
@@ -151,7 +206,7 @@ static ef_status put_all(match_report *r, const match_scene *s,
   if (status == EF_OK && ef_observer_dimensions(s->observer) == 3) {
     status = add_swatches(r, s, page, error);
     if (status == EF_OK)
-      status = add_charts(r, s, page, error);
+      status = add_charts(r, s, sum, page, error);
   }
   if (status == EF_OK) {
     match_text_rest(r->text, &t, s, sum);

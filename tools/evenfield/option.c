@@ -24,6 +24,7 @@ static void set_defaults(command_options *o) {
                          .size = not_given,
                          .steps = not_given,
                          .magnification = not_given,
+                         .lightness = not_given,
                          .white_cd_m2 = not_given,
                          .background_Y = not_given,
                          .exponent = not_given,

@@ -78,6 +78,7 @@ typedef struct command_options {
   bool scale_black;                             /**< likewise */
   double ambient_lux, reflectance, luminance_cd_m2, jnd, tolerance, device_max;
   double magnification; /**< of ellipses on a chart */
+  double lightness;     /**< of a section of the gamut on a chart */
   double size, steps, white_cd_m2, background_Y;
   double exponent, spread, batch_sd, samples;
   const char *exponent_text, *save; /**< of panel, as what follows */

@@ -12,6 +12,8 @@ static const char *const units[] = {"energy", "quantal", NULL};
 static const char *const dichromats[] = {"protanope", "deuteranope",
                                          "tritanope", NULL};
 static const char *const planes[] = {"uv", "xy", "ab", "lc", NULL};
+static const char *const match_planes[] = {"uv", "xy", "ab",
+                                           "lc", "people", NULL};
 static const char *const aims[] = {"colour", "spectrum", "lights", NULL};
 static const char *const specular[] = {"included", "excluded", NULL};
 static const char *const match_formats[] = {"text", "csv", "json", "cgats",
@@ -551,8 +553,17 @@ static const option_row table[] = {
     {"chart", "FILE", COMMAND_PANEL, TYPE_TEXT, FIELD(chart), 0, 0, NULL,
      "of fit: draws the answers and the curve of all observers: FILE ends in "
      ".svg, .pdf or .png"},
-    {"plane", "uv|xy|ab|lc", COMMAND_MATCH | COMMAND_DESCRIBE, TYPE_CHOICE,
-     FIELD(plane), 0, 0, planes,
+    {"plane", "uv|xy|ab|lc|people", COMMAND_MATCH, TYPE_CHOICE, FIELD(plane), 0,
+     0, match_planes,
+     "the plane of the chart: u', v'; x, y; a*, b*; C*, L*; or, with "
+     "--population, how what is shown differs from the target for each of the "
+     "people; default uv"},
+    {"lightness", "L", COMMAND_MATCH, TYPE_NUMBER, FIELD(lightness), 0, 100,
+     NULL,
+     "the chart shows a*, b* of a section through the gamut at L* = L, and the "
+     "targets within 5 of it"},
+    {"plane", "uv|xy|ab|lc", COMMAND_DESCRIBE, TYPE_CHOICE, FIELD(plane), 0, 0,
+     planes,
      "the plane of the chart: u', v'; x, y; a*, b*; or C*, L*; default uv"},
     {"plane", "ab|lc", COMMAND_COMPARE, TYPE_CHOICE, FIELD(plane), 0, 0,
      difference_planes, "the plane of the chart: a*, b* or C*, L*; default ab"},
