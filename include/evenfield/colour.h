@@ -224,6 +224,12 @@ typedef struct ef_dominant {
 EF_API ef_status ef_xy_to_dominant(ef_xy xy, ef_xy white,
                                    const ef_observer *observer,
                                    ef_dominant *out, ef_error *error);
+/** The same of n chromaticities, by up to `jobs` threads (0: all cores); all
+ * fields of what has no answer are NaN and false. */
+EF_API ef_status ef_xy_to_dominant_batch(size_t n, const ef_xy *xy,
+                                         ef_xy white,
+                                         const ef_observer *observer, int jobs,
+                                         ef_dominant *out, ef_error *error);
 /** Spectrum locus of the observer: chromaticities at `n` wavelengths from 360
  * to 830 nm (EF_INVALID outside), linear between 1 nm points; NaN where the
  * observer sees nothing (cie-2015 below 390 nm). */

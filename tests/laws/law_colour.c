@@ -450,6 +450,35 @@ static void dominant_of_the_locus(void **state) {
   assert_true(off_nm < 1e-9 && off_purity < 1e-13);
 }
 
+/* A batch is its single colours, also where there is no answer. */
+static void dominants_at_once(void **state) {
+  (void)state;
+  enum { N = 700 };
+  gen g = gen_new(16);
+  ef_observer *const observer = ef_observer_new("cie-2015-10", NULL);
+  static ef_xy xy[N];
+  static ef_dominant many[N];
+  for (int round = 0; round < 8; ++round) {
+    const ef_xy white = round == 7 ? (ef_xy){0.8, 0.5}
+                                   : random_interior_white(&g);
+    for (size_t i = 0; i < N; ++i)
+      xy[i] = (ef_xy){gen_between(&g, -0.1, 0.9), gen_between(&g, -0.1, 0.9)};
+    xy[3] = white;
+    xy[5].y = (double)NAN;
+    assert_int_equal(
+        ef_xy_to_dominant_batch(N, xy, white, observer, 2, many, NULL), EF_OK);
+    for (size_t i = 0; i < N; ++i) {
+      ef_dominant one = {(double)NAN, false, (double)NAN};
+      ef_xy_to_dominant(xy[i], white, observer, &one, NULL);
+      assert_memory_equal(&one.dominant_nm, &many[i].dominant_nm,
+                          sizeof one.dominant_nm);
+      assert_memory_equal(&one.purity, &many[i].purity, sizeof one.purity);
+      assert_int_equal(one.complementary, many[i].complementary);
+    }
+  }
+  ef_observer_free(observer);
+}
+
 /* Mixed with white, a colour keeps its dominant wavelength (complementary or
  * not) and its purity is multiplied. */
 static void purity_scales(void **state) {
@@ -566,6 +595,7 @@ int main(void) {
       cmocka_unit_test(temperature_is_the_nearest),
       cmocka_unit_test(duv_is_the_step_across),
       cmocka_unit_test(dominant_of_the_locus),
+      cmocka_unit_test(dominants_at_once),
       cmocka_unit_test(purity_scales),
       cmocka_unit_test(lights_are_inside),
       cmocka_unit_test(references_render_perfectly),

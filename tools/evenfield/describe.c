@@ -80,6 +80,9 @@ typedef struct file_work {
   double *excitation;   /* BLOCK_ROWS x EF_N_RECEPTORS */
   double *xyz_64;       /* of spectra of lights, BLOCK_ROWS x 3 */
   double *sums;         /* BLOCK_ROWS x EF_ALPHA_OPIC_CHANNELS */
+  ef_xyy *xyy;          /* BLOCK_ROWS, as the three that follow */
+  ef_xy *xy;
+  ef_dominant *dominant;
   description *out;
 } file_work;
 
@@ -94,6 +97,9 @@ static void work_free(file_work *w) {
   free(w->xyz_31);
   free(w->excitation);
   free(w->sums);
+  free(w->xyy);
+  free(w->xy);
+  free(w->dominant);
   free(w->out);
 }
 
@@ -165,8 +171,11 @@ static ef_status work_init(file_work *w, const describe_scene *s,
   w->xyz_31 = malloc(3 * BLOCK_ROWS * sizeof *w->xyz_31);
   w->excitation = malloc(EF_N_RECEPTORS * BLOCK_ROWS * sizeof *w->excitation);
   w->sums = malloc(EF_ALPHA_OPIC_CHANNELS * BLOCK_ROWS * sizeof *w->sums);
+  w->xyy = malloc(BLOCK_ROWS * sizeof *w->xyy);
+  w->xy = malloc(BLOCK_ROWS * sizeof *w->xy);
+  w->dominant = malloc(BLOCK_ROWS * sizeof *w->dominant);
   w->out = malloc(BLOCK_ROWS * sizeof *w->out);
-  if (w->xyz != NULL && w->xyz_31 != NULL && w->excitation != NULL &&
+  if (w->xyy != NULL && w->xy != NULL && w->dominant != NULL && w->xyz != NULL && w->xyz_31 != NULL && w->excitation != NULL &&
       w->sums != NULL && w->out != NULL) {
     return EF_OK;
   }
@@ -292,20 +301,21 @@ static void add_temperature(description *d, const file_work *w, size_t i) {
 
 /* What has no dominant wavelength (black, a colour outside the locus) or no
  * rendering index is left empty: an answer, not a failure. */
-static void add_dominant(description *d, const describe_scene *s,
-                         const file_work *w) {
+static void find_dominants(file_work *w, const describe_scene *s, size_t n) {
   const double none = (double)NAN;
-  d->dominant = (ef_dominant){none, false, none};
-  if (isnan(d->xyy.x) || ef_observer_dimensions(s->observer) < 3)
-    return;
   const ef_xyy white = ef_xyz_to_xyy(s->basis.white);
   const ef_xy against =
       w->is_light ? s->equal_energy : (ef_xy){white.x, white.y};
+  for (size_t i = 0; i < n; ++i) {
+    const double *v = w->xyz + 3 * i;
+    w->xyy[i] = ef_xyz_to_xyy((ef_xyz){v[0], v[1], v[2]});
+    w->xy[i] = (ef_xy){w->xyy[i].x, w->xyy[i].y};
+    w->dominant[i] = (ef_dominant){none, false, none};
+  }
   ef_error ignored;
-  ef_dominant found;
-  if (ef_xy_to_dominant((ef_xy){d->xyy.x, d->xyy.y}, against, s->observer,
-                        &found, &ignored) == EF_OK) {
-    d->dominant = found;
+  if (ef_observer_dimensions(s->observer) == 3) {
+    ef_xy_to_dominant_batch(n, w->xy, against, s->observer, s->options->jobs,
+                            w->dominant, &ignored);
   }
 }
 
@@ -348,8 +358,8 @@ static void add_rendering(description *d, const file_work *w,
   }
 }
 
-static description describe(const describe_scene *s, const file_work *w,
-                            const ef_block *block, size_t i) {
+static description describe_row(const describe_scene *s, const file_work *w,
+                                const ef_block *block, size_t i) {
   const bool spectra = w->head->content == EF_CONTENT_SPECTRA;
   description d = {.name = block->name[i],
                    .file = w->head->file,
@@ -357,13 +367,13 @@ static description describe(const describe_scene *s, const file_work *w,
                            : spectra   ? "surface"
                                        : "colour"};
   d.xyz = (ef_xyz){w->xyz[3 * i], w->xyz[3 * i + 1], w->xyz[3 * i + 2]};
-  d.xyy = ef_xyz_to_xyy(d.xyz);
+  d.xyy = w->xyy[i];
   d.uv = ef_xyz_to_uv(d.xyz);
   d.lab = lab_of(w, i);
   d.luminance_cd_m2 = w->is_light && w->head->absolute ? d.xyz.Y : (double)NAN;
   add_receptors(&d, s, w, i);
   add_temperature(&d, w, i);
-  add_dominant(&d, s, w);
+  d.dominant = w->dominant[i];
   add_whiteness(&d, s, w);
   add_daylight(&d, w, i);
   add_rendering(&d, w, block->value + i * w->head->width);
@@ -371,6 +381,21 @@ static description describe(const describe_scene *s, const file_work *w,
 }
 
 /* ---- All rows ---------------------------------------------------------- */
+
+/* Rows that a thread describes at a time. */
+enum { PIECE = 64 };
+
+typedef struct rows_work {
+  const describe_scene *scene;
+  const file_work *file;
+  const ef_block *block;
+} rows_work;
+
+static void describe_some(void *context, size_t begin, size_t end) {
+  const rows_work *r = context;
+  for (size_t i = begin; i < end; ++i)
+    r->file->out[i] = describe_row(r->scene, r->file, r->block, i);
+}
 
 static ef_status describe_file(describe_scene *s, ef_reader *reader,
                                file_work *w, const ef_notes *notes,
@@ -393,9 +418,9 @@ static ef_status describe_file(describe_scene *s, ef_reader *reader,
     if (is_first)
       find_white(w, s, &block, notes);
     is_first = false;
-    for (size_t i = 0; i < block.n; ++i) {
-      w->out[i] = describe(s, w, &block, i);
-    }
+    find_dominants(w, s, block.n);
+    rows_work rows = {s, w, &block};
+    ef_parallel_for(block.n, PIECE, s->options->jobs, describe_some, &rows);
     status = sink->rows(sink->self, s, block.n, w->out, error);
     n_here += block.n;
     message_progress_show(&progress, *n + n_here);

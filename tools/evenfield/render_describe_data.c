@@ -116,15 +116,22 @@ describe_data *describe_data_new(const describe_scene *s, ef_output *output,
   return d;
 }
 
+typedef struct block {
+  const describe_scene *scene;
+  const description *row;
+} block;
+
+static void write_one(const document *to, const void *self, size_t i) {
+  const block *b = self;
+  record r = document_row(to);
+  record_description(&r, b->scene, &b->row[i]);
+}
+
 static ef_status rows(void *self, const describe_scene *s, size_t n,
                       const description *descriptions, ef_error *error) {
-  (void)error; /* the writers keep their errors until they are finished */
   describe_data *d = self;
-  for (size_t i = 0; i < n; ++i) {
-    record r = document_row(&d->out);
-    record_description(&r, s, &descriptions[i]);
-  }
-  return EF_OK;
+  const block b = {s, descriptions};
+  return document_write(&d->out, n, s->options->jobs, write_one, &b, error);
 }
 
 describe_sink describe_data_sink(describe_data *d) {

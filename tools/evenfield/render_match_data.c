@@ -264,19 +264,29 @@ static ef_status begin(void *self, const match_scene *s, ef_error *error) {
   return EF_OK;
 }
 
+typedef struct block {
+  const match_scene *scene;
+  const match_rows *rows;
+} block;
+
+static void write_one(const document *to, const void *self, size_t i) {
+  const block *b = self;
+  const match_scene *s = b->scene;
+  const match_rows *rows = b->rows;
+  record r = document_row(to);
+  const match_more more = {
+      .spread = rows->spread != NULL ? &rows->spread[i] : NULL,
+      .view = rows->view != NULL ? rows->view + i * s->lights.n : NULL,
+      .recipe = rows->recipe != NULL ? &rows->recipe[i] : NULL};
+  record_match(&r, s, rows->name[i], &rows->match[i], &more);
+}
+
 static ef_status rows(void *self, const match_scene *s, const match_rows *rows,
                       ef_error *error) {
-  (void)error; /* the writers keep their errors until they are finished */
   match_data *d = self;
-  for (size_t i = 0; i < rows->n; ++i) {
-    record r = document_row(&d->out);
-    const match_more more = {
-        .spread = rows->spread != NULL ? &rows->spread[i] : NULL,
-        .view = rows->view != NULL ? rows->view + i * s->lights.n : NULL,
-        .recipe = rows->recipe != NULL ? &rows->recipe[i] : NULL};
-    record_match(&r, s, rows->name[i], &rows->match[i], &more);
-  }
-  return EF_OK;
+  const block b = {s, rows};
+  return document_write(&d->out, rows->n, s->options->jobs, write_one, &b,
+                        error);
 }
 
 static ef_status end(void *self, const match_scene *s, const match_summary *sum,
