@@ -453,21 +453,22 @@ static void dominant_of_the_locus(void **state) {
 /* A batch is its single colours, also where there is no answer. */
 static void dominants_at_once(void **state) {
   (void)state;
-  enum { N = 700 };
+  enum { N_AT_ONCE = 700 };
   gen g = gen_new(16);
   ef_observer *const observer = ef_observer_new("cie-2015-10", NULL);
-  static ef_xy xy[N];
-  static ef_dominant many[N];
+  static ef_xy xy[N_AT_ONCE];
+  static ef_dominant many[N_AT_ONCE];
   for (int round = 0; round < 8; ++round) {
     const ef_xy white = round == 7 ? (ef_xy){0.8, 0.5}
                                    : random_interior_white(&g);
-    for (size_t i = 0; i < N; ++i)
+    for (size_t i = 0; i < N_AT_ONCE; ++i)
       xy[i] = (ef_xy){gen_between(&g, -0.1, 0.9), gen_between(&g, -0.1, 0.9)};
     xy[3] = white;
     xy[5].y = (double)NAN;
-    assert_int_equal(
-        ef_xy_to_dominant_batch(N, xy, white, observer, 2, many, NULL), EF_OK);
-    for (size_t i = 0; i < N; ++i) {
+    assert_int_equal(ef_xy_to_dominant_batch(N_AT_ONCE, xy, white, observer, 2,
+                                             many, NULL),
+                     EF_OK);
+    for (size_t i = 0; i < N_AT_ONCE; ++i) {
       ef_dominant one = {(double)NAN, false, (double)NAN};
       ef_xy_to_dominant(xy[i], white, observer, &one, NULL);
       assert_memory_equal(&one.dominant_nm, &many[i].dominant_nm,
