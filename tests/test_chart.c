@@ -5,6 +5,7 @@
 #include <setjmp.h>
 #include <stdlib.h>
 
+#include "base/base_private.h"
 #include "fail_alloc.h"
 #include "gen.h"
 #include "near.h"
@@ -706,6 +707,108 @@ static void test_without_memory(void **state) {
   assert_true(fail_alloc_each(try_chart, NULL) > 10);
 }
 
+/* ---- Inks -------------------------------------------------------------- */
+
+/* IEC 61966-2-1: the curve, and the primaries with the white of D65 to four
+ * decimals; Y = 100 for white. */
+static ef_xyz ink_xyz(uint32_t rgb) {
+  double v[3];
+  for (unsigned i = 0; i < 3; ++i) {
+    const double code = (rgb >> (16 - 8 * i) & 255u) / 255.0;
+    v[i] = code <= 0.04045 ? code / 12.92 : pow((code + 0.055) / 1.055, 2.4);
+  }
+  return (ef_xyz){100 * (0.4124 * v[0] + 0.3576 * v[1] + 0.1805 * v[2]),
+                  100 * (0.2126 * v[0] + 0.7152 * v[1] + 0.0722 * v[2]),
+                  100 * (0.0193 * v[0] + 0.1192 * v[1] + 0.9505 * v[2])};
+}
+
+static uint32_t ink_on(int ink, bool is_dark) {
+  return is_dark ? ef__ink_at(ink)->dark : ef__ink_at(ink)->light;
+}
+
+/* WCAG 2.2, "contrast ratio" and "relative luminance", whose step of the curve
+ * at 0.03928 parts no code of 8 bits from the one above. */
+static double contrast(uint32_t a, uint32_t b) {
+  const double first = ink_xyz(a).Y / 100, second = ink_xyz(b).Y / 100;
+  return (fmax(first, second) + 0.05) / (fmin(first, second) + 0.05);
+}
+
+/* Text 4.5 : 1 (WCAG 2.2, 1.4.3), that of the body 7 : 1 (1.4.6); marks, which
+ * also have names in their ink, as much. An area's ink over the paper takes a
+ * little of it from what stands on the area. */
+static void test_inks_stand_out(void **state) {
+  (void)state;
+  assert_near(contrast(0xFFFFFF, 0), 21, 1e-9);
+  /* A published pair: #767676 is the lightest grey of 4.5 : 1 on white. */
+  assert_true(contrast(0xFFFFFF, 0x767676) >= 4.5);
+  assert_true(contrast(0xFFFFFF, 0x777777) < 4.5);
+  for (int dark = 0; dark < 2; ++dark) {
+    const uint32_t paper = ink_on(EF__INK_PAPER, dark == 1);
+    double least = INFINITE;
+    assert_true(contrast(paper, ink_on(EF__INK_TEXT, dark == 1)) >= 7);
+    for (int ink = EF__INK_SOFT; ink < EF__INKS; ++ink) {
+      if (ink != EF__INK_FAINT)
+        least = fmin(least, contrast(paper, ink_on(ink, dark == 1)));
+    }
+    printf("# least contrast on %s paper: %.2f : 1\n",
+           dark == 1 ? "dark" : "light", least);
+    assert_true(least >= 4.5);
+  }
+}
+
+/* What a dichromat is taken to see of an ink on its paper, in CIELAB. */
+static ef_lab seen_ink(const ef_observer *observer, ef_deficiency kind,
+                       uint32_t ink) {
+  const ef_xyz white = ink_xyz(0xFFFFFF);
+  if (kind == EF_TRICHROMAT)
+    return ef_xyz_to_lab(ink_xyz(ink), white);
+  double to_cones[9], back[9], lms[3];
+  assert_int_equal(ef_observer_cone_matrix(observer, to_cones, NULL, NULL),
+                   EF_OK);
+  assert_true(ef__mat3_inverse(to_cones, back));
+  const ef_xyz neutral = ef_xyz_transform(to_cones, white);
+  const ef_xyz cones = ef_xyz_transform(to_cones, ink_xyz(ink));
+  ef_dichromat_view view;
+  assert_int_equal(
+      ef_dichromat_view_make(
+          kind, observer, (double[3]){neutral.X, neutral.Y, neutral.Z}, &view,
+          NULL),
+      EF_OK);
+  ef_dichromat_view_apply(&view, (double[3]){cones.X, cones.Y, cones.Z}, lms);
+  return ef_xyz_to_lab(
+      ef_xyz_transform(back, (ef_xyz){lms[0], lms[1], lms[2]}), white);
+}
+
+/* Any two looks differ by many just-noticeable differences for everybody; what
+ * their marks and dashes add is not counted. */
+static void test_looks_differ_for_dichromats(void **state) {
+  (void)state;
+  static const ef_deficiency kind[] = {EF_TRICHROMAT, EF_PROTANOPE,
+                                       EF_DEUTERANOPE, EF_TRITANOPE};
+  ef_observer *observer = ef_observer_new("cie-1931", NULL);
+  const ef_metric *metric = ef_metric_find("ciede2000", NULL);
+  for (size_t k = 0; k < 8; ++k) {
+    const bool is_dark = k >= 4;
+    double lab[EF_LOOKS][3], least = INFINITE;
+    for (int i = 0; i < EF_LOOKS; ++i) {
+      const ef_lab at =
+          seen_ink(observer, kind[k % 4], ink_on(EF__INK_LOOK + i, is_dark));
+      lab[i][0] = at.L_star;
+      lab[i][1] = at.a_star;
+      lab[i][2] = at.b_star;
+      for (int j = 0; j < i; ++j)
+        least = fmin(least, ef_metric_difference(metric, lab[i], lab[j]));
+    }
+    printf("# least difference on %s paper, %s: %.1f Delta E*00\n",
+           is_dark ? "dark" : "light",
+           kind[k % 4] == EF_TRICHROMAT ? "trichromat"
+                                        : ef_deficiency_name(kind[k % 4]),
+           least);
+    assert_true(least >= (kind[k % 4] == EF_TRICHROMAT ? 18 : 9));
+  }
+  ef_observer_free(observer);
+}
+
 int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(test_macadam_ellipses_land),
@@ -724,6 +827,8 @@ int main(void) {
       cmocka_unit_test(test_refusals),
       cmocka_unit_test(test_odd_ranges),
       cmocka_unit_test(test_without_memory),
+      cmocka_unit_test(test_inks_stand_out),
+      cmocka_unit_test(test_looks_differ_for_dichromats),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
   return cmocka_run_group_tests(tests, scratch_make, scratch_remove);
