@@ -226,11 +226,12 @@ static void test_parts_say_what_they_are(void **state) {
   char *html = page();
   assert_non_null(
       strstr(html, "<tr><th class=\"t\" rowspan=\"2\" scope=\"col\">Target</th>"
-                   "<th colspan=\"2\" scope=\"colgroup\">Amount</th></tr>\n"
-                   "<tr><th scope=\"col\">red</th><th scope=\"col\">blue</th>"
+                   "<th class=\"g\" colspan=\"2\" scope=\"colgroup\">Amount</th>"
+                   "</tr>\n<tr><th scope=\"col\" class=\"g\">red</th>"
+                   "<th scope=\"col\">blue</th>"
                    "</tr>"));
   assert_non_null(strstr(html, "<tr><th scope=\"row\" class=\"t\">rail &amp; "
-                               "mast</th><td>98</td><td>3</td></tr>"));
+                               "mast</th><td class=\"g\">98</td><td>3</td></tr>"));
   assert_non_null(strstr(html, "<dt>Display</dt>\n<dd>a kiosk<br>\nand more of "
                                "it</dd>\n<dt>Command</dt>"));
   const char *front = strstr(html, ">In front</h2>");

@@ -219,16 +219,24 @@ void ef_report_term_code(ef_report *r, const char *term, const char *text) {
 
 /* ---- Tables ------------------------------------------------------------ */
 
-static void put_class(ef_report *r, const ef_report_column *column) {
-  ef__report_put(r->at, column->is_text ? " class=\"t\"" : "");
-}
-
 /* Columns from `c` on that the first head of `c` stands over. */
 static size_t span_of(size_t n, const ef_report_column *column, size_t c) {
   size_t end = c + 1;
   while (end < n && column[end].head == NULL)
     ++end;
   return end - c;
+}
+
+/* Columns under one head stand apart from what is before and after them. */
+static void put_class(ef_report *r, size_t n, const ef_report_column *column,
+                      size_t c) {
+  const bool is_apart =
+      c > 0 && column[c].head != NULL &&
+      (span_of(n, column, c) > 1 || column[c - 1].head == NULL);
+  if (column[c].is_text || is_apart)
+    ef__report_put(r->at, !is_apart           ? " class=\"t\""
+                          : column[c].is_text ? " class=\"t g\""
+                                              : " class=\"g\"");
 }
 
 static void put_heads(ef_report *r, size_t n, const ef_report_column *column) {
@@ -241,7 +249,7 @@ static void put_heads(ef_report *r, size_t n, const ef_report_column *column) {
     /* What has no second line reaches down to the rows. */
     const bool is_deep = has_units && span == 1 && column[c].unit[0] == '\0';
     ef__report_put(r->at, "<th");
-    put_class(r, &column[c]);
+    put_class(r, n, column, c);
     if (span > 1) {
       ef__report_put(r->at, " colspan=\"");
       put_count(r->at, span);
@@ -262,7 +270,7 @@ static void put_heads(ef_report *r, size_t n, const ef_report_column *column) {
           column[c].unit[0] == '\0')
         continue;
       ef__report_put(r->at, "<th scope=\"col\"");
-      put_class(r, &column[c]);
+      put_class(r, n, column, c);
       ef__report_put(r->at, ">");
       put_text(r->at, column[c].unit);
       ef__report_put(r->at, "</th>");
@@ -278,7 +286,7 @@ static void put_row(ef_report *r, size_t n, const ef_report_column *column,
   for (size_t c = 0; c < n; ++c) {
     const bool is_name = c == 0 && column[c].is_text;
     ef__report_put(r->at, is_name ? "<th scope=\"row\"" : "<td");
-    put_class(r, &column[c]);
+    put_class(r, n, column, c);
     ef__report_put(r->at, ">");
     put_text(r->at, cell[c]);
     ef__report_put(r->at, is_name ? "</th>" : "</td>");
