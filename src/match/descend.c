@@ -5,6 +5,11 @@
 #include "match/match_private.h"
 
 #include <math.h>
+#include <string.h>
+
+/* Gain of a step, as a share of the square, from which on no other follows: a
+ * step of Newton's leaves about the square of that share. */
+#define LAST 1e-7
 
 double ef__search_value(ef__search *search, const double amount[3]) {
   double coordinate[3];
@@ -180,11 +185,61 @@ static bool advance(ef__search *search, ef__place *place, const double step[3],
   return false;
 }
 
-bool ef__descend(ef__search *search, ef__place *place) {
+/* One more step, of which the value alone is told; false when it leads up. */
+static bool step_last(ef__search *search, ef__place *place,
+                      const double step[3]) {
+  double amount[3];
+  moved(place, 1, step, amount);
+  const double square = ef__search_value(search, amount);
+  if (!(square <= place->square)) return false;
+  memcpy(place->amount, amount, sizeof amount);
+  place->square = square;
+  return true;
+}
+
+/* True when the way from the place straight to the known minimum leads down, by
+ * what both ends know of it: slope and bend at each foretell the other's value.
+ * A descent from here would then end there. */
+static bool leads_to(const ef__place *place, const ef__place *minimum) {
+  const double tolerance = 0.1; /* of the way down */
+  double way[3], slope[2] = {0, 0}, bend[2] = {0, 0};
+  const double fall = place->square - minimum->square;
+  if (!(fall > 0))
+    return false;
+  for (int i = 0; i < 3; ++i)
+    way[i] = minimum->amount[i] - place->amount[i];
+  for (int i = 0; i < 3; ++i) {
+    slope[0] += place->gradient[i] * way[i];
+    slope[1] += minimum->gradient[i] * way[i];
+    for (int k = 0; k < 3; ++k) {
+      bend[0] += place->hessian[3 * i + k] * way[i] * way[k];
+      bend[1] += minimum->hessian[3 * i + k] * way[i] * way[k];
+    }
+  }
+  const double from_here = -slope[0] - bend[0] / 2;
+  const double from_there = -slope[1] + bend[1] / 2;
+  return slope[0] < 0 && fabs(from_here - fall) < tolerance * fall &&
+         fabs(from_there - fall) < tolerance * fall;
+}
+
+static bool leads_to_any(const ef__place *place, size_t n,
+                         const ef__place *known) {
+  for (size_t i = 0; i < n; ++i) {
+    if (leads_to(place, &known[i]))
+      return true;
+  }
+  return false;
+}
+
+ef__descent ef__descend_beside(ef__search *search, size_t n_known,
+                               const ef__place *known, ef__place *place) {
   enum { MOST_STEPS = 60 };
+  const ef_metric *const metric = search->metric;
+  const bool is_exact = metric->expand != NULL && metric->carry != NULL;
   ef__search_expand(search, place);
   for (int i = 0; i < MOST_STEPS; ++i) {
     double step[3];
+    if (leads_to_any(place, n_known, known)) return EF__DESCENT_KNOWN;
     box_step(place, step);
     double slope = slope_along(place, step);
     if (slope >= 0) {
@@ -193,8 +248,16 @@ bool ef__descend(ef__search *search, ef__place *place) {
     }
     /* What is left to gain is about half of -slope: 1e-11 of the square, so
      * 3e-12 of the difference; near the target 1e-20 of squared units. */
-    if (!(-slope > 1e-11 * place->square + 1e-20)) return true;
-    if (!advance(search, place, step, slope)) return false;
+    if (!(-slope > 1e-11 * place->square + 1e-20)) return EF__DESCENT_SMOOTH;
+    if (is_exact && -slope < LAST * place->square &&
+        step_last(search, place, step)) {
+      return EF__DESCENT_SMOOTH;
+    }
+    if (!advance(search, place, step, slope)) return EF__DESCENT_STOPPED;
   }
-  return false;
+  return EF__DESCENT_STOPPED;
+}
+
+bool ef__descend(ef__search *search, ef__place *place) {
+  return ef__descend_beside(search, 0, NULL, place) == EF__DESCENT_SMOOTH;
 }

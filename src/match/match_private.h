@@ -81,6 +81,17 @@ void ef__search_expand(ef__search *search, ef__place *place);
  * where no step of at least 1e-3 of Newton's goes down, and returns false. */
 bool ef__descend(ef__search *search, ef__place *place);
 
+typedef enum ef__descent {
+  EF__DESCENT_SMOOTH,  /**< at a local minimum */
+  EF__DESCENT_STOPPED, /**< at a kink or jump */
+  EF__DESCENT_KNOWN    /**< on the way to a minimum that is known */
+} ef__descent;
+
+/** The same, but ends on the way as soon as it is clear to which of the known
+ * minima (expanded there or a last step beside) it leads. */
+ef__descent ef__descend_beside(ef__search *search, size_t n_known,
+                               const ef__place *known, ef__place *place);
+
 /** From where a descent stopped at the jump of opposite hues: along the edge of
  * the jump to its least value. True when that is lower. */
 bool ef__descend_edge(ef__search *search, ef__place *place);

@@ -15,12 +15,23 @@
 #define DEPTH 8.0
 #define DEPTH_NEAR_AXIS 16.0
 
+enum { MOST_ENDS = 6 };
+
 /* Descents that meet end closer to each other than this. */
 static bool is_same(const double a[3], const double b[3]) {
   const double near = 1e-5;
   return fabs(a[0] - b[0]) < near && fabs(a[1] - b[1]) < near &&
          fabs(a[2] - b[2]) < near;
 }
+
+/* Where descents ended, with slope and bend there: others that come near one of
+ * them need not go on. */
+typedef struct trail {
+  ef__search *search;
+  ef__minima *minima;
+  size_t n_ends;
+  ef__place end[MOST_ENDS];
+} trail;
 
 static void keep(ef__minima *minima, const ef__place *place) {
   size_t i = minima->n;
@@ -95,13 +106,18 @@ static bool on_neutral_axis(const ef__search *search, const double amount[3]) {
   return c[1] * c[1] + c[2] * c[2] < 1e-6;
 }
 
-static void descend_from(ef__search *search, const double amount[3],
-                         ef__minima *minima) {
+static void descend_from(trail *t, const double amount[3]) {
   enum { MOST_NUDGES = 4 };
+  ef__search *const search = t->search;
   ef__place place;
   for (int i = 0; i < 3; ++i)
     place.amount[i] = ef__clamp(amount[i], 0, 1);
-  bool smooth = ef__descend(search, &place);
+  /* Where colours do not add, ways may lead over folds. */
+  const size_t n_known = search->mixing->affine ? t->n_ends : 0;
+  const ef__descent how = ef__descend_beside(search, n_known, t->end, &place);
+  if (how == EF__DESCENT_KNOWN)
+    return;
+  bool smooth = how == EF__DESCENT_SMOOTH;
   if (!smooth && search->metric->jumps_at_opposite_hue) {
     smooth = ef__descend_edge(search, &place);
   }
@@ -118,7 +134,9 @@ static void descend_from(ef__search *search, const double amount[3],
       break;
     place = next;
   }
-  keep(minima, &place);
+  keep(t->minima, &place);
+  if (t->n_ends < MOST_ENDS)
+    t->end[t->n_ends++] = place;
 }
 
 /* Where the way from a grey of the target's lightness to the exact amounts
@@ -145,7 +163,9 @@ static void leave_box(const ef__search *search, const double exact[3],
 
 /* From the low points of a look over the gamut that promise something; where
  * colours do not add the gamut may be folded, and all are tried. */
-static void search_scouted(ef__search *search, ef__minima *out) {
+static void search_scouted(trail *t) {
+  ef__search *const search = t->search;
+  const ef__minima *const out = t->minima;
   ef__start start[EF__MAX_SCOUTED];
   const bool affine = search->mixing->affine;
   const double limit =
@@ -153,10 +173,12 @@ static void search_scouted(ef__search *search, ef__minima *out) {
   const size_t n = ef__scout_starts(search->mixing->scout, search->metric,
                                     search->target, limit, start);
   for (size_t i = 0; i < n; ++i)
-    descend_from(search, start[i].amount, out);
+    descend_from(t, start[i].amount);
 }
 
-static void search_decoys(ef__search *search, ef__minima *out) {
+static void search_decoys(trail *t) {
+  ef__search *const search = t->search;
+  const ef__minima *const out = t->minima;
   double start[EF__MAX_DECOYS][3], amount[3];
   const size_t n =
       search->metric->decoys(search->metric, search->target, start);
@@ -170,7 +192,7 @@ static void search_decoys(ef__search *search, ef__minima *out) {
     const double difference = sqrt(ef__search_value(search, amount));
     if (difference > sqrt(out->at[0].square) + DEPTH_NEAR_AXIS)
       continue;
-    descend_from(search, amount, out);
+    descend_from(t, amount);
   }
 }
 
@@ -203,22 +225,23 @@ void ef__nearest(ef__search *search, const double exact[3], ef__minima *out) {
   leave_box(search, exact, left);
   const bool left_is_better =
       ef__search_value(search, left) < ef__search_value(search, clipped);
+  trail t = {.search = search, .minima = out};
   out->n = 0;
-  descend_from(search, left_is_better ? left : clipped, out);
+  descend_from(&t, left_is_better ? left : clipped);
   /* The law test finds other basins only beyond some such difference. */
   if (search->mixing->affine && out->at[0].square < 49)
     return;
-  if (!search->mixing->affine) {
-    descend_from(search, left_is_better ? clipped : left, out);
-  }
-  search_scouted(search, out);
+  if (!search->mixing->affine)
+    descend_from(&t, left_is_better ? clipped : left);
+  search_scouted(&t);
   if (search->metric->decoys != NULL)
-    search_decoys(search, out);
+    search_decoys(&t);
   if (search->mixing->has_kinks)
     search_table(search, out);
 }
 
 void ef__nearest_from(ef__search *search, const double amount[3],
                       ef__minima *minima) {
-  descend_from(search, amount, minima);
+  trail t = {.search = search, .minima = minima};
+  descend_from(&t, amount);
 }
