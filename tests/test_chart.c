@@ -238,6 +238,86 @@ static void test_locus_lands(void **state) {
   free(svg);
 }
 
+/* ---- Rows -------------------------------------------------------------- */
+
+/* Names from the top, marks and bars beside them; a limit that is infinite runs
+ * to the end of the field, and a row without a value keeps its name. */
+static void test_rows_have_names(void **state) {
+  (void)state;
+  enum { N = 4 };
+  static const char *const row[N] = {
+      "anna", "ben",
+      "a name that is far too long for the room that names may take beside it",
+      "none"};
+  static const double x[N] = {1.5, 2.5, 3.0, NOT_A_NUMBER};
+  static const double y[N] = {0, 1, 2, 3};
+  static const double low[N] = {1.0, 2.25, -INFINITE, NOT_A_NUMBER};
+  static const double high[N] = {2.0, INFINITE, 3.5, NOT_A_NUMBER};
+  ef_chart_settings settings = ef_chart_settings_default();
+  settings.x_title = "JND";
+  settings.n_rows = N;
+  settings.row = row;
+  settings.x_from = 0.5;
+  settings.x_to = 4.5;
+  ef_chart *chart = ef_chart_new(&settings, NULL);
+  assert_non_null(chart);
+  ef_series s = ef_series_default(EF_SERIES_SPANS);
+  s.name = "people";
+  s.n = N;
+  s.x = x;
+  s.y = y;
+  s.low = low;
+  s.high = high;
+  add(chart, &s);
+  ef_chart_report report;
+  char *svg = draw(chart, "a.svg", &report);
+  assert_int_equal(report.n_drawn, 3);
+  const scale scale_x = scale_of(svg, 0);
+  /* Heights of the ticks beside which the names stand. */
+  double height[N];
+  const char *at = strstr(group(svg, "y axis"), "/>");
+  for (size_t i = 0; i < N; ++i) {
+    at = strstr(at, " d=\"M") + 5;
+    number(&at);
+    height[i] = number(&at);
+    at = strchr(strstr(at, "<text"), '>') + 1;
+    if (i == 2) {
+      assert_memory_equal(at, "a name that is far", 18);
+      const char *end = strchr(at, '<');
+      assert_memory_equal(end - 3, "\xE2\x80\xA6", 3);
+    } else {
+      assert_memory_equal(at, row[i], strlen(row[i]));
+    }
+    assert_near(height[i] - height[0], 22.0 * (double)i, 1e-9);
+  }
+  /* Bars from low to high, caps at the ends that are known. */
+  const double end[3][2] = {{1.0, 2.0}, {2.25, 4.5}, {0.5, 3.5}};
+  const size_t n_caps[3] = {2, 1, 1};
+  at = group(svg, "people");
+  for (size_t i = 0; i < 3; ++i) {
+    at = strstr(at, " d=\"M") + 5;
+    const char *stop = strchr(at, '"');
+    assert_near(value_at(scale_x, number(&at)), end[i][0], 1e-4);
+    assert_near(number(&at), height[i], 1e-3);
+    at = strpbrk(at, "HL");
+    assert_near(value_at(scale_x, number(&at)), end[i][1], 1e-4);
+    size_t n = 0;
+    for (const char *k = at; k < stop; ++k)
+      n += *k == 'M';
+    assert_int_equal(n, n_caps[i]);
+    at = strstr(stop, "<path"); /* the mark is passed over */
+    if (at == NULL)
+      break;
+    at = strstr(at, "/>");
+  }
+  free(svg);
+
+  settings.row = NULL;
+  ef_error error = {0};
+  assert_null(ef_chart_new(&settings, &error));
+  assert_error(&error, EF_INVALID, "4 rows of a chart have no names");
+}
+
 /* ---- Axes -------------------------------------------------------------- */
 
 static void test_ticks_are_readable(void **state) {
@@ -293,10 +373,10 @@ static void test_labels_never_collide(void **state) {
       const ef__point at = {gen_between(&g, 0.0, field.right),
                             gen_between(&g, 0.0, field.bottom)};
       label[i] = (ef__chart_label){.text = "name",
-                             .at = at,
-                             .outward = {gen_normal(&g), gen_normal(&g)},
-                             .gap_px = 5.0,
-                             .width_px = gen_between(&g, 10.0, 120.0)};
+                                   .at = at,
+                                   .outward = {gen_normal(&g), gen_normal(&g)},
+                                   .gap_px = 5.0,
+                                   .width_px = gen_between(&g, 10.0, 120.0)};
       block[i] = (ef__area){at.x - 4, at.y - 4, at.x + 4, at.y + 4};
     }
     ef__place(N, label, 14.0, field, N, block, 0, NULL);
@@ -321,10 +401,10 @@ static void test_labels_keep_off_lines(void **state) {
   (void)state;
   const ef__area field = {0, 0, 400, 300};
   ef__chart_label label = {.text = "name",
-                     .at = {200, 150},
-                     .outward = {1, 0},
-                     .gap_px = 5,
-                     .width_px = 60};
+                           .at = {200, 150},
+                           .outward = {1, 0},
+                           .gap_px = 5,
+                           .width_px = 60};
   const ef__segment line = {{230, 0}, {230, 300}};
   ef__place(1, &label, 14.0, field, 0, NULL, 1, &line);
   assert_true(label.placed);
@@ -679,7 +759,10 @@ static void test_odd_ranges(void **state) {
 static bool try_chart(void *context) {
   (void)context;
   ef_chart_settings settings = ef_chart_settings_default();
+  static const char *const row[] = {NULL, "upper", "lower", "lowest"};
   settings.title = "title";
+  settings.n_rows = 4;
+  settings.row = row;
   ef_chart *chart = ef_chart_new(&settings, NULL);
   if (chart == NULL)
     return false;
@@ -813,6 +896,7 @@ int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(test_macadam_ellipses_land),
       cmocka_unit_test(test_locus_lands),
+      cmocka_unit_test(test_rows_have_names),
       cmocka_unit_test(test_ticks_are_readable),
       cmocka_unit_test(test_labels_never_collide),
       cmocka_unit_test(test_labels_keep_off_lines),

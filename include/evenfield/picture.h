@@ -71,6 +71,8 @@ typedef enum ef_series_kind {
   EF_SERIES_PAIRS,     /**< an open mark, joined to a filled one at to_x, to_y */
   EF_SERIES_ELLIPSES,  /**< centres, see below */
   EF_SERIES_INTERVALS, /**< a mark with a bar from `low` to `high` in y */
+  EF_SERIES_SPANS,     /**< the same in x; where a limit is infinite the bar
+                            runs to the end of the field, without a cap */
   EF_SERIES_CLOUD      /**< many small dots without labels */
 } ef_series_kind;
 
@@ -90,7 +92,7 @@ typedef struct ef_series {
   size_t n;
   const double *x, *y;
   const double *to_x, *to_y; /**< of pairs */
-  const double *low, *high;  /**< of intervals */
+  const double *low, *high;  /**< of intervals and spans */
   /** Of ellipses: half axes in units of the axes (x and y alike), the angle of
    * the major one from x, and how many times as large they are drawn, which the
    * legend says. */
@@ -114,6 +116,10 @@ typedef struct ef_chart_settings {
   double x_from, x_to;  /**< ends of the axes; NaN: what the series need */
   double y_from, y_to;
   size_t width_px;      /**< 240 to 4000; the height follows */
+  /** Names in the place of a scale in y: row i from the top is at y = i, and
+   * y_from, y_to and equal_scales do not count. 0: a scale. */
+  size_t n_rows;
+  const char *const *row;
   bool overwrite;
 } ef_chart_settings;
 /** 720 wide, own scales, ends by the series. */
@@ -121,7 +127,7 @@ EF_API ef_chart_settings ef_chart_settings_default(void);
 
 /** What a drawn chart could not show; it says so itself at its foot. */
 typedef struct ef_chart_report {
-  size_t n_points, n_drawn;  /**< of clouds, marks, pairs, intervals (frames
+  size_t n_points, n_drawn;  /**< of clouds, marks, pairs, intervals, spans (frames
                                   apart): the rest is thinned where points lie
                                   on top of each other */
   size_t n_labels, n_labelled;

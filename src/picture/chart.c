@@ -90,6 +90,11 @@ ef_chart *ef_chart_new(const ef_chart_settings *settings, ef_error *error) {
                   settings->width_px);
     return NULL;
   }
+  if (settings->n_rows > 0 && settings->row == NULL) {
+    ef__error_set(error, EF_INVALID, "%zu rows of a chart have no names",
+                  settings->n_rows);
+    return NULL;
+  }
   ef_chart *chart = ef__allocate_zeroed(1, sizeof *chart);
   if (chart == NULL) {
     ef__error_memory(error, "a chart");
@@ -103,6 +108,7 @@ ef_chart *ef_chart_new(const ef_chart_settings *settings, ef_error *error) {
   s->x_title = copy_text(settings->x_title, &complete);
   s->y_title = copy_text(settings->y_title, &complete);
   s->description = copy_text(settings->description, &complete);
+  s->row = copy_labels(settings->row, settings->n_rows, &complete);
   if (complete)
     return chart;
   ef_chart_free(chart);
@@ -118,6 +124,9 @@ void ef_chart_free(ef_chart *chart) {
                                s->description};
   for (size_t i = 0; i < sizeof texts / sizeof *texts; ++i)
     drop(texts[i]);
+  for (size_t i = 0; s->row != NULL && i < s->n_rows; ++i)
+    drop(s->row[i]);
+  drop(s->row);
   for (size_t i = 0; i < chart->n; ++i)
     drop_series(&chart->series[i]);
   free(chart->series);
@@ -136,6 +145,7 @@ static bool is_complete(const ef_series *s) {
     return s->semi_major != NULL && s->semi_minor != NULL &&
            s->angle_deg != NULL && s->magnification > 0.0;
   case EF_SERIES_INTERVALS:
+  case EF_SERIES_SPANS:
     return s->low != NULL && s->high != NULL;
   default:
     return true;

@@ -20,6 +20,10 @@
 /* Least distance of ticks. */
 #define X_TICKS_PX 64.0
 #define Y_TICKS_PX 32.0
+/* Rows with names: their distance, and the most that names take of the page. */
+#define ROW_PX 22.0
+#define MOST_NAME 0.38
+#define ROW_TEXT 512
 /* Height of the field over its width where scales differ, and its bounds where
  * they are equal. */
 #define ASPECT 0.62
@@ -79,9 +83,53 @@ static double widest_tick(const ef__axis *axis) {
   return widest;
 }
 
+static size_t row_count(const ef__sheet *s) {
+  return s->chart->settings.n_rows;
+}
+
+/* Name of a row, cut to what it may take. */
+static void row_text(const ef__sheet *s, size_t i, char text[ROW_TEXT]) {
+  static const char more[] = "\xE2\x80\xA6";
+  const char *name = s->chart->settings.row[i];
+  const double room = MOST_NAME * s->page->width_px;
+  text[0] = '\0';
+  if (name == NULL)
+    return;
+  size_t kept = strlen(name);
+  if (ef__text_width(name, TICK_PX, false) > room || kept >= ROW_TEXT) {
+    kept = ef__text_line(name, TICK_PX, false, room - TICK_PX);
+    if (kept > ROW_TEXT - sizeof more)
+      kept = ROW_TEXT - sizeof more;
+    while (kept > 0 && ((unsigned char)name[kept] & 0xC0u) == 0x80u)
+      --kept;
+  }
+  memcpy(text, name, kept);
+  strcpy(text + kept, name[kept] == '\0' ? "" : more);
+}
+
+static void plan_rows(ef__sheet *s, double top, const double from[2],
+                      const double to[2]) {
+  double widest = 0.0;
+  for (size_t i = 0; i < row_count(s); ++i) {
+    char text[ROW_TEXT];
+    row_text(s, i, text);
+    widest = fmax(widest, ef__text_width(text, TICK_PX, false));
+  }
+  const double left = PAD + widest + TICK_LENGTH + 5.0;
+  const double right = s->page->width_px - PAD - 8.0;
+  const double height = ROW_PX * (double)row_count(s);
+  s->field = (ef__area){left, top, right, top + height};
+  s->x = ef__axis_of(from[0], to[0], right - left, X_TICKS_PX);
+  s->y = (ef__axis){.from = from[1], .to = to[1], .n = row_count(s)};
+}
+
 /* Chooses field and axes below `top`; the y axis first, since the room that
  * its ticks take decides how wide the field is. */
 static void plan_field(ef__sheet *s, double top, double from[2], double to[2]) {
+  if (row_count(s) > 0) {
+    plan_rows(s, top, from, to);
+    return;
+  }
   const double right = s->page->width_px - PAD - 8.0;
   double left = PAD + 40.0;
   for (int round = 0; round < 2; ++round) {
@@ -106,16 +154,24 @@ static void plan_field(ef__sheet *s, double top, double from[2], double to[2]) {
   }
 }
 
+/* Value and text of a tick of the y axis: a number, or the name of a row. */
+static double y_tick(const ef__sheet *s, size_t i, char text[ROW_TEXT]) {
+  if (row_count(s) == 0)
+    return ef__axis_tick(&s->y, i, text);
+  row_text(s, i, text);
+  return (double)i;
+}
+
 /* A small cross where ticks meet: the eye can follow them, and nothing is
  * ruled over the points. */
 static void draw_crosses(ef__sheet *s) {
   const double arm = 2.5;
-  char text[EF__TICK_TEXT];
+  char text[ROW_TEXT];
   ef__page_group(s->page, "");
   for (size_t i = 0; i < s->x.n; ++i) {
     for (size_t j = 0; j < s->y.n; ++j) {
       const ef__point at = ef__sheet_at(s, ef__axis_tick(&s->x, i, text),
-                                        ef__axis_tick(&s->y, j, text));
+                                        y_tick(s, j, text));
       ef__page_move(s->page, at.x - arm, at.y);
       ef__page_line(s->page, at.x + arm, at.y);
       ef__page_move(s->page, at.x, at.y - arm);
@@ -159,8 +215,8 @@ static void draw_y_axis(const ef__sheet *s) {
   ef__page_line(s->page, x, s->field.bottom);
   ef__page_paint(s->page, axis_style);
   for (size_t i = 0; i < s->y.n; ++i) {
-    char text[EF__TICK_TEXT];
-    const double y = ef__sheet_at(s, 0.0, ef__axis_tick(&s->y, i, text)).y;
+    char text[ROW_TEXT];
+    const double y = ef__sheet_at(s, 0.0, y_tick(s, i, text)).y;
     ef__page_move(s->page, x, y);
     ef__page_line(s->page, x - TICK_LENGTH, y);
     ef__page_paint(s->page, axis_style);

@@ -31,6 +31,9 @@ static void add_point(reach *r, const ef_series *s, size_t i) {
   } else if (s->kind == EF_SERIES_INTERVALS) {
     add(r, x, s->low[i]);
     add(r, x, s->high[i]);
+  } else if (s->kind == EF_SERIES_SPANS) {
+    add(r, s->low[i], y);
+    add(r, s->high[i], y);
   } else if (s->kind == EF_SERIES_ELLIPSES) {
     const double turn = s->angle_deg[i] * acos(-1.0) / 180.0;
     const double a = s->magnification * s->semi_major[i];
@@ -70,7 +73,10 @@ ef_status ef__chart_range(const ef_chart *chart, double from[2], double to[2],
   const ef_chart_settings *s = &chart->settings;
   widen(&r.from[0], &r.to[0], s->x_from, s->x_to);
   widen(&r.from[1], &r.to[1], s->y_from, s->y_to);
-  for (size_t i = 0; i < 2; ++i) {
+  /* Rows count from the top, and each has half a row above and below. */
+  from[1] = (double)s->n_rows - 0.5;
+  to[1] = -0.5;
+  for (size_t i = 0; i < (s->n_rows > 0 ? 1 : 2); ++i) {
     if (!(r.to[i] > r.from[i]) || !isfinite(r.to[i] - r.from[i])) {
       return ef__error_set(error, EF_INVALID,
                            "an axis of the chart cannot reach from %g to %g",

@@ -233,6 +233,32 @@ static bool draw_pair(ef__sheet *sheet, const ef_series *s, size_t i,
   return complete;
 }
 
+/* A bar along x whose ends at the field have no caps: it goes on there. */
+static bool draw_span(ef__sheet *sheet, const ef_series *s, size_t i,
+                      ef__point at) {
+  const ef__area *field = &sheet->field;
+  const double x[2] = {ef__sheet_at(sheet, s->low[i], 0.0).x,
+                       ef__sheet_at(sheet, s->high[i], 0.0).x};
+  const bool is_bar = !isnan(x[0]) && !isnan(x[1]);
+  const ef__point from = {fmax(x[0], field->left), at.y};
+  const ef__point to = {fmin(x[1], field->right), at.y};
+  if (is_bar) {
+    ef__page_move(sheet->page, from.x, at.y);
+    ef__page_line(sheet->page, to.x, at.y);
+    for (size_t k = 0; k < 2; ++k) {
+      if (x[k] < field->left || x[k] > field->right)
+        continue;
+      ef__page_move(sheet->page, x[k], at.y - 4.0);
+      ef__page_line(sheet->page, x[k], at.y + 4.0);
+    }
+    ef__page_paint(sheet->page, (ef__style){.stroke = ink_of(s),
+                                            .width_px = 1.4,
+                                            .fill = EF__INK_NONE});
+  }
+  ef__mark(sheet->page, s->look, at.x, at.y, MARK_PX, false);
+  return !is_bar || add_segment(sheet, from, to);
+}
+
 static bool draw_interval(ef__sheet *sheet, const ef_series *s, size_t i,
                           ef__point at) {
   const ef__point low = ef__sheet_at(sheet, s->x[i], s->low[i]);
@@ -261,6 +287,8 @@ static bool draw_one(ef__sheet *sheet, const ef_series *s, size_t i,
     return draw_pair(sheet, s, i, at);
   if (s->kind == EF_SERIES_INTERVALS)
     return draw_interval(sheet, s, i, at);
+  if (s->kind == EF_SERIES_SPANS)
+    return draw_span(sheet, s, i, at);
   ef__mark(sheet->page, s->look, at.x, at.y, MARK_PX, false);
   return true;
 }
@@ -351,6 +379,13 @@ void ef__series_sample(ef__page *page, const ef_series *s, double x, double y) {
   case EF_SERIES_INTERVALS:
     ef__page_move(page, x, y - 7.0);
     ef__page_line(page, x, y + 7.0);
+    ef__page_paint(page, (ef__style){.stroke = ink_of(s),
+                                     .width_px = 1.4,
+                                     .fill = EF__INK_NONE});
+    break;
+  case EF_SERIES_SPANS:
+    ef__page_move(page, x - half, y);
+    ef__page_line(page, x + half, y);
     ef__page_paint(page, (ef__style){.stroke = ink_of(s),
                                      .width_px = 1.4,
                                      .fill = EF__INK_NONE});
