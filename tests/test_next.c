@@ -77,6 +77,14 @@ static void by_hand(void **state) {
   for (size_t i = 0; i < 3; ++i)
     now -= threshold[i] * log(threshold[i]);
   assert_near(out.entropy_bits, now / log(2), 1e-12);
+  /* Cells of half, one and half a unit. */
+  double at[3], density[3];
+  assert_int_equal(
+      ef_next_posterior(&so_far, 2, level, &s, at, density, &error), EF_OK);
+  for (size_t i = 0; i < 3; ++i) {
+    assert_near(at[i], 1 + (double)i, 1e-12);
+    assert_near(density[i], threshold[i] / (i == 1 ? 1 : 0.5), 1e-12);
+  }
   assert_near(out.threshold.value,
               1 * threshold[0] + 2 * threshold[1] + 3 * threshold[2], 1e-12);
   for (size_t l = 0; l < 2; ++l) {
@@ -133,6 +141,35 @@ static void nothing_is_remembered(void **state) {
   assert_int_equal(one.choice, two.choice);
   assert_same_bits(gain_a, gain_b, LEVELS);
   assert_same_bits(&one.threshold.value, &two.threshold.value, 4);
+}
+
+/* On a logarithmic axis, where the grid closes in, the density still has all of
+ * the posterior, and its mean is the estimate. */
+static void posterior_is_the_estimates(void **state) {
+  (void)state;
+  const ef_next_settings s = ef_next_settings_default(EF_TASK_2IFC);
+  const answers a = {4, {0.9, 1.8, 1.3, 3.5}, {60, 50, 70, 40}, {36, 44, 51, 40}};
+  const ef_responses responses = {a.n, a.level, a.shown, a.positive};
+  const ef_next known = choose(&a, &s, NULL);
+  enum { N = 81 };
+  double at[N], density[N], whole = 0, mean = 0;
+  assert_int_equal(s.n_thresholds, N);
+  assert_int_equal(ef_next_posterior(&responses, LEVELS, hand, &s, at, density,
+                                     NULL),
+                   EF_OK);
+  for (size_t i = 0; i < N; ++i) {
+    const double left = at[i > 0 ? i - 1 : i], right = at[i + 1 < N ? i + 1 : i];
+    whole += density[i] * 0.5 * (right - left);
+    mean += at[i] * density[i] * 0.5 * (right - left);
+    assert_true(density[i] >= 0 && right > left);
+  }
+  assert_near(whole, 1, 1e-12);
+  assert_near(mean, known.threshold.value, 1e-12);
+  ef_error error = {0};
+  const double wrong = (double)NAN;
+  assert_int_equal(
+      ef_next_posterior(&responses, 1, &wrong, &s, at, density, &error),
+      EF_MALFORMED);
 }
 
 /* Simulated observers: the interval holds the truth as often as it says, when
@@ -344,6 +381,7 @@ int main(void) {
       cmocka_unit_test(by_hand),
       cmocka_unit_test(nothing_known_begins_inside),
       cmocka_unit_test(nothing_is_remembered),
+      cmocka_unit_test(posterior_is_the_estimates),
       cmocka_unit_test(observers_found),
       cmocka_unit_test(precision_in_jnd),
       cmocka_unit_test(threshold_off_the_grid),

@@ -391,6 +391,17 @@ EF_API ef_status ef_next_choose(const ef_responses *answers, size_t n_levels,
                                 const ef_next_settings *settings, ef_next *out,
                                 double *gain, ef_error *error);
 
+/** What ef_next_choose knows of the threshold, to be drawn: `threshold`, as many
+ * as the settings' n_thresholds, rising, and how likely each is, `density` per
+ * unit of the level. It is taken as even between the midpoints of neighbours;
+ * all of it is 1. NaN for a single threshold. Notes are left to
+ * ef_next_choose. */
+EF_API ef_status ef_next_posterior(const ef_responses *answers, size_t n_levels,
+                                   const double *level,
+                                   const ef_next_settings *settings,
+                                   double *threshold, double *density,
+                                   ef_error *error);
+
 /* ---- Plan -------------------------------------------------------------- */
 
 /** An up-down rule (Levitt, J. Acoust. Soc. Am. 49 (1971) 467): the level falls

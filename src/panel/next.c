@@ -228,7 +228,8 @@ static double pair_weight(const ef__posterior *p, size_t pair) {
   return sum;
 }
 
-static ef_estimate know_threshold(const known *k) {
+/* Thresholds as levels, with their weights. */
+static void weigh_thresholds(const known *k) {
   const ef__grid *const g = &k->posterior->grid;
   for (size_t i = 0; i < g->n_thresholds; ++i) {
     double sum = 0;
@@ -237,7 +238,26 @@ static ef_estimate know_threshold(const known *k) {
     k->scratch[i] =
         (weighed){ef__axis_level(k->settings->axis, g->threshold[i]), sum};
   }
-  return summarise(k->scratch, g->n_thresholds, k->settings->level);
+}
+
+static ef_estimate know_threshold(const known *k) {
+  weigh_thresholds(k);
+  return summarise(k->scratch, k->posterior->grid.n_thresholds,
+                   k->settings->level);
+}
+
+/* Each weight lies between the midpoints to the neighbours, as in the
+ * quantiles. */
+static void know_density(const known *k, double *threshold, double *density) {
+  const size_t n = k->posterior->grid.n_thresholds;
+  weigh_thresholds(k);
+  for (size_t i = 0; i < n; ++i) {
+    const weighed *const w = &k->scratch[i];
+    const double left = i > 0 ? w[-1].value : w->value;
+    const double right = i + 1 < n ? w[1].value : w->value;
+    threshold[i] = w->value;
+    density[i] = n > 1 ? w->weight / (0.5 * (right - left)) : (double)NAN;
+  }
 }
 
 static ef_estimate know_width(const known *k) {
@@ -339,10 +359,17 @@ static double cell_bits(const ef__grid *g, ef_next_aim aim) {
   return bits;
 }
 
+/* What is wanted of the posterior; NULL for what is not. */
+typedef struct wanted {
+  ef_next *next;
+  double *gain;
+  double *threshold, *density;
+} wanted;
+
 static ef_status with_posterior(const ef__data *data, const double *level,
                                 const ef_next_settings *s,
                                 const ef__reading *reading, ef__posterior *p,
-                                ef_next *out, double *gain, ef_error *error) {
+                                const wanted *out, ef_error *error) {
   double *share;
   known k = {.posterior = p, .settings = s, .reading = *reading};
   const size_t n_pairs = p->grid.n_thresholds * p->grid.n_widths;
@@ -353,22 +380,28 @@ static ef_status with_posterior(const ef__data *data, const double *level,
     return ef__error_memory(error, "the grid");
   const double prior_bits = cell_bits(&p->grid, s->aim);
   weigh(data, p, share);
-  out->edge_share = know_edge(p);
+  const double edge_share = know_edge(p);
   /* With many answers the posterior is finer than the grid. */
   for (int pass = 0; pass < 4 && ef__posterior_narrow(p, share); ++pass)
     weigh(data, p, share);
+  if (out->density != NULL)
+    know_density(&k, out->threshold, out->density);
   for (size_t i = 0; i < p->n_levels; ++i) {
     const bool is_blank = s->axis == EF_AXIS_LOG && level[i] == 0;
     ef__posterior_share(p, is_blank ? 0 : ef__axis_value(s->axis, level[i]),
                         is_blank, p->share + i * p->n_places);
   }
-  choose(p, s->aim, out, gain);
-  out->entropy_bits += cell_bits(&p->grid, s->aim) - prior_bits;
-  out->threshold = know_threshold(&k);
-  out->jnd = know_jnd(&k);
-  out->width = know_width(&k);
-  out->lapse = know_lapse(p);
-  judge(s, out);
+  if (out->next != NULL) {
+    ef_next *const next = out->next;
+    choose(p, s->aim, next, out->gain);
+    next->entropy_bits += cell_bits(&p->grid, s->aim) - prior_bits;
+    next->edge_share = edge_share;
+    next->threshold = know_threshold(&k);
+    next->jnd = know_jnd(&k);
+    next->width = know_width(&k);
+    next->lapse = know_lapse(p);
+    judge(s, next);
+  }
   free(block);
   return EF_OK;
 }
@@ -389,9 +422,9 @@ static ef_status model_of(const ef_next_settings *s, const ef__data *data,
   return ef__likelihood_setup(&fit, data, out, error);
 }
 
-ef_status ef_next_choose(const ef_responses *answers, size_t n_levels,
-                         const double *level, const ef_next_settings *s,
-                         ef_next *out, double *gain, ef_error *error) {
+static ef_status look(const ef_responses *answers, size_t n_levels,
+                      const double *level, const ef_next_settings *s,
+                      const wanted *out, ef_error *error) {
   ef__gsl_ready();
   ef_status status = check_settings(s, error);
   for (size_t i = 0; i < n_levels && status == EF_OK; ++i)
@@ -422,12 +455,27 @@ ef_status ef_next_choose(const ef_responses *answers, size_t n_levels,
                                &grid_block, error);
   }
   if (status == EF_OK) {
-    out->n_trials = 0;
-    for (size_t i = 0; i < answers->n_rows; ++i)
-      out->n_trials += answers->shown[i];
-    status = with_posterior(&data, level, s, &reading, &p, out, gain, error);
+    status = with_posterior(&data, level, s, &reading, &p, out, error);
   }
   free(answers_block);
   free(grid_block);
   return status;
+}
+
+ef_status ef_next_choose(const ef_responses *answers, size_t n_levels,
+                         const double *level, const ef_next_settings *s,
+                         ef_next *out, double *gain, ef_error *error) {
+  out->n_trials = 0;
+  for (size_t i = 0; i < answers->n_rows; ++i)
+    out->n_trials += answers->shown[i];
+  const wanted all = {.next = out, .gain = gain};
+  return look(answers, n_levels, level, s, &all, error);
+}
+
+ef_status ef_next_posterior(const ef_responses *answers, size_t n_levels,
+                            const double *level, const ef_next_settings *s,
+                            double *threshold, double *density,
+                            ef_error *error) {
+  const wanted some = {.threshold = threshold, .density = density};
+  return look(answers, n_levels, level, s, &some, error);
 }
