@@ -77,13 +77,13 @@ static void by_hand(void **state) {
   for (size_t i = 0; i < 3; ++i)
     now -= threshold[i] * log(threshold[i]);
   assert_near(out.entropy_bits, now / log(2), 1e-12);
-  /* Cells of half, one and half a unit. */
+  /* Cells of one unit. */
   double at[3], density[3];
   assert_int_equal(
       ef_next_posterior(&so_far, 2, level, &s, at, density, &error), EF_OK);
   for (size_t i = 0; i < 3; ++i) {
     assert_near(at[i], 1 + (double)i, 1e-12);
-    assert_near(density[i], threshold[i] / (i == 1 ? 1 : 0.5), 1e-12);
+    assert_near(density[i], threshold[i], 1e-12);
   }
   assert_near(out.threshold.value,
               1 * threshold[0] + 2 * threshold[1] + 3 * threshold[2], 1e-12);
@@ -148,20 +148,23 @@ static void nothing_is_remembered(void **state) {
 static void posterior_is_the_estimates(void **state) {
   (void)state;
   const ef_next_settings s = ef_next_settings_default(EF_TASK_2IFC);
-  const answers a = {4, {0.9, 1.8, 1.3, 3.5}, {60, 50, 70, 40}, {36, 44, 51, 40}};
+  const answers a = {
+      4, {0.9, 1.8, 1.3, 3.5}, {60, 50, 70, 40}, {36, 44, 51, 40}};
   const ef_responses responses = {a.n, a.level, a.shown, a.positive};
   const ef_next known = choose(&a, &s, NULL);
   enum { N = 81 };
   double at[N], density[N], whole = 0, mean = 0;
   assert_int_equal(s.n_thresholds, N);
-  assert_int_equal(ef_next_posterior(&responses, LEVELS, hand, &s, at, density,
-                                     NULL),
-                   EF_OK);
+  assert_int_equal(
+      ef_next_posterior(&responses, LEVELS, hand, &s, at, density, NULL),
+      EF_OK);
+  const double half = sqrt(at[1] / at[0]); /* a step, as a factor */
   for (size_t i = 0; i < N; ++i) {
-    const double left = at[i > 0 ? i - 1 : i], right = at[i + 1 < N ? i + 1 : i];
-    whole += density[i] * 0.5 * (right - left);
-    mean += at[i] * density[i] * 0.5 * (right - left);
-    assert_true(density[i] >= 0 && right > left);
+    const double weight = density[i] * at[i] * (half - 1 / half);
+    whole += weight;
+    mean += at[i] * weight;
+    assert_true(weight >= 0);
+    assert_near_relative(at[i], at[0] * pow(half, 2.0 * (double)i), 1e-12);
   }
   assert_near(whole, 1, 1e-12);
   assert_near(mean, known.threshold.value, 1e-12);

@@ -392,10 +392,10 @@ EF_API ef_status ef_next_choose(const ef_responses *answers, size_t n_levels,
                                 double *gain, ef_error *error);
 
 /** What ef_next_choose knows of the threshold, to be drawn: `threshold`, as many
- * as the settings' n_thresholds, rising, and how likely each is, `density` per
- * unit of the level. It is taken as even between the midpoints of neighbours;
- * all of it is 1. NaN for a single threshold. Notes are left to
- * ef_next_choose. */
+ * as the settings' n_thresholds, rising and equally spread in t, and how likely
+ * each is: `density` per unit of the level, which times the cells of half a step
+ * to either side in t adds up to 1. NaN for a single threshold. Notes are left
+ * to ef_next_choose. */
 EF_API ef_status ef_next_posterior(const ef_responses *answers, size_t n_levels,
                                    const double *level,
                                    const ef_next_settings *settings,

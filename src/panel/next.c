@@ -246,17 +246,19 @@ static ef_estimate know_threshold(const known *k) {
                    k->settings->level);
 }
 
-/* Each weight lies between the midpoints to the neighbours, as in the
- * quantiles. */
+/* Each weight belongs to a cell of half a step to either side. */
 static void know_density(const known *k, double *threshold, double *density) {
-  const size_t n = k->posterior->grid.n_thresholds;
+  const ef__grid *const g = &k->posterior->grid;
+  const ef_axis axis = k->settings->axis;
+  const size_t n = g->n_thresholds;
+  const double half =
+      n > 1 ? 0.5 * (g->threshold[1] - g->threshold[0]) : (double)NAN;
   weigh_thresholds(k);
   for (size_t i = 0; i < n; ++i) {
-    const weighed *const w = &k->scratch[i];
-    const double left = i > 0 ? w[-1].value : w->value;
-    const double right = i + 1 < n ? w[1].value : w->value;
-    threshold[i] = w->value;
-    density[i] = n > 1 ? w->weight / (0.5 * (right - left)) : (double)NAN;
+    threshold[i] = k->scratch[i].value;
+    density[i] =
+        k->scratch[i].weight / (ef__axis_level(axis, g->threshold[i] + half) -
+                                ef__axis_level(axis, g->threshold[i] - half));
   }
 }
 

@@ -104,7 +104,14 @@ ef_check "ellipses as large as asked" $? 0
 ef_chart spectra isolate
 ef_chart lm isolate --plane lm
 ef_chart opponent isolate --plane opponent --format json
-ef_chart panel panel fit
+ef_chart panel panel fit --samples 100
+ef_chart calibrate panel calibrate --samples 20
+ef_chart next panel next demo:panel-responses --task 2ifc
+ef_chart plan panel plan --expected-jnd 0.9 --samples 40 --precision 0.3
+ef_chart power panel plan --expected-jnd 0.9 --samples 40 --precision 0.3 \
+  --other-jnd 1.3
+grep -q 'By adaptive levels: [0-9]* at 40' power.svg
+ef_check "plan: the chart says its figures" $? 0
 for plane in uv xy ab lc; do
   ef_chart describe-$plane describe demo:livery --plane $plane
 done
@@ -176,12 +183,19 @@ ef_report compare compare
 ef_report ellipse ellipse demo:signal-colours
 ef_report one-ellipse ellipse --at lab:60,10,20 --space cone
 ef_report isolate isolate
-ef_report panel panel fit
+ef_report panel panel fit --samples 100
+ef_report calibrate panel calibrate --samples 20
+ef_report next panel next demo:panel-responses --task 2ifc
+ef_report plan panel plan --expected-jnd 0.9 --samples 40 --precision 0.3
 ef_check "report: input and digest" \
   "$(sed -n 's/.*t.csv, SHA-256 \([0-9a-f]*\).*/\1/p' match.html)" \
   "$(sha256sum t.csv | cut -d ' ' -f 1)"
 grep -q '<dt>Seed</dt>' people.html
 ef_check "report: seed" $? 0
+for name in panel calibrate plan; do
+  grep -q '<dt>Seed</dt>' $name.html
+  ef_check "report of $name: seed" $? 0
+done
 
 # Very many targets: the chart says what it leaves out.
 awk 'BEGIN { print "name,L,a,b"; for (i = 0; i < 20000; ++i)

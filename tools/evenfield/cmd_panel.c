@@ -7,11 +7,14 @@
 #include "diagram.h"
 #include "message.h"
 #include "panel_calibrate.h"
+#include "panel_calibrate_chart.h"
 #include "panel_chart.h"
 #include "panel_fit.h"
 #include "panel_flicker.h"
 #include "panel_next.h"
+#include "panel_next_chart.h"
 #include "panel_plan.h"
+#include "panel_plan_chart.h"
 #include "render_panel_calibrate.h"
 #include "render_panel_fit.h"
 #include "result.h"
@@ -49,8 +52,8 @@ static exit_code check_options(const command_options *o, const char *name,
                                verb v) {
   const use uses[] = {
       {"criterion", o->criterion != NULL, VERB_FIT | VERB_NEXT},
-      {"chart", o->chart != NULL, VERB_FIT},
-      {"report", o->report != NULL, VERB_FIT},
+      {"chart", o->chart != NULL, VERB_ANSWERS},
+      {"report", o->report != NULL, VERB_ANSWERS},
       {"model", o->model >= 0, VERB_FIT | VERB_NEXT},
       {"axis", o->axis >= 0, VERB_FIT | VERB_NEXT},
       {"lapse", !isnan(o->lapse), VERB_ANSWERS},
@@ -78,9 +81,6 @@ static exit_code check_options(const command_options *o, const char *name,
 /* ---- panel fit --------------------------------------------------------- */
 
 static exit_code run_fit(const command_options *o) {
-  const exit_code code = diagram_check_usage(o);
-  if (code != EXIT_DONE)
-    return code;
   message_sink sink = {.quiet = o->quiet};
   const ef_notes notes = message_notes(&sink);
   ef_error error = {0};
@@ -155,6 +155,10 @@ static exit_code run_calibrate(const command_options *o) {
   }
   if (status == EF_OK)
     status = save_jnd(&c, &error);
+  if (status == EF_OK && o->chart != NULL)
+    status = panel_calibration_chart_write(&c, &notes, &error);
+  if (status == EF_OK && o->report != NULL)
+    status = panel_calibration_report_write(&c, &notes, &error);
   if (status == EF_OK)
     status = render_panel_calibrate(&c, output, &error);
   panel_calibration_free(&c);
@@ -180,6 +184,10 @@ static exit_code run_next(const command_options *o) {
     if (output == NULL)
       status = error.status;
   }
+  if (status == EF_OK && o->chart != NULL)
+    status = panel_next_chart_write(&p, &notes, &error);
+  if (status == EF_OK && o->report != NULL)
+    status = panel_next_report_write(&p, &notes, &error);
   if (status == EF_OK)
     status = render_panel_next(&p, output, &error);
   panel_next_free(&p);
@@ -194,6 +202,8 @@ static exit_code run_plan(const command_options *o) {
                          "a published one (evenfield tables metrics), or that "
                          "of a pilot panel");
   }
+  message_sink sink = {.quiet = o->quiet};
+  const ef_notes notes = message_notes(&sink);
   ef_error error = {0};
   panel_plan p;
   ef_output *output = NULL;
@@ -203,6 +213,10 @@ static exit_code run_plan(const command_options *o) {
     if (output == NULL)
       status = error.status;
   }
+  if (status == EF_OK && o->chart != NULL)
+    status = panel_plan_chart_write(&p, &notes, &error);
+  if (status == EF_OK && o->report != NULL)
+    status = panel_plan_report_write(&p, &notes, &error);
   if (status == EF_OK)
     status = render_panel_plan(&p, output, &error);
   return result_close(output, status, &error);
@@ -263,7 +277,9 @@ exit_code command_panel(const command_options *options) {
       return message_usage("too many files: \"%.200s\" is not expected",
                            o->files[1 + verbs[i].most_files]);
     }
-    const exit_code code = check_options(o, verbs[i].name, verbs[i].verb);
+    exit_code code = check_options(o, verbs[i].name, verbs[i].verb);
+    if (code == EXIT_DONE)
+      code = diagram_check_usage(o);
     return code == EXIT_DONE ? verbs[i].run(o) : code;
   }
   return message_usage("panel does not know \"%.100s\": it is fit, "

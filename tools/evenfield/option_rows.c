@@ -551,8 +551,9 @@ static const option_row table[] = {
     {"chart", "FILE", COMMAND_DESCRIBE, TYPE_TEXT, FIELD(chart), 0, 0, NULL,
      "draws where the colours lie: FILE ends in .svg, .pdf or .png"},
     {"chart", "FILE", COMMAND_PANEL, TYPE_TEXT, FIELD(chart), 0, 0, NULL,
-     "of fit: draws the answers and the curve of all observers: FILE ends in "
-     ".svg, .pdf or .png"},
+     "draws the answers and the curve of all observers (fit, calibrate), the "
+     "thresholds that are possible (next), or the precision or power that more "
+     "trials bring (plan): FILE ends in .svg, .pdf or .png"},
     {"plane", "uv|xy|ab|lc|people", COMMAND_MATCH, TYPE_CHOICE, FIELD(plane), 0,
      0, match_planes,
      "the plane of the chart: u', v'; x, y; a*, b*; C*, L*; or, with "

@@ -113,8 +113,7 @@ static ef_status count_pairs(const panel_calibration *c, pair_counts *out,
 static ef_status add_formula(panel_calibration *c, const ef_metric *metric,
                              bool is_asked, pair_counts *p, double *all,
                              const ef_notes *notes, ef_error *error) {
-  const ef_status status =
-      pair_list_differences(&c->pairs, metric, all, error);
+  const ef_status status = pair_list_differences(&c->pairs, metric, all, error);
   double *own = p->difference + c->n_formulas * p->n;
   for (size_t i = 0; i < p->n && status == EF_OK; ++i) {
     own[i] = all[p->pair[i]];
@@ -223,9 +222,9 @@ static ef_status calibrate(panel_calibration *c, ef_error *error) {
   c->each = calloc(c->n_observers, sizeof *c->each);
   if (c->each == NULL)
     return out_of_memory(error);
-  const ef_status status = ef_calibrate(
-      a->n, a->level, a->observer, a->shown, a->positive, c->n_observers,
-      &c->settings, &c->result, c->each, error);
+  const ef_status status =
+      ef_calibrate(a->n, a->level, a->observer, a->shown, a->positive,
+                   c->n_observers, &c->settings, &c->result, c->each, error);
   if (status == EF_INVALID) {
     error->status = EF_UNKNOWN_NAME; /* the task has no JND */
     return error->status;
@@ -252,8 +251,7 @@ static ef_status calibrate(panel_calibration *c, ef_error *error) {
 
 static ef_status check_levels(const panel_calibration *c, const ef_notes *notes,
                               ef_error *error) {
-  const ef_status status =
-      panel_check_levels(&c->answers, EF_AXIS_LOG, error);
+  const ef_status status = panel_check_levels(&c->answers, EF_AXIS_LOG, error);
   if (status == EF_OK) {
     message_note(notes,
                  "%s: levels are taken as differences by %s%s%s; with --pairs "
@@ -275,9 +273,9 @@ ef_status panel_calibration_load(panel_calibration *c,
   c->metric = ef_metric_new(o->metric != NULL ? o->metric : "ciede2000", error);
   if (c->metric == NULL)
     return message_option(error, "metric", "");
-  const answers_need need = {
-      .task = o->task == NULL && c->is_demo ? "2ifc" : o->task,
-      .by_pair = c->pairs_path != NULL};
+  const answers_need need = {.task = o->task == NULL && c->is_demo ? "2ifc"
+                                                                   : o->task,
+                             .by_pair = c->pairs_path != NULL};
   ef_status status =
       answers_read(&c->answers, c->is_demo ? demo_answers : o->files[1], &need,
                    false, notes, error);

@@ -34,7 +34,7 @@ static ef_status add_level(panel_next *p, size_t *room, double level,
 }
 
 static ef_status read_row(panel_next *p, ef_fields *fields,
-                          const char *const *text, size_t line, size_t *room,
+                          const char *const *cell, size_t line, size_t *room,
                           ef_error *error) {
   double level;
   ef_status status = ef_fields_number(fields, 0, &level, error);
@@ -49,14 +49,14 @@ static ef_status read_row(panel_next *p, ef_fields *fields,
     }
   }
   if (p->has_names) {
-    const size_t at = name_list_place(&p->names, text[1]);
+    const size_t at = name_list_place(&p->names, cell[1]);
     if (at == SIZE_MAX)
       return out_of_memory(error);
-    if (at < p->n_levels || text[1][0] == '\0') {
+    if (at < p->n_levels || cell[1][0] == '\0') {
       return ef_fields_fault(fields, 1, error,
                              "found '%.60s', expected a name of its own for "
                              "each level",
-                             text[1]);
+                             cell[1]);
     }
   }
   return add_level(p, room, level, line, error);
@@ -69,18 +69,19 @@ static ef_status read_levels(panel_next *p, const char *path,
   if (fields == NULL)
     return error->status;
   p->has_names = ef_fields_has(fields, 1);
-  const char *const *text;
+  const char *const *cell;
   size_t room = 0, line;
   ef_status status;
   do {
-    status = ef_fields_next(fields, &text, &line, error);
-    if (status != EF_OK || text == NULL)
+    status = ef_fields_next(fields, &cell, &line, error);
+    if (status != EF_OK || cell == NULL)
       break;
-    status = read_row(p, fields, text, line, &room, error);
+    status = read_row(p, fields, cell, line, &room, error);
   } while (status == EF_OK);
   ef_fields_free(fields);
   if (status == EF_OK && p->n_levels == 0) {
-    message_fail(error, EF_MALFORMED, "there is a header and no level below it");
+    message_fail(error, EF_MALFORMED,
+                 "there is a header and no level below it");
     status = message_place(error, path);
   }
   return status;
@@ -123,6 +124,20 @@ static void note_levels(const panel_next *p, const ef_notes *notes) {
 
 /* ---- Steps ------------------------------------------------------------- */
 
+/* What is known, where it is to be drawn. */
+static ef_status know(panel_next *p, next_step *s,
+                      const ef_responses *responses, ef_error *error) {
+  if (p->options->chart == NULL && p->options->report == NULL)
+    return EF_OK;
+  const size_t n = p->settings.n_thresholds;
+  s->threshold = malloc(n * sizeof *s->threshold);
+  s->density = malloc(n * sizeof *s->density);
+  if (s->threshold == NULL || s->density == NULL)
+    return out_of_memory(error);
+  return ef_next_posterior(responses, p->n_levels, p->level, &p->settings,
+                           s->threshold, s->density, error);
+}
+
 static ef_status choose(panel_next *p, next_step *s, const double *level,
                         const size_t *shown, const size_t *positive, size_t n,
                         ef_error *error) {
@@ -130,11 +145,14 @@ static ef_status choose(panel_next *p, next_step *s, const double *level,
   if (s->gain == NULL)
     return out_of_memory(error);
   const ef_responses responses = {n, level, shown, positive};
-  const ef_status status = ef_next_choose(&responses, p->n_levels, p->level,
-                                          &p->settings, &s->next, s->gain, error);
+  const ef_status status =
+      ef_next_choose(&responses, p->n_levels, p->level, &p->settings, &s->next,
+                     s->gain, error);
   if (status == EF_INVALID)
     error->status = EF_UNKNOWN_NAME; /* options that do not go together */
-  return status == EF_INVALID ? EF_UNKNOWN_NAME : status;
+  if (status == EF_OK)
+    return know(p, s, &responses, error);
+  return error->status;
 }
 
 static ef_status add_steps(panel_next *p, ef_error *error) {
@@ -229,8 +247,11 @@ ef_status panel_next_load(panel_next *p, const command_options *options,
 }
 
 void panel_next_free(panel_next *p) {
-  for (size_t i = 0; i < p->n; ++i)
+  for (size_t i = 0; i < p->n; ++i) {
     free(p->step[i].gain);
+    free(p->step[i].threshold);
+    free(p->step[i].density);
+  }
   free(p->step);
   free(p->level);
   free(p->line);

@@ -66,11 +66,11 @@ static ef_status try_size(panel_plan *p, size_t k, size_t i, ef_error *error) {
   c->is_sound = (double)c->row.n_failed <= 0.05 * (double)c->row.n_experiments;
   /* What is off for everybody leaves less room for chance: squares add. */
   const double wanted = log1p(p->precision), off = log(c->row.median);
-  c->n_observers = isfinite(c->row.sd_ln) && fabs(off) < wanted
-                       ? ef_plan_observers(
-                             s->spread, c->row.sd_ln,
-                             expm1(sqrt(wanted * wanted - off * off)))
-                       : 0;
+  c->n_observers =
+      isfinite(c->row.sd_ln) && fabs(off) < wanted
+          ? ef_plan_observers(s->spread, c->row.sd_ln,
+                              expm1(sqrt(wanted * wanted - off * off)))
+          : 0;
   c->group_power = (double)NAN;
   if (!isnan(s->other_jnd) && c->n_observers > 0) {
     c->group_power = ef_plan_power(s->spread, c->row.sd_ln, c->n_observers,
@@ -98,9 +98,8 @@ static ef_status search_alone(panel_plan *p, size_t k, ef_error *error) {
   if (p->procedure[k] == EF_PROCEDURE_ADAPTIVE)
     return EF_OK;
   ef_error reason;
-  const ef_status status =
-      ef_plan_search(&p->settings, p->procedure[k], p->precision, MOST_ALONE,
-                     &row, &reason);
+  const ef_status status = ef_plan_search(
+      &p->settings, p->procedure[k], p->precision, MOST_ALONE, &row, &reason);
   if (status == EF_OK)
     p->alone[k] = row.n_trials;
   else if (status != EF_NO_ANSWER)

@@ -74,8 +74,7 @@ static void add_ranking(text *out, const panel_calibration *c) {
                 "with %s is %s (%s).",
                 c->n_formulas, ef_metric_title(c->formula[0].metric),
                 c->n_scored, best, ef_metric_title(f->metric), own,
-                f->score.p_value < 0.05 ? "clearly worse"
-                                        : "not clearly worse",
+                f->score.p_value < 0.05 ? "clearly worse" : "not clearly worse",
                 chance);
   }
   text_paragraph(out, &line, 0);
@@ -233,16 +232,15 @@ static void add_without(text *out, const panel_calibration *c) {
       continue;
     text line = {0};
     const ef_support why = c->each[i].support;
-    text_format(&line, "%s: %s", answers_observer(&c->answers, i),
-                why == EF_SUPPORT_ALL_POSITIVE
-                    ? "always right: the JND lies below the differences shown"
-                : why == EF_SUPPORT_NONE_POSITIVE
-                    ? "never right: the JND lies above the differences shown"
-                : why == EF_SUPPORT_FLAT
-                    ? "the answers do not depend on the difference"
-                : why == EF_SUPPORT_FALLING
-                    ? "larger differences are seen less often"
-                    : "too few levels");
+    text_format(
+        &line, "%s: %s", answers_observer(&c->answers, i),
+        why == EF_SUPPORT_ALL_POSITIVE
+            ? "always right: the JND lies below the differences shown"
+        : why == EF_SUPPORT_NONE_POSITIVE
+            ? "never right: the JND lies above the differences shown"
+        : why == EF_SUPPORT_FLAT ? "the answers do not depend on the difference"
+        : why == EF_SUPPORT_FALLING ? "larger differences are seen less often"
+                                    : "too few levels");
     if (n++ == 0)
       text_add(out, "\nWithout a JND:\n");
     text_add(out, "  ");
@@ -250,25 +248,30 @@ static void add_without(text *out, const panel_calibration *c) {
   }
 }
 
-static ef_status write_text(const panel_calibration *c, ef_output *output,
-                            ef_error *error) {
-  text out = {0};
-  add_answer(&out, c);
-  add_ranking(&out, c);
-  add_saved(&out, c);
+void panel_calibration_add(text *out, const panel_calibration *c) {
+  add_answer(out, c);
+  add_ranking(out, c);
+  add_saved(out, c);
   if (c->is_demo) {
-    text_wrap(&out,
+    text_wrap(out,
               "No file was named, so this is the built-in demo: the vision "
               "laboratory's observers said which of two intervals held the "
               "unlike plates (demo:pair-answers, demo:colour-pairs).",
               0);
   }
-  add_observers(&out, c);
-  add_formulas(&out, c);
-  add_without(&out, c);
-  add_basis(&out, c);
-  text_add(&out, "\n");
-  text_wrap(&out, panel_caution, 0);
+  add_observers(out, c);
+  add_formulas(out, c);
+  add_without(out, c);
+  add_basis(out, c);
+  text_add(out, "\n");
+  text_section(out, "What to keep in mind");
+  text_wrap(out, panel_caution, 0);
+}
+
+static ef_status write_text(const panel_calibration *c, ef_output *output,
+                            ef_error *error) {
+  text out = {0};
+  panel_calibration_add(&out, c);
   const ef_status status = text_write(&out, output, error);
   text_free(&out);
   return status;

@@ -5,16 +5,15 @@
 #include <stdio.h>
 
 #include "message.h"
-#include "record.h"
 #include "panel_words.h"
+#include "record.h"
 #include "text.h"
 #include "words.h"
 
 enum { NAME_ROOM = 160 };
 
-/* "pair 'deck 3' (level 1.3)" or "level 1.3". */
-static void level_name(const panel_next *p, size_t level, char *name,
-                       size_t room) {
+void panel_next_level(const panel_next *p, size_t level, char *name,
+                      size_t room) {
   char number[EF_NUMBER_TEXT];
   ef_number_format(p->level[level], number);
   if (p->has_names)
@@ -23,10 +22,10 @@ static void level_name(const panel_next *p, size_t level, char *name,
     snprintf(name, room, "level %s", number);
 }
 
-static void step_name(const panel_next *p, const next_step *s, char *name,
-                      size_t room) {
+void panel_next_name(const panel_next *p, const next_step *s, char *name,
+                     size_t room) {
   const char *condition = answers_condition(&p->answers, s->condition);
-  const char *observer = s->is_new               ? "a new observer"
+  const char *observer = s->is_new ? "a new observer"
                          : p->answers.has_observer
                              ? answers_observer(&p->answers, s->observer)
                              : "the observer";
@@ -35,11 +34,11 @@ static void step_name(const panel_next *p, const next_step *s, char *name,
            s->is_new ? "" : condition);
 }
 
-static ef_estimate aim_of(const next_step *s) {
+ef_estimate panel_next_aim(const next_step *s) {
   return isnan(s->next.jnd.value) ? s->next.threshold : s->next.jnd;
 }
 
-static const char *aim_words(const next_step *s) {
+const char *panel_next_aim_words(const next_step *s) {
   return isnan(s->next.jnd.value) ? "threshold" : "JND";
 }
 
@@ -48,14 +47,14 @@ static const char *aim_words(const next_step *s) {
 static void add_step(text *out, const panel_next *p, const next_step *s) {
   char name[NAME_ROOM], level[NAME_ROOM];
   text line = {0};
-  step_name(p, s, name, sizeof name);
-  level_name(p, s->next.choice, level, sizeof level);
+  panel_next_name(p, s, name, sizeof name);
+  panel_next_level(p, s->next.choice, level, sizeof level);
   if (s->is_new) {
-    text_format(&line, "Begin with a new observer at %s.", level);
+    text_format(&line, "A new observer begins at %s.", level);
   } else if (s->next.is_done) {
     text_format(&line, "%s: done after %zu trials; the %s is ", name,
-                s->next.n_trials, aim_words(s));
-    panel_add_estimate(&line, aim_of(s), p->answers.unit);
+                s->next.n_trials, panel_next_aim_words(s));
+    panel_add_estimate(&line, panel_next_aim(s), p->answers.unit);
     text_format(&line, "%s.",
                 s->next.is_precise ? ""
                                    : ", which is not as precise as wanted");
@@ -79,8 +78,8 @@ static void add_answer(text *out, const panel_next *p) {
     text line = {0};
     char number[WORDS_ROOM];
     words_count(count_going(p), "observer goes on", "observers go on", number);
-    text_format(&line, "%s, %zu done; what to show next stands below.",
-                number, n_old - count_going(p));
+    text_format(&line, "%s, %zu done; what to show next stands below.", number,
+                n_old - count_going(p));
     text_paragraph(out, &line, 0);
   }
   for (size_t i = 0; i < n_old && n_old <= MOST_LINES; ++i)
@@ -92,25 +91,25 @@ static void add_table(text *out, const panel_next *p) {
   text_table t = table_new();
   double least = (double)INFINITY;
   for (size_t i = 0; i + 1 < p->n; ++i)
-    least = fmin(least, fabs(aim_of(&p->step[i]).value));
+    least = fmin(least, fabs(panel_next_aim(&p->step[i]).value));
   const int decimals = words_decimals(least, 3);
   table_column(&t, "Observer", "", true);
   if (p->answers.has_condition)
     table_column(&t, "Condition", "", true);
   table_column(&t, "Trials", "", false);
-  table_column(&t, p->n > 1 ? (isnan(p->step[0].next.jnd.value) ? "Threshold"
-                                                                  : "JND")
-                            : "",
-               "", false);
+  table_column(
+      &t,
+      p->n > 1 ? (isnan(p->step[0].next.jnd.value) ? "Threshold" : "JND") : "",
+      "", false);
   table_column(&t, "95 %", "from", false);
   table_column(&t, NULL, "to", false);
   table_column(&t, "Show next", "", true);
   table_column(&t, "Gain", "bits", false);
   for (size_t i = 0; i + 1 < p->n; ++i) {
     const next_step *s = &p->step[i];
-    const ef_estimate e = aim_of(s);
+    const ef_estimate e = panel_next_aim(s);
     char name[NAME_ROOM];
-    level_name(p, s->next.choice, name, sizeof name);
+    panel_next_level(p, s->next.choice, name, sizeof name);
     table_cell(&t, p->answers.has_observer
                        ? answers_observer(&p->answers, s->observer)
                        : "all answers");
@@ -127,9 +126,13 @@ static void add_table(text *out, const panel_next *p) {
   table_finish(&t, out);
 }
 
+const next_step *panel_next_told(const panel_next *p) {
+  return &p->step[p->n > 2 ? p->n - 1 : 0];
+}
+
 /* What each level in hand would tell; for one observer alone. */
 static void add_gains(text *out, const panel_next *p) {
-  const next_step *s = &p->step[p->n > 2 ? p->n - 1 : 0];
+  const next_step *s = panel_next_told(p);
   char name[NAME_ROOM];
   text_table t = table_new();
   table_column(&t, "Level", "", false);
@@ -144,7 +147,7 @@ static void add_gains(text *out, const panel_next *p) {
       table_cell(&t, p->names.name[i]);
     table_number(&t, s->gain[i], 3);
   }
-  step_name(p, s, name, sizeof name);
+  panel_next_name(p, s, name, sizeof name);
   text_format(out, "\nWhat an answer would tell about %s:\n", name);
   table_finish(&t, out);
 }
@@ -180,20 +183,25 @@ static void add_basis(text *out, const panel_next *p) {
   text_label(out, "Done when", &line);
 }
 
-static ef_status write_text(const panel_next *p, ef_output *output,
-                            ef_error *error) {
-  text out = {0};
-  add_answer(&out, p);
+void panel_next_add(text *out, const panel_next *p) {
+  add_answer(out, p);
   if (p->n > 1)
-    add_table(&out, p);
-  add_gains(&out, p);
-  add_basis(&out, p);
-  text_add(&out, "\n");
-  text_wrap(&out,
+    add_table(out, p);
+  add_gains(out, p);
+  add_basis(out, p);
+  text_add(out, "\n");
+  text_section(out, "What to keep in mind");
+  text_wrap(out,
             "Between the pairs that are asked for show others now and then, so "
             "that observers cannot tell how near their threshold they are; "
             "every answer that is written down counts.",
             0);
+}
+
+static ef_status write_text(const panel_next *p, ef_output *output,
+                            ef_error *error) {
+  text out = {0};
+  panel_next_add(&out, p);
   const ef_status status = text_write(&out, output, error);
   text_free(&out);
   return status;

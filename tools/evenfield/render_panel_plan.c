@@ -10,7 +10,7 @@
 #include "text.h"
 #include "words.h"
 
-static const char *procedure_words(ef_procedure procedure) {
+const char *plan_procedure_words(ef_procedure procedure) {
   switch (procedure) {
   case EF_PROCEDURE_UP_DOWN:
     return "up-down run";
@@ -27,7 +27,11 @@ static const plan_choice *best(const panel_plan *p, size_t k) {
   return p->best[k] < 0 ? NULL : &p->choice[k][p->best[k]];
 }
 
-static size_t answers_of(const plan_choice *c) {
+bool plan_will_do(const plan_choice *c) {
+  return c->n_observers > 0 && c->is_sound;
+}
+
+size_t plan_answers(const plan_choice *c) {
   return c->n_observers * c->row.n_trials;
 }
 
@@ -58,17 +62,17 @@ static void add_answer(text *out, const panel_plan *p) {
   }
   add_percent(&line, p->precision);
   if (constant != NULL)
-    text_format(&line, ": %zu answers", answers_of(constant));
+    text_format(&line, ": %zu answers", plan_answers(constant));
   if (adaptive != NULL) {
     text_format(&line,
                 "; levels chosen as the answers come take %zu observers with "
                 "%zu trials each, %zu answers",
                 adaptive->n_observers, adaptive->row.n_trials,
-                answers_of(adaptive));
+                plan_answers(adaptive));
   }
   if (adaptive != NULL && constant != NULL) {
-    const double saved = 1.0 - (double)answers_of(adaptive) /
-                                   (double)answers_of(constant);
+    const double saved =
+        1.0 - (double)plan_answers(adaptive) / (double)plan_answers(constant);
     if (saved > 0.0) {
       text_add(&line, " (");
       add_percent(&line, saved);
@@ -90,10 +94,10 @@ static void add_alone(text *out, const panel_plan *p) {
     text_add(&line, n++ > 0 ? ", " : "");
     if (p->alone[k] > 0) {
       text_format(&line, "%zu trials by %s", p->alone[k],
-                  procedure_words(p->procedure[k]));
+                  plan_procedure_words(p->procedure[k]));
     } else {
       text_format(&line, "more than 10000 by %s",
-                  procedure_words(p->procedure[k]));
+                  plan_procedure_words(p->procedure[k]));
     }
   }
   text_add(&line, ": people are better asked in numbers than for long.");
@@ -116,20 +120,19 @@ static void add_rows(text *out, const panel_plan *p) {
   for (size_t k = 0; k < p->n_procedures; ++k) {
     for (size_t i = 0; i < PLAN_SIZES; ++i) {
       const plan_choice *c = &p->choice[k][i];
-      const bool will_do = c->n_observers > 0 && c->is_sound;
-      table_cell(&t, i == 0 ? procedure_words(p->procedure[k]) : "");
+      const bool will_do = plan_will_do(c);
+      table_cell(&t, i == 0 ? plan_procedure_words(p->procedure[k]) : "");
       table_format(&t, "%zu", c->row.n_trials);
       table_number(&t, isfinite(c->row.median) ? c->row.median : (double)NAN,
                    2);
       table_number(&t, c->row.low > 0.0 ? c->row.low : (double)NAN, 2);
       panel_limit_cell(&t, c->row.high, 2);
-      table_number(&t,
-                   100.0 * (double)c->row.n_failed /
-                       (double)c->row.n_experiments,
-                   0);
+      table_number(
+          &t, 100.0 * (double)c->row.n_failed / (double)c->row.n_experiments,
+          0);
       if (will_do) {
         table_format(&t, "%zu", c->n_observers);
-        table_format(&t, "%zu%s", answers_of(c),
+        table_format(&t, "%zu%s", plan_answers(c),
                      p->best[k] == (int)i ? " *" : "  ");
       } else {
         table_cell(&t, "-");
@@ -172,9 +175,8 @@ static void add_basis(text *out, const panel_plan *p) {
               "%s; JND %s, known beforehand to a factor of %s, by which the "
               "levels may miss; %s; ",
               ef_task_name(s->task), number, other,
-              s->shape == EF_SHAPE_DETECTION
-                  ? "d' grows with the level"
-                  : "cumulative Gaussian");
+              s->shape == EF_SHAPE_DETECTION ? "d' grows with the level"
+                                             : "cumulative Gaussian");
   add_percent(&line, s->lapse);
   text_add(&line, " of answers without looking");
   if (s->task == EF_TASK_YES_NO || s->task == EF_TASK_SAME_DIFFERENT) {
@@ -207,9 +209,8 @@ static void add_basis(text *out, const panel_plan *p) {
                 "left out: a run finds one point of the curve, and the JND of "
                 "%s lies between two (%s)",
                 ef_task_name(s->task),
-                s->task == EF_TASK_GREATER_LESS
-                    ? "25 % and 75 % \"greater\""
-                    : "hits and false alarms");
+                s->task == EF_TASK_GREATER_LESS ? "25 % and 75 % \"greater\""
+                                                : "hits and false alarms");
   }
   text_label(out, "Up-down", &line);
   text_add(&line,
@@ -228,20 +229,25 @@ static void add_basis(text *out, const panel_plan *p) {
   text_label(out, "Power", &line);
 }
 
-static ef_status write_text(const panel_plan *p, ef_output *output,
-                            ef_error *error) {
-  text out = {0};
-  add_answer(&out, p);
-  add_alone(&out, p);
-  add_rows(&out, p);
-  add_basis(&out, p);
-  text_add(&out, "\n");
-  text_wrap(&out,
+void panel_plan_add(text *out, const panel_plan *p) {
+  add_answer(out, p);
+  add_alone(out, p);
+  add_rows(out, p);
+  add_basis(out, p);
+  text_add(out, "\n");
+  text_section(out, "What to keep in mind");
+  text_wrap(out,
             "People tire: an observer rarely keeps attention for more than "
             "some 300 trials a sitting (common practice, no source), and "
             "panels with people need their consent and, where that is the "
             "rule, an ethics board's.",
             0);
+}
+
+static ef_status write_text(const panel_plan *p, ef_output *output,
+                            ef_error *error) {
+  text out = {0};
+  panel_plan_add(&out, p);
   const ef_status status = text_write(&out, output, error);
   text_free(&out);
   return status;
@@ -260,23 +266,22 @@ static void fill(const panel_plan *p, listing *l) {
   for (size_t k = 0; k < p->n_procedures; ++k) {
     for (size_t i = 0; i < PLAN_SIZES; ++i) {
       const plan_choice *c = &p->choice[k][i];
-      const bool will_do = c->n_observers > 0 && c->is_sound;
+      const bool will_do = plan_will_do(c);
       const double none = (double)NAN;
-      const double value[] = {
-          (double)c->row.n_trials,
-          (double)c->row.n_experiments,
-          (double)c->row.n_failed,
-          c->row.median,
-          c->row.low,
-          c->row.high,
-          c->row.half_width,
-          c->row.sd_ln,
-          will_do ? (double)c->n_observers : none,
-          will_do ? (double)answers_of(c) : none,
-          c->row.power,
-          c->group_power,
-          p->best[k] == (int)i ? 1.0 : 0.0,
-          p->alone[k] > 0 ? (double)p->alone[k] : none};
+      const double value[] = {(double)c->row.n_trials,
+                              (double)c->row.n_experiments,
+                              (double)c->row.n_failed,
+                              c->row.median,
+                              c->row.low,
+                              c->row.high,
+                              c->row.half_width,
+                              c->row.sd_ln,
+                              will_do ? (double)c->n_observers : none,
+                              will_do ? (double)plan_answers(c) : none,
+                              c->row.power,
+                              c->group_power,
+                              p->best[k] == (int)i ? 1.0 : 0.0,
+                              p->alone[k] > 0 ? (double)p->alone[k] : none};
       listing_text(l, ef_procedure_name(p->procedure[k]));
       for (size_t j = 0; j < sizeof value / sizeof value[0]; ++j)
         listing_number(l, value[j]);
@@ -319,8 +324,7 @@ static ef_status write_json(const panel_plan *p, const listing *l,
   ef_error late;
   const ef_status status = listing_write_json(l, j, "plans", error);
   ef_json_end_object(j);
-  const ef_status finished =
-      ef_json_finish(j, status == EF_OK ? error : &late);
+  const ef_status finished = ef_json_finish(j, status == EF_OK ? error : &late);
   return status != EF_OK ? status : finished;
 }
 
