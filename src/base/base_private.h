@@ -161,7 +161,8 @@ ef__simplex_end ef__simplex_maximise(ef__simplex *simplex,
 /** The fewest decimal digits that read back to `value` (finite, above zero),
  * and of those the nearest to it, without trailing zeros. Returns the decimal
  * exponent of the first digit. */
-int ef__shortest_digits(double value, char digit[EF__SHORTEST_DIGITS]);
+int ef__shortest_digits(double value, char digit[EF__SHORTEST_DIGITS],
+                        int *n_digits);
 
 /* ---- Loops (parallel.c) ------------------------------------------------ */
 

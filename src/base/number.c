@@ -149,18 +149,32 @@ static size_t put(char text[EF_NUMBER_TEXT], const char *word) {
 
 /* Digits, mark and zeros for an exponent in the plain range. */
 static char *put_plain(char *to, const char *digit, int n, int exponent) {
-  if (exponent < 0) {
-    *to++ = '0';
+  const int n_whole = exponent + 1; /* digits before the mark */
+  if (n_whole <= 0) {
+    memcpy(to, "0.00000000", 10);
+    to += 2 - n_whole;
+    memcpy(to, digit, (size_t)n);
+    return to + n;
+  }
+  if (n_whole >= n) {
+    memcpy(to, digit, (size_t)n);
+    memset(to + n, '0', (size_t)(n_whole - n));
+    return to + n_whole;
+  }
+  memcpy(to, digit, (size_t)n_whole);
+  to += n_whole;
+  *to = '.';
+  memcpy(to + 1, digit + n_whole, (size_t)(n - n_whole));
+  return to + 1 + n - n_whole;
+}
+
+static char *put_scientific(char *to, const char *digit, int n, int exponent) {
+  *to++ = digit[0];
+  if (n > 1)
     *to++ = '.';
-    for (int i = -1; i > exponent; --i)
-      *to++ = '0';
-  }
-  for (int i = 0; i < n || i <= exponent; ++i) {
-    *to++ = i < n ? digit[i] : '0';
-    if (i == exponent && i + 1 < n)
-      *to++ = '.';
-  }
-  return to;
+  memcpy(to, digit + 1, (size_t)n - 1);
+  to += n - 1;
+  return to + snprintf(to, 8, "e%d", exponent);
 }
 
 size_t ef_number_format(double value, char text[EF_NUMBER_TEXT]) {
@@ -171,22 +185,15 @@ size_t ef_number_format(double value, char text[EF_NUMBER_TEXT]) {
   if (value == 0)
     return put(text, signbit(value) ? "-0" : "0");
   char digit[EF__SHORTEST_DIGITS];
-  const int exponent = ef__shortest_digits(fabs(value), digit);
-  const int n = (int)strlen(digit);
+  int n;
+  const int exponent = ef__shortest_digits(fabs(value), digit, &n);
   char *to = text;
   if (value < 0)
     *to++ = '-';
-  if (exponent >= FIRST_PLAIN && exponent <= LAST_PLAIN) {
-    to = put_plain(to, digit, n, exponent);
-    *to = '\0';
-  } else {
-    *to++ = digit[0];
-    if (n > 1)
-      *to++ = '.';
-    for (int i = 1; i < n; ++i)
-      *to++ = digit[i];
-    to += snprintf(to, 8, "e%d", exponent);
-  }
+  to = exponent >= FIRST_PLAIN && exponent <= LAST_PLAIN
+           ? put_plain(to, digit, n, exponent)
+           : put_scientific(to, digit, n, exponent);
+  *to = '\0';
   return (size_t)(to - text);
 }
 

@@ -1,12 +1,12 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /* Shortest digits of a double. Every decimal strictly between the midpoints to
  * the two neighbouring doubles reads back to it (and so do the midpoints when
- * the last bit is even). In the range of everyday numbers the three bounds,
- * scaled to 18 or 19 digits, are integers of 107 bits divided by a power of
- * two: they are computed exactly, and digits are dropped while a shorter
- * decimal is left between the bounds (Steele & White 1990; the loop is that of
- * Adams 2018). Outside that range roundings to more and more digits are tried.
- */
+ * the last bit is even). In units of 10^-scale in which neighbours lie 1 to 10
+ * apart there is a whole number between the midpoints, but at most one multiple
+ * of 10: that one without its zeros is the shortest decimal, and where there is
+ * none, the nearest whole number is (the choice of scale and the argument are
+ * Giulietti's, 2020). For everyday numbers all of it is exact in whole numbers
+ * of 128 bits. For others roundings to more and more digits are tried. */
 #include "base/base_private.h"
 
 #include <float.h>
@@ -17,9 +17,8 @@
 
 enum {
   MANTISSA_BITS = 52,
-  MIN_SCALE = 0,  /* decimal places that keep 5^scale ... */
-  MAX_SCALE = 23, /* ... below 2^54 */
-  MAX_SHIFT = 63
+  EXPONENT_BIAS = 1023,
+  MAX_SCALE = 26 /* ten times the scaled value still fits in 64 bits */
 };
 
 /* ---- Exact, for everyday numbers --------------------------------------- */
@@ -38,90 +37,146 @@ static wide multiply(uint64_t a, uint64_t b) {
                 (other << 32) | (low & mask)};
 }
 
-/* floor(x / 2^shift), shift 1 to 63, and whether nothing was lost. The quotient
- * is known to fit. */
-static uint64_t shift_right(wide x, unsigned shift, bool *is_exact) {
-  *is_exact = (x.low & ((UINT64_C(1) << shift) - 1)) == 0;
-  return x.high << (64 - shift) | x.low >> shift;
-}
+static const uint64_t power_of_5[MAX_SCALE + 1] = {
+    1,
+    5,
+    25,
+    125,
+    625,
+    3125,
+    15625,
+    78125,
+    390625,
+    1953125,
+    9765625,
+    48828125,
+    244140625,
+    1220703125,
+    6103515625,
+    30517578125,
+    152587890625,
+    762939453125,
+    3814697265625,
+    19073486328125,
+    95367431640625,
+    476837158203125,
+    2384185791015625,
+    11920928955078125,
+    59604644775390625,
+    298023223876953125,
+    1490116119384765625,
+};
 
-/* The double and the midpoints beside it, in units of 10^-scale, rounded down;
- * a flag where nothing was lost. */
-typedef struct bounds {
-  uint64_t low, value, high;
-  bool low_is_exact, value_is_exact, high_is_exact;
-  bool include_ends;
-} bounds;
+/* A double in units of 10^-scale: whole + rest / 2^shift, neighbours 5^scale /
+ * 2^shift apart. */
+typedef struct scaled {
+  int scale;
+  unsigned shift;
+  uint64_t whole, rest;
+  uint64_t below, above; /* to the midpoints, in units of 2^-shift, rounded
+                            down: no distance of a whole number is that of a
+                            midpoint, an odd number of halves of the unit */
+} scaled;
 
-/* False when the value is too large or too small for exact arithmetic. */
-static bool find_bounds(double value, int *scale, bounds *b) {
-  int exponent;
-  const double fraction = frexp(value, &exponent); /* [0.5, 1) */
-  const uint64_t mantissa = (uint64_t)ldexp(fraction, MANTISSA_BITS + 1);
-  exponent -= MANTISSA_BITS + 1; /* value = mantissa x 2^exponent */
-  /* 78913 / 2^18 = log10(2) + 3e-7; 18 or 19 digits before the mark. */
-  const int digits = (int)floor((exponent + MANTISSA_BITS) * 78913.0 / 262144);
-  *scale = 17 - digits;
-  const int shift = -(exponent - 2 + *scale);
-  if (*scale < MIN_SCALE || *scale > MAX_SCALE)
+/* False when the value is too large or too small. */
+static bool scale_exactly(double value, scaled *s) {
+  uint64_t bits;
+  memcpy(&bits, &value, sizeof bits);
+  const int biased = (int)(bits >> MANTISSA_BITS);
+  const int exponent = biased - EXPONENT_BIAS - MANTISSA_BITS;
+  const uint64_t fraction = bits & ((UINT64_C(1) << MANTISSA_BITS) - 1);
+  /* value = mantissa x 2^exponent */
+  const uint64_t mantissa = fraction | UINT64_C(1) << MANTISSA_BITS;
+  if (exponent > 0)
     return false;
-  if (shift < 1 || shift > MAX_SHIFT)
+  /* 78913 / 2^18 = log10(2) - 3e-8, and no power of two comes as near to one of
+   * ten in the range. */
+  s->scale = exponent == 0 ? 0 : (-exponent * 78913 >> 18) + 1;
+  if (s->scale > MAX_SCALE)
     return false;
-  uint64_t power = 1; /* of 5: that of 2 is in the shift */
-  for (int i = 0; i < *scale; ++i)
-    power *= 5;
-  /* In quarters of the last bit. Below a power of two the doubles lie twice as
-   * dense (none in this range is subnormal). */
-  const bool is_power = mantissa == UINT64_C(1) << MANTISSA_BITS;
-  const uint64_t quarters = 4 * mantissa;
-  const unsigned places = (unsigned)shift;
-  b->low = shift_right(multiply(quarters - (is_power ? 1 : 2), power), places,
-                       &b->low_is_exact);
-  b->value = shift_right(multiply(quarters, power), places, &b->value_is_exact);
-  b->high =
-      shift_right(multiply(quarters + 2, power), places, &b->high_is_exact);
-  b->include_ends = mantissa % 2 == 0;
+  s->shift = (unsigned)(-exponent - s->scale);
+  const uint64_t power = power_of_5[s->scale];
+  const wide product = multiply(mantissa, power);
+  s->rest = product.low & ((UINT64_C(1) << s->shift) - 1);
+  s->whole = s->shift == 0 ? product.low
+                           : product.high << (64 - s->shift) |
+                                 product.low >> s->shift;
+  s->above = power / 2;
+  /* Below a power of two the doubles lie twice as dense. */
+  s->below = fraction == 0 ? power / 4 : power / 2;
   return true;
 }
 
-/* Drops digits while a decimal is left between the bounds, and rounds. Returns
- * the digits as an integer; `*dropped` counts them. */
-static uint64_t shorten(bounds b, int *dropped) {
-  bool low_is_whole = b.include_ends && b.low_is_exact;
-  bool value_is_whole = b.value_is_exact;
-  unsigned last = 0; /* digit dropped last */
-  if (!b.include_ends && b.high_is_exact)
-    --b.high;
-  *dropped = 0;
-  while (b.high / 10 > b.low / 10 || (low_is_whole && b.low % 10 == 0)) {
-    low_is_whole = low_is_whole && b.low % 10 == 0;
-    value_is_whole = value_is_whole && last == 0;
-    last = (unsigned)(b.value % 10);
-    b.low /= 10;
-    b.value /= 10;
-    b.high /= 10;
-    ++*dropped;
-  }
-  const bool is_tie = value_is_whole && last == 5;
-  const bool below = b.value == b.low && !low_is_whole;
-  const bool up = below || (is_tie ? b.value % 2 == 1 : last >= 5);
-  return b.value + up;
+/* The multiple of 10 between the midpoints; 0 when there is none. */
+static uint64_t round_number(const scaled *s) {
+  const uint64_t tens = s->whole / 10;
+  const uint64_t down = (s->whole - 10 * tens) << s->shift | s->rest;
+  if (down <= s->below)
+    return 10 * tens;
+  const uint64_t up = (UINT64_C(10) << s->shift) - down;
+  return up <= s->above ? 10 * (tens + 1) : 0;
 }
 
-static bool exact_digits(double value, char *digit, int *exponent) {
-  int scale, dropped;
-  bounds b;
-  if (!find_bounds(value, &scale, &b))
-    return false;
-  uint64_t whole = shorten(b, &dropped);
+/* The nearest whole number; 0 when it does not lie between the midpoints. */
+static uint64_t nearest_number(const scaled *s) {
+  const uint64_t one = UINT64_C(1) << s->shift;
+  const bool is_tie = s->rest == one - s->rest;
+  const bool is_up =
+      s->rest > one - s->rest || (is_tie && s->whole % 2 == 1);
+  const bool is_between =
+      is_up ? one - s->rest <= s->above : s->rest <= s->below;
+  return is_between ? s->whole + is_up : 0;
+}
+
+/* Takes zeros off the end of a number that is not 0; `*scale` goes with it. */
+static uint64_t without_zeros(uint64_t number, int *scale) {
+  static const uint32_t power[] = {100000000, 10000, 100, 10};
+  for (int i = 0, zeros = 8; i < 4; ++i, zeros /= 2) {
+    /* 8 zeros may be there twice. */
+    while (number % power[i] == 0) {
+      number /= power[i];
+      *scale -= zeros;
+    }
+  }
+  return number;
+}
+
+/* Digits of a number above 0, in pairs from the end; their number. */
+static int put_digits(uint64_t number, char *digit) {
+  static const char pairs[] =
+      "00010203040506070809101112131415161718192021222324252627282930313233343536"
+      "37383940414243444546474849505152535455565758596061626364656667686970717273"
+      "7475767778798081828384858687888990919293949596979899";
   char text[EF__SHORTEST_DIGITS];
-  size_t n = 0;
-  for (; whole > 0; whole /= 10)
-    text[n++] = (char)('0' + whole % 10);
-  for (size_t i = 0; i < n; ++i)
-    digit[i] = text[n - 1 - i];
+  int at = EF__SHORTEST_DIGITS;
+  while (number >= 10) {
+    at -= 2;
+    memcpy(text + at, pairs + 2 * (number % 100), 2);
+    number /= 100;
+  }
+  if (number > 0)
+    text[--at] = (char)('0' + number);
+  const int n = EF__SHORTEST_DIGITS - at;
+  memcpy(digit, text + at, (size_t)n);
   digit[n] = '\0';
-  *exponent = (int)n - 1 + dropped - scale;
+  return n;
+}
+
+static bool exact_digits(double value, char *digit, int *n, int *exponent) {
+  scaled s;
+  if (!scale_exactly(value, &s))
+    return false;
+  int scale = s.scale;
+  uint64_t number = round_number(&s);
+  if (number > 0) {
+    number = without_zeros(number, &scale);
+  } else {
+    number = nearest_number(&s);
+  }
+  if (number == 0)
+    return false;
+  *n = put_digits(number, digit);
+  *exponent = *n - 1 - scale;
   return true;
 }
 
@@ -182,13 +237,15 @@ static int tried_digits(double value, char *digit) {
   return round_to_digits(value, 17, digit);
 }
 
-int ef__shortest_digits(double value, char digit[EF__SHORTEST_DIGITS]) {
+int ef__shortest_digits(double value, char digit[EF__SHORTEST_DIGITS],
+                        int *n_digits) {
   int exponent;
-  if (!exact_digits(value, digit, &exponent)) {
-    exponent = tried_digits(value, digit);
-  }
-  size_t n = strlen(digit);
+  if (exact_digits(value, digit, n_digits, &exponent))
+    return exponent;
+  exponent = tried_digits(value, digit);
+  int n = (int)strlen(digit);
   while (n > 1 && digit[n - 1] == '0')
     digit[--n] = '\0';
+  *n_digits = n;
   return exponent;
 }
