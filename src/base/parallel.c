@@ -178,7 +178,8 @@ static void offer(loop *w, size_t n_wanted) {
   static pthread_once_t once = PTHREAD_ONCE_INIT;
   pthread_once(&once, watch_forks);
   const size_t n_others = processor_count() - 1;
-  const size_t most = n_wanted > n_others ? n_wanted : n_others;
+  const size_t useful = n_wanted > n_others ? n_wanted : n_others;
+  const size_t most = useful < MAX_THREADS ? useful : MAX_THREADS;
   pthread_mutex_lock(&pool.lock);
   while (pool.n_free < n_wanted && pool.n_threads < most && !pool.is_closed) {
     if (!start_thread())
