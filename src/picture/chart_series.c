@@ -7,7 +7,8 @@
 #include "picture/chart_private.h"
 
 enum {
-  MOST_MARKS = 1500, /* and pairs */
+  MOST_MARKS = 1500, /* on 720 px */
+  MOST_PAIRS = 600,
   MOST_DOTS = 6000,
   MOST_LABELS = 200,
   MOST_SEGMENTS = 4000,     /* that labels are kept clear of */
@@ -293,8 +294,17 @@ static bool draw_one(ef__sheet *sheet, const ef_series *s, size_t i,
   return true;
 }
 
+/* Points for the room there is: as many as stated on 720 px. */
+static size_t most_points(const ef__sheet *sheet, size_t most) {
+  const double share = fmin(sheet->page->width_px / 720.0, 1.0);
+  return (size_t)((double)most * share * share);
+}
+
 static bool draw_points(ef__sheet *sheet, const ef_series *s) {
   const bool is_cloud = s->kind == EF_SERIES_CLOUD;
+  const size_t most = is_cloud                     ? MOST_DOTS
+                      : s->kind == EF_SERIES_PAIRS ? MOST_PAIRS
+                                                   : MOST_MARKS;
   ef__point *at = ef__allocate(s->n, sizeof *at);
   bool *stays = ef__allocate(s->n, sizeof *stays);
   bool complete = at != NULL && stays != NULL;
@@ -303,7 +313,7 @@ static bool draw_points(ef__sheet *sheet, const ef_series *s) {
   if (complete) {
     const size_t kept =
         ef__thin(s->n, at, sheet->field, is_cloud ? DOT_PX : 0.0,
-                 is_cloud ? MOST_DOTS : MOST_MARKS, stays);
+                 most_points(sheet, most), stays);
     complete = kept != SIZE_MAX;
     if (s->look != EF_LOOK_FRAME) {
       sheet->report->n_points += s->n;

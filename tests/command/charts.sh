@@ -197,15 +197,22 @@ for name in panel calibrate plan; do
   ef_check "report of $name: seed" $? 0
 done
 
-# Very many targets: the chart says what it leaves out.
-awk 'BEGIN { print "name,L,a,b"; for (i = 0; i < 20000; ++i)
+# Very many targets: chart and report say what they leave out, and stay small.
+awk 'BEGIN { print "name,L,a,b"; for (i = 0; i < 50000; ++i)
   print "t" i "," 40 + i % 40 "," i % 97 - 48 "," i % 89 - 44 }' >many.csv
-"$evenfield" match many.csv --chart many.svg --format csv >/dev/null 2>message
+"$evenfield" match many.csv --chart many.svg --report many.html --format csv \
+  >/dev/null 2>message
 ef_check "many targets: status" $? 0
-grep -q 'of 20000 points are drawn' message
+grep -q 'many.svg: [0-9]* of [0-9]* points are drawn' message
 ef_check "many targets: note" $? 0
-grep -q '>Drawn: [0-9]* of 20000 points' many.svg
+grep -q '>Drawn: [0-9]* of [0-9]* points' many.svg
 ef_check "many targets: on the chart" $? 0
+grep -q 'of [0-9]* targets in gamut one in 2 is taken' many.svg
+ef_check "many targets: which ones" $? 0
+grep -q '<p>Of [0-9]* targets in gamut one in 2 is taken' many.html
+ef_check "many targets: in the report" $? 0
+[ "$(cat many.svg many.html | wc -c)" -lt 2000000 ]
+ef_check "many targets: small files" $? 0
 
 echo "1..$number"
 [ "$failed" -eq 0 ]

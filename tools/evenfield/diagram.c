@@ -48,15 +48,24 @@ bool diagram_is_chromaticity(diagram_plane plane) {
   return planes[plane].is_chromaticity;
 }
 
+/* Chromaticities far from all that light can have are nowhere on a chart, which
+ * else would shrink around them; the primaries of encodings are not as far. */
+static ef_xy on_chart(double x, double y) {
+  const double least = -0.25, most = 1.25;
+  const double nowhere = (double)NAN;
+  const bool is_on = x > least && x < most && y > least && y < most;
+  return is_on ? (ef_xy){x, y} : (ef_xy){nowhere, nowhere};
+}
+
 ef_xy diagram_point(diagram_plane plane, ef_xyz xyz, ef_xyz white) {
   switch (plane) {
   case PLANE_XY: {
     const ef_xyy at = ef_xyz_to_xyy(xyz);
-    return (ef_xy){at.x, at.y};
+    return on_chart(at.x, at.y);
   }
   case PLANE_UV: {
     const ef_uv at = ef_xyz_to_uv(xyz);
-    return (ef_xy){at.u_prime, at.v_prime};
+    return on_chart(at.u_prime, at.v_prime);
   }
   case PLANE_PEOPLE:
   case PLANE_AB: {

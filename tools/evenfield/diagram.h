@@ -26,7 +26,8 @@ void diagram_set_differences(ef_chart_settings *settings, diagram_plane plane);
 /** "u', v'" ... Static. */
 const char *diagram_plane_name(diagram_plane plane);
 bool diagram_is_chromaticity(diagram_plane plane);
-/** Where a colour lies; `white` is that of CIELAB. */
+/** Where a colour lies; `white` is that of CIELAB. NaN for chromaticities far
+ * from those that light can have. */
 ef_xy diagram_point(diagram_plane plane, ef_xyz xyz, ef_xyz white);
 
 /** Where a diagram is wanted. */

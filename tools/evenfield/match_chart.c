@@ -9,19 +9,25 @@
 #include "message.h"
 #include "text.h"
 
-/* Targets that are kept; of more, every second one, fourth one ... */
-enum { MOST_KEPT = 1 << 20, MOST_NAMED = 60 };
+/* Targets that are kept in gamut, and out of it, so that few among many are not
+ * lost; of more, every second one, fourth one ... */
+enum { MOST_KEPT = 1 << 15, MOST_NAMED = 60 };
 
 typedef struct kept_colour {
   ef_xyz target, shown;
-  bool in_gamut;
+  size_t order; /* among all targets */
 } kept_colour;
+
+typedef struct kept_colours {
+  size_t n, room, n_seen, stride;
+  kept_colour *at;
+} kept_colours;
 
 struct match_chart {
   const char *path;
   const ef_notes *notes;
-  size_t n, room, n_seen, stride;
-  kept_colour *colour;
+  size_t n_seen;
+  kept_colours kept[2];   /* out of gamut, in gamut */
   char *name[MOST_NAMED]; /* of the first ones */
   ef_crowd *crowd;        /* of the people asked; made with the first block */
   clouds clouds;
@@ -33,7 +39,7 @@ match_chart *match_chart_new(const char *path, const ef_notes *notes) {
     return NULL;
   c->path = path;
   c->notes = notes;
-  c->stride = 1;
+  c->kept[0].stride = c->kept[1].stride = 1;
   return c;
 }
 
@@ -42,7 +48,8 @@ void match_chart_free(match_chart *c) {
     return;
   for (size_t i = 0; i < MOST_NAMED; ++i)
     free(c->name[i]);
-  free(c->colour);
+  free(c->kept[0].at);
+  free(c->kept[1].at);
   clouds_free(&c->clouds);
   ef_crowd_free(c->crowd);
   free(c);
@@ -60,24 +67,33 @@ static ef_status begin(void *self, const match_scene *s, ef_error *error) {
                       ef_observer_name(s->observer));
 }
 
-static void halve(match_chart *c) {
-  c->stride *= 2;
-  c->n /= 2;
-  for (size_t i = 0; i < c->n; ++i)
-    c->colour[i] = c->colour[2 * i];
+static void halve(kept_colours *k) {
+  k->stride *= 2;
+  k->n /= 2;
+  for (size_t i = 0; i < k->n; ++i)
+    k->at[i] = k->at[2 * i];
 }
 
-static bool keep_one(match_chart *c, const match_scene *s, const ef_match *m) {
-  if (c->n == c->room) {
-    const size_t room = 2 * c->room + 256;
-    kept_colour *grown = realloc(c->colour, room * sizeof *grown);
+static bool keep_one(match_chart *c, const match_scene *s, const ef_match *m,
+                     size_t order) {
+  kept_colours *k = &c->kept[m->in_gamut];
+  const size_t number = k->n_seen++;
+  if (number % k->stride != 0)
+    return true;
+  if (k->n == MOST_KEPT)
+    halve(k);
+  if (number % k->stride != 0)
+    return true;
+  if (k->n == k->room) {
+    const size_t room = 2 * k->room + 256;
+    kept_colour *grown = realloc(k->at, room * sizeof *grown);
     if (grown == NULL)
       return false;
-    c->colour = grown;
-    c->room = room;
+    k->at = grown;
+    k->room = room;
   }
-  c->colour[c->n++] =
-      (kept_colour){m->target, match_achieved(s, m)->xyz, m->in_gamut};
+  k->at[k->n++] =
+      (kept_colour){m->target, match_achieved(s, m)->xyz, order};
   return true;
 }
 
@@ -131,12 +147,7 @@ static ef_status collect(void *self, const match_scene *s,
       c->name[order] = strdup(rows->name[i]);
       complete = c->name[order] != NULL;
     }
-    if (order % c->stride != 0)
-      continue;
-    if (c->n == MOST_KEPT)
-      halve(c);
-    if (order % c->stride == 0)
-      complete = complete && keep_one(c, s, &rows->match[i]);
+    complete = complete && keep_one(c, s, &rows->match[i], order);
   }
   if (complete)
     return EF_OK;
@@ -155,12 +166,13 @@ static bool is_near(const diagram *d, const kept_colour *k, double L_star) {
 static ef_status add_pairs(diagram *d, const match_chart *c, bool in_gamut,
                            double L_star, double *coordinate, const char **label,
                            ef_error *error) {
-  double *const at[4] = {coordinate, coordinate + c->n, coordinate + 2 * c->n,
-                         coordinate + 3 * c->n};
+  const kept_colours *kept = &c->kept[in_gamut];
+  double *const at[4] = {coordinate, coordinate + kept->n,
+                         coordinate + 2 * kept->n, coordinate + 3 * kept->n};
   size_t n = 0;
-  for (size_t i = 0; i < c->n; ++i) {
-    const kept_colour *k = &c->colour[i];
-    if (k->in_gamut != in_gamut || !is_near(d, k, L_star))
+  for (size_t i = 0; i < kept->n; ++i) {
+    const kept_colour *k = &kept->at[i];
+    if (!is_near(d, k, L_star))
       continue;
     const ef_xy target = diagram_point(d->plane, k->target, d->white);
     const ef_xy shown = diagram_point(d->plane, k->shown, d->white);
@@ -168,7 +180,7 @@ static ef_status add_pairs(diagram *d, const match_chart *c, bool in_gamut,
     at[1][n] = target.y;
     at[2][n] = shown.x;
     at[3][n] = shown.y;
-    label[n] = c->n_seen <= MOST_NAMED ? c->name[i] : NULL;
+    label[n] = c->n_seen <= MOST_NAMED ? c->name[k->order] : NULL;
     ++n;
   }
   ef_series pairs = ef_series_default(EF_SERIES_PAIRS);
@@ -203,8 +215,10 @@ static ef_status add_frame(diagram *d, const match_chart *c,
 
 static ef_status add_all(diagram *d, const match_chart *c, const match_scene *s,
                          match_view view, ef_error *error) {
-  double *coordinate = malloc(4 * (c->n + 1) * sizeof *coordinate);
-  const char **label = malloc((c->n + 1) * sizeof *label);
+  const size_t most =
+      (c->kept[0].n > c->kept[1].n ? c->kept[0].n : c->kept[1].n) + 1;
+  double *coordinate = malloc(4 * most * sizeof *coordinate);
+  const char **label = malloc(most * sizeof *label);
   ef_status status = EF_OK;
   if (coordinate == NULL || label == NULL)
     status = message_fail(error, EF_NO_MEMORY, "out of memory for the chart");
@@ -260,9 +274,26 @@ static void add_people(text *subtitle, const match_chart *c,
     text_format(subtitle, "; the %zu targets with the largest differences", most);
 }
 
+void match_chart_thinned_words(text *about, const match_chart *c) {
+  const char *before = "";
+  for (int in_gamut = 1; in_gamut >= 0; --in_gamut) {
+    const kept_colours *k = &c->kept[in_gamut];
+    if (k->stride > 1) {
+      text_format(about, "%sof %zu targets %s one in %zu is taken", before,
+                  k->n_seen, in_gamut == 1 ? "in gamut" : "out of gamut",
+                  k->stride);
+      before = ", ";
+    }
+  }
+}
+
+static bool is_thinned(const match_chart *c) {
+  return c->kept[0].stride > 1 || c->kept[1].stride > 1;
+}
+
 /* "Off by 2.38 ..." is in the text; a chart says what it shows. */
 static void describe(text *subtitle, const match_chart *c, const match_scene *s,
-                     const match_summary *sum, match_view view) {
+                     match_view view) {
   text_format(subtitle, "%s; targets: %s (%s)",
               ef_device_name(s->device.device), s->targets.about,
               s->target_source);
@@ -274,9 +305,10 @@ static void describe(text *subtitle, const match_chart *c, const match_scene *s,
   }
   if (view.has_people && s->seen.people.population != NULL)
     add_people(subtitle, c, s, view);
-  if (c->stride > 1)
-    text_format(subtitle, "; of %zu targets each %zuth is taken", sum->n,
-                c->stride);
+  if (is_thinned(c)) {
+    text_add(subtitle, "; ");
+    match_chart_thinned_words(subtitle, c);
+  }
 }
 
 void match_chart_people_words(text *about) {
@@ -316,7 +348,7 @@ static ef_status end(void *self, const match_scene *s, const match_summary *sum,
   const match_view view = {plane, L_star, true};
   ef_chart_settings settings = diagram_settings(plane);
   text title = {0}, subtitle = {0}, about = {0};
-  describe(&subtitle, c, s, sum, view);
+  describe(&subtitle, c, s, view);
   name_chart(&title, &about, sum, plane,
              subtitle.bytes != NULL ? subtitle.bytes : "");
   settings.title = title.bytes;

@@ -32,7 +32,9 @@ ef_status match_chart_draw(const match_chart *c, const match_scene *s,
 ef_status match_chart_draw_people(match_chart *c, const match_scene *s,
                                   const ef_chart_settings *settings,
                                   diagram *out, ef_error *error);
-/** What that shows, in words. */
+/** Which of very many targets are drawn; nothing where all are. */
+void match_chart_thinned_words(text *about, const match_chart *c);
+/** What that of people shows, in words. */
 void match_chart_people_words(text *about);
 /** Targets within so many units of lightness stand beside a section. */
 #define MATCH_SECTION_REACH 5.0

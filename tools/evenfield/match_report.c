@@ -166,6 +166,14 @@ static ef_status add_charts(const match_report *r, const match_scene *s,
                             const match_summary *sum, const report *page,
                             ef_error *error) {
   ef_report_section(page->page, "Where the targets lie");
+  text thinned = {0};
+  match_chart_thinned_words(&thinned, r->chart);
+  if (thinned.bytes != NULL) {
+    text_add(&thinned, ".");
+    thinned.bytes[0] = 'O'; /* the sentence begins with "of" */
+    ef_report_paragraph(page->page, thinned.bytes);
+  }
+  text_free(&thinned);
   ef_status status = add_chart(
       r, s, page, all_in(PLANE_UV),
       "Chromaticity u\xE2\x80\xB2, v\xE2\x80\xB2",
