@@ -270,6 +270,30 @@ static ef_status pick(const device_basis *b, paints *own, ef_error *error) {
   return EF_OK;
 }
 
+/* A recipe has three: who has more must choose. */
+static ef_status check_count(const paints *own, bool is_film, const char *file,
+                             ef_error *error) {
+  const char *name[3] = {NULL};
+  size_t n = 0;
+  if (own->base == SIZE_MAX && !is_film)
+    return EF_OK; /* no mixture at all, as will be said */
+  for (size_t i = 0; i < ef_colourants_count(own->set); ++i) {
+    if (i == own->base)
+      continue;
+    if (n < 3)
+      name[n] = ef_colourants_name(own->set, i);
+    ++n;
+  }
+  if (n <= 3)
+    return EF_OK;
+  message_fail(error, EF_NO_ANSWER,
+               "there are %zu colourants%s, and a recipe is found for three: "
+               "choose them, for instance --use %.60s,%.60s,%.60s",
+               n, own->base != SIZE_MAX ? " beside the base" : "", name[0],
+               name[1], name[2]);
+  return message_place(error, file);
+}
+
 static ef_status set_substrate(const device_basis *b, paints *own,
                                ef_error *error) {
   const command_options *o = b->options;
@@ -365,6 +389,8 @@ static ef_status load(const device_basis *b, chosen_device *out,
     status = read_set(b, out, name, error);
   if (status == EF_OK)
     status = pick(b, own, error);
+  if (status == EF_OK)
+    status = check_count(own, !isnan(o->film), out->source, error);
   if (status == EF_OK)
     status = set_substrate(b, own, error);
   if (status != EF_OK)
