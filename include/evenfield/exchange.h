@@ -84,7 +84,8 @@ typedef struct ef_reader ef_reader;
  * `angle`) for one of several angles at which a sample was measured (not in
  * long spectra). Case counts: x is not X. Where several sets are there, spectra
  * come first, then X,Y,Z, x,y,Y, L,a,b; columns that are not used are noted.
- * Comment lines above the header `# title:`, `# quantity:`, `# unit:`, `# device_max:` are understood.
+ * Comment lines above the header `# title:`, `# quantity:`, `# unit:`,
+ * `# device_max:`, `# illuminant:`, `# observer:` are understood.
  *
  * Also the text form of CGATS.17 and ISO 28178, known by its first word or by a
  * BEGIN_DATA_FORMAT among the first bytes, and held whole (at most 256 MiB): the
@@ -93,8 +94,9 @@ typedef struct ef_reader ef_reader;
  * or 400 and their like, or as pairs SPECTRAL_NM with SPECTRAL_PCT or
  * SPECTRAL_DEC. Inks are percent; spectra are reflectances (of R,G,B files what
  * their values tell), and percent where a value is above 2, with a note; full
- * drive of R,G,B is 1, 100 or 255, whichever the largest value reaches, with a
- * note. NUMBER_OF_FIELDS and NUMBER_OF_SETS must be right where they are there.
+ * drive of R,G,B is that of a keyword DEVICE_MAX (ours), else 1, 100 or 255,
+ * whichever the largest value reaches, with a note. ILLUMINANT and OBSERVER, also as WEIGHTING_FUNCTION, are told as they
+ * are. NUMBER_OF_FIELDS and NUMBER_OF_SETS must be right where they are there.
  *
  * Kind rule: the settings; else a quantity line that says reflectance,
  * radiance factor, transmittance (surface) or radiance, power, light
@@ -122,6 +124,9 @@ EF_API void ef_reader_free(ef_reader *reader);
 typedef struct ef_reader_head {
   const char *file;
   const char *title;       /**< of the `# title:` line, "" if none */
+  /** The light and the observer that the file says its colours are of, in its
+   * own words, "" if none; readers make nothing of them. */
+  const char *illuminant, *observer;
   ef_content content;
   size_t width;            /**< values per row: samples, or 3; 0 where there
                                 are device values only */

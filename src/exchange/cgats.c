@@ -200,7 +200,8 @@ typedef struct preamble {
   size_t n_sets, sets_line;     /* SIZE_MAX: not said */
   ef__span *name;
   size_t n_names, name_room, format_line;
-  ef__span title, illuminant;
+  ef__span title, illuminant, observer, device_max;
+  size_t device_max_line;
 } preamble;
 
 static ef_status read_count(scanner *s, const char *keyword, size_t *count,
@@ -274,15 +275,16 @@ static ef_status read_value(scanner *s, ef__span *value, ef_error *error) {
   return EF_OK;
 }
 
-/* `ILLUMINANT, D50` of a WEIGHTING_FUNCTION. */
-static void weighting(preamble *p, ef__span value) {
-  static const char key[] = "ILLUMINANT,";
-  if (value.text == NULL || value.length <= sizeof key - 1 ||
-      memcmp(value.text, key, sizeof key - 1) != 0) {
+/* What stands behind the key of a WEIGHTING_FUNCTION, such as `ILLUMINANT,
+ * D50`. */
+static void weighting(const char *key, ef__span value, ef__span *kept) {
+  const size_t length = strlen(key);
+  if (value.text == NULL || value.length <= length ||
+      memcmp(value.text, key, length) != 0) {
     return;
   }
-  p->illuminant = ef__span_trim((ef__span){
-      value.text + sizeof key - 1, value.length - (sizeof key - 1)});
+  *kept = ef__span_trim(
+      (ef__span){value.text + length, value.length - length});
 }
 
 static ef_status read_keyword(scanner *s, preamble *p, ef_error *error) {
@@ -302,9 +304,15 @@ static ef_status read_keyword(scanner *s, preamble *p, ef_error *error) {
     return read_value(s, &p->title, error);
   }
   if (is_word(s, "ILLUMINANT")) return read_value(s, &p->illuminant, error);
+  if (is_word(s, "OBSERVER")) return read_value(s, &p->observer, error);
+  if (is_word(s, "DEVICE_MAX")) {
+    p->device_max_line = s->word_line;
+    return read_value(s, &p->device_max, error);
+  }
   if (is_word(s, "WEIGHTING_FUNCTION")) {
     const ef_status status = read_value(s, &ignored, error);
-    weighting(p, ignored);
+    weighting("ILLUMINANT,", ignored, &p->illuminant);
+    weighting("OBSERVER,", ignored, &p->observer);
     return status;
   }
   return EF_OK;
@@ -518,15 +526,19 @@ static ef_status keep_text(char **kept, ef__span text, ef_error *error) {
   return *kept != NULL ? EF_OK : ef__error_memory(error, "the preamble");
 }
 
-/* Inks are percent and their spectra reflectances by the standard; full drive
- * of RGB is what the largest value tells. */
-static ef_status keep_remarks(const preamble *p, const survey *found,
-                              ef__table *table, ef_error *error) {
+/* Full drive: as the file says, else percent of inks by the standard, and of
+ * RGB what the largest value tells. "" where there are none. */
+static ef_status keep_device_max(const preamble *p, const survey *found,
+                                 ef__table *table, ef_error *error) {
   ef__remarks *const remarks = &table->remarks;
   const bool is_ink = has_field(p, "CMYK_C") || has_field(p, "CMY_C");
-  const bool is_rgb = has_field(p, "RGB_R");
   const char *most = is_ink ? "100" : "";
-  if (is_rgb) {
+  remarks->device_max_line = p->format_line;
+  if (p->device_max.text != NULL) {
+    remarks->device_max_line = p->device_max_line;
+    return keep_text(&remarks->device_max, p->device_max, error);
+  }
+  if (has_field(p, "RGB_R")) {
     most = found->most_rgb <= 1     ? "1"
            : found->most_rgb <= 100 ? "100"
                                     : "255";
@@ -534,7 +546,21 @@ static ef_status keep_remarks(const preamble *p, const survey *found,
              "%s: R,G,B read as 0 to %s: the largest value tells",
              table->records.input->name, most);
   }
+  return keep_text(&remarks->device_max, ef__span_of(most), error);
+}
+
+/* Spectra beside inks are reflectances by the standard. */
+static ef_status keep_remarks(const preamble *p, const survey *found,
+                              ef__table *table, ef_error *error) {
+  ef__remarks *const remarks = &table->remarks;
+  const bool is_rgb = has_field(p, "RGB_R");
   ef_status status = keep_text(&remarks->title, p->title, error);
+  if (status == EF_OK) {
+    status = keep_text(&remarks->illuminant, p->illuminant, error);
+  }
+  if (status == EF_OK) {
+    status = keep_text(&remarks->observer, p->observer, error);
+  }
   if (status == EF_OK) {
     status = keep_text(&remarks->quantity,
                        ef__span_of(is_rgb ? "" : "reflectance"), error);
@@ -543,25 +569,14 @@ static ef_status keep_remarks(const preamble *p, const survey *found,
     const char *const unit = is_percent(p, found, table) ? "percent" : "";
     status = keep_text(&remarks->unit, ef__span_of(unit), error);
   }
-  if (status == EF_OK) {
-    status = keep_text(&remarks->device_max, ef__span_of(most), error);
-  }
-  remarks->device_max_line = p->format_line;
-  return status;
+  return status == EF_OK ? keep_device_max(p, found, table, error) : status;
 }
 
-static void note_rest(const preamble *p, const survey *found,
-                      const ef__table *table) {
-  const char *const name = table->records.input->name;
-  if (p->illuminant.text != NULL) {
-    ef__note(table->notes, "%s: says ILLUMINANT %.*s", name,
-             (int)(p->illuminant.length < 60 ? p->illuminant.length : 60),
-             p->illuminant.text);
-  }
+static void note_rest(const survey *found, const ef__table *table) {
   if (found->other_line > 0) {
     ef__note(table->notes,
              "%s:%zu: a further table starts here; only the first is read",
-             name, found->other_line);
+             table->records.input->name, found->other_line);
   }
 }
 
@@ -611,7 +626,7 @@ static ef_status prepare(scanner *s, const preamble *p, ef__table *table,
   if (status == EF_OK) status = name_columns(p, cgats, table, error);
   if (status == EF_OK) status = keep_remarks(p, &found, table, error);
   if (status != EF_OK) return status;
-  note_rest(p, &found, table);
+  note_rest(&found, table);
   return EF_OK;
 }
 

@@ -27,9 +27,11 @@ static ef_status read_device_max(ef_reader *reader, ef_error *error) {
   }
   char quoted[EF__QUOTED];
   ef__error_set(error, EF_MALFORMED,
-                "found %s behind '# device_max:', expected a number above "
+                "found %s behind %s, expected a number above "
                 "zero, such as 255",
-                ef__quote(text, quoted));
+                ef__quote(text, quoted),
+                reader->table.records.cgats != NULL ? "DEVICE_MAX"
+                                                    : "'# device_max:'");
   ef__error_place(error, file_name(reader), remarks->device_max_line, 0, NULL);
   return EF_MALFORMED;
 }

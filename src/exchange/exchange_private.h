@@ -149,7 +149,7 @@ ef_status ef__records_error(const ef__records *records, size_t field,
 
 /** What "# key: text" lines above the header row say; "" where nothing. */
 typedef struct ef__remarks {
-  char *title, *quantity, *unit, *device_max;
+  char *title, *quantity, *unit, *device_max, *illuminant, *observer;
   size_t device_max_line;
 } ef__remarks;
 

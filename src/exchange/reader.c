@@ -225,6 +225,8 @@ static void fill_head(ef_reader *reader) {
   ef_reader_head *const head = &reader->head;
   head->file = reader->table.records.input->name;
   head->title = reader->table.remarks.title;
+  head->illuminant = reader->table.remarks.illuminant;
+  head->observer = reader->table.remarks.observer;
   head->content = layout->content;
   head->width = reader->rows.width;
   head->kind = reader->limits.kind;

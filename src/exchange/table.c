@@ -65,13 +65,20 @@ static ef_status read_remark(ef__table *table, ef_error *error) {
     status = keep_remark(table, "device_max", &remarks->device_max,
                          &is_device_max, error);
   }
+  if (status == EF_OK) {
+    status = keep_remark(table, "illuminant", &remarks->illuminant, NULL, error);
+  }
+  if (status == EF_OK) {
+    status = keep_remark(table, "observer", &remarks->observer, NULL, error);
+  }
   if (is_device_max) remarks->device_max_line = table->records.line;
   return status;
 }
 
 static ef_status complete_remarks(ef__remarks *remarks, ef_error *error) {
   char **const texts[] = {&remarks->title, &remarks->quantity, &remarks->unit,
-                          &remarks->device_max};
+                          &remarks->device_max, &remarks->illuminant,
+                          &remarks->observer};
   for (size_t i = 0; i < sizeof texts / sizeof *texts; ++i) {
     if (*texts[i] == NULL) *texts[i] = ef__copy_text("", 0);
     if (*texts[i] == NULL) return ef__error_memory(error, "comment lines");
@@ -290,6 +297,8 @@ void ef__table_clear(ef__table *table) {
   free(table->remarks.quantity);
   free(table->remarks.unit);
   free(table->remarks.device_max);
+  free(table->remarks.illuminant);
+  free(table->remarks.observer);
   free(table->column);
   *table = (ef__table){0};
 }

@@ -232,6 +232,8 @@ static void write_cgats(gen *g, size_t n_rows, size_t n_samples, double *ink,
   ef_output *const output = ef_output_open(path, true, NULL);
   ef_cgats *const cgats = ef_cgats_new(output, NULL);
   ef_cgats_keyword(cgats, "FILE_DESCRIPTOR", "random");
+  ef_cgats_keyword(cgats, "WEIGHTING_FUNCTION", "ILLUMINANT, D50");
+  ef_cgats_keyword(cgats, "OBSERVER", "2 degree");
   ef_cgats_field(cgats, "SAMPLE_NAME");
   for (int i = 0; i < 4; ++i)
     ef_cgats_field(cgats, inks[i]);
@@ -271,6 +273,8 @@ static void cgats_reads_back(void **state) {
     fail_msg("%zu: %s", error.line, error.message);
   const ef_reader_head *const head = ef_reader_get_head(reader);
   assert_string_equal(head->title, "random");
+  assert_string_equal(head->illuminant, "D50");
+  assert_string_equal(head->observer, "2 degree");
   assert_int_equal(head->n_device, 4);
   assert_int_equal(head->kind, EF_SURFACE);
   assert_int_equal(head->grid.count, N_SAMPLES);

@@ -116,6 +116,10 @@ static exit_code check_picture(const command_options *o) {
                          "write, as in `evenfield profile convert --to p3-d65 "
                          "in.png out.png`");
   }
+  if (o->format == FORMAT_CGATS) {
+    return message_usage("--format cgats is for lists of colours, not for "
+                         "pictures");
+  }
   if (strcmp(o->to, "xyz") == 0 || strcmp(o->to, "lab") == 0)
     return message_usage("--to of a picture is an RGB profile, not %s", o->to);
   if (o->illuminant != NULL || o->adaptation != NULL) {
@@ -200,6 +204,10 @@ static exit_code check_options(const command_options *o, size_t v) {
     if (some[i].is_given && !(some[i].verbs & verbs[v].bit))
       return message_usage("--%s is not for profile %s", some[i].name,
                            verbs[v].name);
+  }
+  if (o->format == FORMAT_CGATS && verbs[v].bit != VERB_CONVERT) {
+    return message_usage("--format cgats is for profile convert: a list of "
+                         "colours");
   }
   return EXIT_DONE;
 }

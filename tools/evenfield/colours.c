@@ -2,6 +2,7 @@
 #include "colours.h"
 
 #include <string.h>
+#include <strings.h>
 
 #include "message.h"
 
@@ -16,6 +17,42 @@ ef_status colour_basis_init(colour_basis *basis, const ef_observer *observer,
   *basis = (colour_basis){observer, illuminant,
                           (ef_xyz){white[0], white[1], white[2]}};
   return EF_OK;
+}
+
+/* Our name for an observer in a file's words: "2 degree", "CIE 1964" ...; NULL
+ * when it could be another. */
+static const char *observer_named(const char *words) {
+  if (strstr(words, "2015") != NULL || strstr(words, "2006") != NULL)
+    return NULL;
+  if (strstr(words, "1931") != NULL || strncmp(words, "2", 1) == 0)
+    return "cie-1931";
+  if (strstr(words, "1964") != NULL || strncmp(words, "10", 2) == 0)
+    return "cie-1964";
+  return NULL;
+}
+
+void colours_note_basis(const ef_reader_head *head, const ef_observer *observer,
+                        const ef_illuminant *illuminant,
+                        const ef_notes *notes) {
+  const char *light = ef_illuminant_name(illuminant);
+  const char *eyes = ef_observer_name(observer);
+  const char *what = ef_content_text(head->content);
+  if (head->content == EF_CONTENT_SPECTRA || head->kind == EF_LIGHT)
+    return;
+  if (head->illuminant[0] != '\0' && strcasecmp(head->illuminant, light) != 0) {
+    message_note(notes,
+                 "%s: says that its light is %.60s, and its %s are read as of "
+                 "%s; --illuminant names another",
+                 head->file, head->illuminant, what, light);
+  }
+  const char *named = observer_named(head->observer);
+  if (head->observer[0] != '\0' &&
+      (named == NULL || strcmp(named, eyes) != 0)) {
+    message_note(notes,
+                 "%s: says that its observer is %.60s, and its %s are read as "
+                 "of %s; --observer names another",
+                 head->file, head->observer, what, eyes);
+  }
 }
 
 ef_status colours_init(colours *c, const colour_basis *basis,
@@ -44,8 +81,10 @@ ef_status colours_init(colours *c, const colour_basis *basis,
     message_note(notes, "%s: the device values are not used, only %s",
                  head->file, ef_content_text(head->content));
   }
-  if (head->content != EF_CONTENT_SPECTRA)
+  if (head->content != EF_CONTENT_SPECTRA) {
+    colours_note_basis(head, basis->observer, basis->illuminant, notes);
     return EF_OK;
+  }
   ef_viewing viewing =
       ef_viewing_default(head->kind == EF_SURFACE ? basis->illuminant : NULL);
   viewing.absolute = head->kind == EF_LIGHT && head->absolute;

@@ -35,6 +35,10 @@ ef_status colours_init(colours *c, const colour_basis *basis,
                        const ef_reader_head *head, const ef_notes *notes,
                        ef_error *error);
 void colours_free(colours *c);
+/** Notes where a file says that its colours (not spectra) are of another light
+ * or observer than they are read as. */
+void colours_note_basis(const ef_reader_head *head, const ef_observer *observer,
+                        const ef_illuminant *illuminant, const ef_notes *notes);
 /** n rows to n x 3 tristimulus values. */
 ef_status colours_xyz(const colours *c, size_t n, const double *value, int jobs,
                       double *xyz, ef_error *error);

@@ -70,6 +70,8 @@ struct chosen_device {
    * 1/n_steps; 0 and 0: any. What a step is called: "1 %", "0.5 g". */
   int bits, n_steps;
   char step[24];
+  bool has_black;       /**< a fourth ink, which stays as it is */
+  double black_percent; /**< of it */
   void *own; /**< what the kind knows beside */
 };
 

@@ -142,12 +142,16 @@ static ef_status load_rows(const device_basis *b, const ef_reader_head *head,
   inks *own = out->own;
   own->content = head->content;
   own->n_rows = r->n;
+  out->has_black = head->n_device == 4;
+  out->black_percent =
+      isnan(b->options->black_percent) ? 0.0 : b->options->black_percent;
   if (head->content != EF_CONTENT_SPECTRA) {
     message_note(b->notes,
                  "%s: its %s are taken as of the observer cie-1931 and under "
                  "%s, the light of --illuminant",
                  head->file, ef_content_text(head->content),
                  ef_illuminant_name(b->illuminant));
+    colours_note_basis(head, b->observer, b->illuminant, b->notes);
   }
   ef_status status = EF_OK;
   if (head->content != EF_CONTENT_SPECTRA && head->content != EF_CONTENT_XYZ)

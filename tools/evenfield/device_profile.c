@@ -75,6 +75,8 @@ static ef_status load(const device_basis *b, chosen_device *out,
   own->settings.notes = b->notes;
   out->device = ef_profile_device(own->profile, &own->settings, error);
   out->is_subtractive = is_ink(own);
+  out->has_black = own->info.n_channels == 4;
+  out->black_percent = 100.0 * own->settings.black;
   set_steps(o, own, out);
   return out->device != NULL ? EF_OK : error->status;
 }

@@ -31,7 +31,7 @@ typedef enum output_format {
   FORMAT_TEXT,
   FORMAT_CSV,
   FORMAT_JSON,
-  FORMAT_CGATS /**< of match */
+  FORMAT_CGATS /**< of match and profile convert */
 } output_format;
 
 /** Values of an option that may be given more than once. */

@@ -675,9 +675,13 @@ static const option_row table[] = {
      "text for people, csv and json for programs; cgats: the values to show or "
      "print and their colours in the text form of CGATS.17 (ISO 28178); "
      "default text"},
+    {"format", "text|csv|json|cgats", COMMAND_PROFILE, TYPE_CHOICE,
+     FIELD(format), 0, 0, match_formats,
+     "text for people, csv and json for programs; cgats: converted colours in "
+     "the text form of CGATS.17 (ISO 28178); default text"},
     {"format", "text|csv|json",
-     EVERY & ~(unsigned)(COMMAND_OBSERVER | COMMAND_MATCH), TYPE_CHOICE,
-     FIELD(format), 0, 0, formats,
+     EVERY & ~(unsigned)(COMMAND_OBSERVER | COMMAND_MATCH | COMMAND_PROFILE),
+     TYPE_CHOICE, FIELD(format), 0, 0, formats,
      "text for people, csv and json for programs; default text"},
     {"output", "PATH", EVERY, TYPE_TEXT, FIELD(output), 0, 0, NULL,
      "the file for the result; default standard output"},

@@ -324,6 +324,8 @@ ef_status render_conversion(conversion *c, ef_output *output,
     return as_csv(c, output, sum, error);
   case FORMAT_JSON:
     return as_json(c, output, sum, error);
+  case FORMAT_CGATS:
+    return render_conversion_cgats(c, output, sum, error);
   default:
     return as_text(c, output, sum, error);
   }

@@ -14,9 +14,17 @@ struct match_list {
   size_t n;
 };
 
+/* Percent of ink; of lights the highest code, as far as there are codes. */
+static double full_drive(const match_scene *s) {
+  if (s->device.is_subtractive)
+    return 100.0;
+  return s->device.bits > 0 ? (double)((1 << s->device.bits) - 1) : 255.0;
+}
+
 static ef_status begin(void *self, const match_scene *s, ef_error *error) {
   static const char *const rgb[] = {"RGB_R", "RGB_G", "RGB_B"};
   static const char *const cmy[] = {"CMY_C", "CMY_M", "CMY_Y"};
+  static const char *const cmyk[] = {"CMYK_C", "CMYK_M", "CMYK_Y"};
   static const char *const colour[] = {"XYZ_X", "XYZ_Y", "XYZ_Z",
                                        "LAB_L", "LAB_A", "LAB_B"};
   match_list *l = self;
@@ -34,26 +42,38 @@ static ef_status begin(void *self, const match_scene *s, ef_error *error) {
   /* The same targets give the same file. */
   ef_cgats_keyword(l->cgats, "CREATED", "date not recorded");
   char light[120];
-  if (ef_device_reflects(s->device.device)) {
+  const bool reflects = ef_device_reflects(s->device.device);
+  if (reflects || s->device.kind == &device_profile) {
+    /* Profiles know their device's colours under D50. */
     snprintf(light, sizeof light, "ILLUMINANT, %.100s",
-             ef_illuminant_name(s->illuminant));
+             reflects ? ef_illuminant_name(s->illuminant) : "D50");
     ef_cgats_keyword(l->cgats, "WEIGHTING_FUNCTION", light);
+  }
+  if (!s->device.is_subtractive) {
+    /* A keyword of our own, announced as the standard wants it: nothing else
+     * tells codes from percent. */
+    char most[EF_NUMBER_TEXT];
+    ef_number_format(full_drive(s), most);
+    ef_cgats_keyword(l->cgats, "KEYWORD", "DEVICE_MAX");
+    ef_cgats_keyword(l->cgats, "DEVICE_MAX", most);
   }
   ef_cgats_field(l->cgats, "SAMPLE_ID");
   ef_cgats_field(l->cgats, "SAMPLE_NAME");
   for (size_t i = 0; i < 3; ++i)
-    ef_cgats_field(l->cgats, s->device.is_subtractive ? cmy[i] : rgb[i]);
+    ef_cgats_field(l->cgats, s->device.has_black        ? cmyk[i]
+                             : s->device.is_subtractive ? cmy[i]
+                                                        : rgb[i]);
+  if (s->device.has_black)
+    ef_cgats_field(l->cgats, "CMYK_K");
   for (size_t i = 0; i < 6; ++i)
     ef_cgats_field(l->cgats, colour[i]);
   return EF_OK;
 }
 
-/* Percent of ink; of lights the code, as far as there are codes. */
 static double value_of(const match_scene *s, const ef_match *m, size_t i) {
-  const ef_shown *shown = match_achieved(s, m);
-  if (s->device.is_subtractive)
-    return 100.0 * shown->drive[i];
-  return s->device.bits > 0 ? (double)m->code[i] : 255.0 * shown->drive[i];
+  return !s->device.is_subtractive && s->device.bits > 0
+             ? (double)m->code[i]
+             : full_drive(s) * match_achieved(s, m)->drive[i];
 }
 
 static ef_status add_rows(void *self, const match_scene *s,
@@ -71,6 +91,8 @@ static ef_status add_rows(void *self, const match_scene *s,
     ef_cgats_text(l->cgats, rows->name[k]);
     for (size_t i = 0; i < 3; ++i)
       ef_cgats_number(l->cgats, value_of(s, m, i));
+    if (s->device.has_black)
+      ef_cgats_number(l->cgats, s->device.black_percent);
     for (size_t i = 0; i < 6; ++i)
       ef_cgats_number(l->cgats, colour[i]);
     ef_cgats_end_row(l->cgats);
