@@ -13,7 +13,7 @@
 /* Read at a time. Of bsq each band is a read of its own, and those have to be
  * long enough: 1 MiB of 200 bands would be 5 kB each. */
 #define SPAN_BYTES ((size_t)1 << 20)
-#define SPAN_BYTES_BSQ ((size_t)8 << 20)
+#define SPAN_BYTES_BSQ ((size_t)2 << 20)
 
 struct ef_cube_window {
   const ef_cube *cube;
@@ -275,7 +275,7 @@ static size_t band_place(const ef_cube_window *w, const run *r, size_t k) {
   return (is_bsq ? k : w->band[k] - w->low) * r->band_step;
 }
 
-enum { TILE = 16 }; /* pixels whose samples stay in the first-level cache */
+enum { TILE = 32 }; /* pixels whose samples stay in the first-level cache */
 
 /* name(w, i, n, out): values of type FROM as type TO. Pixels that lie side by
  * side are taken in squares, so that both sides are read and written in whole
