@@ -5,6 +5,7 @@
 #include <unistd.h>
 
 #include <evenfield/image.h>
+#include <evenfield/picture.h>
 
 #include "gen.h"
 #include "near.h"
@@ -247,6 +248,241 @@ static void maps_are_told_apart(void **state) {
   assert_int_equal(ef_map_class(NOT_A_NUMBER), 0);
 }
 
+/* ---- Two pictures -------------------------------------------------------- */
+
+static int by_size(const void *a, const void *b) {
+  const double x = *(const double *)a, y = *(const double *)b;
+  return (x > y) - (x < y);
+}
+
+/* Colour of a pixel of an encoding by its own definition: curve, matrix, and
+ * linear Bradford to D50 (IEC 61966-2-1, ICC.1 annex E). */
+static ef_xyz plain_xyz(const ef_encoding *encoding, const uint16_t *code) {
+  double level[3], m[9], adapt[9];
+  ef_tone_curve *curve = ef_tone_curve_new(encoding->tone, NULL);
+  for (int c = 0; c < 3; ++c)
+    level[c] = 100.0 * ef_tone_curve_amount(curve, code[c] / 65535.0, NULL);
+  ef_tone_curve_free(curve);
+  assert_int_equal(ef_encoding_matrix(encoding, m, NULL), EF_OK);
+  const ef_xyz white = ef_xyy_to_xyz(
+      (ef_xyy){encoding->white.x, encoding->white.y, 100.0});
+  assert_int_equal(ef_adaptation_matrix(EF_ADAPT_BRADFORD, white,
+                                        (ef_xyz){96.42, 100.0, 82.49}, adapt,
+                                        NULL),
+                   EF_OK);
+  return ef_xyz_transform(
+      adapt,
+      (ef_xyz){m[0] * level[0] + m[1] * level[1] + m[2] * level[2],
+               m[3] * level[0] + m[4] * level[1] + m[5] * level[2],
+               m[6] * level[0] + m[7] * level[1] + m[8] * level[2]});
+}
+
+static double plain_difference(const ef_metric *metric, ef_xyz a, ef_xyz b) {
+  const ef_conditions conditions =
+      ef_conditions_default((ef_xyz){96.42, 100.0, 82.49});
+  double p[3], q[3];
+  ef_metric_coordinates(metric, a, &conditions, p);
+  ef_metric_coordinates(metric, b, &conditions, q);
+  return ef_metric_difference(metric, p, q);
+}
+
+/* A picture in one encoding, and nearly the same codes in another. */
+static void write_two(uint16_t other[N], int bits, const char *second) {
+  static const int codes[2][2] = {{1, 13}, {9, 13}};
+  const ef_png_tags tags[2] = {{codes[0][0], codes[0][1], NULL, NULL, 0},
+                               {codes[1][0], codes[1][1], NULL, NULL, 0}};
+  gen g = gen_new(19);
+  fill_samples(bits);
+  written("a.png", bits, &tags[0]);
+  memcpy(other, sample, sizeof sample);
+  for (size_t i = 0; i < N; i += 1 + gen_below(&g, 9))
+    sample[i] = (uint16_t)((gen_bits(&g) & 255) * 257);
+  written("b.png", bits, &tags[strcmp(second, "bt2020") == 0]);
+}
+
+static void check_comparison(const char *name, int bits, const char *second) {
+  uint16_t a[N];
+  double expected[N / 3], jnd = 1.5, sum = 0.0;
+  char path[SCRATCH_PATH];
+  ef_encoding wide = *ef_encoding_find(second, NULL);
+  wide.tone = "iec61966-2-1"; /* what cICP says: transfer 13 */
+  ef_metric *metric = ef_metric_new(name, NULL);
+  write_two(a, bits, second);
+  for (size_t i = 0; i < N / 3; ++i) {
+    expected[i] = plain_difference(
+        metric, plain_xyz(ef_encoding_find("srgb", NULL), a + 3 * i),
+        plain_xyz(&wide, sample + 3 * i));
+    sum += expected[i];
+  }
+  scratch_path("a.png", path);
+  ef_picture *first = ef_picture_open(path, NULL, NULL);
+  scratch_path("b.png", path);
+  ef_picture *other = ef_picture_open(path, NULL, NULL);
+  ef_comparison_settings how = ef_comparison_settings_default(metric, jnd);
+  how.tolerance = 6.0;
+  ef_comparison *c = ef_comparison_new(first, other, &how, NULL);
+  assert_non_null(c);
+  size_t above[2] = {0, 0}, largest = 0, n_cells = 0, n;
+  const double *row;
+  double seen[N / 3];
+  for (size_t y = 0; y < HEIGHT; ++y) {
+    assert_int_equal(ef_comparison_next_row(c, &row, NULL), EF_OK);
+    for (size_t x = 0; x < WIDTH; ++x) {
+      const size_t i = y * WIDTH + x;
+      seen[i] = row[x];
+      /* Profiles keep colours in steps of 1.5e-5 of the white, and lcms2 takes
+       * them through floats. */
+      assert_near(seen[i], expected[i], 0.02);
+      above[0] += seen[i] > jnd;
+      above[1] += seen[i] > 6.0;
+      largest = seen[i] > seen[largest] ? i : largest;
+    }
+  }
+  assert_int_equal(ef_comparison_next_row(c, &row, NULL), EF_OK);
+  assert_null(row);
+  const ef_comparison_totals t = ef_comparison_get_totals(c);
+  assert_int_equal(t.n_pixels, WIDTH * HEIGHT);
+  assert_int_equal(t.n_undefined, 0);
+  assert_int_equal(t.n_above_jnd, above[0]);
+  assert_int_equal(t.n_above_tolerance, above[1]);
+  assert_near(t.mean, sum / (WIDTH * HEIGHT), 0.02);
+  assert_near(t.largest, seen[largest], 0.0);
+  assert_int_equal(t.largest_y * WIDTH + t.largest_x, largest);
+  size_t cursor = 0;
+  double value, before = -1.0;
+  while (ef_comparison_next_cell(c, &cursor, &value, &n)) {
+    assert_true(value > before);
+    before = value;
+    n_cells += n;
+  }
+  assert_int_equal(n_cells, WIDTH * HEIGHT);
+  qsort(seen, N / 3, sizeof *seen, by_size);
+  for (int k = 1; k <= 20; ++k) {
+    const size_t at = (size_t)ceil(k / 20.0 * (N / 3)) - 1;
+    assert_near_relative(ef_comparison_quantile(c, k / 20.0), seen[at], 5e-4);
+  }
+  ef_comparison_free(c);
+  ef_picture_free(first);
+  ef_picture_free(other);
+  ef_metric_free(metric);
+}
+
+static void pictures_are_compared(void **state) {
+  (void)state;
+  check_comparison("ciede2000", 8, "srgb");
+  check_comparison("ciede2000", 16, "bt2020");
+  check_comparison("cam16-ucs", 16, "bt2020");
+  check_comparison("cmc:l=2,c=1", 8, "bt2020");
+}
+
+static void pictures_of_two_sizes_are_refused(void **state) {
+  (void)state;
+  const ef_png_tags tags = {.primaries = 1, .transfer = 13};
+  ef_error error = {0};
+  char path[SCRATCH_PATH];
+  fill_samples(8);
+  ef_picture *first = ef_picture_open(written("a.png", 8, &tags), NULL, NULL);
+  scratch_path("b.png", path);
+  assert_int_equal(ef_png_write(path, true, HEIGHT, WIDTH, 8, sample, &tags,
+                                NULL),
+                   EF_OK);
+  ef_picture *other = ef_picture_open(path, NULL, NULL);
+  ef_metric *metric = ef_metric_new("cielab", NULL);
+  const ef_comparison_settings how = ef_comparison_settings_default(metric, 1);
+  assert_null(ef_comparison_new(first, other, &how, &error));
+  assert_error(&error, EF_MALFORMED, "is 17 x 29 pixels, and ");
+  ef_picture_free(first);
+  ef_picture_free(other);
+  ef_metric_free(metric);
+}
+
+/* ---- The map of their differences ---------------------------------------- */
+
+static double map_value(size_t x, size_t y) {
+  return 0.1 * (double)(y * 40 + x);
+}
+
+static ef_status give_map(void *cookie, size_t y, const double **value,
+                          ef_error *error) {
+  static double row[40];
+  size_t *const n = cookie;
+  assert_int_equal(y, *n); /* in order, each once */
+  ++*n;
+  for (size_t x = 0; x < 40; ++x)
+    row[x] = map_value(x, y);
+  *value = row;
+  if (y < 5)
+    return EF_OK;
+  error->status = EF_MALFORMED;
+  return EF_MALFORMED;
+}
+
+static double lightness_at(const uint16_t *code) {
+  return ef_xyz_to_lab(plain_xyz(ef_encoding_find("srgb", NULL), code),
+                       (ef_xyz){96.42, 100.0, 82.49})
+      .L_star;
+}
+
+/* Darker from class to class by what an eye without colour sees easily; each
+ * pixel drawn as a square where it belongs; a key below. */
+static void a_map_gets_darker(void **state) {
+  (void)state;
+  char path[SCRATCH_PATH];
+  size_t n_rows = 0;
+  ef_difference_map map = {.width = 40, .height = 5, .jnd = 0.8,
+                           .symbol = "Delta E*00", .give = give_map,
+                           .cookie = &n_rows};
+  ef_difference_map_report report;
+  scratch_path("map.png", path);
+  assert_int_equal(ef_difference_map_write(path, false, &map, &report, NULL),
+                   EF_OK);
+  assert_int_equal(n_rows, 5);
+  assert_int_equal(report.factor, 4);
+  ef_png *png = ef_png_open(path, NULL, NULL);
+  const size_t width = ef_png_get_head(png)->width;
+  const size_t height = ef_png_get_head(png)->height;
+  assert_true(width == 640 && height > 80);
+  uint16_t *row = malloc(3 * width * sizeof *row);
+  double lightness[EF_DIFFERENCE_CLASSES] = {0};
+  bool has_row;
+  for (size_t y = 0; y < height; ++y) {
+    assert_int_equal(ef_png_next_row(png, row, &has_row, NULL), EF_OK);
+    for (size_t x = 0; y >= 11 && y < 31 && x < 160; ++x) {
+      const int k =
+          ef_difference_class(map_value(x / 4, (y - 11) / 4) / 0.8);
+      const double L_star = lightness_at(row + 3 * (11 + x));
+      if (lightness[k] > 0.0)
+        assert_near(L_star, lightness[k], 0.0);
+      lightness[k] = L_star;
+    }
+  }
+  for (int k = 1; k < EF_DIFFERENCE_CLASSES; ++k)
+    assert_true(lightness[k - 1] - lightness[k] > 10.0);
+  assert_true(lightness[EF_DIFFERENCE_CLASSES - 1] > 0.0);
+  ef_png_free(png);
+  free(row);
+  unlink(path);
+  ef_error error = {0};
+  n_rows = 0;
+  map.height = 6; /* whose last row fails */
+  const size_t before = scratch_count();
+  assert_int_equal(ef_difference_map_write(path, false, &map, &report, &error),
+                   EF_MALFORMED);
+  assert_int_equal(scratch_count(), before);
+}
+
+static void classes_of_differences(void **state) {
+  (void)state;
+  assert_int_equal(ef_difference_class(0.0), 0);
+  assert_int_equal(ef_difference_class(NOT_A_NUMBER), 0);
+  for (int k = 0; k + 1 < EF_DIFFERENCE_CLASSES; ++k) {
+    const double end = ef_difference_class_end(k);
+    assert_int_equal(ef_difference_class(end), k);
+    assert_int_equal(ef_difference_class(1.0001 * end), k + 1);
+  }
+  assert_true(isinf(ef_difference_class_end(EF_DIFFERENCE_CLASSES - 1)));
+}
+
 int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(what_was_written_is_read),
@@ -255,6 +491,10 @@ int main(void) {
       cmocka_unit_test(there_and_back),
       cmocka_unit_test(nothing_half_written),
       cmocka_unit_test(maps_are_told_apart),
+      cmocka_unit_test(pictures_are_compared),
+      cmocka_unit_test(pictures_of_two_sizes_are_refused),
+      cmocka_unit_test(a_map_gets_darker),
+      cmocka_unit_test(classes_of_differences),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
   return cmocka_run_group_tests(tests, scratch_make, scratch_remove);

@@ -222,6 +222,56 @@ EF_API ef_status ef_render_write_cube(ef_render *render, const char *path,
                                       bool overwrite, const char *description,
                                       ef_error *error);
 
+/* ---- Two pictures -------------------------------------------------------- */
+
+typedef struct ef_comparison_settings {
+  const ef_metric *metric; /**< must outlive the comparison */
+  double jnd;              /**< pixels above it are counted */
+  double tolerance;        /**< and above this */
+  int jobs;                /**< threads, 0: all cores */
+} ef_comparison_settings;
+/** Tolerance of one JND, all cores. */
+EF_API ef_comparison_settings
+ef_comparison_settings_default(const ef_metric *metric, double jnd);
+
+/** Two pictures of one size while they are compared, pixel by pixel. */
+typedef struct ef_comparison ef_comparison;
+
+/** Both pictures, borrowed, are read from here on, row by row; memory does not
+ * grow with their height. Their colours go to the connection space by relative
+ * intent, each white to D50, and the metric's differences are those seen against
+ * it. EF_MALFORMED for pictures of two sizes. Free with ef_comparison_free. */
+EF_API ef_comparison *ef_comparison_new(ef_picture *reference,
+                                        ef_picture *sample,
+                                        const ef_comparison_settings *settings,
+                                        ef_error *error);
+EF_API void ef_comparison_free(ef_comparison *comparison);
+/** The differences of the next row, borrowed until the next call; NULL behind
+ * the last one. NaN where a formula is not defined. */
+EF_API ef_status ef_comparison_next_row(ef_comparison *comparison,
+                                        const double **difference,
+                                        ef_error *error);
+
+/** Of the rows read so far, which come in bands: after the last row, all. */
+typedef struct ef_comparison_totals {
+  double jnd, tolerance;
+  size_t n_pixels;    /**< with a difference */
+  size_t n_undefined; /**< without */
+  size_t n_above_jnd, n_above_tolerance;
+  double mean, largest;
+  size_t largest_x, largest_y; /**< the first pixel with it, from 0 */
+} ef_comparison_totals;
+EF_API ef_comparison_totals
+ef_comparison_get_totals(const ef_comparison *comparison);
+/** Quantile p (0 to 1) of the differences, to 0.05 % of its value; NaN when
+ * there are none. */
+EF_API double ef_comparison_quantile(const ef_comparison *comparison, double p);
+/** All differences, from the smallest, to 0.05 % of their value: how many pixels
+ * have each. `cursor` starts at 0; false at the end. */
+EF_API bool ef_comparison_next_cell(const ef_comparison *comparison,
+                                    size_t *cursor, double *value,
+                                    size_t *n_pixels);
+
 #ifdef __cplusplus
 }
 #endif

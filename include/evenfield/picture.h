@@ -221,6 +221,40 @@ EF_API ef_status ef_report_close(ef_report *report, ef_error *error);
 /** Drops what was written and frees; NULL is fine. */
 EF_API void ef_report_discard(ef_report *report);
 
+/* ---- Maps of differences ------------------------------------------------- */
+
+/** How far a pixel differs, in classes by multiples of a JND: up to a half, 1, 2,
+ * 4, 8, and above; the larger the darker, in one hue. */
+enum { EF_DIFFERENCE_CLASSES = 6 };
+EF_API int ef_difference_class(double jnds);
+/** Upper end of a class in JND; infinite for the last. */
+EF_API double ef_difference_class_end(int difference_class);
+
+/** Differences to be drawn, row by row. */
+typedef struct ef_difference_map {
+  size_t width, height;
+  double jnd;         /**< one JND, in the unit of the differences */
+  const char *symbol; /**< of that unit, for the key */
+  /** Gives the differences of row y, borrowed until the next call; rows come
+   * from the top, each once. NaN is drawn as no difference. */
+  ef_status (*give)(void *cookie, size_t y, const double **value,
+                    ef_error *error);
+  void *cookie;
+} ef_difference_map;
+
+typedef struct ef_difference_map_report {
+  size_t factor;    /**< pixels of the map, along a side, for one of the picture:
+                         small ones are enlarged */
+  bool is_labelled; /**< false: no text could be drawn in the key */
+} ef_difference_map_report;
+
+/** The map with its key as PNG in the encoding of IEC 61966-2-1, there whole or
+ * not at all. Holds one row at a time. */
+EF_API ef_status ef_difference_map_write(const char *path, bool overwrite,
+                                         const ef_difference_map *map,
+                                         ef_difference_map_report *report,
+                                         ef_error *error);
+
 #ifdef __cplusplus
 }
 #endif

@@ -3,6 +3,7 @@
 
 #include <string.h>
 
+#include "image_compare.h"
 #include "image_gamut.h"
 #include "image_render.h"
 #include "message.h"
@@ -32,7 +33,8 @@ static const struct {
   ef_status (*run)(const command_options *options, ef_output *output,
                    const ef_notes *notes, bool *fails, ef_error *error);
 } verbs[] = {{"gamut", check_gamut, image_gamut},
-             {"render", image_render_check, render}};
+             {"render", image_render_check, render},
+             {"compare", image_compare_check, image_compare}};
 enum { N_VERBS = sizeof verbs / sizeof *verbs };
 
 exit_code command_image(const command_options *options) {
@@ -42,8 +44,8 @@ exit_code command_image(const command_options *options) {
     ++verb;
   if (verb == N_VERBS)
     return message_usage("image needs to know what to do: `evenfield image "
-                         "gamut PICTURE.png` or `evenfield image render "
-                         "CUBE.hdr OUT`");
+                         "gamut PICTURE.png`, `evenfield image compare A.png "
+                         "B.png` or `evenfield image render CUBE.hdr OUT`");
   exit_code code = verbs[verb].check(options);
   if (code != EXIT_DONE)
     return code;

@@ -167,14 +167,17 @@ static const command_entry table[] = {
       "demo:kiosk-measurements"}},
     {"image",
      COMMAND_IMAGE,
-     "gamut PICTURE.png [MAP.png] | render CUBE.hdr OUT",
-     "which pixels can a display not show; what a spectral image looks like",
+     "gamut PICTURE.png [MAP.png] | compare A.png B.png [MAP.png] | render "
+     "CUBE.hdr OUT",
+     "pictures: out of gamut, told apart; spectral images rendered",
      {"`evenfield image gamut` reads a PNG picture by its own colour tags "
       "(cICP, iCCP, sRGB, gAMA with cHRM) and tells the share of its pixels "
       "that the display cannot show, how far its nearest colours are off, and "
       "where: MAP shows the picture in pale grey with lines over what is "
       "missed, the denser the more. A picture without tags needs --assume: its "
-      "colours are not guessed.",
+      "colours are not guessed. `evenfield image compare` takes two of one size and tells how far B is "
+      "from A, pixel by pixel, and which share of observers would tell: MAP is "
+      "the darker the larger the difference, with a key.",
       "`evenfield image render` takes a spectral image, as surfaces under a "
       "light or as lights, to OUT: FILE.png, a tagged picture, and how much of "
       "it was clipped; FILE.hdr with FILE.bip, X, Y, Z or cone excitations as "

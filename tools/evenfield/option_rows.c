@@ -210,8 +210,8 @@ static const option_row table[] = {
      "default the white"},
     {"assume", "PROFILE", COMMAND_IMAGE, TYPE_TEXT, FIELD(assume), 0, 0, NULL,
      "what the samples of a picture stand for, a profile or a published "
-     "encoding such as srgb; needed where it has no colour tags, and taken in "
-     "the place of those it has"},
+     "encoding such as srgb; needed where it has no colour tags, and, but for "
+     "compare, taken in the place of those it has"},
     {"check", NULL, COMMAND_IMAGE, TYPE_FLAG, FIELD(check), 0, 0, NULL,
      "exit with status 1 when a pixel is off by more than the tolerance"},
     {"display", "DISPLAY", COMMAND_IMAGE, TYPE_TEXT, FIELD(display), 0, 0, NULL,
@@ -427,7 +427,7 @@ static const option_row table[] = {
      NULL,
      "the power of the difference that d' grows with; default 1, or what the "
      "file of the JND says"},
-    {"spread", "SD", COMMAND_COMPARE, TYPE_NUMBER, FIELD(spread), 0, 3, NULL,
+    {"spread", "SD", COMMAND_COMPARE | COMMAND_IMAGE, TYPE_NUMBER, FIELD(spread), 0, 3, NULL,
      "how JNDs differ from person to person: the standard deviation of their "
      "natural logarithm; default 0.28, or what the file of the JND says"},
     {"jnd", "VALUE", MATCHING | COMMAND_PROFILE | COMMAND_IMAGE, TYPE_NUMBER, FIELD(jnd), 1e-6, 1e6, NULL,
