@@ -104,13 +104,31 @@ static ef_status set_adaptation(const work *w, double matrix[9],
                               ef_setup_white(w->setup), matrix, error);
 }
 
+/* Shares of the white that the colour of a pixel is known to: profiles keep
+ * theirs in steps of 1.5e-5 (s15Fixed16Number, ICC.1), of which a pixel gets the
+ * sum of three, and tables of 16 bits are as near as a setup on one takes them
+ * to be (ef_setup_resolution). */
+static const double picture_resolution = 1e-4;
+
+/* A picture made for this display must not be said to leave its gamut. */
+static bool is_shown(const work *w, const ef_match *match) {
+  const double setup = ef_setup_resolution(w->setup);
+  const double least =
+      100.0 * (setup > picture_resolution ? setup : picture_resolution);
+  const ef_xyz a = match->target, b = match->nearest.xyz;
+  return match->in_gamut ||
+         (fabs(a.X - b.X) <= least && fabs(a.Y - b.Y) <= least &&
+          fabs(a.Z - b.Z) <= least);
+}
+
 static void add_up(work *w, size_t i, const ef_match *match) {
   double sample[3];
   size_t n, x, y;
   ef_distinct_at(w->distinct, i, sample, &n, &x, &y);
-  const double miss = match->in_gamut ? 0.0 : match->nearest.difference;
+  const bool shown = is_shown(w, match);
+  const double miss = shown ? 0.0 : match->nearest.difference;
   w->units[i] = (float)(miss / w->measure.jnd);
-  w->n_out += match->in_gamut ? 0 : n;
+  w->n_out += shown ? 0 : n;
   w->mean_out += miss * (double)n;
   w->n_noticed += miss > w->measure.jnd ? n : 0;
   w->n_beyond += miss > w->measure.tolerance ? n : 0;
