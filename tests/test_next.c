@@ -152,6 +152,11 @@ static void posterior_is_the_estimates(void **state) {
       4, {0.9, 1.8, 1.3, 3.5}, {60, 50, 70, 40}, {36, 44, 51, 40}};
   const ef_responses responses = {a.n, a.level, a.shown, a.positive};
   const ef_next known = choose(&a, &s, NULL);
+  /* Of 75 % right in 2IFC threshold and JND are one thing. */
+  assert_near_relative(known.jnd.value, known.threshold.value, 1e-9);
+  assert_near_relative(known.jnd.se, known.threshold.se, 1e-6);
+  assert_near_relative(known.jnd.low, known.threshold.low, 1e-6);
+  assert_near_relative(known.jnd.high, known.threshold.high, 1e-6);
   enum { N = 81 };
   double at[N], density[N], whole = 0, mean = 0;
   assert_int_equal(s.n_thresholds, N);

@@ -201,9 +201,24 @@ static double quantile(const weighed *w, size_t n, double share) {
   return (double)NAN;
 }
 
-/* Mean, deviation and interval of sorted values, after `turn`. */
+/* Values that differ by rounding alone become one: between them there is no
+ * interval for their weights to spread over. */
+static size_t merge(weighed *w, size_t n) {
+  const double same = 1e-9 * (w[n - 1].value - w[0].value);
+  size_t kept = 0;
+  for (size_t i = 1; i < n; ++i) {
+    if (w[i].value - w[kept].value <= same)
+      w[kept].weight += w[i].weight;
+    else
+      w[++kept] = w[i];
+  }
+  return kept + 1;
+}
+
+/* Mean, deviation and interval of values with weights, which it sorts. */
 static ef_estimate summarise(weighed *w, size_t n, double level) {
   qsort(w, n, sizeof *w, compare_weighed);
+  n = merge(w, n);
   double mean = 0, square = 0;
   for (size_t i = 0; i < n; ++i)
     mean += w[i].weight * w[i].value;
