@@ -106,7 +106,7 @@ ef_chart lm isolate --plane lm
 ef_chart opponent isolate --plane opponent --format json
 ef_chart panel panel fit --samples 100
 ef_chart calibrate panel calibrate --samples 20
-ef_chart next panel next demo:panel-responses --task 2ifc
+ef_chart next panel next
 ef_chart plan panel plan --expected-jnd 0.9 --samples 40 --precision 0.3
 ef_chart power panel plan --expected-jnd 0.9 --samples 40 --precision 0.3 \
   --other-jnd 1.3
@@ -185,7 +185,8 @@ ef_report one-ellipse ellipse --at lab:60,10,20 --space cone
 ef_report isolate isolate
 ef_report panel panel fit --samples 100
 ef_report calibrate panel calibrate --samples 20
-ef_report next panel next demo:panel-responses --task 2ifc
+ef_report next panel next
+ef_report flicker panel flicker
 ef_report plan panel plan --expected-jnd 0.9 --samples 40 --precision 0.3
 ef_check "report: input and digest" \
   "$(sed -n 's/.*t.csv, SHA-256 \([0-9a-f]*\).*/\1/p' match.html)" \

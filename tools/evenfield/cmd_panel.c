@@ -53,7 +53,7 @@ static exit_code check_options(const command_options *o, const char *name,
   const use uses[] = {
       {"criterion", o->criterion != NULL, VERB_FIT | VERB_NEXT},
       {"chart", o->chart != NULL, VERB_ANSWERS},
-      {"report", o->report != NULL, VERB_ANSWERS},
+      {"report", o->report != NULL, VERB_ANSWERS | VERB_FLICKER},
       {"model", o->model >= 0, VERB_FIT | VERB_NEXT},
       {"axis", o->axis >= 0, VERB_FIT | VERB_NEXT},
       {"lapse", !isnan(o->lapse), VERB_ANSWERS},
@@ -168,10 +168,9 @@ static exit_code run_calibrate(const command_options *o) {
 /* ---- panel next -------------------------------------------------------- */
 
 static exit_code run_next(const command_options *o) {
-  if (o->n_files < 2) {
-    return message_usage("panel next needs the file with the answers so far; "
-                         "its header alone will do where --levels names the "
-                         "levels in hand");
+  if (o->n_files < 2 && o->levels != NULL) {
+    return message_usage("--levels needs the file with the answers so far; its "
+                         "header alone will do");
   }
   message_sink sink = {.quiet = o->quiet};
   const ef_notes notes = message_notes(&sink);
@@ -225,11 +224,6 @@ static exit_code run_plan(const command_options *o) {
 /* ---- panel flicker ----------------------------------------------------- */
 
 static exit_code run_flicker(const command_options *o) {
-  if (o->n_files < 2) {
-    return message_usage("panel flicker needs the file with the settings: "
-                         "columns first, first_amount, second and "
-                         "second_amount");
-  }
   message_sink sink = {.quiet = o->quiet};
   const ef_notes notes = message_notes(&sink);
   ef_error error = {0};
@@ -241,6 +235,8 @@ static exit_code run_flicker(const command_options *o) {
     if (output == NULL)
       status = error.status;
   }
+  if (status == EF_OK && o->report != NULL)
+    status = panel_flicker_report_write(&p, &notes, &error);
   if (status == EF_OK)
     status = render_panel_flicker(&p, output, &error);
   panel_flicker_free(&p);

@@ -117,8 +117,8 @@ static const command_entry table[] = {
       "evenfield observer build --categories 3 --population 1000"}},
     {"panel",
      COMMAND_PANEL,
-     "fit [RESPONSES] | calibrate [RESPONSES [SAMPLES]] | next RESPONSES | "
-     "plan | flicker SETTINGS [LIGHTS]",
+     "fit [RESPONSES] | calibrate [RESPONSES [SAMPLES]] | next [RESPONSES] | "
+     "plan | flicker [SETTINGS [LIGHTS]]",
      "what a panel's answers say: thresholds, JND, points of equality",
      {"`evenfield panel fit RESPONSES` fits a curve to the answers of each "
       "observer and condition and to all together: threshold, point of "
@@ -126,13 +126,14 @@ static const command_entry table[] = {
       "fits, and how people differ. `evenfield panel calibrate RESPONSES "
       "--pairs PAIRS` gives the panel's JND in a colour-difference formula, "
       "which `evenfield compare --jnd FILE` reads, and how well each formula "
-      "orders the pairs. Without RESPONSES both work on answers of the demo. "
+      "orders the pairs. "
       "`evenfield panel next RESPONSES --levels LEVELS` says which of the "
       "levels in hand to show next, from the answers so far; `evenfield panel "
       "plan --expected-jnd 0.9` how many observers, levels and trials a panel "
       "takes. `evenfield panel flicker SETTINGS LIGHTS` turns settings of least "
       "flicker (columns first, first_amount, second, second_amount: lights and "
-      "shares of their full drive) into luminance weights for isolate.",
+      "shares of their full drive) into luminance weights for isolate. Without "
+      "a file all but plan work on the demo.",
       "RESPONSES is CSV with the column level, and for each trial answer (yes, "
       "no; right, wrong; same, different; greater, less; or 1 and 0), or "
       "counts n (shown) and k (of them positive); calibrate also takes "
@@ -140,8 +141,7 @@ static const command_entry table[] = {
       "condition, place (first or second: where the difference was) and task "
       "may be there. Trials at level 0 show no difference."},
      command_panel,
-     {"evenfield panel fit", "evenfield panel calibrate",
-      "evenfield panel next demo:panel-responses --task 2ifc",
+     {"evenfield panel fit", "evenfield panel calibrate", "evenfield panel next",
       "evenfield panel plan --expected-jnd 0.9 --samples 100"}},
     {"profile",
      COMMAND_PROFILE,

@@ -7,6 +7,7 @@
 
 #include "diagram.h"
 #include "message.h"
+#include "panel_rows.h"
 #include "render_panel_fit.h"
 #include "report.h"
 
@@ -142,6 +143,54 @@ ef_status panel_chart_write(const panel_fits *p, const ef_notes *notes,
   return status;
 }
 
+static ef_estimate figure_of(const panel_fit *f, panel_figure figure) {
+  const double none = (double)NAN;
+  if (f->status != EF_OK)
+    return (ef_estimate){none, none, none, none};
+  return figure == PANEL_JND        ? f->fit.jnd
+         : figure == PANEL_EQUALITY ? f->fit.equality
+                                    : f->fit.threshold;
+}
+
+/* The figure that is told first, of every observer of a condition. */
+static ef_status add_people(const panel_fits *p, size_t condition,
+                            const report *page, ef_error *error) {
+  static const char *const words[] = {"threshold", "JND", "point of equality"};
+  const panel_figure figure = panel_fit_main(p, condition);
+  const char *unit = p->answers.unit;
+  const char *name = answers_condition(&p->answers, condition);
+  char title[200], x_title[120];
+  bool is_group;
+  panel_rows r;
+  if (p->summary[condition].n_observers < 2)
+    return EF_OK;
+  if (!panel_rows_new(&r, p->n)) {
+    panel_rows_free(&r);
+    return message_fail(error, EF_NO_MEMORY, "out of memory for the chart");
+  }
+  r.n = 0;
+  for (size_t i = 0; i < p->n; ++i) {
+    const panel_fit *f = &p->fit[i];
+    if (f->is_pooled || f->condition != condition)
+      continue;
+    r.name[r.n] = answers_observer(&p->answers, f->observer);
+    r.value[r.n++] = figure_of(f, figure);
+  }
+  snprintf(title, sizeof title, "How people differ%s%.120s",
+           name[0] != '\0' ? ", " : "", name);
+  snprintf(x_title, sizeof x_title, unit[0] != '\0' ? "%s, %.80s" : "%s%.80s",
+           words[figure], unit);
+  r.title = title;
+  r.x_title = x_title;
+  r.about = "Each observer with the 95 % interval; the band is that of the "
+            "panel.";
+  r.whole = panel_fits_value(p, condition, figure, &is_group);
+  r.whole_name = is_group ? "the panel" : "all answers together";
+  const ef_status status = panel_rows_report(&r, page, error);
+  panel_rows_free(&r);
+  return status;
+}
+
 /* Each curve by itself, as many as a person looks at. */
 static ef_status add_each(const panel_fits *p, const report *page,
                           ef_error *error) {
@@ -180,12 +229,14 @@ static ef_status add_charts(const panel_fits *p, const report *page,
       "and the curve through them; the line across the curve is the interval "
       "of the threshold of these answers, which holds for these people alone.";
   ef_chart *chart = NULL;
-  const ef_status status = draw(p, settings, &chart, error);
+  ef_status status = draw(p, settings, &chart, error);
   if (status == EF_OK) {
     ef_report_front(page->page, "The curve");
     ef_report_chart(page->page, chart);
   }
   ef_chart_free(chart);
+  for (size_t c = 0; c < p->n_summaries && status == EF_OK; ++c)
+    status = add_people(p, c, page, error);
   return status == EF_OK && p->n > p->n_summaries ? add_each(p, page, error)
                                                   : status;
 }

@@ -10,6 +10,7 @@
 #include "rows.h"
 #include "source.h"
 
+static const char demo_settings[] = "demo:flicker-settings";
 static const char demo_lights[] = "demo:lab-display";
 
 static ef_status out_of_memory(ef_error *error) {
@@ -69,8 +70,9 @@ static ef_status read_lights(panel_flicker *p, const ef_notes *notes,
   rows all = {0};
   ef_status status = EF_OK;
   if (head->content != EF_CONTENT_SPECTRA) {
-    message_fail(error, EF_MALFORMED, "spectra of lights are needed here, not "
-                                      "%s",
+    message_fail(error, EF_MALFORMED,
+                 "spectra of lights are needed here, not "
+                 "%s",
                  ef_content_text(head->content));
     status = message_place(error, p->lights_path);
   }
@@ -87,10 +89,17 @@ static ef_status read_lights(panel_flicker *p, const ef_notes *notes,
 
 /* ---- Settings ---------------------------------------------------------- */
 
-enum { FIRST, FIRST_AMOUNT, SECOND, SECOND_AMOUNT, N_NEEDED, OBSERVER = N_NEEDED,
-       N_FIELDS };
-static const char *const columns[N_FIELDS] = {
-    "first", "first_amount", "second", "second_amount", "observer"};
+enum {
+  FIRST,
+  FIRST_AMOUNT,
+  SECOND,
+  SECOND_AMOUNT,
+  N_NEEDED,
+  OBSERVER = N_NEEDED,
+  N_FIELDS
+};
+static const char *const columns[N_FIELDS] = {"first", "first_amount", "second",
+                                              "second_amount", "observer"};
 
 static size_t find_light(const panel_flicker *p, const char *name) {
   for (size_t i = 0; i < p->lights.n; ++i) {
@@ -106,21 +115,20 @@ static void set_cones(panel_flicker *p, size_t light, double amount,
   const double *full = p->excitation + 2 * light;
   const size_t stray = p->has_stray ? find_light(p, "black") : SIZE_MAX;
   for (size_t k = 0; k < 2; ++k) {
-    const double black =
-        stray == SIZE_MAX ? 0.0 : p->excitation[2 * stray + k];
+    const double black = stray == SIZE_MAX ? 0.0 : p->excitation[2 * stray + k];
     cone[k] = light == stray ? black : black + amount * (full[k] - black);
   }
 }
 
 static ef_status read_side(panel_flicker *p, ef_fields *fields,
-                           const char *const *text, size_t side,
+                           const char *const *cell, size_t side,
                            ef_error *error) {
   const size_t field = side == 0 ? FIRST : SECOND;
-  const size_t light = find_light(p, text[field]);
+  const size_t light = find_light(p, cell[field]);
   if (light == SIZE_MAX) {
     return ef_fields_fault(fields, field, error,
                            "%.100s has no light called '%.60s'", p->lights_path,
-                           text[field]);
+                           cell[field]);
   }
   double amount, cone[2];
   const ef_status status = ef_fields_number(fields, field + 1, &amount, error);
@@ -156,16 +164,16 @@ static ef_status make_room(panel_flicker *p, size_t *room, ef_error *error) {
 }
 
 static ef_status read_setting(panel_flicker *p, ef_fields *fields,
-                              const char *const *text, size_t *room,
+                              const char *const *cell, size_t *room,
                               ef_error *error) {
   ef_status status = make_room(p, room, error);
   if (status == EF_OK)
-    status = read_side(p, fields, text, 0, error);
+    status = read_side(p, fields, cell, 0, error);
   if (status == EF_OK)
-    status = read_side(p, fields, text, 1, error);
+    status = read_side(p, fields, cell, 1, error);
   if (status != EF_OK)
     return status;
-  p->person[p->n] = name_list_place(&p->people, text[OBSERVER]);
+  p->person[p->n] = name_list_place(&p->people, cell[OBSERVER]);
   return p->person[p->n++] != SIZE_MAX ? EF_OK : out_of_memory(error);
 }
 
@@ -176,14 +184,14 @@ static ef_status read_settings(panel_flicker *p, const char *path,
   if (fields == NULL)
     return error->status;
   p->has_names = ef_fields_has(fields, OBSERVER);
-  const char *const *text;
+  const char *const *cell;
   size_t room = 0;
   ef_status status;
   do {
-    status = ef_fields_next(fields, &text, NULL, error);
-    if (status != EF_OK || text == NULL)
+    status = ef_fields_next(fields, &cell, NULL, error);
+    if (status != EF_OK || cell == NULL)
       break;
-    status = read_setting(p, fields, text, &room, error);
+    status = read_setting(p, fields, cell, &room, error);
   } while (status == EF_OK);
   ef_fields_free(fields);
   if (status == EF_OK && p->n == 0) {
@@ -227,13 +235,16 @@ static ef_status weigh(panel_flicker *p, ef_error *error) {
     return EF_OK;
   message_fail(error, EF_NO_ANSWER, "no luminance weights: %.200s",
                p->each[0].reason);
-  return message_place(error, p->options->files[1]);
+  return message_place(error, p->settings_path);
 }
 
 ef_status panel_flicker_load(panel_flicker *p, const command_options *options,
                              const ef_notes *notes, ef_error *error) {
   const command_options *o = options;
+  const bool is_demo = o->n_files < 2;
   *p = (panel_flicker){.options = options,
+                       .is_demo = is_demo,
+                       .settings_path = is_demo ? demo_settings : o->files[1],
                        .lights_path =
                            o->n_files > 2 ? o->files[2] : demo_lights};
   const char *name = o->observer != NULL ? o->observer : "cie-2015-2";
@@ -242,7 +253,7 @@ ef_status panel_flicker_load(panel_flicker *p, const command_options *options,
     return error->status;
   ef_status status = read_lights(p, notes, error);
   if (status == EF_OK)
-    status = read_settings(p, o->files[1], notes, error);
+    status = read_settings(p, p->settings_path, notes, error);
   return status == EF_OK ? weigh(p, error) : status;
 }
 

@@ -9,6 +9,9 @@
 #include "message.h"
 #include "panel_settings.h"
 
+static const char demo_answers[] = "demo:panel-responses";
+static const char demo_task[] = "2ifc";
+
 static ef_status out_of_memory(ef_error *error) {
   return message_fail(error, EF_NO_MEMORY, "out of memory for the levels");
 }
@@ -221,14 +224,15 @@ static ef_status set_settings(panel_next *p, const ef_notes *notes,
 ef_status panel_next_load(panel_next *p, const command_options *options,
                           const ef_notes *notes, ef_error *error) {
   const command_options *o = options;
-  *p = (panel_next){.options = options};
+  *p = (panel_next){.options = options, .is_demo = o->n_files < 2};
   ef_status status = EF_OK;
   if (o->levels != NULL)
     status = read_levels(p, o->levels, notes, error);
-  const answers_need need = {.task = o->task};
+  const answers_need need = {.task = o->task == NULL && p->is_demo ? demo_task
+                                                                   : o->task};
   if (status == EF_OK)
-    status = answers_read(&p->answers, o->files[1], &need, o->levels != NULL,
-                          notes, error);
+    status = answers_read(&p->answers, p->is_demo ? demo_answers : o->files[1],
+                          &need, o->levels != NULL, notes, error);
   if (status == EF_OK && o->levels == NULL)
     status = take_levels(p, error);
   else if (status == EF_OK)

@@ -23,6 +23,7 @@ typedef struct next_step {
 typedef struct panel_next {
   const command_options *options;
   answers answers;
+  bool is_demo;
   size_t n_levels;
   double *level; /**< in hand */
   size_t *line;  /**< of each in its file; NULL without one */

@@ -4,14 +4,14 @@
 
 #include "message.h"
 #include "panel_flicker.h"
-#include "record.h"
 #include "panel_words.h"
+#include "record.h"
 #include "text.h"
 #include "words.h"
 
 enum { WEIGHTS_ROOM = 64 };
 
-static const char *name_of(const panel_flicker *p, size_t who) {
+const char *panel_flicker_name(const panel_flicker *p, size_t who) {
   return p->has_names ? p->people.name[who] : "the observer";
 }
 
@@ -28,16 +28,53 @@ static void add_person(text *out, const panel_flicker *p, size_t who) {
   char weights[WEIGHTS_ROOM];
   text line = {0};
   if (f->status != EF_OK) {
-    text_format(&line, "%s: no luminance weights: %s.", name_of(p, who),
-                f->reason);
+    text_format(&line, "%s: no luminance weights: %s.",
+                panel_flicker_name(p, who), f->reason);
     text_paragraph(out, &line, 0);
     return;
   }
   weights_text(f, weights);
-  text_format(&line, "For %s luminance counts L to M as ", name_of(p, who));
+  text_format(&line, "For %s luminance counts L to M as ",
+              panel_flicker_name(p, who));
   panel_add_estimate(&line, f->weights.ratio, "");
   text_format(&line, ": evenfield isolate --luminance-weights %s.", weights);
   text_paragraph(out, &line, 0);
+}
+
+/* Few people one by one; many by their range, with the weights in the table. */
+static void add_answer(text *out, const panel_flicker *p) {
+  enum { MOST_LINES = 3 };
+  const flicker_person *least = NULL, *most = NULL;
+  for (size_t i = 0; i < p->people.n; ++i) {
+    const flicker_person *f = &p->each[i];
+    if (f->status != EF_OK || p->people.n <= MOST_LINES) {
+      if (p->people.n <= MOST_LINES)
+        add_person(out, p, i);
+      continue;
+    }
+    if (least == NULL || f->weights.ratio.value < least->weights.ratio.value)
+      least = f;
+    if (most == NULL || f->weights.ratio.value > most->weights.ratio.value)
+      most = f;
+  }
+  if (least == NULL)
+    return;
+  char low[EF_NUMBER_TEXT], high[EF_NUMBER_TEXT];
+  text line = {0};
+  ef_number_format_fixed(least->weights.ratio.value, 2, low);
+  ef_number_format_fixed(most->weights.ratio.value, 2, high);
+  text_format(
+      &line,
+      "In luminance L cones count from %s (%s) to %s times (%s) as much "
+      "as M cones among %zu observers; their weights for `evenfield "
+      "isolate` stand below.",
+      low, panel_flicker_name(p, (size_t)(least - p->each)), high,
+      panel_flicker_name(p, (size_t)(most - p->each)), p->people.n);
+  text_paragraph(out, &line, 0);
+  for (size_t i = 0; i < p->people.n; ++i) {
+    if (p->each[i].status != EF_OK)
+      add_person(out, p, i);
+  }
 }
 
 static void add_table(text *out, const panel_flicker *p) {
@@ -47,52 +84,69 @@ static void add_table(text *out, const panel_flicker *p) {
   table_column(&t, "L : M", "", false);
   table_column(&t, "95 %", "from", false);
   table_column(&t, NULL, "to", false);
-  table_column(&t, "Scatter of a setting", "%", false);
+  table_column(&t, "Scatter of", "a setting, %", false);
+  table_column(&t, "--luminance-weights", "", true);
   for (size_t i = 0; i < p->people.n; ++i) {
     const ef_flicker *w = &p->each[i].weights;
+    char weights[WEIGHTS_ROOM];
     if (p->each[i].status != EF_OK)
       continue;
-    table_cell(&t, name_of(p, i));
+    table_cell(&t, panel_flicker_name(p, i));
     table_format(&t, "%zu", w->n);
     table_number(&t, w->ratio.value, 2);
     table_number(&t, w->ratio.low, 2);
     panel_limit_cell(&t, w->ratio.high, 2);
     table_number(&t, 100.0 * w->residual, 1);
+    weights_text(&p->each[i], weights);
+    table_cell(&t, weights);
   }
   text_add(out, "\n");
   table_finish(&t, out);
 }
 
-static ef_status write_text(const panel_flicker *p, ef_output *output,
-                            ef_error *error) {
-  text out = {0}, line = {0};
-  for (size_t i = 0; i < p->people.n; ++i)
-    add_person(&out, p, i);
-  add_table(&out, p);
-  text_add(&out, "\nWhat this rests on:\n");
+void panel_flicker_add(text *out, const panel_flicker *p) {
+  text line = {0};
+  add_answer(out, p);
+  if (p->is_demo) {
+    text_wrap(
+        out,
+        "No file was named, so this is the built-in demo: six of the crew "
+        "turned a green lamp until it flickered least against a red one "
+        "(demo:flicker-settings, demo:lab-display).",
+        0);
+  }
+  add_table(out, p);
+  text_add(out, "\nWhat this rests on:\n");
   text_format(&line,
               "%s: two lights that alternate look equally bright where they "
               "flicker least; amounts are shares of full drive",
-              p->options->files[1]);
-  text_label(&out, "Settings", &line);
+              p->settings_path);
+  text_label(out, "Settings", &line);
   text_format(&line, "%s%s", p->lights_path,
               p->has_stray ? "; its column black is stray light, which is in "
                              "every other column and is there all the time"
                            : "");
-  text_label(&out, "Lights", &line);
+  text_label(out, "Lights", &line);
   text_format(&line,
               "cone fundamentals of observer %s: L : M holds for these, and "
               "for --observer %s of isolate; S cones have no part in flicker",
               ef_observer_name(p->observer), ef_observer_name(p->observer));
-  text_label(&out, "Cones", &line);
+  text_label(out, "Cones", &line);
   text_add(&line, "95 %, Student's t, from the scatter of the settings");
-  text_label(&out, "Intervals", &line);
-  text_add(&out, "\n");
-  text_wrap(&out,
+  text_label(out, "Intervals", &line);
+  text_add(out, "\n");
+  text_section(out, "What to keep in mind");
+  text_wrap(out,
             "Flicker can cause seizures in people who are sensitive to it: ask "
             "before, let observers stop at any time, and follow the rules of "
             "your ethics board and local safety codes.",
             0);
+}
+
+static ef_status write_text(const panel_flicker *p, ef_output *output,
+                            ef_error *error) {
+  text out = {0};
+  panel_flicker_add(&out, p);
   const ef_status status = text_write(&out, output, error);
   text_free(&out);
   return status;
@@ -145,7 +199,7 @@ static ef_status write_json(const panel_flicker *p, ef_output *output,
   if (j == NULL)
     return error->status;
   ef_json_begin_object(j, NULL);
-  ef_json_text(j, "file", p->options->files[1]);
+  ef_json_text(j, "file", p->settings_path);
   ef_json_text(j, "lights", p->lights_path);
   ef_json_text(j, "observer", ef_observer_name(p->observer));
   ef_json_begin_array(j, "people");

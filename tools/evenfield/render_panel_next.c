@@ -185,6 +185,12 @@ static void add_basis(text *out, const panel_next *p) {
 
 void panel_next_add(text *out, const panel_next *p) {
   add_answer(out, p);
+  if (p->is_demo) {
+    text_wrap(out,
+              "No file was named, so this is the built-in demo: how the panel "
+              "of seats would go on (demo:panel-responses).",
+              0);
+  }
   if (p->n > 1)
     add_table(out, p);
   add_gains(out, p);

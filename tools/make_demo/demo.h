@@ -60,6 +60,7 @@ void write_band_names(FILE *out, int first_nm, int last_nm);
 /* ---- Files ------------------------------------------------------------- */
 
 void write_colour_pairs(FILE *out);
+void write_flicker_settings(FILE *out);
 void write_kiosk_measurements(FILE *out);
 void write_kiosk_primaries(FILE *out);
 void write_lab_display(FILE *out);

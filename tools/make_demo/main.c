@@ -24,6 +24,7 @@ static const struct demo_file {
   void (*write)(FILE *out);
 } demo_files[] = {
   {"colour-pairs.csv", write_colour_pairs},
+  {"flicker-settings.csv", write_flicker_settings},
   {"kiosk-measurements.csv", write_kiosk_measurements},
   {"kiosk-primaries.csv", write_kiosk_primaries},
   {"lab-display.csv", write_lab_display},
