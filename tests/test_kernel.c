@@ -63,6 +63,24 @@ static void cube_roots(void **state) {
   }
 }
 
+static void near_cube_roots(void **state) {
+  (void)state;
+  gen g = gen_new(9);
+  for (size_t i = 0; i < N; ++i)
+    x_of[i] = i % 2 ? draw_scale(&g, -100, 100) : draw_scale(&g, -7, 1);
+  for (size_t i = 0; i < 6000; ++i) x_of[i] = exp2((double)i / 2000);
+  const double edge[] = {1, 8, 27, 0.008856451679035631, 0x1p-100, 0x1p100};
+  memcpy(x_of, edge, sizeof edge);
+  const ef__kernel_table *k;
+  for (size_t t = 0; (k = ef__kernels_at(t)) != NULL; ++t) {
+    k->near_cube_root(N, x_of, out);
+    ulps u = {0};
+    for (size_t i = 0; i < N; ++i) add(&u, out[i], cbrtl((long double)x_of[i]), x_of[i]);
+    within(&u, 2, "near cube root");
+    assert_true(out[0] == 1);
+  }
+}
+
 static void exponentials(void **state) {
   (void)state;
   gen g = gen_new(2);
@@ -133,6 +151,34 @@ static void powers(void **state) {
   }
 }
 
+/* Beside full scale, which is 1. */
+static void powers_as_shares(void **state) {
+  (void)state;
+  gen g = gen_new(10);
+  const double exponent[] = {0.3, 1, 1.8, 2.2, 2.4, 2.6, 4};
+  const ef__kernel_table *k;
+  for (size_t t = 0; (k = ef__kernels_at(t)) != NULL; ++t) {
+    double largest = 0;
+    for (size_t j = 0; j < sizeof exponent / sizeof *exponent; ++j) {
+      const double y = exponent[j];
+      for (size_t i = 0; i < N; ++i)
+        x_of[i] = i % 2 ? gen_unit(&g) : draw_scale(&g, -1000, 0);
+      const double edge[] = {1, 1 - DBL_EPSILON / 2, 0.5, DBL_MIN, 0,
+                             0.70710678118654746, 0.70710678118654757};
+      memcpy(x_of, edge, sizeof edge);
+      k->share_power(N, x_of, y, out);
+      assert_true(out[0] == 1);
+      for (size_t i = 0; i < N; ++i) {
+        const long double exact = powl((long double)x_of[i], (long double)y);
+        const double off = (double)fabsl((long double)out[i] - exact);
+        if (!(off <= largest)) largest = off;
+      }
+    }
+    printf("# power as a share: %.3g\n", largest);
+    assert_true(largest <= 4 * DBL_EPSILON);
+  }
+}
+
 static void sines_and_cosines(void **state) {
   (void)state;
   gen g = gen_new(5);
@@ -199,19 +245,22 @@ static void nothing_becomes_a_number(void **state) {
   const ef__kernel_table *k;
   for (size_t t = 0; (k = ef__kernels_at(t)) != NULL; ++t) {
     k->cube_root(1, nan, out);
+    k->near_cube_root(1, nan, out + 8);
+    k->share_power(1, nan, 2.2, out + 9);
     k->exp(1, nan, out + 1);
     k->log(1, nan, out + 2);
     k->power(1, nan, 0.42, out + 3);
     k->sin_cos(1, nan, out + 4, out + 5);
     k->atan2(1, nan, one, out + 6);
     k->atan2(1, one, nan, out + 7);
-    for (size_t i = 0; i < 8; ++i) assert_true(isnan(out[i]));
+    for (size_t i = 0; i < 10; ++i) assert_true(isnan(out[i]));
   }
 }
 
 /* ---- Differences ------------------------------------------------------- */
 
 static double reference[3 * N], sample[3 * N];
+static float narrow_rgb[3 * N];
 
 /* Pairs of every kind: anywhere, close, neutral on either or both sides, of
  * the same and of opposite hue, around the boundaries of the cases. */
@@ -325,6 +374,58 @@ static void every_target_and_place_gives_the_same_bits(void **state) {
   for (size_t f = 0; f < 4; ++f) check_places(kernel[f], n, factor[f]);
 }
 
+/* ---- Colours ----------------------------------------------------------- */
+
+enum { COLOURS = 300 };
+
+/* The conversions of k, one after the other, of n colours from place `at`. */
+static void convert(const ef__kernel_table *k, size_t at, size_t n,
+                    double *to) {
+  static const double white[3] = {95.047, 100, 108.883};
+  static const double matrix[9] = {0.41, 0.36, 0.18, 0.21, 0.72,
+                                   0.07, 0.02, 0.12, 0.95};
+  static const double tone[4] = {2.4, 0.055, 1 / 12.92, 0.04045};
+  static const double ucs[EF__UCS_CONSTANTS] = {
+      0.4, 0.65, -0.05, -0.25, 1.2, 0.046, 0, 0.05, 0.95,
+      0.03, 1.3, 45, 0.007, 0.0228};
+  uint8_t code[3 * COLOURS];
+  for (size_t i = 0; i < 3 * n; ++i)
+    code[i] = (uint8_t)(17 * (3 * at + i) + (3 * at + i) / 256);
+  double level[256];
+  for (int i = 0; i < 256; ++i) level[i] = i / 255.0 * i / 255.0;
+  k->xyz_to_lab(n, reference + 3 * at, white, to);
+  k->codes_to_lab(n, code, level, matrix, to + 3 * n);
+  k->rgb_to_xyz(n, narrow_rgb + 3 * at, tone, matrix, to + 6 * n);
+  k->xyz_to_ucs(n, reference + 3 * at, ucs, to + 9 * n);
+}
+
+/* Also beside colours far beyond any white, and below zero. */
+static void colours_have_the_same_bits_everywhere(void **state) {
+  (void)state;
+  static double first[12 * COLOURS], again[12 * COLOURS];
+  gen g = gen_new(11);
+  for (size_t i = 0; i < 3 * COLOURS; ++i) {
+    reference[i] = i % 11 == 5 ? 1e40 : gen_between(&g, i % 7 ? 0 : -3, 110);
+    narrow_rgb[i] = (float)gen_between(&g, -0.1, 1.1);
+  }
+  convert(ef__kernels_at(0), 0, COLOURS, first);
+  assert_near_relative(first[15], 116 * cbrt(reference[16] / 100) - 16,
+                       4 * DBL_EPSILON);
+  assert_near(first[9], 116 * cbrt(reference[10] / 100) - 16, 1e-11);
+  const ef__kernel_table *k;
+  for (size_t t = 0; (k = ef__kernels_at(t)) != NULL; ++t) {
+    convert(k, 0, COLOURS, again);
+    assert_same_bits(again, first, 12 * COLOURS);
+    for (size_t n = 1; n < 80; ++n) {
+      const size_t at = 2 * n;
+      convert(k, at, n, again);
+      for (size_t part = 0; part < 4; ++part)
+        assert_same_bits(again + 3 * n * part,
+                         first + 3 * (COLOURS * part + at), 3 * n);
+    }
+  }
+}
+
 /* ---- Spectra ----------------------------------------------------------- */
 
 enum { MOST_SAMPLES = 700, MOST_CHANNELS = 20, MOST_SPECTRA = 40 };
@@ -387,14 +488,17 @@ static void spectra_are_summed_in_one_order(void **state) {
 int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(cube_roots),
+      cmocka_unit_test(near_cube_roots),
       cmocka_unit_test(exponentials),
       cmocka_unit_test(logarithms),
       cmocka_unit_test(powers),
+      cmocka_unit_test(powers_as_shares),
       cmocka_unit_test(sines_and_cosines),
       cmocka_unit_test(angles),
       cmocka_unit_test(nothing_becomes_a_number),
       cmocka_unit_test(differences_are_the_plain_formulas),
       cmocka_unit_test(every_target_and_place_gives_the_same_bits),
+      cmocka_unit_test(colours_have_the_same_bits_everywhere),
       cmocka_unit_test(spectra_are_summed_in_one_order),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);

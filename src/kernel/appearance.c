@@ -11,14 +11,14 @@
 #define NOISE 0.305
 
 /* 400 p^0.42 / (p^0.42 + 27.13), odd about zero (CIE 159, 5.3). */
-EF__INLINE void compress(size_t vectors, double *block) {
-  double power[V_NUMBERS];
-  for (size_t i = 0; i < EF__LANES * vectors; i += EF__LANES)
-    v_store(power + i, v_power_log(v_abs(v_load(block + i)), v_all(0.42)));
-  for (size_t i = 0; i < EF__LANES * vectors; i += EF__LANES) {
+EF__INLINE void compress(size_t n, double *response) {
+  double power[V_COLOURS];
+  for (size_t i = 0; i < n; i += EF__LANES)
+    v_store(power + i, v_power_log(v_abs(v_load(response + i)), v_all(0.42)));
+  for (size_t i = 0; i < n; i += EF__LANES) {
     const v_double q = v_exp(v_load(power + i));
-    v_store(block + i,
-            v_copysign(400 * q / (q + 27.13), v_load(block + i)));
+    v_store(response + i,
+            v_copysign(400 * q / (q + 27.13), v_load(response + i)));
   }
 }
 
@@ -42,32 +42,27 @@ EF__INLINE void set_terms(v_point p, terms *t) {
   t->t = v_select(u > 0, e_r / u, v_all(__builtin_nan("")));
 }
 
-EF__INLINE void store_ucs(const terms *t, const double *constant, double *to) {
+EF__INLINE v_point ucs_of(const terms *t, const double *constant) {
   const double c1 = constant[EF__UCS_C1], c2 = constant[EF__UCS_C2];
   const v_double J = 100 * v_copysign(t->level, t->sum);
   const v_double M = constant[EF__UCS_CHROMA] * v_sqrt(t->level) * t->t;
   const v_double below = v_select(t->r == 0, v_all(1), t->r);
   const v_double m_over_r = v_log(1 + c2 * M) / (c2 * below);
-  v_store_triplets(to, (1 + 100 * c1) * J / (1 + c1 * v_abs(J)),
-                   m_over_r * t->a, m_over_r * t->b);
+  return (v_point){(1 + 100 * c1) * J / (1 + c1 * v_abs(J)), m_over_r * t->a,
+                   m_over_r * t->b};
 }
 
 static void ucs_block(size_t n, const double *xyz, const double *constant,
                       double *ucs) {
-  double block[V_NUMBERS];
+  v_colours block;
   terms t[V_BLOCK];
-  const size_t vectors = v_take_colours(n, xyz, block);
-  const double *const m = constant;
-  for (size_t i = 0; i < vectors; ++i) {
-    double *const at = block + 3 * EF__LANES * i;
-    const v_point p = v_load_point(at);
-    v_store_triplets(at, m[0] * p.x + m[1] * p.y + m[2] * p.z,
-                     m[3] * p.x + m[4] * p.y + m[5] * p.z,
-                     m[6] * p.x + m[7] * p.y + m[8] * p.z);
-  }
-  compress(3 * vectors, block);
+  const size_t vectors = (n + EF__LANES - 1) / EF__LANES;
+  v_take_colours(n, xyz, &block);
+  for (size_t i = 0; i < n; i += EF__LANES)
+    v_colours_set(&block, i, v_transform(constant, v_colours_at(&block, i)));
+  for (size_t c = 0; c < 3; ++c) compress(n, block.part[c]);
   for (size_t i = 0; i < vectors; ++i)
-    set_terms(v_load_point(block + 3 * EF__LANES * i), &t[i]);
+    set_terms(v_colours_at(&block, EF__LANES * i), &t[i]);
   for (size_t i = 0; i < vectors; ++i) {
     t[i].level = v_power_log(v_abs(constant[EF__UCS_SHARE] * t[i].sum),
                              v_all(constant[EF__UCS_POWER]));
@@ -78,8 +73,7 @@ static void ucs_block(size_t n, const double *xyz, const double *constant,
     t[i].t = v_exp(t[i].t);
   }
   for (size_t i = 0; i < vectors; ++i)
-    store_ucs(&t[i], constant, block + 3 * EF__LANES * i);
-  memcpy(ucs, block, 3 * n * sizeof *ucs);
+    v_give(n, EF__LANES * i, ucs_of(&t[i], constant), ucs);
 }
 
 /* What `constant` holds: EF__UCS_CONSTANTS of kernels.h. */

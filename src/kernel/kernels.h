@@ -27,9 +27,11 @@ enum {
 #define EF__KERNEL_LIST(X)                                                     \
   /* mathematics.c: functions of n numbers, domains as in mathematics.h. */    \
   X(cube_root, (size_t n, const double *x, double *out))                       \
+  X(near_cube_root, (size_t n, const double *x, double *out))                  \
   X(exp, (size_t n, const double *x, double *out))                             \
   X(log, (size_t n, const double *x, double *out))                             \
   X(power, (size_t n, const double *x, double y, double *out))                 \
+  X(share_power, (size_t n, const double *x, double y, double *out))           \
   X(sin_cos, (size_t n, const double *x, double *sine, double *cosine))        \
   X(atan2, (size_t n, const double *y, const double *x, double *out))          \
   /* spectra.c: out[i][c] = sum over j of matrix[c][j] sample[i][j], n spectra, \

@@ -7,7 +7,8 @@
 /* Where the last, short vector is filled up: with 1, which every function
  * takes. */
 EF__INLINE v_double load_some(const double *from, size_t n) {
-  if (n >= EF__LANES) return v_load(from);
+  if (n >= EF__LANES)
+    return v_load(from);
   v_double x = v_all(1);
   memcpy(&x, from, n * sizeof *from);
   return x;
@@ -20,6 +21,15 @@ EF__INLINE void store_some(double *to, size_t n, v_double x) {
 void EF__KERNEL(cube_root)(size_t n, const double *x, double *out) {
   for (size_t i = 0; i < n; i += EF__LANES) {
     store_some(out + i, n - i, v_cube_root(load_some(x + i, n - i)));
+  }
+}
+
+void EF__KERNEL(near_cube_root)(size_t n, const double *x, double *out) {
+  for (size_t i = 0; i < n; i += EF__LANES) {
+    const v_double a = load_some(x + i, n - i);
+    v_double seed, spare;
+    v_widen(v_near_cube_root_seed(a, a), &seed, &spare);
+    store_some(out + i, n - i, v_near_cube_root(a, seed));
   }
 }
 
@@ -37,7 +47,15 @@ void EF__KERNEL(log)(size_t n, const double *x, double *out) {
 
 void EF__KERNEL(power)(size_t n, const double *x, double y, double *out) {
   for (size_t i = 0; i < n; i += EF__LANES) {
-    store_some(out + i, n - i, v_exp(v_power_log(load_some(x + i, n - i), v_all(y))));
+    store_some(out + i, n - i,
+               v_exp(v_power_log(load_some(x + i, n - i), v_all(y))));
+  }
+}
+
+void EF__KERNEL(share_power)(size_t n, const double *x, double y, double *out) {
+  for (size_t i = 0; i < n; i += EF__LANES) {
+    store_some(out + i, n - i,
+               v_share_power(v_share_log(load_some(x + i, n - i), v_all(y))));
   }
 }
 

@@ -27,6 +27,9 @@ typedef double v_double __attribute__((vector_size(8 * EF__LANES)));
 /** Integers as wide as the doubles; of a comparison, all bits set for true. */
 typedef int64_t v_int __attribute__((vector_size(8 * EF__LANES)));
 typedef uint64_t v_uint __attribute__((vector_size(8 * EF__LANES)));
+/** Twice as many floats, for first approximations. */
+typedef float v_float __attribute__((vector_size(8 * EF__LANES)));
+typedef int32_t v_int32 __attribute__((vector_size(8 * EF__LANES)));
 
 /** Blocks that must become part of the loop around them. */
 #define EF__INLINE static inline __attribute__((always_inline))
@@ -113,6 +116,41 @@ EF__INLINE v_double v_copysign(v_double size, v_double sign) {
   return (v_double)(((v_int)size & INT64_MAX) | ((v_int)sign & INT64_MIN));
 }
 
+/** Two vectors of doubles as one of floats, and back. */
+EF__INLINE v_float v_narrow(v_double a, v_double b) {
+#if defined(__AVX2__)
+  return (v_float)_mm256_set_m128(_mm256_cvtpd_ps((__m256d)b),
+                                  _mm256_cvtpd_ps((__m256d)a));
+#elif defined(__SSE2__)
+  return (v_float)_mm_movelh_ps(_mm_cvtpd_ps((__m128d)a),
+                                _mm_cvtpd_ps((__m128d)b));
+#else
+  return (v_float){(float)a[0], (float)a[1], (float)b[0], (float)b[1]};
+#endif
+}
+
+EF__INLINE void v_widen(v_float x, v_double *a, v_double *b) {
+#if defined(__AVX2__)
+  *a = (v_double)_mm256_cvtps_pd(_mm256_castps256_ps128((__m256)x));
+  *b = (v_double)_mm256_cvtps_pd(_mm256_extractf128_ps((__m256)x, 1));
+#elif defined(__SSE2__)
+  *a = (v_double)_mm_cvtps_pd((__m128)x);
+  *b = (v_double)_mm_cvtps_pd(_mm_movehl_ps((__m128)x, (__m128)x));
+#else
+  *a = (v_double){(double)x[0], (double)x[1]};
+  *b = (v_double){(double)x[2], (double)x[3]};
+#endif
+}
+
+/** Floats as doubles. */
+EF__INLINE v_double v_load_float(const float *from) {
+#if defined(__AVX2__)
+  return (v_double)_mm256_cvtps_pd(_mm_loadu_ps(from));
+#else
+  return (v_double){(double)from[0], (double)from[1]};
+#endif
+}
+
 /** Eight doubles on every target, for sums of eight parts. */
 enum { V_PARTS = 8 / EF__LANES };
 typedef struct v_eight {
@@ -159,12 +197,7 @@ EF__INLINE v_eight v_eight_load_some(const double *from, size_t n) {
 EF__INLINE v_eight v_eight_load_float(const float *from) {
   v_eight q;
   EF__UNROLL for (int i = 0; i < V_PARTS; ++i) {
-    const float *const at = from + i * EF__LANES;
-#if defined(__AVX2__)
-    q.part[i] = (v_double)_mm256_cvtps_pd(_mm_loadu_ps(at));
-#else
-    q.part[i] = (v_double){(double)at[0], (double)at[1]};
-#endif
+    q.part[i] = v_load_float(from + i * EF__LANES);
   }
   return q;
 }
@@ -224,11 +257,10 @@ EF__INLINE void v_eight_store_totals(double *to, v_eight a, v_eight b,
 #endif
 }
 
-/** EF__LANES triplets that follow each other in memory, and back. */
-EF__INLINE void v_load_triplets(const double *from, v_double *x, v_double *y,
-                                v_double *z) {
-  const v_double r = v_load(from), s = v_load(from + EF__LANES),
-                 t = v_load(from + 2 * EF__LANES);
+/** EF__LANES triplets that follow each other in r, s, t, or in memory, and back.
+ */
+EF__INLINE void v_part_triplets(v_double r, v_double s, v_double t, v_double *x,
+                                v_double *y, v_double *z) {
 #if EF__LANES == 4
   /* r = x0 y0 z0 x1, s = y1 z1 x2 y2, t = z2 x3 y3 z3 */
   const v_double u = __builtin_shufflevector(r, s, 0, 1, 6, 7);
@@ -242,6 +274,12 @@ EF__INLINE void v_load_triplets(const double *from, v_double *x, v_double *y,
   *y = __builtin_shufflevector(r, t, 1, 2);
   *z = __builtin_shufflevector(s, t, 0, 3);
 #endif
+}
+
+EF__INLINE void v_load_triplets(const double *from, v_double *x, v_double *y,
+                                v_double *z) {
+  v_part_triplets(v_load(from), v_load(from + EF__LANES),
+                  v_load(from + 2 * EF__LANES), x, y, z);
 }
 
 EF__INLINE void v_store_triplets(double *to, v_double x, v_double y,
