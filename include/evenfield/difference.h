@@ -774,6 +774,19 @@ EF_API ef_status ef_told_apart_batch(const ef_jnd_record *jnd, size_t n,
                                      int jobs, ef_told_apart *out,
                                      ef_error *error);
 
+/** What the answers of a record and settings rest on, made once for any number
+ * of batches; owns its memory. NULL for what ef_told_apart_batch refuses. Free
+ * with ef_teller_free. */
+typedef struct ef_teller ef_teller;
+EF_API ef_teller *ef_teller_new(const ef_jnd_record *jnd,
+                                const ef_told_apart_settings *settings,
+                                ef_error *error);
+EF_API void ef_teller_free(ef_teller *teller);
+/** As ef_told_apart_batch. */
+EF_API ef_status ef_teller_tell(const ef_teller *teller, size_t n,
+                                const ef_judged *judged, int jobs,
+                                ef_told_apart *out, ef_error *error);
+
 /* The formulas as plain functions. */
 
 /** CIE 1976 (ISO/CIE 11664-4). */

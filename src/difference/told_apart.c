@@ -279,7 +279,7 @@ static void monte_carlo(const work *w, const pair *p, double *value,
   out->d_prime.se = sd_of(n, jnds);
 }
 
-/* ---- All pairs --------------------------------------------------------- */
+/* ---- Some pairs -------------------------------------------------------- */
 
 static void tell_range(void *context, size_t begin, size_t end) {
   const work *const w = context;
@@ -320,18 +320,8 @@ static ef_status check_sd(const double *sd, size_t n, const char *what,
   return EF_OK;
 }
 
-static ef_status check(const ef_jnd_record *jnd, size_t n,
-                       const ef_judged *judged,
-                       const ef_told_apart_settings *settings,
-                       ef_error *error) {
-  ef_status status = ef_jnd_record_check(jnd, error);
-  if (status != EF_OK)
-    return status;
-  if (settings->propagation == EF_PROPAGATE_MONTE_CARLO &&
-      (settings->n_draws < LEAST_DRAWS || settings->n_draws > MOST_DRAWS))
-    return ef__error_set(error, EF_INVALID,
-                         "%zu draws, expected %d to %d", settings->n_draws,
-                         LEAST_DRAWS, MOST_DRAWS);
+static ef_status check_judged(size_t n, const ef_judged *judged,
+                              ef_error *error) {
   if (judged->n_observers < 1)
     return ef__error_set(error, EF_INVALID,
                          "no observer to tell the pairs apart");
@@ -344,11 +334,24 @@ static ef_status check(const ef_jnd_record *jnd, size_t n,
                          "from 0",
                          i / judged->n_observers + 1, d);
   }
-  status = check_sd(judged->measurement_sd, n, "measurement uncertainty",
-                    error);
-  if (status == EF_OK)
-    status = check_sd(judged->batch_sd, n, "batch spread", error);
-  return status;
+  const ef_status status = check_sd(judged->measurement_sd, n,
+                                    "measurement uncertainty", error);
+  return status == EF_OK ? check_sd(judged->batch_sd, n, "batch spread", error)
+                         : status;
+}
+
+static ef_status check_settings(const ef_jnd_record *jnd,
+                                const ef_told_apart_settings *settings,
+                                ef_error *error) {
+  const ef_status status = ef_jnd_record_check(jnd, error);
+  if (status != EF_OK)
+    return status;
+  if (settings->propagation == EF_PROPAGATE_MONTE_CARLO &&
+      (settings->n_draws < LEAST_DRAWS || settings->n_draws > MOST_DRAWS))
+    return ef__error_set(error, EF_INVALID,
+                         "%zu draws, expected %d to %d", settings->n_draws,
+                         LEAST_DRAWS, MOST_DRAWS);
+  return EF_OK;
 }
 
 /* Standard deviation of ln JND by the interval of the record. */
@@ -361,42 +364,98 @@ ef_told_apart_settings ef_told_apart_settings_default(void) {
       .propagation = EF_PROPAGATE_MONTE_CARLO, .seed = 1, .n_draws = 10000};
 }
 
-ef_status ef_told_apart_batch(const ef_jnd_record *jnd, size_t n,
-                              const ef_judged *judged,
-                              const ef_told_apart_settings *settings, int jobs,
-                              ef_told_apart *out, ef_error *error) {
-  const ef_status status = check(jnd, n, judged, settings, error);
+/* ---- What serves all pairs --------------------------------------------- */
+
+struct ef_teller {
+  ef_jnd_record jnd;
+  ef_told_apart_settings settings;
+  work common; /* but for what is judged and the answers */
+};
+
+static bool draw_normals(ef_teller *t) {
+  const size_t n = t->settings.n_draws;
+  if (t->settings.propagation != EF_PROPAGATE_MONTE_CARLO)
+    return true;
+  double *const draw = ef__allocate(3 * n, sizeof *draw);
+  t->common.draw = draw;
+  if (draw == NULL)
+    return false;
+  ef__gsl_ready();
+  for (size_t i = 0; i < n; ++i) {
+    ef__random stream = ef__random_stream(t->settings.seed, i);
+    for (size_t k = 0; k < 3; ++k)
+      draw[3 * i + k] = ef__random_normal(&stream);
+  }
+  return true;
+}
+
+ef_teller *ef_teller_new(const ef_jnd_record *jnd,
+                         const ef_told_apart_settings *settings,
+                         ef_error *error) {
+  if (check_settings(jnd, settings, error) != EF_OK)
+    return NULL;
+  ef_teller *const t = ef__allocate_zeroed(1, sizeof *t);
+  if (t != NULL) {
+    t->jnd = *jnd;
+    t->settings = *settings;
+    t->common =
+        (work){.jnd = &t->jnd,
+               .settings = &t->settings,
+               .log_jnd = log(jnd->value),
+               .log_d_prime = log(ef_criterion_d_prime(&jnd->criterion)),
+               .jnd_sd = jnd_sd_of(jnd)};
+    t->common.answers = ef__answers_new(jnd->exponent * jnd->observer_log_sd);
+    if (t->common.answers != NULL && draw_normals(t))
+      return t;
+  }
+  ef_teller_free(t);
+  ef__error_memory(error, "what is told apart");
+  return NULL;
+}
+
+void ef_teller_free(ef_teller *teller) {
+  if (teller == NULL)
+    return;
+  ef__answers_free(teller->common.answers);
+  free(teller->common.draw);
+  free(teller);
+}
+
+/* ---- All pairs --------------------------------------------------------- */
+
+ef_status ef_teller_tell(const ef_teller *teller, size_t n,
+                         const ef_judged *judged, int jobs, ef_told_apart *out,
+                         ef_error *error) {
+  const ef_status status = check_judged(n, judged, error);
   if (status != EF_OK)
     return status;
-  work w = {.jnd = jnd,
-            .judged = judged,
-            .settings = settings,
-            .log_jnd = log(jnd->value),
-            .log_d_prime = log(ef_criterion_d_prime(&jnd->criterion)),
-            .jnd_sd = jnd_sd_of(jnd),
-            .out = out};
-  const size_t n_draws = settings->propagation == EF_PROPAGATE_MONTE_CARLO
-                             ? settings->n_draws
-                             : 0;
+  work w = teller->common;
   const size_t n_chunks = n / CHUNK + 1;
-  const ef__part parts[] = {{&w.draw, 3 * n_draws, sizeof(double)},
-                            {&w.no_memory, n_chunks, sizeof(bool)}};
-  void *const block = ef__allocate_block(sizeof parts / sizeof parts[0], parts);
-  w.answers = ef__answers_new(jnd->exponent * jnd->observer_log_sd);
-  bool has_memory = block != NULL && w.answers != NULL;
-  if (n_draws == 0)
-    w.draw = NULL;
-  ef__gsl_ready();
-  for (size_t i = 0; i < n_draws && has_memory; ++i) {
-    ef__random stream = ef__random_stream(settings->seed, i);
-    for (size_t k = 0; k < 3; ++k)
-      w.draw[3 * i + k] = ef__random_normal(&stream);
-  }
+  w.judged = judged;
+  w.out = out;
+  w.no_memory = ef__allocate_zeroed(n_chunks, sizeof *w.no_memory);
+  bool has_memory = w.no_memory != NULL;
   if (has_memory)
     ef__parallel_for(n, CHUNK, jobs, tell_range, &w);
   for (size_t i = 0; i < n_chunks && has_memory; ++i)
     has_memory = !w.no_memory[i];
-  ef__answers_free(w.answers);
-  free(block);
+  free(w.no_memory);
   return has_memory ? EF_OK : ef__error_memory(error, "what is told apart");
+}
+
+ef_status ef_told_apart_batch(const ef_jnd_record *jnd, size_t n,
+                              const ef_judged *judged,
+                              const ef_told_apart_settings *settings, int jobs,
+                              ef_told_apart *out, ef_error *error) {
+  ef_status status = check_settings(jnd, settings, error);
+  if (status == EF_OK)
+    status = check_judged(n, judged, error);
+  if (status != EF_OK)
+    return status;
+  ef_teller *const teller = ef_teller_new(jnd, settings, error);
+  if (teller == NULL)
+    return ef__error_memory(error, "what is told apart");
+  status = ef_teller_tell(teller, n, judged, jobs, out, error);
+  ef_teller_free(teller);
+  return status;
 }

@@ -352,6 +352,8 @@ void compare_scene_free(compare_scene *s) {
     clouds_free(s->clouds);
   free(s->clouds);
   people_free(&s->people);
+  for (size_t i = 0; i < sizeof s->teller / sizeof s->teller[0]; ++i)
+    ef_teller_free(s->teller[i]);
   free(s->worst_case_of);
   worst_case_free(s->worst_case, s->n_worst_cases);
   finish_file_free(s->batch);

@@ -31,6 +31,7 @@ typedef struct compare_scene {
   ef_adaptation adaptation; /**< for colour inconstancy */
   ef_task task;
   ef_told_apart_settings told;
+  ef_teller *teller[2];       /**< by propagation; made when they are needed */
   bool always_draws;          /**< Monte Carlo also for small uncertainties */
   size_t n_weights;           /**< of angles; 0: all alike */
   double *angle_deg, *weight; /**< owned */

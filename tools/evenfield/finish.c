@@ -26,10 +26,14 @@ typedef struct row_buffer {
 } row_buffer;
 
 /* Hashes of the names of earlier parts, with the lines of the first ones. */
+typedef struct known_name {
+  uint64_t hash; /* 0: free */
+  size_t line;
+} known_name;
+
 typedef struct known_names {
   size_t n, n_slots;
-  uint64_t *hash; /* 0: free */
-  size_t *line;
+  known_name *at;
 } known_names;
 
 struct finish_file {
@@ -81,7 +85,7 @@ finish *finish_list_find(const finish_list *list, const char *name) {
 
 static size_t known_slot(const known_names *k, uint64_t hash) {
   size_t i = (size_t)hash & (k->n_slots - 1);
-  while (k->hash[i] != 0 && k->hash[i] != hash)
+  while (k->at[i].hash != 0 && k->at[i].hash != hash)
     i = (i + 1) & (k->n_slots - 1);
   return i;
 }
@@ -90,22 +94,14 @@ static bool known_grow(known_names *k, size_t n) {
   known_names grown = {.n = k->n, .n_slots = slots_for(n)};
   if (k->n_slots >= grown.n_slots)
     return true;
-  grown.hash = calloc(grown.n_slots, sizeof *grown.hash);
-  grown.line = calloc(grown.n_slots, sizeof *grown.line);
-  if (grown.hash == NULL || grown.line == NULL) {
-    free(grown.hash);
-    free(grown.line);
+  grown.at = calloc(grown.n_slots, sizeof *grown.at);
+  if (grown.at == NULL)
     return false;
-  }
   for (size_t i = 0; i < k->n_slots; ++i) {
-    if (k->hash[i] == 0)
-      continue;
-    const size_t at = known_slot(&grown, k->hash[i]);
-    grown.hash[at] = k->hash[i];
-    grown.line[at] = k->line[i];
+    if (k->at[i].hash != 0)
+      grown.at[known_slot(&grown, k->at[i].hash)] = k->at[i];
   }
-  free(k->hash);
-  free(k->line);
+  free(k->at);
   *k = grown;
   return true;
 }
@@ -121,12 +117,11 @@ static ef_status check_known(finish_file *f, finish_list *list,
     return message_fail(error, EF_NO_MEMORY, "out of memory for names");
   for (size_t i = 0; i < list->n && k->n_slots > 0; ++i) {
     const uint64_t hash = hash_of(list->item[i].name);
-    const size_t at = known_slot(k, hash);
-    if (k->hash[at] == hash) {
-      list->item[i].also_in_part = k->line[at];
+    known_name *known = &k->at[known_slot(k, hash)];
+    if (known->hash == hash) {
+      list->item[i].also_in_part = known->line;
     } else if (2 * k->n < k->n_slots) {
-      k->hash[at] = hash;
-      k->line[at] = list->item[i].line;
+      *known = (known_name){hash, list->item[i].line};
       ++k->n;
     }
   }
@@ -172,8 +167,7 @@ void finish_file_free(finish_file *file) {
   looks_colours_free(&file->colours);
   ef_reader_free(file->reader);
   buffer_free(&file->rows);
-  free(file->known.hash);
-  free(file->known.line);
+  free(file->known.at);
   free(file);
 }
 

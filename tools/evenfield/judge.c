@@ -458,7 +458,7 @@ static ef_status compare_sights(work *w, judged *j, ef_error *error) {
   return status;
 }
 
-ef_status judge_pairs(const compare_scene *s, size_t n, const pair *pairs,
+ef_status judge_pairs(compare_scene *s, size_t n, const pair *pairs,
                       judged *out, ef_error *error) {
   work w = {.s = s, .pairs = pairs, .n_looks = s->looks.n};
   ef_status status = allocate(&w, out, n, most_sights(n, pairs), error);

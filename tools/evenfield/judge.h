@@ -24,7 +24,7 @@ typedef struct judged {
 } judged;
 
 /** Compares n pairs. Free with judged_free in every case. */
-ef_status judge_pairs(const compare_scene *s, size_t n, const pair *pairs,
+ef_status judge_pairs(compare_scene *s, size_t n, const pair *pairs,
                       judged *out, ef_error *error);
 void judged_free(judged *j);
 

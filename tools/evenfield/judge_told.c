@@ -72,20 +72,31 @@ static void group_add(told_group *g, const work *w, size_t place) {
   ++g->n;
 }
 
+static ef_teller *teller_of(compare_scene *s, ef_propagation propagation,
+                            ef_error *error) {
+  ef_teller **teller = &s->teller[propagation];
+  if (*teller != NULL)
+    return *teller;
+  ef_told_apart_settings settings = s->told;
+  settings.propagation = propagation;
+  *teller = ef_teller_new(&s->jnd.record, &settings, error);
+  return *teller;
+}
+
 static ef_status group_tell(told_group *g, const work *w,
                             ef_propagation propagation, ef_error *error) {
   const compare_scene *s = w->s;
   if (g->n == 0)
     return EF_OK;
-  ef_told_apart_settings settings = s->told;
-  settings.propagation = propagation;
+  ef_teller *teller = teller_of(w->s, propagation, error);
+  if (teller == NULL)
+    return error->status;
   const ef_judged asked = {.difference = g->difference,
                            .n_observers = g->n_observers,
                            .measurement_sd = g->measurement_sd,
                            .batch_sd = g->batch_sd};
   const ef_status status =
-      ef_told_apart_batch(&s->jnd.record, g->n, &asked, &settings,
-                          s->options->jobs, g->told, error);
+      ef_teller_tell(teller, g->n, &asked, s->options->jobs, g->told, error);
   for (size_t i = 0; i < g->n && status == EF_OK; ++i)
     w->outcome[g->place[i]].told = g->told[i];
   g->n = 0;

@@ -13,7 +13,7 @@ typedef struct sight {
 } sight;
 
 typedef struct work {
-  const compare_scene *s;
+  compare_scene *s;
   const pair *pairs; /**< of the block */
   size_t n_looks, n; /**< sights */
   sight *sight;
