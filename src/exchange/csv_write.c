@@ -8,12 +8,17 @@
 
 #include "base/base_private.h"
 
+/* Fields are gathered here: they are short, and an output is a long way. */
+enum { ROOM = 4096 };
+
 struct ef_csv {
   ef_output *output;
   bool in_row;
   bool row_is_blank; /* one empty field so far */
   ef_status status;  /* of the first failure */
   ef_error error;
+  size_t used;
+  char text[ROOM];
 };
 
 ef_csv *ef_csv_new(ef_output *output, ef_error *error) {
@@ -26,9 +31,29 @@ ef_csv *ef_csv_new(ef_output *output, ef_error *error) {
   return csv;
 }
 
-static void put(ef_csv *csv, const char *bytes, size_t length) {
-  if (csv->status != EF_OK) return;
+static void hand_on(ef_csv *csv, const char *bytes, size_t length) {
+  if (csv->status != EF_OK || length == 0) return;
   csv->status = ef_output_write(csv->output, bytes, length, &csv->error);
+}
+
+static void empty(ef_csv *csv) {
+  hand_on(csv, csv->text, csv->used);
+  csv->used = 0;
+}
+
+static void put_one(ef_csv *csv, char byte) {
+  if (csv->used == ROOM) empty(csv);
+  csv->text[csv->used++] = byte;
+}
+
+static void put(ef_csv *csv, const char *bytes, size_t length) {
+  if (length > ROOM - csv->used) empty(csv);
+  if (length > ROOM) {
+    hand_on(csv, bytes, length);
+    return;
+  }
+  if (length > 0) memcpy(csv->text + csv->used, bytes, length);
+  csv->used += length;
 }
 
 void ef_csv_comment(ef_csv *csv, const char *text) {
@@ -47,7 +72,7 @@ void ef_csv_comment(ef_csv *csv, const char *text) {
 }
 
 static void begin_field(ef_csv *csv) {
-  if (csv->in_row) put(csv, ",", 1);
+  if (csv->in_row) put_one(csv, ',');
   csv->row_is_blank = false;
   csv->in_row = true;
 }
@@ -92,20 +117,20 @@ void ef_csv_text(ef_csv *csv, const char *text) {
 }
 
 void ef_csv_number(ef_csv *csv, double value) {
-  char text[EF_NUMBER_TEXT];
   const bool is_first = !csv->in_row;
   begin_field(csv);
   if (isnan(value)) {
     csv->row_is_blank = is_first;
     return;
   }
-  put(csv, text, ef_number_format(value, text));
+  if (EF_NUMBER_TEXT > ROOM - csv->used) empty(csv);
+  csv->used += ef_number_format(value, csv->text + csv->used);
 }
 
 void ef_csv_end_row(ef_csv *csv) {
   /* A blank line is no row. */
   if (csv->row_is_blank) put(csv, "\"\"", 2);
-  put(csv, "\n", 1);
+  put_one(csv, '\n');
   csv->in_row = false;
   csv->row_is_blank = false;
 }
@@ -118,6 +143,7 @@ void ef_csv_rows(ef_csv *csv, const char *bytes, size_t length) {
 ef_status ef_csv_finish(ef_csv *csv, ef_error *error) {
   if (csv == NULL) return EF_OK;
   if (csv->in_row) ef_csv_end_row(csv);
+  empty(csv);
   const ef_status status = csv->status;
   if (status != EF_OK && error != NULL) *error = csv->error;
   free(csv);
