@@ -127,7 +127,7 @@ done
 
 # A full disk: nothing is left, and the exit status says so.
 if [ -c /dev/full ]; then
-  for kind in svg pdf; do
+  for kind in svg pdf png; do
     ln -s /dev/full full.$kind
     "$evenfield" match t.csv --quiet --chart full.$kind >out 2>message
     ef_check "full disk, $kind: status" $? 5
@@ -138,6 +138,23 @@ if [ -c /dev/full ]; then
 else
   ef_skip "full disk" /dev/full
 fi
+# A disk that is full in the middle of a file, by a limit on its size: what was
+# written before stays as it was, and nothing half-written is left.
+mkdir limited
+echo mine | tee limited/b.svg limited/b.pdf limited/b.png >limited/b.html
+for kind in svg pdf png html; do
+  option=--chart
+  [ $kind = html ] && option=--report
+  (
+    cd limited && ulimit -f 4 &&
+      "$evenfield" match --quiet --force $option b.$kind >../out 2>../message
+  )
+  ef_check "no room, $kind" "$? $(cat out message limited/b.$kind)" \
+    "5 evenfield: b.$kind: cannot be written: File too large
+mine"
+done
+ef_check "no room: nothing is left" "$(cd limited && ls -A | tr '\n' ' ')" \
+  "b.html b.pdf b.png b.svg "
 "$evenfield" match t.csv --quiet --chart none/a.svg >out 2>message
 ef_check "no folder: status" $? 5
 ef_check "no folder: message" "$(cat message)" \

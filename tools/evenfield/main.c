@@ -1,4 +1,5 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
+#include <signal.h>
 #include <stdio.h>
 #include <string.h>
 
@@ -45,6 +46,11 @@ static exit_code run(const command_entry *command, int argc,
 
 int main(int argc, char **argv) {
   exit_code code = EXIT_DONE;
+#ifdef SIGXFSZ
+  /* A limit on the size of files is told like a full disk, not by ending in the
+   * middle of one. */
+  signal(SIGXFSZ, SIG_IGN);
+#endif
   if (argc < 2 || strcmp(argv[1], "--help") == 0) {
     help_first_screen(stdout);
   } else if (strcmp(argv[1], "--version") == 0) {
