@@ -11,6 +11,7 @@
 #include <unistd.h>
 
 #include <cmocka.h>
+#include <lcms2.h>
 #include <png.h>
 
 #include <evenfield/device.h>
@@ -28,6 +29,7 @@ typedef struct picture {
   bool has_profile, has_cicp;
   unsigned char cicp[4];
   png_uint_32 profile_length;
+  cmsHPROFILE opened;   /* by lcms2; NULL: none */
   unsigned char *bytes; /* rows of RGB */
 } picture;
 
@@ -72,6 +74,8 @@ static picture read_picture(const char *path) {
   int compression;
   p.has_profile = png_get_iCCP(png, info, &name, &compression, &profile,
                                &p.profile_length) != 0;
+  if (p.has_profile)
+    p.opened = cmsOpenProfileFromMem(profile, p.profile_length);
   const size_t row = png_get_rowbytes(png, info);
   p.bytes = malloc(row * p.height);
   assert_non_null(p.bytes);
@@ -81,6 +85,12 @@ static picture read_picture(const char *path) {
   png_destroy_read_struct(&png, &info, NULL);
   fclose(file);
   return p;
+}
+
+static void forget(picture *p) {
+  if (p->opened != NULL)
+    cmsCloseProfile(p->opened);
+  free(p->bytes);
 }
 
 static void sample(const picture *p, size_t x, size_t y, double rgb[3]) {
@@ -180,7 +190,7 @@ static void test_halves_hold_their_colours(void **state) {
     /* The halves touch: the last column of one, the first of the other. */
     worst = fmax(worst, gap(swatch.target, decode(&p, 255, 0)));
     worst = fmax(worst, gap(swatch.match, decode(&p, 256, 255)));
-    free(p.bytes);
+    forget(&p);
   }
   print_message("# largest gap of a 16-bit pixel: %.5f Delta E*00\n", worst);
   assert_true(worst < 0.02);
@@ -214,8 +224,8 @@ static void test_eight_bits(void **state) {
       assert_true(fabs(coarse[c] - fine[c]) <= 0.5 / 255.0 + 1e-12);
     }
   }
-  free(p[0].bytes);
-  free(p[1].bytes);
+  forget(&p[0]);
+  forget(&p[1]);
 }
 
 static void test_tags(void **state) {
@@ -234,7 +244,51 @@ static void test_tags(void **state) {
   assert_memory_equal(p.cicp, wanted, 4);
   assert_true(p.has_profile);
   assert_true(p.profile_length > 128);
-  free(p.bytes);
+  forget(&p);
+}
+
+/* lcms2 by the picture's own profile: to CIELAB of D50, against the target on
+ * D50 by Bradford's transformation (that of ICC.1:2022, annex E). Fixed-point
+ * numbers of the profile (1.5e-5) and 16-bit codes leave some 0.01. */
+static void test_the_profile_says_the_same(void **state) {
+  static const double lab[][3] = {{62.37, 47.11, 58.23}, {27.41, 8.13, -29.77},
+                                  {81.19, -20.53, 0.67}, {97.83, -1.21, 3.47}};
+  const ef_xyz d50 = {96.42, 100, 82.49}; /* ICC.1:2022, 7.2.16 */
+  double to_d50[9], worst = 0;
+  assert_int_equal(
+      ef_adaptation_matrix(EF_ADAPT_BRADFORD, d65(), d50, to_d50, NULL), EF_OK);
+  for (size_t i = 0; i < sizeof lab / sizeof *lab; ++i) {
+    const ef_xyz colour = xyz_of_lab(lab[i][0], lab[i][1], lab[i][2]);
+    const ef_swatch swatch = {"pair", colour, colour, true, 0.0};
+    ef_swatch_settings settings = ef_swatch_settings_default();
+    settings.bits = 16;
+    settings.overwrite = true;
+    ef_swatch_report report;
+    assert_int_equal(ef_swatch_write(in(state, "a.png"), &swatch, &settings,
+                                     &report, NULL),
+                     EF_OK);
+    picture p = read_picture(in(state, "a.png"));
+    assert_non_null(p.opened);
+    cmsHPROFILE to = cmsCreateLab4Profile(NULL);
+    cmsHTRANSFORM transform = cmsCreateTransform(
+        p.opened, TYPE_RGB_DBL, to, TYPE_Lab_DBL,
+        INTENT_RELATIVE_COLORIMETRIC, cmsFLAGS_NOOPTIMIZE);
+    assert_non_null(transform);
+    double rgb[3];
+    cmsCIELab found;
+    sample(&p, 128, 128, rgb);
+    cmsDoTransform(transform, rgb, &found, 1);
+    const ef_lab wanted =
+        ef_xyz_to_lab(ef_xyz_transform(to_d50, colour), d50);
+    worst = fmax(worst, ef_delta_e_ciede2000(
+                            wanted, (ef_lab){found.L, found.a, found.b}, 1.0,
+                            1.0, 1.0));
+    cmsDeleteTransform(transform);
+    cmsCloseProfile(to);
+    forget(&p);
+  }
+  print_message("# largest gap by lcms2 and iCCP: %.5f Delta E*00\n", worst);
+  assert_true(worst < 0.02);
 }
 
 /* The white that everything is seen against becomes the picture's white. */
@@ -261,7 +315,7 @@ static void test_white_is_adapted(void **state) {
     assert_true(fabs(neutral[c] - neutral[0]) <= 1.0 / 65535.0);
   }
   assert_true(fabs(decode(&p, 400, 100).Y - 20.0) < 0.01);
-  free(p.bytes);
+  forget(&p);
 }
 
 static void test_clipped_halves_are_counted(void **state) {
@@ -310,14 +364,14 @@ static void test_mark_is_seen_without_colour(void **state) {
   assert_int_equal(count_turns(&p), 5);
   /* The middle of the half stays free for the eye. */
   assert_true(gap(swatch.match, decode(&p, 384, 128)) < 0.02);
-  free(p.bytes);
+  forget(&p);
   swatch.shown = true;
   assert_int_equal(
       ef_swatch_write(in(state, "a.png"), &swatch, &settings, &report, &error),
       EF_OK);
   p = read_picture(in(state, "a.png"));
   assert_int_equal(count_turns(&p), 0);
-  free(p.bytes);
+  forget(&p);
 }
 
 /* ---- Sheets ------------------------------------------------------------ */
@@ -367,7 +421,7 @@ static void test_sheet(void **state) {
   } else {
     print_message("# no text could be drawn on this machine\n");
   }
-  free(p.bytes);
+  forget(&p);
 }
 
 /* ---- Labels ------------------------------------------------------------ */
@@ -481,6 +535,8 @@ int main(void) {
                                       tear_down),
       cmocka_unit_test_setup_teardown(test_eight_bits, set_up, tear_down),
       cmocka_unit_test_setup_teardown(test_tags, set_up, tear_down),
+      cmocka_unit_test_setup_teardown(test_the_profile_says_the_same, set_up,
+                                      tear_down),
       cmocka_unit_test_setup_teardown(test_white_is_adapted, set_up, tear_down),
       cmocka_unit_test_setup_teardown(test_clipped_halves_are_counted, set_up,
                                       tear_down),

@@ -432,6 +432,7 @@ typedef struct ef_png_head {
   const char *profile_name;
   const unsigned char *profile;
   size_t profile_length;
+  const char *damage; /**< of a profile that is left out; "" none */
   bool has_srgb;
   int srgb_intent;
   bool has_gamma;

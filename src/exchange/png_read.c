@@ -22,6 +22,8 @@ enum {
 /* Bytes that one ancillary chunk may take once unpacked. */
 #define MOST_CHUNK ((png_alloc_size_t)64 << 20)
 
+enum { MOST_REASON = 160 };
+
 struct ef_png {
   char *name;
   int descriptor; /* -1: memory */
@@ -44,10 +46,18 @@ struct ef_png {
   int n_warnings;
   bool is_cut;       /* the file ended too early */
   int read_errno;
-  char reason[160];
+  char reason[MOST_REASON];
+  char damage[MOST_REASON]; /* of a colour tag */
 };
 
 /* ---- What libpng calls --------------------------------------------------- */
+
+static void keep_text(const char *message, char out[MOST_REASON]) {
+  const size_t length = strlen(message);
+  const size_t kept = length < MOST_REASON - 1 ? length : MOST_REASON - 1;
+  memcpy(out, message, kept);
+  out[kept] = '\0';
+}
 
 static size_t take(ef_png *p, png_bytep to, size_t length) {
   if (p->descriptor < 0) {
@@ -83,10 +93,7 @@ static void read_bytes(png_structp png, png_bytep to, size_t length) {
 
 static void keep_reason(png_structp png, png_const_charp message) {
   ef_png *const p = png_get_error_ptr(png);
-  const size_t length = strlen(message);
-  const size_t most = sizeof p->reason - 1;
-  memcpy(p->reason, message, length < most ? length : most);
-  p->reason[length < most ? length : most] = '\0';
+  keep_text(message, p->reason);
   png_longjmp(png, 1);
 }
 
@@ -97,6 +104,8 @@ static void tell_warning(png_structp png, png_const_charp message) {
   if (p->n_warnings++ < MOST_WARNINGS)
     ef__note(p->settings.notes, "%s: left out as damaged: %s", p->name,
              message);
+  if (strncmp(message, "iCCP", 4) == 0 && p->damage[0] == '\0')
+    keep_text(message, p->damage);
 }
 
 /* ---- The head ------------------------------------------------------------ */
@@ -331,6 +340,7 @@ static ef_png *png_new(const char *name, const ef_png_settings *settings,
     return NULL;
   }
   p->head.file = p->name;
+  p->head.damage = p->damage;
   return p;
 }
 

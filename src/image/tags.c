@@ -204,7 +204,12 @@ ef_profile *ef__tags_profile(const ef_png_head *head, const ef_notes *notes,
     if (reason.status == EF_NO_MEMORY)
       break;
   }
-  if (reason.status == EF_OK)
+  if (reason.status == EF_OK && head->damage[0] != '\0')
+    ef__error_set(error, EF_NO_ANSWER,
+                  "has a damaged colour tag (%s) and no other, so its colours "
+                  "are not known",
+                  head->damage);
+  else if (reason.status == EF_OK)
     ef__error_set(error, EF_NO_ANSWER,
                   "has no colour tags (cICP, iCCP, sRGB, gAMA, cHRM), so its "
                   "colours are not known");
