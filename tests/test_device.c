@@ -7,6 +7,7 @@
 #include "fail_alloc.h"
 #include "gen.h"
 #include "invented_display.h"
+#include "must.h"
 #include "near.h"
 
 enum { N = INVENTED_SAMPLES };
@@ -18,23 +19,6 @@ static void keep_note(void *cookie, const char *line) {
   char *text = cookie;
   const size_t used = strlen(text);
   snprintf(text + used, 1000 - used, "%s\n", line);
-}
-
-static ef_observer *observer_named(const char *name) {
-  ef_error error;
-  ef_observer *observer = ef_observer_new(name, &error);
-  if (observer == NULL)
-    fail_msg("%s", error.message);
-  return observer;
-}
-
-static ef_setup *setup_of(const ef_device *device,
-                          const ef_observer *observer) {
-  ef_error error;
-  ef_setup *setup = ef_setup_new(device, observer, NULL, NULL, &error);
-  if (setup == NULL)
-    fail_msg("%s", error.message);
-  return setup;
 }
 
 /* ---- The interface ----------------------------------------------------- */
@@ -299,13 +283,13 @@ static ef_display_settings room(const ef_illuminant *illuminant) {
 static void room_light_adds_its_luminance(void **state) {
   (void)state;
   ef_illuminant *a = ef_illuminant_new("A", NULL);
-  ef_observer *observer = observer_named("cie-1931");
+  ef_observer *observer = must_observer("cie-1931");
   const ef_display_settings settings = room(a);
   ef_spectra *spectra = invented_spectra(true);
   ef_device *dark = ef_display_from_spectra("kiosk", spectra, NULL, NULL);
   ef_device *lit = ef_display_from_spectra("kiosk", spectra, &settings, NULL);
-  ef_setup *in_dark = setup_of(dark, observer),
-           *in_room = setup_of(lit, observer);
+  ef_setup *in_dark = must_setup(dark, observer),
+           *in_room = must_setup(lit, observer);
   const ef_xyz black = ef_setup_black(in_dark),
                raised = ef_setup_black(in_room);
   const double k = 1 / ef_setup_scale(in_room),
@@ -414,14 +398,14 @@ static void additivity_without_a_white(void **state) {
 
 static void encodings_become_displays(void **state) {
   (void)state;
-  ef_observer *observer = observer_named("cie-1931");
+  ef_observer *observer = must_observer("cie-1931");
   for (size_t e = 0; e < ef_encoding_count(); e++) {
     const ef_encoding *encoding = ef_encoding_at(e);
     ef_error error;
     ef_device *device = ef_display_from_encoding(encoding->name, NULL, &error);
     if (device == NULL)
       fail_msg("%s: %s", encoding->name, error.message);
-    ef_setup *setup = setup_of(device, observer);
+    ef_setup *setup = must_setup(device, observer);
     const ef_xyy white = ef_xyz_to_xyy(ef_setup_white(setup));
     assert_near(white.x, encoding->white.x, 1e-15);
     assert_near(white.y, encoding->white.y, 1e-15);

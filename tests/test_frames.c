@@ -19,25 +19,6 @@ static ef_isolation s_cone(const invented *i, ef_modulation modulation) {
   return out;
 }
 
-/* 200 x 120 pixels of 0.5 mm at 1 m: 5.72 x 3.44 degrees. */
-static ef_frame_settings small_frame(void) {
-  ef_frame_settings s = ef_frame_settings_default();
-  s.width_px = 200;
-  s.height_px = 120;
-  s.distance_mm = 1000;
-  s.pixels_per_mm = 2;
-  return s;
-}
-
-static ef_frames *make(const invented *i, const ef_isolation *way,
-                       const ef_frame_settings *settings) {
-  ef_error error;
-  ef_frames *frames = ef_frames_new(i->stimulator, way, settings, NULL, &error);
-  if (frames == NULL)
-    fail_msg("%s", error.message);
-  return frames;
-}
-
 /* ---- Waveforms ---------------------------------------------------------- */
 
 static void waveforms_by_hand(void **state) {
@@ -117,12 +98,12 @@ static void areas_of_disc_and_frame(void **state) {
   (void)state;
   invented i = invented_new(3, "cie-2015-2");
   const ef_isolation way = s_cone(&i, EF_SYMMETRIC);
-  ef_frame_settings s = small_frame();
+  ef_frame_settings s = invented_frame(200, 120);
   s.size_deg = 2.5;
   s.width_px = 800;
   s.height_px = 480;
   s.pixels_per_mm = 8;
-  ef_frames *frames = make(&i, &way, &s);
+  ef_frames *frames = invented_frames(&i, &way, &s);
   const ef_frame_area area = ef_frames_area(frames);
   const double w = 100, h = 60, d = 1000, pi = 3.14159265358979323846;
   assert_near_relative(
@@ -136,7 +117,7 @@ static void areas_of_disc_and_frame(void **state) {
                        2e-3);
   ef_frames_free(frames);
   s.pattern = EF_PATTERN_UNIFORM;
-  frames = make(&i, &way, &s);
+  frames = invented_frames(&i, &way, &s);
   assert_near(ef_frames_area(frames).share_of_frame, 1.0, 1e-9);
   ef_frames_free(frames);
   invented_free(&i);
@@ -159,13 +140,13 @@ static void patterns_by_hand(void **state) {
   (void)state;
   invented i = invented_new(3, "cie-2015-2");
   const ef_isolation way = s_cone(&i, EF_SYMMETRIC);
-  ef_frame_settings s = small_frame();
+  ef_frame_settings s = invented_frame(200, 120);
   s.width_px = 2001; /* a pixel in the middle */
   s.height_px = 3;
   s.pixels_per_mm = 20;
   s.size_deg = 2;
   s.edge_deg = 0.5;
-  ef_frames *frames = make(&i, &way, &s);
+  ef_frames *frames = invented_frames(&i, &way, &s);
   const double pixel = 0.003; /* degrees */
   assert_near(level_near(frames, 0), 1, 0);
   assert_near(level_near(frames, 0.74), 1, 0);
@@ -178,7 +159,7 @@ static void patterns_by_hand(void **state) {
   s.pattern = EF_PATTERN_ANNULUS;
   s.edge_deg = 0;
   s.hole_deg = 1;
-  frames = make(&i, &way, &s);
+  frames = invented_frames(&i, &way, &s);
   assert_near(level_near(frames, 0), 0, 0);
   assert_near(level_near(frames, 0.49), 0, 0);
   assert_near(level_near(frames, 0.51), 1, 0);
@@ -187,7 +168,7 @@ static void patterns_by_hand(void **state) {
   s.pattern = EF_PATTERN_GRATING;
   s.size_deg = 0;
   s.cycles_per_deg = 0.5;
-  frames = make(&i, &way, &s);
+  frames = invented_frames(&i, &way, &s);
   assert_near(level_near(frames, 0), 1, 1e-12);
   assert_near(level_near(frames, 1), -1, 1e-4);
   assert_near(level_near(frames, 0.5), 0, 2 * pixel);
@@ -196,7 +177,7 @@ static void patterns_by_hand(void **state) {
   s.pattern = EF_PATTERN_GABOR;
   s.sigma_deg = 0.8;
   s.phase_deg = 90;
-  frames = make(&i, &way, &s);
+  frames = invented_frames(&i, &way, &s);
   assert_near(level_near(frames, 0), 0, 1e-12);
   /* cos(90 + 90 degrees) = -1 half a degree on, under the Gaussian */
   assert_near(level_near(frames, 0.5), -exp(-0.5 * 0.625 * 0.625), 1e-3);
@@ -204,7 +185,7 @@ static void patterns_by_hand(void **state) {
   s.pattern = EF_PATTERN_DISC;
   s.size_deg = 1;
   s.centre_x_deg = 1.5;
-  frames = make(&i, &way, &s);
+  frames = invented_frames(&i, &way, &s);
   assert_near(level_near(frames, 1.5), 1, 0);
   assert_near(level_near(frames, 0.99), 0, 0);
   assert_near(level_near(frames, 1.01), 1, 0);
@@ -219,7 +200,7 @@ static void orientation_is_counterclockwise(void **state) {
   (void)state;
   invented i = invented_new(3, "cie-2015-2");
   const ef_isolation way = s_cone(&i, EF_SYMMETRIC);
-  ef_frame_settings s = small_frame();
+  ef_frame_settings s = invented_frame(200, 120);
   double level[201];
   s.pattern = EF_PATTERN_GRATING;
   s.size_deg = 0;
@@ -227,13 +208,13 @@ static void orientation_is_counterclockwise(void **state) {
   s.cycles_per_deg = 0.4;
   s.phase_deg = -90; /* a sine */
   s.orientation_deg = 90;
-  ef_frames *frames = make(&i, &way, &s);
+  ef_frames *frames = invented_frames(&i, &way, &s);
   ef_frames_levels(frames, 0, 90, level); /* above the middle */
   assert_true(level[0] > 0.1);
   assert_near(level[0], level[200], 1e-12);
   ef_frames_free(frames);
   s.orientation_deg = 45;
-  frames = make(&i, &way, &s);
+  frames = invented_frames(&i, &way, &s);
   ef_frames_levels(frames, 0, 90, level);
   assert_near(level[90], 0, 1e-12); /* 10 up, 10 to the left */
   assert_true(level[110] > 0.1);    /* 10 up, 10 to the right */
@@ -295,7 +276,7 @@ static void drift_moves_in_its_direction(void **state) {
   (void)state;
   invented i = invented_new(3, "cie-2015-2");
   const ef_isolation way = s_cone(&i, EF_SYMMETRIC);
-  ef_frame_settings s = small_frame();
+  ef_frame_settings s = invented_frame(200, 120);
   double level[201];
   s.pattern = EF_PATTERN_GRATING;
   s.size_deg = 0;
@@ -303,7 +284,7 @@ static void drift_moves_in_its_direction(void **state) {
   s.cycles_per_deg = 0.4;
   s.drift_hz = 3;
   s.waveform.duration_s = 0.5;
-  ef_frames *frames = make(&i, &way, &s);
+  ef_frames *frames = invented_frames(&i, &way, &s);
   assert_int_equal(ef_frames_count(frames), 30);
   /* Frame 2 is at 2.5 / 60 s: an eighth of a cycle on, 0.3125 degrees. */
   ef_frames_levels(frames, 2, 60, level);
@@ -339,20 +320,20 @@ static void bad_screens_are_refused(void **state) {
   (void)state;
   invented i = invented_new(3, "cie-2015-2");
   ef_isolation way = s_cone(&i, EF_SYMMETRIC);
-  ef_frame_settings s = small_frame();
+  ef_frame_settings s = invented_frame(200, 120);
   s.width_px = 0;
   refuse(&i, &way, &s,
          "frames of 0 x 120 pixels; expected 1 to 32768 on each side");
-  s = small_frame();
+  s = invented_frame(200, 120);
   s.distance_mm = 0;
   refuse(&i, &way, &s, "a viewing distance of 0 mm; expected more than 0");
-  s = small_frame();
+  s = invented_frame(200, 120);
   s.pixels_per_mm = -4;
   refuse(&i, &way, &s, "-4 pixels per mm; expected more than 0");
-  s = small_frame();
+  s = invented_frame(200, 120);
   s.bits = 12;
   refuse(&i, &way, &s, "frames of 12 bits; expected 8, 10 or 16");
-  s = small_frame();
+  s = invented_frame(200, 120);
   s.width_px = 30000;
   s.height_px = 30000;
   s.waveform.duration_s = 10;
@@ -360,7 +341,7 @@ static void bad_screens_are_refused(void **state) {
          "600 frames of 30000 x 30000 pixels are 1.62e+12 bytes; at most 4e+09 "
          "are allowed");
   way.n_primaries = 5;
-  s = small_frame();
+  s = invented_frame(200, 120);
   refuse(&i, &way, &s, "a modulation of 5 primaries is shown on 3");
   invented_free(&i);
 }
@@ -369,25 +350,25 @@ static void bad_patterns_are_refused(void **state) {
   (void)state;
   invented i = invented_new(3, "cie-2015-2");
   const ef_isolation way = s_cone(&i, EF_SYMMETRIC);
-  ef_frame_settings s = small_frame();
+  ef_frame_settings s = invented_frame(200, 120);
   s.size_deg = 0;
   refuse(&i, &way, &s,
          "a disc of 0 degrees; expected more than 0 and less than 180");
-  s = small_frame();
+  s = invented_frame(200, 120);
   s.edge_deg = 3;
   refuse(&i, &way, &s,
          "edges of 3 degrees on a disc of 2; expected 0 up to its size");
-  s = small_frame();
+  s = invented_frame(200, 120);
   s.pattern = EF_PATTERN_ANNULUS;
   s.hole_deg = 2;
   refuse(&i, &way, &s,
          "a hole of 2 degrees in an annulus of 2 with edges of 0.2; expected "
          "more than 0, and a ring between the edges");
-  s = small_frame();
+  s = invented_frame(200, 120);
   s.centre_y_deg = 95;
   refuse(&i, &way, &s,
          "a centre at 0, 95 degrees; expected less than 90 to each side");
-  s = small_frame();
+  s = invented_frame(200, 120);
   s.pattern = EF_PATTERN_GRATING;
   s.cycles_per_deg = 0;
   refuse(&i, &way, &s,
@@ -405,7 +386,7 @@ static void bad_patterns_are_refused(void **state) {
   s.phase_deg = INFINITE;
   refuse(&i, &way, &s,
          "phase inf and orientation 0 degrees; expected finite numbers");
-  s = small_frame();
+  s = invented_frame(200, 120);
   s.pattern = EF_PATTERN_GABOR;
   s.sigma_deg = 0;
   refuse(&i, &way, &s, "a Gaussian of 0 degrees; expected more than 0");
@@ -416,11 +397,11 @@ static void bad_waveforms_are_refused(void **state) {
   (void)state;
   invented i = invented_new(3, "cie-2015-2");
   const ef_isolation way = s_cone(&i, EF_SYMMETRIC);
-  ef_frame_settings s = small_frame();
+  ef_frame_settings s = invented_frame(200, 120);
   s.frame_rate_hz = 0;
   refuse(&i, &way, &s,
          "a frame rate of 0 Hz; expected more than 0 and at most 100000");
-  s = small_frame();
+  s = invented_frame(200, 120);
   s.waveform.duration_s = -1;
   refuse(&i, &way, &s, "a duration of -1 s; expected 0 to 1000000");
   s.waveform.duration_s = 1;
@@ -457,7 +438,7 @@ static void what_was_assumed_is_noted(void **state) {
   const ef_notes notes = heard_notes(&said);
   invented i = invented_new(3, "cie-2015-2");
   const ef_isolation way = s_cone(&i, EF_SYMMETRIC);
-  ef_frame_settings s = small_frame();
+  ef_frame_settings s = invented_frame(200, 120);
   s.size_deg = 4;
   s.bits = 16;
   s.waveform.kind = EF_WAVEFORM_SINUSOID;
@@ -480,8 +461,8 @@ static void what_was_assumed_is_noted(void **state) {
   /* Four primaries take two pictures of three. */
   i = invented_new(4, "cie-2015-2");
   const ef_isolation four = s_cone(&i, EF_PULSE);
-  s = small_frame();
-  frames = make(&i, &four, &s);
+  s = invented_frame(200, 120);
+  frames = invented_frames(&i, &four, &s);
   assert_near(ef_frames_bytes(frames), 200.0 * 120 * 6, 0);
   ef_frames_free(frames);
   ef_dither_effect effect;
@@ -512,7 +493,8 @@ static bool try_frames(void *context) {
 
 static void memory_that_fails_is_told(void **state) {
   (void)state;
-  attempt a = {.i = invented_new(3, "cie-2015-2"), .settings = small_frame()};
+  attempt a = {.i = invented_new(3, "cie-2015-2"),
+               .settings = invented_frame(200, 120)};
   a.way = s_cone(&a.i, EF_SYMMETRIC);
   assert_true(fail_alloc_each(try_frames, &a) >= 3);
   invented_free(&a.i);

@@ -6,6 +6,7 @@
 
 #include "fail_alloc.h"
 #include "gen.h"
+#include "must.h"
 #include "near.h"
 
 #include "match/sphere.h"
@@ -39,18 +40,9 @@ static int close_eyes(void **state) {
   return 0;
 }
 
-static ef_weights *weights_of(const ef_look *look, const ef_grid *grid) {
-  ef_viewing viewing = look->viewing;
-  viewing.interpolation = EF_INTERPOLATE_LINEAR;
-  ef_weights *const weights = ef_observer_weights(
-      look->observer, EF_TRISTIMULUS, grid, &viewing, NULL, NULL);
-  assert_non_null(weights);
-  return weights;
-}
-
 static ef_xyz colour_of(const ef_look *look, const ef_grid *grid,
                         const double *spectrum) {
-  ef_weights *const weights = weights_of(look, grid);
+  ef_weights *const weights = must_weights(look, grid);
   double xyz[3];
   ef_weights_apply(weights, 1, spectrum, 1, xyz, NULL);
   ef_weights_free(weights);
@@ -76,7 +68,7 @@ static void four_samples_leave_a_line(void **state) {
   settings.grid = (ef_grid){.count = 4, .start_nm = 420, .step_nm = 70};
   settings.level = 1;
   const double r[4] = {0.3, 0.6, 0.4, 0.7};
-  ef_weights *const weights = weights_of(&e->d65_2, &settings.grid);
+  ef_weights *const weights = must_weights(&e->d65_2, &settings.grid);
   const double *const w = ef_weights_matrix(weights);
   /* w (v, 1) = 0: Cramer's rule for v, with w's rows of four. */
   double v[4] = {0, 0, 0, 1};

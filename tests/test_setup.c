@@ -4,26 +4,10 @@
 
 #include "device/device_private.h"
 #include "invented_display.h"
+#include "must.h"
 #include "near.h"
 
 enum { N = INVENTED_SAMPLES };
-
-static ef_observer *observer_named(const char *name) {
-  ef_error error;
-  ef_observer *observer = ef_observer_new(name, &error);
-  if (observer == NULL)
-    fail_msg("%s", error.message);
-  return observer;
-}
-
-static ef_setup *setup_of(const ef_device *device,
-                          const ef_observer *observer) {
-  ef_error error;
-  ef_setup *setup = ef_setup_new(device, observer, NULL, NULL, &error);
-  if (setup == NULL)
-    fail_msg("%s", error.message);
-  return setup;
-}
 
 /* cd/m2, from the spectrum alone. */
 static double luminance_at_full_drive(const ef_device *device,
@@ -48,8 +32,8 @@ static void setup_is_scaled_to_white(void **state) {
                                       "cie-2015-10"};
   ef_device *device = invented_display(true);
   for (size_t i = 0; i < 4; i++) {
-    ef_observer *observer = observer_named(names[i]);
-    ef_setup *setup = setup_of(device, observer);
+    ef_observer *observer = must_observer(names[i]);
+    ef_setup *setup = must_setup(device, observer);
     assert_ptr_equal(ef_setup_device(setup), device);
     assert_ptr_equal(ef_setup_observer(setup), observer);
     assert_true(ef_setup_affine(setup));
@@ -77,8 +61,8 @@ static void setup_is_scaled_to_white(void **state) {
 static void lights_beside_a_setup(void **state) {
   (void)state;
   ef_device *device = invented_display(true);
-  ef_observer *observer = observer_named("cie-1964");
-  ef_setup *setup = setup_of(device, observer);
+  ef_observer *observer = must_observer("cie-1964");
+  ef_setup *setup = must_setup(device, observer);
   double light[4 * N], xyz[12];
   invented_lights(light);
   const ef_grid grid = invented_grid();
@@ -107,8 +91,8 @@ static void setups_at_fault(void **state) {
   (void)state;
   ef_error error;
   ef_device *srgb = ef_display_from_encoding("srgb", NULL, NULL);
-  ef_observer *standard = observer_named("cie-1931");
-  ef_observer *large = observer_named("cie-1964");
+  ef_observer *standard = must_observer("cie-1931");
+  ef_observer *large = must_observer("cie-1964");
   ef_illuminant *d65 = ef_illuminant_new("D65", NULL);
   assert_null(ef_setup_new(NULL, standard, NULL, NULL, &error));
   assert_error(&error, EF_INVALID, "a setup needs a device and an observer");
@@ -117,7 +101,7 @@ static void setups_at_fault(void **state) {
   assert_null(ef_setup_new(srgb, standard, d65, NULL, &error));
   assert_error(&error, EF_INVALID,
                "'srgb' (display) is a light itself and takes no illuminant");
-  ef_setup *setup = setup_of(srgb, standard);
+  ef_setup *setup = must_setup(srgb, standard);
   const ef_grid grid = invented_grid();
   double light[4 * N], xyz[3];
   invented_lights(light);
@@ -182,7 +166,7 @@ static ef_device *filter_named(const char *name) {
 static void other_kinds_of_device(void **state) {
   (void)state;
   ef_error error;
-  ef_observer *observer = observer_named("cie-1931");
+  ef_observer *observer = must_observer("cie-1931");
   ef_illuminant *d50 = ef_illuminant_new("D50", NULL);
   ef_device *device = filter_named("sheet");
   assert_null(ef_setup_new(device, observer, NULL, NULL, &error));

@@ -2,30 +2,17 @@
 /* Any bytes as an ICC profile: refused with words, or a device, transforms and
  * matches that end. */
 #include <math.h>
-#include <stdint.h>
-#include <stdio.h>
-#include <stdlib.h>
 #include <string.h>
 
 #include <evenfield/match.h>
 
-int LLVMFuzzerTestOneInput(const uint8_t *bytes, size_t length);
-
-static void require_that(bool is_so, const char *what) {
-  if (is_so)
-    return;
-  fprintf(stderr, "broken promise: %s\n", what);
-  abort();
-}
+#include "promise.h"
 
 static void check_error(const ef_error *error) {
-  char text[1024];
   require_that(error->status == EF_MALFORMED || error->status == EF_NO_ANSWER ||
                    error->status == EF_INVALID,
                "a profile is refused as what it is");
-  require_that(error->message[0] != '\0', "an error has a message");
-  ef_error_describe(error, text, sizeof text);
-  require_that(strchr(text, '\n') == NULL, "an error is one line");
+  require_words(error, NULL);
 }
 
 static void check_info(const ef_profile *profile) {

@@ -5,6 +5,7 @@
 
 #include "gen.h"
 #include "invented_display.h"
+#include "must.h"
 #include "near.h"
 
 enum { N = 40, SAMPLES = INVENTED_SAMPLES };
@@ -15,14 +16,6 @@ typedef struct scene {
   ef_setup *setup, *of_complete;
 } scene;
 
-static ef_setup *setup_of(const ef_device *device,
-                          const ef_observer *observer) {
-  ef_error error;
-  ef_setup *const setup = ef_setup_new(device, observer, NULL, NULL, &error);
-  if (setup == NULL) fail_msg("%s", error.message);
-  return setup;
-}
-
 static scene scene_new(gen *g, int round) {
   ef_cone_model model = ef_cone_model_default();
   model.age_years = gen_between(g, 20, 80);
@@ -32,8 +25,8 @@ static scene scene_new(gen *g, int round) {
   s.complete = ef_observer_from_model(&model, NULL);
   model.deficiency = (ef_deficiency)(EF_PROTANOPE + round % 3);
   s.observer = ef_observer_from_model(&model, NULL);
-  s.setup = setup_of(s.device, s.observer);
-  s.of_complete = setup_of(s.device, s.complete);
+  s.setup = must_setup(s.device, s.observer);
+  s.of_complete = must_setup(s.device, s.complete);
   return s;
 }
 

@@ -34,24 +34,6 @@ static ef_isolation isolate(const invented *i, const char *change,
   return out;
 }
 
-static ef_frame_settings small_frame(void) {
-  ef_frame_settings s = ef_frame_settings_default();
-  s.width_px = 240;
-  s.height_px = 100;
-  s.distance_mm = 1000;
-  s.pixels_per_mm = 2;
-  return s;
-}
-
-static ef_frames *make(const invented *i, const ef_isolation *way,
-                       const ef_frame_settings *settings) {
-  ef_error error;
-  ef_frames *frames = ef_frames_new(i->stimulator, way, settings, NULL, &error);
-  if (frames == NULL)
-    fail_msg("%s", error.message);
-  return frames;
-}
-
 static double amount_of(const invented *i, size_t primary, int bits,
                         uint32_t code) {
   const double last = (1 << bits) - 1;
@@ -92,7 +74,7 @@ static void grating_is_on_average_the_background(void **state) {
     invented i = invented_new(plan[k].n, "cie-2015-2");
     const ef_isolation way =
         isolate(&i, "S", plan[k].n > 3 ? "mel" : "", EF_SYMMETRIC, 0.9);
-    ef_frame_settings s = small_frame();
+    ef_frame_settings s = invented_frame(240, 100);
     s.pattern = EF_PATTERN_GRATING;
     s.size_deg = 0;
     s.bits = plan[k].bits;
@@ -102,7 +84,7 @@ static void grating_is_on_average_the_background(void **state) {
     s.cycles_per_deg =
         plan[k].cycles / 2 /
         ef_pixels_to_degrees((double)s.width_px / 2, s.distance_mm, 2);
-    ef_frames *frames = make(&i, &way, &s);
+    ef_frames *frames = invented_frames(&i, &way, &s);
     const size_t n = plan[k].n;
     uint16_t *code = calloc(s.width_px * n, sizeof *code);
     double mean[MOST] = {0};
@@ -138,7 +120,7 @@ static void places_have_the_codes_of_the_isolation(void **state) {
     const ef_isolation way = isolate(&i, "S", "", EF_SYMMETRIC, 0.7);
     ef_codes_settings codes = ef_codes_settings_default();
     ef_coded coded;
-    ef_frame_settings s = small_frame();
+    ef_frame_settings s = invented_frame(240, 100);
     s.bits = codes.bits = n == 4 ? 10 : 8;
     s.edge_deg = 0;
     s.waveform.kind = EF_WAVEFORM_SQUARE;
@@ -146,7 +128,7 @@ static void places_have_the_codes_of_the_isolation(void **state) {
     s.waveform.duration_s = 0.2;
     assert_int_equal(
         ef_isolation_codes(i.stimulator, &way, &codes, &coded, NULL), EF_OK);
-    ef_frames *frames = make(&i, &way, &s);
+    ef_frames *frames = invented_frames(&i, &way, &s);
     uint16_t *code = calloc(s.width_px * n, sizeof *code);
     assert_int_equal(ef_frames_count(frames), 12);
     for (size_t frame = 0; frame < 12; frame++) {
@@ -169,7 +151,7 @@ static void frames_are_reproducible(void **state) {
   (void)state;
   invented i = invented_new(3, "cie-2015-2");
   const ef_isolation way = isolate(&i, "L,-M", "", EF_SYMMETRIC, 0.8);
-  ef_frame_settings s = small_frame();
+  ef_frame_settings s = invented_frame(240, 100);
   s.pattern = EF_PATTERN_GABOR;
   s.size_deg = 0;
   s.orientation_deg = 33;
@@ -179,9 +161,10 @@ static void frames_are_reproducible(void **state) {
   s.waveform.frequency_hz = 4;
   s.waveform.duration_s = 0.25;
   s.waveform.ramp_s = 0.1;
-  ef_frames *one = make(&i, &way, &s), *two = make(&i, &way, &s);
+  ef_frames *one = invented_frames(&i, &way, &s);
+  ef_frames *two = invented_frames(&i, &way, &s);
   s.seed = 2;
-  ef_frames *other = make(&i, &way, &s);
+  ef_frames *other = invented_frames(&i, &way, &s);
   uint16_t a[240 * 3], b[240 * 3];
   size_t n_other = 0;
   for (size_t k = 0; k < 15 * 100; k++) {
@@ -205,7 +188,7 @@ static void pulses_stay_on_their_side(void **state) {
   (void)state;
   invented i = invented_new(3, "cie-2015-2");
   const ef_isolation way = isolate(&i, "luminance", "", EF_PULSE, 0.8);
-  ef_frame_settings s = small_frame();
+  ef_frame_settings s = invented_frame(240, 100);
   double level[240], mean = 0;
   s.pattern = EF_PATTERN_GRATING;
   s.size_deg = 0;
@@ -213,7 +196,7 @@ static void pulses_stay_on_their_side(void **state) {
   s.waveform.kind = EF_WAVEFORM_SINUSOID;
   s.waveform.frequency_hz = 6;
   s.waveform.duration_s = 0.5;
-  ef_frames *frames = make(&i, &way, &s);
+  ef_frames *frames = invented_frames(&i, &way, &s);
   for (size_t frame = 0; frame < 30; frame++) {
     ef_frames_levels(frames, frame, 3, level);
     for (size_t x = 0; x < 240; x++) {
@@ -239,13 +222,13 @@ static void dithering_measures_what_frames_show(void **state) {
     ef_dither_effect effect;
     assert_int_equal(
         ef_isolation_dither(i.stimulator, &way, 8, 7, &effect, NULL), EF_OK);
-    ef_frame_settings s = small_frame();
+    ef_frame_settings s = invented_frame(240, 100);
     s.width_px = s.height_px = 8;
     s.pattern = EF_PATTERN_UNIFORM;
     s.dither = EF_DITHER_ORDERED;
     s.seed = 7;
     s.waveform.duration_s = 16 / 60.0;
-    ef_frames *frames = make(&i, &way, &s);
+    ef_frames *frames = invented_frames(&i, &way, &s);
     assert_int_equal(ef_frames_count(frames), 16);
     double mean[EF_N_RECEPTORS] = {0}, square[EF_N_RECEPTORS] = {0};
     double before[EF_N_RECEPTORS];
@@ -291,12 +274,12 @@ static void thresholds_are_spread_evenly(void **state) {
   for (int k = 1; k < 64; k += 7) {
     way.background[0] = low + (high - low) * (k + 0.5) / 64;
     way.modulation[0] = 0;
-    ef_frame_settings s = small_frame();
+    ef_frame_settings s = invented_frame(240, 100);
     s.width_px = s.height_px = 8;
     s.pattern = EF_PATTERN_UNIFORM;
     s.dither = EF_DITHER_ORDERED;
     s.waveform.duration_s = 5 / 60.0;
-    ef_frames *frames = make(&i, &way, &s);
+    ef_frames *frames = invented_frames(&i, &way, &s);
     for (size_t frame = 0; frame < 5; frame++) {
       int n_up = 0;
       for (size_t y = 0; y < 8; y++) {
@@ -372,9 +355,9 @@ static void check_written(int bits) {
   codes.bits = bits;
   assert_int_equal(ef_isolation_codes(i.stimulator, &way, &codes, &coded, NULL),
                    EF_OK);
-  ef_frame_settings s = small_frame();
+  ef_frame_settings s = invented_frame(240, 100);
   s.bits = bits;
-  ef_frames *frames = make(&i, &way, &s);
+  ef_frames *frames = invented_frames(&i, &way, &s);
   painter p = {frames, calloc(s.width_px * 3, sizeof(uint16_t)), s.width_px, 3,
                bits};
   const ef_png_rows rows = {.fill = paint, .cookie = &p};

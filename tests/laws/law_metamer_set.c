@@ -7,6 +7,7 @@
 #include <evenfield/match.h>
 
 #include "gen.h"
+#include "must.h"
 #include "near.h"
 
 enum { SAMPLES = 81, METAMERS = 100000, BLOCK = 1000 };
@@ -41,15 +42,6 @@ static int close_eyes(void **state) {
   ef_illuminant_free(e->fl11);
   free(e);
   return 0;
-}
-
-static ef_weights *weights_of(const ef_look *look, const ef_grid *grid) {
-  ef_viewing viewing = look->viewing;
-  viewing.interpolation = EF_INTERPOLATE_LINEAR;
-  ef_weights *const weights = ef_observer_weights(
-      look->observer, EF_TRISTIMULUS, grid, &viewing, NULL, NULL);
-  assert_non_null(weights);
-  return weights;
 }
 
 static ef_xyz colour_of(const ef_weights *weights, const double *spectrum) {
@@ -133,7 +125,7 @@ static bool in_mesh(const ef_metamer_set *set, ef_xyz xyz) {
 static void random_metamers_are_inside(void **state) {
   const eyes *const e = *state;
   const ef_metamer_settings settings = ef_metamer_settings_default();
-  ef_weights *const reference = weights_of(&e->reference, &settings.grid);
+  ef_weights *const reference = must_weights(&e->reference, &settings.grid);
   static double spectrum[BLOCK * SAMPLES], xyz[3 * BLOCK];
   gen g = gen_new(81);
   size_t n_seen = 0, n_mesh = 0;
@@ -144,7 +136,7 @@ static void random_metamers_are_inside(void **state) {
       start[k] = s == 0   ? 0.5
                  : s == 1 ? 0.1 + 0.6 / (1 + exp(0.2 * (46 - (double)k)))
                           : 0.05 + 0.5 * exp(-0.005 * pow((double)k - 30, 2));
-    ef_weights *const test = weights_of(&e->test[s], &settings.grid);
+    ef_weights *const test = must_weights(&e->test[s], &settings.grid);
     ef_metamer_set *const set =
         make(e, s, colour_of(reference, start), &settings, 0);
     while (n_seen < (s + 1) * METAMERS / 3 + 1) {
@@ -181,13 +173,13 @@ static void random_metamers_are_inside(void **state) {
 static void points_are_metamers(void **state) {
   const eyes *const e = *state;
   const ef_metamer_settings settings = ef_metamer_settings_default();
-  ef_weights *const reference = weights_of(&e->reference, &settings.grid);
+  ef_weights *const reference = must_weights(&e->reference, &settings.grid);
   gen g = gen_new(82);
   for (int round = 0; round < 12; ++round) {
     double start[SAMPLES];
     gen_smooth(&g, SAMPLES, start);
     const size_t t = (size_t)round % 3;
-    ef_weights *const test = weights_of(&e->test[t], &settings.grid);
+    ef_weights *const test = must_weights(&e->test[t], &settings.grid);
     const ef_xyz target = colour_of(reference, start);
     ef_metamer_set *const set = make(e, t, target, &settings, 0);
     assert_false(ef_metamer_set_body(set).is_flat);
@@ -352,14 +344,14 @@ static void all_corners_are_known(void **state) {
   const eyes *const e = *state;
   ef_metamer_settings settings = ef_metamer_settings_default();
   settings.grid = (ef_grid){.count = FEW, .start_nm = 420, .step_nm = 50};
-  ef_weights *const reference = weights_of(&e->reference, &settings.grid);
+  ef_weights *const reference = must_weights(&e->reference, &settings.grid);
   const ef_metric *const metric = ef_metric_find("cielab", NULL);
   gen g = gen_new(83);
   static corners c;
   double widest_gap = 0;
   for (int round = 0; round < 60; ++round) {
     settings.level = round % 3 + 2;
-    ef_weights *const test = weights_of(&e->test[round % 3], &settings.grid);
+    ef_weights *const test = must_weights(&e->test[round % 3], &settings.grid);
     double start[FEW], target[3], inside[3] = {0};
     gen_fill(&g, FEW, 0.1, 0.9, start);
     ef_weights_apply(reference, 1, start, 1, target, NULL);
@@ -406,7 +398,7 @@ static void all_corners_are_known(void **state) {
 static void directions_close_the_gap(void **state) {
   const eyes *const e = *state;
   ef_metamer_settings settings = ef_metamer_settings_default();
-  ef_weights *const reference = weights_of(&e->reference, &settings.grid);
+  ef_weights *const reference = must_weights(&e->reference, &settings.grid);
   double grey[SAMPLES], before = 0;
   for (size_t k = 0; k < SAMPLES; ++k)
     grey[k] = 0.5;

@@ -11,23 +11,6 @@
 #include "match/gamut_private.h"
 #include "plain_setup.h"
 
-static ef_gamut measure(const ef_setup *setup) {
-  ef_illuminant *d65 = ef_illuminant_new("D65", NULL);
-  ef_gamut out;
-  ef_error error;
-  if (ef_gamut_measure(setup, d65, EF_ADAPT_BRADFORD, 0, &out, &error) != EF_OK)
-    fail_msg("%s", error.message);
-  ef_illuminant_free(d65);
-  return out;
-}
-
-static ef_gamut measure_named(const char *encoding) {
-  plain_setup p = plain_setup_named(encoding);
-  const ef_gamut g = measure(p.setup);
-  plain_setup_free(&p);
-  return g;
-}
-
 /* ---- Gamuts ------------------------------------------------------------ */
 
 /* Their names of our encodings. */
@@ -61,7 +44,7 @@ static void computed_areas(void **state) {
     const char *const name = pairs[i][1];
     const size_t row = figures_row(&f, pairs[i][0]);
 #define FIGURE(column) figures_number(&f, row, figures_column(&f, column))
-    const ef_gamut g = measure_named(name);
+    const ef_gamut g = plain_gamut(name);
     deviation_add(&area, g.area_xy, FIGURE("area_xy"), name);
     deviation_add(&area, g.area_uv, FIGURE("area_uv"), name);
     deviation_add(&locus, 100 * g.locus_share_xy, FIGURE("coverage_locus_xy"),
@@ -94,7 +77,7 @@ static void computed_volumes(void **state) {
     const size_t row = figures_row(&f, pairs[i][0]);
     plain_setup p = plain_setup_primaries(pairs[i][1], NULL);
     deviation_add(&box,
-                  measure(p.setup).volume_lab / figures_number(&f, row, column),
+                  must_gamut(p.setup).volume_lab / figures_number(&f, row, column),
                   1, pairs[i][1]);
     plain_setup_free(&p);
   }

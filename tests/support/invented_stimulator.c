@@ -72,3 +72,22 @@ ef_direction invented_direction(const char *text, const char *silent) {
     fail_msg("%s, silent %s: %s", text, silent, error.message);
   return direction;
 }
+
+ef_frame_settings invented_frame(size_t width_px, size_t height_px) {
+  ef_frame_settings s = ef_frame_settings_default();
+  s.width_px = width_px;
+  s.height_px = height_px;
+  s.distance_mm = 1000;
+  s.pixels_per_mm = 2;
+  return s;
+}
+
+ef_frames *invented_frames(const invented *i, const ef_isolation *way,
+                           const ef_frame_settings *settings) {
+  ef_error error;
+  ef_frames *const frames =
+      ef_frames_new(i->stimulator, way, settings, NULL, &error);
+  if (frames == NULL)
+    fail_msg("%s", error.message);
+  return frames;
+}

@@ -26,4 +26,13 @@ void invented_free(invented *i);
  * none). */
 ef_direction invented_direction(const char *text, const char *silent);
 
+/** Pixels of 0.5 mm seen from 1 m, so that 200 x 120 are 5.72 x 3.44
+ * degrees. */
+ef_frame_settings invented_frame(size_t width_px, size_t height_px);
+
+/** Frames along `way`; free with ef_frames_free. Fails the test on any
+ * error. */
+ef_frames *invented_frames(const invented *i, const ef_isolation *way,
+                           const ef_frame_settings *settings);
+
 #endif

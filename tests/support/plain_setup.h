@@ -5,8 +5,7 @@
 #ifndef EVENFIELD_TESTS_PLAIN_SETUP_H
 #define EVENFIELD_TESTS_PLAIN_SETUP_H
 
-#include <evenfield/device.h>
-
+#include "must.h"
 #include "near.h"
 
 typedef struct plain_setup {
@@ -73,6 +72,13 @@ static inline void plain_setup_free(plain_setup *p) {
   ef_setup_free(p->setup);
   ef_device_free(p->device);
   ef_observer_free(p->observer);
+}
+
+static inline ef_gamut plain_gamut(const char *encoding) {
+  plain_setup p = plain_setup_named(encoding);
+  const ef_gamut gamut = must_gamut(p.setup);
+  plain_setup_free(&p);
+  return gamut;
 }
 
 #endif
