@@ -4,17 +4,7 @@
 # command starts from it.
 #
 #   calibrate_loop.sh EVENFIELD
-set -u
-evenfield=$(cd "$(dirname "$1")" && pwd)/$(basename "$1")
-scratch=$(mktemp -d) || exit 1
-trap 'rm -rf "$scratch"' EXIT
-cd "$scratch" || exit 1
-echo 1..5
-
-# ef_ok NUMBER NAME: by the status of the command before.
-ef_ok() {
-  if [ $? -eq 0 ]; then echo "ok $1 - $2"; else echo "not ok $1 - $2"; fi
-}
+. "$(dirname "$0")/tap.sh"
 
 # ef_jnd FILE KEY: a member of the object "jnd" of a document.
 ef_jnd() {
@@ -22,15 +12,15 @@ ef_jnd() {
 }
 
 "$evenfield" panel calibrate --save jnd.csv --quiet > /dev/null
-ef_ok 1 'a panel is calibrated'
+ef_tell 'a panel is calibrated' $?
 "$evenfield" compare --jnd jnd.csv --format json --quiet > predicted.json
-ef_ok 2 'compare reads what was saved'
+ef_tell 'compare reads what was saved' $?
 value=$(sed -n 2p jnd.csv | cut -d , -f 2)
 [ -n "$value" ] && [ "$(ef_jnd predicted.json value)" = "$value" ]
-ef_ok 3 'the JND of the prediction is that of the panel, to the last digit'
+ef_tell 'the JND of the prediction is that of the panel, to the last digit' $?
 [ "$(ef_jnd predicted.json observer_log_sd)" = \
   "$(sed -n 2p jnd.csv | cut -d , -f 5)" ]
-ef_ok 4 'so is the spread of the people'
+ef_tell 'so is the spread of the people' $?
 # Of one observer nothing is known of others: compare says what it assumes.
 { echo observer,pair,n,k && "$evenfield" tables demo:pair-answers \
   --format csv | grep '^o01,'; } > one.csv
@@ -38,4 +28,5 @@ ef_ok 4 'so is the spread of the people'
   --save one-jnd.csv --quiet > /dev/null &&
   "$evenfield" compare --jnd one-jnd.csv 2>&1 > /dev/null |
     grep -q 'taken to spread over observers'
-ef_ok 5 'what one observer cannot tell is said to be assumed'
+ef_tell 'what one observer cannot tell is said to be assumed' $?
+ef_end

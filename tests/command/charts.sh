@@ -5,33 +5,7 @@
 # a place that cannot be written.
 #
 #   charts.sh EVENFIELD
-set -u
-evenfield=$(cd "$(dirname "$1")" && pwd)/$(basename "$1")
-scratch=$(mktemp -d) || exit 1
-trap 'rm -rf "$scratch"' EXIT
-cd "$scratch" || exit 1
-LC_ALL=C
-export LC_ALL
-number=0
-failed=0
-
-# ef_check NAME FOUND EXPECTED
-ef_check() {
-  number=$((number + 1))
-  if [ "$2" = "$3" ]; then
-    echo "ok $number - $1"
-  else
-    failed=$((failed + 1))
-    echo "not ok $number - $1"
-    echo "#   found $2, expected $3"
-  fi
-}
-
-# ef_skip NAME TOOL
-ef_skip() {
-  number=$((number + 1))
-  echo "ok $number - $1 # SKIP $2 is not on this machine"
-}
+. "$(dirname "$0")/tap.sh"
 
 has() {
   command -v "$1" >/dev/null 2>&1
@@ -232,5 +206,4 @@ ef_check "many targets: in the report" $? 0
 [ "$(cat many.svg many.html | wc -c)" -lt 2000000 ]
 ef_check "many targets: small files" $? 0
 
-echo "1..$number"
-[ "$failed" -eq 0 ]
+ef_end

@@ -3,29 +3,7 @@
 # Frames of `isolate`: a record alone makes the same bytes again, a folder
 # appears whole or not at all, pictures are untagged.
 #   frames.sh EVENFIELD
-set -u
-evenfield=$(cd "$(dirname "$1")" && pwd)/$(basename "$1")
-scratch=$(mktemp -d) || exit 1
-trap 'rm -rf "$scratch"' EXIT
-cd "$scratch" || exit 1
-LC_ALL=C
-export LC_ALL
-number=0
-failed=0
-
-# check NAME COMMAND...: one test; the command says what is wrong.
-check() {
-  name=$1
-  shift
-  number=$((number + 1))
-  if why=$("$@" 2>&1); then
-    echo "ok $number - $name"
-  else
-    failed=$((failed + 1))
-    echo "not ok $number - $name"
-    echo "$why" | sed 's/^/#   /'
-  fi
-}
+. "$(dirname "$0")/tap.sh"
 
 # Five lights and a tone curve as files.
 awk 'BEGIN {
@@ -76,19 +54,19 @@ replay() {
   diff a b
 }
 
-check "a record alone makes the same bytes: demo, sinusoid" \
+ef_try "a record alone makes the same bytes: demo, sinusoid" \
   replay demo --waveform gabor --hz 10 --duration 0.2
-check "five primaries from a file, 10 bits" \
+ef_try "five primaries from a file, 10 bits" \
   replay five --display five.csv --change mel --silence rod --bits 10 \
   --waveform grating --size-deg 0
-check "16 bits, a ramp from a file, a file of ages, people" \
+ef_try "16 bits, a ramp from a file, a file of ages, people" \
   replay sixteen --display demo:lab-display --tone ramp.csv --bits 16 \
   --population 20 --ages 30 --robust --contrast 0.3 --modulation pulse
-check "files of ages, eyes and room light, with marks of editors" \
+ef_try "files of ages, eyes and room light, with marks of editors" \
   replay editor --display editor.csv --population 9 --ages ages.csv \
   --observer eyes.csv --ambient 50 --reflectance 0.05 \
   --ambient-illuminant five.csv:amber --change "isoluminant:200"
-check "dithering with a seed" \
+ef_try "dithering with a seed" \
   replay dither --dither ordered --seed 7 --contrast 0.01 --duration 0.1
 
 told() {
@@ -100,7 +78,7 @@ told() {
   grep -q 'every picture (2) is as recorded in five/stimulus.json' said ||
     { cat said; return 1; }
 }
-check "a replay tells that all is as recorded" told
+ef_try "a replay tells that all is as recorded" told
 
 from_standard_input() {
   # shellcheck disable=SC2086
@@ -110,7 +88,7 @@ from_standard_input() {
     --quiet > /dev/null < /dev/null || return 1
   diff -r piped piped-again
 }
-check "a display from standard input" from_standard_input
+ef_try "a display from standard input" from_standard_input
 
 untagged() {
   for picture in demo/frame-00001.png five/frame-00001-b.png; do
@@ -122,7 +100,7 @@ untagged() {
     done
   done
 }
-check "pictures are untagged" untagged
+ef_try "pictures are untagged" untagged
 
 files_of() {
   # shellcheck disable=SC2012
@@ -133,7 +111,7 @@ names() {
 inverse-tone.csv stimulus.json " ] || { files_of five; return 1; }
   [ "$(wc -l < five/inverse-tone.csv)" = 1026 ] || wc -l five/inverse-tone.csv
 }
-check "names of the files, a row for each code" names
+ef_try "names of the files, a row for each code" names
 
 # refused STATUS WORDS OPTION...: nothing is left behind.
 refused() {
@@ -152,24 +130,24 @@ refused() {
   [ "$before" = "$after" ] || { echo "left behind: $after"; return 1; }
   [ "$(echo "$said" | wc -l)" = 1 ] || { echo "$said"; return 1; }
 }
-check "a folder that holds files is not written to" \
+ef_try "a folder that holds files is not written to" \
   refused 5 "five: holds files already" --frames five
-check "a file in its place" \
+ef_try "a file in its place" \
   refused 5 "five.csv: is no folder" --frames five.csv
-check "a parent that is not there" \
+ef_try "a parent that is not there" \
   refused 5 "the folder it is to be in does not exist" --frames no/such
-check "more than is allowed" \
+ef_try "more than is allowed" \
   refused 3 "bytes; at most" --frames big --hz 5 --duration 3600
-check "more than the disk holds" \
+ef_try "more than the disk holds" \
   refused 5 "the disk has" --frames big --hz 5 --duration 3600 \
   --frame-size 8192x4096 --most-gb 1e6
-check "above half of the frame rate" \
+ef_try "above half of the frame rate" \
   refused 3 "31 Hz cannot be shown with 60 frames a second" --frames fast \
   --hz 31
-check "finer than two pixels a cycle" \
+ef_try "finer than two pixels a cycle" \
   refused 3 "cycles per degree cannot be shown" --frames fine \
   --waveform grating --cycles-per-degree 60
-check "an output that cannot be written takes the frames along" \
+ef_try "an output that cannot be written takes the frames along" \
   refused 5 "does not exist" --frames lost --output no/such/file
 
 forced() {
@@ -180,7 +158,7 @@ forced() {
   [ "$(files_of forced)" = "frame-00001.png inverse-tone.csv notes.txt \
 stimulus.json " ] || { files_of forced; return 1; }
 }
-check "--force replaces all frames and leaves other files alone" forced
+ef_try "--force replaces all frames and leaves other files alone" forced
 
 changed() {
   sed 's/--hz=10/--hz=12/' demo/stimulus.json > changed.json
@@ -190,7 +168,7 @@ changed() {
   grep -q 'frame-00001.png is not as recorded in changed.json' said ||
     { cat said; return 1; }
 }
-check "a replay that comes out otherwise is told" changed
+ef_try "a replay that comes out otherwise is told" changed
 
 spoil() {
   sed "$1" demo/stimulus.json > "$2"
@@ -201,22 +179,21 @@ spoil 's/--hz=10/--hz=fast/' value.json
 spoil 's/"name": "demo:lab-display"/"name": "x"/' without.json
 spoil 's/"text":/"words":/' textless.json
 head -c 3000 demo/stimulus.json > cut.json
-check "no record" refused 3 "other.json: is no record of a stimulus" \
+ef_try "no record" refused 3 "other.json: is no record of a stimulus" \
   --replay other.json
-check "a record that is cut off" refused 3 "cut.json:" --replay cut.json
-check "an argument that is no option" \
+ef_try "a record that is cut off" refused 3 "cut.json:" --replay cut.json
+ef_try "an argument that is no option" \
   refused 3 "argument 5 of the record is no option" --replay argument.json
-check "an option out of its range" refused 3 "--hz is a number" \
+ef_try "an option out of its range" refused 3 "--hz is a number" \
   --replay value.json
-check "a file that the record lacks" refused 3 "demo:lab-display" \
+ef_try "a file that the record lacks" refused 3 "demo:lab-display" \
   --replay without.json
-check "a file without text" refused 3 "has no name or no text" \
+ef_try "a file without text" refused 3 "has no name or no text" \
   --replay textless.json
-check "an option beside a replay" refused 2 "--contrast cannot be changed" \
+ef_try "an option beside a replay" refused 2 "--contrast cannot be changed" \
   --replay demo/stimulus.json --contrast 0.1
 printf '# title: caf\351\n' | cat - five.csv > latin.csv
-check "a file that is not UTF-8" refused 3 "latin.csv:1: holds bytes" \
+ef_try "a file that is not UTF-8" refused 3 "latin.csv:1: holds bytes" \
   --frames latin --display latin.csv
 
-echo "1..$number"
-[ "$failed" = 0 ]
+ef_end

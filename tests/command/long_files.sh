@@ -5,28 +5,7 @@
 # read in step with their samples, and results that depend on no thread count.
 #
 #   long_files.sh EVENFIELD
-set -u
-evenfield=$(cd "$(dirname "$1")" && pwd)/$(basename "$1")
-scratch=$(mktemp -d) || exit 1
-trap 'rm -rf "$scratch"' EXIT
-cd "$scratch" || exit 1
-LC_ALL=C
-export LC_ALL
-number=0
-failed=0
-echo "1..12"
-
-# ef_check NAME FOUND EXPECTED
-ef_check() {
-  number=$((number + 1))
-  if [ "$2" = "$3" ]; then
-    echo "ok $number - $1"
-  else
-    failed=$((failed + 1))
-    echo "not ok $number - $1"
-    echo "#   found $2, expected $3"
-  fi
-}
+. "$(dirname "$0")/tap.sh"
 
 # 130000 rows; every third sample is read twice, one name comes again at the
 # end, and a sample of many readings lies across the first 100000 rows.
@@ -90,4 +69,4 @@ ef_check "none farther than the worst case" "$(awk -F, -v worst="$worst" '
   $1 == "FL11" && $NF > most { most = $NF }
   END { print (most <= worst * 1.000001 && most > 0.9 * worst) }
   ' points.csv)" 1
-[ "$failed" = 0 ]
+ef_end

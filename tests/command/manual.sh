@@ -5,32 +5,16 @@
 # completion offers what the command knows.
 #
 #   manual.sh EVENFIELD ROOT
-set -u
-evenfield=$(cd "$(dirname "$1")" && pwd)/$(basename "$1")
 root=$(cd "$2" && pwd)
-scratch=$(mktemp -d) || exit 1
-trap 'rm -rf "$scratch"' EXIT
+. "$(dirname "$0")/tap.sh"
 PATH=$(dirname "$evenfield"):$PATH
-export PATH LC_ALL=C
+export PATH
 . "$root/tools/completion.bash"
-number=0
-failed=0
-
-# ef_say STATUS NAME: one line of TAP.
-ef_say() {
-  number=$((number + 1))
-  if [ "$1" = 0 ]; then
-    echo "ok $number - $2"
-  else
-    failed=$((failed + 1))
-    echo "not ok $number - $2"
-  fi
-}
 
 commands=$(evenfield | awk '/^Commands:$/ { on = 1; next } /^$/ { on = 0 }
   on { print $1 }')
 [ "$(echo "$commands" | wc -l)" -ge 8 ]
-ef_say $? "the first screen lists the commands"
+ef_tell "the first screen lists the commands" $?
 
 ef_options() { evenfield "$1" --help | awk '/^  --/ { print $1 }'; }
 
@@ -68,18 +52,18 @@ ef_run() {
 
 for command in $commands; do
   ef_page "$command"
-  ef_say $? "manual page of $command"
+  ef_tell "manual page of $command" $?
   [ -n "$(ef_examples "$command")" ]
-  ef_say $? "$command has examples"
+  ef_tell "$command has examples" $?
   while IFS= read -r line; do
     ef_run "$line"
-    ef_say $? "$line"
+    ef_tell "$line" $?
   done < <(ef_examples "$command")
 done
 "$root/tools/make_manual" "$evenfield" 0 > "$scratch/all.1"
 for command in $commands; do
   grep -q "evenfield\\\\-$command (1)" "$scratch/all.1"
-  ef_say $? "the page of evenfield names $command"
+  ef_tell "the page of evenfield names $command" $?
 done
 
 # ef_offers WANTED WORD...: what is offered for the last word.
@@ -90,7 +74,7 @@ ef_offers() {
   cword=$(($# - 1))
   _evenfield
   [[ " ${COMPREPLY[*]} " == *" $wanted "* ]]
-  ef_say $? "completion offers $wanted for $*"
+  ef_tell "completion offers $wanted for $*" $?
 }
 
 ef_offers match evenfield ma
@@ -104,7 +88,6 @@ words=(evenfield match --no-such)
 cword=2
 _evenfield
 [ ${#COMPREPLY[@]} = 0 ]
-ef_say $? "completion offers nothing for --no-such"
+ef_tell "completion offers nothing for --no-such" $?
 
-echo "1..$number"
-[ $failed = 0 ]
+ef_end

@@ -5,27 +5,7 @@
 # what cannot be shared out is refused.
 #
 #   parts.sh EVENFIELD
-set -u
-evenfield=$(cd "$(dirname "$1")" && pwd)/$(basename "$1")
-scratch=$(mktemp -d) || exit 1
-trap 'rm -rf "$scratch"' EXIT
-cd "$scratch" || exit 1
-LC_ALL=C
-export LC_ALL
-number=0
-failed=0
-echo "1..16"
-
-# ef_tell NAME STATUS
-ef_tell() {
-  number=$((number + 1))
-  if [ "$2" -eq 0 ]; then
-    echo "ok $number - $1"
-  else
-    failed=$((failed + 1))
-    echo "not ok $number - $1"
-  fi
-}
+. "$(dirname "$0")/tap.sh"
 
 # ef_join NAME PARTS ARGUMENT...
 ef_join() {
@@ -107,4 +87,4 @@ it without --part" describe odd.csv --part 1/2 --format csv --chart c.png
 ef_refuse "evenfield: --part needs files that every part can read: save \
 standard input in one" describe - --part 1/2 --format csv
 
-[ "$failed" -eq 0 ]
+ef_end
