@@ -26,6 +26,7 @@ static void fill_row(void *cookie, size_t y, uint16_t *row) {
   memcpy(row, sample + y * SIDE * 3, SIDE * 3 * sizeof *row);
 }
 
+/* Into a file that takes its name when it is whole and on the disk. */
 static void run_ours(void *context) {
   (void)context;
   const ef_png_rows rows = {.fill = fill_row};
