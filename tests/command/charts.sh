@@ -189,6 +189,17 @@ for name in panel calibrate plan; do
   ef_check "report of $name: seed" $? 0
 done
 
+# Other eyes: those the match was made for see what the text says they do, and
+# there is no such section without spectra.
+"$evenfield" match --display demo:kiosk-primaries --observer \
+  model:age=32,field=2 --report eyes.html --quiet >out
+ef_check "the mean eye sees what the match says" \
+  "$(sed -n '/other eyes would see of this match<\/h2>/,/<\/table>/s/.*scope="row" class="t">[^<]*<\/th><td[^>]*>\([0-9.]*\).*/\1/p' eyes.html)" \
+  "$(awk 'FNR >= 6 && FNR <= 15 { print $(NF - 1) }' out)"
+ef_check "ten rows of it" "$(sed -n '/other eyes would see of this match<\/h2>/,/<\/table>/p' eyes.html | grep -c 'scope="row"')" 10
+grep -q 'other eyes' match.html
+ef_check "no other eyes without spectra" $? 1
+
 # Very many targets: chart and report say what they leave out, and stay small.
 awk 'BEGIN { print "name,L,a,b"; for (i = 0; i < 50000; ++i)
   print "t" i "," 40 + i % 40 "," i % 97 - 48 "," i % 89 - 44 }' >many.csv

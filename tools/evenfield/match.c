@@ -328,16 +328,18 @@ static ef_status match_block(match_scene *s, const ef_block *block,
 
 static ef_status look(match_scene *s, const ef_block *block, const workspace *w,
                       ef_error *error) {
-  if (w->spread == NULL)
+  if (!s->seen.has_sides)
     return EF_OK;
   ef_status status = EF_OK;
   for (size_t i = 0; i < block->n && status == EF_OK; ++i) {
     const ef_shown *shown = match_achieved(s, &w->match[i]);
     status = seen_show(&s->seen, i, shown->drive, error);
   }
-  if (status == EF_OK) {
-    status = seen_rows(&s->seen, block->n, block->value, s->options->jobs,
-                       w->spread, error);
+  if (status == EF_OK)
+    status = seen_take(&s->seen, block->n, block->value, error);
+  if (status == EF_OK && w->spread != NULL) {
+    status =
+        seen_rows(&s->seen, block->n, s->options->jobs, w->spread, error);
   }
   return status;
 }

@@ -7,6 +7,7 @@
 
 #include "match_chart.h"
 #include "message.h"
+#include "other_eyes.h"
 #include "render_match.h"
 #include "report.h"
 
@@ -15,6 +16,7 @@ struct match_report {
   const ef_notes *notes;
   match_text *text;   /* keeps the rows */
   match_chart *chart; /* keeps the colours */
+  other_eyes eyes;
 };
 
 match_report *match_report_new(const ef_notes *notes) {
@@ -35,6 +37,7 @@ void match_report_free(match_report *r) {
     return;
   match_text_free(r->text);
   match_chart_free(r->chart);
+  other_eyes_free(&r->eyes);
   free(r);
 }
 
@@ -53,6 +56,8 @@ static ef_status collect(void *self, const match_scene *s,
   ef_status status = to_text.rows(to_text.self, s, rows, error);
   if (status == EF_OK)
     status = to_chart.rows(to_chart.self, s, rows, error);
+  if (status == EF_OK)
+    status = other_eyes_look(&r->eyes, s, rows, error);
   return status;
 }
 
@@ -217,6 +222,7 @@ static ef_status put_all(match_report *r, const match_scene *s,
       status = add_charts(r, s, sum, page, error);
   }
   if (status == EF_OK) {
+    other_eyes_report(&r->eyes, s, page);
     match_text_rest(r->text, &t, s, sum);
     status = text_flush(&t, error);
   }

@@ -8,6 +8,11 @@
 
 /* ---- Whether there is an answer ---------------------------------------- */
 
+static bool has_spectra(const seen_basis *b) {
+  return ef_device_has_spectra(ef_setup_device(b->setup)) &&
+         b->head->content == EF_CONTENT_SPECTRA;
+}
+
 static ef_status check_spectra(const seen_basis *b, ef_error *error) {
   static const char why[] = "what other people see follows from spectra only";
   const device_words *words = &b->chosen->kind->words;
@@ -87,10 +92,12 @@ ef_status seen_init(seen *s, const seen_basis *basis, size_t most_rows,
                            .adaptation = b->targets->adaptation,
                            .threshold = b->jnd}};
   const command_options *o = b->options;
-  if (!seen_is_asked(o))
+  const bool is_asked = seen_is_asked(o);
+  if (!is_asked && (o->report == NULL || !has_spectra(b)))
     return EF_OK;
-  ef_status status = check_spectra(b, error);
-  if (status == EF_OK) {
+  ef_status status = is_asked ? check_spectra(b, error) : EF_OK;
+  s->has_sides = true;
+  if (status == EF_OK && is_asked) {
     status =
         people_load(&s->people, o, PEOPLE_CHOSEN_FROM, observer, notes, error);
   }
@@ -123,20 +130,20 @@ ef_status seen_show(seen *s, size_t row, const double *drive, ef_error *error) {
                             s->shown + row * s->match.grid.count, NULL, error);
 }
 
-ef_status seen_rows(seen *s, size_t n, const double *value, int jobs,
-                    ef_spread *out, ef_error *error) {
-  ef_status status = EF_OK;
+ef_status seen_take(seen *s, size_t n, const double *value, ef_error *error) {
   if (s->is_light) {
-    status = ef_resample(&s->grid, n, value, &s->target.grid,
-                         EF_INTERPOLATE_AUTO, EF_EXTEND_ZERO, s->light, error);
-  } else {
-    s->target.sample = value;
+    return ef_resample(&s->grid, n, value, &s->target.grid,
+                       EF_INTERPOLATE_AUTO, EF_EXTEND_ZERO, s->light, error);
   }
-  if (status == EF_OK) {
-    status =
-        ef_population_spread(s->people.population, n, &s->target, &s->match,
-                             &s->settings, jobs, out, NULL, s->notes, error);
-  }
+  s->target.sample = value;
+  return EF_OK;
+}
+
+ef_status seen_rows(seen *s, size_t n, int jobs, ef_spread *out,
+                    ef_error *error) {
+  const ef_status status =
+      ef_population_spread(s->people.population, n, &s->target, &s->match,
+                           &s->settings, jobs, out, NULL, s->notes, error);
   s->notes = NULL; /* what lies outside the samples is said once */
   return status;
 }

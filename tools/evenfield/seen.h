@@ -17,6 +17,7 @@ typedef struct seen {
   const ef_device *device; /**< borrowed */
   ef_grid grid;            /**< of the targets */
   ef_side target, match;   /**< their samples are those of the last block */
+  bool has_sides;          /**< spectra of both are there, and wanted */
   bool is_light;           /**< targets are lights beside the display's white */
   /* Owned: whites and samples of both sides; lights on the standard grid. */
   double *white, *shown, *light_white, *light;
@@ -39,15 +40,18 @@ typedef struct seen_basis {
 } seen_basis;
 
 /** For blocks of at most `most_rows` targets. EF_NO_ANSWER without spectra of
- * display and targets. Free with seen_free in every case. */
+ * display and targets when people were asked for; a report wants both sides
+ * where they have spectra. Free with seen_free in every case. */
 ef_status seen_init(seen *s, const seen_basis *basis, size_t most_rows,
                     const ef_notes *notes, ef_error *error);
 void seen_free(seen *s);
 
 /** The drives of what is shown for target `row` of the next block. */
 ef_status seen_show(seen *s, size_t row, const double *drive, ef_error *error);
-/** The next block: n targets and what seen_show got for them. */
-ef_status seen_rows(seen *s, size_t n, const double *value, int jobs,
-                    ef_spread *out, ef_error *error);
+/** The next block: n targets, whose matches seen_show got. */
+ef_status seen_take(seen *s, size_t n, const double *value, ef_error *error);
+/** What the people see of it. */
+ef_status seen_rows(seen *s, size_t n, int jobs, ef_spread *out,
+                    ef_error *error);
 
 #endif
