@@ -59,6 +59,8 @@ typedef struct ef__data {
   double centre, scale;
   double least_gap; /**< between neighbours of t; 0 below two levels */
   double *t, *shown, *positive; /**< n each, of one block */
+  const double *level;          /**< as given, of the same block; NULL for
+                                     designs that are no answers */
 } ef__data;
 
 /** Adds row (from 1) and array to an error already set; returns `status`. */

@@ -128,6 +128,7 @@ ef_status ef__data_new(const ef_responses *responses, ef_axis axis,
   if (n_rows > 0)
     memcpy(level, responses->level, n_rows * sizeof *level);
   out->n = sort_unique(n_rows, level);
+  out->level = level;
   for (size_t i = 0; i < n_rows; ++i) {
     const size_t row = index_of(out->n, level, responses->level[i]);
     out->shown[row] += (double)responses->shown[i];

@@ -188,6 +188,8 @@ ef__verdict ef__support_after(const ef__likelihood *likelihood,
 }
 
 double ef__row_level(const ef__data *data, ef_axis axis, size_t row) {
+  if (data->level != NULL)
+    return data->level[row];
   return ef__axis_level(axis, data->centre + data->scale * data->t[row]);
 }
 

@@ -32,12 +32,14 @@ void panel_add_number(text *out, double value, int decimals) {
 }
 
 void panel_add_limits(text *out, ef_estimate e, int decimals) {
-  if (isinf(e.low) && isinf(e.high)) {
+  /* The interval of a size that reaches down to nothing is open below. */
+  const bool is_open = isinf(e.low) || (e.low == 0.0 && e.value > 0.0);
+  if (is_open && isinf(e.high)) {
     text_add(out, "any value");
   } else if (isinf(e.high)) {
     text_add(out, "at least ");
     panel_add_number(out, e.low, decimals);
-  } else if (isinf(e.low)) {
+  } else if (is_open) {
     text_add(out, "at most ");
     panel_add_number(out, e.high, decimals);
   } else {
@@ -79,6 +81,24 @@ void panel_add_jnd_words(text *out, ef_task task) {
     text_add(out, "d' = 0.954 above the false alarms, the d' of 75 % right in "
                   "2IFC");
   }
+}
+
+void panel_chance_cell(text_table *t, double p) {
+  if (p < 0.001)
+    table_cell(t, "< 0.001");
+  else
+    table_number(t, p, 3);
+}
+
+void panel_add_factor(text *out, double log_sd) {
+  char factor[EF_NUMBER_TEXT];
+  if (exp(log_sd) < 1.005) {
+    text_add(out, "no difference between people shows");
+    return;
+  }
+  ef_number_format_fixed(exp(log_sd), 2, factor);
+  text_format(out, "two of three people have one within a factor of %s of it",
+              factor);
 }
 
 void panel_limit_cell(text_table *t, double value, int decimals) {

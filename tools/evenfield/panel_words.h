@@ -15,6 +15,10 @@ void panel_add_limits(text *out, ef_estimate e, int decimals);
 void panel_add_estimate(text *out, ef_estimate e, const char *unit);
 /** A limit in a table: one that is infinite is "open" above, "-" below. */
 void panel_limit_cell(text_table *t, double value, int decimals);
+/** A p-value in a table. */
+void panel_chance_cell(text_table *t, double p);
+/** "two of three people have one within a factor of 1.17 of it". */
+void panel_add_factor(text *out, double log_sd);
 /** Shares of answers at the criterion of JND in words: "75 % right in 2IFC". */
 void panel_add_jnd_words(text *out, ef_task task);
 /** True where an observer's criterion moves the answers. */

@@ -26,7 +26,6 @@ static void add_number(text *out, double value) {
 
 static void add_answer(text *out, const panel_calibration *c) {
   const ef_calibration *r = &c->result;
-  char number[EF_NUMBER_TEXT];
   text line = {0};
   text_add(&line, "The panel's JND is ");
   panel_add_estimate(&line, r->jnd, ef_metric_symbol(c->metric));
@@ -35,11 +34,8 @@ static void add_answer(text *out, const panel_calibration *c) {
     text_format(&line, ", all answers of %zu %s together", c->n_observers,
                 c->n_observers == 1 ? "observer" : "observers");
   } else {
-    ef_number_format_fixed(exp(r->group.spread.value), 2, number);
-    text_format(&line,
-                ", by %zu observers; two of three people have one within a "
-                "factor of %s of it",
-                r->group.n, number);
+    text_format(&line, ", by %zu observers; ", r->group.n);
+    panel_add_factor(&line, r->group.spread.value);
   }
   text_add(&line, ".");
   text_paragraph(out, &line, 0);
@@ -127,10 +123,7 @@ static void add_formulas(text *out, const panel_calibration *c) {
     table_cell(&t, ef_metric_name(f->metric));
     table_number(&t, f->score.stress, 1);
     table_number(&t, f->score.f, 2);
-    if (f->score.p_value < 0.001)
-      table_cell(&t, "< 0.001");
-    else
-      table_number(&t, f->score.p_value, 3);
+    panel_chance_cell(&t, f->score.p_value);
     table_number(&t, f->score.jnd, decimals);
     table_number(&t, f->score.log_likelihood, 1);
   }

@@ -21,13 +21,14 @@ static void add_group(text *out, const panel_fits *p, const panel_summary *s,
     text_format(&line, "%s: ", name);
   text_format(&line, "geometric mean of %zu %s ", g->n, what);
   panel_add_number(&line, g->mean.value, words_decimals(g->mean.value, DIGITS));
-  ef_number_format_fixed(exp(g->spread.value), 2, low);
-  text_format(
-      &line, "; two of three people have one within a factor of %s of it", low);
+  text_add(&line, "; ");
+  panel_add_factor(&line, g->spread.value);
   if (g->n >= PANEL_LEAST_OBSERVERS && isfinite(g->spread.high)) {
     ef_number_format_fixed(exp(g->spread.low), 2, low);
     ef_number_format_fixed(exp(g->spread.high), 2, high);
-    text_format(&line, " (95 %% interval of the factor %s to %s)", low, high);
+    text_format(&line, " (95 %% interval of the factor%s %s to %s)",
+                exp(g->spread.value) < 1.005 ? " that holds two of three" : "",
+                low, high);
   }
   /* Of three or four observers next to nothing follows for a fifth. */
   if (g->next_high < MOST_NEXT_RATIO * g->next_low) {
@@ -80,28 +81,49 @@ static void add_groups(text *out, const panel_fits *p) {
 
 /* ---- Other criteria ---------------------------------------------------- */
 
+/* A step has none; without blanks no d' is known where the criterion is the
+ * observer's. */
+static bool has_slope(ef_task task, const ef_fit *fit) {
+  return panel_is_open(task) ? fit->exponent.value > 0.0
+                             : fit->sigma.value != 0.0;
+}
+
+/* Levels at the criteria of the trade. Where the criterion is the observer's,
+ * they go by the d' that they stand for: a power of the level, 1 at the
+ * threshold. */
+static void add_levels(text *out, ef_task task, const ef_fit *fit) {
+  static const char *const words[] = {"75 %", "84.1 %", "d' = 1"};
+  static const double normal_one = 0.84134474606854293; /* Phi(1) */
+  const bool is_open = panel_is_open(task);
+  for (size_t k = 0; k < 3; ++k) {
+    double level;
+    if (is_open) {
+      const double d_prime[] = {EF_JND_D_PRIME, sqrt(2.0), 1.0};
+      level = fit->threshold.value * pow(d_prime[k], 1.0 / fit->exponent.value);
+    } else {
+      const double share[] = {EF_JND_PROPORTION, normal_one,
+                              ef_task_proportion(task, (double)NAN, 1.0)};
+      level = ef_psychometric_level(&fit->curve, share[k]);
+    }
+    text_format(out, "%s%s%s at ", k > 0 ? ", " : "", words[k],
+                is_open && k < 2 ? " in 2IFC" : "");
+    panel_add_number(out, level, words_decimals(level, DIGITS));
+  }
+}
+
 /* Where the pooled curve stands at the criteria of the trade. */
 static void add_conversions(text *out, const panel_fits *p) {
   const ef_task task = p->answers.task;
-  if (panel_is_open(task))
-    return;
-  static const char *const words[] = {"75 %", "84.1 %", "d' = 1"};
-  const double share[] = {EF_JND_PROPORTION, 0.84134474606854293,
-                          ef_task_proportion(task, (double)NAN, 1.0)};
   bool has_any = false;
   for (size_t c = 0; c < p->n_summaries; ++c) {
     const panel_fit *f = panel_fits_whole(p, c);
-    if (f == NULL || f->status != EF_OK || !(f->fit.sigma.value != 0.0))
+    if (f == NULL || f->status != EF_OK || !has_slope(task, &f->fit))
       continue;
     text line = {0};
     const char *name = answers_condition(&p->answers, c);
     if (name[0] != '\0')
       text_format(&line, "%s: ", name);
-    for (size_t k = 0; k < 3; ++k) {
-      const double level = ef_psychometric_level(&f->fit.curve, share[k]);
-      text_format(&line, "%s%s at ", k > 0 ? ", " : "", words[k]);
-      panel_add_number(&line, level, words_decimals(level, DIGITS));
-    }
+    add_levels(&line, task, &f->fit);
     if (!has_any)
       text_format(out, "\nOther criteria, on the curve of %s:\n",
                   f->is_pooled ? "all answers" : "these answers");
@@ -158,6 +180,13 @@ static void add_sensitivity(text *out, const panel_fits *p,
   text_format(out, "\nSensitivity apart from the criterion%s%s:\n",
               name[0] != '\0' ? ", " : "", name);
   table_finish(&t, out);
+  if (!f->is_pooled)
+    return;
+  text line = {0};
+  text_add(&line, "answers of people with different criteria together show a "
+                  "smaller d' than each of them has: false alarms above tell "
+                  "how far the criteria lie apart");
+  text_label(out, "Pooled", &line);
 }
 
 static void add_bias(text *out, const panel_fits *p, const panel_fit *f) {

@@ -243,7 +243,7 @@ static void add_curves(text *out, const panel_fits *p) {
     table_number(&t, 100.0 * f->fit.lapse.value, 1);
     table_number(&t, f->fit.deviance, 2);
     table_format(&t, "%zu", f->fit.degrees);
-    table_number(&t, f->goodness.p_value, 3);
+    panel_chance_cell(&t, f->goodness.p_value);
   }
   text_add(out, "\n");
   table_finish(&t, out);
