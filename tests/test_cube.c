@@ -314,8 +314,11 @@ static void threads_and_layout_change_nothing(void **state) {
                       .type = EF_FLOAT32};
   const shape tall = {.width = 401, .height = 350, .n_bands = 2,
                       .type = EF_UINT8};
+  const shape small = {.width = 201, .height = 30, .n_bands = 11,
+                       .type = EF_INT16, .is_big_endian = true};
   check_large(&wide, nm);
   check_large(&tall, nm);
+  check_large(&small, nm);
   remove_cube();
 }
 
@@ -424,6 +427,36 @@ static void pixels_without_data_are_counted(void **state) {
   assert_int_equal(info.n_not_numbers, 2);
   free(seen);
   ef_cube_free(cube);
+  remove_cube();
+}
+
+/* Of every type and layout, also where a line has more pixels than a vector. */
+static void ignored_values_are_found(void **state) {
+  (void)state;
+  enum { WIDE = 41, BANDS = 9 };
+  double nm[BANDS], value[WIDE * BANDS];
+  for (size_t k = 0; k < BANDS; ++k)
+    nm[k] = 420.0 + 30.0 * (double)k;
+  for (size_t t = 0; t < sizeof types / sizeof *types; ++t) {
+    for (int layout = 0; layout < 3; ++layout) {
+      const shape s = {.width = WIDE, .height = 1, .n_bands = BANDS,
+                       .type = types[t], .interleave = (ef_interleave)layout};
+      for (size_t i = 0; i < WIDE * BANDS; ++i)
+        value[i] = 1.0 + (double)(i % 7);
+      for (size_t x = 0; x < WIDE; x += 4)
+        value[x * BANDS + x % BANDS] = 100.0;
+      write_cube(&s, nm, value, "data ignore value = 100\n");
+      ef_cube *cube = open_cube(NULL);
+      const ef_render_settings settings = render_settings(1);
+      ef_render_info info;
+      double *seen = render_all(cube, &settings, &info);
+      for (size_t x = 0; x < WIDE; ++x)
+        assert_true(isnan(seen[3 * x]) == (x % 4 == 0));
+      assert_int_equal(info.n_ignored, 11);
+      free(seen);
+      ef_cube_free(cube);
+    }
+  }
   remove_cube();
 }
 
@@ -757,6 +790,7 @@ int main(void) {
       cmocka_unit_test(bands_are_put_in_order),
       cmocka_unit_test(unseen_bands_are_not_read),
       cmocka_unit_test(pixels_without_data_are_counted),
+      cmocka_unit_test(ignored_values_are_found),
       cmocka_unit_test(kind_is_found),
       cmocka_unit_test(codes_are_the_nearest),
       cmocka_unit_test(what_lies_outside_is_clipped),

@@ -485,6 +485,52 @@ static void spectra_are_summed_in_one_order(void **state) {
   }
 }
 
+/* Band by band, with room between the bands: the same sums to the bit. */
+static void check_bands(const ef__kernel_table *k, size_t n_samples, size_t n) {
+  enum { STEP = 61 };
+  static float floats[90 * STEP];
+  static int16_t whole[90 * STEP];
+  static uint16_t natural[90 * STEP];
+  gen g = gen_new(n_samples * 100 + n);
+  for (size_t i = 0; i < n_samples * STEP; ++i) {
+    floats[i] = (float)gen_unit(&g);
+    whole[i] = (int16_t)((int)gen_below(&g, 65536) - 32768);
+    natural[i] = (uint16_t)gen_below(&g, 65536);
+  }
+  for (int type = 0; type < 3; ++type) {
+    for (size_t i = 0; i < 3 * n + 3; ++i) value[i] = -7;
+    if (type == 0) k->bands_float(n_samples, weight, n, floats, STEP, value);
+    if (type == 1) k->bands_int16(n_samples, weight, n, whole, STEP, value);
+    if (type == 2) k->bands_uint16(n_samples, weight, n, natural, STEP, value);
+    for (size_t i = 0; i < n; ++i) {
+      double x[90];
+      for (size_t j = 0; j < n_samples; ++j) {
+        const size_t at = j * STEP + i;
+        x[j] = type == 0   ? (double)floats[at]
+               : type == 1 ? (double)whole[at]
+                           : (double)natural[at];
+      }
+      for (size_t c = 0; c < 3; ++c) {
+        const double sum = eight_parts(n_samples, weight + c * n_samples, x);
+        assert_same_bits(value + 3 * i + c, &sum, 1);
+      }
+    }
+    for (size_t i = 3 * n; i < 3 * n + 3; ++i) assert_true(value[i] == -7);
+  }
+}
+
+static void bands_are_summed_in_the_same_order(void **state) {
+  (void)state;
+  gen g = gen_new(8);
+  gen_fill(&g, MOST_CHANNELS * MOST_SAMPLES, -1, 2, weight);
+  const ef__kernel_table *k;
+  for (size_t t = 0; (k = ef__kernels_at(t)) != NULL; ++t) {
+    for (size_t n_samples = 1; n_samples <= 20; ++n_samples)
+      check_bands(k, n_samples, 37);
+    for (size_t n = 1; n <= 61; n += 4) check_bands(k, 81, n);
+  }
+}
+
 int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(cube_roots),
@@ -500,6 +546,7 @@ int main(void) {
       cmocka_unit_test(every_target_and_place_gives_the_same_bits),
       cmocka_unit_test(colours_have_the_same_bits_everywhere),
       cmocka_unit_test(spectra_are_summed_in_one_order),
+      cmocka_unit_test(bands_are_summed_in_the_same_order),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);
   return cmocka_run_group_tests(tests, NULL, NULL);

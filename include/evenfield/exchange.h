@@ -583,6 +583,18 @@ EF_API ef_status ef_cube_window_read(ef_cube_window *window, size_t first,
  * 16 bits and EF_FLOAT32 are floats exactly; others are rounded. */
 EF_API const float *ef_cube_window_floats(const ef_cube_window *window,
                                           size_t i, size_t n, float *room);
+/** Pixels that lie band by band: value k of pixel i of them is the stored value
+ * at i + k * band_step. Borrowed until the next read. */
+typedef struct ef_cube_plane {
+  const void *value; /**< of the type of the cube, in the order of this
+                          machine's bytes */
+  size_t n;          /**< pixels that lie so, at least 1 */
+  size_t band_step;
+} ef_cube_plane;
+/** Of what was read, from pixel i on; false where they do not lie so (bip, and
+ * bil with bands chosen out of their order). */
+EF_API bool ef_cube_window_plane(const ef_cube_window *window, size_t i,
+                                 ef_cube_plane *plane);
 /** The same as doubles, which hold every type exactly. */
 EF_API const double *ef_cube_window_doubles(const ef_cube_window *window,
                                             size_t i, size_t n, double *room);

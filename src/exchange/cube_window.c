@@ -11,9 +11,9 @@
 #include "base/base_private.h"
 
 /* Read at a time. Of bsq each band is a read of its own, and those have to be
- * long enough: 1 MiB of 200 bands would be 5 kB each. */
+ * long enough: 1 MiB of 200 bands is 5 kB each, at less than half the speed. */
 #define SPAN_BYTES ((size_t)1 << 20)
-#define SPAN_BYTES_BSQ ((size_t)2 << 20)
+#define SPAN_BYTES_BSQ ((size_t)8 << 20)
 
 struct ef_cube_window {
   const ef_cube *cube;
@@ -268,6 +268,19 @@ static run run_at(const ef_cube_window *w, size_t i, size_t n) {
   const size_t left = end - pixel;
   return (run){(begin - w->first) * w->n_span + (pixel - begin),
                n < left ? n : left, end - begin};
+}
+
+bool ef_cube_window_plane(const ef_cube_window *window, size_t i,
+                          ef_cube_plane *plane) {
+  const ef_cube_head *head = &window->cube->header.head;
+  if (head->interleave == EF_BIP ||
+      (head->interleave == EF_BIL && !window->is_adjoining))
+    return false;
+  const run r = run_at(window, i, window->n - i);
+  *plane = (ef_cube_plane){.value = window->bytes + r.at * window->value_bytes,
+                           .n = r.n,
+                           .band_step = r.band_step};
+  return true;
 }
 
 static size_t band_place(const ef_cube_window *w, const run *r, size_t k) {

@@ -328,22 +328,51 @@ static bool has_ignored_double(const double *sample, size_t n,
   return is_there;
 }
 
-/* Counts pixels without data and makes them NaN; adds the constants. */
-static void finish_tile(const ef_render *r, size_t n, const void *sample,
-                        double *value, outcome *o) {
+#define MARK_IGNORED(TYPE)                                                     \
+  {                                                                            \
+    const TYPE *const from = (const TYPE *)plane->value;                       \
+    const TYPE wanted = (TYPE)head->ignored;                                   \
+    for (size_t k = 0; k < r->n_bands; ++k) {                                  \
+      for (size_t i = 0; i < n; ++i)                                           \
+        mark[i] |= IS_SAME(from[k * plane->band_step + i], wanted);            \
+    }                                                                          \
+  }
+
+/* Which of n pixels of a plane hold the ignored value. */
+static void mark_ignored(const ef_render *r, const ef_cube_plane *plane,
+                         size_t n, unsigned char *mark) {
   const ef_cube_head *head = ef_cube_get_head(r->cube);
+  const double ignored = head->ignored;
+  memset(mark, 0, n);
+  if (!head->has_ignored)
+    return;
+  switch (head->type) {
+  case EF_FLOAT32:
+    for (size_t k = 0; k < r->n_bands; ++k) {
+      const float *from = (const float *)plane->value + k * plane->band_step;
+      for (size_t i = 0; i < n; ++i)
+        mark[i] |= IS_SAME(from[i], (float)ignored) && !isnan(from[i]);
+    }
+    break;
+  case EF_INT16:
+    if (ignored >= INT16_MIN && ignored <= INT16_MAX &&
+        IS_SAME(ignored, floor(ignored)))
+      MARK_IGNORED(int16_t)
+    break;
+  default:
+    if (ignored >= 0.0 && ignored <= UINT16_MAX &&
+        IS_SAME(ignored, floor(ignored)))
+      MARK_IGNORED(uint16_t)
+  }
+}
+
+/* Counts pixels without data and makes them NaN; adds the constants. */
+static void finish_tile(const ef_render *r, size_t n,
+                        const unsigned char *mark, double *value, outcome *o) {
   const size_t n_channels = r->n_channels;
   for (size_t i = 0; i < n; ++i, value += n_channels) {
-    bool is_ignored = false, is_finite = true;
-    if (head->has_ignored) {
-      const size_t at = i * r->n_bands;
-      is_ignored =
-          r->is_double
-              ? has_ignored_double((const double *)sample + at, r->n_bands,
-                                   head->ignored)
-              : has_ignored_float((const float *)sample + at, r->n_bands,
-                                  (float)head->ignored);
-    }
+    const bool is_ignored = mark[i] != 0;
+    bool is_finite = true;
     for (size_t c = 0; c < n_channels; ++c) {
       is_finite = is_finite && isfinite(value[c]);
       value[c] += r->constant[c];
@@ -357,21 +386,80 @@ static void finish_tile(const ef_render *r, size_t n, const void *sample,
   }
 }
 
+/* Which of n pixels, one after another, hold the ignored value. */
+static void mark_samples(const ef_render *r, size_t n, const void *sample,
+                         unsigned char *mark) {
+  const ef_cube_head *head = ef_cube_get_head(r->cube);
+  memset(mark, 0, n);
+  for (size_t i = 0; head->has_ignored && i < n; ++i) {
+    const size_t at = i * r->n_bands;
+    mark[i] = r->is_double
+                  ? has_ignored_double((const double *)sample + at, r->n_bands,
+                                       head->ignored)
+                  : has_ignored_float((const float *)sample + at, r->n_bands,
+                                      (float)head->ignored);
+  }
+}
+
 static void sum_tile(const ef_render *r, const workspace *w, size_t i,
                      size_t n, double *value, outcome *o) {
-  const void *sample;
+  unsigned char mark[MOST_TILE];
   if (r->is_double) {
     const double *values = ef_cube_window_doubles(w->window, i, n, w->tile);
     ef__kernels()->apply(r->n_bands, r->n_channels, r->matrix, n, values,
                          value);
-    sample = values;
+    mark_samples(r, n, values, mark);
   } else {
     const float *values = ef_cube_window_floats(w->window, i, n, w->tile);
     ef__kernels()->apply_float(r->n_bands, r->n_channels, r->matrix, n, values,
                                value);
-    sample = values;
+    mark_samples(r, n, values, mark);
   }
-  finish_tile(r, n, sample, value, o);
+  finish_tile(r, n, mark, value, o);
+}
+
+static bool has_plane_kernel(ef_sample_type type) {
+  return type == EF_FLOAT32 || type == EF_INT16 || type == EF_UINT16;
+}
+
+/* As many pixels of a plane as a tile takes. */
+static size_t sum_plane(const ef_render *r, const ef_cube_plane *plane,
+                        size_t most, double *value, outcome *o) {
+  unsigned char mark[MOST_TILE];
+  size_t n = plane->n < most ? plane->n : most;
+  n = n < MOST_TILE ? n : MOST_TILE;
+  switch (ef_cube_get_head(r->cube)->type) {
+  case EF_FLOAT32:
+    ef__kernels()->bands_float(r->n_bands, r->matrix, n, plane->value,
+                               plane->band_step, value);
+    break;
+  case EF_INT16:
+    ef__kernels()->bands_int16(r->n_bands, r->matrix, n, plane->value,
+                               plane->band_step, value);
+    break;
+  default:
+    ef__kernels()->bands_uint16(r->n_bands, r->matrix, n, plane->value,
+                                plane->band_step, value);
+  }
+  mark_ignored(r, plane, n, mark);
+  finish_tile(r, n, mark, value, o);
+  return n;
+}
+
+/* n pixels of a window, in the way that their layout allows. */
+static void sum_pixels(const ef_render *r, const workspace *w, size_t n,
+                       double *value, outcome *o) {
+  const bool by_planes =
+      r->n_channels == 3 && has_plane_kernel(ef_cube_get_head(r->cube)->type);
+  for (size_t i = 0; i < n;) {
+    ef_cube_plane plane;
+    size_t some = n - i < r->tile ? n - i : r->tile;
+    if (by_planes && ef_cube_window_plane(w->window, i, &plane))
+      some = sum_plane(r, &plane, n - i, value + i * r->n_channels, o);
+    else
+      sum_tile(r, w, i, some, value + i * r->n_channels, o);
+    i += some;
+  }
 }
 
 /* Chunk `index` of the batch behind. */
@@ -382,12 +470,8 @@ static void make_chunk(ef_render *r, size_t index) {
   outcome *o = &b->outcome[index];
   *o = (outcome){0};
   workspace *const w = borrow(r);
-  if (ef_cube_window_read(w->window, b->first + first, n, &o->error) == EF_OK) {
-    for (size_t i = 0; i < n; i += r->tile) {
-      const size_t some = n - i < r->tile ? n - i : r->tile;
-      sum_tile(r, w, i, some, b->value + (first + i) * r->n_channels, o);
-    }
-  }
+  if (ef_cube_window_read(w->window, b->first + first, n, &o->error) == EF_OK)
+    sum_pixels(r, w, n, b->value + first * r->n_channels, o);
   give_back(r, w);
 }
 

@@ -41,6 +41,14 @@ enum {
             size_t n, const double *sample, double *out))                      \
   X(apply_float, (size_t n_samples, size_t n_channels, const double *matrix,   \
                   size_t n, const float *sample, double *out))                 \
+  /* bands.c: the same sums to the bit, of three channels and samples that lie   \
+   * band by band: sample j of pixel i at sample[j step + i]. */                 \
+  X(bands_float, (size_t n_samples, const double *matrix, size_t n,            \
+                  const float *sample, size_t step, double *out))              \
+  X(bands_int16, (size_t n_samples, const double *matrix, size_t n,            \
+                  const int16_t *sample, size_t step, double *out))            \
+  X(bands_uint16, (size_t n_samples, const double *matrix, size_t n,           \
+                   const uint16_t *sample, size_t step, double *out))          \
   /* colours.c, appearance.c: n colours, n x 3 each. `matrix` leads from levels \
    * to X / Xn, Y / Yn, Z / Zn or to XYZ; `tone` is gamma, offset, slope, joint \
    * of a tone curve in closed form. */                                        \

@@ -194,6 +194,38 @@ EF__INLINE v_eight v_eight_load_some(const double *from, size_t n) {
   return q;
 }
 
+/** As many as there are lanes, as doubles. */
+EF__INLINE v_double v_load_floats(const float *from) {
+#if defined(__AVX2__)
+  return (v_double)_mm256_cvtps_pd(_mm_loadu_ps(from));
+#else
+  return (v_double){(double)from[0], (double)from[1]};
+#endif
+}
+
+EF__INLINE v_double v_load_int16(const int16_t *from) {
+#if defined(__AVX2__)
+  const __m128i wide = _mm_cvtepi16_epi32(_mm_loadl_epi64((const void *)from));
+  return (v_double)_mm256_cvtepi32_pd(wide);
+#else
+  return (v_double){(double)from[0], (double)from[1]};
+#endif
+}
+
+EF__INLINE v_double v_load_uint16(const uint16_t *from) {
+#if defined(__AVX2__)
+  const __m128i wide = _mm_cvtepu16_epi32(_mm_loadl_epi64((const void *)from));
+  return (v_double)_mm256_cvtepi32_pd(wide);
+#else
+  return (v_double){(double)from[0], (double)from[1]};
+#endif
+}
+
+/** Asks for memory that is read soon; it need not be there. */
+EF__INLINE void v_prefetch(const void *at) {
+  __builtin_prefetch(at);
+}
+
 EF__INLINE v_eight v_eight_load_float(const float *from) {
   v_eight q;
   EF__UNROLL for (int i = 0; i < V_PARTS; ++i) {
