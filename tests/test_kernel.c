@@ -426,6 +426,56 @@ static void colours_have_the_same_bits_everywhere(void **state) {
   }
 }
 
+/* One reference to blocks of samples in floats: near the formula, and the same
+ * bits on every target and in every place. */
+static void rough_squares_are_near(void **state) {
+  (void)state;
+  enum { BLOCKS = 101, POINTS = BLOCKS * EF__ROUGH_BLOCK };
+  static float block[3 * POINTS], square[POINTS], again[POINTS];
+  const float ones[3] = {1, 1, 1};
+  gen g = gen_new(7);
+  deviation d = {0};
+  for (int run = 0; run < 60; ++run) {
+    const float r[3] = {(float)gen_between(&g, -10, 120),
+                        run == 0 ? 0 : (float)gen_between(&g, -150, 150),
+                        run == 0 ? 0 : (float)gen_between(&g, -150, 150)};
+    const double size = run % 2 == 0 ? 150 : 10;
+    for (int i = 0; i < POINTS; ++i) {
+      float *const at = block + 3 * EF__ROUGH_BLOCK * (i / EF__ROUGH_BLOCK) +
+                        i % EF__ROUGH_BLOCK;
+      at[0] = (float)gen_between(&g, -10, 120);
+      at[EF__ROUGH_BLOCK] = (float)gen_between(&g, -size, size);
+      at[2 * EF__ROUGH_BLOCK] = (float)gen_between(&g, -size, size);
+    }
+    block[EF__ROUGH_BLOCK] = block[2 * EF__ROUGH_BLOCK] = 0; /* neutral */
+    ef__kernels()->ciede2000_rough(BLOCKS, r, ones, block, square);
+    for (int i = 0; i < POINTS; ++i) {
+      const float *const at = block +
+                              3 * EF__ROUGH_BLOCK * (i / EF__ROUGH_BLOCK) +
+                              i % EF__ROUGH_BLOCK;
+      const double pair[2][3] = {
+          {(double)r[0], (double)r[1], (double)r[2]},
+          {(double)at[0], (double)at[EF__ROUGH_BLOCK],
+           (double)at[2 * EF__ROUGH_BLOCK]}};
+      const double exact = plain_ciede2000(pair[0], pair[1]);
+      deviation_add(&d, sqrt((double)square[i]) / (1 + exact),
+                    exact / (1 + exact), "a pair");
+    }
+    const ef__kernel_table *k;
+    for (size_t t = 0; (k = ef__kernels_at(t)) != NULL; ++t) {
+      k->ciede2000_rough(BLOCKS, r, ones, block, again);
+      assert_memory_equal(again, square, sizeof square);
+      const size_t alone = (size_t)run;
+      k->ciede2000_rough(1, r, ones, block + 3 * EF__ROUGH_BLOCK * alone,
+                         again);
+      assert_memory_equal(again, square + EF__ROUGH_BLOCK * alone,
+                          EF__ROUGH_BLOCK * sizeof *again);
+    }
+  }
+  deviation_print(&d, "rough CIEDE2000, over 1 + the difference");
+  assert_true(d.largest < 0.002);
+}
+
 /* ---- Spectra ----------------------------------------------------------- */
 
 enum { MOST_SAMPLES = 700, MOST_CHANNELS = 20, MOST_SPECTRA = 40 };
@@ -545,6 +595,7 @@ int main(void) {
       cmocka_unit_test(differences_are_the_plain_formulas),
       cmocka_unit_test(every_target_and_place_gives_the_same_bits),
       cmocka_unit_test(colours_have_the_same_bits_everywhere),
+      cmocka_unit_test(rough_squares_are_near),
       cmocka_unit_test(spectra_are_summed_in_one_order),
       cmocka_unit_test(bands_are_summed_in_the_same_order),
   };

@@ -3,6 +3,7 @@
  * W. Wu, E. N. Dalal, Color Res. Appl. 30 (2005) 21-30. */
 #include "difference/difference_private.h"
 
+#include <assert.h>
 #include <math.h>
 #include <string.h>
 
@@ -142,6 +143,16 @@ static void differences(const ef_metric *self, size_t n,
   ef__kernels()->ciede2000(n, reference, sample, factor, difference);
 }
 
+static_assert((int)EF__METRIC_BLOCK == (int)EF__ROUGH_BLOCK, "one layout");
+
+static void rough(const ef_metric *self, size_t n, const float reference[3],
+                  const float *sample, float *square) {
+  float factor[3];
+  for (size_t i = 0; i < 3; ++i)
+    factor[i] = (float)self->parameter[i].value;
+  ef__kernels()->ciede2000_rough(n, reference, factor, sample, square);
+}
+
 double ef_delta_e_ciede2000(ef_lab reference, ef_lab sample, double k_l,
                             double k_c, double k_h) {
   const double r[3] = {reference.L_star, reference.a_star, reference.b_star};
@@ -181,28 +192,79 @@ static void tensor(const ef_metric *self, const double coordinate[3],
   g[8] = s * s * cc + c * c * hh + 2 * c * s * ch;
 }
 
-/* The best of points around the axis at some chromas. */
-enum { HUES = 12, MOST_RINGS = 2 };
+/* ---- Decoys ------------------------------------------------------------- */
+
+/* Rings around the axis, in two groups, each of two blocks: every 18 degrees
+ * from 66 to 336 on from the hue of the reference, the side that is not its own.
+ */
+enum { GROUPS = 2, RINGS = 3, HUES = 2 * EF__METRIC_BLOCK };
+enum { N_AROUND = GROUPS * RINGS * HUES, BLOCKS = 2 * GROUPS * RINGS };
+static const float ring[GROUPS * RINGS] = {0.6f, 2.5f, 5, 9, 15, 24};
+static const float cos_from[HUES] = {
+    0.40673664f, 0.10452846f, -0.20791169f, -0.5f,
+    -0.74314483f, -0.91354546f, -0.9945219f, -0.9781476f,
+    -0.8660254f, -0.66913061f, -0.40673664f, -0.10452846f,
+    0.20791169f, 0.5f, 0.74314483f, 0.91354546f};
+static const float sin_from[HUES] = {
+    0.91354546f, 0.9945219f, 0.9781476f, 0.8660254f,
+    0.66913061f, 0.40673664f, 0.10452846f, -0.20791169f,
+    -0.5f, -0.74314483f, -0.91354546f, -0.9945219f,
+    -0.9781476f, -0.8660254f, -0.66913061f, -0.40673664f};
+
+/* L* 0, as of the reference they are taken for. */
+static void place_around(const double reference[3], float *sample) {
+  const double c = sqrt(reference[1] * reference[1] +
+                        reference[2] * reference[2]);
+  const float x = c > 0 ? (float)(reference[1] / c) : 1;
+  const float y = c > 0 ? (float)(reference[2] / c) : 0;
+  for (int block = 0; block < BLOCKS; ++block) {
+    float *const L_star = sample + 3 * EF__METRIC_BLOCK * block;
+    float *const a_star = L_star + EF__METRIC_BLOCK;
+    float *const b_star = a_star + EF__METRIC_BLOCK;
+    const float *const cosine = cos_from + block % 2 * EF__METRIC_BLOCK;
+    const float *const sine = sin_from + block % 2 * EF__METRIC_BLOCK;
+    const float p = ring[block / 2] * x, q = ring[block / 2] * y;
+    for (int k = 0; k < EF__METRIC_BLOCK; ++k) {
+      L_star[k] = 0;
+      a_star[k] = p * cosine[k] - q * sine[k];
+      b_star[k] = p * sine[k] + q * cosine[k];
+    }
+  }
+}
+
+/* The lowest point of a group of rings among those that are low along their
+ * own; -1 when all rings fall towards the reference. */
+static int lowest_of(int group, const float *square) {
+  int best = -1;
+  for (int r = group * RINGS; r < (group + 1) * RINGS; ++r) {
+    for (int i = r * HUES + 1; i < (r + 1) * HUES - 1; ++i) {
+      if (best >= 0 && !(square[i] < square[best]))
+        continue;
+      if (square[i] <= square[i - 1] && square[i] <= square[i + 1])
+        best = i;
+    }
+  }
+  return best;
+}
+
 static void best_around(const ef_metric *self, const double reference[3],
-                        double lightness, int n_rings, const double *chroma,
-                        double best[3]) {
+                        double lightness, double chroma, double best[3]) {
+  enum { POINTS = 12 };
   /* Every 30 degrees. */
-  static const double circle[HUES][2] = {
+  static const double circle[POINTS][2] = {
       {1, 0},          {COS_30, 0.5},  {0.5, COS_30},  {0, 1},
       {-0.5, COS_30},  {-COS_30, 0.5}, {-1, 0},        {-COS_30, -0.5},
       {-0.5, -COS_30}, {0, -1},        {0.5, -COS_30}, {COS_30, -0.5}};
-  double pair[MOST_RINGS * HUES][3], sample[MOST_RINGS * HUES][3];
-  double difference[MOST_RINGS * HUES];
-  const int n = n_rings * HUES;
-  for (int i = 0; i < n; ++i) {
+  double pair[POINTS][3], sample[POINTS][3], difference[POINTS];
+  for (int i = 0; i < POINTS; ++i) {
     memcpy(pair[i], reference, sizeof pair[i]);
     sample[i][0] = lightness;
-    sample[i][1] = chroma[i / HUES] * circle[i % HUES][0];
-    sample[i][2] = chroma[i / HUES] * circle[i % HUES][1];
+    sample[i][1] = chroma * circle[i][0];
+    sample[i][2] = chroma * circle[i][1];
   }
-  differences(self, (size_t)n, pair[0], sample[0], difference);
+  differences(self, POINTS, pair[0], sample[0], difference);
   int least = 0;
-  for (int i = 1; i < n; ++i) {
+  for (int i = 1; i < POINTS; ++i) {
     if (difference[i] < difference[least])
       least = i;
   }
@@ -210,22 +272,39 @@ static void best_around(const ef_metric *self, const double reference[3],
 }
 
 /* Colours of some chroma have a second minimum near the axis, about opposite to
- * them, narrow for the rotation term and the root in dH' (eq. 11): the best of
- * a few points there leads into it. Near black and white there is no room for
- * chroma; for references darker than black the minimum lies close to the axis,
- * where L* stops being straight or close to black. */
+ * them, narrow for the rotation term and the root in dH' (eq. 11), and blue
+ * ones another one farther out: the best of some points there leads into it.
+ * Lightness stands apart in the formula, so that this is the same for all. Near
+ * black and white there is no room for chroma; for references darker than black
+ * the minimum lies close to the axis, where L* stops being straight or close to
+ * black. */
 static size_t decoys(const ef_metric *self, const double reference[3],
-                     double place[EF__MAX_DECOYS][3]) {
-  static const double rings[MOST_RINGS] = {3.5, 8};
+                     double limit, double place[EF__MAX_DECOYS][3]) {
   static const double dark_ring = 0.4, darkest_ring = 0.8;
   const double L_star = reference[0];
   const double lightness = L_star < 5 ? 5 : L_star > 96 ? 96 : L_star;
-  best_around(self, reference, lightness, 2, rings, place[0]);
-  if (L_star >= 5)
-    return 1;
-  best_around(self, reference, 4, 1, &dark_ring, place[1]);
-  best_around(self, reference, 0.7, 1, &darkest_ring, place[2]);
-  return 3;
+  float sample[3 * N_AROUND], square[N_AROUND];
+  const float flat[3] = {0, (float)reference[1], (float)reference[2]};
+  size_t n = 0;
+  place_around(reference, sample);
+  rough(self, BLOCKS, flat, sample, square);
+  for (int group = 0; group < GROUPS; ++group) {
+    const int i = lowest_of(group, square);
+    if (i < 0 || !((double)square[i] < limit * limit))
+      continue;
+    place[n][0] = lightness;
+    const float *const at = sample +
+                            3 * EF__METRIC_BLOCK * (i / EF__METRIC_BLOCK) +
+                            i % EF__METRIC_BLOCK;
+    place[n][1] = (double)at[EF__METRIC_BLOCK];
+    place[n][2] = (double)at[2 * EF__METRIC_BLOCK];
+    ++n;
+  }
+  if (L_star < 5) {
+    best_around(self, reference, 4, dark_ring, place[n++]);
+    best_around(self, reference, 0.7, darkest_ring, place[n++]);
+  }
+  return n;
 }
 
 const ef_metric ef__metric_ciede2000 = {
@@ -245,6 +324,7 @@ const ef_metric ef__metric_ciede2000 = {
     .jacobian = ef__lab_jacobian,
     .difference = difference,
     .differences = differences,
+    .rough = rough,
     .components = components,
     .tensor = tensor,
     .expand = ef__ciede2000_expand,

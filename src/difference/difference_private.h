@@ -18,7 +18,10 @@ typedef struct ef__expansion {
 } ef__expansion;
 
 /** The most places that `decoys` names. */
-enum { EF__MAX_DECOYS = 3 };
+enum { EF__MAX_DECOYS = 4 };
+
+/** Samples of `rough` come by so many: their coordinates 0, then 1, then 2. */
+enum { EF__METRIC_BLOCK = 8 };
 
 /** The most parameters that a formula has. */
 #define EF__MAX_PARAMETERS 5
@@ -94,6 +97,10 @@ struct ef_metric {
    * `difference`; a pair's must not depend on its neighbours or its place. */
   void (*differences)(const ef_metric *self, size_t n, const double *reference,
                       const double *sample, double *difference);
+  /** Optional: the squared differences of one reference to n blocks of samples;
+   * the difference is known to 0.002 of 1 + itself. */
+  void (*rough)(const ef_metric *self, size_t n, const float reference[3],
+                const float *sample, float *square);
   double (*components)(const ef_metric *self, const double reference[3],
                        const double sample[3], ef_components *components);
   void (*tensor)(const ef_metric *self, const double coordinate[3],
@@ -113,9 +120,10 @@ struct ef_metric {
   double (*least)(const ef_metric *self, const double reference[3],
                   const double low[3], const double high[3]);
   /** Optional: points other than the reference around which the difference to
-   * it has local minima in the chromatic plane; returns how many. */
+   * it has local minima in the chromatic plane, but for those where it is above
+   * `limit`; returns how many. */
   size_t (*decoys)(const ef_metric *self, const double reference[3],
-                   double place[EF__MAX_DECOYS][3]);
+                   double limit, double place[EF__MAX_DECOYS][3]);
   /** The difference has a kink where the sample is neutral. */
   bool kinked_axis;
   /** The difference jumps where the sample's hue is opposite. */

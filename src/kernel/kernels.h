@@ -23,6 +23,9 @@ enum {
   EF__UCS_CONSTANTS
 };
 
+/** Samples of ciede2000_rough come by so many: their L*, their a*, their b*. */
+enum { EF__ROUGH_BLOCK = 8 };
+
 /** X(name, arguments) of every kernel. Pairs are n x 3 each. */
 #define EF__KERNEL_LIST(X)                                                     \
   /* mathematics.c: functions of n numbers, domains as in mathematics.h. */    \
@@ -63,6 +66,11 @@ enum {
   /* cielab.c, cie94.c, cmc.c, ciede2000.c: differences of n pairs. */         \
   X(ciede2000, (size_t n, const double *reference, const double *sample,       \
                 const double factor[3], double *out))                          \
+  /* ciede2000_rough.c: squared differences of one reference to n blocks of   \
+   * samples; the difference is known to 0.002 of 1 + itself. */               \
+  X(ciede2000_rough, (size_t n, const float reference[3],                      \
+                      const float factor[3], const float *sample,              \
+                      float *square))                                          \
   X(cie94, (size_t n, const double *reference, const double *sample,           \
             const double factor[5], double *out))                              \
   X(cmc, (size_t n, const double *reference, const double *sample,             \

@@ -151,6 +151,41 @@ EF__INLINE v_double v_load_float(const float *from) {
 #endif
 }
 
+/* ---- Floats ------------------------------------------------------------- */
+
+enum { V_FLOATS = 2 * EF__LANES };
+
+EF__INLINE v_float v_float_load(const float *from) {
+  v_float x;
+  memcpy(&x, from, sizeof x);
+  return x;
+}
+
+EF__INLINE void v_float_store(float *to, v_float x) {
+  memcpy(to, &x, sizeof x);
+}
+
+EF__INLINE v_float v_sqrt_float(v_float x) {
+#if defined(__AVX2__)
+  return (v_float)_mm256_sqrt_ps((__m256)x);
+#elif defined(__SSE2__)
+  return (v_float)_mm_sqrt_ps((__m128)x);
+#else
+  for (int i = 0; i < V_FLOATS; ++i) x[i] = __builtin_sqrtf(x[i]);
+  return x;
+#endif
+}
+
+EF__INLINE v_float v_select_float(v_int32 mask, v_float yes, v_float no) {
+#if defined(__AVX2__)
+  return (v_float)_mm256_blendv_ps((__m256)no, (__m256)yes, (__m256)mask);
+#else
+  return (v_float)((mask & (v_int32)yes) | (~mask & (v_int32)no));
+#endif
+}
+
+/* ---- Sums --------------------------------------------------------------- */
+
 /** Eight doubles on every target, for sums of eight parts. */
 enum { V_PARTS = 8 / EF__LANES };
 typedef struct v_eight {

@@ -108,7 +108,9 @@ void ef__scout_free(ef__scout *scout);
 /** A point of the grid. */
 typedef struct ef__start {
   double amount[3];
-  double difference; /**< to the target */
+  double square; /**< of the difference to the target, about */
+  double low[3], high[3]; /**< amounts of its neighbours in the grid, from
+                               ef__scout_starts */
 } ef__start;
 /** The points of the grid that are nearer to the target (in the metric's
  * coordinates) than all their neighbours, the nearest first; none that differ
