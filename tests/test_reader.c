@@ -58,13 +58,13 @@ static char *faulty_text(void) {
   return text;
 }
 
-static void faulty_rows_are_left_out(void **state) {
-  (void)state;
+static void faulty_rows(bool ahead) {
   heard h = {0};
   const ef_notes notes = heard_notes(&h);
   ef_reader_settings settings = ef_reader_settings_default();
   settings.notes = &notes;
   settings.skip_bad = true;
+  settings.reads_ahead = ahead;
   char *const text = faulty_text();
   ef_reader *const reader = open_with(text, &settings);
   size_t n = 0;
@@ -91,6 +91,36 @@ static void faulty_rows_are_left_out(void **state) {
   assert_non_null(strstr(h.text, "\nt.csv: 15 rows left out as faulty\n"));
   ef_reader_free(reader);
   free(text);
+}
+
+static void faulty_rows_are_left_out(void **state) {
+  (void)state;
+  faulty_rows(false);
+}
+
+/* The same in the same order; a fault comes behind the rows before it, and what
+ * has been read ahead may be left. */
+static void rows_are_read_ahead(void **state) {
+  (void)state;
+  faulty_rows(true);
+  ef_reader_settings settings = ef_reader_settings_default();
+  settings.reads_ahead = true;
+  char text[4096] = "L,a,b\n";
+  for (int i = 0; i < 200; ++i)
+    strcat(text, i == 171 ? "50,x,3\n" : "50,2,3\n");
+  ef_reader *reader = open_with(text, &settings);
+  for (size_t n = 0; n < 170; n += 10)
+    assert_int_equal(next(reader, 10).n, 10);
+  ef_block block;
+  ef_error error = {0};
+  assert_int_equal(ef_reader_next(reader, 10, &block, &error), EF_MALFORMED);
+  assert_int_equal(error.line, 173);
+  assert_int_equal(next(reader, 10).n, 0);
+  ef_reader_free(reader);
+  reader = open_with(text, &settings);
+  assert_int_equal(next(reader, 100).n, 100);
+  assert_int_equal(next(reader, 10).n, 10);
+  ef_reader_free(reader);
 }
 
 static void faulty_wavelengths_are_left_out(void **state) {
@@ -568,6 +598,7 @@ static void whole_files_of_bytes(void **state) {
 int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(faulty_rows_are_left_out),
+      cmocka_unit_test(rows_are_read_ahead),
       cmocka_unit_test(faulty_wavelengths_are_left_out),
       cmocka_unit_test(yellow_and_luminance_are_two_columns),
       cmocka_unit_test(faulty_device_values_are_left_out),

@@ -58,6 +58,9 @@ typedef struct ef_reader_settings {
   size_t first_byte, end_byte;
   bool reads_others;  /**< rows outside the range come as well, and only what is
                            said of rows at fault keeps to it */
+  bool reads_ahead;   /**< a thread of its own reads the next rows of a file (or
+                           text) while the caller works on the last ones; what
+                           comes, and the order of notes, stay the same */
   const ef_notes *notes;
 } ef_reader_settings;
 /** AUTO, no skipping, 1 GiB, all rows, no notes. */

@@ -109,7 +109,7 @@ ef_status ef__decide_from_remarks(ef_reader *reader, ef_error *error) {
 /* ---- From values ------------------------------------------------------- */
 
 static const char *rows_text(const ef_reader *reader) {
-  return reader->at_end ? "its rows" : "the first rows";
+  return reader->source_ended ? "its rows" : "the first rows";
 }
 
 /* Like the check of surfaces, a little noise below zero allowed. */

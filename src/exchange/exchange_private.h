@@ -65,6 +65,7 @@ typedef struct ef__input {
   char *name;
   int descriptor; /**< -1: memory */
   bool owns_descriptor;
+  bool is_file; /**< regular: what is asked for comes */
   const char *memory;
   size_t memory_left;
   char *buffer;
@@ -299,6 +300,25 @@ typedef struct ef__range {
 ef__range ef__range_none(void);
 void ef__range_add(ef__range *range, size_t n, const double *value);
 
+/* ---- Reading ahead (ahead.c) ------------------------------------------- */
+
+/** A thread beside the caller's. */
+typedef struct ef__ahead ef__ahead;
+/** NULL when no thread can be had. */
+ef__ahead *ef__ahead_new(void (*work)(void *cookie), void *cookie);
+/** Has the work done once. */
+void ef__ahead_ask(ef__ahead *ahead);
+/** Until the work that was asked for is done. */
+void ef__ahead_wait(ef__ahead *ahead);
+/** Waits as well; NULL is fine. */
+void ef__ahead_free(ef__ahead *ahead);
+
+/** Notes that are kept until those of earlier rows have been given. */
+typedef struct ef__said {
+  char *lines; /**< each with its terminator */
+  size_t used, room;
+} ef__said;
+
 /* ---- The readers (reader.c, decide.c, long.c) -------------------------- */
 
 struct ef_reader {
@@ -313,7 +333,19 @@ struct ef_reader {
   size_t n_rows_seen;    /**< data rows of the file so far, faulty ones too */
   size_t n_skipped;      /**< of the range */
   bool keeps_to_range;   /**< the first rows have decided what they do */
-  bool at_end;
+  bool source_ended;     /**< nothing more to be read */
+  /** The rest is not touched while the next rows are read ahead. */
+  size_t n_skipped_told; /**< up to the rows handed out */
+  bool at_end;           /**< likewise */
+  const ef_notes *told;  /**< of the caller, where settings.notes keeps them */
+  ef__ahead *ahead;      /**< NULL: none */
+  /** What is read ahead, and how that ended. */
+  ef__rows next;
+  size_t next_wanted;
+  ef_status next_status;
+  ef_error next_error;
+  ef__said said;
+  ef_notes kept;
   bool end_is_noted;
 };
 

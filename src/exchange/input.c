@@ -122,8 +122,10 @@ ef__input *ef__input_open(const char *path, ef_error *error) {
     if (!is_standard) close(descriptor);
     return NULL;
   }
+  struct stat about;
   input->descriptor = descriptor;
   input->owns_descriptor = !is_standard;
+  input->is_file = fstat(descriptor, &about) == 0 && S_ISREG(about.st_mode);
   return input;
 }
 

@@ -160,7 +160,7 @@ ef_status ef__long_read(ef_reader *reader, ef_error *error) {
   ef__range value = ef__range_none();
   ef_status status = read_rows(reader, &rows, error);
   if (status == EF_OK) {
-    reader->at_end = true;
+    reader->source_ended = true;
     for (size_t i = 0; i < rows.n; ++i) {
       ef__range_add(&value, rows.width - 1, rows.value + i * rows.width + 1);
     }

@@ -124,18 +124,17 @@ static ef__span number_name(size_t number, char text[32]) {
 }
 
 /* Full drive becomes 1. */
-static void scale_device(ef_reader *reader, size_t row) {
-  if (reader->rows.device == NULL) return;
-  double *const device = reader->rows.device + row * reader->layout.n_device;
+static void scale_device(const ef_reader *reader, ef__rows *rows, size_t row) {
+  if (rows->device == NULL) return;
+  double *const device = rows->device + row * reader->layout.n_device;
   for (size_t i = 0; i < reader->layout.n_device; ++i) {
     device[i] /= reader->limits.device_max;
   }
 }
 
 /* Rows from the file into `rows` until it holds `n_wanted`. */
-static ef_status fill(ef_reader *reader, size_t n_wanted, bool with_limits,
-                      ef_error *error) {
-  ef__rows *const rows = &reader->rows;
+static ef_status fill(ef_reader *reader, ef__rows *rows, size_t n_wanted,
+                      bool with_limits, ef_error *error) {
   ef_status status = ef__rows_reserve(rows, n_wanted, error);
   while (status == EF_OK && rows->n < n_wanted) {
     char number[32];
@@ -148,13 +147,13 @@ static ef_status fill(ef_reader *reader, size_t n_wanted, bool with_limits,
                             &has_row, error);
     if (status != EF_OK) return status;
     if (!has_row) {
-      reader->at_end = true;
+      reader->source_ended = true;
       break;
     }
     if (label.name.length == 0) {
       label.name = number_name(reader->n_rows_seen, number);
     }
-    if (with_limits) scale_device(reader, rows->n);
+    if (with_limits) scale_device(reader, rows, rows->n);
     status = ef__rows_add(rows, reader->table.records.line,
                           reader->table.records.offset, label, error);
   }
@@ -175,7 +174,7 @@ static ef_status check_first_rows(ef_reader *reader, ef_error *error) {
         rows->value + i * rows->width, device, &fault);
     if (status == EF_OK) {
       ef__rows_move(rows, i, kept);
-      scale_device(reader, kept++);
+      scale_device(reader, rows, kept++);
       continue;
     }
     status = ef__reader_fault(reader, rows->offset[i], &fault, error);
@@ -203,7 +202,7 @@ static ef_status read_first_rows(ef_reader *reader, ef_error *error) {
   rows->width = layout->n_values;
   rows->n_device = layout->n_device;
   rows->has_angles = layout->angle_column != SIZE_MAX;
-  ef_status status = fill(reader, FIRST_ROWS, false, error);
+  ef_status status = fill(reader, rows, FIRST_ROWS, false, error);
   if (status != EF_OK) return status;
   ef__range value = ef__range_none();
   ef__range device = ef__range_none();
@@ -211,8 +210,8 @@ static ef_status read_first_rows(ef_reader *reader, ef_error *error) {
   ef__range_add(&device, rows->n * rows->n_device, rows->device);
   ef__decide_from_values(reader, rows->n, value, device);
   status = check_first_rows(reader, error);
-  if (status == EF_OK && rows->n == 0 && !reader->at_end) {
-    status = fill(reader, 1, true, error);
+  if (status == EF_OK && rows->n == 0 && !reader->source_ended) {
+    status = fill(reader, rows, 1, true, error);
   }
   if (status == EF_OK && rows->n == 0) return refuse_no_rows(reader, error);
   return status;
@@ -255,7 +254,7 @@ static void enter_range(ef_reader *reader) {
   while (rows->n > reader->next_row &&
          is_behind_range(reader, rows->offset[rows->n - 1])) {
     --rows->n;
-    reader->at_end = true;
+    reader->source_ended = true;
   }
 }
 
@@ -269,6 +268,8 @@ static ef_status read_head(ef_reader *reader, ef_error *error) {
   if (reader->rows.n == 0) return refuse_no_rows(reader, error);
   fill_head(reader);
   enter_range(reader);
+  reader->at_end = reader->source_ended;
+  reader->n_skipped_told = reader->n_skipped;
   return EF_OK;
 }
 
@@ -329,9 +330,12 @@ ef_reader *ef_reader_open(const char *path, const ef_reader_settings *settings,
 
 void ef_reader_free(ef_reader *reader) {
   if (reader == NULL) return;
+  ef__ahead_free(reader->ahead);
   ef__table_clear(&reader->table);
   ef__layout_clear(&reader->layout);
   ef__rows_clear(&reader->rows);
+  ef__rows_clear(&reader->next);
+  free(reader->said.lines);
   free(reader->wavelength_nm);
   free(reader);
 }
@@ -341,7 +345,7 @@ const ef_reader_head *ef_reader_get_head(const ef_reader *reader) {
 }
 
 size_t ef_reader_skipped(const ef_reader *reader) {
-  return reader->n_skipped;
+  return reader->n_skipped_told;
 }
 
 /* ---- Blocks ------------------------------------------------------------ */
@@ -354,11 +358,99 @@ static size_t most_rows(const ef_reader *reader, size_t asked) {
 }
 
 static void note_end(ef_reader *reader) {
-  if (reader->end_is_noted || reader->n_skipped == 0) return;
+  const size_t n = reader->n_skipped_told;
+  if (reader->end_is_noted || n == 0) return;
   reader->end_is_noted = true;
-  ef__note(reader->settings.notes, "%s: %zu row%s left out as faulty",
-           reader->head.file, reader->n_skipped,
-           reader->n_skipped == 1 ? "" : "s");
+  ef__note(reader->ahead != NULL ? reader->told : reader->settings.notes,
+           "%s: %zu row%s left out as faulty", reader->head.file, n,
+           n == 1 ? "" : "s");
+}
+
+/* ---- Reading ahead ----------------------------------------------------- */
+
+/* Without memory a note is lost, no row is. */
+static void keep_note(void *cookie, const char *line) {
+  ef__said *const said = cookie;
+  const size_t length = strlen(line) + 1;
+  if (said->room - said->used < length) {
+    const size_t room = 2 * (said->used + length);
+    char *const grown = ef__reallocate(said->lines, room, 1);
+    if (grown == NULL) return;
+    said->lines = grown;
+    said->room = room;
+  }
+  memcpy(said->lines + said->used, line, length);
+  said->used += length;
+}
+
+static void give_notes(ef_reader *reader) {
+  ef__said *const said = &reader->said;
+  for (size_t at = 0; at < said->used; at += strlen(said->lines + at) + 1)
+    ef__note(reader->told, "%s", said->lines + at);
+  said->used = 0;
+}
+
+static void read_next(void *cookie) {
+  ef_reader *const reader = cookie;
+  reader->next_status = fill(reader, &reader->next, reader->next_wanted, true,
+                             &reader->next_error);
+}
+
+/* A pipe may keep its readers waiting, and then their end as well. */
+static bool may_read_ahead(const ef_reader *reader) {
+  const ef__input *const input = reader->table.records.input;
+  return reader->settings.reads_ahead && !reader->source_ended &&
+         (input->descriptor < 0 || input->is_file);
+}
+
+static void start_ahead(ef_reader *reader) {
+  if (!may_read_ahead(reader)) return;
+  reader->ahead = ef__ahead_new(read_next, reader);
+  if (reader->ahead == NULL) return;
+  reader->next = (ef__rows){.width = reader->rows.width,
+                            .n_device = reader->rows.n_device,
+                            .has_angles = reader->rows.has_angles};
+  reader->told = reader->settings.notes;
+  reader->kept = (ef_notes){.write = keep_note, .cookie = &reader->said};
+  reader->settings.notes = reader->table.notes = &reader->kept;
+}
+
+static void ask_for_next(ef_reader *reader, size_t n_wanted) {
+  reader->next.n = 0;
+  reader->next.texts_used = 0;
+  reader->next_wanted = n_wanted;
+  ef__ahead_ask(reader->ahead);
+}
+
+static ef_status take_next(ef_reader *reader, ef_error *error) {
+  ef__ahead_wait(reader->ahead);
+  const ef__rows done = reader->rows;
+  reader->rows = reader->next;
+  reader->next = done;
+  if (reader->next_status != EF_OK && error != NULL)
+    *error = reader->next_error;
+  return reader->next_status;
+}
+
+/* The next rows of the file in place of the last ones. */
+static ef_status refill(ef_reader *reader, size_t n_wanted, ef_error *error) {
+  ef__rows *const rows = &reader->rows;
+  ef_status status;
+  reader->next_row = 0;
+  if (reader->ahead != NULL) {
+    status = take_next(reader, error);
+    give_notes(reader);
+  } else {
+    rows->n = 0;
+    rows->texts_used = 0;
+    status = fill(reader, rows, n_wanted, true, error);
+    if (status == EF_OK) start_ahead(reader);
+  }
+  reader->n_skipped_told = reader->n_skipped;
+  reader->at_end = reader->source_ended || status != EF_OK;
+  if (status != EF_OK) rows->n = 0; /* after a fault nothing more comes */
+  if (reader->ahead != NULL && !reader->at_end) ask_for_next(reader, n_wanted);
+  return status;
 }
 
 ef_status ef_reader_next(ef_reader *reader, size_t max_rows, ef_block *block,
@@ -369,17 +461,9 @@ ef_status ef_reader_next(ef_reader *reader, size_t max_rows, ef_block *block,
     return ef__error_set(error, EF_INVALID, "no room for a row was given");
   }
   if (reader->next_row == rows->n && !reader->at_end) {
-    rows->n = 0;
-    rows->texts_used = 0;
-    reader->next_row = 0;
     const ef_status status =
-        fill(reader, most_rows(reader, max_rows), true, error);
-    if (status != EF_OK) {
-      /* After a fault nothing more comes. */
-      rows->n = 0;
-      reader->at_end = true;
-      return status;
-    }
+        refill(reader, most_rows(reader, max_rows), error);
+    if (status != EF_OK) return status;
   }
   const size_t left = rows->n - reader->next_row;
   const size_t first = reader->next_row;

@@ -55,6 +55,7 @@ ef_reader *source_rows(const command_options *options, const char *path,
   settings.first_byte = range->first_byte;
   settings.end_byte = range->end_byte;
   settings.reads_others = range->reads_others;
+  settings.reads_ahead = options->jobs != 1;
   return ef_reader_open(path, &settings, error);
 }
 
