@@ -436,8 +436,10 @@ static void demo_files_open(void **state) {
     snprintf(path, sizeof path, "demo:%s", ef_demo_name(i));
     ef_error error = {0};
     ef_reader *const reader = ef_reader_open(path, NULL, &error);
-    /* Answers of a panel and its pairs are no colours; all others are read. */
-    if (strstr(ef_demo_name(i), "-responses") != NULL ||
+    /* What a panel answers, sets and is shown are no colours; all others are
+     * read. */
+    if (strstr(ef_demo_name(i), "-settings") != NULL ||
+        strstr(ef_demo_name(i), "-responses") != NULL ||
         strstr(ef_demo_name(i), "-answers") != NULL ||
         strstr(ef_demo_name(i), "-pairs") != NULL) {
       assert_null(reader);

@@ -60,6 +60,22 @@ ef_join "readings of one sample stay together" 4 compare standards.csv \
 ef_join "pairs of a list" 3 compare standards.csv batch.csv --pairs list.csv
 ef_join "the demo, with draws" 3 compare --samples 200 --batch-sd 0.3
 
+# As the manual page has it for an array of tasks, and for GNU parallel.
+"$evenfield" match demo:livery --quiet --format csv > whole
+for SLURM_ARRAY_TASK_ID in 1 2 3; do
+  "$evenfield" match demo:livery --quiet --format csv \
+    --part "$SLURM_ARRAY_TASK_ID/3" --output "part-$SLURM_ARRAY_TASK_ID.csv"
+done
+cat $(seq -f part-%.0f.csv 3) > joined
+cmp whole joined
+ef_tell "an array of tasks, a file each" $?
+parallel='xargs -I{}'
+command -v parallel > /dev/null && parallel='parallel -k'
+seq 3 | $parallel "$evenfield" match demo:livery --quiet --format csv \
+  --jobs 1 --part {}/3 > joined
+cmp whole joined
+ef_tell "all of a list of parts, by ${parallel%% *}" $?
+
 # A fault is told by the part that it is in.
 sed 's/^"#4",70/"#4",x/' odd.csv > faulty.csv
 "$evenfield" describe --skip-bad --format csv faulty.csv 2> notes.whole |
