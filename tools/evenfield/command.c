@@ -191,7 +191,9 @@ static const command_entry table[] = {
       "picture black), and notes count them."},
      command_image,
      {"evenfield swatch",
-      "evenfield image gamut --display bt709 swatches/sheet.png"}},
+      "evenfield image gamut --display bt709 swatches/sheet.png",
+      "evenfield image compare swatches/005-rail-yellow.png "
+      "swatches/004-mast-buff.png"}},
     {"swatch",
      COMMAND_SWATCH,
      "[TARGETS | LEFT RIGHT]",

@@ -4,6 +4,7 @@
 #include <math.h>
 #include <stdio.h>
 #include <string.h>
+#include <sys/stat.h>
 
 #include "message.h"
 #include "record.h"
@@ -280,8 +281,35 @@ static ef_status write_table(work *w, ef_error *error) {
   return status;
 }
 
+static bool is_same_file(const char *a, const char *b) {
+  struct stat p, q;
+  return stat(a, &p) == 0 && stat(b, &q) == 0 && p.st_dev == q.st_dev &&
+         p.st_ino == q.st_ino;
+}
+
+/* An image is not to be lost to what is made of it, whatever may be
+ * overwritten. */
+static ef_status check_place(const work *w, ef_error *error) {
+  text values = {0};
+  const int stem = (int)strlen(w->out_path) - 4;
+  text_format(&values, "%.*s.bip", stem, w->out_path);
+  const bool is_own =
+      w->form == FORM_CUBE &&
+      (is_same_file(w->out_path, w->path) ||
+       (!values.failed && is_same_file(values.bytes, w->head->data_file)));
+  text_free(&values);
+  if (!is_own)
+    return EF_OK;
+  message_fail(error, EF_EXISTS,
+               "would replace the spectral image that is read; name another "
+               "file");
+  return message_place(error, w->out_path);
+}
+
 static ef_status write_out(work *w, ef_error *error) {
-  ef_status status;
+  ef_status status = check_place(w, error);
+  if (status != EF_OK)
+    return status;
   switch (w->form) {
   case FORM_PICTURE:
     status = write_picture(w, error);
@@ -318,6 +346,11 @@ static void tell_of_pixels(const work *w, const ef_notes *notes) {
     message_note(notes, "%s: %zu of %zu pixels hold what is no finite number; "
                         "they are %s in %s",
                  w->path, i->n_not_numbers, i->n_pixels, as, w->out_path);
+  if (w->kind == EF_SURFACE && 2 * w->clipped.n_bright > i->n_pixels)
+    message_note(notes, "%s: most of its pixels are brighter than white; does "
+                        "its header lack the reflectance scale factor, or does "
+                        "it hold lights (--kind light)?",
+                 w->path);
 }
 
 /* ---- The report ---------------------------------------------------------- */

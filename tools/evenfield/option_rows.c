@@ -240,7 +240,7 @@ static const option_row table[] = {
     {"white-level", "Y", COMMAND_IMAGE, TYPE_NUMBER, FIELD(white_level), 1e-12,
      1e12, NULL,
      "render: the Y that a picture shows as its white; default 100 for "
-     "surfaces, the largest of all pixels for lights"},
+     "surfaces, for lights the largest of all pixels, which a first pass finds"},
     {"bits", "8|16", COMMAND_IMAGE, TYPE_INTEGER, FIELD(swatch_bits), 8, 16,
      NULL, "render: bits per channel of a picture; default 8"},
     {"from", "PROFILE", COMMAND_PROFILE, TYPE_TEXT, FIELD(from), 0, 0, NULL,
