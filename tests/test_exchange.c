@@ -222,6 +222,9 @@ static void device_values_run_from_0_to_1(void **state) {
   check_device("# device_max: 100,0,,,,\n"
                "cyan,magenta,yellow,X,Y,Z\n10,25,50,20.5,21.5,8.5\n",
                100, "", "cyan", percent);
+  check_device("# device_max: 100\nCyan,MAGENTA,yellow,X,Y,Z\n"
+               "10,25,50,20.5,21.5,8.5\n",
+               100, "", "cyan", percent);
 }
 
 static void device_values_alone(void **state) {

@@ -82,7 +82,7 @@ typedef struct ef_reader ef_reader;
  * Header: `wavelength_nm` first: long spectra; columns named by wavelength
  * (400, 400nm, nm400): wide spectra; L,a,b / X,Y,Z / x,y,Y; R,G,B / C,M,Y
  * (or red,green,blue / cyan,magenta,yellow) device values beside any of these
- * or alone, with inks a fourth K (black); where C,M,Y stand side by side and
+ * or alone (of words case does not count), with inks a fourth K (black); where C,M,Y stand side by side and
  * another column is Y, theirs is yellow; `name` anywhere, and `angle_deg` (or
  * `angle`) for one of several angles at which a sample was measured (not in
  * long spectra). Case counts: x is not X. Where several sets are there, spectra

@@ -79,11 +79,15 @@ static bool find_three(const ef__table *table, const char *const name[3],
   return true;
 }
 
-/* By letters, or written out. */
+/* By letters, or written out: of words case does not count. */
 static bool find_device(const ef__table *table, const device_set *set,
                         size_t column[3]) {
-  return find_three(table, set->letter, column) ||
-         find_three(table, set->word, column);
+  if (find_three(table, set->letter, column)) return true;
+  for (int i = 0; i < 3; ++i) {
+    column[i] = find_any_case(table, set->word[i]);
+    if (column[i] == SIZE_MAX) return false;
+  }
+  return true;
 }
 
 static bool is_unit(ef__span span) {
@@ -297,8 +301,9 @@ static ef_status lay_out_device(const ef__table *table, ef__layout *layout,
   layout->n_device = 3;
   const bool has_letters = strcmp(table->column[column[0]], set->letter[0]) == 0;
   const size_t black =
-      has_rgb ? SIZE_MAX
-              : find_column(table, has_letters ? set->letter[3] : set->word[3]);
+      has_rgb       ? SIZE_MAX
+      : has_letters ? find_column(table, set->letter[3])
+                    : find_any_case(table, set->word[3]);
   if (black != SIZE_MAX && layout->slot[black] == EF__SLOT_NONE) {
     place(layout, black, layout->n_values + layout->n_device++);
   }
