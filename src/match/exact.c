@@ -44,6 +44,7 @@ static bool damped_step(const double j[9], const double r[3], double damping,
 static double newton(const ef__mixing *mixing, ef_xyz target,
                      double amount[3]) {
   enum { MOST_STEPS = 60 };
+  const double shortest = 1e-12;
   double r[3], j[9], damping = 1e-3;
   double square = residual(mixing, target, amount, r, j);
   for (int i = 0; i < MOST_STEPS && damping < 1e6; ++i) {
@@ -52,9 +53,14 @@ static double newton(const ef__mixing *mixing, ef_xyz target,
       damping *= 10;
       continue;
     }
+    double moved = 0;
     for (int k = 0; k < 3; ++k) {
       next[k] = ef__clamp(amount[k] + step[k], 0, 1);
+      moved = fmax(moved, fabs(next[k] - amount[k]));
     }
+    /* Held by the box, or there: what other directions would still give is of
+     * no account beside what is missing. */
+    if (moved < shortest) break;
     if (!(residual(mixing, target, next, next_r, NULL) < square)) {
       damping = damping > 0 ? 10 * damping : 1e-6;
       continue;

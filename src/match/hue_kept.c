@@ -31,8 +31,11 @@ static double margin(const ef__search *search, double lightness, double s,
  * crossing, on the side of the box. */
 static double crossing(const ef__search *search, double lightness, double out,
                        double in) {
+  /* Colours that are searched for are told to the resolution of the setup. */
+  const double enough =
+      search->mixing->affine ? 1e-14 : 1e-2 * search->mixing->resolution;
   double amount[3];
-  for (int i = 0; i < 60 && fabs(out - in) > 1e-14; ++i) {
+  for (int i = 0; i < 60 && fabs(out - in) > enough; ++i) {
     const double middle = 0.5 * (out + in);
     if (margin(search, lightness, middle, amount) < 0) {
       out = middle;

@@ -98,7 +98,11 @@ static void describe(text *out, const match_scene *s) {
   if (strcmp(own->info.space, "CMYK") == 0) {
     char number[EF_NUMBER_TEXT];
     ef_number_format(100.0 * own->settings.black, number);
-    text_format(&t, "; black stays at %s %%", number);
+    text_format(&t, "; black stays at %s %%%s", number,
+                isnan(s->options->black_percent)
+                    ? " (--black names another; what the profile itself would "
+                      "take, `evenfield profile convert` tells)"
+                    : "");
   }
   text_label(out, "Profile", &t);
   profile_intent_words(own->settings.intent,
