@@ -8,7 +8,7 @@ EF_TEST_PACKAGES="g++ libcmocka-dev libglpk-dev"
 # ICC profiles of displays and presses, 0.4 MB: tests do without them.
 EF_PROFILE_PACKAGES="icc-profiles-free libgs-common"
 # Contestants in the benches.
-EF_BENCH_PACKAGES="libopenblas-dev libnlopt-dev"
+EF_BENCH_PACKAGES="libopenblas-dev libnlopt-dev valgrind"
 # Labels on the sheet of swatches need cairo at run time and any font.
 EF_RUN_PACKAGES="libcairo2 fonts-dejavu-core"
 

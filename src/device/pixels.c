@@ -19,7 +19,7 @@ typedef struct work {
   double *out;
 } work;
 
-enum { CHUNK = 16384 }; /* pixels: some tenths of a millisecond */
+enum { CHUNK = 32768 }; /* pixels: 0.1 to 0.3 ms */
 
 /* Row i of the matrix is multiplied by factor[i]. */
 static ef_status decoder_set(const ef_encoding *encoding,

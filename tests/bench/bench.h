@@ -41,6 +41,13 @@ void bench_row(const char *what, const char *peer_title,
 double bench_wall_s(void);
 double bench_busy_s(void);
 
+/** The line alone, for what is no row of the table. */
+void bench_detail(const bench_entry *ours, const bench_entry *peer);
+
+/** The sum of all numbers but some of the last, as fast as they can be read.
+ * `value` as malloc aligns it. */
+double bench_sum(size_t n, const double *value);
+
 /** malloc, or the end with a word about it. */
 void *bench_allocate(size_t count, size_t size);
 
