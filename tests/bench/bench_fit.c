@@ -139,6 +139,8 @@ int main(void) {
   for (size_t i = 0; i < SETS; ++i) prepare(i);
   bench_run(4, entry);
   bench_per_item(4, entry, SETS);
+  bench_value("fits_per_second", SETS / entry[2].seconds, "fits");
+  bench_value("fits_per_second_simplex", SETS / entry[0].seconds, "fits");
   for (size_t k = 0; k < 4; ++k) {
     size_t reached = 0;
     for (size_t i = 0; i < SETS; ++i) {
