@@ -237,7 +237,14 @@ static void arrangement_does_not_matter(void **state) {
         fail_msg("the split is wrong");
     }
     const ef_fit again = fit_or_fail(&mixed, 2 * ROWS, &settings);
-    assert_memory_equal(&fit, &again, sizeof fit);
+    /* The whole by its values: between its members are bytes without meaning. */
+    assert_same_bits(&fit.curve.location, &again.curve.location, 4);
+    assert_same_bits(fit.covariance, again.covariance, 16);
+    assert_same_bits(&fit.threshold.value, &again.threshold.value, 4);
+    assert_same_bits(&fit.jnd.value, &again.jnd.value, 4);
+    assert_same_bits(&fit.sigma.value, &again.sigma.value, 4);
+    assert_same_bits(&fit.lapse.value, &again.lapse.value, 4);
+    assert_same_bits(&fit.deviance, &again.deviance, 1);
   }
 }
 
