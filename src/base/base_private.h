@@ -164,6 +164,13 @@ ef__simplex_end ef__simplex_maximise(ef__simplex *simplex,
 int ef__shortest_digits(double value, char digit[EF__SHORTEST_DIGITS],
                         int *n_digits);
 
+/** value x 10^decimals (value above zero, 0 to 12 decimals) to the nearest
+ * whole number, of two equally near the even one; false when that is not known
+ * exactly here. */
+bool ef__round_exactly(double value, int decimals, uint64_t *number);
+/** Digits of a whole number and a terminator; how many. */
+int ef__put_whole(uint64_t number, char *digit);
+
 /* ---- Loops (parallel.c) ------------------------------------------------ */
 
 /** ef_parallel_for under the name that the library calls it by. A single chunk

@@ -212,6 +212,27 @@ static size_t set_decimal_point(char *text, size_t length) {
   return length - (to - from);
 }
 
+/* `shown` decimals of a number above zero, where that is exact; 0 if not. */
+static size_t put_fixed(double value, int shown, char text[EF_NUMBER_TEXT]) {
+  uint64_t number;
+  char digit[24];
+  if (!(value > 0) || !ef__round_exactly(value, shown, &number))
+    return 0;
+  int n = ef__put_whole(number, digit);
+  const int n_zeros = shown >= n ? shown + 1 - n : 0; /* in front */
+  memmove(digit + n_zeros, digit, (size_t)n + 1);
+  memset(digit, '0', (size_t)n_zeros);
+  n += n_zeros;
+  memcpy(text, digit, (size_t)(n - shown));
+  if (shown == 0) {
+    text[n] = '\0';
+    return (size_t)n;
+  }
+  text[n - shown] = '.';
+  memcpy(text + n - shown + 1, digit + n - shown, (size_t)shown + 1);
+  return (size_t)n + 1;
+}
+
 static bool is_all_zeros(const char *text) {
   return strspn(text, "-0.") == strlen(text);
 }
@@ -221,6 +242,9 @@ size_t ef_number_format_fixed(double value, int decimals,
   if (!isfinite(value))
     return ef_number_format(value, text);
   const int shown = decimals < 0 ? 0 : decimals > 12 ? 12 : decimals;
+  const size_t exact = put_fixed(value, shown, text);
+  if (exact > 0)
+    return exact;
   const int wanted = snprintf(text, EF_NUMBER_TEXT, "%.*f", shown, value);
   if (wanted < 0 || wanted >= EF_NUMBER_TEXT)
     return ef_number_format(value, text);

@@ -180,6 +180,36 @@ static bool exact_digits(double value, char *digit, int *n, int *exponent) {
   return true;
 }
 
+/* ---- A fixed number of decimals ---------------------------------------- */
+
+bool ef__round_exactly(double value, int decimals, uint64_t *number) {
+  uint64_t bits;
+  memcpy(&bits, &value, sizeof bits);
+  const int biased = (int)(bits >> MANTISSA_BITS);
+  const uint64_t mantissa = (bits & ((UINT64_C(1) << MANTISSA_BITS) - 1)) |
+                            UINT64_C(1) << MANTISSA_BITS;
+  /* value x 10^decimals = mantissa x 5^decimals / 2^shift */
+  const int shift = EXPONENT_BIAS + MANTISSA_BITS - biased - decimals;
+  if (biased == 0 || shift < 1 || shift > 63)
+    return false;
+  const wide product = multiply(mantissa, power_of_5[decimals]);
+  if (product.high >> (shift - 1) != 0)
+    return false;
+  const uint64_t one = UINT64_C(1) << shift;
+  const uint64_t rest = product.low & (one - 1);
+  *number = product.high << (64 - shift) | product.low >> shift;
+  if (rest > one - rest || (rest == one - rest && *number % 2 == 1))
+    ++*number;
+  return true;
+}
+
+int ef__put_whole(uint64_t number, char *digit) {
+  if (number > 0)
+    return put_digits(number, digit);
+  memcpy(digit, "0", 2);
+  return 1;
+}
+
 /* ---- By trial, for the others ------------------------------------------ */
 
 /* Value rounded to n digits, without the mark, whatever byte the locale has

@@ -153,6 +153,24 @@ static void reading_is_correctly_rounded(void **state) {
   }
 }
 
+/* The C library's rounding, which is that of the exact value. */
+static void fixed_decimals_are_those_of_printf(void **state) {
+  (void)state;
+  gen g = gen_new(6);
+  for (int i = 0; i < 60000; ++i) {
+    char text[EF_NUMBER_TEXT], expected[EF_NUMBER_TEXT];
+    const int decimals = (int)gen_below(&g, 13);
+    /* Also ties, such as 2.5 and 0.125. */
+    const double value =
+        i % 3 == 0 ? ldexp((double)gen_below(&g, 4000), -(int)gen_below(&g, 9))
+                   : pow(10, gen_between(&g, -14, 9)) * gen_unit(&g);
+    const size_t length = ef_number_format_fixed(value, decimals, text);
+    snprintf(expected, sizeof expected, "%.*f", decimals, value);
+    assert_string_equal(text, expected);
+    assert_int_equal(length, strlen(expected));
+  }
+}
+
 static void fixed_decimals_are_within_half_a_unit(void **state) {
   (void)state;
   gen g = gen_new(4);
@@ -174,6 +192,7 @@ int main(void) {
       cmocka_unit_test(everyday_text_is_shortest_and_nearest),
       cmocka_unit_test(text_is_the_shortest),
       cmocka_unit_test(reading_is_correctly_rounded),
+      cmocka_unit_test(fixed_decimals_are_those_of_printf),
       cmocka_unit_test(fixed_decimals_are_within_half_a_unit),
   };
   cmocka_set_message_output(CM_OUTPUT_TAP);

@@ -84,8 +84,9 @@ void record_numbers(record *r, const char *key, size_t n,
     return;
   }
   for (size_t i = 0; i < n; ++i) {
-    char column[100];
-    snprintf(column, sizeof column, "%s_%s", key, names[i]);
+    char column[100] = "";
+    if (r->is_header)
+      snprintf(column, sizeof column, "%s_%s", key, names[i]);
     record_number(r, column, values[i]);
   }
 }
