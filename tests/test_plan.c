@@ -69,7 +69,9 @@ static void threads_change_nothing(void **state) {
     const ef_plan_row one = simulate(&s, (ef_procedure)procedure, 60);
     s.jobs = 3;
     const ef_plan_row three = simulate(&s, (ef_procedure)procedure, 60);
-    assert_memory_equal(&one, &three, sizeof one);
+    /* Not the bytes between the members. */
+    assert_int_equal(one.n_failed, three.n_failed);
+    assert_same_bits(&one.median, &three.median, 6);
     s.seed = 2;
     const ef_plan_row other = simulate(&s, (ef_procedure)procedure, 60);
     assert_true(other.median != one.median);

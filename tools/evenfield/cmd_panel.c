@@ -6,6 +6,7 @@
 
 #include "diagram.h"
 #include "message.h"
+#include "panel_adjust.h"
 #include "panel_calibrate.h"
 #include "panel_calibrate_chart.h"
 #include "panel_chart.h"
@@ -25,6 +26,7 @@ typedef enum verb {
   VERB_NEXT = 4,
   VERB_PLAN = 8,
   VERB_FLICKER = 16,
+  VERB_ADJUST = 32,
   VERB_ANSWERS = 15 /* all that are about answers */
 } verb;
 
@@ -243,6 +245,31 @@ static exit_code run_flicker(const command_options *o) {
   return result_close(output, status, &error);
 }
 
+/* ---- panel adjust ------------------------------------------------------ */
+
+static exit_code run_adjust(const command_options *o) {
+  if (o->n_files < 2) {
+    return message_usage("panel adjust needs the file with the settings: a "
+                         "column setting, and standard and observer where "
+                         "they are known");
+  }
+  message_sink sink = {.quiet = o->quiet};
+  const ef_notes notes = message_notes(&sink);
+  ef_error error = {0};
+  panel_adjust p;
+  ef_output *output = NULL;
+  ef_status status = panel_adjust_load(&p, o, &notes, &error);
+  if (status == EF_OK) {
+    output = result_open(o, &error);
+    if (output == NULL)
+      status = error.status;
+  }
+  if (status == EF_OK)
+    status = render_panel_adjust(&p, output, &error);
+  panel_adjust_free(&p);
+  return result_close(output, status, &error);
+}
+
 /* ---- Which verb -------------------------------------------------------- */
 
 static const struct {
@@ -256,6 +283,7 @@ static const struct {
     {"next", VERB_NEXT, 1, run_next},
     {"plan", VERB_PLAN, 0, run_plan},
     {"flicker", VERB_FLICKER, 2, run_flicker},
+    {"adjust", VERB_ADJUST, 1, run_adjust},
 };
 enum { N_VERBS = sizeof verbs / sizeof verbs[0] };
 
@@ -279,5 +307,5 @@ exit_code command_panel(const command_options *options) {
     return code == EXIT_DONE ? verbs[i].run(o) : code;
   }
   return message_usage("panel does not know \"%.100s\": it is fit, "
-                       "calibrate, next, plan or flicker", o->files[0]);
+                       "calibrate, next, plan, flicker or adjust", o->files[0]);
 }

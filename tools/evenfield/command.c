@@ -119,7 +119,7 @@ static const command_entry table[] = {
     {"panel",
      COMMAND_PANEL,
      "fit [RESPONSES] | calibrate [RESPONSES [SAMPLES]] | next [RESPONSES] | "
-     "plan | flicker [SETTINGS [LIGHTS]]",
+     "plan | flicker [SETTINGS [LIGHTS]] | adjust SETTINGS",
      "what a panel's answers say: thresholds, JND, points of equality",
      {"`evenfield panel fit RESPONSES` fits a curve to the answers of each "
       "observer and condition and to all together: threshold, point of "
@@ -133,8 +133,11 @@ static const command_entry table[] = {
       "plan --expected-jnd 0.9` how many observers, levels and trials a panel "
       "takes. `evenfield panel flicker SETTINGS LIGHTS` turns settings of least "
       "flicker (columns first, first_amount, second, second_amount: lights and "
-      "shares of their full drive) into luminance weights for isolate. Without "
-      "a file all but plan work on the demo.",
+      "shares of their full drive) into luminance weights for isolate. `evenfield "
+      "panel adjust SETTINGS` sums up what observers set by hand until both "
+      "sides looked alike (columns setting, standard, observer): point of "
+      "equality, constant error, JND. Without a file all but plan and adjust "
+      "work on the demo.",
       "RESPONSES is CSV with the column level, and for each trial answer (yes, "
       "no; right, wrong; same, different; greater, less; or 1 and 0), or "
       "counts n (shown) and k (of them positive); calibrate also takes "
