@@ -72,7 +72,7 @@ double ef__ciede2000_hue_weight(double c, double s, double derivative[2]) {
  * degrees, 7e-15: nothing beside the 1 it is added to. The angle is that in
  * [0, 360) as published: the term has a step of 1e-5 at 0 degrees. */
 static double rotation(ef__ciede2000 *t) {
-  t->mean_h_deg = 0;
+  t->mean_h_deg = t->turn = t->sin_turn = 0;
   if (t->sin_h >= 0 && t->cos_h > -0.57)
     return 0;
   t->mean_h_deg = atan2(t->sin_h, t->cos_h) * DEGREES_PER_RADIAN;
@@ -80,8 +80,9 @@ static double rotation(ef__ciede2000 *t) {
     t->mean_h_deg += 360;
   const double u = (t->mean_h_deg - 275) / 25;
   const double angle_deg = 30 * exp(-u * u);
-  return -sin(2 * angle_deg / DEGREES_PER_RADIAN) * 2 *
-         ef__ciede2000_saturation(t->mean_c);
+  t->turn = 2 * angle_deg / DEGREES_PER_RADIAN;
+  t->sin_turn = sin(t->turn);
+  return -t->sin_turn * 2 * ef__ciede2000_saturation(t->mean_c);
 }
 
 void ef__ciede2000_terms(const double reference[3], const double sample[3],

@@ -47,7 +47,7 @@ static inline jet weight(double slope, jet x) {
 }
 
 /* sqrt(C^7 / (C^7 + 25^7)). */
-static jet saturation(jet chroma) {
+static inline jet saturation(jet chroma) {
   const double c = chroma.v;
   if (c <= 0) return (jet){0, 0, 0, 0, 0, 0};
   const double r = ef__ciede2000_saturation(c);
@@ -57,7 +57,7 @@ static jet saturation(jet chroma) {
 }
 
 /* sqrt(x^2 + b^2) of a jet x, b being the variable itself. */
-static jet chroma_of(jet x, double b, double length) {
+static inline jet chroma_of(jet x, double b, double length) {
   const double c = x.a, s = x.b;
   const double p = x.v / length, q = b / length;
   /* Derivatives of the length by x and b: p, q; second: q^2, -p q, p^2 over
@@ -72,7 +72,7 @@ static jet chroma_of(jet x, double b, double length) {
 }
 
 /* Hue angle of (x, b) in radians, without its value. */
-static jet hue_of(jet x, double b, double length) {
+static inline jet hue_of(jet x, double b, double length) {
   const double c = x.a, s = x.b;
   const double p = x.v / length, q = b / length;
   const double first_x = -q / length, first_b = p / length;
@@ -87,21 +87,21 @@ static jet hue_of(jet x, double b, double length) {
 }
 
 /* Eq. 15 as a function of the mean hue. */
-static jet hue_weight(const ef__ciede2000 *t, jet mean_h) {
+static inline jet hue_weight(const ef__ciede2000 *t, jet mean_h) {
   double d[2];
   const double value = ef__ciede2000_hue_weight(t->cos_h, t->sin_h, d);
   return chain(value, d[0], d[1], mean_h);
 }
 
 /* Eq. 16, 17 and 21. */
-static jet rotation(const ef__ciede2000 *t, jet mean_c, jet mean_h) {
+static inline jet rotation(const ef__ciede2000 *t, jet mean_c, jet mean_h) {
   if (t->r_t == 0) return (jet){0, 0, 0, 0, 0, 0};
   const double per_radian = DEGREES_PER_RADIAN / 25;
   const double u = (t->mean_h_deg - 275) / 25;
-  const double angle = RADIANS_30 * exp(-u * u);
+  const double angle = t->turn / 2;
   const double first = -2 * u * per_radian * angle;
   const double second = (4 * u * u - 2) * per_radian * per_radian * angle;
-  const double s = sin(2 * angle), c = cos(2 * angle);
+  const double s = t->sin_turn, c = sqrt(1 - s * s); /* up to 60 degrees */
   const jet turn = chain(-2 * s, -4 * c * first,
                          8 * s * first * first - 4 * c * second, mean_h);
   return multiply(turn, saturation(mean_c));
@@ -114,7 +114,7 @@ typedef struct polar {
   jet hue1, hue2;       /* h' without value */
 } polar;
 
-static polar polar_of(const ef__ciede2000 *t, const double reference[3],
+static inline polar polar_of(const ef__ciede2000 *t, const double reference[3],
                       const double sample[3]) {
   const double a1 = reference[1], b1 = reference[2];
   const double a2 = sample[1], b2 = sample[2];
@@ -144,7 +144,7 @@ static polar polar_of(const ef__ciede2000 *t, const double reference[3],
 }
 
 /* Eq. 11. */
-static jet delta_hue(const ef__ciede2000 *t, const polar *p) {
+static inline jet delta_hue(const ef__ciede2000 *t, const polar *p) {
   const jet product = multiply(p->chroma1, p->chroma2);
   if (product.v == 0) return (jet){0, 0, 0, 0, 0, 0};
   const double root = sqrt(product.v);

@@ -184,6 +184,8 @@ typedef struct ef__ciede2000 {
   double cos_h, sin_h;              /* of the mean hue */
   double hue_weight;                /* T, eq. 15 */
   double s_l, s_c, s_h, r_t;        /* eq. 18 to 21 */
+  double turn, sin_turn;            /* 2 Delta theta of eq. 16, radians; set
+                                       unless r_t is 0 */
 } ef__ciede2000;
 
 void ef__ciede2000_terms(const double reference[3], const double sample[3],

@@ -84,24 +84,21 @@ void ef__lab_carry(const ef_metric *self, const double coordinate[3],
   const double *const g = in->gradient, *const h = in->hessian;
   const double g_f[3] = {500 * g[1], 116 * g[0] - 500 * g[1] + 200 * g[2],
                          -200 * g[2]};
-  /* Rows of d(L*, a*, b*) / d(fX, fY, fZ). */
-  const double j[9] = {0, 116, 0, 500, -500, 0, 0, 200, -200};
-  double hj[9];
-  for (int i = 0; i < 3; ++i) {
-    for (int k = 0; k < 3; ++k) {
-      hj[3 * i + k] =
-          h[3 * i] * j[k] + h[3 * i + 1] * j[3 + k] + h[3 * i + 2] * j[6 + k];
-    }
-  }
-  for (int i = 0; i < 3; ++i) {
-    for (int k = 0; k < 3; ++k) {
-      const double h_f =
-          j[i] * hj[k] + j[3 + i] * hj[3 + k] + j[6 + i] * hj[6 + k];
-      out->hessian[3 * i + k] = h_f * d[i] * d[k];
-    }
+  /* With L* = 116 fY - 16, a* = 500 (fX - fY), b* = 200 (fY - fZ). */
+  const double x_x = 250000 * h[4], x_z = -100000 * h[5], z_z = 40000 * h[8];
+  const double x_y = 58000 * h[1] - x_x - x_z;
+  const double y_z = -23200 * h[2] - x_z - z_z;
+  const double y_y = 13456 * h[0] - 116000 * h[1] + 46400 * h[2] + x_x +
+                     2 * x_z + z_z;
+  double *const k = out->hessian;
+  k[0] = x_x * d[0] * d[0] + g_f[0] * dd[0];
+  k[1] = k[3] = x_y * d[0] * d[1];
+  k[2] = k[6] = x_z * d[0] * d[2];
+  k[4] = y_y * d[1] * d[1] + g_f[1] * dd[1];
+  k[5] = k[7] = y_z * d[1] * d[2];
+  k[8] = z_z * d[2] * d[2] + g_f[2] * dd[2];
+  for (int i = 0; i < 3; ++i)
     out->gradient[i] = g_f[i] * d[i];
-    out->hessian[4 * i] += g_f[i] * dd[i];
-  }
   out->square = in->square;
 }
 

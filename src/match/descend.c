@@ -39,8 +39,8 @@ void ef__search_expand(ef__search *search, ef__place *place) {
   }
   for (int i = 0; i < 3; ++i) {
     place->gradient[i] = j[i] * g[0] + j[3 + i] * g[1] + j[6 + i] * g[2];
-    for (int k = 0; k < 3; ++k) {
-      place->hessian[3 * i + k] =
+    for (int k = i; k < 3; ++k) {
+      place->hessian[3 * i + k] = place->hessian[3 * k + i] =
           j[i] * hj[k] + j[3 + i] * hj[3 + k] + j[6 + i] * hj[6 + k];
     }
   }

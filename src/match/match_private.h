@@ -109,8 +109,6 @@ void ef__scout_free(ef__scout *scout);
 typedef struct ef__start {
   double amount[3];
   double square; /**< of the difference to the target, about */
-  double low[3], high[3]; /**< amounts of its neighbours in the grid, from
-                               ef__scout_starts */
 } ef__start;
 /** The points of the grid that are nearer to the target (in the metric's
  * coordinates) than all their neighbours, the nearest first; none that differ

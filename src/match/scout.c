@@ -173,12 +173,8 @@ static void set_start(const ef__scout *scout, int point, double square,
   int at[3];
   place_of(scout, point, at);
   start->square = square;
-  for (int i = 0; i < 3; ++i) {
-    const int last = scout->side - 1;
+  for (int i = 0; i < 3; ++i)
     start->amount[i] = scout->along[at[i]];
-    start->low[i] = scout->along[at[i] > 0 ? at[i] - 1 : 0];
-    start->high[i] = scout->along[at[i] < last ? at[i] + 1 : last];
-  }
 }
 
 size_t ef__scout_nearest(const ef__scout *scout, const ef_metric *metric,
