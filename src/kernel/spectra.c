@@ -59,8 +59,12 @@ typedef struct packed {
 EF__INLINE void pack(int channels, size_t n, const double *w, packed *out) {
   double *to = out->w;
   for (size_t i = 0; i < n; i += 8) {
-    for (size_t c = 0; c < (size_t)channels; ++c) {
-      for (size_t k = 0; k < 8; ++k) *to++ = i + k < n ? w[c * n + i + k] : 0;
+    for (size_t c = 0; c < (size_t)channels; ++c, to += 8) {
+      const double *const from = w + c * n + i;
+      const v_eight eight =
+          n - i < 8 ? v_eight_load_some(from, n - i) : v_eight_load(from);
+      EF__UNROLL for (int k = 0; k < V_PARTS; ++k)
+        v_store(to + k * EF__LANES, eight.part[k]);
     }
   }
 }
