@@ -198,6 +198,33 @@ static void tags_are_chunks(void **state) {
   clear();
 }
 
+/* Readers of today's and of yesterday's chunks see the same colours. */
+static void srgb_is_said_in_every_way(void **state) {
+  (void)state;
+  const uint16_t sample[3] = {65535, 32768, 0};
+  const ef_png_tags tags = {.primaries = 1, .transfer = 13};
+  char list[256], path[SCRATCH_PATH];
+  unsigned char cicp[64] = {0};
+  assert_int_equal(write_picture(1, 1, 8, sample, &tags, false, NULL), EF_OK);
+  list_chunks("p.png", list, "cICP", cicp);
+  assert_string_equal(list, "IHDR gAMA sRGB cHRM cICP IDAT IEND ");
+  scratch_path("p.png", path);
+  ef_png *const png = ef_png_open(path, NULL, NULL);
+  assert_non_null(png);
+  const ef_png_head *const head = ef_png_get_head(png);
+  assert_int_equal(ef_png_get_source(head), EF_PNG_CICP);
+  assert_true(head->has_srgb && head->has_gamma && head->has_chromaticities);
+  /* PNG third edition, 11.3.2.5: what goes along with sRGB. */
+  assert_near(head->gamma, 0.45455, 1e-9);
+  assert_near(head->white.x, 0.3127, 1e-9);
+  assert_near(head->white.y, 0.329, 1e-9);
+  assert_near(head->red.x, 0.64, 1e-9);
+  assert_near(head->green.y, 0.6, 1e-9);
+  assert_near(head->blue.y, 0.06, 1e-9);
+  ef_png_free(png);
+  clear();
+}
+
 static void no_tags_no_chunks(void **state) {
   (void)state;
   const uint16_t sample[3] = {65535, 32768, 0};
@@ -286,6 +313,7 @@ int main(void) {
       cmocka_unit_test(sixteen_bits_are_kept),
       cmocka_unit_test(eight_bits_are_rounded),
       cmocka_unit_test(tags_are_chunks),
+      cmocka_unit_test(srgb_is_said_in_every_way),
       cmocka_unit_test(no_tags_no_chunks),
       cmocka_unit_test(bad_arguments),
       cmocka_unit_test(a_profile_that_is_none),

@@ -376,8 +376,9 @@ EF_API void ef_json_elements(ef_json *json, const char *bytes, size_t length);
 /* ---- PNG --------------------------------------------------------------- */
 
 /** Colour tags of a picture (PNG third edition): code points of ITU-T H.273 in
- * cICP and an ICC profile in iCCP that says the same for readers without
- * cICP. */
+ * cICP and an ICC profile in iCCP that says the same for readers without cICP;
+ * where there is no profile and the code points are those of sRGB, sRGB, gAMA
+ * and cHRM say it to them. */
 typedef struct ef_png_tags {
   int primaries, transfer;      /**< cICP; 0: no cICP chunk */
   const char *profile_name;     /**< 1 to 79 Latin-1 characters */

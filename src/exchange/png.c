@@ -69,6 +69,11 @@ static void write_cicp(png_structp png, const ef_png_tags *tags) {
   png_write_chunk(png, name, bytes, sizeof bytes);
 }
 
+/* H.273: the primaries of BT.709 and the transfer of IEC 61966-2-1. */
+static bool is_srgb(const ef_png_tags *tags) {
+  return tags->primaries == 1 && tags->transfer == 13;
+}
+
 /* Frames and swatches are smooth or flat: what is left of a row after the one
  * above it is short runs, which run lengths and one pass of Huffman's codes hold
  * nearly as well as libpng's search for longer matches, several times as fast.
@@ -111,6 +116,9 @@ static void write_head(picture *p, size_t width, size_t height, int bits,
     if (png_get_valid(p->png, p->info, PNG_INFO_iCCP) == 0) {
       png_error(p->png, "the ICC profile is not accepted");
     }
+  }
+  if (tags != NULL && tags->profile == NULL && is_srgb(tags)) {
+    png_set_sRGB_gAMA_and_cHRM(p->png, p->info, PNG_sRGB_INTENT_RELATIVE);
   }
   png_write_info_before_PLTE(p->png, p->info);
   if (tags != NULL && tags->primaries != 0) write_cicp(p->png, tags);
