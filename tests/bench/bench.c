@@ -19,7 +19,15 @@ double bench_busy_s(void) {
   return read_clock(CLOCK_THREAD_CPUTIME_ID);
 }
 
+/* Threads of OpenBLAS go on turning for some hundredths of a second after a
+ * call, in case another follows: what comes next would lack their processor. */
+static void let_threads_rest(void) {
+  const struct timespec pause = {.tv_nsec = 150 * 1000 * 1000};
+  nanosleep(&pause, NULL);
+}
+
 static double time_of(const bench_entry *entry) {
+  let_threads_rest();
   const double start = entry->by_wall ? bench_wall_s() : bench_busy_s();
   entry->run(entry->context);
   return (entry->by_wall ? bench_wall_s() : bench_busy_s()) - start;
